@@ -1,0 +1,85 @@
+"""Probabilistic settlement and undrained stability of works on soft clay.
+
+The names below are imported when first used, so that ``import probsoil`` costs next to nothing.
+
+Examples
+--------
+>>> import probsoil
+>>> scenario = probsoil.read("bridge.toml")  # doctest: +SKIP
+>>> assessment = probsoil.assess(scenario)  # doctest: +SKIP
+"""
+
+from importlib import import_module
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from probsoil.assessment import Assessment, Sheet, assess
+    from probsoil.assessment.sheet import sheet
+    from probsoil.errors import (
+        ConvergenceError,
+        DependenceError,
+        ParameterError,
+        ProbsoilError,
+        ResultsError,
+        ScenarioError,
+        ShapeError,
+        StoppedEarly,
+    )
+    from probsoil.scenario import Scenario
+    from probsoil.scenario import read_scenario as read
+
+    __version__: str
+
+__all__ = [
+    "Assessment",
+    "ConvergenceError",
+    "DependenceError",
+    "ParameterError",
+    "ProbsoilError",
+    "ResultsError",
+    "Scenario",
+    "ScenarioError",
+    "ShapeError",
+    "Sheet",
+    "StoppedEarly",
+    "__version__",
+    "assess",
+    "read",
+    "sheet",
+]
+
+_HOMES = {
+    "Assessment": "assessment",
+    "Sheet": "assessment",
+    "assess": "assessment",
+    "sheet": "assessment",
+    "Scenario": "scenario",
+    "read": "scenario",
+}
+
+
+def __getattr__(name: str) -> object:
+    """Import a public name when it is first asked for."""
+    if name not in __all__:
+        raise AttributeError(f"module 'probsoil' has no attribute '{name}'")
+    if name == "__version__":
+        value: object = _version()
+    else:
+        home = import_module(f"probsoil.{_HOMES.get(name, 'errors')}")
+        value = getattr(home, "read_scenario" if name == "read" else name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    """List the public names, imported yet or not."""
+    return sorted({*globals(), *__all__})
+
+
+def _version() -> str:
+    from importlib import metadata
+
+    try:
+        return metadata.version("probsoil")
+    except metadata.PackageNotFoundError:  # run from a source tree
+        return "not installed"

@@ -1,0 +1,224 @@
+"""What was assessed, in words and tables: ground, load, stages, parameters."""
+
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+
+from probsoil.assessment.evaluation import Study
+from probsoil.ground.response import GroundState
+from probsoil.ground.site_model import SiteModel
+from probsoil.scenario import Scenario
+from probsoil.scenario.loads import EmbankmentLoad
+
+Row = dict[str, object]
+
+
+def ground_record(study: Study, at_means: GroundState) -> Row:
+    """Return layers, load, stages and the stress profile at the means.
+
+    Parameters
+    ----------
+    study : Study
+        Scenario and site.
+    at_means : GroundState
+        One realisation with every parameter at its mean.
+
+    Returns
+    -------
+    record : dict
+        Ready for JSON.
+    """
+    scenario = study.scenario
+    texts = {quantity.address: quantity for quantity in scenario.quantities()}
+    table = texts["site.water_table"]
+    return {
+        "water_table": table.distribution.describe(table.unit),
+        "base": scenario.site.base,
+        "layers": _layers(scenario),
+        "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
+        "stages": stage_rows(study.site),
+        "profile": _profile(at_means),
+    }
+
+
+def _layers(scenario: Scenario) -> list[Row]:
+    rows: list[Row] = []
+    top = 0.0
+    for layer in scenario.layers:
+        bottom = top + layer.thickness.expectation
+        properties = [
+            {
+                "symbol": quantity.address.removeprefix(f"{layer.name}."),
+                "meaning": quantity.meaning,
+                "text": quantity.distribution.describe(quantity.unit),
+                "unit": quantity.unit,
+            }
+            for quantity in scenario.quantities()
+            if quantity.address.rpartition(".")[0] == layer.name
+        ]
+        rows.append(
+            {"name": layer.name, "soil": layer.soil, "top": top, "bottom": bottom, "properties": properties}
+        )
+        top = bottom
+    return rows
+
+
+def _load_text(scenario: Scenario, site: SiteModel) -> str:
+    if isinstance(scenario.load, EmbankmentLoad) and site.embankment is not None:
+        shape = site.embankment
+        return (
+            f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
+            f"side slopes {shape.side_slope:g} horizontal to 1 vertical, base {shape.base_width:g} m wide"
+        )
+    return "load over a wide area"
+
+
+def stage_rows(site: SiteModel) -> list[Row]:
+    """Return the stages of the load.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Its stages.
+
+    Returns
+    -------
+    rows : list of dict
+        Name, times, change in words, and fill and pressure after each stage.
+    """
+    rows: list[Row] = []
+    for stage in site.stages:
+        change = []
+        if stage.height != 0.0:
+            change.append(f"{abs(stage.height):g} m of fill {'laid' if stage.height > 0.0 else 'taken away'}")
+        if stage.pressure != 0.0:
+            change.append(f"{abs(stage.pressure):g} kPa {'added' if stage.pressure > 0.0 else 'removed'}")
+        pressure = site.pressure(stage.end)
+        rows.append(
+            {
+                "name": stage.name,
+                "start": stage.start,
+                "end": stage.end,
+                "change_text": " and ".join(change) or "no change",
+                "height_after": round(site.fill_height(stage.end), 9),
+                "pressure_after": round(pressure, 9) if any(one.pressure for one in site.stages) else None,
+            }
+        )
+    return rows
+
+
+def _profile(state: GroundState) -> Row:
+    """Return stresses with depth before loading and at the horizon, [m] and [kPa]."""
+    points, ground = state.ground.points, state.ground
+    final = points.stress[0] + ground.load.stress[-1, 0]
+    final[ground.clay] = state.consolidation.stress[0, -1]
+    preconsolidation = [
+        float(value) if is_clay else None
+        for value, is_clay in zip(ground.yield_stress[0], ground.clay, strict=True)
+    ]
+    return {
+        "depth": points.depth[0].tolist(),
+        "initial_stress": points.stress[0].tolist(),
+        "preconsolidation": preconsolidation,
+        "final_stress": final.tolist(),
+    }
+
+
+def parameter_rows(study: Study) -> list[Row]:
+    """Return the uncertain parameters as drawn.
+
+    Parameters
+    ----------
+    study : Study
+        Its parameter space.
+
+    Returns
+    -------
+    rows : list of dict
+        One per parameter; bounds that are infinite become null.
+    """
+    rows = []
+    for summary in study.space.summary():
+        row = {name: getattr(summary, name) for name in summary.__slots__}
+        rows.append({key: finite(value) if isinstance(value, float) else value for key, value in row.items()})
+    return rows
+
+
+def dependence_rows(study: Study) -> list[Row]:
+    """Return the rank correlations given and the latent ones they became.
+
+    Parameters
+    ----------
+    study : Study
+        Scenario and parameter space.
+
+    Returns
+    -------
+    rows : list of dict
+        One per pair.
+    """
+    place = {name: index for index, name in enumerate(study.space.names)}
+    return [
+        {
+            "between": list(pair.between),
+            "rank_correlation": pair.rank_correlation,
+            "latent_correlation": float(
+                study.space.correlation[place[pair.between[0]], place[pair.between[1]]]
+            ),
+        }
+        for pair in study.scenario.dependence
+    ]
+
+
+def quantiles(values: np.ndarray, levels: Sequence[float] = (0.05, 0.25, 0.5, 0.75, 0.95)) -> Row:
+    """Return quantiles by level, along the first axis, of what is finite.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n_sample,) or (n_sample, n), [any]
+        Sample.
+    levels : sequence of float, [-]
+        Levels.
+
+    Returns
+    -------
+    quantiles : dict of str to float or list of float
+        By level in figures, e.g. ``"0.05"``; null where nothing is finite.
+    """
+    clean = np.where(np.isfinite(values), values, np.nan)
+    if np.isnan(clean).all():
+        return {f"{level:g}": None for level in levels}
+    found = np.nanquantile(clean, levels, axis=0)
+    return {f"{level:g}": row.tolist() for level, row in zip(levels, found, strict=True)}
+
+
+def finite(value: float | None) -> float | None:
+    """Return a number for JSON, which knows neither infinity nor not-a-number.
+
+    Parameters
+    ----------
+    value : float or None, [any]
+        Number.
+
+    Returns
+    -------
+    value : float or None, [any]
+        None if it is not finite.
+    """
+    return None if value is None or not np.isfinite(value) else float(value)
+
+
+def fixed_values(values: Mapping[str, float]) -> dict[str, np.ndarray]:
+    """Return one realisation from one number per quantity.
+
+    Parameters
+    ----------
+    values : mapping of str to float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    values : dict of str to ndarray, shape (1,)
+        The same as arrays.
+    """
+    return {address: np.array([float(value)]) for address, value in values.items()}

@@ -1,0 +1,143 @@
+"""What is worked out for one chunk of realisations."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from probsoil._typing import FloatArray
+from probsoil.ground.limit_quantities import limit_quantities, slip_with_model_error
+from probsoil.ground.profile import column
+from probsoil.ground.response import respond, screened
+from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.parameters import Design, ParameterSpace, design, parameter_space
+from probsoil.scenario import Scenario
+
+BAND_CHUNKS = 64
+"""Chunks whose settlement is kept through time for the band, [-]; the rest keep what limits need."""
+
+_PILOT_STAGE = 2  # first spawn key; 0 and 1 belong to the designs
+_PILOT_SIZE = 256
+_PILOT_WIDTH = 1.5  # the pilot spreads its latent normals this much more widely
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Study:
+    """A scenario made ready to be evaluated chunk by chunk.
+
+    Attributes
+    ----------
+    scenario : Scenario
+        As read, with what the caller overrode.
+    space : ParameterSpace
+        Uncertain parameters.
+    points : Design
+        Where in the latent space the realisations lie.
+    site : SiteModel
+        What no realisation changes, with the competing slip circles.
+    """
+
+    scenario: Scenario
+    space: ParameterSpace
+    points: Design
+    site: SiteModel
+
+    def latent(self, chunk: int) -> FloatArray:
+        """Return the correlated latent normals of a chunk.
+
+        Parameters
+        ----------
+        chunk : int, [-]
+            Number of the chunk.
+
+        Returns
+        -------
+        z : ndarray, shape (n_i, d), [-]
+            One row per realisation.
+        """
+        return self.space.correlated(self.points.chunk(chunk))
+
+    def __call__(self, chunk: int) -> Mapping[str, NDArray[np.generic]]:
+        """Evaluate one chunk.
+
+        Parameters
+        ----------
+        chunk : int, [-]
+            Number of the chunk.
+
+        Returns
+        -------
+        arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
+            ``quantity`` of every limit, ``slip`` at every check, ``final`` settlement, flags, and
+            in the first chunks ``settlement`` through time; model error included.
+        """
+        values = self.space.values(self.latent(chunk))
+        response = respond(self.site, values)
+        error = column(values, "model_error.settlement", response.settlement.shape[0])
+        settlement = np.where(response.converged[:, None], error[:, None] * response.settlement, np.nan)
+        arrays: dict[str, NDArray[np.generic]] = {
+            "quantity": limit_quantities(self.site, self.scenario.limits, response, values),
+            "slip": slip_with_model_error(response, values),
+            "final": settlement[:, -1],
+            "floored": response.floored,
+            "kappa_clipped": response.kappa_clipped,
+            "converged": response.converged,
+        }
+        if chunk < BAND_CHUNKS:
+            arrays["settlement"] = settlement.astype(np.float32)
+        return arrays
+
+
+def prepare(scenario: Scenario) -> Study:
+    """Return a scenario ready to be evaluated.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read, with what the caller overrode.
+
+    Returns
+    -------
+    study : Study
+        Parameters, points and ground.
+    """
+    space = space_of(scenario)
+    points = design(scenario.draws, seed=scenario.seed, n=scenario.realisations, dimension=space.dimension)
+    generator = np.random.default_rng(np.random.SeedSequence(scenario.seed, spawn_key=(_PILOT_STAGE, 0)))
+    pilot = generator.standard_normal((_PILOT_SIZE, space.dimension))
+    site = screened(site_model(scenario), space.values(_PILOT_WIDTH * space.correlated(pilot)))
+    return Study(scenario=scenario, space=space, points=points, site=site)
+
+
+def space_of(scenario: Scenario) -> ParameterSpace:
+    """Return the uncertain parameters of a scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    space : ParameterSpace
+        Marginals, dependence and fixed numbers.
+    """
+    pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
+    return parameter_space(scenario.quantities(), pairs)
+
+
+def refined(study: Study) -> Study:
+    """Return the same study on finer cells and time steps with a full, denser family of circles.
+
+    Parameters
+    ----------
+    study : Study
+        Study of the campaign.
+
+    Returns
+    -------
+    study : Study
+        For measuring the discretisation error.
+    """
+    return replace(study, site=site_model(study.scenario, refine=2))

@@ -1,0 +1,296 @@
+"""The main job: one scenario from its parameters to probabilities, drivers and a results folder."""
+
+import hashlib
+import io
+import json
+import time
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from probsoil import __version__
+from probsoil._typing import FloatArray
+from probsoil.assessment.description import (
+    dependence_rows,
+    fixed_values,
+    ground_record,
+    parameter_rows,
+)
+from probsoil.assessment.discretisation import discretisation_error
+from probsoil.assessment.evaluation import Study, prepare
+from probsoil.assessment.record import (
+    CONFIDENCE,
+    CampaignSample,
+    driver_rows,
+    limit_rows,
+    settlement_record,
+    slip_rows,
+    warning_rows,
+)
+from probsoil.assessment.statements import CAUTIONS, assumptions
+from probsoil.campaign import (
+    campaign_identity,
+    discard_chunks,
+    prepare_folder,
+    provenance,
+    run_campaign,
+    worker_count,
+    write_durably,
+)
+from probsoil.errors import ParameterError
+from probsoil.ground.response import ground_state
+from probsoil.probability import exceeds
+from probsoil.scenario import Scenario
+from probsoil.sensitivity import DriverSums, driver_sums, drivers, merge
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+Progress = Callable[[str, int, int], None]
+REALISATIONS = "realisations"
+"""Name of the stage that progress is reported for."""
+
+_CHUNKS = "chunks"
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Assessment:
+    """Result of an assessment.
+
+    Attributes
+    ----------
+    results : dict
+        Content of results.json.
+    sample : CampaignSample
+        Quantities of every limit in every realisation.
+    folder : Path or None
+        Where the results were written.
+    """
+
+    results: dict[str, Any]
+    sample: CampaignSample
+    folder: Path | None
+
+    def to_frame(self) -> "pd.DataFrame":
+        """Return the limits as a table.
+
+        Returns
+        -------
+        frame : pandas.DataFrame
+            One row per limit: probability, interval, verdict.
+        """
+        import pandas as pd  # deferred: a scenario check never needs it
+
+        rows = [
+            {key: value for key, value in row.items() if not isinstance(value, dict | list)}
+            | {"low": row["interval"][0], "high": row["interval"][1]}
+            for row in self.results["limits"]
+        ]
+        return pd.DataFrame(rows)
+
+    def _repr_html_(self) -> str:
+        """Return the table of limits for a notebook."""
+        return str(self.to_frame().to_html(index=False))
+
+
+def assess(  # noqa: PLR0913 - one call with named options, each with a default
+    scenario: Scenario,
+    *,
+    out: Path | None = None,
+    realisations: int | None = None,
+    draws: str | None = None,
+    seed: int | None = None,
+    workers: int | None = None,
+    resume: bool = False,
+    progress: Progress | None = None,
+    command: str | None = None,
+    source: Path | None = None,
+) -> Assessment:
+    """Return how likely each limit is exceeded and what drives it.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    out : Path or None
+        Folder for the results; None to write nothing.
+    realisations : int or None, [-]
+        Number of realisations, instead of the scenario's.
+    draws : str or None
+        Way of drawing, instead of the scenario's.
+    seed : int or None, [-]
+        Seed, instead of the scenario's.
+    workers : int or None, [-]
+        Number of workers; None for every core. The numbers do not depend on it.
+    resume : bool
+        Whether to go on from the chunks an interrupted run left in `out`.
+    progress : callable or None
+        Called with a stage name, chunks done and chunks in all.
+    command : str or None
+        Command line, for the record.
+    source : Path or None
+        File the scenario was read from; it is copied to `out` and its digest goes into the record.
+
+    Returns
+    -------
+    assessment : Assessment
+        Probabilities with intervals, drivers, settlement and slip safety.
+
+    Raises
+    ------
+    ParameterError
+        If an override is out of range.
+    ResultsError
+        If `out` cannot be written or holds another campaign.
+    StoppedEarly
+        If the user interrupted; finished chunks are kept in `out`.
+    """
+    started, clock = datetime.now(UTC), time.perf_counter()
+    scenario = _overridden(scenario, realisations=realisations, draws=draws, seed=seed)
+    folder = None if out is None else prepare_folder(out)
+    study = prepare(scenario)
+    seconds = {"preparation": time.perf_counter() - clock}
+    chunks = _chunks(study, folder, workers=workers, resume=resume, progress=progress)
+    sample, sums = _collect(study, chunks)
+    seconds[REALISATIONS] = time.perf_counter() - clock - seconds["preparation"]
+    results = _results(study, sample, sums)
+    seconds["total"] = time.perf_counter() - clock
+    results["provenance"] = provenance(
+        {
+            "scenario_file": None if source is None else source.name,
+            "scenario_sha256": _digest(scenario, source),
+            "chunks": study.points.n_chunks,
+        },
+        started=started,
+        seconds=seconds,
+        workers=worker_count(workers),
+        command=command,
+    )
+    if folder is not None:
+        _write(folder, results, sample, source)
+    return Assessment(results=results, sample=sample, folder=folder)
+
+
+def _overridden(
+    scenario: Scenario, *, realisations: int | None, draws: str | None, seed: int | None
+) -> Scenario:
+    """Return the scenario with the caller's numbers in place of its own."""
+    if realisations is not None and realisations < 1:
+        raise ParameterError(f"realisations must be at least 1; got {realisations}")
+    if seed is not None and seed < 0:
+        raise ParameterError(f"seed must be zero or more; got {seed}")
+    given = {"realisations": realisations, "draws": draws, "seed": seed}
+    return scenario.model_copy(update={key: value for key, value in given.items() if value is not None})
+
+
+def _chunks(
+    study: Study,
+    folder: Path | None,
+    *,
+    workers: int | None,
+    resume: bool,
+    progress: Progress | None,
+) -> Iterator[tuple[int, dict[str, NDArray[np.generic]]]]:
+    identity = campaign_identity(
+        repr(study.scenario),
+        seed=study.scenario.seed,
+        realisations=study.points.n,
+        draws=study.points.name,
+        version=__version__,
+    )
+    heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
+    return run_campaign(
+        study,
+        study.points.n_chunks,
+        identity=identity,
+        workers=workers,
+        store=None if folder is None else folder / _CHUNKS,
+        resume=resume,
+        progress=heard,
+    )
+
+
+def _collect(
+    study: Study, chunks: Iterator[tuple[int, Mapping[str, NDArray[np.generic]]]]
+) -> tuple[CampaignSample, list[DriverSums]]:
+    """Gather what the results need from the chunks, in their order."""
+    kept: dict[str, list[NDArray[np.generic]]] = {}
+    sums: list[DriverSums] = []
+    for index, arrays in chunks:
+        for name, array in arrays.items():
+            kept.setdefault(name, []).append(array)
+        kept.setdefault("replicate", []).append(study.points.replicate_index(index))
+        mine = _driver_sums(study, index, np.asarray(arrays["quantity"], dtype=np.float64))
+        sums = mine if not sums else [merge(a, b) for a, b in zip(sums, mine, strict=True)]
+    whole: dict[str, Any] = {name: np.concatenate(parts) for name, parts in kept.items()}
+    return CampaignSample(**whole), sums
+
+
+def _driver_sums(study: Study, chunk: int, quantity: FloatArray) -> list[DriverSums]:
+    """Return the sums over one chunk that the drivers of each limit are found from."""
+    z = study.latent(chunk)
+    replicated = study.points.replicates > 1
+    group = study.points.replicate_index(chunk) if replicated else None
+    return [
+        driver_sums(
+            z,
+            study.space.inverse_correlation,
+            quantity[:, column],
+            exceeds(quantity[:, column], limit.threshold, limit.sense),
+            group,
+        )
+        for column, limit in enumerate(study.scenario.limits)
+    ]
+
+
+def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> dict[str, Any]:
+    scenario, site = study.scenario, study.site
+    error = discretisation_error(study)
+    at_means = ground_state(site, fixed_values(study.space.at("mean")))
+    found = [drivers(one, study.space.correlation, study.space.names, confidence=CONFIDENCE) for one in sums]
+    rows, quality = driver_rows(scenario.limits, found)
+    return {
+        "format": scenario.format,
+        "kind": "assess",
+        "title": scenario.title,
+        "seed": scenario.seed,
+        "realisations": study.points.n,
+        "draws": study.points.name,
+        "confidence": CONFIDENCE,
+        "currency": scenario.currency,
+        "limits": limit_rows(study, sample),
+        "settlement": settlement_record(site, sample),
+        "slip": slip_rows(site, sample),
+        "drivers": rows,
+        "driver_quality": quality,
+        "ground": ground_record(study, at_means),
+        "parameters": parameter_rows(study),
+        "dependence": dependence_rows(study),
+        "discretisation": error.to_dict(),
+        "warnings": warning_rows(study, sample, error),
+        "assumptions": list(assumptions(site)),
+        "cautions": list(CAUTIONS),
+    }
+
+
+def _digest(scenario: Scenario, source: Path | None) -> str:
+    content = repr(scenario).encode() if source is None else source.read_bytes()
+    return hashlib.sha256(content).hexdigest()
+
+
+def _write(folder: Path, results: dict[str, Any], sample: CampaignSample, source: Path | None) -> None:
+    """Write the results; the chunks go only when everything else is safely there."""
+    buffer = io.BytesIO()
+    names = np.array([row["name"] for row in results["limits"]])
+    np.savez_compressed(buffer, limit=names, quantity=sample.quantity, slip=sample.slip, final=sample.final)
+    write_durably(folder / "realisations.npz", buffer.getvalue())
+    if source is not None and source.resolve() != (folder / "scenario.toml").resolve():
+        write_durably(folder / "scenario.toml", source.read_bytes())
+    text = json.dumps(results, indent=1, allow_nan=False, ensure_ascii=False) + "\n"
+    write_durably(folder / "results.json", text.encode())
+    discard_chunks(folder / _CHUNKS)

@@ -1,0 +1,97 @@
+"""The answer of `probsoil assess` in a terminal."""
+
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from probsoil.cli._output import answer_console, print_table
+from probsoil.report.text import (
+    chance_text,
+    count_text,
+    event_text,
+    percent_text,
+    plain_percent,
+    verdict_label,
+)
+
+if TYPE_CHECKING:
+    from rich.console import Console
+
+DRIVERS_SHOWN = 3  # of each limit; the report has them all
+CAUTION = (
+    "An aid to judgement: it answers for its models and for the values given to it, no more. "
+    "Local codes and a licensed engineer decide."
+)
+
+
+def print_summary(results: dict[str, Any], folder: Path) -> None:
+    """Print what a reader must know first: chances, verdicts, drivers, warnings, where the report is.
+
+    Parameters
+    ----------
+    results : dict
+        Content of ``results.json``.
+    folder : Path
+        Results folder.
+    """
+    console = answer_console()
+    count = count_text(results["realisations"])
+    console.print(f"{results['title']}: {count} realisations ({results['draws']}), seed {results['seed']}\n")
+    _print_limits(console, results)
+    _print_drivers(console, results)
+    for warning in results["warnings"]:
+        console.print(f"Warning: {warning['message']}")
+    console.print(f"Report: {folder / 'report.html'}", soft_wrap=True)
+    console.print(CAUTION)
+
+
+def _print_limits(console: "Console", results: dict[str, Any]) -> None:
+    print_table(
+        console,
+        "Chance that each limit is exceeded",
+        (
+            "limit",
+            "exceeded when",
+            f"chance ({plain_percent(results['confidence'])} interval)",
+            "target",
+            "verdict",
+        ),
+        (
+            (
+                limit["name"],
+                event_text(limit),
+                chance_text(limit, results),
+                "-" if limit["target_probability"] is None else plain_percent(limit["target_probability"]),
+                verdict_label(limit),
+            )
+            for limit in results["limits"]
+        ),
+    )
+
+
+def _print_drivers(console: "Console", results: Mapping[str, Any]) -> None:
+    rows = []
+    for limit in results["limits"]:
+        drivers = [driver for driver in results["drivers"] if driver["limit"] == limit["name"]]
+        rows += [_driver_row(driver) for driver in _foremost(drivers)]
+    if rows:
+        print_table(console, "Foremost drivers", ("limit", "parameter", "share", "a larger value"), rows)
+    for quality in results["driver_quality"]:
+        if quality["note"]:
+            console.print(f"Drivers of {quality['limit']}: {quality['note']}")
+
+
+def _foremost(drivers: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:
+    known = [driver for driver in drivers if driver["share"] is not None]
+    return sorted(known, key=lambda driver: -float(driver["share"]))[:DRIVERS_SHOWN]
+
+
+def _driver_row(driver: Mapping[str, Any]) -> tuple[str, str, str, str]:
+    low, high = (percent_text(share, 0) for share in driver["share_interval"])
+    direction = driver["direction"]
+    return (
+        driver["limit"],
+        driver["parameter"],
+        f"{percent_text(driver['share'], 0)} ({low.removesuffix(' %')} to {high})",
+        "unclear" if direction == "unclear" else f"{direction} the chance",
+    )

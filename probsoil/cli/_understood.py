@@ -1,0 +1,124 @@
+"""What was understood of a scenario, in a terminal."""
+
+from typing import TYPE_CHECKING
+
+from probsoil.cli._output import print_table
+from probsoil.report.text import event_text, percent_text, plain_percent
+
+if TYPE_CHECKING:
+    from rich.console import Console
+
+    from probsoil.parameters import ParameterSpace
+    from probsoil.scenario import Scenario, Stage
+    from probsoil.scenario.limits import Limit
+
+LEAST_CUT_SHOWN = 1e-6  # smaller shares are in the results, and only clutter here
+LIMIT_UNITS = {"settlement": "m", "time_to_consolidation": "years"}
+
+
+def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
+    """Print layers, load, stages, parameters, correlations and limits.
+
+    Parameters
+    ----------
+    console : Console
+        Where to.
+    scenario : Scenario
+        What was read.
+    space : ParameterSpace
+        Its parameters.
+    """
+    console.print(
+        f"{scenario.title}: {scenario.realisations:,d} realisations ({scenario.draws}), "
+        f"seed {scenario.seed}, to {scenario.horizon:g} years\n"
+    )
+    _print_layers(console, scenario, space)
+    _print_stages(console, scenario)
+    _print_parameters(console, scenario, space)
+    _print_dependence(console, scenario)
+    _print_limits(console, scenario)
+
+
+def _print_layers(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
+    mean, rows, top = space.at("mean"), [], 0.0
+    for layer in scenario.layers:
+        bottom = top + mean[f"{layer.name}.thickness"]
+        rows.append((layer.name, layer.soil, f"{top:.2f}", f"{bottom:.2f}"))
+        top = bottom
+    print_table(console, "Layers, at mean thicknesses", ("layer", "soil", "top [m]", "bottom [m]"), rows)
+    water = mean["site.water_table"]
+    console.print(f"Water table at {water:.2f} m (mean); {scenario.site.base} below the last layer\n")
+
+
+def _print_stages(console: "Console", scenario: "Scenario") -> None:
+    load = scenario.load
+    if load.shape == "embankment":
+        console.print(
+            f"Load: embankment, crest {load.crest_width:g} m wide, side slopes 1 on {load.side_slope:g}\n"
+        )
+    else:
+        console.print("Load: over a wide area\n")
+    print_table(
+        console,
+        "Stages",
+        ("stage", "change", "start [years]", "end [years]"),
+        ((stage.name, _change(stage), f"{stage.start:.3f}", f"{stage.end:.3f}") for stage in scenario.stages),
+    )
+
+
+def _change(stage: "Stage") -> str:
+    if stage.height is not None:
+        return f"{stage.height:+g} m of fill"
+    return f"{stage.pressure:+g} kPa"
+
+
+def _print_parameters(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
+    cut = {row.name: row.cut_share for row in space.summary() if row.cut_share >= LEAST_CUT_SHOWN}
+    rows = []
+    for quantity in scenario.quantities():
+        text = quantity.distribution.describe(quantity.unit)
+        if quantity.address in cut:
+            text += f"; {percent_text(cut[quantity.address])} cut at its physical bounds"
+        rows.append((quantity.address, text, quantity.meaning))
+    print_table(console, "Parameters", ("parameter", "value", "meaning"), rows)
+
+
+def _print_dependence(console: "Console", scenario: "Scenario") -> None:
+    if scenario.dependence:
+        print_table(
+            console,
+            "Correlations",
+            ("between", "and", "rank correlation [-]"),
+            ((*rule.between, f"{rule.rank_correlation:g}") for rule in scenario.dependence),
+        )
+
+
+def _print_limits(console: "Console", scenario: "Scenario") -> None:
+    print_table(
+        console,
+        "Limits",
+        ("limit", "exceeded when", "target chance"),
+        (
+            (
+                limit.name,
+                _event(limit),
+                "-" if limit.target_probability is None else plain_percent(limit.target_probability),
+            )
+            for limit in scenario.limits
+        ),
+    )
+
+
+def _event(limit: "Limit") -> str:
+    """Return what exceeding a limit means, in the words the results use."""
+    named = {key: getattr(limit, key, None) for key in ("at", "between", "degree")}
+    time = {key: value for key, value in named.items() if value is not None}
+    return event_text(
+        {
+            "quantity": limit.quantity,
+            "time": time,
+            "sense": limit.sense,
+            "threshold": limit.threshold,
+            "unit": LIMIT_UNITS.get(limit.quantity, "-"),
+        }
+    )

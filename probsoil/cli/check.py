@@ -1,0 +1,21 @@
+"""`probsoil check`: every mistake in a scenario, or what was understood of it."""
+
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+
+def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario file.")]) -> None:
+    """Read a scenario, name every mistake in it, and print what was understood."""
+    from probsoil.cli._output import answer_console
+    from probsoil.cli._understood import print_scenario
+    from probsoil.parameters import parameter_space
+    from probsoil.scenario import read_scenario
+
+    scenario = read_scenario(file)
+    pairs = [(*rule.between, rule.rank_correlation) for rule in scenario.dependence]
+    space = parameter_space(scenario.quantities(), pairs)
+    console = answer_console()
+    console.print(f"{file}: no mistakes found", soft_wrap=True)
+    print_scenario(console, scenario, space)

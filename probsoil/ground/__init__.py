@@ -1,0 +1,1 @@
+"""The ground: deterministic models, vectorised over realisations. It knows no distribution."""

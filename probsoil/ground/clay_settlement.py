@@ -1,0 +1,197 @@
+"""Consolidation of the clay layers of a site and how far it has gone."""
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.applied_load import LoadedGround, stress_at
+from probsoil.ground.compression import void_ratio_lost
+from probsoil.ground.consolidation import (
+    ClayState,
+    Conductivity,
+    ConsolidationResult,
+    LoadHistory,
+    conductivity_from_cv,
+    conductivity_from_permeability,
+    consolidate,
+)
+from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
+from probsoil.ground.profile import Values, column
+from probsoil.ground.site_model import SiteModel
+
+_NOTHING = 1e-9  # m; a settlement below it counts as finished
+
+
+def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> ConsolidationResult:
+    """Return the consolidation of all clay layers below the centreline.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells, time axis and recorded times.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+
+    Returns
+    -------
+    result : ConsolidationResult
+        Settlement of the clay through time and stresses at the recorded times.
+    """
+    cells, clay, load = site.cells, ground.clay, ground.load
+    state = _clay_state(site, ground)
+    history = LoadHistory(
+        time=site.knots,
+        stress=load.stress[:, :, clay],
+        spread=load.spread[:, clay],
+        water_depth=load.water_depth,
+    )
+    flow = _conductivity(site, values, state)
+    return consolidate(state, flow, cells, history, times=site.times, record=site.record)
+
+
+def _clay_state(site: SiteModel, ground: LoadedGround) -> ClayState:
+    layer = site.cells.layer
+    return ClayState(
+        thickness=ground.points.thickness[:, ground.clay],
+        stress=ground.points.stress[:, ground.clay],
+        yield_stress=ground.yield_stress[:, ground.clay],
+        void_ratio=ground.columns.void_ratio[:, layer],
+        lam=ground.columns.lam[:, layer],
+        kap=ground.columns.kap[:, layer],
+    )
+
+
+def _conductivity(site: SiteModel, values: Values, state: ClayState) -> Conductivity:
+    log_value, decline = np.zeros_like(state.lam), np.zeros_like(state.lam)
+    follows, power = np.zeros(site.cells.n_cell), np.ones(site.cells.n_cell, dtype=np.int64)
+    for index, layer in enumerate(site.layers):
+        mine = site.cells.layer == index
+        if not layer.is_clay:
+            continue
+        first = column(values, f"{layer.name}.{layer.flow}", state.lam.shape[0])[:, None]
+        void_ratio = state.void_ratio[:, mine]
+        if layer.flow == "cv":
+            log_value[:, mine] = conductivity_from_cv(first, state.lam[:, mine], void_ratio)
+            follows[mine], power[mine] = 1.0, 2
+        else:
+            index_of_change = column(values, f"{layer.name}.ck", state.lam.shape[0])[:, None]
+            log_value[:, mine], decline[:, mine] = conductivity_from_permeability(
+                first * SECONDS_PER_YEAR, index_of_change, void_ratio
+            )
+    return Conductivity(log_value=log_value, decline=decline, follows=follows, power=power)
+
+
+def cell_settlement(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
+    """Return the settlement of every cell at the end of the time axis.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells; its last recorded time is the horizon.
+    ground : LoadedGround
+        The ground before loading.
+    result : ConsolidationResult
+        Consolidation of the clay.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample, n_cell), [m]
+        Shortening of each cell.
+    """
+    return _shortening(site, ground, result.stress[:, -1], result.yield_stress[:, -1])
+
+
+def _shortening(
+    site: SiteModel, ground: LoadedGround, stress: FloatArray, yield_stress: FloatArray
+) -> FloatArray:
+    state = _clay_state(site, ground)
+    lost = void_ratio_lost(
+        stress,
+        yield_stress,
+        initial_stress=state.stress,
+        initial_yield_stress=state.yield_stress,
+        slopes=(state.lam, state.kap),
+    )
+    return np.asarray(state.thickness / (1.0 + state.void_ratio) * lost)
+
+
+def settlement_when_done(
+    site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, added: FloatArray
+) -> FloatArray:
+    """Return the settlement of the clay once all excess pore pressure has gone.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells.
+    ground : LoadedGround
+        The ground before loading.
+    yield_stress : ndarray, shape (n_sample, n_cell), [kPa]
+        Preconsolidation stress reached so far.
+    added : ndarray, shape (n_sample, n_cell), [kPa]
+        Added stress that stays.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample,), [m]
+        Sum over the cells of thickness times strain.
+    """
+    initial = ground.points.stress[:, ground.clay]
+    return np.asarray(_shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+
+
+def degrees_of_consolidation(
+    site: SiteModel, ground: LoadedGround, result: ConsolidationResult
+) -> tuple[FloatArray, FloatArray]:
+    """Return the degree of consolidation at the recorded times and after the last stage.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Time axis and recorded times.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    result : ConsolidationResult
+        Consolidation of the clay.
+
+    Returns
+    -------
+    at_record : ndarray, shape (n_sample, n_record), [-]
+        Under the load present at each recorded time.
+    after_last : ndarray, shape (n_sample, n_time), [-]
+        Under the load that stays, from the end of the last stage on; not a number before.
+
+    Notes
+    -----
+    Settlement of the clay so far over the settlement that the load then present would reach in
+    the end, between 0 and 1; where the ground is already lower than that (after a removal of
+    load) it is 1.
+    """
+    at_record = np.empty((result.settlement.shape[0], site.record.size))
+    done_last = np.empty(result.settlement.shape[0])
+    final = result.settlement[:, -1]
+    for slot, time in enumerate(site.record):
+        now = result.settlement[:, np.searchsorted(site.times, time)]
+        done = _done(site, ground, result.yield_stress[:, slot], float(time), now)
+        at_record[:, slot] = _degree(now, done)
+        if time == site.last_change:
+            done_last = _done(site, ground, result.yield_stress[:, slot], float(time), final)
+    after_last = _degree(result.settlement, done_last[:, None])
+    after_last[:, site.times < site.last_change] = np.nan
+    return at_record, after_last
+
+
+def _done(
+    site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, time: float, settled: FloatArray
+) -> FloatArray:
+    added = stress_at(site, ground.load, time)[:, ground.clay]
+    sunk = np.maximum(settled - ground.load.water_depth, 0.0)[:, None]
+    buoyancy = np.minimum(WATER_UNIT_WEIGHT * sunk * ground.load.spread[:, ground.clay], added)
+    return settlement_when_done(site, ground, yield_stress, added - buoyancy)
+
+
+def _degree(settled: FloatArray, done: FloatArray) -> FloatArray:
+    finished = (done <= _NOTHING) | (settled >= done)
+    ratio = settled / np.where(done > _NOTHING, done, 1.0)
+    return np.asarray(np.where(finished, 1.0, np.clip(ratio, 0.0, 1.0)), dtype=np.float64)

@@ -1,0 +1,332 @@
+"""Finite-strain consolidation of clay in one dimension, for many realisations at once."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.errors import ParameterError, ShapeError
+from probsoil.ground._checks import checked
+from probsoil.ground._consolidation_kernel import (
+    GAMMA,
+    Faces,
+    Loading,
+    Schedule,
+    Soil,
+    consolidate_lanes,
+)
+from probsoil.ground.cells import Cells
+from probsoil.ground.constants import WATER_UNIT_WEIGHT
+from probsoil.ground.lanes import LANES, Lanes
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class ClayState:
+    """State of the cells before loading and the soil's constants.
+
+    Attributes
+    ----------
+    thickness : ndarray, shape (n_sample, n_cell), [m]
+        Thickness of each cell before loading.
+    stress, yield_stress : ndarray, shape (n_sample, n_cell), [kPa]
+        Effective vertical stress in situ and preconsolidation stress, ``yield_stress >= stress``.
+    void_ratio : ndarray, shape (n_sample, n_cell), [-]
+        Initial void ratio e0.
+    lam, kap : ndarray, shape (n_sample, n_cell), [-]
+        Lambda and kappa, slopes against the natural logarithm of stress, ``lam >= kap > 0``.
+    """
+
+    thickness: FloatArray
+    stress: FloatArray
+    yield_stress: FloatArray
+    void_ratio: FloatArray
+    lam: FloatArray
+    kap: FloatArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Conductivity:
+    """How fast water moves, as a function of the state.
+
+    In material coordinates the flow is ``K du/da`` with
+    ``ln K = log_value - decline (e0 - e) - follows ln max(s', sp) - power ln(1 + e)``.
+
+    Attributes
+    ----------
+    log_value : ndarray, shape (n_sample, n_cell), [ln of units that make K m2/(kPa year)]
+        See above.
+    decline : ndarray, shape (n_sample, n_cell), [-]
+        Fall of ln k per unit of void ratio lost, ln(10)/ck; zero where cv is constant.
+    follows : ndarray, shape (n_cell,), [-]
+        1 where the conductivity falls with the larger of stress and preconsolidation stress.
+    power : ndarray of int, shape (n_cell,), [-]
+        Power of 1/(1 + e).
+    """
+
+    log_value: FloatArray
+    decline: FloatArray
+    follows: FloatArray
+    power: IntArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class LoadHistory:
+    """Vertical stress that the works add, piecewise linear in time.
+
+    Attributes
+    ----------
+    time : ndarray, shape (n_knot,), [years]
+        Rising; the first is the start of the computation.
+    stress : ndarray, shape (n_knot, n_sample, n_cell), [kPa]
+        Added total vertical stress at each knot.
+    spread : ndarray, shape (n_sample, n_cell), [-]
+        Share of a change of fill weight at the surface that reaches the cell, for submergence.
+    water_depth : ndarray, shape (n_sample,), [m]
+        Settlement beyond which the fill loses weight by sinking below the water table; infinite
+        where submergence does not count.
+    """
+
+    time: FloatArray
+    stress: FloatArray
+    spread: FloatArray
+    water_depth: FloatArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class ConsolidationResult:
+    """Answer of the clay through time.
+
+    Attributes
+    ----------
+    settlement : ndarray, shape (n_sample, n_time), [m]
+        Settlement of the clay since the start; the first time is the start.
+    stress, yield_stress : ndarray, shape (n_sample, n_record, n_cell), [kPa]
+        Effective vertical and preconsolidation stress at the recorded times.
+    converged : ndarray of bool, shape (n_sample,), [-]
+        Whether every step was solved to tolerance.
+    """
+
+    settlement: FloatArray
+    stress: FloatArray
+    yield_stress: FloatArray
+    converged: BoolArray
+
+
+def conductivity_from_permeability(
+    permeability: FloatArray, change_index: FloatArray, void_ratio: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    r"""Return `log_value` and `decline` for a permeability that falls with void ratio.
+
+    Parameters
+    ----------
+    permeability : ndarray, shape (n_sample, n_cell), [m/year]
+        k0, vertical, at the initial void ratio.
+    change_index : ndarray, shape (n_sample, n_cell), [-]
+        ck, fall of void ratio per tenfold fall of permeability.
+    void_ratio : ndarray, shape (n_sample, n_cell), [-]
+        Initial void ratio e0.
+
+    Returns
+    -------
+    log_value, decline : ndarray, shape (n_sample, n_cell), [see Conductivity]
+        To be used with ``follows = 0`` and ``power = 1``.
+
+    Notes
+    -----
+    :math:`k = k_0\,10^{(e - e_0)/c_k}` (Tavenas et al. 1983) and
+    :math:`K = (k/\gamma_w)(1 + e_0)/(1 + e)`.
+
+    References
+    ----------
+    .. [1] F. Tavenas, P. Jean, P. Leblond and S. Leroueil, The permeability of natural soft clays,
+       part II, Can. Geotech. J. 20(4), 1983 (from memory, not opened).
+    """
+    log_value = np.log(permeability / WATER_UNIT_WEIGHT * (1.0 + void_ratio))
+    return log_value, np.log(10.0) / change_index
+
+
+def conductivity_from_cv(coefficient: FloatArray, lam: FloatArray, void_ratio: FloatArray) -> FloatArray:
+    r"""Return `log_value` for a constant coefficient of consolidation on the virgin line.
+
+    Parameters
+    ----------
+    coefficient : ndarray, shape (n_sample, n_cell), [m2/year]
+        cv in virgin compression.
+    lam : ndarray, shape (n_sample, n_cell), [-]
+        Lambda.
+    void_ratio : ndarray, shape (n_sample, n_cell), [-]
+        Initial void ratio e0.
+
+    Returns
+    -------
+    log_value : ndarray, shape (n_sample, n_cell), [see Conductivity]
+        To be used with ``follows = 1`` and ``power = 2``.
+
+    Notes
+    -----
+    :math:`k = c_v \gamma_w m_v` with :math:`m_v = \lambda / [(1 + e) \max(\sigma', \sigma'_p)]`:
+    below the preconsolidation stress the permeability is that on reaching it, so recompression is
+    faster by :math:`\lambda/\kappa` as the compressibility is smaller.
+    """
+    return np.asarray(np.log(coefficient * lam * (1.0 + void_ratio)), dtype=np.float64)
+
+
+def consolidate(
+    state: ClayState,
+    conductivity: Conductivity,
+    cells: Cells,
+    load: LoadHistory,
+    *,
+    times: FloatArray,
+    record: FloatArray,
+) -> ConsolidationResult:
+    r"""Return settlement and stress of the clay under a load history.
+
+    Parameters
+    ----------
+    state : ClayState
+        Cells before loading, arrays (n_sample, n_cell).
+    conductivity : Conductivity
+        Law of flow.
+    cells : Cells
+        Which cells join and which touch a drained face.
+    load : LoadHistory
+        Added stress through time.
+    times : ndarray, shape (n_time,), [years]
+        Ends of the time steps, rising, starting with ``load.time[0]``; no load knot may fall
+        inside a step.
+    record : ndarray, shape (n_record,), [years]
+        Times, all among `times` after the first, at which stresses are kept.
+
+    Returns
+    -------
+    result : ConsolidationResult
+        Settlement at every time, stresses at the recorded ones.
+
+    Raises
+    ------
+    ShapeError
+        If an array does not match the others.
+    ParameterError
+        If times do not rise, a load knot lies inside a step, a recorded time is not a step end, or a
+        stress, thickness or slope is out of range.
+
+    Notes
+    -----
+    With the material coordinate a (depth before loading) and excess pore pressure u,
+
+    .. math:: \frac{1}{1 + e_0}\frac{\partial e}{\partial t} = \frac{\partial}{\partial a}
+        \left[\frac{k}{\gamma_w}\frac{1 + e_0}{1 + e}\frac{\partial u}{\partial a}\right],
+        \qquad \sigma' = \sigma'_0 + \Delta\sigma - u
+
+    as in Gibson, England and Hussey (1967) without self-weight terms (the stress in situ is the
+    starting point). Cells conserve water exactly; conductances are harmonic means between cells
+    and use the mean logarithm of the half cell at a drained face; time follows the two-stage,
+    L-stable, second-order method of Alexander (1977); each stage is solved by Newton's method on
+    the effective stress with the slope of the branch in force. Preconsolidation stress follows at
+    the end of each step. Void ratio and conductivity are on the compression curve of
+    `compression.void_ratio_lost`. Only vertical flow; no creep.
+
+    References
+    ----------
+    .. [1] R. E. Gibson, G. L. England and M. J. L. Hussey, The theory of one-dimensional
+       consolidation of saturated clays, Geotechnique 17(3), 1967 (from memory, not opened).
+    .. [2] R. Alexander, Diagonally implicit Runge-Kutta methods for stiff O.D.E.'s, SIAM J. Numer.
+       Anal. 14(6), 1977 (from memory, not opened).
+    """
+    n_sample = _check(state, cells, load, times)
+    knot, weight = _placed(load.time, times)
+    slot = _slots(times, record)
+    lanes = Lanes(n_sample)
+    settlement = np.zeros((lanes.n_block, times.size - 1, LANES))
+    recorded = np.zeros((lanes.n_block, record.size, 2, cells.n_cell, LANES))
+    failed = np.zeros((lanes.n_block, LANES), dtype=np.int64)
+    consolidate_lanes(
+        _soil(lanes, state, conductivity),
+        Faces(
+            follows=conductivity.follows.astype(np.float64),
+            power=conductivity.power.astype(np.int64),
+            joined=cells.joined,
+            drained=cells.drained,
+        ),
+        Loading(
+            stress=np.stack([lanes.pack(stress) for stress in load.stress], axis=1),
+            spread=lanes.pack(load.spread),
+            water_depth=lanes.pack(load.water_depth[:, None])[:, 0, :],
+            water_weight=WATER_UNIT_WEIGHT,
+        ),
+        Schedule(step=np.diff(times), knot=knot, weight=weight, record=slot),
+        settlement,
+        recorded,
+        failed,
+    )
+    through_time = lanes.unpack(settlement)
+    kept = lanes.unpack(recorded)
+    return ConsolidationResult(
+        settlement=np.concatenate([np.zeros((n_sample, 1)), through_time], axis=1),
+        stress=kept[:, :, 0],
+        yield_stress=kept[:, :, 1],
+        converged=(failed.reshape(-1)[:n_sample] == 0) & np.isfinite(through_time).all(axis=1),
+    )
+
+
+def _soil(lanes: Lanes, state: ClayState, conductivity: Conductivity) -> Soil:
+    return Soil(
+        thickness=lanes.pack(state.thickness),
+        stress=lanes.pack(state.stress),
+        yield_stress=lanes.pack(state.yield_stress),
+        void_ratio=lanes.pack(state.void_ratio),
+        lam=lanes.pack(state.lam),
+        kap=lanes.pack(state.kap),
+        log_conductivity=lanes.pack(conductivity.log_value),
+        decline=lanes.pack(conductivity.decline),
+    )
+
+
+def _check(state: ClayState, cells: Cells, load: LoadHistory, times: FloatArray) -> int:
+    n_sample, n_cell = int(state.thickness.shape[0]), int(state.thickness.shape[1])
+    _check_state(state, (n_sample, n_cell))
+    if n_cell != cells.n_cell:
+        raise ShapeError(f"state has {n_cell} cells, cells has {cells.n_cell}")
+    if load.stress.shape != (load.time.size, n_sample, n_cell):
+        raise ShapeError(f"load.stress: shape {load.stress.shape} is not (n_knot, n_sample, n_cell)")
+    if times.size < 2 or not (np.diff(times) > 0.0).all():
+        raise ParameterError("times must rise and hold at least a start and an end")
+    if times[0] != load.time[0] or times[-1] > load.time[-1]:
+        raise ParameterError("times must start with the first load knot and end by the last")
+    return n_sample
+
+
+def _check_state(state: ClayState, expected: tuple[int, int]) -> None:
+    for name in state.__slots__:
+        shape = getattr(state, name).shape
+        if shape != expected:
+            raise ShapeError(f"state.{name}: shape {shape} is not (n_sample, n_cell) = {expected}")
+    for name in ("thickness", "stress", "void_ratio", "kap"):
+        checked(f"state.{name}", getattr(state, name), above=0.0)
+    if (state.yield_stress < state.stress).any() or (state.lam < state.kap).any():
+        raise ParameterError("state: yield_stress must not be below stress, nor lam below kap")
+
+
+def _placed(knot_time: FloatArray, times: FloatArray) -> tuple[IntArray, FloatArray]:
+    """Return, per step and stage, the load interval and the place in it (0 to 1)."""
+    step = np.diff(times)
+    stage_time = np.stack([times[:-1] + GAMMA * step, times[1:]], axis=1)
+    inside = np.searchsorted(times, knot_time[knot_time <= times[-1]])
+    if not np.isin(knot_time[knot_time <= times[-1]], times[np.minimum(inside, times.size - 1)]).all():
+        raise ParameterError("every load knot up to the end must be among times")
+    interval = np.searchsorted(knot_time, times[:-1], side="right") - 1
+    interval = np.minimum(interval, knot_time.size - 2)[:, None].repeat(2, axis=1)
+    length = knot_time[interval + 1] - knot_time[interval]
+    weight = np.clip((stage_time - knot_time[interval]) / length, 0.0, 1.0)
+    return np.ascontiguousarray(interval), np.ascontiguousarray(weight)
+
+
+def _slots(times: FloatArray, record: FloatArray) -> IntArray:
+    """Return the record slot of each step's end, -1 for none."""
+    slot = np.full(times.size - 1, -1, dtype=np.int64)
+    place = np.searchsorted(times, record)
+    if (place < 1).any() or (place >= times.size).any() or not np.array_equal(times[place], record):
+        raise ParameterError("every recorded time must be among times, after the first")
+    slot[place - 1] = np.arange(record.size)
+    return slot

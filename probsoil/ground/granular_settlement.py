@@ -1,0 +1,50 @@
+"""Settlement of granular layers, which drain as fast as they are loaded."""
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.applied_load import LoadedGround
+from probsoil.ground.profile import Values, column
+from probsoil.ground.site_model import SiteModel
+
+
+def granular_settlement(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:
+    r"""Return the settlement of the granular layers through time.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Layers, load knots and time axis.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points and added stress.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample, n_time), [m]
+        :math:`\sum \Delta\sigma\,\Delta z / M` over the points of granular layers.
+
+    Notes
+    -----
+    One-dimensional elastic compression with a constant constrained modulus (common practice); it
+    comes back when load is removed. The loss of weight of submerged fill is left out here, which
+    is on the large side.
+    """
+    n_sample = ground.points.depth.shape[0]
+    at_knots = np.zeros((site.knots.size, n_sample))
+    for index, layer in enumerate(site.layers):
+        if layer.is_clay:
+            continue
+        mine = ground.points.layer == index
+        modulus = column(values, f"{layer.name}.constrained_modulus", n_sample)
+        squeezed = (ground.load.stress[:, :, mine] * ground.points.thickness[:, mine]).sum(axis=2)
+        at_knots += squeezed / modulus
+    return _between_knots(site, at_knots)
+
+
+def _between_knots(site: SiteModel, at_knots: FloatArray) -> FloatArray:
+    knots, times = site.knots, site.times
+    after = np.clip(np.searchsorted(knots, times), 1, knots.size - 1)
+    share = (times - knots[after - 1]) / (knots[after] - knots[after - 1])
+    return np.asarray((at_knots[after - 1].T * (1.0 - share) + at_knots[after].T * share), dtype=np.float64)

@@ -1,0 +1,115 @@
+"""The quantity that each limit of a scenario watches, for every realisation."""
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.profile import Values, column
+from probsoil.ground.response import Response
+from probsoil.ground.site_model import SiteModel
+from probsoil.scenario.limits import (
+    ConsolidationLimit,
+    ConsolidationTimeLimit,
+    Limit,
+    SettlementLimit,
+    SlipSafetyLimit,
+)
+
+
+def limit_quantities(
+    site: SiteModel, limits: Sequence[Limit], response: Response, values: Values
+) -> FloatArray:
+    """Return the quantity of every limit, model error included.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Stages.
+    limits : sequence of Limit
+        The scenario's limits.
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address; the model errors are among them.
+
+    Returns
+    -------
+    quantity : ndarray, shape (n_sample, n_limit), [m], [-] or [years]
+        Not a number where the realisation did not converge; infinite where a degree of
+        consolidation is not reached by the horizon, or where there is no fill to slip.
+    """
+    watched = [_quantity(site, limit, response, values) for limit in limits]
+    quantity = np.stack(watched, axis=1)
+    quantity[~response.converged] = np.nan
+    return quantity
+
+
+def _quantity(site: SiteModel, limit: Limit, response: Response, values: Values) -> FloatArray:
+    if isinstance(limit, SettlementLimit):
+        return _settlement(limit, response, values)
+    if isinstance(limit, SlipSafetyLimit):
+        factor = slip_with_model_error(response, values)[:, _checks(site, limit)]
+        return np.asarray(factor.min(axis=1, initial=np.inf))
+    if isinstance(limit, ConsolidationLimit):
+        return response.degree_at_record[:, int(np.searchsorted(response.record, limit.at))]
+    return _time_to_degree(site, limit, response)
+
+
+def _settlement(limit: SettlementLimit, response: Response, values: Values) -> FloatArray:
+    error = column(values, "model_error.settlement", response.settlement.shape[0])
+    start, end = (0.0, limit.at) if limit.between is None else limit.between
+    settled = _settled(response, end) - _settled(response, start)
+    return np.asarray(error * settled)
+
+
+def _settled(response: Response, time: float | None) -> FloatArray:
+    return response.settlement[:, int(np.searchsorted(response.times, time or 0.0))]
+
+
+def slip_with_model_error(response: Response, values: Values) -> FloatArray:
+    """Return the factor of safety at every check, model error included.
+
+    Parameters
+    ----------
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    factor : ndarray, shape (n_sample, n_check), [-]
+        Least factor over the circles times measured over computed.
+    """
+    error = column(values, "model_error.stability", response.settlement.shape[0])
+    return np.asarray(error[:, None] * response.slip)
+
+
+def _checks(site: SiteModel, limit: SlipSafetyLimit) -> list[int]:
+    """Return which checks a limit looks at: one time, or every stage end with fill on the ground."""
+    wanted = {stage.end for stage in site.stages} if limit.at is None else {limit.at}
+    return [index for index, time in enumerate(site.slip_times) if float(time) in wanted]
+
+
+def _time_to_degree(site: SiteModel, limit: ConsolidationTimeLimit, response: Response) -> FloatArray:
+    """Return when the degree is first reached after the last stage, infinite if never.
+
+    Between two computed times the degree is taken as linear in the logarithm of the time since
+    the last stage, along which it is smooth.
+    """
+    first = int(np.searchsorted(response.times, site.last_change))
+    since = response.times[first:] - site.last_change
+    degree = response.degree[:, first:]
+    reached = degree >= limit.degree
+    index = np.where(reached.any(axis=1), reached.argmax(axis=1), -1)
+    rows = np.arange(index.size)
+    before = np.maximum(index - 1, 0)
+    low, high = degree[rows, before], degree[rows, index]
+    share = np.clip((limit.degree - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
+    start, end = since[before], since[index]
+    begun = np.where(start > 0.0, start, np.maximum(end, 1.0))  # a stand-in where there is no logarithm
+    logarithmic = begun * (np.maximum(end, begun) / begun) ** share
+    between = np.where(start > 0.0, logarithmic, share * end)
+    time = site.last_change + np.where(index == 0, 0.0, between)
+    return np.asarray(np.where(index < 0, np.inf, time), dtype=np.float64)

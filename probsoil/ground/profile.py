@@ -1,0 +1,258 @@
+"""The ground before loading, as arrays over realisations."""
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+
+import numpy as np
+
+from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.ground.compression import lambda_from_compression_index, lambda_from_compression_ratio
+from probsoil.ground.in_situ_stress import (
+    hydrostatic_pressure,
+    preconsolidation_stress,
+    total_vertical_stress,
+)
+from probsoil.ground.site_model import LayerForm, SiteModel
+from probsoil.ground.undrained_strength import (
+    m_from_friction_angle,
+    normally_consolidated_strength_ratio,
+    plastic_volumetric_ratio,
+)
+
+GREATEST_KAPPA_SHARE = 0.95  # of lambda; above it the two lines would cross
+_GRANULAR_POINTS = np.array([0.125, 0.375, 0.625, 0.875])  # depths of points, as shares of a granular layer
+_LEAST_STRESS = 0.01  # kPa; a floor for the very first millimetres below ground level
+
+Values = Mapping[str, FloatArray | float]
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Points:
+    """Depths at which the ground is looked at: clay cells and points in granular layers.
+
+    Attributes
+    ----------
+    layer : ndarray of int, shape (n_point,), [-]
+        Layer of each point, rising.
+    boundary : ndarray, shape (n_sample, n_layer + 1), [m]
+        Depths of layer boundaries.
+    depth, thickness : ndarray, shape (n_sample, n_point), [m]
+        Depth of each point and the thickness it stands for.
+    stress : ndarray, shape (n_sample, n_point), [kPa]
+        Effective vertical stress in situ.
+    """
+
+    layer: IntArray
+    boundary: FloatArray
+    depth: FloatArray
+    thickness: FloatArray
+    stress: FloatArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class ClayColumns:
+    """Properties of clay layers, one column per layer, zero for granular layers.
+
+    Attributes
+    ----------
+    lam, kap : ndarray, shape (n_sample, n_layer), [-]
+        Slopes of void ratio against the natural logarithm of stress.
+    void_ratio : ndarray, shape (n_sample, n_layer), [-]
+        Initial void ratio.
+    strength_ratio, strength_exponent : ndarray, shape (n_sample, n_layer), [-]
+        S and m of the undrained strength.
+    kappa_clipped : ndarray of bool, shape (n_sample, n_layer), [-]
+        Where kappa was brought down to its greatest share of lambda.
+    """
+
+    lam: FloatArray
+    kap: FloatArray
+    void_ratio: FloatArray
+    strength_ratio: FloatArray
+    strength_exponent: FloatArray
+    kappa_clipped: BoolArray
+
+
+def sample_size(values: Values) -> int:
+    """Return the number of realisations that a set of values holds.
+
+    Parameters
+    ----------
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address, each in its own unit.
+
+    Returns
+    -------
+    n_sample : int, [-]
+        Length of the arrays; 1 where all values are fixed.
+    """
+    sizes = {np.size(value) for value in values.values() if np.ndim(value) == 1}
+    return max(sizes, default=1)
+
+
+def column(values: Values, address: str, n_sample: int) -> FloatArray:
+    """Return one quantity for every realisation.
+
+    Parameters
+    ----------
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    address : str
+        Which quantity.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    value : ndarray, shape (n_sample,), [unit of the quantity]
+        The quantity, repeated where it is fixed.
+    """
+    return np.array(np.broadcast_to(np.asarray(values[address], dtype=np.float64), (n_sample,)))
+
+
+def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
+    """Return depths and stresses in situ of every point of the profile.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Layers and cells.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    points : Points
+        Clay cells and four points in every granular layer, from ground level down.
+    """
+
+    def per_layer(key: Callable[[LayerForm], str]) -> FloatArray:
+        columns = [column(values, f"{layer.name}.{key(layer)}", n_sample) for layer in site.layers]
+        return np.stack(columns, axis=1)
+
+    thickness = per_layer(lambda _: "thickness")
+    boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(thickness, axis=1)], axis=1)
+    layer, centre, share = _relative_points(site)
+    depth = boundary[:, layer] + centre * thickness[:, layer]
+    water_table = column(values, "site.water_table", n_sample)
+    total = total_vertical_stress(
+        depth,
+        boundary,
+        unit_weight=per_layer(lambda _: "unit_weight"),
+        unit_weight_above=per_layer(lambda form: "unit_weight_above" if form.weight_above else "unit_weight"),
+        water_table=water_table,
+    )
+    effective = np.maximum(total - hydrostatic_pressure(depth, water_table), _LEAST_STRESS)
+    return Points(
+        layer=layer, boundary=boundary, depth=depth, thickness=share * thickness[:, layer], stress=effective
+    )
+
+
+def _relative_points(site: SiteModel) -> tuple[IntArray, FloatArray, FloatArray]:
+    """Return layer, centre and share (of its layer's thickness) of every point."""
+    layer, centre, share = [], [], []
+    for index, form in enumerate(site.layers):
+        if form.is_clay:
+            mine = site.cells.layer == index
+            centre.append(site.cells.centre[mine])
+            share.append(site.cells.share[mine])
+        else:
+            centre.append(_GRANULAR_POINTS)
+            share.append(np.full(_GRANULAR_POINTS.size, 1.0 / _GRANULAR_POINTS.size))
+        layer.append(np.full(centre[-1].size, index, dtype=np.int64))
+    return np.concatenate(layer), np.concatenate(centre), np.concatenate(share)
+
+
+def clay_columns(site: SiteModel, values: Values, n_sample: int) -> ClayColumns:
+    """Return the properties of the clay layers in their basic form.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Which form each layer's properties have.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    columns : ClayColumns
+        Lambda, kappa, void ratio and undrained strength ratio of every layer.
+    """
+    shape = (n_sample, len(site.layers))
+    lam, kap, void, ratio, exponent = (np.zeros(shape) for _ in range(5))
+    clipped = np.zeros(shape, dtype=np.bool_)
+    for index, layer in enumerate(site.layers):
+        if not layer.is_clay:
+            continue
+        void[:, index] = column(values, f"{layer.name}.void_ratio", n_sample)
+        lam[:, index] = _slope(layer.name, layer.compression, values, void[:, index])
+        swelling = _slope(layer.name, layer.swelling, values, void[:, index])
+        greatest = GREATEST_KAPPA_SHARE * lam[:, index]
+        clipped[:, index] = swelling > greatest
+        kap[:, index] = np.minimum(swelling, greatest)
+        ratio[:, index], exponent[:, index] = _strength(layer, values, lam[:, index], kap[:, index])
+    return ClayColumns(
+        lam=lam,
+        kap=kap,
+        void_ratio=void,
+        strength_ratio=ratio,
+        strength_exponent=exponent,
+        kappa_clipped=clipped,
+    )
+
+
+def _slope(name: str, form: str, values: Values, void_ratio: FloatArray) -> FloatArray:
+    given = column(values, f"{name}.{form}", void_ratio.size)
+    if form in ("lambda", "kappa"):
+        return given
+    if form in ("Cc", "Cs"):
+        return lambda_from_compression_index(given)
+    return lambda_from_compression_ratio(given, void_ratio)
+
+
+def _strength(
+    layer: LayerForm, values: Values, lam: FloatArray, kap: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    if layer.strength_given:
+        return (
+            column(values, f"{layer.name}.strength_S", lam.size),
+            column(values, f"{layer.name}.strength_m", lam.size),
+        )
+    friction = column(values, f"{layer.name}.{layer.friction}", lam.size)
+    m = friction if layer.friction == "M" else m_from_friction_angle(friction)
+    ratio = plastic_volumetric_ratio(lam, kap)
+    return normally_consolidated_strength_ratio(m, ratio), ratio
+
+
+def yield_stresses(site: SiteModel, values: Values, points: Points) -> tuple[FloatArray, BoolArray]:
+    """Return the preconsolidation stress of every point, and where the present stress is its floor.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Which form each layer's preconsolidation stress has.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    points : Points
+        Where.
+
+    Returns
+    -------
+    stress : ndarray, shape (n_sample, n_point), [kPa]
+        Preconsolidation stress; in granular layers the stress in situ.
+    floored : ndarray of bool, shape (n_sample, n_point), [-]
+        Where the stress in situ replaced a smaller number.
+    """
+    stress, floored = points.stress.copy(), np.zeros(points.stress.shape, dtype=np.bool_)
+    for index, layer in enumerate(site.layers):
+        if layer.is_clay:
+            mine = points.layer == index
+            given = column(values, f"{layer.name}.{layer.yielding}", points.stress.shape[0])
+            stress[:, mine], floored[:, mine] = preconsolidation_stress(
+                points.stress[:, mine], layer.yielding, given
+            )
+    return stress, floored

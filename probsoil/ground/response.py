@@ -1,0 +1,192 @@
+"""The ground's answer to the works, for many realisations at once."""
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.ground.applied_load import LoadedGround, applied_load
+from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
+from probsoil.ground.consolidation import ConsolidationResult
+from probsoil.ground.granular_settlement import granular_settlement
+from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
+from probsoil.ground.site_model import SiteModel
+from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+
+COMPETING = 0.05
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Response:
+    """What the ground does in every realisation, without model error.
+
+    Attributes
+    ----------
+    times : ndarray, shape (n_time,), [years]
+        Time axis.
+    settlement : ndarray, shape (n_sample, n_time), [m]
+        Settlement of ground level at the centreline.
+    degree : ndarray, shape (n_sample, n_time), [-]
+        Degree of consolidation of the clay under the load of each time from the end of the last
+        stage on; not a number before it.
+    record : ndarray, shape (n_record,), [years]
+        Times at which the following is kept.
+    degree_at_record : ndarray, shape (n_sample, n_record), [-]
+        Degree of consolidation under the load present at those times.
+    slip_times : ndarray, shape (n_check,), [years]
+        Times at which slip was looked at.
+    slip : ndarray, shape (n_sample, n_check), [-]
+        Least factor of safety.
+    critical_circle : ndarray of int, shape (n_sample, n_check), [-]
+        Its index in the family of that time.
+    converged : ndarray of bool, shape (n_sample,), [-]
+        Whether the consolidation was solved to tolerance.
+    floored : ndarray of bool, shape (n_sample,), [-]
+        Whether the preconsolidation stress was raised to the stress in situ anywhere.
+    kappa_clipped : ndarray of bool, shape (n_sample,), [-]
+        Whether kappa was brought below lambda in any layer.
+    """
+
+    times: FloatArray
+    settlement: FloatArray
+    degree: FloatArray
+    record: FloatArray
+    degree_at_record: FloatArray
+    slip_times: FloatArray
+    slip: FloatArray
+    critical_circle: IntArray
+    converged: BoolArray
+    floored: BoolArray
+    kappa_clipped: BoolArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class GroundState:
+    """Everything behind a `Response`, for a calculation sheet.
+
+    Attributes
+    ----------
+    ground : LoadedGround
+        The ground before loading and the stress that is added.
+    consolidation : ConsolidationResult
+        Answer of the clay.
+    granular_settlement : ndarray, shape (n_sample, n_time), [m]
+        Settlement of the granular layers.
+    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+        Undrained strength at the recorded times beyond the toe, under the slope and under the
+        crest, with the mode factor; zero in granular layers.
+    strength_before : ndarray, shape (n_sample, n_point), [kPa]
+        The same before loading.
+    response : Response
+        The answer.
+    """
+
+    ground: LoadedGround
+    consolidation: ConsolidationResult
+    granular_settlement: FloatArray
+    strength: FloatArray
+    strength_before: FloatArray
+    response: Response
+
+
+def respond(site: SiteModel, values: Values) -> Response:
+    """Return what the ground does, for every realisation.
+
+    Parameters
+    ----------
+    site : SiteModel
+        What no realisation changes.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address, each in its own unit.
+
+    Returns
+    -------
+    response : Response
+        Settlement, degree of consolidation and slip safety.
+    """
+    return ground_state(site, values).response
+
+
+def ground_state(site: SiteModel, values: Values) -> GroundState:
+    """Return what the ground does with all that led to it.
+
+    Parameters
+    ----------
+    site : SiteModel
+        What no realisation changes.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address, each in its own unit.
+
+    Returns
+    -------
+    state : GroundState
+        Stresses, strengths and the response.
+
+    Notes
+    -----
+    The consolidation is solved below the centreline. Under the middle of the slope the clay is
+    taken to have consolidated to the same degree at each depth under its smaller stress; beyond
+    the toe nothing changes. Granular layers settle at once with the added stress over their
+    constrained modulus.
+    """
+    n_sample = sample_size(values)
+    points = points_in_situ(site, values, n_sample)
+    columns = clay_columns(site, values, n_sample)
+    yield_stress, floored = yield_stresses(site, values, points)
+    load = applied_load(site, values, points.depth)
+    clay = np.array([site.layers[index].is_clay for index in points.layer])
+    ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
+    result = consolidate_clay(site, values, ground)
+    granular = granular_settlement(site, values, ground)
+    strength, before = zone_strengths(site, values, ground, result)
+    slip, critical = slip_at_checks(site, values, ground, strength)
+    at_record, after_last = degrees_of_consolidation(site, ground, result)
+    response = Response(
+        times=site.times,
+        settlement=result.settlement + granular,
+        degree=after_last,
+        record=site.record,
+        degree_at_record=at_record,
+        slip_times=site.slip_times,
+        slip=slip,
+        critical_circle=critical,
+        converged=result.converged,
+        floored=np.asarray(floored.any(axis=1)),
+        kappa_clipped=np.asarray(columns.kappa_clipped.any(axis=1)),
+    )
+    return GroundState(
+        ground=ground,
+        consolidation=result,
+        granular_settlement=granular,
+        strength=strength,
+        strength_before=before,
+        response=response,
+    )
+
+
+def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> SiteModel:
+    """Return the site with only those slip circles that compete in a set of pilot realisations.
+
+    Parameters
+    ----------
+    site : SiteModel
+        With full families of circles.
+    pilot : mapping of str to ndarray, shape (n_sample,), or float
+        Values of every quantity, spread more widely than the realisations to come.
+    within : float, [-]
+        A circle stays if its factor comes this close (as a share) to the least one anywhere.
+
+    Returns
+    -------
+    site : SiteModel
+        The same, with smaller families.
+
+    Notes
+    -----
+    Which circle is critical changes little between realisations, so most of a dense family is
+    never close. What the screening may have lost is part of the discretisation error that a
+    campaign reports, measured against a full and denser family.
+    """
+    state = ground_state(site, pilot)
+    families = competing_families(site, pilot, state.ground, state.strength, within=within)
+    return replace(site, families=families)

@@ -1,0 +1,374 @@
+"""What of a scenario is the same in every realisation: layers in order, shape and stages of the load."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.cells import DEFAULT_CELLS, Cells, graded_cells
+from probsoil.ground.slip_circles import CircleFamily, EmbankmentSection, circle_family
+from probsoil.ground.time_steps import time_axis
+from probsoil.scenario import Scenario
+from probsoil.scenario.layers import ClayLayer, GranularLayer
+from probsoil.scenario.loads import EmbankmentLoad
+
+_REPORT_TIMES = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0)  # years, for tables and curves
+_DEEPER = 1.25  # circles reach this far below the mean bottom of the profile, for thicker realisations
+_WIDTHS = 0.75  # and never deeper than this share of the embankment's base
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LayerForm:
+    """Which numbers describe a layer; the numbers themselves come with each realisation.
+
+    Attributes
+    ----------
+    name : str
+        Name of the layer, first part of its addresses.
+    is_clay : bool
+        Whether it consolidates; otherwise it is granular.
+    mean_thickness : float, [m]
+        For the layout of cells.
+    compression, swelling : str
+        Key of the slope in virgin compression (lambda, Cc or CR) and in reloading (kappa, Cs or RR).
+    yielding : str
+        Key of the preconsolidation stress (preconsolidation, ocr or pop).
+    friction : str
+        M or phi.
+    flow : str
+        cv or k.
+    strength_given : bool
+        Whether S and m replace the strength that follows from M, lambda and kappa.
+    weight_above : bool
+        Whether the part above the water table has a unit weight of its own.
+    """
+
+    name: str
+    is_clay: bool
+    mean_thickness: float
+    compression: str = "lambda"
+    swelling: str = "kappa"
+    yielding: str = "pop"
+    friction: str = "phi"
+    flow: str = "k"
+    strength_given: bool = False
+    weight_above: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class StageForm:
+    """One change of load, spread evenly between two times.
+
+    Attributes
+    ----------
+    name : str
+        Name of the stage.
+    start, end : float, [years]
+        When it begins and ends.
+    height : float, [m]
+        Fill laid (negative: taken away).
+    pressure : float, [kPa]
+        Pressure added besides the fill.
+    """
+
+    name: str
+    start: float
+    end: float
+    height: float = 0.0
+    pressure: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Embankment:
+    """Cross-section of a long embankment.
+
+    Attributes
+    ----------
+    crest_width : float, [m]
+        Width of the top at the greatest height.
+    side_slope : float, [-]
+        Horizontal run per unit of rise.
+    full_height : float, [m]
+        Greatest height.
+    """
+
+    crest_width: float
+    side_slope: float
+    full_height: float
+
+    @property
+    def base_width(self) -> float:
+        """Width at ground level, the same while the fill rises, [m]."""
+        return self.crest_width + 2.0 * self.side_slope * self.full_height
+
+    def top_width(self, height: float) -> float:
+        """Return the width of the top at a fill height, [m].
+
+        Parameters
+        ----------
+        height : float, [m]
+            Height of fill.
+
+        Returns
+        -------
+        width : float, [m]
+            Width of the top.
+        """
+        return self.base_width - 2.0 * self.side_slope * height
+
+    def section(self, height: float) -> EmbankmentSection:
+        """Return the cross-section at a fill height.
+
+        Parameters
+        ----------
+        height : float, [m]
+            Height of fill.
+
+        Returns
+        -------
+        section : EmbankmentSection
+            For slip circles.
+        """
+        return EmbankmentSection(
+            height=height,
+            side_slope=self.side_slope,
+            base_width=self.base_width,
+            full_height=self.full_height,
+        )
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class SiteModel:
+    """Everything about ground and load that no realisation changes.
+
+    Attributes
+    ----------
+    layers : tuple of LayerForm
+        From ground level down.
+    base_drained : bool
+        Whether what lies below the last layer drains freely.
+    embankment : Embankment or None
+        None for a load over a wide area.
+    stages : tuple of StageForm
+        In order of time.
+    submergence : bool
+        Whether fill that sinks below the water table loses weight.
+    horizon : float, [years]
+        End of the time axis.
+    cells : Cells
+        Consolidation cells.
+    times : ndarray, shape (n_time,), [years]
+        Time axis of the computation.
+    record : ndarray, shape (n_record,), [years]
+        Times at which stresses are kept: stage ends, the times of limits that need them, the horizon.
+    slip_times : ndarray, shape (n_check,), [years]
+        Times among `record` at which slip is looked at (fill on the ground).
+    families : tuple of CircleFamily
+        One for each of `slip_times`.
+    """
+
+    layers: tuple[LayerForm, ...]
+    base_drained: bool
+    embankment: Embankment | None
+    stages: tuple[StageForm, ...]
+    submergence: bool
+    horizon: float
+    cells: Cells
+    times: FloatArray
+    record: FloatArray
+    slip_times: FloatArray
+    families: tuple[CircleFamily, ...]
+
+    @property
+    def knots(self) -> FloatArray:
+        """Times at which the load is given, linear between, shape (n_knot,), [years]."""
+        times = {0.0, self.horizon, *(t for stage in self.stages for t in (stage.start, stage.end))}
+        return np.array(sorted(times))
+
+    def fill_height(self, time: float) -> float:
+        """Return the height of fill at a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        height : float, [m]
+            Fill on the ground.
+        """
+        return sum(stage.height * _laid(stage, time) for stage in self.stages)
+
+    def pressure(self, time: float) -> float:
+        """Return the pressure that stages have added besides fill.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        pressure : float, [kPa]
+            Pressure on the ground.
+        """
+        return sum(stage.pressure * _laid(stage, time) for stage in self.stages)
+
+    @property
+    def last_change(self) -> float:
+        """End of the last stage, [years]."""
+        return self.stages[-1].end
+
+
+def _laid(stage: StageForm, time: float) -> float:
+    return min(max((time - stage.start) / (stage.end - stage.start), 0.0), 1.0)
+
+
+def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
+    """Return the part of a scenario that no realisation changes, with its cells, times and circles.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    refine : int, [-]
+        Cells and time steps are this many times finer, and circles denser by half as much again in
+        each of their three dimensions; 1 for campaigns, 2 to measure the discretisation error.
+
+    Returns
+    -------
+    model : SiteModel
+        Ready for `response.respond`.
+    """
+    layers = tuple(_layer_form(layer) for layer in scenario.layers)
+    stages = tuple(
+        StageForm(
+            name=stage.name,
+            start=stage.start,
+            end=stage.end,
+            height=stage.height or 0.0,
+            pressure=stage.pressure or 0.0,
+        )
+        for stage in scenario.stages
+    )
+    embankment = _embankment(scenario, stages)
+    record, slip_times = _wanted(scenario, stages, embankment)
+    horizon = float(scenario.horizon)
+    cells = graded_cells(
+        np.array([layer.mean_thickness for layer in layers]),
+        np.array([layer.is_clay for layer in layers]),
+        base_drained=scenario.site.base == "drained",
+        target=DEFAULT_CELLS * refine,
+    )
+    ramps = [(stage.start, stage.end) for stage in stages]
+    report = [time for time in _REPORT_TIMES if time < horizon]
+    wanted = [*record, *_limit_times(scenario), *report]
+    families = _families(embankment, layers, stages, slip_times, density=0.5 * (1.0 + refine))
+    return SiteModel(
+        layers=layers,
+        base_drained=scenario.site.base == "drained",
+        embankment=embankment,
+        stages=stages,
+        submergence=bool(scenario.load.submergence),
+        horizon=horizon,
+        cells=cells,
+        times=time_axis(ramps, wanted, horizon, refine=refine),
+        record=record,
+        slip_times=slip_times,
+        families=families,
+    )
+
+
+def _layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
+    if isinstance(layer, GranularLayer):
+        return LayerForm(
+            name=layer.name,
+            is_clay=False,
+            mean_thickness=layer.thickness.expectation,
+            weight_above=layer.unit_weight_above is not None,
+        )
+    yielding = next(
+        key for key in ("stress", "ocr", "pop") if getattr(layer.preconsolidation, key) is not None
+    )
+    return LayerForm(
+        name=layer.name,
+        is_clay=True,
+        mean_thickness=layer.thickness.expectation,
+        compression=_given(layer, {"lambda_": "lambda", "Cc": "Cc", "CR": "CR"}),
+        swelling=_given(layer, {"kappa": "kappa", "Cs": "Cs", "RR": "RR"}),
+        yielding="preconsolidation" if yielding == "stress" else yielding,
+        friction=_given(layer, {"M": "M", "phi": "phi"}),
+        flow="cv" if layer.permeability.cv is not None else "k",
+        strength_given=layer.strength is not None,
+        weight_above=layer.unit_weight_above is not None,
+    )
+
+
+def _given(layer: ClayLayer, keys: dict[str, str]) -> str:
+    return next(key for attribute, key in keys.items() if getattr(layer, attribute) is not None)
+
+
+def _embankment(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment | None:
+    if not isinstance(scenario.load, EmbankmentLoad):
+        return None
+    full_height = float(np.cumsum([stage.height for stage in stages]).max())
+    return Embankment(
+        crest_width=scenario.load.crest_width, side_slope=scenario.load.side_slope, full_height=full_height
+    )
+
+
+def _limit_times(scenario: Scenario) -> list[float]:
+    times: list[float] = []
+    for limit in scenario.limits:
+        at, between = getattr(limit, "at", None), getattr(limit, "between", None)
+        times += [] if at is None else [at]
+        times += [] if between is None else list(between)
+        if limit.quantity == "time_to_consolidation" and limit.threshold <= scenario.horizon:
+            times.append(limit.threshold)
+    return times
+
+
+def _wanted(
+    scenario: Scenario, stages: Sequence[StageForm], embankment: Embankment | None
+) -> tuple[FloatArray, FloatArray]:
+    """Return the times at which stresses are kept, and those at which slip is looked at."""
+    ends = {stage.end for stage in stages}
+    degree = {limit.at for limit in scenario.limits if limit.quantity == "degree_of_consolidation"}
+    slip = {limit.at for limit in scenario.limits if limit.quantity == "slip_safety" and limit.at is not None}
+    kept = ends | degree | slip | {float(scenario.horizon)}
+    record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
+    if embankment is None:
+        return record, np.zeros(0)
+    check = [time for time in sorted(ends | slip) if time > 0.0 and _height(stages, time) > 0.0]
+    return record, np.array(check, dtype=np.float64)
+
+
+def _height(stages: Sequence[StageForm], time: float) -> float:
+    height = sum(stage.height * _laid(stage, time) for stage in stages)
+    return height if height > 1e-9 else 0.0  # a removal may leave a rounding error behind
+
+
+def _families(
+    embankment: Embankment | None,
+    layers: Sequence[LayerForm],
+    stages: Sequence[StageForm],
+    slip_times: FloatArray,
+    *,
+    density: float,
+) -> tuple[CircleFamily, ...]:
+    if embankment is None:
+        return ()
+    bottom = sum(layer.mean_thickness for layer in layers)
+    depth = min(_DEEPER * bottom, _WIDTHS * embankment.base_width)
+    frictional = any(not layer.is_clay for layer in layers)
+    return tuple(
+        circle_family(
+            embankment.section(_height(stages, float(time))),
+            depth=depth,
+            density=density,
+            frictional_ground=frictional,
+        )
+        for time in slip_times
+    )

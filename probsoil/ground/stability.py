@@ -1,0 +1,169 @@
+"""Strength of the ground through the stages and the safety against a slip that it gives."""
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from probsoil._typing import FloatArray, IntArray
+from probsoil.ground.applied_load import LoadedGround, stress_at
+from probsoil.ground.consolidation import ConsolidationResult
+from probsoil.ground.profile import Values, column
+from probsoil.ground.site_model import SiteModel
+from probsoil.ground.slip import FillStrength, GroundStrength, competing_circles, slip_safety
+from probsoil.ground.slip_circles import N_ZONE, CircleFamily
+from probsoil.ground.undrained_strength import undrained_shear_strength
+
+
+def zone_strengths(
+    site: SiteModel, values: Values, ground: LoadedGround, result: ConsolidationResult
+) -> tuple[FloatArray, FloatArray]:
+    """Return the undrained strength of the clay in three zones at the recorded times.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Recorded times.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    result : ConsolidationResult
+        Stresses below the centreline.
+
+    Returns
+    -------
+    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+        Beyond the toe, under the slope and under the crest; zero in granular layers.
+    before : ndarray, shape (n_sample, n_point), [kPa]
+        Before loading.
+
+    Notes
+    -----
+    With the mode factor of the site, which brings triaxial compression to the average along a
+    slip surface. Under the crest the stresses are those below the centreline; under the slope
+    their gain is reduced in proportion to the elastic stress there; beyond the toe they do not
+    change.
+    """
+    n_sample = ground.points.depth.shape[0]
+    mode = column(values, "site.mode_factor", n_sample)[:, None]
+    clay, n_point = ground.clay, ground.points.layer.size
+    layer = ground.points.layer[clay]
+    ratio = ground.columns.strength_ratio[:, layer]
+    exponent = ground.columns.strength_exponent[:, layer]
+    stress0, yield0 = ground.points.stress[:, clay], ground.yield_stress[:, clay]
+    gain = {0: np.zeros_like(stress0), 1: ground.load.slope_share[:, clay], 2: np.ones_like(stress0)}
+    strength = np.zeros((site.record.size, n_sample, N_ZONE, n_point))
+    for slot in range(site.record.size):
+        for zone in range(N_ZONE):
+            stress = stress0 + gain[zone] * (result.stress[:, slot] - stress0)
+            largest = stress0 + gain[zone] * (result.yield_stress[:, slot] - stress0)
+            past = np.maximum(np.maximum(yield0, largest), stress)
+            su = undrained_shear_strength(stress, past, ratio, exponent)
+            strength[slot, :, zone, clay] = (mode * su).T
+    before = np.zeros((n_sample, n_point))
+    before[:, clay] = mode * undrained_shear_strength(stress0, yield0, ratio, exponent)
+    return strength, before
+
+
+def slip_at_checks(
+    site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray
+) -> tuple[FloatArray, IntArray]:
+    """Return the least factor of safety at every time at which slip is looked at.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Times and families of circles.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points and added stress.
+    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+        Undrained strength at the recorded times.
+
+    Returns
+    -------
+    factor : ndarray, shape (n_sample, n_check), [-]
+        Least factor of safety.
+    critical : ndarray of int, shape (n_sample, n_check), [-]
+        Index of the circle in the family of that time.
+    """
+    n_sample, n_check = ground.points.depth.shape[0], site.slip_times.size
+    factor, critical = np.empty((n_sample, n_check)), np.empty((n_sample, n_check), dtype=np.int64)
+    for check, (here, fill) in enumerate(_sections(site, values, ground, strength)):
+        factor[:, check], critical[:, check] = slip_safety(here, fill, site.families[check])
+    return factor, critical
+
+
+def competing_families(
+    site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray, *, within: float
+) -> tuple[CircleFamily, ...]:
+    """Return the circles that come near to being critical in some of the given realisations.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Times and families of circles.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points and added stress.
+    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+        Undrained strength at the recorded times.
+    within : float, [-]
+        How far above the least factor a circle may be, as a share of it.
+
+    Returns
+    -------
+    families : tuple of CircleFamily
+        One for each time at which slip is looked at.
+    """
+    sections = _sections(site, values, ground, strength)
+    return tuple(
+        competing_circles(here, fill, family, within=within)
+        for (here, fill), family in zip(sections, site.families, strict=True)
+    )
+
+
+def _sections(
+    site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray
+) -> Iterator[tuple[GroundStrength, FillStrength]]:
+    """Yield the strength of ground and fill at every time at which slip is looked at."""
+    if site.slip_times.size == 0:
+        return
+    n_sample = ground.points.depth.shape[0]
+    fill = FillStrength(
+        unit_weight=column(values, "load.fill_unit_weight", n_sample),
+        friction_angle=column(values, "load.fill_phi", n_sample),
+        cohesion=column(values, "load.fill_cohesion", n_sample),
+    )
+    tangent = _tangents(site, values, ground)
+    for time in site.slip_times:
+        slot = int(np.searchsorted(site.record, time))
+        here = GroundStrength(
+            boundary=ground.points.boundary,
+            point_layer=ground.points.layer,
+            point_depth=ground.points.depth,
+            cohesive=strength[slot],
+            frictional=_frictional(site, ground, tangent, float(time)),
+        )
+        yield here, fill
+
+
+def _tangents(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:
+    """Return tan(phi) at every point, zero in clay."""
+    n_sample = ground.points.depth.shape[0]
+    tangent = np.zeros((n_sample, ground.points.layer.size))
+    for index, layer in enumerate(site.layers):
+        if not layer.is_clay:
+            angle = column(values, f"{layer.name}.phi", n_sample)
+            tangent[:, ground.points.layer == index] = np.tan(np.radians(angle))[:, None]
+    return tangent
+
+
+def _frictional(site: SiteModel, ground: LoadedGround, tangent: FloatArray, time: float) -> FloatArray | None:
+    if all(layer.is_clay for layer in site.layers):
+        return None
+    added = stress_at(site, ground.load, time)
+    shares = (np.zeros_like(added), ground.load.slope_share, np.ones_like(added))
+    return np.stack([(ground.points.stress + share * added) * tangent for share in shares], axis=1)

@@ -1,0 +1,76 @@
+"""When the consolidation is computed: short steps after each change of load, then longer ones."""
+
+from collections.abc import Sequence
+from itertools import pairwise
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.errors import ParameterError
+
+GROWTH = 1.4
+_FIRST_SHARE = 0.25  # of the ramp that ends where the steps begin
+_NEAR = 0.3  # a free step that ends this close (in steps) to a wanted time gives way
+
+
+def time_axis(
+    ramps: Sequence[tuple[float, float]], wanted: Sequence[float], horizon: float, *, refine: int = 1
+) -> FloatArray:
+    """Return the times at which the ground is computed.
+
+    Parameters
+    ----------
+    ramps : sequence of (float, float), [years]
+        Start and end of each change of load, in order, none overlapping.
+    wanted : sequence of float, [years]
+        Further times that must be hit exactly.
+    horizon : float, [years]
+        End of the axis.
+    refine : int, [-]
+        Steps are about this many times shorter.
+
+    Returns
+    -------
+    times : ndarray, shape (n_time,), [years]
+        Rising from 0 to `horizon`; every start and end of a ramp and every wanted time is on it.
+
+    Raises
+    ------
+    ParameterError
+        If a wanted time or a ramp lies outside 0 to `horizon`.
+
+    Notes
+    -----
+    From each start and end of a ramp the steps grow by a constant factor, beginning with a
+    quarter of that ramp's length: excess pore pressure decays on every time scale at once, and
+    a geometric sequence resolves them alike.
+    """
+    knots = sorted({0.0, horizon, *(t for ramp in ramps for t in ramp)})
+    if knots[0] < 0.0 or knots[-1] > horizon or any(not 0.0 <= t <= horizon for t in wanted):
+        raise ParameterError(f"all times must lie from 0 to the horizon of {horizon:g} years")
+    length = {start: end - start for start, end in ramps} | {end: end - start for start, end in ramps}
+    pieces = []
+    for start, end in pairwise(knots):
+        first = _FIRST_SHARE * length.get(start, 4.0 * (end - start))
+        pieces.append(_piece(start, end, first / refine, GROWTH ** (1.0 / refine)))
+    free = np.concatenate([[0.0], *pieces])
+    fixed = np.unique(np.concatenate([knots, np.asarray(wanted, dtype=np.float64)]))
+    return _with(free, fixed)
+
+
+def _piece(start: float, end: float, first: float, growth: float) -> FloatArray:
+    """Return step ends after `start` up to and with `end`, growing from about `first`."""
+    span = end - start
+    first = min(first, span)
+    number = int(np.ceil(np.log1p(span * (growth - 1.0) / first) / np.log(growth) - 1e-9))
+    steps = growth ** np.arange(number)
+    ends = start + span * np.cumsum(steps) / steps.sum()
+    ends[-1] = end
+    return ends
+
+
+def _with(free: FloatArray, fixed: FloatArray) -> FloatArray:
+    """Return `free` joined with `fixed`, without free times that crowd a fixed one."""
+    step = np.gradient(free)
+    nearest = np.abs(free[:, None] - fixed[None, :]).min(axis=1)
+    return np.unique(np.concatenate([free[nearest > _NEAR * step], fixed]))

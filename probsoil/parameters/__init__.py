@@ -1,0 +1,25 @@
+"""Marginals, dependence, spatial averaging and the points at which a model is run."""
+
+from probsoil.parameters.dependence import correlation_blocks, latent_correlation, rank_correlation
+from probsoil.parameters.designs import Design, LatinHypercube, MonteCarlo, ScrambledSobol, design
+from probsoil.parameters.marginals import Marginal, marginal
+from probsoil.parameters.space import ParameterSpace, ParameterSummary, parameter_space
+from probsoil.parameters.spatial_averaging import averaged_variance, variance_function
+
+__all__ = [
+    "Design",
+    "LatinHypercube",
+    "Marginal",
+    "MonteCarlo",
+    "ParameterSpace",
+    "ParameterSummary",
+    "ScrambledSobol",
+    "averaged_variance",
+    "correlation_blocks",
+    "design",
+    "latent_correlation",
+    "marginal",
+    "parameter_space",
+    "rank_correlation",
+    "variance_function",
+]

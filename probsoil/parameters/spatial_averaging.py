@@ -1,0 +1,85 @@
+"""How much of the point-to-point variability of a property is left in a layer average."""
+
+import numpy as np
+
+from probsoil._typing import ArrayLike, FloatArray
+from probsoil.errors import ParameterError
+
+_SERIES_BELOW = 0.25  # the closed form loses digits to cancellation at smaller ratios
+_SERIES_TERMS = 16
+
+
+def variance_function(ratio: ArrayLike) -> FloatArray:
+    r"""Variance of a layer average over the variance at a point.
+
+    Parameters
+    ----------
+    ratio : array_like, shape (...,), [-]
+        Averaging length over the scale of fluctuation, :math:`q = L / \delta`, zero or more.
+
+    Returns
+    -------
+    reduction : ndarray, shape (...,), [-]
+        Variance function :math:`\Gamma^2`, from 1 (very thin layer) down to 0.
+
+    Raises
+    ------
+    ParameterError
+        If a ratio is negative or not a number.
+
+    Notes
+    -----
+    For the exponential (Markov) correlation :math:`\rho(\tau) = \exp(-2 |\tau| / \delta)`
+
+    .. math:: \Gamma^2 = \frac{2 q - 1 + e^{-2 q}}{2 q^2}.
+
+    Below :math:`q = 0.25` its power series replaces it, because the closed form loses digits.
+
+    References
+    ----------
+    .. [1] E. Vanmarcke, "Probabilistic modeling of soil profiles", Journal of the Geotechnical
+       Engineering Division, ASCE, 103(GT11), 1977 (recalled; not opened).
+    """
+    q = np.asarray(ratio, dtype=np.float64)
+    bad = ~(q >= 0.0)
+    if bad.any():
+        raise ParameterError(f"ratio must be >= 0; got {q[bad].flat[0]:g} ({bad.sum()} of {q.size} values)")
+    thin = q < _SERIES_BELOW
+    thick = np.where(thin, 1.0, q)
+    closed = (1.0 / thick) * (1.0 + np.expm1(-2.0 * thick) / (2.0 * thick))
+    return np.where(thin, _series(np.where(thin, q, 0.0)), closed)
+
+
+def _series(q: FloatArray) -> FloatArray:
+    """Sum 2 (-2q)^k / (k + 2)! from the last term inward (Horner)."""
+    total = np.zeros_like(q)
+    for k in range(_SERIES_TERMS, 0, -1):
+        total = (1.0 + total) * (-2.0 * q / (k + 2))
+    return 1.0 + total
+
+
+def averaged_variance(point_variance: float, *, scale: float, length: float) -> float:
+    """Variance of the average of a property over a length.
+
+    Parameters
+    ----------
+    point_variance : float, [any]
+        Variance from point to point, in the square of the property's unit (or of its logarithm).
+    scale : float, [m]
+        Vertical scale of fluctuation, above zero.
+    length : float, [m]
+        Length averaged over, zero or more.
+
+    Returns
+    -------
+    variance : float, [any]
+        Variance of the average, same unit as `point_variance`.
+
+    Raises
+    ------
+    ParameterError
+        If `scale` is not above zero or `length` is negative.
+    """
+    if not scale > 0.0:
+        raise ParameterError(f"the scale of fluctuation must be above zero; got {scale:g} m")
+    return point_variance * float(variance_function(length / scale))

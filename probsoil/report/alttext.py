@@ -1,0 +1,171 @@
+"""What each figure says, in words and numbers, for those who cannot see it."""
+
+from dataclasses import dataclass
+from typing import Any
+
+from probsoil.report.text import (
+    event_text,
+    exceeding_word,
+    list_text,
+    number_text,
+    pair_text,
+    quantity_text,
+    step_decimals,
+    threshold_text,
+    trimmed_text,
+    value_text,
+    with_unit,
+)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Words:
+    """Title and description of a figure.
+
+    Attributes
+    ----------
+    title : str
+        What it shows.
+    description : str
+        What can be read from it, with numbers.
+    """
+
+    title: str
+    description: str
+
+
+def settlement(results: dict[str, Any]) -> Words:
+    """Describe the band of settlement through time.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+
+    Returns
+    -------
+    words : Words
+        Title and description.
+    """
+    data = results["settlement"]
+    stages = data.get("stages") or []
+    built = max((stage["end"] for stage in stages), default=data["times"][0])
+    after = next((i for i, time in enumerate(data["times"]) if time >= built), 0)
+    read = [_at(data, index) for index in sorted({after, len(data["times"]) - 1})]
+    return Words(
+        title=f"Settlement at the {data.get('station', 'centreline')} through time",
+        description=f"Band of settlement, downwards, against time; {len(stages)} stages. {' '.join(read)}",
+    )
+
+
+def slip(results: dict[str, Any]) -> Words:
+    """Describe the factor of safety against slip, stage by stage.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+
+    Returns
+    -------
+    words : Words
+        Title and description.
+    """
+    parts = [
+        f"{row['stage']}: median {number_text(row['quantiles']['0.5'])}, "
+        f"5 to 95 % {pair_text([row['quantiles']['0.05'], row['quantiles']['0.95']])}"
+        for row in results["slip"]
+    ]
+    return Words(
+        title="Least factor of safety against slip at the end of each stage",
+        description="; ".join(parts) + ". Slip is at 1.",
+    )
+
+
+def drivers(limit: dict[str, Any], rows: list[dict[str, Any]]) -> Words:
+    """Describe the bars of the drivers of one limit.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+    rows : list of dict
+        The drivers the figure shows.
+
+    Returns
+    -------
+    words : Words
+        Title and description.
+    """
+    parts = [
+        f"{row['parameter']} {number_text(row['spread_elasticity'])} "
+        f"({pair_text(row.get('spread_interval'))})"
+        for row in rows
+    ]
+    return Words(
+        title=f"What drives the chance that {event_text(limit)}",
+        description=f"Change of the chance in per cent for 1 % more spread: {list_text(parts)}.",
+    )
+
+
+def ground(results: dict[str, Any]) -> Words:
+    """Describe the drawing of the ground and its stresses.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+
+    Returns
+    -------
+    words : Words
+        Title and description.
+    """
+    layers = [
+        f"{layer['name']}, {layer['soil']}, {number_text(layer['top'])} to {number_text(layer['bottom'])} m"
+        for layer in results["ground"]["layers"]
+    ]
+    profile = results["ground"].get("profile") or {}
+    names = (
+        ("initial_stress", "initial"),
+        ("preconsolidation", "preconsolidation"),
+        ("final_stress", "final"),
+    )
+    deepest = [f"{name} {number_text(profile[key][-1])} kPa" for key, name in names if profile.get(key)]
+    at_depth = f" At {number_text(profile['depth'][-1])} m: {list_text(deepest)}." if deepest else ""
+    return Words(
+        title="Ground at the mean values", description=f"Layers from the top: {'; '.join(layers)}.{at_depth}"
+    )
+
+
+def curve(limit: dict[str, Any], chance: str) -> Words:
+    """Describe the exceedance curve of one limit.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+    chance : str
+        Its exceedance probability in words.
+
+    Returns
+    -------
+    words : Words
+        Title and description.
+    """
+    ends = [limit["curve"]["threshold"][place] for place in (0, -1)]
+    reach = with_unit(pair_text(ends, step_decimals(limit)), limit.get("unit", "-"))
+    return Words(
+        title=f"Chance that {quantity_text(limit)} is {exceeding_word(limit)} a threshold",
+        description=f"Curve over thresholds of {reach}. At the limit, {threshold_text(limit)}: {chance}. "
+        "The table below gives more points.",
+    )
+
+
+def _at(data: dict[str, Any], index: int) -> str:
+    quantiles = data["quantiles"]
+    ends = [quantiles["0.05"][index], quantiles["0.95"][index]]
+    return (
+        f"At {trimmed_text(data['times'][index])} years: median {value_text(quantiles['0.5'][index], 'm')}, "
+        f"5 to 95 % {pair_text(ends, 3)} m."
+    )

@@ -1,0 +1,259 @@
+"""The exceedance curve on which the reader moves the threshold: all readings are made here."""
+
+import json
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any
+
+from probsoil.errors import ResultsError
+from probsoil.report import alttext
+from probsoil.report.text import (
+    chance_text,
+    count_text,
+    decimals_of,
+    exceeding_word,
+    interval_text,
+    is_number,
+    plain_percent,
+    probability_text,
+    quantity_text,
+    realisations_of,
+    rounded,
+    step_decimals,
+    with_unit,
+)
+
+_TABLE_ROWS = 12
+_TICKS = 5.0
+_SAME = 1e-9  # relative; thresholds are round numbers a step apart, so this only absorbs binary rounding
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Step:
+    """One threshold of the curve with what the page says of it.
+
+    Attributes
+    ----------
+    threshold : float
+        Threshold in the limit's unit.
+    text : str
+        The threshold with its unit.
+    probability, low, high : float, [-]
+        Exceedance probability and its interval.
+    chance, interval, count : str
+        The three readings in words.
+    """
+
+    threshold: float
+    text: str
+    probability: float
+    low: float
+    high: float
+    chance: str
+    interval: str
+    count: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Axis:
+    """One way to lay out the chance axis.
+
+    Attributes
+    ----------
+    kind : str
+        ``even`` or ``log``.
+    ticks : tuple of (float, str)
+        Height in per cent of the plot from its top, and label.
+    line, band : str
+        Path data of the curve and its interval, in thousandths of the plot.
+    heights : tuple of float
+        Height of each step in per cent from the top.
+    target : float or None
+        Height of the target probability; None where there is none or it lies outside.
+    """
+
+    kind: str
+    ticks: tuple[tuple[float, str], ...]
+    line: str
+    band: str
+    heights: tuple[float, ...]
+    target: float | None
+
+
+def curve_steps(limit: dict[str, Any], results: dict[str, Any]) -> list[Step]:
+    """Make the reading of every threshold of a limit's curve.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+    results : dict
+        The results it belongs to.
+
+    Returns
+    -------
+    steps : list of Step
+        Rising thresholds; the limit's own is always among them and reads as its headline does.
+
+    Raises
+    ------
+    ResultsError
+        If the curve and the headline count different numbers of exceedances at the limit's threshold.
+    """
+    curve = limit.get("curve") or {}
+    keys = ("threshold", "exceeding", "probability", "low", "high")
+    rows = [
+        row for row in zip(*(curve.get(key) or [] for key in keys), strict=True) if all(map(is_number, row))
+    ]
+    own = (limit["threshold"], limit["exceeding"], limit["probability"], *limit["interval"])
+    others = []
+    for row in rows:
+        if not math.isclose(row[0], own[0], rel_tol=_SAME, abs_tol=_SAME * float(curve.get("step") or 1.0)):
+            others.append(row)
+        elif row[1] != own[1]:
+            raise ResultsError(
+                f"limit {limit['name']!r}: the curve counts {row[1]} exceedances at the limit's threshold, "
+                f"the headline {own[1]}"
+            )
+    n, decimals = realisations_of(limit, results), step_decimals(limit)
+    return [_step(row, n, decimals, limit.get("unit", "-")) for row in sorted([*others, own])]
+
+
+def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any] | None:
+    """Lay out the exceedance curve of one limit for the page.
+
+    Parameters
+    ----------
+    number : int, [-]
+        Number of the limit on the page, from 1.
+    limit : dict
+        One entry of ``limits`` of the results.
+    results : dict
+        The results it belongs to.
+
+    Returns
+    -------
+    view : dict or None
+        What the page's template needs; None where the results hold no curve.
+    """
+    steps = curve_steps(limit, results)
+    if len(steps) < 2:
+        return None
+    start = next(i for i, step in enumerate(steps) if step.threshold == limit["threshold"])
+    first, last = steps[0].threshold, steps[-1].threshold
+    across = [round(100.0 * (step.threshold - first) / (last - first), 2) for step in steps]
+    n, target = realisations_of(limit, results), limit.get("target_probability")
+    axes = (_even_axis(steps, across, target), _log_axis(steps, across, target, n))
+    decimals = step_decimals(limit)
+    data = {
+        "start": start,
+        "x": across,
+        "y": [axis.heights for axis in axes],
+        "value": [rounded(step.threshold, decimals).replace(",", "") for step in steps],
+        "read": [[step.text, step.chance, step.interval, step.count] for step in steps],
+    }
+    words = alttext.curve(limit, chance_text(limit, results))
+    return {
+        "number": number,
+        "name": limit["name"],
+        "quantity": quantity_text(limit),
+        "word": exceeding_word(limit),
+        "unit": limit.get("unit", "-"),
+        "title": words.title,
+        "description": words.description,
+        "steps": steps,
+        "start": start,
+        "own": steps[start],
+        "across": across[start],
+        "axes": axes,
+        "x_ticks": _x_ticks(first, last),
+        "rare": limit["probability"] < 0.02,
+        "target": None if target is None else plain_percent(target),
+        "total": count_text(n),
+        "table": [steps[i] for i in _table_rows(len(steps), start)],
+        "json": json.dumps(data, separators=(",", ":"), ensure_ascii=False).replace("<", "\\u003c"),
+    }
+
+
+def _step(row: tuple[float, int, float, float, float], n: int, decimals: int, unit: str) -> Step:
+    threshold, count, probability, low, high = row
+    return Step(
+        threshold=threshold,
+        text=with_unit(rounded(threshold, decimals), unit),
+        probability=probability,
+        low=low,
+        high=high,
+        chance=probability_text(probability, n).removesuffix(f" of {count_text(n)} realisations"),
+        interval=interval_text(probability, low, high),
+        count=count_text(int(count)),
+    )
+
+
+def _x_ticks(first: float, last: float) -> list[tuple[float, str]]:
+    size = _round_size(last - first)
+    ticks = [size * k for k in range(math.ceil(first / size - 1e-9), math.floor(last / size + 1e-9) + 1)]
+    decimals = decimals_of(float(f"{size:.3g}"))
+    return [(round(100.0 * (tick - first) / (last - first), 2), rounded(tick, decimals)) for tick in ticks]
+
+
+def _round_size(span: float) -> float:
+    """Give the round step that cuts a span in at most `_TICKS` parts."""
+    unit = 10.0 ** math.floor(math.log10(span))
+    return next(unit * k for k in (0.2, 0.25, 0.5, 1.0, 2.0) if span / (unit * k) <= _TICKS)
+
+
+def _table_rows(size: int, start: int) -> list[int]:
+    every = max(1, math.ceil(size / _TABLE_ROWS))
+    return sorted({*range(start % every, size, every), start, 0, size - 1})
+
+
+def _even_axis(steps: list[Step], across: list[float], target: float | None) -> Axis:
+    top = max(max(step.high for step in steps), 1e-9)
+    size = _round_size(top)
+    count = math.ceil(top / size - 1e-9)
+    peak = min(1.0, size * count)
+
+    def height(share: float) -> float:
+        return 100.0 * (1.0 - share / peak)
+
+    ticks = [min(peak, round(size * k, 12)) for k in range(count + 1)]
+    return _axis("even", ticks, height, steps, across, target)
+
+
+def _log_axis(steps: list[Step], across: list[float], target: float | None, n: int) -> Axis:
+    floor = -math.ceil(math.log10(max(10, n)))
+
+    def height(share: float) -> float:
+        return 100.0 if share <= 0 else min(100.0, 100.0 * math.log10(share) / floor)
+
+    return _axis("log", [float(f"1e{power}") for power in range(floor, 1)], height, steps, across, target)
+
+
+def _axis(
+    kind: str,
+    ticks: list[float],
+    height: Callable[[float], float],
+    steps: list[Step],
+    across: list[float],
+    target: float | None,
+) -> Axis:
+    upper = _points(across, [height(step.high) for step in steps])
+    lower = _points(across, [height(step.low) for step in steps])
+    # On the logarithmic axis a chance of none has no height; the line stops and only the band goes on.
+    seen = [i for i, step in enumerate(steps) if kind == "even" or step.probability > 0]
+    heights = tuple(round(height(step.probability), 2) for step in steps)
+    line = _points([across[i] for i in seen], [heights[i] for i in seen])
+    level = None if target is None else round(height(target), 2)
+    return Axis(
+        kind=kind,
+        ticks=tuple((round(height(share), 2), plain_percent(share)) for share in ticks),
+        line=f"M{'L'.join(line)}" if line else "",
+        band=f"M{'L'.join([*upper, *reversed(lower)])}Z",
+        heights=heights,
+        target=level if level is not None and 0.0 <= level <= 100.0 else None,
+    )
+
+
+def _points(across: list[float], down: list[float]) -> list[str]:
+    return [f"{10 * x:.0f} {10 * y:.0f}" for x, y in zip(across, down, strict=True)]

@@ -1,0 +1,138 @@
+"""The figures of an assessment, as vector graphics that come out the same, byte for byte, on every run."""
+
+import io
+import warnings
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from typing import TYPE_CHECKING, Any
+
+from probsoil.report import alttext
+from probsoil.report.palette import LIGHT
+from probsoil.report.plot_bars import plot_drivers, plot_slip
+from probsoil.report.plot_ground import plot_ground
+from probsoil.report.plot_settlement import plot_settlement
+from probsoil.report.svg import tidy_svg
+from probsoil.report.text import is_number
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+    from probsoil.report.alttext import Words
+
+_WIDTH = 7.6  # inches; one unit of the graphic's own coordinates is 1/72 of that
+_SHOWN_DRIVERS = 12
+_STYLE: dict[Any, Any] = {
+    "svg.fonttype": "none",
+    "text.parse_math": False,
+    "font.size": 10.0,
+    "axes.edgecolor": LIGHT["muted"],
+    "axes.labelcolor": LIGHT["ink"],
+    "axes.spines.top": False,
+    "axes.spines.right": False,
+    "axes.facecolor": "none",
+    "figure.facecolor": "none",
+    "savefig.facecolor": "none",
+    "grid.color": LIGHT["line"],
+    "grid.linewidth": 0.7,
+    "axes.axisbelow": True,
+    "text.color": LIGHT["ink"],
+    "xtick.color": LIGHT["muted"],
+    "ytick.color": LIGHT["muted"],
+    "xtick.labelcolor": LIGHT["ink"],
+    "ytick.labelcolor": LIGHT["ink"],
+    "hatch.color": LIGHT["muted"],
+    "hatch.linewidth": 0.6,
+    "figure.constrained_layout.use": True,
+}
+
+
+def figures(results: dict[str, Any]) -> dict[str, str]:
+    """Draw every figure the results have numbers for.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+
+    Returns
+    -------
+    drawings : dict of str to str
+        Vector graphic by name: ``settlement``, ``slip``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for
+        the limits in their order.
+    """
+    drawn: dict[str, str] = {}
+    if (results.get("settlement") or {}).get("times"):
+        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+    if results.get("slip"):
+        drawn["slip"] = _render("slip", alttext.slip(results), plot_slip, results["slip"])
+    if (results.get("ground") or {}).get("layers"):
+        drawn["ground"] = _render("ground", alttext.ground(results), plot_ground, results["ground"])
+    for number, limit in enumerate(results["limits"], start=1):
+        shown = shown_drivers(results, limit["name"])
+        if shown:
+            name = f"drivers-{number}"
+            drawn[name] = _render(name, alttext.drivers(limit, shown), plot_drivers, shown)
+    return drawn
+
+
+def shown_drivers(results: dict[str, Any], limit_name: str) -> list[dict[str, Any]]:
+    """Choose the drivers of a limit that its figure shows: the leading ones that have a number.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+    limit_name : str
+        Name of the limit.
+
+    Returns
+    -------
+    rows : list of dict
+        At most 12 entries of ``drivers``, ranked ones first.
+    """
+    rows = [row for row in ordered_drivers(results, limit_name) if is_number(row.get("spread_elasticity"))]
+    return rows[:_SHOWN_DRIVERS]
+
+
+def ordered_drivers(results: dict[str, Any], limit_name: str) -> list[dict[str, Any]]:
+    """Put the drivers of one limit in order: by rank, then the indistinguishable by the size of their number.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+    limit_name : str
+        Name of the limit.
+
+    Returns
+    -------
+    rows : list of dict
+        Entries of ``drivers`` of that limit.
+    """
+    rows = [row for row in results.get("drivers") or [] if row["limit"] == limit_name]
+
+    def place(row: dict[str, Any]) -> tuple[float, float]:
+        rank = row.get("rank")
+        return (float("inf") if rank is None else float(rank), -abs(row.get("spread_elasticity") or 0.0))
+
+    return sorted(rows, key=place)
+
+
+@contextmanager
+def _quiet_glyphs() -> Iterator[None]:
+    # The page's own font draws the text; that the measuring font lacks a letter of a name is of no account.
+    with warnings.catch_warnings():
+        warnings.filterwarnings("ignore", message="Glyph .* missing from")
+        yield
+
+
+def _render(name: str, words: "Words", draw: "Callable[[Figure, Any], None]", data: object) -> str:
+    from matplotlib import rc_context
+    from matplotlib.figure import Figure
+
+    with rc_context({**_STYLE, "svg.hashsalt": f"probsoil {name}"}), _quiet_glyphs():
+        figure = Figure(figsize=(_WIDTH, 3.8))
+        draw(figure, data)
+        buffer = io.StringIO()
+        figure.savefig(buffer, format="svg", metadata={"Date": None, "Creator": None})
+    return tidy_svg(buffer.getvalue(), name=name, title=words.title, description=words.description)

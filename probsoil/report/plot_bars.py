@@ -1,0 +1,88 @@
+"""The bars of slip safety by stage and of the drivers of a limit."""
+
+from typing import TYPE_CHECKING, Any
+
+from probsoil.report.palette import LIGHT
+from probsoil.report.plot_parts import short
+from probsoil.report.text import is_number
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+
+def plot_slip(figure: "Figure", rows: list[dict[str, Any]]) -> None:
+    """Draw the range of the factor of safety at the end of each stage.
+
+    Parameters
+    ----------
+    figure : Figure
+        Empty figure to draw on.
+    rows : list of dict
+        Entries of ``slip`` of the results.
+    """
+    figure.set_figheight(1.1 + 0.48 * len(rows))
+    axis = figure.subplots()
+    for place, row in enumerate(rows):
+        quantiles = row["quantiles"]
+        _segment(axis, place, (quantiles["0.05"], quantiles["0.95"]), width=5.0, colour=LIGHT["haze"])
+        _segment(axis, place, (quantiles["0.25"], quantiles["0.75"]), width=9.0, colour=LIGHT["band"])
+        if is_number(quantiles["0.5"]):
+            axis.plot([quantiles["0.5"]], [place], marker="o", ms=6, color=LIGHT["main"], ls="")
+    axis.axvline(1.0, color=LIGHT["mark"], lw=1.6, ls=(0, (5, 2)))
+    axis.annotate(
+        "slip", (1.0, 1.0), xycoords=("data", "axes fraction"), xytext=(0, 3), textcoords="offset points",
+        ha="center", fontsize=9, color=LIGHT["mark"],
+    )  # fmt: skip
+    axis.set_yticks(
+        range(len(rows)), [f"S{n}  {short(row['stage'], 24)}" for n, row in enumerate(rows, start=1)]
+    )
+    axis.set_ylim(len(rows) - 0.4, -0.6)
+    axis.set_xlim(min(0.9, axis.get_xlim()[0]), None)
+    axis.grid(visible=True, axis="x")
+    axis.set_xlabel("least factor of safety against slip at the end of the stage [-]")
+
+
+def plot_drivers(figure: "Figure", rows: list[dict[str, Any]]) -> None:
+    """Draw the spread elasticity of each parameter with its interval.
+
+    Parameters
+    ----------
+    figure : Figure
+        Empty figure to draw on.
+    rows : list of dict
+        Entries of ``drivers`` of one limit, in order.
+    """
+    figure.set_figheight(1.0 + 0.34 * len(rows))
+    axis = figure.subplots()
+    for place, row in enumerate(rows):
+        ranked = row.get("rank") is not None
+        axis.barh(
+            place,
+            row["spread_elasticity"],
+            height=0.62,
+            color=LIGHT["band"] if ranked else "none",
+            edgecolor=LIGHT["main"] if ranked else LIGHT["muted"],
+            linewidth=0.9,
+            linestyle="-" if ranked else (0, (2, 2)),
+        )
+        low, high = row.get("spread_interval") or (None, None)
+        _segment(axis, place, (low, high), width=1.6, colour=LIGHT["ink"])
+    axis.axvline(0.0, color=LIGHT["muted"], lw=1.0)
+    labels = [f"{_rank_mark(row)}{short(row['parameter'], 32)}" for row in rows]
+    axis.set_yticks(range(len(rows)), labels)
+    axis.set_ylim(len(rows) - 0.4, -0.6)
+    axis.grid(visible=True, axis="x")
+    axis.set_xlabel("change of the chance [%] for 1 % more spread of the parameter")
+
+
+def _segment(
+    axis: "Axes", place: float, ends: tuple[float | None, float | None], *, width: float, colour: str
+) -> None:
+    low, high = ends
+    if low is not None and high is not None:
+        axis.plot([low, high], [place, place], color=colour, lw=width, solid_capstyle="butt")
+
+
+def _rank_mark(row: dict[str, Any]) -> str:
+    return "" if row.get("rank") is None else f"{row['rank']}  "

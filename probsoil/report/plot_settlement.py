@@ -1,0 +1,125 @@
+"""The band of settlement through time: even time while building, logarithmic time afterwards."""
+
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.report.palette import LIGHT
+from probsoil.report.plot_parts import numbers_array
+from probsoil.report.text import is_number
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+_WEEKS_PER_YEAR = 365.25 / 7.0
+
+
+def plot_settlement(figure: "Figure", results: dict[str, Any]) -> None:
+    """Draw the band of settlement, stages and limits on it.
+
+    Parameters
+    ----------
+    figure : Figure
+        Empty figure to draw on.
+    results : dict
+        The results of an assessment.
+    """
+    data = results["settlement"]
+    stages = data.get("stages") or []
+    times = numbers_array(data["times"])
+    built = max((stage["end"] for stage in stages), default=0.0)
+    split = 1.12 * built
+    two = bool(stages) and times[-1] > 2.0 * split
+    axes = figure.subplots(
+        1, 2 if two else 1, sharey=True, squeeze=False, width_ratios=[1.0, 0.85][: 1 + two]
+    )[0]
+    in_weeks = two and split < 3.0
+    factor = _WEEKS_PER_YEAR if in_weeks else 1.0
+    for axis, scale in zip(axes, (factor, 1.0), strict=False):
+        _band(axis, scale * times, data)
+        axis.grid(visible=True)
+    early = axes[0]
+    _mark_stages(early, stages, factor)
+    early.set_xlim(0.0, (split if two else times[-1]) * factor)
+    early.set_xlabel("weeks from the start, while building" if in_weeks else "years from the start")
+    early.set_ylabel("settlement [m], downwards")
+    early.set_ylim(*_depth_range(data))
+    if two:
+        _late_axis(axes[1], split, times[-1])
+    _mark_limits(axes, results["limits"], split if two else times[-1], factor)
+    early.legend(loc="lower left", frameon=False, fontsize=9)
+
+
+def _band(axis: "Axes", times: FloatArray, data: dict[str, Any]) -> None:
+    quantiles = {key: numbers_array(values) for key, values in data["quantiles"].items()}
+    axis.fill_between(
+        times, quantiles["0.05"], quantiles["0.95"], color=LIGHT["haze"], lw=0, label="5 to 95 %"
+    )
+    axis.fill_between(
+        times, quantiles["0.25"], quantiles["0.75"], color=LIGHT["band"], lw=0, label="25 to 75 %"
+    )
+    axis.plot(times, quantiles["0.5"], color=LIGHT["main"], lw=2.0, label="median")
+    axis.plot(times, numbers_array(data["mean"]), color=LIGHT["ink"], lw=1.0, ls=(0, (4, 2)), label="mean")
+
+
+def _depth_range(data: dict[str, Any]) -> tuple[float, float]:
+    deep = np.nanmax(numbers_array(data["quantiles"]["0.95"]), initial=1e-3)
+    high = np.nanmin(numbers_array(data["quantiles"]["0.05"]), initial=0.0)
+    room = 0.12 * (deep - high)
+    return float(deep + room), float(high - room)
+
+
+def _mark_stages(axis: "Axes", stages: list[dict[str, Any]], factor: float) -> None:
+    for number, stage in enumerate(stages, start=1):
+        axis.axvspan(
+            factor * stage["start"], factor * stage["end"], color=LIGHT["fill"], alpha=0.55, lw=0, zorder=0
+        )
+        axis.annotate(
+            f"S{number}",
+            (factor * 0.5 * (stage["start"] + stage["end"]), 1.0),
+            xycoords=("data", "axes fraction"),
+            xytext=(0, 3),
+            textcoords="offset points",
+            ha="center",
+            fontsize=9,
+            color=LIGHT["muted"],
+        )
+
+
+def _late_axis(axis: "Axes", start: float, end: float) -> None:
+    from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
+
+    axis.set_xscale("log")
+    axis.set_xlim(start, end)
+    axis.xaxis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0)))
+    axis.xaxis.set_minor_locator(NullLocator())
+    axis.xaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
+    axis.set_xlabel("years from the start, afterwards (logarithmic)")
+    axis.spines["left"].set_linestyle((0, (2, 2)))
+    axis.tick_params(axis="y", length=0)
+
+
+def _mark_limits(
+    axes: "np.ndarray[Any, Any]", limits: list[dict[str, Any]], split: float, factor: float
+) -> None:
+    for number, limit in enumerate(limits, start=1):
+        at = (limit.get("time") or {}).get("at")
+        if limit["quantity"] != "settlement" or not is_number(at):
+            continue
+        late = len(axes) > 1 and at > split
+        axis, place = (axes[1], at) if late else (axes[0], at * factor)
+        inside = limit["threshold"] <= axis.get_ylim()[0]
+        height = limit["threshold"] if inside else axis.get_ylim()[0]
+        axis.plot([place], [height], marker="D", ms=6, color=LIGHT["mark"], ls="", clip_on=False, zorder=5)
+        axis.annotate(
+            f"limit {number}" + ("" if inside else " is deeper"),
+            (place, height),
+            xytext=(-8, 0),
+            textcoords="offset points",
+            ha="right",
+            va="center" if inside else "bottom",
+            fontsize=9,
+            color=LIGHT["mark"],
+        )

@@ -1,0 +1,142 @@
+"""The results as tables for a spreadsheet, units in the column names."""
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+_LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
+
+
+def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
+    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
+
+    Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+    folder : Path
+        Folder that exists.
+
+    Returns
+    -------
+    paths : list of Path
+        The files written.
+    """
+    paths = []
+    for name, frame in tables(results).items():
+        path = folder / f"{name}.csv"
+        temporary = path.with_name(path.name + ".part")
+        frame.to_csv(temporary, index=False, encoding="utf-8", lineterminator="\n")
+        paths.append(temporary.replace(path))
+    return paths
+
+
+def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
+    """Arrange the results as tables.
+
+    Parameters
+    ----------
+    results : dict
+        The results of an assessment.
+
+    Returns
+    -------
+    frames : dict of str to DataFrame
+        ``limits``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give tables
+        without rows.
+    """
+    import pandas as pd
+
+    rows = {
+        "limits": [_limit_row(limit, results.get("currency") or "currency") for limit in results["limits"]],
+        "drivers": [_driver_row(row) for row in results.get("drivers") or []],
+        "settlement": _settlement_rows(results.get("settlement") or {}),
+        "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
+    }
+    frames = {name: pd.DataFrame(part) for name, part in rows.items()}
+    if len(frames["drivers"]):
+        frames["drivers"] = frames["drivers"].astype({"rank [-]": "Int64"})
+    return frames
+
+
+def _limit_row(limit: dict[str, Any], currency: str) -> dict[str, Any]:
+    low, high = limit["interval"]
+    beta_low, beta_high = limit.get("reliability_interval") or (None, None)
+    summary = limit.get("summary") or {}
+    return {
+        "limit": limit["name"],
+        "quantity": limit["quantity"],
+        "time": limit.get("time_text"),
+        "sense": limit["sense"],
+        "unit": limit.get("unit"),
+        "threshold [unit]": limit["threshold"],
+        "probability [-]": limit["probability"],
+        "probability low [-]": low,
+        "probability high [-]": high,
+        "confidence [-]": limit.get("confidence"),
+        "exceeding [realisations]": limit["exceeding"],
+        "not converged [realisations]": limit.get("not_converged"),
+        "never reached [realisations]": limit.get("never_reached"),
+        "model runs [realisations]": limit.get("model_runs"),
+        "reliability index [-]": limit.get("reliability_index"),
+        "reliability index low [-]": beta_low,
+        "reliability index high [-]": beta_high,
+        "unseen bound [-]": limit.get("unseen_bound"),
+        "target probability [-]": limit.get("target_probability"),
+        "verdict": limit.get("verdict"),
+        f"cost if exceeded [{currency}]": limit.get("cost_if_exceeded"),
+        f"expected cost [{currency}]": limit.get("expected_cost"),
+        "mean [unit]": summary.get("mean"),
+        "sd [unit]": summary.get("sd"),
+        **_quantile_columns(summary.get("quantiles") or {}, "unit"),
+        "method": limit.get("method"),
+    }
+
+
+def _driver_row(row: dict[str, Any]) -> dict[str, Any]:
+    columns = {"limit": row["limit"], "parameter": row["parameter"], "rank [-]": row.get("rank")}
+    for label, value, interval in (
+        ("spread elasticity", "spread_elasticity", "spread_interval"),
+        ("mean elasticity", "mean_elasticity", "mean_interval"),
+        ("share", "share", "share_interval"),
+    ):
+        low, high = row.get(interval) or (None, None)
+        columns |= {f"{label} [-]": row.get(value), f"{label} low [-]": low, f"{label} high [-]": high}
+    return columns | {"direction": row.get("direction")}
+
+
+def _settlement_rows(data: dict[str, Any]) -> list[dict[str, Any]]:
+    quantiles = data.get("quantiles") or {}
+    return [
+        {
+            "time [years]": time,
+            "mean [m]": data["mean"][place],
+            **_quantile_columns({level: values[place] for level, values in quantiles.items()}, "m"),
+        }
+        for place, time in enumerate(data.get("times") or [])
+    ]
+
+
+def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:
+    return {
+        "parameter": row["name"],
+        "meaning": row.get("meaning"),
+        "distribution": row.get("text"),
+        "unit": row.get("unit"),
+        "mean [unit]": row.get("mean"),
+        "sd [unit]": row.get("sd"),
+        "p05 [unit]": row.get("p05"),
+        "p50 [unit]": row.get("p50"),
+        "p95 [unit]": row.get("p95"),
+        "low bound [unit]": row.get("low"),
+        "high bound [unit]": row.get("high"),
+        "share cut [-]": row.get("cut_share"),
+    }
+
+
+def _quantile_columns(quantiles: dict[str, Any], unit: str) -> dict[str, Any]:
+    return {f"p{round(100 * float(level)):02d} [{unit}]": quantiles.get(level) for level in _LEVELS}

@@ -1,0 +1,60 @@
+"""What the user writes: the scenario file, read and checked in full."""
+
+from probsoil.scenario.distributions import (
+    Beta,
+    Constant,
+    Distribution,
+    Lognormal,
+    Normal,
+    Triangular,
+    TruncatedNormal,
+    Uniform,
+)
+from probsoil.scenario.layers import ClayLayer, GranularLayer, Permeability, Preconsolidation, Strength
+from probsoil.scenario.limits import (
+    ConsolidationLimit,
+    ConsolidationTimeLimit,
+    SettlementLimit,
+    SlipSafetyLimit,
+)
+from probsoil.scenario.loads import AreaLoad, EmbankmentLoad, Stage
+from probsoil.scenario.models import Dependence, ModelError, Scenario, Site
+from probsoil.scenario.quantities import Quantity
+from probsoil.scenario.reader import parse_scenario, read_scenario
+from probsoil.scenario.reference import reference_table
+from probsoil.scenario.schema import scenario_schema
+from probsoil.scenario.starters import STARTERS, starter_text
+
+__all__ = [
+    "STARTERS",
+    "AreaLoad",
+    "Beta",
+    "ClayLayer",
+    "ConsolidationLimit",
+    "ConsolidationTimeLimit",
+    "Constant",
+    "Dependence",
+    "Distribution",
+    "EmbankmentLoad",
+    "GranularLayer",
+    "Lognormal",
+    "ModelError",
+    "Normal",
+    "Permeability",
+    "Preconsolidation",
+    "Quantity",
+    "Scenario",
+    "SettlementLimit",
+    "Site",
+    "SlipSafetyLimit",
+    "Stage",
+    "Strength",
+    "Triangular",
+    "TruncatedNormal",
+    "Uniform",
+    "parse_scenario",
+    "read_scenario",
+    "reference_table",
+    "scenario_schema",
+    "starter_text",
+]

@@ -1,0 +1,32 @@
+"""Checks that look at more than one key: what cannot be true together.
+
+Each takes a scenario read in full or in part (what could not be read is `UNREAD`) and
+returns slips, so that one pass over a file finds every mistake.
+"""
+
+from typing import Any
+
+from probsoil.scenario.checks.dependence import dependence_slips
+from probsoil.scenario.checks.ground import ground_slips
+from probsoil.scenario.checks.limits import limit_slips
+from probsoil.scenario.checks.programme import programme_slips
+from probsoil.scenario.slips import Slip
+
+__all__ = ["cross_checks"]
+
+
+def cross_checks(scenario: Any) -> list[Slip]:
+    """Return every mistake that shows only when keys are seen together.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Read in full or in part.
+
+    Returns
+    -------
+    slips : list of Slip
+        Paths start at the top of the scenario.
+    """
+    checks = (ground_slips, programme_slips, limit_slips, dependence_slips)
+    return [slip for check in checks for slip in check(scenario)]

@@ -1,0 +1,107 @@
+"""Checks of the layers."""
+
+import math
+from typing import Any
+
+from probsoil.scenario.base import UNREAD
+from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names
+from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.layers import ClayLayer, Permeability, Preconsolidation
+from probsoil.scenario.slips import Slip
+
+_VIRGIN = {"lambda_": "lambda", "Cc": "Cc", "CR": "CR"}
+_RELOADING = {"kappa": "kappa", "Cs": "Cs", "RR": "RR"}
+
+
+def ground_slips(scenario: Any) -> list[Slip]:
+    """Return what is wrong with the layers seen together and each in itself.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Read in full or in part.
+
+    Returns
+    -------
+    slips : list of Slip
+        Paths start at the top of the scenario.
+    """
+    layers = scenario.layers
+    slips = [*repeated_names(layers, "layers", "layer"), *reserved_names(layers, "layers")]
+    if layers and all(getattr(layer, "soil", "clay") == "granular" for layer in layers):
+        message = "no layer is of clay, so there is nothing that consolidates"
+        slips.append(Slip(path=("layers",), message=message, allowed='at least one layer with soil = "clay"'))
+    for position, layer in enumerate(layers):
+        if isinstance(layer, ClayLayer):
+            slips += [slip.below(("layers", position)) for slip in _clay_slips(layer)]
+    return slips
+
+
+def _clay_slips(layer: Any) -> list[Slip]:
+    slips = exactly_one(layer, _VIRGIN, "virgin compression")
+    slips += exactly_one(layer, _RELOADING, "unloading and reloading")
+    slips += exactly_one(layer, {"M": "M", "phi": "phi"}, "critical-state friction")
+    if isinstance(layer.preconsolidation, Preconsolidation):
+        slips += _preconsolidation_slips(layer.preconsolidation)
+    if isinstance(layer.permeability, Permeability):
+        slips += _permeability_slips(layer.permeability)
+    return slips + _compression_slips(layer)
+
+
+def _preconsolidation_slips(table: Any) -> list[Slip]:
+    path = ("preconsolidation",)
+    forms = {"stress": "stress", "ocr": "ocr", "pop": "pop"}
+    slips = [slip.below(path) for slip in exactly_one(table, forms, "the preconsolidation stress")]
+    if isinstance(table.ocr, Distribution) and table.ocr.expectation < 1.0:
+        message = f"the mean overconsolidation ratio is {table.ocr.expectation:g}"
+        slips.append(
+            Slip(path=(*path, "ocr"), message=message, allowed="a mean of at least 1 (by definition)")
+        )
+    return slips
+
+
+def _permeability_slips(table: Any) -> list[Slip]:
+    given = {key for key in ("cv", "k", "ck") if getattr(table, key) is not None}
+    if given in ({"cv"}, {"k", "ck"}):
+        return []
+    allowed = "cv alone, or k with ck"
+    if not given:
+        return [
+            Slip(path=("permeability",), message="the table is empty", allowed=allowed, wanting=("cv", "k"))
+        ]
+    if "cv" in given:
+        message = "cv does not go with k or ck, which would say the same thing twice"
+        return [Slip(path=("permeability", "cv"), message=message, allowed=allowed, at_key=True)]
+    missing = "ck" if "k" in given else "k"
+    message = f"{missing} is missing"
+    return [Slip(path=("permeability",), message=message, allowed=allowed, wanting=(missing,))]
+
+
+def _compression_slips(layer: Any) -> list[Slip]:
+    """Refuse reloading that is no stiffer than virgin compression, at the means."""
+    virgin, reloading = _slope(layer, _VIRGIN), _slope(layer, _RELOADING)
+    if virgin is None or reloading is None or reloading[1] < virgin[1]:
+        return []
+    key = reloading[0]
+    message = (
+        f"reloading is not stiffer than virgin compression: {key} amounts to a mean kappa of "
+        f"{reloading[1]:.3g}, {virgin[0]} to a mean lambda of {virgin[1]:.3g}"
+    )
+    allowed = "kappa below lambda, at their means (by definition)"
+    return [Slip(path=(key,), message=message, allowed=allowed, hint=f"are {key} and {virgin[0]} swapped?")]
+
+
+def _slope(layer: Any, keys: dict[str, str]) -> tuple[str, float] | None:
+    """Key in the file and mean slope per unit of natural logarithm, where both can be known."""
+    given = [attribute for attribute in keys if getattr(layer, attribute) is not None]
+    if len(given) != 1 or getattr(layer, given[0]) is UNREAD:
+        return None
+    attribute = given[0]
+    mean = getattr(layer, attribute).expectation
+    if attribute in ("lambda_", "kappa"):
+        return keys[attribute], mean
+    if attribute in ("Cc", "Cs"):
+        return keys[attribute], mean / math.log(10.0)
+    if not isinstance(layer.void_ratio, Distribution):
+        return None
+    return keys[attribute], mean * (1.0 + layer.void_ratio.expectation) / math.log(10.0)

@@ -1,0 +1,67 @@
+"""Checks of the limits against the horizon and the load."""
+
+from typing import Any
+
+from probsoil.scenario.base import UNREAD
+from probsoil.scenario.checks.common import exactly_one, repeated_names
+from probsoil.scenario.limits import ConsolidationTimeLimit, SettlementLimit, SlipSafetyLimit
+from probsoil.scenario.loads import AreaLoad
+from probsoil.scenario.slips import Slip
+
+
+def limit_slips(scenario: Any) -> list[Slip]:
+    """Return what is wrong with the limits.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Read in full or in part.
+
+    Returns
+    -------
+    slips : list of Slip
+        Paths start at the top of the scenario.
+    """
+    slips = list(repeated_names(scenario.limits, "limits", "limit"))
+    for position, limit in enumerate(scenario.limits):
+        found: list[Slip] = []
+        if isinstance(limit, SettlementLimit):
+            found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
+            found += _reversed(limit)
+        if isinstance(limit, SlipSafetyLimit) and isinstance(scenario.load, AreaLoad):
+            message = "a slip needs the edge of an embankment; an area load has none"
+            found.append(
+                Slip(path=("quantity",), message=message, allowed='[load] with shape = "embankment"')
+            )
+        found += _beyond_horizon(limit, scenario.horizon)
+        slips += [slip.below(("limits", position)) for slip in found]
+    return slips
+
+
+def _reversed(limit: Any) -> list[Slip]:
+    if not isinstance(limit.between, tuple) or limit.between[0] < limit.between[1]:
+        return []
+    first, second = limit.between
+    message = f"the times are not in order: {first:.4g} and {second:.4g} years"
+    return [Slip(path=("between",), message=message, allowed="the earlier time first, then the later")]
+
+
+def _beyond_horizon(limit: Any, horizon: Any) -> list[Slip]:
+    if horizon is UNREAD or limit is UNREAD:
+        return []
+    times: list[tuple[tuple[str | int, ...], object]] = [(("at",), getattr(limit, "at", None))]
+    between = getattr(limit, "between", None)
+    if isinstance(between, tuple):
+        times += [(("between", place), time) for place, time in enumerate(between)]
+    if isinstance(limit, ConsolidationTimeLimit):
+        times.append((("not_more_than",), limit.not_more_than))
+    return [
+        Slip(
+            path=path,
+            message=f"{time:.4g} years is beyond the horizon",
+            allowed=f"0 to {horizon:g} years",
+            hint="raise horizon, or take an earlier time",
+        )
+        for path, time in times
+        if isinstance(time, float) and time > horizon
+    ]

@@ -1,0 +1,151 @@
+"""Whether rank correlations can hold together, and the nearest set that can."""
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from probsoil._typing import BoolArray, FloatArray
+
+Pair = tuple[str, str]
+# Below this the smallest eigenvalue is lost in rounding and a Cholesky factor is noise.
+LEAST_EIGENVALUE = 1e-8
+_ROUNDS = 10_000
+_TOLERANCE = 1e-10
+
+
+def latent_correlation(rank: float) -> float:
+    """Return the correlation of the normal scores behind a rank correlation.
+
+    Parameters
+    ----------
+    rank : float, [-]
+        Spearman's rank correlation.
+
+    Returns
+    -------
+    correlation : float, [-]
+        Pearson's correlation of the latent normals.
+
+    Notes
+    -----
+    For a Gaussian copula R = 2 sin(pi rho / 6), a classical result of Pearson (1907),
+    here from memory.
+    """
+    return float(2.0 * np.sin(np.pi * rank / 6.0))
+
+
+def rank_correlation(latent: float) -> float:
+    """Return the rank correlation behind a latent correlation.
+
+    Parameters
+    ----------
+    latent : float, [-]
+        Pearson's correlation of the latent normals.
+
+    Returns
+    -------
+    rank : float, [-]
+        Spearman's rank correlation.
+    """
+    return float(6.0 / np.pi * np.arcsin(0.5 * latent))
+
+
+def impossible_sets(ranks: Mapping[Pair, float]) -> list[dict[Pair, float]]:
+    """Return every connected set of correlations that cannot hold together, mended.
+
+    Parameters
+    ----------
+    ranks : mapping
+        Rank correlation of each pair; pairs not given are uncorrelated.
+
+    Returns
+    -------
+    sets : list of dict
+        For each set, its pairs with the nearest rank correlations that can hold.
+    """
+    found = []
+    for component in _components(list(ranks)):
+        given = {pair: ranks[pair] for pair in component}
+        names = list(dict.fromkeys(name for pair in component for name in pair))
+        matrix = _matrix(given, names)
+        if np.linalg.eigvalsh(matrix)[0] < LEAST_EIGENVALUE:
+            found.append(_mended(matrix, given, names))
+    return found
+
+
+def nearest_correlation(matrix: FloatArray, free: BoolArray) -> FloatArray:
+    """Return the correlation matrix nearest to a symmetric matrix in the Frobenius norm.
+
+    Parameters
+    ----------
+    matrix : ndarray, shape (n, n), [-]
+        Symmetric, with unit diagonal.
+    free : ndarray of bool, shape (n, n)
+        Entries that may change; the others keep their value.
+
+    Returns
+    -------
+    nearest : ndarray, shape (n, n), [-]
+        Positive semi-definite up to the tolerance of the iteration.
+
+    Notes
+    -----
+    Alternating projections with Dykstra's correction on to the positive semi-definite
+    matrices and on to the matrices with the kept entries (algorithm 3.3 of [1]_, where only
+    the diagonal is kept). Both sets are convex, and they meet because the identity
+    matrix lies in both as long as the kept entries off the diagonal are zero.
+
+    References
+    ----------
+    .. [1] N. J. Higham, "Computing the nearest correlation matrix - a problem from finance",
+       IMA Journal of Numerical Analysis 22 (2002), 329-343. From memory.
+    """
+    kept = matrix.copy()
+    current, correction = matrix.copy(), np.zeros_like(matrix)
+    for _ in range(_ROUNDS):
+        shifted = current - correction
+        values, vectors = np.linalg.eigh(shifted)
+        projected = (vectors * np.maximum(values, 0.0)) @ vectors.T
+        correction = projected - shifted
+        renewed = np.where(free, projected, kept)
+        change = np.max(np.abs(renewed - current))
+        current = renewed
+        if change < _TOLERANCE:
+            break
+    return current
+
+
+def _mended(matrix: FloatArray, given: Mapping[Pair, float], names: list[str]) -> dict[Pair, float]:
+    """Nearest set, drawn towards independence until it is positive definite as printed."""
+    index = {name: place for place, name in enumerate(names)}
+    free = np.zeros(matrix.shape, dtype=np.bool_)
+    for a, b in given:
+        free[index[a], index[b]] = free[index[b], index[a]] = True
+    nearest = nearest_correlation(matrix, free)
+    shrink = 0.0
+    while True:
+        shrink += 0.001
+        ranks = {
+            (a, b): round(rank_correlation((1.0 - shrink) * nearest[index[a], index[b]]), 3) for a, b in given
+        }
+        if np.linalg.eigvalsh(_matrix(ranks, names))[0] > 10.0 * LEAST_EIGENVALUE:
+            return ranks
+
+
+def _matrix(ranks: Mapping[Pair, float], names: list[str]) -> FloatArray:
+    matrix = np.eye(len(names))
+    index = {name: place for place, name in enumerate(names)}
+    for (a, b), rank in ranks.items():
+        matrix[index[a], index[b]] = matrix[index[b], index[a]] = latent_correlation(rank)
+    return matrix
+
+
+def _components(pairs: list[Pair]) -> list[list[Pair]]:
+    """Split pairs into sets that share no name."""
+    groups: list[tuple[set[str], list[Pair]]] = []
+    for pair in pairs:
+        touching = [group for group in groups if group[0] & set(pair)]
+        groups = [group for group in groups if group not in touching]
+        names = set(pair).union(*(group[0] for group in touching))
+        groups.append((names, [*(known for group in touching for known in group[1]), pair]))
+    return [sorted(members, key=pairs.index) for _, members in groups]

@@ -1,0 +1,151 @@
+"""Every key of the scenario in one table, made from the models."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Any, get_args
+
+from pydantic import BaseModel
+from pydantic.fields import FieldInfo
+from pydantic_core import PydanticUndefined
+
+from probsoil.scenario.distribution_tables import (
+    FORMS,
+    GREATEST_COV,
+    SPATIAL_DISTRIBUTIONS,
+    SPATIAL_KEYS,
+    form_text,
+)
+from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.fields import Range, Uncertain
+from probsoil.scenario.models import Scenario
+from probsoil.scenario.structure import CHOICES, LISTS, inner_table, keys_of, member
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ReferenceRow:
+    """One key of the scenario file.
+
+    Attributes
+    ----------
+    table : str
+        Where the key stands, such as ``[[layers]] clay``; empty at the top of the file.
+    key : str
+        Key.
+    unit : str
+        Base unit, ``-`` for a bare number, empty where there is none.
+    allowed : str
+        Range or choices.
+    source : str
+        Where the range comes from; empty where there is none.
+    uncertain : bool
+        Whether a distribution may be given.
+    default : str
+        Value if left out; ``required`` where there is none, empty where leaving out means none.
+    meaning : str
+        What the key says.
+    """
+
+    table: str
+    key: str
+    unit: str
+    allowed: str
+    source: str
+    uncertain: bool
+    default: str
+    meaning: str
+
+
+def reference_table() -> tuple[ReferenceRow, ...]:
+    """Return every key with its unit, range and meaning.
+
+    Returns
+    -------
+    rows : tuple of ReferenceRow
+        In the order of the file format; the distributions come last.
+    """
+    return (*_rows("", Scenario), *_distribution_rows())
+
+
+def _rows(table: str, model: type[BaseModel]) -> Iterator[ReferenceRow]:
+    for key, attribute in keys_of(model).items():
+        yield _row(table, key, model.model_fields[attribute])
+    for key in keys_of(model):
+        for title, inner in _inner(table, model, key):
+            yield from _rows(title, inner)
+
+
+def _inner(table: str, model: type[BaseModel], key: str) -> Iterator[tuple[str, type[BaseModel]]]:
+    if model is Scenario and (key in LISTS or key in CHOICES):
+        title = f"[[{key}]]" if key in LISTS else f"[{key}]"
+        if key in CHOICES:
+            yield from ((f"{title} {name}", choice) for name, choice in CHOICES[key][1].items())
+        elif (choice := member(key, {})) is not None:
+            yield title, choice
+        return
+    inner = inner_table(model, key)
+    if inner is not None:
+        yield (f"{table} {key}" if table else f"[{key}]"), inner
+
+
+def _row(table: str, key: str, info: FieldInfo) -> ReferenceRow:
+    field = next((part for part in info.metadata if isinstance(part, Range)), None)
+    if field is None:
+        return ReferenceRow(
+            table=table,
+            key=key,
+            unit="",
+            allowed=_allowed(info),
+            source="",
+            uncertain=False,
+            default=_default(info),
+            meaning=info.description or "",
+        )
+    return ReferenceRow(
+        table=table,
+        key=key,
+        unit=field.unit,
+        allowed=field.range_text.removesuffix(f" ({field.source})"),
+        source=field.source,
+        uncertain=isinstance(field, Uncertain),
+        default=_default(info, field.unit),
+        meaning=field.meaning,
+    )
+
+
+def _allowed(info: FieldInfo) -> str:
+    annotation: Any = info.annotation
+    choices = get_args(annotation)
+    if choices and all(isinstance(choice, str | int) for choice in choices):
+        return " | ".join(str(choice) for choice in choices)
+    if annotation in (str, bool, int):
+        return {str: "text", bool: "true | false", int: "whole number"}[annotation]
+    return "list" if "tuple" in str(annotation) else "table"
+
+
+def _default(info: FieldInfo, unit: str = "") -> str:
+    if info.default is PydanticUndefined:
+        return "required"
+    if info.default is None or info.default == () or isinstance(info.default, BaseModel):
+        return ""
+    if isinstance(info.default, Distribution):
+        return info.default.describe(unit)
+    return str(info.default).lower() if isinstance(info.default, bool) else str(info.default)
+
+
+def _distribution_rows() -> Iterator[ReferenceRow]:
+    for name in FORMS:
+        extra = (
+            f"; also {', '.join(SPATIAL_KEYS)} for soil properties" if name in SPATIAL_DISTRIBUTIONS else ""
+        )
+        yield ReferenceRow(
+            table="distribution",
+            key=f'dist = "{name}"',
+            unit="of the parameter",
+            allowed=f"{form_text(name)}{extra}",
+            source="",
+            uncertain=False,
+            default="",
+            meaning=f"cov is sd / mean, a fraction, at most {GREATEST_COV:g}"
+            if "cov" in form_text(name)
+            else "bounds",
+        )

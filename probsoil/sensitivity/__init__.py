@@ -1,0 +1,22 @@
+"""Drivers of exceedance: which uncertain parameters decide whether a limit is exceeded."""
+
+from probsoil.sensitivity.accumulate import GROUPS, DriverSums, driver_sums, merge
+from probsoil.sensitivity.drivers import Driver, Drivers, drivers
+from probsoil.sensitivity.elasticities import Elasticity, elasticities
+from probsoil.sensitivity.shapley import linear_shapley
+from probsoil.sensitivity.shares import Shares, shares
+
+__all__ = [
+    "GROUPS",
+    "Driver",
+    "DriverSums",
+    "Drivers",
+    "Elasticity",
+    "Shares",
+    "driver_sums",
+    "drivers",
+    "elasticities",
+    "linear_shapley",
+    "merge",
+    "shares",
+]

@@ -1,0 +1,107 @@
+"""Shares of a quantity's variance, by the best linear fit in the latent normals."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.special import stdtrit
+
+from probsoil._typing import FloatArray
+from probsoil.sensitivity.accumulate import DriverSums
+from probsoil.sensitivity.shapley import linear_shapley
+
+_CONSTANT = 1e-13  # variance over mean square below which a quantity does not vary
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Shares:
+    """Share of the variance of a linear fit that belongs to each parameter.
+
+    Attributes
+    ----------
+    share, low, high : ndarray, shape (d,), [-]
+        Shapley effects over their sum, and their limits; not a number where there is no fit.
+    r_squared : float, [-]
+        Part of the quantity's variance that the linear fit explains; not a number where there is none.
+    fitted : int, [-]
+        Realisations with a finite quantity, which the fit is made from.
+    """
+
+    share: FloatArray
+    low: FloatArray
+    high: FloatArray
+    r_squared: float
+    fitted: int
+
+
+def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) -> Shares:
+    """Shapley shares of the best linear fit of a quantity in the latent normals.
+
+    Parameters
+    ----------
+    sums : DriverSums
+        Sums over all realisations.
+    correlation : ndarray, shape (d, d), [-]
+        Correlation R of the latent normals.
+    confidence : float, [-]
+        Confidence of the limits.
+
+    Returns
+    -------
+    shares : Shares
+        Shares that add up to one, limits, and the quality of the fit.
+
+    Notes
+    -----
+    The shares are exact for the fitted line and say nothing of what the line leaves unexplained (see
+    `r_squared`) nor of the tail beyond the limit. The limits are the t interval of the jackknife over
+    groups of realisations (each group left out in turn), with the error of the permutations where there is
+    one, clipped to 0 and 1. Too few realisations for the fit, or a quantity that does not vary, give no
+    shares.
+    """
+    dimension = sums.dimension
+    unknown = np.full(dimension, np.nan)
+    used = np.flatnonzero(sums.fitted)
+    total = sums.products.sum(axis=0)
+    fitted = int(sums.fitted.sum())
+    spare = fitted - int(sums.fitted.max(initial=0)) - dimension - 1
+    if dimension == 0 or len(used) < 2 or spare < 1 or not _varies(total):
+        return Shares(share=unknown, low=unknown, high=unknown, r_squared=np.nan, fitted=fitted)
+    fits = np.stack([_slopes(total), *(_slopes(total - sums.products[g]) for g in used)], axis=1)
+    effects, error = linear_shapley(fits, correlation)
+    parts = effects / effects.sum(axis=0)
+    share, left_out = parts[:, 0], parts[:, 1:]
+    groups = len(used)
+    jackknife = (groups - 1) / groups * ((left_out - left_out.mean(axis=1, keepdims=True)) ** 2).sum(axis=1)
+    variance = jackknife + (error[:, 0] / effects[:, 0].sum()) ** 2
+    reach = float(stdtrit(groups - 1, 0.5 * (1.0 + confidence))) * np.sqrt(variance)
+    return Shares(
+        share=share,
+        low=np.maximum(share - reach, 0.0),
+        high=np.minimum(share + reach, 1.0),
+        r_squared=_r_squared(total),
+        fitted=fitted,
+    )
+
+
+def _slopes(products: FloatArray) -> FloatArray:
+    """Coefficients of the latent normals in the least-squares fit."""
+    return _coefficients(products)[1:]
+
+
+def _coefficients(products: FloatArray) -> FloatArray:
+    """Intercept and slopes of the least-squares fit, from its normal equations."""
+    return np.asarray(np.linalg.solve(products[:-1, :-1], products[:-1, -1]), dtype=np.float64)
+
+
+def _varies(products: FloatArray) -> bool:
+    return bool(_total_squares(products) > _CONSTANT * products[-1, -1])
+
+
+def _total_squares(products: FloatArray) -> float:
+    """Sum of squares of the quantity about its mean."""
+    return float(products[-1, -1] - products[0, -1] ** 2 / products[0, 0])
+
+
+def _r_squared(products: FloatArray) -> float:
+    left = float(products[-1, -1] - _coefficients(products) @ products[:-1, -1])
+    return min(max(1.0 - left / _total_squares(products), 0.0), 1.0)

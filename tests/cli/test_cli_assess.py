@@ -1,0 +1,250 @@
+"""`probsoil assess` as a user meets it: answer, options, endings."""
+
+import json
+import logging
+import re
+import warnings
+from pathlib import Path
+from typing import Any
+
+import cli_fakes
+import pytest
+
+from probsoil.cli import main
+from probsoil.errors import (
+    ConvergenceError,
+    DependenceError,
+    ParameterError,
+    ProbsoilError,
+    ResultsError,
+    StoppedEarly,
+)
+
+
+def test_answer_says_chances_verdicts_drivers_report_and_caution(
+    desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["assess", "site.toml"]) == 0
+    out, err = capsys.readouterr()
+    words = re.sub(r"\s+", " ", out)
+    assert "Trial [bold]embankment[/bold]: 2,000 realisations (monte carlo), seed 7" in words
+    assert re.search(r"residual \[m\] .* 12\.4 % \(11\.0 to 13\.9 %\) .* Beyond the target", words)
+    assert re.search(r"slip .* none of 2,000 realisations \(below 0\.19 % .* No target set", words)
+    assert re.search(r"soft clay\.b +50 % \(46 to 54 %\) +raises the chance", out)
+    assert out.index("soft clay.b") < out.index("soft clay.d") < out.index("soft clay.a")
+    assert "soft clay.c" not in out  # the fourth of the drivers
+    assert "Drivers of slip: nothing exceeded, so nothing can be ranked" in out
+    assert "Warning: the floor acted in 3 % of realisations" in out
+    assert f"Report: {Path('results', 'site', 'report.html')}" in out
+    assert "Local codes and a licensed engineer decide" in words
+    assert err == ""
+    assert calculation.calls[0]["out"] == Path("results/site")
+    assert (desk / "results" / "site" / "report.html").exists()
+    assert (desk / "results" / "site" / "limits.csv").exists()
+
+
+def test_options_reach_the_calculation_and_absent_ones_leave_the_scenario_alone(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,
+) -> None:
+    line = (
+        "assess site.toml --out here --realisations 500 --draws latin-hypercube --seed 0 --workers 3 --resume"
+    )
+    assert main(line.split()) == 0
+    assert main(["assess", "site.toml"]) == 0
+    given, absent = calculation.calls
+    assert given["out"] == Path("here")
+    assert (given["realisations"], given["draws"], given["seed"]) == (500, "latin hypercube", 0)
+    assert (given["workers"], given["resume"]) == (3, True)
+    assert given["command"] == f"probsoil {line}"
+    assert (absent["realisations"], absent["draws"], absent["seed"], absent["workers"]) == (None,) * 4
+    assert absent["resume"] is False
+
+
+def test_json_is_the_result_and_nothing_else(
+    desk: Path,
+    calculation: cli_fakes.Calculation,  # noqa: ARG001
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    assert main(["assess", "site.toml", "--json"]) == 0
+    assert json.loads(capsys.readouterr().out) == cli_fakes.results()
+    assert (desk / "results" / "site" / "report.html").exists()
+
+
+def test_json_never_holds_what_is_not_json(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    monkeypatch.setattr(cli_fakes, "results", lambda: {"probability": float("nan")})
+    calculation.ending = None
+    assert main(["assess", "site.toml", "--json"]) == 1
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert "failed unexpectedly" in err
+
+
+def test_quiet_prints_nothing_but_still_logs(
+    desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
+) -> None:
+    calculation.ending = lambda: logging.getLogger("probsoil.campaign").warning("old chunks removed")
+    assert main(["assess", "site.toml", "--quiet"]) == 0
+    assert capsys.readouterr() == ("", "")
+    assert calculation.calls[0]["progress"] is None
+    log = (desk / "results" / "site" / "log.txt").read_text()
+    assert "probsoil assess site.toml --quiet" in log
+    assert "WARNING probsoil.campaign: old chunks removed" in log
+    assert log.rstrip().endswith("done")
+
+
+def test_warnings_of_ours_go_to_standard_error_and_those_of_python_to_the_log(
+    desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
+) -> None:
+    def speak() -> None:
+        logging.getLogger("probsoil.campaign").warning("old chunks removed")
+        with warnings.catch_warnings():
+            warnings.simplefilter("always")
+            warnings.warn("beyond the published range", UserWarning, stacklevel=1)
+
+    calculation.ending = speak
+    assert main(["assess", "site.toml", "--json"]) == 0
+    out, err = capsys.readouterr()
+    assert json.loads(out)
+    assert err == "old chunks removed\n"
+    assert "UserWarning: beyond the published range" in (desk / "results" / "site" / "log.txt").read_text()
+
+
+def test_second_run_adds_to_the_log_and_leaves_no_handler_behind(
+    desk: Path,
+    calculation: cli_fakes.Calculation,  # noqa: ARG001
+) -> None:
+    before = list(logging.getLogger("probsoil").handlers)
+    for _ in range(2):
+        assert main(["assess", "site.toml", "--quiet"]) == 0
+    assert (desk / "results" / "site" / "log.txt").read_text().count("probsoil assess") == 2
+    assert logging.getLogger("probsoil").handlers == before
+
+
+@pytest.mark.parametrize(
+    ("ending", "code"),
+    [
+        (StoppedEarly("stopped early after 3 of 20 chunks; 3 are kept in 'x'"), 3),
+        (ResultsError("the chunks are of another campaign"), 1),
+        (ConvergenceError("no answer", best=1.0, error=0.5), 1),
+        (ProbsoilError("chunk 4 of 20 failed: ValueError: odd"), 1),
+        (ParameterError("realisations must be a power of two"), 2),
+        (DependenceError("correlations cannot hold together"), 2),
+    ],
+)
+def test_each_ending_has_its_code_and_no_traceback(
+    desk: Path,
+    calculation: cli_fakes.Calculation,
+    capsys: pytest.CaptureFixture[str],
+    ending: ProbsoilError,
+    code: int,
+) -> None:
+    calculation.ending = ending
+    assert main(["assess", "site.toml"]) == code
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert err.count(str(ending)) == 1
+    assert "Traceback" not in err
+    assert f"ended: {ending}" in (desk / "results" / "site" / "log.txt").read_text()
+
+
+def test_unexpected_error_is_short_and_its_traceback_is_in_the_log(
+    desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
+) -> None:
+    calculation.ending = ZeroDivisionError("clay")
+    assert main(["assess", "site.toml"]) == 1
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert "probsoil failed unexpectedly: ZeroDivisionError: clay" in err
+    assert "Traceback" not in err
+    assert str(Path("results", "site", "log.txt")) in err
+    log = (desk / "results" / "site" / "log.txt").read_text()
+    assert "Traceback (most recent call last)" in log
+    assert log.rstrip().endswith("ZeroDivisionError: clay")
+
+
+def test_interrupt_outside_the_realisations_fails_without_traceback(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    calculation.ending = KeyboardInterrupt()
+    assert main(["assess", "site.toml"]) == 1
+    assert "Traceback" not in capsys.readouterr().err
+
+
+def test_mistakes_in_the_scenario_are_all_told_and_nothing_is_written(
+    desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
+) -> None:
+    before = sorted(desk.rglob("*"))
+    assert main(["assess", "bad.toml"]) == 2
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert re.search(r"bad\.toml:\d+:1: .*kapa", err)
+    assert 'did you mean "kappa"?' in err
+    assert "sede" in err
+    assert "Error:" not in err
+    assert sorted(desk.rglob("*")) == before
+    assert calculation.calls == []
+
+
+class Refused:
+    """A calculation that is refused before it makes its folder."""
+
+    def __init__(self, ending: Exception) -> None:
+        self.ending = ending
+
+    def assess(self, *_: Any, **__: Any) -> None:
+        raise self.ending
+
+
+@pytest.mark.parametrize("ending", [DependenceError("cannot hold together"), TypeError("odd")])
+def test_run_refused_before_its_folder_is_made_leaves_nothing_behind(
+    desk: Path,
+    calculation: cli_fakes.Calculation,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+    ending: Exception,
+) -> None:
+    monkeypatch.setattr(calculation, "assess", Refused(ending).assess)
+    before = sorted(desk.rglob("*"))
+    assert main(["assess", "site.toml"]) == (2 if isinstance(ending, DependenceError) else 1)
+    assert sorted(desk.rglob("*")) == before
+    if isinstance(ending, TypeError):
+        err = capsys.readouterr().err
+        place = re.search(r"The details are in (\S+\.log);", err)
+        assert place is not None
+        assert "TypeError: odd" in Path(place[1]).read_text()
+        Path(place[1]).unlink()
+
+
+@pytest.mark.parametrize(
+    ("line", "message"),
+    [
+        ("assess site.toml --realisatons 5", "--realisations"),
+        ("assess site.toml --realisations 0", "'--realisations'"),
+        ("assess site.toml --workers none", "'--workers'"),
+        ("assess site.toml --draws latin", "'latin-hypercube'"),
+        ("assess site.toml --seed -1", "'--seed'"),
+        ("assess", "Missing argument"),
+        ("asess site.toml", "Did you mean 'assess'?"),
+        ("assess nosuch.toml", "there is no such file"),
+    ],
+)
+def test_mistakes_on_the_command_line_end_with_two_and_a_hint(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,
+    capsys: pytest.CaptureFixture[str],
+    line: str,
+    message: str,
+) -> None:
+    assert main(line.split()) == 2
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert message in re.sub(r"[\s│]+", " ", err)
+    assert calculation.calls == []
