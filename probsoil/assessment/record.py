@@ -16,6 +16,7 @@ from probsoil.sensitivity import Driver, Drivers
 
 CONFIDENCE = 0.95
 _UNITS = {"settlement": "m", "time_to_consolidation": "years"}
+_DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _NOTICEABLE = 1e-4  # share of a distribution that is cut off
 
 
@@ -73,7 +74,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
             limit.threshold,
             limit.sense,
             replicate=replicate,
-            method=study.points.name,
+            method=_DRAWS[study.points.name],
             confidence=CONFIDENCE,
             target=limit.target_probability,
         )

@@ -5,6 +5,7 @@ import io
 import json
 import time
 from collections.abc import Callable, Iterator, Mapping
+from concurrent.futures import Executor
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -110,6 +111,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     progress: Progress | None = None,
     command: str | None = None,
     source: Path | None = None,
+    executor_factory: Callable[[], Executor] | None = None,
 ) -> Assessment:
     """Return how likely each limit is exceeded and what drives it.
 
@@ -135,6 +137,9 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
         Command line, for the record.
     source : Path or None
         File the scenario was read from; it is copied to `out` and its digest goes into the record.
+    executor_factory : callable or None
+        Makes a `concurrent.futures.Executor` to evaluate chunks on, such as that of a cluster; None
+        for threads.
 
     Returns
     -------
@@ -155,7 +160,17 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     folder = None if out is None else prepare_folder(out)
     study = prepare(scenario)
     seconds = {"preparation": time.perf_counter() - clock}
-    chunks = _chunks(study, folder, workers=workers, resume=resume, progress=progress)
+    heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
+    chunks = run_campaign(
+        study,
+        study.points.n_chunks,
+        identity=_identity(study),
+        workers=workers,
+        store=None if folder is None else folder / _CHUNKS,
+        resume=resume,
+        executor_factory=executor_factory,
+        progress=heard,
+    )
     sample, sums = _collect(study, chunks)
     seconds[REALISATIONS] = time.perf_counter() - clock - seconds["preparation"]
     results = _results(study, sample, sums)
@@ -188,30 +203,14 @@ def _overridden(
     return scenario.model_copy(update={key: value for key, value in given.items() if value is not None})
 
 
-def _chunks(
-    study: Study,
-    folder: Path | None,
-    *,
-    workers: int | None,
-    resume: bool,
-    progress: Progress | None,
-) -> Iterator[tuple[int, dict[str, NDArray[np.generic]]]]:
-    identity = campaign_identity(
+def _identity(study: Study) -> str:
+    """Return what tells this campaign from every other whose numbers would differ."""
+    return campaign_identity(
         repr(study.scenario),
         seed=study.scenario.seed,
         realisations=study.points.n,
         draws=study.points.name,
         version=__version__,
-    )
-    heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
-    return run_campaign(
-        study,
-        study.points.n_chunks,
-        identity=identity,
-        workers=workers,
-        store=None if folder is None else folder / _CHUNKS,
-        resume=resume,
-        progress=heard,
     )
 
 

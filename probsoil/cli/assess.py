@@ -49,22 +49,23 @@ def assess(  # noqa: PLR0913 - one argument for each option of the command
     scenario = read_scenario(file)
     folder = Path("results", file.stem) if out is None else out
     command = context.obj["command"]
-    with logged_run(folder, command, quiet=quiet), shown_progress(quiet=quiet) as progress:
-        assessment = assessed(
-            scenario,
-            out=folder,
-            realisations=realisations,
-            draws=None if draws is None else draws.value.replace("-", " "),
-            seed=seed,
-            workers=workers,
-            resume=resume,
-            progress=progress,
-            command=command,
-            source=file,
-        )
-        write_tables(assessment.results, folder)
-        write_report(folder)
-    if json:
-        print_json(assessment.results)
-    elif not quiet:
-        print_summary(assessment.results, folder)
+    with logged_run(folder, command, quiet=quiet):
+        with shown_progress(quiet=quiet) as progress:
+            assessment = assessed(
+                scenario,
+                out=folder,
+                realisations=realisations,
+                draws=None if draws is None else draws.value.replace("-", " "),
+                seed=seed,
+                workers=workers,
+                resume=resume,
+                progress=progress,
+                command=command,
+                source=file,
+            )
+            write_tables(assessment.results, folder)
+            write_report(folder)
+        if json:
+            print_json(assessment.results)
+        elif not quiet:
+            print_summary(assessment.results, folder)

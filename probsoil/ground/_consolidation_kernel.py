@@ -78,6 +78,7 @@ class _State(NamedTuple):
     wp: FloatArray
     rate: FloatArray  # of s
     mass: FloatArray
+    peak: FloatArray  # greatest total so far, which no effective stress exceeds
     sunk: FloatArray  # (2, lane): settlement and its rate
 
 
@@ -116,6 +117,7 @@ def _start(b: int, soil: Soil, state: _State) -> None:
             state.wp[i, lane] = soil.kap[b, i, lane] * (xp - x)
             state.w[i, lane] = 0.0
             state.rate[i, lane] = 0.0
+            state.peak[i, lane] = soil.stress[b, i, lane]
             state.mass[i, lane] = soil.thickness[b, i, lane] / (1.0 + soil.void_ratio[b, i, lane])
     for lane in range(LANES):
         state.sunk[0, lane] = 0.0
@@ -306,20 +308,26 @@ def _iterate(
 
 
 @_compiled
-def _finish(length: float, state: _State, trial: _Trial) -> None:
-    """Make the trial state the state; yielded cells take their stress as preconsolidation stress."""
+def _finish(b: int, length: float, soil: Soil, state: _State, trial: _Trial) -> None:
+    """Make the trial state the state; yielded cells take their stress as preconsolidation stress.
+
+    A long step may carry the stress a little past the total, from where it would come back; the
+    soil must not remember that, so no preconsolidation stress goes beyond the greatest total.
+    """
     for lane in range(LANES):
         state.sunk[1, lane] = 0.0
     for i in range(trial.s.shape[0]):
         for lane in range(LANES):
+            state.peak[i, lane] = max(state.peak[i, lane], trial.total[i, lane])
             state.sunk[1, lane] += state.mass[i, lane] * trial.w[i, lane]
             state.rate[i, lane] = (trial.s[i, lane] - state.s[i, lane]) / length
             state.s[i, lane] = trial.s[i, lane]
             state.x[i, lane] = trial.x[i, lane]
             state.w[i, lane] = trial.w[i, lane]
-            yields = trial.x[i, lane] > state.xp[i, lane]
-            state.wp[i, lane] = trial.w[i, lane] if yields else state.wp[i, lane]
-            state.xp[i, lane] = trial.x[i, lane] if yields else state.xp[i, lane]
+            remembered = natural_log(min(trial.s[i, lane], state.peak[i, lane]))
+            further = max(remembered - state.xp[i, lane], 0.0)
+            state.wp[i, lane] += soil.lam[b, i, lane] * further
+            state.xp[i, lane] += further
     for lane in range(LANES):
         sunk = state.sunk[1, lane]
         state.sunk[1, lane] = (sunk - state.sunk[0, lane]) / length
@@ -345,6 +353,7 @@ def consolidate_lanes(
     n_block, n_cell, _ = soil.thickness.shape
     shape = (n_cell, LANES)
     state = _State(
+        np.empty(shape),
         np.empty(shape),
         np.empty(shape),
         np.empty(shape),
@@ -382,7 +391,7 @@ def consolidate_lanes(
                 for lane in range(LANES):
                     if not work.worst[lane] <= _TOLERANCE:  # also when it is not a number
                         failed[b, lane] += 1
-            _finish(length, state, trial)
+            _finish(b, length, soil, state, trial)
             slot = schedule.record[n]
             for lane in range(LANES):
                 settlement[b, n, lane] = state.sunk[0, lane]

@@ -7,7 +7,7 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ParameterError
 
-DEFAULT_CELLS = 40
+DEFAULT_CELLS = 48
 _FEWEST_PER_LAYER = 3
 _FEWEST_PER_SEGMENT = 8
 _NEAR_SHARE = 0.1  # of a segment's thickness; how far the refinement at a drained face reaches

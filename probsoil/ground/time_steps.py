@@ -66,7 +66,7 @@ def _piece(start: float, end: float, first: float, growth: float) -> FloatArray:
     steps = growth ** np.arange(number)
     ends = start + span * np.cumsum(steps) / steps.sum()
     ends[-1] = end
-    return ends
+    return np.asarray(ends)
 
 
 def _with(free: FloatArray, fixed: FloatArray) -> FloatArray:

@@ -73,16 +73,16 @@ def test_json_is_the_result_and_nothing_else(
 
 def test_json_never_holds_what_is_not_json(
     desk: Path,  # noqa: ARG001
-    calculation: cli_fakes.Calculation,
+    calculation: cli_fakes.Calculation,  # noqa: ARG001
     monkeypatch: pytest.MonkeyPatch,
     capsys: pytest.CaptureFixture[str],
 ) -> None:
     monkeypatch.setattr(cli_fakes, "results", lambda: {"probability": float("nan")})
-    calculation.ending = None
     assert main(["assess", "site.toml", "--json"]) == 1
     out, err = capsys.readouterr()
     assert out == ""
-    assert "failed unexpectedly" in err
+    assert "failed unexpectedly: ValueError" in err
+    assert str(Path("results", "site", "log.txt")) in err
 
 
 def test_quiet_prints_nothing_but_still_logs(

@@ -98,7 +98,7 @@ def _pair_slips(pair: Pair, addresses: _Addresses, seen: dict[Pair, int]) -> lis
 
 
 def _joint_slips(sound: dict[Pair, tuple[int, float]]) -> list[Slip]:
-    if len(sound) < 2:
+    if not sound:
         return []
     from probsoil.scenario.correlation import impossible_sets  # deferred: needs numpy
 
@@ -111,7 +111,7 @@ def _joint_slips(sound: dict[Pair, tuple[int, float]]) -> list[Slip]:
                 path=("dependence", sound[next(iter(impossible))][0], "rank_correlation"),
                 message=f"these rank correlations cannot hold together: {listed}",
                 allowed="a positive definite correlation matrix (2 sin(pi r / 6), pairs not given being 0)",
-                hint=f"nearest set that can hold (alternating projections, Higham 2002): {nearest}",
+                hint=f"nearest that can hold (Higham 2002, drawn in a little): {nearest}",
             )
         )
     return slips

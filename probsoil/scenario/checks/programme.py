@@ -106,7 +106,9 @@ def _removal_slips(stages: Sequence[Any], key: str, unit: str) -> list[Slip]:
             message = f"{-change:.4g} {unit} is removed but only {placed:.4g} {unit} is there"
             return [
                 Slip(
-                    path=("stages", position, key), message=message, allowed=f"at least {-placed or 0.0:.4g} {unit}"
+                    path=("stages", position, key),
+                    message=message,
+                    allowed=f"at least {-placed or 0.0:.4g} {unit}",
                 )
             ]
         placed += change

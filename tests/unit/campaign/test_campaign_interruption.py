@@ -169,6 +169,31 @@ def test_chunks_that_run_when_the_stop_comes_are_kept(tmp_path: Path) -> None:
     assert len(list((tmp_path / "chunks").glob("chunk-*.npz"))) == 2
 
 
+def test_chunk_that_fails_after_the_stop_does_not_hide_that_it_was_a_stop(tmp_path: Path) -> None:
+    thread = interrupt_after(0.2)
+
+    def evaluate(index: int) -> Result:
+        time.sleep(0.5)
+        raise ValueError(index)
+
+    with pytest.raises(StoppedEarly, match="stopped early after 0 of 24 chunks; 0 are kept"):
+        list(run_campaign(evaluate, N, identity="ours", workers=2, store=tmp_path / "chunks"))
+    thread.join()
+
+
+@pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
+def test_ignored_interrupt_stays_ignored() -> None:
+    before = signal.signal(signal.SIGINT, signal.SIG_IGN)  # as for a job in the background
+    try:
+        run = run_campaign(campaign_chunks.drawn, N, identity="ours", workers=1)
+        next(run)
+        os.kill(os.getpid(), signal.SIGINT)
+        assert len(list(run)) == N - 1
+        assert signal.getsignal(signal.SIGINT) is signal.SIG_IGN
+    finally:
+        signal.signal(signal.SIGINT, before)
+
+
 def test_second_interrupt_does_not_wait_for_chunks_that_run(tmp_path: Path) -> None:
     thread = interrupt_after(0.3, times=2)
     release = threading.Event()

@@ -221,3 +221,13 @@ def test_identity_changes_with_content_and_with_each_setting() -> None:
         campaign_identity("a = 1", seed="1", draws="sobol"),
     }
     assert len(others | {base}) == 6
+
+
+def test_folder_in_the_place_of_a_chunk_is_no_chunk(tmp_path: Path) -> None:
+    run(tmp_path / "chunks")
+    path = tmp_path / "chunks" / "chunk-000004.npz"
+    path.unlink()
+    path.mkdir()
+    assert open_store(tmp_path / "chunks", identity="ours", n_chunks=N, resume=True).read(4) is None
+    with pytest.raises(ResultsError, match=r"chunk-000004\.npz' cannot be removed"):
+        discard_chunks(tmp_path / "chunks")

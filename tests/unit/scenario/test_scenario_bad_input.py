@@ -677,3 +677,9 @@ def test_correlations_that_cannot_hold_together_and_the_nearest_that_can(base_te
     assert "Higham 2002" in fault.hint
     ranks = [float(part.rpartition(": ")[2]) for part in fault.hint.split("; ")]
     parse_scenario(base_text[:start] + three_correlations(*ranks) + base_text[end:])
+
+
+def test_one_correlation_that_is_one_in_all_but_name_is_refused(base_text):
+    (fault,) = faults_in(base_text.replace("rank_correlation = 0.6", "rank_correlation = 0.9999999999"))
+    assert "cannot hold together" in fault.message
+    assert "soft clay.Cc with soft clay.Cs: 0.99" in fault.hint
