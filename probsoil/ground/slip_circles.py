@@ -15,7 +15,8 @@ from probsoil.ground._circle_kernel import driving_moments, resisting_weights
 
 N_ZONE = 3  # beyond the toe, under the slope, under the crest
 _BLOCK = 2000  # circles worked out at a time
-_EXITS, _ENTRIES, _DEPTHS = 24, 24, 32
+_EXITS, _ENTRIES, _DEPTHS = 24, 24, 48
+_SHALLOWEST = 0.2  # m; a circle that touches less deep slips in the fill, not in the ground
 _LEAST_DRIVING = 1e-9
 
 
@@ -156,7 +157,8 @@ def circle_family(
     -----
     A circle is fixed by where it leaves (at the toe or beyond), where it enters (on the top of
     the fill, up to the far shoulder) and the depth it touches. On level ground the soil inside
-    the circle below ground level balances about the centre, so only fill drives. Friction acts
+    the circle below ground level balances about the centre, so only fill drives. Every circle goes
+    at least 0.2 m into the ground: ravelling of the fill's own slope is not looked at. Friction acts
     on the normal stress of the ordinary method of slices, weight of column times the squared
     cosine of the base's inclination.
 
@@ -230,7 +232,8 @@ def _grid(
     shoulder, far = section.shoulder, section.base_width - section.shoulder
     run = min(far - shoulder, reach)
     enter = shoulder + run * np.linspace(0.0, 1.0, round(_ENTRIES * density) + 1)[1:] ** 1.5
-    touch = depth * np.linspace(0.0, 1.0, round(_DEPTHS * density) + 1)[1:] ** 1.5
+    shallow = min(_SHALLOWEST, 0.5 * depth)
+    touch = shallow + (depth - shallow) * np.linspace(0.0, 1.0, round(_DEPTHS * density)) ** 1.5
     mesh = np.meshgrid(leave, enter, touch, indexing="ij")
     return mesh[0].ravel(), mesh[1].ravel(), mesh[2].ravel()
 

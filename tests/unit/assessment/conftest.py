@@ -78,7 +78,7 @@ not_more_than = 0.02
 [[limits]]
 name = "slip"
 quantity = "slip_safety"
-not_less_than = 1.2
+not_less_than = 0.8
 target_probability = 0.01
 
 [[limits]]

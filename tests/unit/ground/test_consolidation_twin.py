@@ -1,0 +1,94 @@
+"""The compiled kernel against an independent method-of-lines solution, on random profiles.
+
+Tolerance, fixed before the first run: 0.5 % of the greatest settlement at every time, the kernel on
+a grid four times finer than the default (the default grid's own error is in `test_discretisation`).
+"""
+
+import numpy as np
+import pytest
+from consolidation_twin import TwinLayer, twin_settlement
+from ground_cases import central, clay, refined, sand, scenario, stage
+
+from probsoil.ground.response import ground_state
+
+TOLERANCE = 0.005
+TIMES = (0.05, 0.1, 0.2, 0.5, 1.0, 1.2, 2.0, 5.0, 10.0, 20.0)
+SAND = TwinLayer(thickness=0.6, weight=19.0)
+
+
+def text_of(index, layer):
+    if layer.lam == 0.0:
+        return sand(f"sand {index}", layer.thickness, unit_weight=layer.weight)
+    flow = "{ cv = %r }" % layer.flow[1] if layer.flow[0] == "cv" else "{ k = %r, ck = %r }" % layer.flow[1:]
+    return clay(
+        f"clay {index}",
+        layer.thickness,
+        unit_weight=layer.weight,
+        void_ratio=layer.void_ratio,
+        lam=layer.lam,
+        kappa=layer.kap,
+        preconsolidation=f"{{ pop = {layer.pop!r} }}",
+        permeability=flow,
+    )
+
+
+def random_clay(rng):
+    e0 = rng.uniform(1.2, 2.6)
+    lam = rng.uniform(0.1, 0.16) * (1.0 + e0)
+    by_cv = rng.random() < 0.5
+    return TwinLayer(
+        thickness=float(rng.uniform(0.8, 4.0)),
+        weight=float(rng.uniform(14.5, 17.5)),
+        void_ratio=float(e0),
+        lam=float(lam),
+        kap=float(lam * rng.uniform(0.1, 0.3)),
+        pop=float(rng.uniform(5.0, 45.0)),
+        flow=("cv", float(rng.uniform(0.5, 4.0)))
+        if by_cv
+        else ("k", float(10.0 ** rng.uniform(-9.5, -8.5)), float(rng.uniform(0.4, 1.2))),
+    )
+
+
+def random_case(seed):
+    rng = np.random.default_rng(np.random.SeedSequence(1967, spawn_key=(seed,)))
+    layers = [random_clay(rng) for _ in range(int(rng.integers(1, 4)))]
+    if rng.random() < 0.5:
+        layers.insert(0, SAND)
+    if rng.random() < 0.4 and len(layers) > 2:
+        layers.insert(2, SAND)
+    first, second = float(rng.uniform(20.0, 60.0)), float(rng.uniform(10.0, 40.0))
+    second *= -0.6 if rng.random() < 0.5 else 1.0  # half of the cases take part of the load off again
+    knots = [(0.0, 0.0), (0.1, first), (1.0, first), (1.2, first + second), (20.0, first + second)]
+    return layers, knots, float(rng.uniform(0.3, 1.5)), bool(rng.random() < 0.5)
+
+
+@pytest.mark.parametrize("seed", range(6))
+def test_kernel_and_twin_agree(seed):
+    layers, knots, water_table, base_drained = random_case(seed)
+    stages = [
+        stage("first", 0.0, 0.1, pressure=knots[1][1]),
+        stage("second", 1.0, 1.2, pressure=knots[3][1] - knots[1][1]),
+    ]
+    case = scenario(
+        [text_of(index, layer) for index, layer in enumerate(layers)],
+        stages,
+        water_table=water_table,
+        base="drained" if base_drained else "undrained",
+        horizon=20.0,
+    )
+    site = refined(case, 4, also=TIMES)
+    state = ground_state(site, central(case))
+    assert state.response.converged.all()
+    kernel = state.consolidation.settlement[0, np.searchsorted(site.times, TIMES)]
+    twin = twin_settlement(layers, knots, TIMES, water_table=water_table, base_drained=base_drained)
+    assert kernel == pytest.approx(twin, abs=TOLERANCE * twin.max())
+
+
+def test_twin_reproduces_terzaghi():
+    """The twin too must answer to something: a small load on a thin layer, 50.4 % at T = 0.2."""
+    layer = TwinLayer(thickness=1.0, weight=9.81, void_ratio=1.0, lam=1e-3, kap=5e-4, pop=0.0, flow=("cv", 1.0))
+    platform = TwinLayer(thickness=5.0, weight=30.0)  # gives a stress that hardly varies over the clay
+    times = (0.2, 30.0)
+    knots = [(0.0, 0.0), (1e-6, 0.1), (30.0, 0.1)]
+    settled = twin_settlement([platform, layer], knots, times, water_table=5.0, base_drained=False)
+    assert settled[0] / settled[1] == pytest.approx(0.50409, abs=0.002)
