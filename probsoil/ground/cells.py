@@ -10,7 +10,7 @@ from probsoil.errors import ParameterError
 DEFAULT_CELLS = 48
 _FEWEST_PER_LAYER = 3
 _FEWEST_PER_SEGMENT = 8
-_NEAR_SHARE = 0.1  # of a segment's thickness; how far the refinement at a drained face reaches
+_NEAR_SHARE = 0.03  # of a segment's thickness; how far the refinement at a drained face reaches
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -72,7 +72,7 @@ def graded_cells(
     Notes
     -----
     A segment is a run of clay layers between draining boundaries. Cell size is in proportion to
-    the distance from the nearest drained face plus a tenth of the segment, so that the steep
+    the distance from the nearest drained face plus 3 % of the segment, so that the steep
     early gradients there are resolved; segments share the cells by the square root of their
     thickness.
     """
