@@ -75,22 +75,30 @@ def _print_drivers(console: "Console", results: Mapping[str, Any]) -> None:
         drivers = [driver for driver in results["drivers"] if driver["limit"] == limit["name"]]
         rows += [_driver_row(driver) for driver in _foremost(drivers)]
     if rows:
-        print_table(console, "Foremost drivers", ("limit", "parameter", "share", "a larger value"), rows)
+        print_table(
+            console,
+            "Foremost drivers",
+            ("limit", "rank", "parameter", "share of the spread", "a larger value"),
+            rows,
+        )
     for quality in results["driver_quality"]:
         if quality["note"]:
             console.print(f"Drivers of {quality['limit']}: {quality['note']}")
 
 
 def _foremost(drivers: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:
+    """Return the first by rank; where nothing could be ranked, the first by share."""
     known = [driver for driver in drivers if driver["share"] is not None]
-    return sorted(known, key=lambda driver: -float(driver["share"]))[:DRIVERS_SHOWN]
+    ranked = sorted((driver for driver in known if driver["rank"]), key=lambda driver: int(driver["rank"]))
+    return (ranked or sorted(known, key=lambda driver: -float(driver["share"])))[:DRIVERS_SHOWN]
 
 
-def _driver_row(driver: Mapping[str, Any]) -> tuple[str, str, str, str]:
+def _driver_row(driver: Mapping[str, Any]) -> tuple[str, str, str, str, str]:
     low, high = (percent_text(share, 0) for share in driver["share_interval"])
     direction = driver["direction"]
     return (
         driver["limit"],
+        str(driver["rank"] or "none"),
         driver["parameter"],
         f"{percent_text(driver['share'], 0)} ({low.removesuffix(' %')} to {high})",
         "unclear" if direction == "unclear" else f"{direction} the chance",

@@ -4,7 +4,7 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from probsoil._typing import BoolArray, FloatArray
+from probsoil._typing import ArrayLike, BoolArray, FloatArray
 
 Pair = tuple[str, str]
 # Below this the smallest eigenvalue is lost in rounding and a Cholesky factor is noise.
@@ -13,41 +13,46 @@ _ROUNDS = 10_000
 _TOLERANCE = 1e-10
 
 
-def latent_correlation(rank: float) -> float:
-    """Return the correlation of the normal scores behind a rank correlation.
+def latent_correlation(rank_correlation: ArrayLike) -> FloatArray:
+    r"""Return the correlation of the latent normals that gives a rank correlation.
 
     Parameters
     ----------
-    rank : float, [-]
+    rank_correlation : array_like, shape (...,), [-]
         Spearman's rank correlation.
 
     Returns
     -------
-    correlation : float, [-]
-        Pearson's correlation of the latent normals.
+    correlation : ndarray, shape (...,), [-]
+        Product-moment correlation of the two standard normals.
 
     Notes
     -----
-    For a Gaussian copula R = 2 sin(pi rho / 6), a classical result of Pearson (1907),
-    here from memory.
+    For a bivariate normal :math:`\rho = 2 \sin(\pi \rho_S / 6)`, exactly; it carries over to any
+    continuous marginals because ranks do not change under rising functions.
+
+    References
+    ----------
+    .. [1] K. Pearson, On further methods of determining correlation, Drapers' Company Research
+       Memoirs, Biometric Series IV, 1907 (recalled; not opened).
     """
-    return float(2.0 * np.sin(np.pi * rank / 6.0))
+    return 2.0 * np.sin(np.pi / 6.0 * np.asarray(rank_correlation, dtype=np.float64))
 
 
-def rank_correlation(latent: float) -> float:
-    """Return the rank correlation behind a latent correlation.
+def rank_correlation(correlation: ArrayLike) -> FloatArray:
+    """Return the rank correlation of two normals: the inverse of `latent_correlation`.
 
     Parameters
     ----------
-    latent : float, [-]
-        Pearson's correlation of the latent normals.
+    correlation : array_like, shape (...,), [-]
+        Product-moment correlation of two standard normals.
 
     Returns
     -------
-    rank : float, [-]
+    rank_correlation : ndarray, shape (...,), [-]
         Spearman's rank correlation.
     """
-    return float(6.0 / np.pi * np.arcsin(0.5 * latent))
+    return 6.0 / np.pi * np.arcsin(0.5 * np.asarray(correlation, dtype=np.float64))
 
 
 def impossible_sets(ranks: Mapping[Pair, float]) -> list[dict[Pair, float]]:
@@ -126,7 +131,8 @@ def _mended(matrix: FloatArray, given: Mapping[Pair, float], names: list[str]) -
     while True:
         shrink += 0.001
         ranks = {
-            (a, b): round(rank_correlation((1.0 - shrink) * nearest[index[a], index[b]]), 3) for a, b in given
+            (a, b): round(float(rank_correlation((1.0 - shrink) * nearest[index[a], index[b]])), 3)
+            for a, b in given
         }
         if np.linalg.eigvalsh(_matrix(ranks, names))[0] > 10.0 * LEAST_EIGENVALUE:
             return ranks

@@ -14,8 +14,15 @@ def _normal_cdf(z: float) -> float:
     return 0.5 * math.erfc(-z / math.sqrt(2.0))
 
 
+def _figure(value: float) -> str:
+    """Four figures; powers of ten only where a plain number would be long."""
+    return f"{value:,.0f}" if 1e4 <= abs(value) < 1e7 else f"{value:.4g}"
+
+
 def _with_unit(value: float, unit: str) -> str:
-    return f"{value:.4g}" if unit in ("", "-") else f"{value:.4g} {unit}"
+    if unit in ("", "-"):
+        return _figure(value)
+    return f"{_figure(value)} {'degrees' if unit == 'degree' else unit}"
 
 
 class _Described(ABC):
@@ -197,7 +204,7 @@ class Uniform(_Described):
         return 1.0 - inside / (self.high - self.low)
 
     def _words(self, unit: str) -> str:
-        return f"uniform from {self.low:.4g} to {_with_unit(self.high, unit)}"
+        return f"uniform from {_figure(self.low)} to {_with_unit(self.high, unit)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -234,7 +241,7 @@ class Triangular(_Described):
         return 1.0 - (self.high - x) ** 2 / (width * (self.high - self.mode))
 
     def _words(self, unit: str) -> str:
-        return f"triangular from {self.low:.4g} to {_with_unit(self.high, unit)}, most likely {self.mode:.4g}"
+        return f"triangular from {_figure(self.low)} to {_with_unit(self.high, unit)}, most likely {_figure(self.mode)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -281,7 +288,7 @@ class TruncatedNormal(_Described):
     def _words(self, unit: str) -> str:
         return (
             f"normal, mean {_with_unit(self.mean, unit)}, standard deviation {_with_unit(self.sd, unit)}, "
-            f"cut at {self.low:.4g} and {_with_unit(self.high, unit)}"
+            f"cut at {_figure(self.low)} and {_with_unit(self.high, unit)}"
         )
 
 
@@ -320,8 +327,8 @@ class Beta(_Described):
 
     def _words(self, unit: str) -> str:
         return (
-            f"beta from {self.low:.4g} to {_with_unit(self.high, unit)}, "
-            f"mean {self.expectation:.4g}, shapes {self.alpha:.3g} and {self.beta:.3g}"
+            f"beta from {_figure(self.low)} to {_with_unit(self.high, unit)}, "
+            f"mean {_figure(self.expectation)}, shapes {self.alpha:.3g} and {self.beta:.3g}"
         )
 
 

@@ -225,7 +225,7 @@ def _note(met: int, exceeding: int, part: Shares) -> str | None:
     elif part.r_squared < GOOD_FIT:
         remarks.append(
             f"the shares are of the part of the quantity that is linear in the latent normals, "
-            f"{part.r_squared:.0%} of its variance"
+            f"{100.0 * part.r_squared:.0f} % of its variance"
         )
     if part.fitted < n:
         remarks.append(f"{n - part.fitted:,} realisations without a finite value are left out of the shares")

@@ -69,6 +69,7 @@ def driver(name: str, share: float) -> dict[str, Any]:
     return {
         "limit": "residual [m]",
         "parameter": f"soft clay.{name}",
+        "rank": 1 if share > 0.2 else None,
         "share": share,
         "share_interval": [share - 0.04, share + 0.04],
         "direction": "raises" if share > 0.2 else "unclear",

@@ -118,7 +118,15 @@ class Column:
 
 
 def clay_column(
-    thickness=(1.0,), *, stress=100.0, yielding=None, void_ratio=1.0, lam=(1e-4,), kap=None, grid=1, base=False
+    thickness=(1.0,),
+    *,
+    stress=100.0,
+    yielding=None,
+    void_ratio=1.0,
+    lam=(1e-4,),
+    kap=None,
+    grid=1,
+    base=False,
 ):
     """One realisation of layers with the given thicknesses and slopes, all under one initial stress."""
     thickness, lam = np.asarray(thickness, dtype=float), np.asarray(lam, dtype=float)

@@ -91,7 +91,9 @@ def test_strength_grows_with_the_power_of_overconsolidation(clay):
     exponent = plastic_volumetric_ratio(lam, kap)
     once = isotropic_strength_ratio(m, exponent)
     swollen = undrained_shear_strength(40.0, 120.0, once, exponent)
-    assert float(swollen) == pytest.approx(40.0 * float(isotropic_strength_ratio(m, exponent, 3.0)), rel=1e-12)
+    assert float(swollen) == pytest.approx(
+        40.0 * float(isotropic_strength_ratio(m, exponent, 3.0)), rel=1e-12
+    )
 
 
 def test_friction_angle_and_slope_are_two_names_of_one_thing():

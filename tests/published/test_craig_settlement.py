@@ -23,7 +23,14 @@ Two differences are left, each with a bound known beforehand:
 
 import numpy as np
 import pytest
-from reference_solutions import clay_column, constant_cv, degree_ramp, degree_uniform, final_settlement, loaded
+from reference_solutions import (
+    clay_column,
+    constant_cv,
+    degree_ramp,
+    degree_uniform,
+    final_settlement,
+    loaded,
+)
 from scipy.integrate import quad
 
 from probsoil.ground.response import ground_state
@@ -96,12 +103,18 @@ not_more_than = 1
 
 
 IN_SITU = {"sand": 19.0, "clay": 20.0}
-LEVELLED = {"sand": 24.0, "clay": 10.0}  # the same 119.7 kPa at mid-depth, within 0.6 kPa all through the clay
+LEVELLED = {
+    "sand": 24.0,
+    "clay": 10.0,
+}  # the same 119.7 kPa at mid-depth, within 0.6 kPa all through the clay
 
 
 def answer(clays, *, weights, horizon):
     """Settlement of the clay after three years and at the horizon."""
-    layers = [CLAY.format(name=f"clay {i}", thickness=height, clay=weights["clay"]) for i, height in enumerate(clays)]
+    layers = [
+        CLAY.format(name=f"clay {i}", thickness=height, clay=weights["clay"])
+        for i, height in enumerate(clays)
+    ]
     text = HEAD.format(horizon=horizon, sand=weights["sand"]) + DRAIN.join(layers) + TAIL
     scenario = parse_scenario(text, file="craig.toml")
     site = site_model(scenario)

@@ -21,7 +21,9 @@ from scipy.integrate import quad
 
 ENDS = (0.05, 0.10, 0.20, 0.50, 1.00)  # time factor at the end of the ramp
 TIMES = np.array([0.02, 0.05, 0.1, 0.2, 0.3, 0.5, 0.848, 1.0, 1.5])
-SMALL_LOAD = 5e-4  # the load is a thousandth of the stress in situ, so the theory is off by about half of that
+SMALL_LOAD = (
+    5e-4  # the load is a thousandth of the stress in situ, so the theory is off by about half of that
+)
 
 
 @pytest.mark.parametrize("end", ENDS)

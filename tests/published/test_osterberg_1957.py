@@ -79,4 +79,6 @@ def test_edge_of_a_vertical_side_carries_half():
 def test_far_down_only_the_total_counts():
     depth, base, top = 5000.0, 30.0, 10.0
     line_load = 0.5 * (base + top) * 2.0 / (np.pi * depth)
-    assert float(embankment_influence(depth, 0.0, base_width=base, top_width=top)) == pytest.approx(line_load, rel=1e-4)
+    assert float(embankment_influence(depth, 0.0, base_width=base, top_width=top)) == pytest.approx(
+        line_load, rel=1e-4
+    )

@@ -48,4 +48,6 @@ def test_family_finds_what_a_free_search_finds(angle, depth_factor):
 @pytest.mark.parametrize("angle", [45.0, 30.0, 22.5])
 def test_deep_clay_tends_to_the_number_of_the_strip(angle):
     deep = computed_number(angle, 60.0)
-    assert (DEEP - HALF_DIGIT) / (1.0 + DENSITY_ALLOWANCE) <= deep <= (DEEP + HALF_DIGIT) * (1.0 + ARC_ALLOWANCE)
+    assert (
+        (DEEP - HALF_DIGIT) / (1.0 + DENSITY_ALLOWANCE) <= deep <= (DEEP + HALF_DIGIT) * (1.0 + ARC_ALLOWANCE)
+    )

@@ -132,7 +132,9 @@ def test_misprinted_rows_are_not_the_rounded_root(shape, degree):
 @pytest.mark.parametrize("shape", PRINTED)
 def test_fine_grid_follows_the_series_at_every_time(shape):
     times = np.geomspace(1e-3, 3.0, 25)
-    assert kernel_degree(shape, times, 4) == pytest.approx(SERIES[shape](times), abs=FINE_ALLOWANCE + SMALL_LOAD)
+    assert kernel_degree(shape, times, 4) == pytest.approx(
+        SERIES[shape](times), abs=FINE_ALLOWANCE + SMALL_LOAD
+    )
 
 
 def test_drainage_at_both_faces_quarters_the_time():

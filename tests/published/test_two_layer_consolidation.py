@@ -30,7 +30,18 @@ CASES = {"poor over rich": (POOR, RICH), "rich over poor": (RICH, POOR)}
 FACTORS = np.array([0.01, 0.05, 0.1, 0.2, 0.3, 0.5, 0.848, 1.0, 2.0, 4.0])
 # from the roots of tan(a)^2 = k1/k2, worked out once more apart from the code below
 DEGREES = {
-    "poor over rich": [0.02052, 0.04592, 0.06605, 0.10093, 0.13405, 0.19666, 0.29500, 0.33408, 0.54242, 0.78395],
+    "poor over rich": [
+        0.02052,
+        0.04592,
+        0.06605,
+        0.10093,
+        0.13405,
+        0.19666,
+        0.29500,
+        0.33408,
+        0.54242,
+        0.78395,
+    ],
     "rich over poor": [0.20516, 0.45835, 0.63704, 0.82640, 0.91279, 0.97655, 0.99749, 0.99905, 1.0, 1.0],
 }
 SMALL_LOAD = 5e-4  # load of a thousandth of the stress in situ
@@ -74,7 +85,9 @@ def test_times_to_half_consolidation_are_thirty_times_apart():
         half_time[case] = float(np.exp(np.interp(0.5, degree, np.log(times))))
     exact = [brentq(lambda t, s=s: degree_two_layers(*s, t) - 0.5, 0.05, 20.0) for s in CASES.values()]
     # T2(U = 0.5) is 1.7637 and 0.0597; an error of U by the allowance moves each by less than 1 %
-    assert half_time["poor over rich"] / half_time["rich over poor"] == pytest.approx(exact[0] / exact[1], rel=0.02)
+    assert half_time["poor over rich"] / half_time["rich over poor"] == pytest.approx(
+        exact[0] / exact[1], rel=0.02
+    )
     assert 29.0 < exact[0] / exact[1] < 30.0
 
 

@@ -83,7 +83,9 @@ def test_known_drivers_point_the_right_way(whole: Assessment) -> None:
 
 def test_settlement_does_not_feel_strength(whole: Assessment) -> None:
     (row,) = (
-        row for row in whole.results["drivers"] if (row["limit"], row["parameter"]) == ("settlement", "clay.M")
+        row
+        for row in whole.results["drivers"]
+        if (row["limit"], row["parameter"]) == ("settlement", "clay.M")
     )
     assert row["rank"] is None
     assert row["share_interval"][0] <= 0.0005

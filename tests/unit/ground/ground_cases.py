@@ -30,7 +30,9 @@ def sand(name, thickness, **keys):
 
 def _layer(name, soil, thickness, given):
     lines = [f'name = "{name}"', f'soil = "{soil}"', f"thickness = {thickness}"]
-    lines += [f"{'lambda' if key == 'lam' else key} = {value}" for key, value in given.items() if value is not None]
+    lines += [
+        f"{'lambda' if key == 'lam' else key} = {value}" for key, value in given.items() if value is not None
+    ]
     return "\n".join(["[[layers]]", *lines])
 
 
@@ -44,7 +46,9 @@ AREA = '[load]\nshape = "area"\nsubmergence = false'
 LIMIT = '[[limits]]\nname = "in the end"\nquantity = "settlement"\nat = {horizon}\nnot_more_than = 1'
 
 
-def scenario(layers, stages, *, load=AREA, water_table=0.0, base="undrained", horizon=30.0, limits=None) -> Scenario:
+def scenario(
+    layers, stages, *, load=AREA, water_table=0.0, base="undrained", horizon=30.0, limits=None
+) -> Scenario:
     """Scenario of layers and stages given as text."""
     head = f'format = 1\ntitle = "case"\nseed = 1\nhorizon = {horizon}'
     ground = f'[site]\nwater_table = {water_table}\nbase = "{base}"\nmode_factor = 1.0'

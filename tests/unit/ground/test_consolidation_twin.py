@@ -86,7 +86,9 @@ def test_kernel_and_twin_agree(seed):
 
 def test_twin_reproduces_terzaghi():
     """The twin too must answer to something: a small load on a thin layer, 50.4 % at T = 0.2."""
-    layer = TwinLayer(thickness=1.0, weight=9.81, void_ratio=1.0, lam=1e-3, kap=5e-4, pop=0.0, flow=("cv", 1.0))
+    layer = TwinLayer(
+        thickness=1.0, weight=9.81, void_ratio=1.0, lam=1e-3, kap=5e-4, pop=0.0, flow=("cv", 1.0)
+    )
     platform = TwinLayer(thickness=5.0, weight=30.0)  # gives a stress that hardly varies over the clay
     times = (0.2, 30.0)
     knots = [(0.0, 0.0), (1e-6, 0.1), (30.0, 0.1)]

@@ -37,7 +37,9 @@ CASES = {
         [
             clay("crust", 1.5, lam=0.12, kappa=0.02, void_ratio=1.1, preconsolidation="{ stress = 90 }"),
             clay("soft", 5.0, preconsolidation="{ pop = 12 }", **SOFT_K),
-            clay("lower", 3.5, lam=0.2, kappa=0.03, preconsolidation="{ ocr = 1.4 }", permeability="{ cv = 3 }"),
+            clay(
+                "lower", 3.5, lam=0.2, kappa=0.03, preconsolidation="{ ocr = 1.4 }", permeability="{ cv = 3 }"
+            ),
         ],
         [stage("first", 0, 0.08, pressure=25), stage("second", 0.5, 0.6, pressure=35)],
         water_table=1.0,
@@ -68,7 +70,11 @@ CASES = {
         horizon=50,
     ),
     "thin permeable layer between soft ones": scenario(
-        [clay("upper", 4.0), clay("silt", 0.2, lam=0.05, permeability="{ k = 1e-6, ck = 1 }"), clay("lower", 4.0)],
+        [
+            clay("upper", 4.0),
+            clay("silt", 0.2, lam=0.05, permeability="{ k = 1e-6, ck = 1 }"),
+            clay("lower", 4.0),
+        ],
         [stage("fill", 0, 0.5, pressure=60)],
     ),
     "constant cv": scenario(
@@ -76,7 +82,11 @@ CASES = {
         [stage("fill", 0, 0.2, pressure=70)],
     ),
     "permeability that falls steeply": scenario(
-        [clay("soft", 5.0, lam=0.45, preconsolidation="{ pop = 15 }", permeability="{ k = 2e-9, ck = 0.35 }")],
+        [
+            clay(
+                "soft", 5.0, lam=0.45, preconsolidation="{ pop = 15 }", permeability="{ k = 2e-9, ck = 0.35 }"
+            )
+        ],
         [stage("fill", 0, 0.2, pressure=70)],
     ),
     "very permeable": scenario(
@@ -258,5 +268,3 @@ def test_water_that_cannot_leave_only_moves(flow):
     moved = result.stress[0, 0] - state.stress[0]
     assert moved.min() < -1.0
     assert moved.max() > 1.0
-
-
