@@ -55,7 +55,8 @@ def results() -> dict[str, Any]:
             },
         ],
         "drivers": [
-            driver(name, share) for name, share in (("a", 0.1), ("b", 0.5), ("c", 0.05), ("d", 0.35))
+            driver(name, share, rank)  # the rank need not follow the share
+            for name, share, rank in (("a", 0.1, 2), ("b", 0.5, 3), ("c", 0.05, None), ("d", 0.35, 1))
         ],
         "driver_quality": [
             {"limit": "residual [m]", "note": None},
@@ -65,11 +66,11 @@ def results() -> dict[str, Any]:
     }
 
 
-def driver(name: str, share: float) -> dict[str, Any]:
+def driver(name: str, share: float, rank: int | None) -> dict[str, Any]:
     return {
         "limit": "residual [m]",
         "parameter": f"soft clay.{name}",
-        "rank": 1 if share > 0.2 else None,
+        "rank": rank,
         "share": share,
         "share_interval": [share - 0.04, share + 0.04],
         "direction": "raises" if share > 0.2 else "unclear",

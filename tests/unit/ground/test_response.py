@@ -1,0 +1,164 @@
+"""The chain from the ground in situ to the answer: strength through the stages, degrees, screening."""
+
+import numpy as np
+import pytest
+from ground_cases import central, clay, sand, scenario, site_model, stage
+
+from probsoil.ground.response import ground_state, respond, screened
+from probsoil.ground.slip_circles import N_ZONE
+from probsoil.ground.undrained_strength import (
+    normally_consolidated_strength_ratio,
+    plastic_volumetric_ratio,
+    undrained_shear_strength,
+)
+
+EMBANKMENT = (
+    '[load]\nshape = "embankment"\ncrest_width = 8\nside_slope = 2\nfill_unit_weight = 19\n'
+    "fill_phi = 33\nsubmergence = false"
+)
+MODE = 0.8
+
+
+@pytest.fixture(scope="module")
+def built():
+    """A small embankment in two lifts, the second taken off at last, on clay with sand within it."""
+    case = scenario(
+        [
+            clay("crust", 1.0, lam=0.12, kappa=0.02, void_ratio=1.1, preconsolidation="{ stress = 70 }"),
+            clay("soft", 4.0, preconsolidation="{ pop = 8 }", permeability="{ cv = 3 }"),
+            sand("sand", 1.0),
+            clay("deep", 3.0, preconsolidation="{ ocr = 1.3 }"),
+        ],
+        [stage("one", 0, 0.2, height=1.0), stage("two", 1, 1.2, height=1.0), stage("off", 6, 6.2, height=-1.0)],
+        load=EMBANKMENT,
+        water_table=0.8,
+        horizon=40,
+    )
+    site = site_model(case)
+    values = central(case) | {"site.mode_factor": MODE}
+    return site, values, ground_state(site, values)
+
+
+def test_strength_before_loading_follows_from_stress_and_history(built):
+    site, _, state = built
+    in_soft = state.ground.points.layer == 1
+    stress = state.ground.points.stress[0, in_soft]
+    ratio = plastic_volumetric_ratio(0.3, 0.04)
+    strength = MODE * undrained_shear_strength(
+        stress, stress + 8.0, normally_consolidated_strength_ratio(1.0, ratio), ratio
+    )
+    assert state.strength_before[0, in_soft] == pytest.approx(strength, rel=1e-12)
+
+
+def test_strength_in_three_zones(built):
+    """Nothing is gained beyond the toe; under the crest more than under the slope."""
+    site, _, state = built
+    clay_cells = state.ground.clay
+    for slot in range(site.record.size):
+        toe, slope, crest = (state.strength[slot, 0, zone, clay_cells] for zone in range(N_ZONE))
+        assert toe == pytest.approx(state.strength_before[0, clay_cells], rel=1e-12)
+        assert (slope >= toe * (1 - 1e-9)).all()
+        assert (crest >= slope * (1 - 1e-9)).all()
+    assert (crest > 1.05 * toe).any()
+    assert (state.strength[:, :, :, ~clay_cells] == 0.0).all()
+
+
+def test_strength_under_the_crest_is_that_of_the_present_stress(built):
+    site, _, state = built
+    clay_cells = state.ground.clay
+    layer = state.ground.points.layer[clay_cells]
+    for slot in range(site.record.size):
+        expected = MODE * undrained_shear_strength(
+            state.consolidation.stress[0, slot],
+            np.maximum(state.consolidation.yield_stress[0, slot], state.consolidation.stress[0, slot]),
+            state.ground.columns.strength_ratio[0, layer],
+            state.ground.columns.strength_exponent[0, layer],
+        )
+        assert state.strength[slot, 0, 2, clay_cells] == pytest.approx(expected, rel=1e-12)
+
+
+def test_slip_is_looked_at_while_there_is_fill(built):
+    site, _, state = built
+    assert site.slip_times.tolist() == [0.2, 1.2, 6.2]
+    assert state.response.slip.shape == (1, 3)
+    assert state.response.slip[0, 1] < state.response.slip[0, 0]  # higher fill
+    assert state.response.slip[0, 2] > state.response.slip[0, 0]  # one metre again, on stronger clay
+
+
+def test_degree_at_record_is_settlement_over_what_the_present_load_brings(built):
+    site, _, state = built
+    response = state.response
+    first = np.searchsorted(site.times, 0.2)
+    stress0, clay_cells = state.ground.points.stress[0, state.ground.clay], state.ground.clay
+    added = state.ground.load.stress[np.searchsorted(site.knots, 0.2), 0, clay_cells]
+    layer = state.ground.points.layer[clay_cells]
+    columns = state.ground.columns
+    lam, kap, e0 = (getattr(columns, name)[0, layer] for name in ("lam", "kap", "void_ratio"))
+    past = state.ground.yield_stress[0, clay_cells]
+    reached = stress0 + added
+    lost = np.where(
+        reached > past, kap * np.log(past / stress0) + lam * np.log(reached / past), kap * np.log(reached / stress0)
+    )
+    done = (state.ground.points.thickness[0, clay_cells] / (1.0 + e0) * lost).sum()
+    expected = state.consolidation.settlement[0, first] / done
+    assert response.degree_at_record[0, 0] == pytest.approx(expected, rel=1e-9)
+
+
+def test_degree_after_the_last_stage_only(built):
+    site, _, state = built
+    before = site.times < 6.2
+    assert np.isnan(state.response.degree[0, before]).all()
+    assert ((state.response.degree[0, ~before] >= 0.0) & (state.response.degree[0, ~before] <= 1.0)).all()
+
+
+def test_respond_is_the_response_of_the_state(built):
+    site, values, state = built
+    again = respond(site, values)
+    assert np.array_equal(again.settlement, state.response.settlement)
+    assert np.array_equal(again.slip, state.response.slip)
+
+
+def test_screening_loses_nothing_in_its_pilot_and_little_beyond(built):
+    site, values, _ = built
+    rng = np.random.default_rng(np.random.SeedSequence(11, spawn_key=(0,)))
+
+    def spread(n, width):
+        drawn = np.exp(rng.uniform(-width, width, (4, n)))
+        return values | {
+            "soft.pop": 8.0 * drawn[0],
+            "soft.lambda": 0.3 * drawn[1],
+            "soft.M": np.clip(1.0 * drawn[2], 0.5, 1.8),
+            "soft.thickness": 4.0 * drawn[3],
+        }
+
+    pilot = spread(48, 0.5)
+    smaller = screened(site, pilot)
+    assert all(
+        0 < few.n_circle < many.n_circle for few, many in zip(smaller.families, site.families, strict=True)
+    )
+    assert np.array_equal(respond(smaller, pilot).slip, respond(site, pilot).slip)
+    others = spread(200, 0.3)
+    full, part = respond(site, others).slip, respond(smaller, others).slip
+    assert (part >= full).all()
+    assert part == pytest.approx(full, rel=0.01)  # the family itself is no denser than 1 %
+
+
+def test_floors_and_clips_are_reported(built):
+    site, values, _ = built
+    changed = values | {"crust.preconsolidation": np.array([1.0, 70.0]), "soft.kappa": np.array([0.04, 0.5])}
+    response = respond(site, changed)
+    assert response.floored.tolist() == [True, False]
+    assert response.kappa_clipped.tolist() == [False, True]
+    assert response.converged.all()
+
+
+def test_a_realisation_that_cannot_be_solved_does_not_stop_the_others():
+    """Compression so strong that the void ratio would fall below nothing is marked, not raised."""
+    case = scenario(
+        [clay("soft", 6.0, void_ratio=1.5, lam=0.4, kappa=0.05, permeability="{ k = 1e-9, ck = 0.5 }")],
+        [stage("fill", 0, 0.1, pressure=60)],
+    )
+    values = central(case) | {"soft.lambda": np.array([0.4, 0.1])}
+    response = respond(site_model(case), values)
+    assert response.converged.tolist() == [False, True]
+    assert np.isfinite(response.settlement[1]).all()
