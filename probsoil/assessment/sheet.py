@@ -36,7 +36,8 @@ class Sheet:
     final_settlement : float, [m]
         Settlement at the horizon.
     layers : tuple of dict
-        Stresses, strain and settlement of every layer, [kPa], [-], [m].
+        Stresses, strain and settlement of every layer, [kPa], [-], [m]; ``stress_increase`` is that of
+        the load at the horizon, before any loss of weight by submergence.
     strength : tuple of dict
         Undrained strength with depth before loading and at the end of every stage, [kPa].
     slip_safety : dict of str to float, [-]

@@ -41,6 +41,15 @@ class FolderLog(logging.Handler):
             What happened.
         """
         self._waiting.append(self.format(record))
+        self._write()
+
+    def close(self) -> None:
+        """Write what is still waiting, if the folder has come to be, and close."""
+        if self._waiting:
+            self._write()
+        super().close()
+
+    def _write(self) -> None:
         if not self.path.parent.is_dir():
             return
         try:

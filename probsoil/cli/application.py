@@ -81,10 +81,22 @@ def main(arguments: Sequence[str] | None = None) -> int:
         typer.echo(_message(fault), err=True)
         return _code(fault)
     except Exception as fault:
+        if _interrupted(fault):
+            typer.echo("Interrupted before any realisation was finished; nothing is kept.", err=True)
+            return FAILED
         typer.echo(f"probsoil failed unexpectedly: {type(fault).__name__}: {fault}", err=True)
         typer.echo(f"The details are in {_write_details(fault)}; please report them.", err=True)
         return FAILED
     return DONE
+
+
+def _interrupted(fault: BaseException | None) -> bool:
+    """Whether a signal lies behind an error: compiled code wraps it in errors of its own."""
+    while fault is not None:
+        if isinstance(fault, KeyboardInterrupt):
+            return True
+        fault = fault.__cause__ or fault.__context__
+    return False
 
 
 def _code(fault: ProbsoilError) -> int:

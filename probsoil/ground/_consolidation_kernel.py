@@ -22,7 +22,7 @@ from probsoil.ground.lanes import LANES
 
 GAMMA = 1.0 - 1.0 / math.sqrt(2.0)  # Alexander (1977): two-stage, L-stable, second order
 _BEYOND = (1.0 - GAMMA) / GAMMA
-_TOLERANCE = 1e-4  # relative change of stress; the quadratic last step leaves far less
+_TOLERANCE = 1e-4  # relative change of stress at which iteration stops; what is left is far less
 _MOST_ITERATIONS = 40
 
 _compiled = njit(nogil=True, cache=True, error_model="numpy", fastmath={"contract"})
@@ -293,7 +293,10 @@ def _second_target(b: int, span: float, loading: Loading, state: _State, trial: 
 def _iterate(
     b: int, span: float, soil: Soil, faces: Faces, state: _State, trial: _Trial, work: _Work
 ) -> None:
-    """Newton's method on the stress of all cells until every lane has settled down."""
+    """Newton's method on the stress of all cells until every lane has settled down.
+
+    Conductances are renewed but not differentiated, so the matrix stays symmetric.
+    """
     _compress(b, soil, state, trial)
     for lane in range(LANES):
         work.live[lane] = 1.0

@@ -61,7 +61,7 @@ class Drivers:
     Attributes
     ----------
     rows : tuple of Driver
-        One per parameter: the ranked first, then the others by falling spread elasticity.
+        One per parameter: the ranked first, then the others by falling share.
     realisations, exceeding : int, [-]
         Realisations behind the result and those that exceed.
     fitted : int, [-]
@@ -202,8 +202,7 @@ def _direction(low: float, high: float) -> Direction:
 
 
 def _order(row: Driver) -> tuple[float, float]:
-    value = row.spread_elasticity
-    return (np.inf if row.rank is None else row.rank, -value if np.isfinite(value) else 0.0)
+    return (np.inf if row.rank is None else row.rank, -row.share if np.isfinite(row.share) else 0.0)
 
 
 def _note(met: int, exceeding: int, part: Shares) -> str | None:

@@ -7,6 +7,7 @@ from pathlib import Path
 import pytest
 
 import probsoil
+from probsoil.cli import main
 from probsoil.errors import ScenarioError
 
 HEAVY = ("numpy", "scipy", "pandas", "numba", "matplotlib", "pint", "jinja2")
@@ -82,3 +83,17 @@ def test_shell_completion_script(shell: str, monkeypatch: pytest.MonkeyPatch) ->
     done = python("-m", "probsoil")
     assert done.returncode == 0, done.stderr
     assert "_PROBSOIL_COMPLETE" in done.stdout
+
+
+def test_interrupt_wrapped_by_compiled_code_is_told_as_such(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    def compiling(*_: object, **__: object) -> None:
+        try:
+            raise KeyboardInterrupt
+        except KeyboardInterrupt:
+            raise RuntimeError("no compiled object yet") from None
+
+    monkeypatch.setattr("probsoil.scenario.scenario_schema", compiling)
+    assert main(["schema"]) == 1
+    assert "Interrupted before any realisation was finished" in capsys.readouterr().err

@@ -74,7 +74,10 @@ def built(flow="k", steps=LIFTS, load=AREA.format(submergence="false"), halves=1
 
 def state_of(site, values, **arrays):
     """State with some quantities of the first clay layer as arrays."""
-    named = {f"clay0.{name}" if not name.startswith("load") else name.replace("__", "."): x for name, x in arrays.items()}
+    named = {
+        f"clay0.{name}" if not name.startswith("load") else name.replace("__", "."): x
+        for name, x in arrays.items()
+    }
     state = ground_state(site, values | named)
     assert state.response.converged.all()
     return state
@@ -105,7 +108,9 @@ def test_final_settlement_grows_with_lambda(soil, flow):
     """Where the load yields the clay: what is reached in the end, and hence the clay's whole compression."""
     site, values = built(flow)
     lam = np.linspace(0.1, 0.4, 9)
-    arrays = {name: np.full(lam.size, value) for name, value in (soil | {"thickness": 2.0, "pop": 5.0}).items()}
+    arrays = {
+        name: np.full(lam.size, value) for name, value in (soil | {"thickness": 2.0, "pop": 5.0}).items()
+    }
     state = state_of(site, values, **arrays, **{"lambda": lam})
     assert (np.diff(state.response.settlement[:, -1]) > 0.0).all()
 

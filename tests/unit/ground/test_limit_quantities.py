@@ -13,7 +13,11 @@ EMBANKMENT = (
     '[load]\nshape = "embankment"\ncrest_width = 10\nside_slope = 2\nfill_unit_weight = 19\n'
     "fill_phi = 33\nsubmergence = false"
 )
-STAGES = [stage("first", 0.0, 0.2, height=1.0), stage("second", 1.0, 1.5, height=1.0), stage("off", 3, 4, height=-2.0)]
+STAGES = [
+    stage("first", 0.0, 0.2, height=1.0),
+    stage("second", 1.0, 1.5, height=1.0),
+    stage("off", 3, 4, height=-2.0),
+]
 ERRORS = {"model_error.settlement": 1.0, "model_error.stability": 1.0}
 
 
@@ -24,8 +28,6 @@ def limit(quantity, **keys):
 
 def case(*limits, stages=STAGES[:2]):
     return scenario([clay("soft", 5.0)], stages, load=EMBANKMENT, limits=list(limits), horizon=20.0)
-
-
 
 
 def answer(site, **parts):
@@ -65,7 +67,10 @@ def test_settlement_at_a_time_and_between_two():
 
 
 def test_model_error_multiplies_settlement_and_safety():
-    values = {"model_error.settlement": np.array([1.0, 2.0, 0.5]), "model_error.stability": np.array([1.0, 0.9, 1.2])}
+    values = {
+        "model_error.settlement": np.array([1.0, 2.0, 0.5]),
+        "model_error.stability": np.array([1.0, 0.9, 1.2]),
+    }
     found, site = watched(
         limit("settlement", at=10.0, not_more_than=1), limit("slip_safety", not_less_than=1), values=values
     )

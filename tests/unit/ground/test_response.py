@@ -29,7 +29,11 @@ def built():
             sand("sand", 1.0),
             clay("deep", 3.0, preconsolidation="{ ocr = 1.3 }"),
         ],
-        [stage("one", 0, 0.2, height=1.0), stage("two", 1, 1.2, height=1.0), stage("off", 6, 6.2, height=-1.0)],
+        [
+            stage("one", 0, 0.2, height=1.0),
+            stage("two", 1, 1.2, height=1.0),
+            stage("off", 6, 6.2, height=-1.0),
+        ],
         load=EMBANKMENT,
         water_table=0.8,
         horizon=40,
@@ -97,7 +101,9 @@ def test_degree_at_record_is_settlement_over_what_the_present_load_brings(built)
     past = state.ground.yield_stress[0, clay_cells]
     reached = stress0 + added
     lost = np.where(
-        reached > past, kap * np.log(past / stress0) + lam * np.log(reached / past), kap * np.log(reached / stress0)
+        reached > past,
+        kap * np.log(past / stress0) + lam * np.log(reached / past),
+        kap * np.log(reached / stress0),
     )
     done = (state.ground.points.thickness[0, clay_cells] / (1.0 + e0) * lost).sum()
     expected = state.consolidation.settlement[0, first] / done
