@@ -29,9 +29,9 @@ class ConvergenceError(ProbsoilError):
 
     Attributes
     ----------
-    best : float
+    best : float, [any]
         Best value reached, in the unit of the quantity sought.
-    error : float
+    error : float, [any]
         Error estimate that goes with `best`, same unit.
     """
 
@@ -71,8 +71,8 @@ class Fault:
         Remedy, such as the nearest right key.
     excerpt : str or None
         The line of the file.
-    span : tuple of int or None
-        First column and length of the value in `excerpt`, for underlining.
+    span : tuple of int or None, [-]
+        First column, counted from 1, and length of the value in `excerpt`, for underlining.
     """
 
     file: str

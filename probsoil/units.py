@@ -258,7 +258,7 @@ def to_base(value: float | str, kind: Kind) -> float:
 
     Parameters
     ----------
-    value : float or str
+    value : float or str, [base unit of `kind`]
         Bare number (already in the base unit) or text such as ``"6 weeks"``.
     kind : str
         Kind of quantity the key asks for.

@@ -129,7 +129,8 @@ def _limit_row(limit: Limit, found: Exceedance) -> Row:
 
 def _time(limit: Limit) -> tuple[Row, str]:
     if limit.quantity == "time_to_consolidation":
-        return {"degree": limit.degree}, f"to {100.0 * limit.degree:g} %, from the start, after the last stage"
+        reached = f"to {100.0 * limit.degree:g} %"
+        return {"degree": limit.degree}, f"{reached}, from the start, after the last stage"
     between = getattr(limit, "between", None)
     if between is not None:
         return {"between": list(between)}, f"between {between[0]:.3g} and {between[1]:.3g} years"

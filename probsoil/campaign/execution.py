@@ -61,8 +61,8 @@ def run_campaign(  # noqa: PLR0913 - one call with named options, each with a de
 
     Returns
     -------
-    iterator of (int, dict of ndarray)
-        Chunk number and its arrays, in rising order.
+    iterator of (int, dict of ndarray), [-], [any], shape (...,)
+        Chunk number and its arrays by name, in rising order; units and shapes are those of `evaluate`.
 
     Raises
     ------

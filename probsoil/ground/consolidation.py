@@ -224,9 +224,9 @@ def consolidate(
     and use the mean logarithm of the half cell at a drained face; time follows the two-stage,
     L-stable, second-order method of Alexander (1977); each stage is solved by Newton's method on
     the effective stress with the slope of the branch in force and conductances renewed, but not
-    differentiated, at every iteration. Preconsolidation stress follows at
-    the end of each step, never beyond the greatest total stress. Void ratio and conductivity are on the compression curve of
-    `compression.void_ratio_lost`. Only vertical flow; no creep.
+    differentiated, at every iteration. Preconsolidation stress follows at the end of each step,
+    never beyond the greatest total stress. Void ratio and conductivity are on the compression curve
+    of `compression.void_ratio_lost`. Only vertical flow; no creep.
 
     References
     ----------

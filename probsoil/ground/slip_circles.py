@@ -66,10 +66,14 @@ class CircleFamily:
         Resisting moment of friction in the fill per unit weight and tangent of friction angle.
     fill_cohesion : ndarray, shape (n_circle,), [m2]
         Resisting moment of cohesion in the fill per kPa.
-    row_start, column, weight : ndarray, [-], [-], [m2]
-        Sparse rows: the resisting moment of the ground is the sum of ``weight`` times the strength
-        in ``column``, columns counting zone by zone through the slices, first cohesive strength,
-        then frictional.
+    row_start : ndarray, shape (n_circle + 1,), [-]
+        Sparse rows: place in `column` and `weight` of the first entry of each circle, then their number.
+    column : ndarray, shape (n_entry,), [-]
+        Strength that an entry multiplies: columns count zone by zone through the slices, first
+        cohesive strength, then frictional.
+    weight : ndarray, shape (n_entry,), [m2]
+        Resisting moment per metre run and kPa of that strength; the resisting moment of the ground
+        is the sum over the entries of a circle.
     slice_depth : ndarray, shape (n_slice,), [m]
         Depths at which strength is wanted (slice centres).
     """

@@ -18,8 +18,8 @@ def correlation_matrix(names: Sequence[str], dependence: Sequence[Dependence]) -
     ----------
     names : sequence of str
         Uncertain parameters, in order.
-    dependence : sequence of (str, str, float)
-        Pairs of parameters with their rank correlation [-].
+    dependence : sequence of (str, str, float), [-]
+        Pairs of parameters with their rank correlation.
 
     Returns
     -------
@@ -60,7 +60,7 @@ def correlation_blocks(correlation: FloatArray) -> list[list[int]]:
 
     Returns
     -------
-    blocks : list of list of int
+    blocks : list of list of int, [-]
         Indices of each group, rising.
     """
     from scipy.sparse.csgraph import connected_components  # deferred: nothing else here needs it

@@ -41,10 +41,43 @@ class Design(Protocol):
         """Number of chunks [-]."""
 
     def chunk(self, index: int) -> FloatArray:
-        """Independent standard normals of one chunk, shape (n_i, d) [-]."""
+        """Independent standard normals of one chunk.
+
+        Parameters
+        ----------
+        index : int, [-]
+            Number of the chunk, from 0.
+
+        Returns
+        -------
+        u : ndarray, shape (n_i, d), [-]
+            Standard normals, one row per point and one column per uncertain parameter; at most
+            `chunk_size` rows.
+
+        Raises
+        ------
+        ParameterError
+            If there is no such chunk.
+        """
 
     def replicate_index(self, index: int) -> IntArray:
-        """Replicate that each point of one chunk belongs to, shape (n_i,) [-]."""
+        """Replicate that each point of one chunk belongs to.
+
+        Parameters
+        ----------
+        index : int, [-]
+            Number of the chunk, from 0.
+
+        Returns
+        -------
+        replicate : ndarray, shape (n_i,), [-]
+            Numbers from 0 to `replicates` - 1.
+
+        Raises
+        ------
+        ParameterError
+            If there is no such chunk.
+        """
 
 
 @dataclass(frozen=True, slots=True)

@@ -23,17 +23,39 @@ class Law(Protocol):
 
     @property
     def mean(self) -> float:
-        """Mean of the law, in the parameter's unit."""
+        """Mean of the law, in the parameter's unit, [any]."""
 
     @property
     def sd(self) -> float:
-        """Standard deviation of the law, in the parameter's unit."""
+        """Standard deviation of the law, in the parameter's unit, [any]."""
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """Values at latent standard normals.
+
+        Parameters
+        ----------
+        z : ndarray, shape (...,), [-]
+            Latent standard normals.
+
+        Returns
+        -------
+        values : ndarray, shape (...,), [any]
+            Values of the law, in the parameter's unit, with the shape of `z`.
+        """
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """Latent standard normal at which a value lies.
+
+        Parameters
+        ----------
+        value : float, [any]
+            Value, in the parameter's unit.
+
+        Returns
+        -------
+        z : float, [-]
+            Standard normal score; infinite at and beyond an end of the law's range.
+        """
 
 
 def nearer_tail_score(below: float, above: float) -> float:
@@ -66,11 +88,11 @@ class NormalLaw:
     sd: float
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """See `Law.quantile`."""
         return self.mean + self.sd * z
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """See `Law.score`."""
         return (value - self.mean) / self.sd
 
 
@@ -91,20 +113,20 @@ class LognormalLaw:
 
     @property
     def mean(self) -> float:
-        """Mean of the law, in the parameter's unit."""
+        """Mean of the law, in the parameter's unit, [any]."""
         return self.median * float(np.exp(0.5 * self.log_sd**2))
 
     @property
     def sd(self) -> float:
-        """Standard deviation of the law, in the parameter's unit."""
+        """Standard deviation of the law, in the parameter's unit, [any]."""
         return self.mean * float(np.sqrt(np.expm1(self.log_sd**2)))
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """See `Law.quantile`."""
         return self.median * np.exp(self.log_sd * z)
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """See `Law.score`."""
         return float(np.log(value / self.median)) / self.log_sd if value > 0.0 else -np.inf
 
 
@@ -123,21 +145,21 @@ class UniformLaw:
 
     @property
     def mean(self) -> float:
-        """Mean of the law, in the parameter's unit."""
+        """Mean of the law, in the parameter's unit, [any]."""
         return 0.5 * (self.low + self.high)
 
     @property
     def sd(self) -> float:
-        """Standard deviation of the law, in the parameter's unit."""
+        """Standard deviation of the law, in the parameter's unit, [any]."""
         return (self.high - self.low) / float(np.sqrt(12.0))
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """See `Law.quantile`."""
         part = (self.high - self.low) * ndtr(-np.abs(z))
         return np.where(z < 0.0, self.low + part, self.high - part)
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """See `Law.score`."""
         share = np.clip((value - self.low) / (self.high - self.low), 0.0, 1.0)
         return nearer_tail_score(float(share), float(1.0 - share))
 
@@ -158,24 +180,24 @@ class TriangularLaw:
 
     @property
     def mean(self) -> float:
-        """Mean of the law, in the parameter's unit."""
+        """Mean of the law, in the parameter's unit, [any]."""
         return (self.low + self.mode + self.high) / 3.0
 
     @property
     def sd(self) -> float:
-        """Standard deviation of the law, in the parameter's unit."""
+        """Standard deviation of the law, in the parameter's unit, [any]."""
         left, right = self.mode - self.low, self.high - self.mode
         return float(np.sqrt((left**2 + left * right + right**2) / 18.0))
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """See `Law.quantile`."""
         span = self.high - self.low
         rising = self.low + np.sqrt(ndtr(z) * span * (self.mode - self.low))
         falling = self.high - np.sqrt(ndtr(-z) * span * (self.high - self.mode))
         return np.where(ndtr(z) * span < self.mode - self.low, rising, falling)
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """See `Law.score`."""
         x = min(max(value, self.low), self.high)
         span = self.high - self.low
         if x < self.mode:
@@ -222,18 +244,18 @@ class BetaLaw:
 
     @property
     def mean(self) -> float:
-        """Mean of the law, in the parameter's unit."""
+        """Mean of the law, in the parameter's unit, [any]."""
         return self.low + (self.high - self.low) * self.alpha / (self.alpha + self.beta)
 
     @property
     def sd(self) -> float:
-        """Standard deviation of the law, in the parameter's unit."""
+        """Standard deviation of the law, in the parameter's unit, [any]."""
         total = self.alpha + self.beta
         share = float(np.sqrt(self.alpha * self.beta / (total + 1.0))) / total
         return (self.high - self.low) * share
 
     def quantile(self, z: FloatArray) -> FloatArray:
-        """Values at latent standard normal `z`."""
+        """See `Law.quantile`."""
         place = (np.clip(z, -_TABLE_REACH, _TABLE_REACH) + _TABLE_REACH) * _TABLE_PER_UNIT
         node = np.minimum(place.astype(np.int64), self._logit.size - 2)
         t = place - node
@@ -246,7 +268,7 @@ class BetaLaw:
         return np.where(logit < 0.0, self.low + part, self.high - part)
 
     def score(self, value: float) -> float:
-        """Latent standard normal at which `value` lies."""
+        """See `Law.score`."""
         y = min(max((value - self.low) / (self.high - self.low), 0.0), 1.0)
         return nearer_tail_score(
             float(betainc(self.alpha, self.beta, y)), float(betainc(self.beta, self.alpha, 1.0 - y))

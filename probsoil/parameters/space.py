@@ -193,8 +193,8 @@ def parameter_space(
     ----------
     quantities : sequence of UncertainQuantity
         Every number of the scenario that may be uncertain, fixed or not.
-    dependence : sequence of (str, str, float)
-        Pairs of addresses with their rank correlation [-].
+    dependence : sequence of (str, str, float), [-]
+        Pairs of addresses with their rank correlation.
 
     Returns
     -------

@@ -35,7 +35,7 @@ class Step:
 
     Attributes
     ----------
-    threshold : float
+    threshold : float, [any]
         Threshold in the limit's unit.
     text : str
         The threshold with its unit.
@@ -63,14 +63,15 @@ class Axis:
     ----------
     kind : str
         ``even`` or ``log``.
-    ticks : tuple of (float, str)
+    ticks : tuple of (float, str), [%]
         Height in per cent of the plot from its top, and label.
     line, band : str
         Path data of the curve and its interval, in thousandths of the plot.
-    heights : tuple of float
+    heights : tuple of float, [%]
         Height of each step in per cent from the top.
-    target : float or None
-        Height of the target probability; None where there is none or it lies outside.
+    target : float or None, [%]
+        Height of the target probability in per cent from the top; None where there is none or it lies
+        outside.
     """
 
     kind: str

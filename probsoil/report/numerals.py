@@ -35,7 +35,7 @@ def rounded(value: float, decimals: int, *, rounding: str = ROUND_HALF_UP) -> st
 
     Parameters
     ----------
-    value : float
+    value : float, [any]
         Number, in any unit.
     decimals : int, [-]
         Decimals to keep, zero or more.
@@ -56,7 +56,7 @@ def number_text(value: float | None, significant: int = 3) -> str:
 
     Parameters
     ----------
-    value : float or None
+    value : float or None, [any]
         Number, in any unit; None where the results hold none.
     significant : int, [-]
         Digits that count; digits before the decimal point are always kept.
@@ -101,7 +101,7 @@ def trimmed_text(value: float | None) -> str:
 
     Parameters
     ----------
-    value : float or None
+    value : float or None, [any]
         Number, in any unit.
 
     Returns
@@ -118,8 +118,8 @@ def value_text(value: float | None, unit: str) -> str:
 
     Parameters
     ----------
-    value : float or None
-        Number in `unit`.
+    value : float or None, [`unit`]
+        Number.
     unit : str
         Its unit, ``-`` for none.
 
@@ -309,7 +309,7 @@ def decimals_of(value: float, most: int = 6) -> int:
 
     Parameters
     ----------
-    value : float
+    value : float, [any]
         Number, in any unit.
     most : int, [-]
         Cap.
@@ -328,8 +328,8 @@ def money_text(amount: float | None, currency: str) -> str:
 
     Parameters
     ----------
-    amount : float or None
-        Amount in `currency`.
+    amount : float or None, [`currency`]
+        Amount.
     currency : str
         Currency code or name.
 
@@ -346,8 +346,8 @@ def pair_text(ends: Sequence[float | None] | None, decimals: int = 2) -> str:
 
     Parameters
     ----------
-    ends : sequence of float or None
-        Low and high end; either may be missing.
+    ends : sequence of float or None, [any]
+        Low and high end, in any unit; either, or the whole pair, may be missing.
     decimals : int, [-]
         Decimals to keep.
 

@@ -10,12 +10,12 @@ def numbers_array(values: list[float | None]) -> FloatArray:
 
     Parameters
     ----------
-    values : list of float or None
-        Numbers in any unit.
+    values : list of float or None, [any]
+        Numbers, in any unit.
 
     Returns
     -------
-    array : ndarray, shape (n,)
+    array : ndarray, shape (n,), [any]
         The same, not-a-number where one is missing.
     """
     return np.array([np.nan if value is None else value for value in values], dtype=np.float64)

@@ -85,7 +85,7 @@ def nearest_correlation(matrix: FloatArray, free: BoolArray) -> FloatArray:
     ----------
     matrix : ndarray, shape (n, n), [-]
         Symmetric, with unit diagonal.
-    free : ndarray of bool, shape (n, n)
+    free : ndarray of bool, shape (n, n), [-]
         Entries that may change; the others keep their value.
 
     Returns

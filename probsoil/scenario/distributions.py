@@ -241,7 +241,8 @@ class Triangular(_Described):
         return 1.0 - (self.high - x) ** 2 / (width * (self.high - self.mode))
 
     def _words(self, unit: str) -> str:
-        return f"triangular from {_figure(self.low)} to {_with_unit(self.high, unit)}, most likely {_figure(self.mode)}"
+        ends = f"{_figure(self.low)} to {_with_unit(self.high, unit)}"
+        return f"triangular from {ends}, most likely {_figure(self.mode)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

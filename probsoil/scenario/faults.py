@@ -40,7 +40,7 @@ def key_text(path: Path, data: Any) -> str:
 
     Parameters
     ----------
-    path : tuple of str or int
+    path : tuple of str or int, [-]
         List positions from 0.
     data : dict
         Parsed file, for the names of list items.

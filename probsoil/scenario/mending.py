@@ -52,12 +52,12 @@ class Mended:
 
         Parameters
         ----------
-        path : tuple of str or int
+        path : tuple of str or int, [-]
             Path in the mended data.
 
         Returns
         -------
-        path : tuple of str or int
+        path : tuple of str or int, [-]
             Path in the file.
         """
         return tuple(self.written.get(path[: depth + 1], part) for depth, part in enumerate(path))

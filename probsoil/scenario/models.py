@@ -131,13 +131,13 @@ class Scenario(Table):
 
     Attributes
     ----------
-    format : int
+    format : int, [-]
         Version of the file format.
     title : str
         Title of the report.
-    seed : int
+    seed : int, [-]
         Seed of the random numbers.
-    realisations : int
+    realisations : int, [-]
         Number of draws.
     draws : str
         How they are drawn.

@@ -19,9 +19,9 @@ class Place:
 
     Attributes
     ----------
-    key, value : tuple of int
-        Start and end. For a table opened by a header or by a dotted key both are the header
-        or the key, for a list item both are the item.
+    key, value : tuple of int, [-]
+        Start and end, counted in characters from 0, the end left out. For a table opened by a header
+        or by a dotted key both are the header or the key, for a list item both are the item.
     """
 
     key: tuple[int, int]

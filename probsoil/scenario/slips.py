@@ -16,7 +16,7 @@ class Slip:
 
     Attributes
     ----------
-    path : tuple of str or int
+    path : tuple of str or int, [-]
         Keys and list positions (from 0) that lead to the mistake.
     message : str
         What is wrong.
@@ -45,7 +45,7 @@ class Slip:
 
         Parameters
         ----------
-        path : tuple of str or int
+        path : tuple of str or int, [-]
             Path of the table the slip was found in.
 
         Returns

@@ -88,9 +88,12 @@ def test_shell_completion_script(shell: str, monkeypatch: pytest.MonkeyPatch) ->
 def test_interrupt_wrapped_by_compiled_code_is_told_as_such(
     monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
+    def stop() -> None:
+        raise KeyboardInterrupt
+
     def compiling(*_: object, **__: object) -> None:
         try:
-            raise KeyboardInterrupt
+            stop()
         except KeyboardInterrupt:
             raise RuntimeError("no compiled object yet") from None
 

@@ -46,6 +46,7 @@ constrained_modulus = "40 MPa"
 phi = 33
 """
 AREA = '[load]\nshape = "area"\nfill_unit_weight = 20\nsubmergence = {submergence}\n'
+DRY = AREA.format(submergence="false")
 EMBANKMENT = (
     '[load]\nshape = "embankment"\ncrest_width = 8\nside_slope = 2\nfill_unit_weight = 19\nfill_phi = 33\n'
 )
@@ -64,7 +65,7 @@ def stages(steps):
 
 
 @functools.cache
-def built(flow="k", steps=LIFTS, load=AREA.format(submergence="false"), halves=1):
+def built(flow="k", steps=LIFTS, load=DRY, halves=1):
     """A site and its central values; the clay below the sand is one layer or cut into equal parts."""
     parts = [CLAY.format(name=f"clay{i}", thickness=5.0 / halves, flow=FLOW[flow]) for i in range(halves)]
     scenario = parse_scenario("".join([HEAD, SAND, *parts, load, stages(steps), LIMIT]), file="any.toml")

@@ -7,6 +7,8 @@ Boussinesq's line load, ds = 2 q z^3/(pi r^4), summed over the load by quadratur
 holds values of the same integral for half an embankment, below the inner edge of its flat part.
 """
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from scipy.integrate import quad
@@ -42,7 +44,7 @@ def by_line_loads(depth, offset, base, top):
     breaks = {-base / 2.0, -top / 2.0, top / 2.0, base / 2.0}
     near = {offset + step * depth for step in (-30, -6, -2, -0.5, 0.5, 2, 6, 30)}
     edges = sorted(breaks | {x for x in near if abs(x) < base / 2.0})
-    return sum(quad(share, a, b, epsabs=1e-12)[0] for a, b in zip(edges[:-1], edges[1:], strict=True))
+    return sum(quad(share, a, b, epsabs=1e-12)[0] for a, b in pairwise(edges))
 
 
 @pytest.mark.parametrize("flat", HALF)

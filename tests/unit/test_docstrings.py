@@ -16,6 +16,7 @@ NUMBER = re.compile(r"\b(ndarray|array_like|float|int)\b")
 ARRAY = re.compile(r"\b(ndarray|array_like)\b")
 UNIT = re.compile(r"\[[^\]]+\]")
 SHAPE = re.compile(r"shape \(|shape of")
+SEE = re.compile(r"See `([A-Za-z]+)\.([a-z_]+)`\.")
 
 
 def public_modules() -> Iterator[ModuleType]:
@@ -60,6 +61,30 @@ def entries(value: object) -> list[tuple[str, str]]:
     ]
 
 
+def parameters_of(name: str) -> list[str]:
+    function = OBJECTS[name]
+    assert inspect.isfunction(function)
+    return list(inspect.signature(function).parameters)
+
+
+def described_by(name: str) -> str:
+    """Return the name of what describes the parameters: the object itself, or the method it cites.
+
+    A method may say "See `Protocol.method`." and nothing else, where a protocol of its own module
+    has that method, under the same name and with the same parameters.
+    """
+    cited = SEE.fullmatch(inspect.getdoc(OBJECTS[name]) or "")
+    if cited is None:
+        return name
+    module, _, own = name.rsplit(".", 2)
+    protocol = f"{module}.{cited[1]}"
+    assert getattr(OBJECTS[protocol], "_is_protocol", False), f"{protocol} is not a protocol"
+    assert cited[2] == own
+    here, there = (parameters_of(one) for one in (name, f"{protocol}.{own}"))
+    assert here == there
+    return f"{protocol}.{own}"
+
+
 @pytest.mark.parametrize("name", OBJECTS)
 def test_it_has_a_docstring(name: str) -> None:
     assert inspect.getdoc(OBJECTS[name])
@@ -67,10 +92,9 @@ def test_it_has_a_docstring(name: str) -> None:
 
 @pytest.mark.parametrize("name", [name for name, value in OBJECTS.items() if inspect.isfunction(value)])
 def test_every_parameter_is_described(name: str) -> None:
-    function = OBJECTS[name]
-    assert inspect.isfunction(function)
-    wanted = [one for one in inspect.signature(function).parameters if one not in ("self", "cls", "_")]
-    listed = [part.strip(" *") for entry in FunctionDoc(function)["Parameters"] for part in entry.name.split(",")]
+    wanted = [one for one in parameters_of(name) if one not in ("self", "cls", "_")]
+    described = FunctionDoc(OBJECTS[described_by(name)])["Parameters"]
+    listed = [part.strip(" *") for entry in described for part in entry.name.split(",")]
     assert set(wanted) <= set(listed), f"not described: {set(wanted) - set(listed)}"
 
 

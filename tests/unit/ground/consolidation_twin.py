@@ -13,6 +13,7 @@ The preconsolidation stress is brought up to the stress at the end of each of ma
 """
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from scipy.integrate import solve_ivp
@@ -44,59 +45,77 @@ def edges_of(layers, n_cell):
     return np.array(edges), np.array(owner)
 
 
-def twin_settlement(layers, knots, times, *, water_table, base_drained, n_cell=60, span_count=40):
-    """Settlement of the clay at `times` under an added pressure given at `knots` [(time, kPa), ...]."""
-    edges, owner = edges_of(layers, n_cell)
-    size, depth = np.diff(edges), 0.5 * (edges[1:] + edges[:-1])
+class Profile:
+    """One realisation as cells, with its balance of water."""
 
-    def of(name):
-        return np.array([getattr(layer, name) for layer in layers])[owner]
+    def __init__(self, layers, *, water_table, base_drained, n_cell):
+        edges, owner = edges_of(layers, n_cell)
+        self.size, depth = np.diff(edges), 0.5 * (edges[1:] + edges[:-1])
 
-    weight, e0, lam, kap, pop = (of(name) for name in ("weight", "void_ratio", "lam", "kap", "pop"))
-    total = np.array([(weight * np.clip(z - edges[:-1], 0.0, size)).sum() for z in depth])
-    stress0 = total - WATER * np.maximum(depth - water_table, 0.0)
-    clay = lam > 0.0
-    by_cv = np.array([layer.flow[0] == "cv" for layer in layers])[owner]
-    first = np.array([layer.flow[1] for layer in layers])[owner]
-    ck = np.array([layer.flow[2] if layer.flow[0] == "k" else 1.0 for layer in layers])[owner]
-    knot_time, knot_load = np.array(knots).T
-    safe = np.where(clay, lam, 1.0), np.where(clay, kap, 1.0)
+        def of(value):
+            return np.array([value(layer) for layer in layers])[owner]
 
-    def stress_of(lost, yielding, lost_at_yield):
-        slope = np.where(lost > lost_at_yield, safe[0], safe[1])
+        weight = of(lambda layer: layer.weight)
+        total = np.array([(weight * np.clip(z - edges[:-1], 0.0, self.size)).sum() for z in depth])
+        self.stress0 = total - WATER * np.maximum(depth - water_table, 0.0)
+        self.e0, self.pop = of(lambda layer: layer.void_ratio), of(lambda layer: layer.pop)
+        self.clay = of(lambda layer: layer.lam > 0.0)
+        self.lam = np.where(self.clay, of(lambda layer: layer.lam), 1.0)  # stand-ins in sand, never used
+        self.kap = np.where(self.clay, of(lambda layer: layer.kap), 1.0)
+        self.by_cv = of(lambda layer: layer.flow[0] == "cv")
+        self.first = of(lambda layer: layer.flow[1])
+        self.ck = of(lambda layer: layer.flow[2] if layer.flow[0] == "k" else 1.0)
+        self.base_drained = base_drained
+
+    def stress(self, lost, yielding, lost_at_yield):
+        """Effective stress for a void ratio lost: the compression curve read backwards."""
+        slope = np.where(lost > lost_at_yield, self.lam, self.kap)
         return yielding * np.exp((lost - lost_at_yield) / slope)
 
-    def rates(time, lost, yielding, lost_at_yield):
-        stress = stress_of(lost, yielding, lost_at_yield)
-        excess = stress0 + np.interp(time, knot_time, knot_load) - stress
-        e = e0 - lost
-        k = np.where(
-            by_cv,
-            first * WATER * safe[0] / ((1.0 + e) * np.maximum(stress, yielding)),
-            first * YEAR * 10.0 ** (-lost / ck),
-        )
-        half = 0.5 * size / (k / WATER * (1.0 + e0) / (1.0 + e))  # resistance from the centre to a face
-        flow = np.zeros(size.size + 1)  # downward through each edge
+    def rates(self, lost, added, yielding, lost_at_yield):
+        """Rate at which each cell loses void ratio under an added pressure."""
+        stress, e = self.stress(lost, yielding, lost_at_yield), self.e0 - lost
+        excess = self.stress0 + added - stress
+        by_cv = self.first * WATER * self.lam / ((1.0 + e) * np.maximum(stress, yielding))
+        k = np.where(self.by_cv, by_cv, self.first * YEAR * 10.0 ** (-lost / self.ck))
+        half = 0.5 * self.size / (k / WATER * (1.0 + self.e0) / (1.0 + e))  # resistance, centre to face
+        flow = np.zeros(self.size.size + 1)  # downward through each edge
         flow[1:-1] = (excess[:-1] - excess[1:]) / (half[:-1] + half[1:])
         flow[0] = -excess[0] / half[0]
-        flow[-1] = excess[-1] / half[-1] if base_drained else 0.0
-        # a granular layer holds no excess pressure: its edges are drained faces of the clay beside it
-        drains_below = np.flatnonzero(clay[:-1] & ~clay[1:])
-        drains_above = np.flatnonzero(~clay[:-1] & clay[1:])
+        flow[-1] = excess[-1] / half[-1] if self.base_drained else 0.0
         out = np.diff(flow)
-        out[drains_below] += excess[drains_below] / half[drains_below] - flow[drains_below + 1]
-        out[drains_above + 1] += excess[drains_above + 1] / half[drains_above + 1] + flow[drains_above + 1]
-        return np.where(clay, out * (1.0 + e0) / size, 0.0)
+        # a granular layer holds no excess pressure: its edges are drained faces of the clay beside it
+        above = np.flatnonzero(self.clay[:-1] & ~self.clay[1:])
+        below = np.flatnonzero(~self.clay[:-1] & self.clay[1:]) + 1
+        out[above] += excess[above] / half[above] - flow[above + 1]
+        out[below] += excess[below] / half[below] + flow[below]
+        return np.where(self.clay, out * (1.0 + self.e0) / self.size, 0.0)
 
-    lost, yielding = np.zeros(size.size), stress0 + pop
-    lost_at_yield = kap * np.log(yielding / stress0)
+    def settlement(self, lost):
+        """Settlement of the clay."""
+        return float((self.size / (1.0 + self.e0) * lost)[self.clay].sum())
+
+
+def stops_for(knot_time, times, span_count):
+    """Ends of the short spans: a kink of the load is followed by fast changes."""
     stops = {0.0, *knot_time, *times}
-    for start, end in zip(knot_time[:-1], knot_time[1:], strict=True):
-        # a kink of the load is followed by fast changes
+    for start, end in pairwise(knot_time):
         stops |= set(start + (end - start) * np.geomspace(1e-4, 1.0, span_count))
-    stops = np.unique(np.round([t for t in stops if t <= max(times)], 12))
+    return np.unique(np.round([t for t in stops if t <= max(times)], 12))
+
+
+def twin_settlement(layers, knots, times, *, water_table, base_drained, n_cell=60, span_count=40):
+    """Settlement of the clay at `times` under an added pressure given at `knots` [(time, kPa), ...]."""
+    profile = Profile(layers, water_table=water_table, base_drained=base_drained, n_cell=n_cell)
+    knot_time, knot_load = np.array(knots).T
+    lost, yielding = np.zeros(profile.size.size), profile.stress0 + profile.pop
+    lost_at_yield = profile.kap * np.log(yielding / profile.stress0)
+
+    def rates(time, lost, yielding, lost_at_yield):
+        return profile.rates(lost, np.interp(time, knot_time, knot_load), yielding, lost_at_yield)
+
     answer = {0.0: 0.0}
-    for start, end in zip(stops[:-1], stops[1:], strict=True):
+    for start, end in pairwise(stops_for(knot_time, times, span_count)):
         march = solve_ivp(
             rates,
             (start, end),
@@ -110,9 +129,8 @@ def twin_settlement(layers, knots, times, *, water_table, base_drained, n_cell=6
         )
         assert march.success
         lost = march.y[:, -1]
-        stress = stress_of(lost, yielding, lost_at_yield)
-        further = clay & (lost > lost_at_yield)
-        yielding = np.where(further, stress, yielding)
+        further = profile.clay & (lost > lost_at_yield)
+        yielding = np.where(further, profile.stress(lost, yielding, lost_at_yield), yielding)
         lost_at_yield = np.where(further, lost, lost_at_yield)
-        answer[end] = float((size / (1.0 + e0) * lost)[clay].sum())
+        answer[end] = profile.settlement(lost)
     return np.array([answer[np.round(time, 12)] for time in times])

@@ -19,7 +19,8 @@ SAND = TwinLayer(thickness=0.6, weight=19.0)
 def text_of(index, layer):
     if layer.lam == 0.0:
         return sand(f"sand {index}", layer.thickness, unit_weight=layer.weight)
-    flow = "{ cv = %r }" % layer.flow[1] if layer.flow[0] == "cv" else "{ k = %r, ck = %r }" % layer.flow[1:]
+    keys = ("cv",) if layer.flow[0] == "cv" else ("k", "ck")
+    flow = ", ".join(f"{key} = {value!r}" for key, value in zip(keys, layer.flow[1:], strict=True))
     return clay(
         f"clay {index}",
         layer.thickness,
@@ -28,7 +29,7 @@ def text_of(index, layer):
         lam=layer.lam,
         kappa=layer.kap,
         preconsolidation=f"{{ pop = {layer.pop!r} }}",
-        permeability=flow,
+        permeability=f"{{ {flow} }}",
     )
 
 

@@ -6,6 +6,8 @@ steps; a grid twice as fine again must move it by less than a quarter of the pro
 nothing.
 """
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from ground_cases import central, clay, refined, sand, scenario, stage
@@ -210,7 +212,7 @@ def test_second_order_in_time(flow):
     exact = at_quarters(4096)
     errors = [np.abs(at_quarters(n_step) - exact).max() for n_step in (8, 16, 32)]
     assert errors[-1] > 5e-6 * exact[-1]
-    for coarse, fine in zip(errors[:-1], errors[1:], strict=True):
+    for coarse, fine in pairwise(errors):
         assert coarse / fine == pytest.approx(4.0, rel=0.2)
 
 

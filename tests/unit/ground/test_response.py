@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from ground_cases import central, clay, sand, scenario, site_model, stage
 
+from probsoil.ground.clay_settlement import cell_settlement
 from probsoil.ground.response import ground_state, respond, screened
 from probsoil.ground.slip_circles import N_ZONE
 from probsoil.ground.undrained_strength import (
@@ -44,7 +45,7 @@ def built():
 
 
 def test_strength_before_loading_follows_from_stress_and_history(built):
-    site, _, state = built
+    _, _, state = built
     in_soft = state.ground.points.layer == 1
     stress = state.ground.points.stress[0, in_soft]
     ratio = plastic_volumetric_ratio(0.3, 0.04)
@@ -147,6 +148,27 @@ def test_screening_loses_nothing_in_its_pilot_and_little_beyond(built):
     full, part = respond(site, others).slip, respond(smaller, others).slip
     assert (part >= full).all()
     assert part == pytest.approx(full, rel=0.01)  # the family itself is no denser than 1 %
+
+
+def test_cells_add_up_to_the_settlement_of_the_clay(built):
+    site, _, state = built
+    shortening = cell_settlement(site, state.ground, state.consolidation)
+    assert shortening.shape == (1, site.cells.n_cell)
+    assert shortening.sum() == pytest.approx(state.consolidation.settlement[0, -1], rel=1e-9)
+
+
+def test_clay_all_through_has_no_frictional_strength():
+    """The same ground with its sand given away: the factor rests on undrained strength alone."""
+    stages = [stage("one", 0, 0.2, height=1.5)]
+    layers = [clay("upper", 2.0, preconsolidation="{ pop = 20 }"), clay("lower", 4.0)]
+    weak = scenario(layers, stages, load=EMBANKMENT, water_table=0.5)
+    site = site_model(weak)
+    values = central(weak)
+    single = respond(site, values | {"site.mode_factor": 1.0}).slip
+    double = respond(site, values | {"site.mode_factor": 2.0}).slip
+    assert single.shape == (1, 1)
+    # what doubles is the clay's part; the fill's friction stays
+    assert 1.2 * single[0, 0] < double[0, 0] < 2.0 * single[0, 0]
 
 
 def test_floors_and_clips_are_reported(built):

@@ -84,7 +84,7 @@ def test_equals_a_search_in_plain_numpy():
 def test_factor_by_hand_for_one_circle():
     """One uniform strength: su R^2 2a below ground, fill friction and cohesion above it."""
     circles = family()
-    ground, fill = random_ground(1)
+    _, fill = random_ground(1)
     uniform = GroundStrength(
         boundary=np.array([[0.0, 50.0]]),
         point_layer=np.zeros(2, dtype=np.int64),
