@@ -4,8 +4,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from probsoil.assessment.evaluation import Study, refined
-from probsoil.ground.response import respond
+from probsoil.assessment.evaluation import Study
+from probsoil.ground.response import respond, screened
+from probsoil.ground.site_model import site_model
 
 REALISATIONS = 32
 _ORDER_FACTOR = 1.6  # 1/(1 - 2**-1.4): halved steps remove this part if the observed order 1.4 holds
@@ -59,10 +60,10 @@ def discretisation_error(study: Study) -> DiscretisationError:
         Differences from twice as many cells and steps, raised for what the finer grid itself
         leaves, and from a denser family of circles without screening.
     """
-    fine_study = refined(study)
     z = study.latent(0)[:REALISATIONS]
     values = study.space.values(z)
-    coarse, fine = respond(study.site, values), respond(fine_study.site, values)
+    fine_site = screened(site_model(study.scenario, refine=2), values, within=0.0)
+    coarse, fine = respond(study.site, values), respond(fine_site, values)
     shared = np.intersect1d(coarse.times, fine.times)
     difference = np.abs(
         coarse.settlement[:, np.searchsorted(coarse.times, shared)]

@@ -1,7 +1,7 @@
 """What is worked out for one chunk of realisations."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -83,6 +83,7 @@ class Study:
             "floored": response.floored,
             "kappa_clipped": response.kappa_clipped,
             "converged": response.converged,
+            "voids_closed": response.voids_closed,
         }
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
@@ -125,19 +126,3 @@ def space_of(scenario: Scenario) -> ParameterSpace:
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
     return parameter_space(scenario.quantities(), pairs)
-
-
-def refined(study: Study) -> Study:
-    """Return the same study on finer cells and time steps with a full, denser family of circles.
-
-    Parameters
-    ----------
-    study : Study
-        Study of the campaign.
-
-    Returns
-    -------
-    study : Study
-        For measuring the discretisation error.
-    """
-    return replace(study, site=site_model(study.scenario, refine=2))

@@ -34,7 +34,7 @@ class CampaignSample:
         Settlement at the horizon.
     settlement : ndarray, shape (n_band, n_time), [m]
         Settlement through time of the first realisations.
-    converged, floored, kappa_clipped : ndarray of bool, shape (n_sample,), [-]
+    converged, voids_closed, floored, kappa_clipped : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model.
     replicate : ndarray of int, shape (n_sample,), [-]
         Replicate of the design.
@@ -45,6 +45,7 @@ class CampaignSample:
     final: FloatArray
     settlement: FloatArray
     converged: BoolArray
+    voids_closed: BoolArray
     floored: BoolArray
     kappa_clipped: BoolArray
     replicate: IntArray
@@ -271,7 +272,13 @@ def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationErro
         (
             "not_converged",
             "realisations in which the consolidation did not converge; they count as exceeding every limit",
-            float((~sample.converged).mean()),
+            float((~sample.converged & ~sample.voids_closed).mean()),
+        ),
+        (
+            "voids_closed",
+            "realisations in which the void ratio fell below 0.05 somewhere: initial stress, void ratio and "
+            "lambda do not belong together there; they count as exceeding every limit",
+            float(sample.voids_closed.mean()),
         ),
         (
             "preconsolidation_raised",

@@ -11,7 +11,7 @@ from probsoil.assessment.evaluation import space_of
 from probsoil.ground.applied_load import stress_at
 from probsoil.ground.clay_settlement import cell_settlement
 from probsoil.ground.profile import Values, column
-from probsoil.ground.response import GroundState, ground_state
+from probsoil.ground.response import GroundState, ground_state, screened
 from probsoil.ground.site_model import SiteModel, site_model
 from probsoil.scenario import Scenario
 
@@ -104,8 +104,9 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
         If `at` is neither.
     """
     values = space_of(scenario).at(at)
-    site = site_model(scenario)
-    state = ground_state(site, fixed_values(values))
+    one = fixed_values(values)
+    site = screened(site_model(scenario), one, within=0.0)
+    state = ground_state(site, one)
     response = state.response
     ends = {stage.end: stage.name for stage in site.stages}
     slip = {

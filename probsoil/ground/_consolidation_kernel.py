@@ -24,6 +24,7 @@ GAMMA = 1.0 - 1.0 / math.sqrt(2.0)  # Alexander (1977): two-stage, L-stable, sec
 _BEYOND = (1.0 - GAMMA) / GAMMA
 _TOLERANCE = 1e-4  # relative change of stress at which iteration stops; what is left is far less
 _MOST_ITERATIONS = 40
+LEAST_VOID_RATIO = 0.05  # below it no soil is left that the compression line could describe
 
 _compiled = njit(nogil=True, cache=True, error_model="numpy", fastmath={"contract"})
 
@@ -55,8 +56,9 @@ class Loading(NamedTuple):
 
     stress: FloatArray
     spread: FloatArray  # (block, cell, lane)
+    height: FloatArray  # (knot,), of fill
     water_depth: FloatArray  # (block, lane)
-    water_weight: float
+    water_weight: float  # zero where submergence does not count
 
 
 class Schedule(NamedTuple):
@@ -102,7 +104,7 @@ class _Work(NamedTuple):
     change: FloatArray
     live: FloatArray
     worst: FloatArray
-    lightened: FloatArray
+    sunk: FloatArray  # settlement foreseen, then the pressure it takes off
 
 
 @_compiled
@@ -150,11 +152,19 @@ def _compress(b: int, soil: Soil, state: _State, trial: _Trial) -> None:
 
 @_compiled
 def _add_load(b: int, j: int, share: float, soil: Soil, loading: Loading, trial: _Trial, work: _Work) -> None:
-    """Total of initial and added stress between load knots j and j + 1."""
+    """Total of initial and added stress between load knots j and j + 1.
+
+    What has sunk below the water table, first the ground above it and then the fill, loses the
+    weight of water.
+    """
+    height = (1.0 - share) * loading.height[j] + share * loading.height[j + 1]
+    for lane in range(LANES):
+        submerged = min(max(work.sunk[lane], 0.0), loading.water_depth[b, lane] + height)
+        work.sunk[lane] = loading.water_weight * submerged
     for i in range(trial.s.shape[0]):
         for lane in range(LANES):
             added = (1.0 - share) * loading.stress[b, j, i, lane] + share * loading.stress[b, j + 1, i, lane]
-            relief = min(work.lightened[lane] * loading.spread[b, i, lane], max(added, 0.0))
+            relief = min(work.sunk[lane] * loading.spread[b, i, lane], max(added, 0.0))
             trial.total[i, lane] = soil.stress[b, i, lane] + added - relief
 
 
@@ -263,30 +273,28 @@ def _apply(trial: _Trial, work: _Work) -> bool:
 
 
 @_compiled
-def _first_target(b: int, span: float, loading: Loading, state: _State, trial: _Trial, work: _Work) -> None:
+def _first_target(span: float, state: _State, trial: _Trial, work: _Work) -> None:
     """Set out the first stage: from the state at the start of the step."""
     for i in range(trial.s.shape[0]):
         for lane in range(LANES):
             trial.target[i, lane] = state.w[i, lane]
     for lane in range(LANES):
-        sunk = state.sunk[0, lane] + span * state.sunk[1, lane]
-        work.lightened[lane] = loading.water_weight * max(sunk - loading.water_depth[b, lane], 0.0)
+        work.sunk[lane] = state.sunk[0, lane] + span * state.sunk[1, lane]
 
 
 @_compiled
-def _second_target(b: int, span: float, loading: Loading, state: _State, trial: _Trial, work: _Work) -> None:
+def _second_target(span: float, state: _State, trial: _Trial, work: _Work) -> None:
     """Set out the second stage: carry on through the first one."""
     for lane in range(LANES):
-        work.lightened[lane] = 0.0
+        work.sunk[lane] = 0.0
     for i in range(trial.s.shape[0]):
         for lane in range(LANES):
             gained = trial.w[i, lane] - state.w[i, lane]
             trial.target[i, lane] = state.w[i, lane] + _BEYOND * gained
             state.rate[i, lane] = (trial.s[i, lane] - state.s[i, lane]) / span
-            work.lightened[lane] += state.mass[i, lane] * gained
+            work.sunk[lane] += state.mass[i, lane] * gained
     for lane in range(LANES):
-        sunk = state.sunk[0, lane] + work.lightened[lane] / GAMMA
-        work.lightened[lane] = loading.water_weight * max(sunk - loading.water_depth[b, lane], 0.0)
+        work.sunk[lane] = state.sunk[0, lane] + work.sunk[lane] / GAMMA
 
 
 @_compiled
@@ -338,6 +346,15 @@ def _finish(b: int, length: float, soil: Soil, state: _State, trial: _Trial) -> 
 
 
 @_compiled
+def _count_closed(b: int, soil: Soil, trial: _Trial, failed: IntArray) -> None:
+    """Count the cells whose voids have closed: the compression line does not reach that far."""
+    for i in range(trial.s.shape[0]):
+        for lane in range(LANES):
+            if soil.void_ratio[b, i, lane] - trial.w[i, lane] < LEAST_VOID_RATIO:
+                failed[b, 1, lane] += 1
+
+
+@_compiled
 def consolidate_lanes(
     soil: Soil,
     faces: Faces,
@@ -350,8 +367,8 @@ def consolidate_lanes(
     """March all blocks of lanes through all steps; see `consolidation.consolidate`.
 
     `settlement` (block, step, lane) takes the settlement at the end of each step, `recorded`
-    (block, slot, 2, cell, lane) effective and preconsolidation stress, `failed` (block, lane) the
-    number of stages that did not converge.
+    (block, slot, 2, cell, lane) effective and preconsolidation stress, `failed`
+    (block, 2, lane) the number of stages that did not converge and of cells with closed voids.
     """
     n_block, n_cell, _ = soil.thickness.shape
     shape = (n_cell, LANES)
@@ -384,16 +401,17 @@ def consolidate_lanes(
             span = GAMMA * length
             for stage in range(2):
                 if stage == 0:
-                    _first_target(b, span, loading, state, trial, work)
+                    _first_target(span, state, trial, work)
                     _guess(state, span, trial)
                 else:
-                    _second_target(b, span, loading, state, trial, work)
+                    _second_target(span, state, trial, work)
                     _guess(state, length, trial)
                 _add_load(b, schedule.knot[n, stage], schedule.weight[n, stage], soil, loading, trial, work)
                 _iterate(b, span, soil, faces, state, trial, work)
                 for lane in range(LANES):
                     if not work.worst[lane] <= _TOLERANCE:  # also when it is not a number
-                        failed[b, lane] += 1
+                        failed[b, 0, lane] += 1
+            _count_closed(b, soil, trial, failed)
             _finish(b, length, soil, state, trial)
             slot = schedule.record[n]
             for lane in range(LANES):

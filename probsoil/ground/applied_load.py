@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
+from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.load_stress import embankment_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import Embankment, SiteModel
@@ -23,13 +24,16 @@ class AppliedLoad:
     slope_share : ndarray, shape (n_sample, n_point), [-]
         Stress below the middle of the slope over that below the centreline, full height; 1 for a
         wide area.
+    height : ndarray, shape (n_knot,), [m]
+        Height of fill at the load knots.
     water_depth : ndarray, shape (n_sample,), [m]
-        Settlement at which the base of the fill meets the water table; infinite if of no account.
+        Depth of the water table.
     """
 
     stress: FloatArray
     spread: FloatArray
     slope_share: FloatArray
+    height: FloatArray
     water_depth: FloatArray
 
 
@@ -121,12 +125,39 @@ def applied_load(site: SiteModel, values: Values, depth: FloatArray) -> AppliedL
         share = np.clip(_influence(shape, depth, shape.full_height, middle) / spread, 0.0, 1.0)
         at_height = {height: _influence(shape, depth, height) for height in set(heights)}
         stress = [weight[:, None] * height * at_height[height] for height in heights]
-    water_depth = (
-        column(values, "site.water_table", n_sample)
-        if site.submergence and has_fill
-        else np.full(n_sample, np.inf)
+    return AppliedLoad(
+        stress=np.stack(stress),
+        spread=spread,
+        slope_share=share,
+        height=np.array(heights),
+        water_depth=column(values, "site.water_table", n_sample),
     )
-    return AppliedLoad(stress=np.stack(stress), spread=spread, slope_share=share, water_depth=water_depth)
+
+
+def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: FloatArray) -> FloatArray:
+    """Return the added stress that submergence takes off again.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Whether submergence counts, and the fill.
+    load : AppliedLoad
+        Added stress.
+    time : float, [years]
+        Time, for the height of fill.
+    settled : ndarray, shape (n_sample,), [m]
+        Settlement of the clay.
+
+    Returns
+    -------
+    relief : ndarray, shape (n_sample, n_point), [kPa]
+        Weight of the water displaced by what has sunk below the water table, first the ground above
+        it and then the fill, spread like the load and never more than it.
+    """
+    if not site.submergence:
+        return np.zeros_like(load.spread)
+    submerged = np.minimum(np.maximum(settled, 0.0), load.water_depth + site.fill_height(time))
+    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, stress_at(site, load, time))
 
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:

@@ -3,7 +3,7 @@
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.ground.applied_load import LoadedGround, stress_at
+from probsoil.ground.applied_load import LoadedGround, relief_by_water, stress_at
 from probsoil.ground.compression import void_ratio_lost
 from probsoil.ground.consolidation import (
     ClayState,
@@ -14,7 +14,7 @@ from probsoil.ground.consolidation import (
     conductivity_from_permeability,
     consolidate,
 )
-from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
+from probsoil.ground.constants import SECONDS_PER_YEAR
 from probsoil.ground.profile import Values, column
 from probsoil.ground.site_model import SiteModel
 
@@ -44,7 +44,9 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
         time=site.knots,
         stress=load.stress[:, :, clay],
         spread=load.spread[:, clay],
+        height=load.height,
         water_depth=load.water_depth,
+        submergence=site.submergence,
     )
     flow = _conductivity(site, values, state)
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
@@ -185,10 +187,8 @@ def degrees_of_consolidation(
 def _done(
     site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, time: float, settled: FloatArray
 ) -> FloatArray:
-    added = stress_at(site, ground.load, time)[:, ground.clay]
-    sunk = np.maximum(settled - ground.load.water_depth, 0.0)[:, None]
-    buoyancy = np.minimum(WATER_UNIT_WEIGHT * sunk * ground.load.spread[:, ground.clay], added)
-    return settlement_when_done(site, ground, yield_stress, added - buoyancy)
+    added = stress_at(site, ground.load, time) - relief_by_water(site, ground.load, time, settled)
+    return settlement_when_done(site, ground, yield_stress, added[:, ground.clay])
 
 
 def _degree(settled: FloatArray, done: FloatArray) -> FloatArray:

@@ -80,16 +80,21 @@ class LoadHistory:
     stress : ndarray, shape (n_knot, n_sample, n_cell), [kPa]
         Added total vertical stress at each knot.
     spread : ndarray, shape (n_sample, n_cell), [-]
-        Share of a change of fill weight at the surface that reaches the cell, for submergence.
+        Share of a change of weight at the surface that reaches the cell, for submergence.
+    height : ndarray, shape (n_knot,), [m]
+        Height of fill at each knot, for submergence.
     water_depth : ndarray, shape (n_sample,), [m]
-        Settlement beyond which the fill loses weight by sinking below the water table; infinite
-        where submergence does not count.
+        Depth of the water table.
+    submergence : bool
+        Whether what sinks below the water table loses the weight of water.
     """
 
     time: FloatArray
     stress: FloatArray
     spread: FloatArray
+    height: FloatArray
     water_depth: FloatArray
+    submergence: bool
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -99,17 +104,23 @@ class ConsolidationResult:
     Attributes
     ----------
     settlement : ndarray, shape (n_sample, n_time), [m]
-        Settlement of the clay since the start; the first time is the start.
+        Settlement of the clay since the start; the first time is the start. Not a number where the
+        computation failed.
     stress, yield_stress : ndarray, shape (n_sample, n_record, n_cell), [kPa]
-        Effective vertical and preconsolidation stress at the recorded times.
+        Effective vertical and preconsolidation stress at the recorded times; those in situ where
+        the computation failed.
     converged : ndarray of bool, shape (n_sample,), [-]
-        Whether every step was solved to tolerance.
+        Whether every step was solved to tolerance with open voids.
+    voids_closed : ndarray of bool, shape (n_sample,), [-]
+        Whether the void ratio fell below 0.05 somewhere: the compression line does not reach that
+        far, so initial stress, void ratio and lambda do not belong together.
     """
 
     settlement: FloatArray
     stress: FloatArray
     yield_stress: FloatArray
     converged: BoolArray
+    voids_closed: BoolArray
 
 
 def conductivity_from_permeability(
@@ -241,7 +252,7 @@ def consolidate(
     lanes = Lanes(n_sample)
     settlement = np.zeros((lanes.n_block, times.size - 1, LANES))
     recorded = np.zeros((lanes.n_block, record.size, 2, cells.n_cell, LANES))
-    failed = np.zeros((lanes.n_block, LANES), dtype=np.int64)
+    failed = np.zeros((lanes.n_block, 2, LANES), dtype=np.int64)
     consolidate_lanes(
         _soil(lanes, state, conductivity),
         Faces(
@@ -253,8 +264,9 @@ def consolidate(
         Loading(
             stress=np.stack([lanes.pack(stress) for stress in load.stress], axis=1),
             spread=lanes.pack(load.spread),
+            height=load.height,
             water_depth=lanes.pack(load.water_depth[:, None])[:, 0, :],
-            water_weight=WATER_UNIT_WEIGHT,
+            water_weight=WATER_UNIT_WEIGHT if load.submergence else 0.0,
         ),
         Schedule(step=np.diff(times), knot=knot, weight=weight, record=slot),
         settlement,
@@ -263,11 +275,17 @@ def consolidate(
     )
     through_time = lanes.unpack(settlement)
     kept = lanes.unpack(recorded)
+    unsolved, closed = lanes.unpack(failed).T > 0
+    good = ~unsolved & ~closed & np.isfinite(through_time).all(axis=1)
+    through_time[~good] = np.nan
+    kept[~good, :, 0] = state.stress[~good, None]
+    kept[~good, :, 1] = state.yield_stress[~good, None]
     return ConsolidationResult(
         settlement=np.concatenate([np.zeros((n_sample, 1)), through_time], axis=1),
         stress=kept[:, :, 0],
         yield_stress=kept[:, :, 1],
-        converged=(failed.reshape(-1)[:n_sample] == 0) & np.isfinite(through_time).all(axis=1),
+        converged=good,
+        voids_closed=closed,
     )
 
 

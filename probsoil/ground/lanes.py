@@ -1,8 +1,12 @@
 """Side by side: how realisations are packed for the compiled kernels."""
 
+from typing import TypeVar
+
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import FloatArray, IntArray
+
+Numbers = TypeVar("Numbers", FloatArray, IntArray)
 
 LANES = 16
 """Realisations that a kernel carries side by side, [-]; a multiple of any vector width."""
@@ -38,7 +42,7 @@ class Lanes:
         blocks = values[self._index].reshape(self.n_block, LANES, -1)
         return np.ascontiguousarray(blocks.transpose(0, 2, 1))
 
-    def unpack(self, values: FloatArray) -> FloatArray:
+    def unpack(self, values: Numbers) -> Numbers:
         """Return blocks of lanes as one row per realisation.
 
         Parameters

@@ -21,7 +21,7 @@ from probsoil.ground.undrained_strength import (
 
 GREATEST_KAPPA_SHARE = 0.95  # of lambda; above it the two lines would cross
 _GRANULAR_POINTS = np.array([0.125, 0.375, 0.625, 0.875])  # depths of points, as shares of a granular layer
-_LEAST_STRESS = 0.01  # kPa; a floor for the very first millimetres below ground level
+LEAST_STRESS = 1.0  # kPa; the first centimetres carry suction and roots, never nothing
 
 Values = Mapping[str, FloatArray | float]
 
@@ -126,6 +126,11 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     -------
     points : Points
         Clay cells and four points in every granular layer, from ground level down.
+
+    Notes
+    -----
+    The effective stress is nowhere taken below 1 kPa (judgement): on the compression line a clay
+    without any stress would have no lower end to its strain.
     """
 
     def per_layer(key: Callable[[LayerForm], str]) -> FloatArray:
@@ -144,7 +149,7 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
         unit_weight_above=per_layer(lambda form: "unit_weight_above" if form.weight_above else "unit_weight"),
         water_table=water_table,
     )
-    effective = np.maximum(total - hydrostatic_pressure(depth, water_table), _LEAST_STRESS)
+    effective = np.maximum(total - hydrostatic_pressure(depth, water_table), LEAST_STRESS)
     return Points(
         layer=layer, boundary=boundary, depth=depth, thickness=share * thickness[:, layer], stress=effective
     )

@@ -13,7 +13,7 @@ from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
 
-COMPETING = 0.05
+COMPETING = 0.02
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -40,7 +40,10 @@ class Response:
     critical_circle : ndarray of int, shape (n_sample, n_check), [-]
         Its index in the family of that time.
     converged : ndarray of bool, shape (n_sample,), [-]
-        Whether the consolidation was solved to tolerance.
+        Whether the consolidation was solved to tolerance with open voids; where not, settlement,
+        degree and slip are not numbers.
+    voids_closed : ndarray of bool, shape (n_sample,), [-]
+        Whether the void ratio fell below 0.05 somewhere, which counts as not converged.
     floored : ndarray of bool, shape (n_sample,), [-]
         Whether the preconsolidation stress was raised to the stress in situ anywhere.
     kappa_clipped : ndarray of bool, shape (n_sample,), [-]
@@ -56,6 +59,7 @@ class Response:
     slip: FloatArray
     critical_circle: IntArray
     converged: BoolArray
+    voids_closed: BoolArray
     floored: BoolArray
     kappa_clipped: BoolArray
 
@@ -140,6 +144,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     granular = granular_settlement(site, values, ground)
     strength, before = zone_strengths(site, values, ground, result)
     slip, critical = slip_at_checks(site, values, ground, strength)
+    slip[~result.converged] = np.nan
     at_record, after_last = degrees_of_consolidation(site, ground, result)
     response = Response(
         times=site.times,
@@ -151,6 +156,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip=slip,
         critical_circle=critical,
         converged=result.converged,
+        voids_closed=result.voids_closed,
         floored=np.asarray(floored.any(axis=1)),
         kappa_clipped=np.asarray(columns.kappa_clipped.any(axis=1)),
     )
@@ -170,9 +176,10 @@ def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> Si
     Parameters
     ----------
     site : SiteModel
-        With full families of circles.
+        As laid out.
     pilot : mapping of str to ndarray, shape (n_sample,), or float
-        Values of every quantity, spread more widely than the realisations to come.
+        Values of every quantity, spread more widely than the realisations to come; or, with
+        ``within = 0``, the very values to be computed.
     within : float, [-]
         A circle stays if its factor comes this close (as a share) to the least one anywhere.
 
@@ -187,6 +194,8 @@ def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> Si
     never close. What the screening may have lost is part of the discretisation error that a
     campaign reports, measured against a full and denser family.
     """
-    state = ground_state(site, pilot)
+    if not site.layouts:
+        return site
+    state = ground_state(replace(site, slip_times=site.slip_times[:0]), pilot)
     families = competing_families(site, pilot, state.ground, state.strength, within=within)
     return replace(site, families=families)

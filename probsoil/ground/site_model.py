@@ -7,7 +7,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.ground.cells import DEFAULT_CELLS, Cells, graded_cells
-from probsoil.ground.slip_circles import CircleFamily, EmbankmentSection, circle_family
+from probsoil.ground.slip_circles import CircleFamily, CircleLayout, EmbankmentSection
 from probsoil.ground.time_steps import time_axis
 from probsoil.scenario import Scenario
 from probsoil.scenario.layers import ClayLayer, GranularLayer
@@ -164,8 +164,10 @@ class SiteModel:
         Times at which stresses are kept: stage ends, the times of limits that need them, the horizon.
     slip_times : ndarray, shape (n_check,), [years]
         Times among `record` at which slip is looked at (fill on the ground).
+    layouts : tuple of CircleLayout
+        Circles to look at, one layout for each of `slip_times`.
     families : tuple of CircleFamily
-        One for each of `slip_times`.
+        Circles that compete, one family for each of `slip_times`; empty before they are screened.
     """
 
     layers: tuple[LayerForm, ...]
@@ -178,7 +180,8 @@ class SiteModel:
     times: FloatArray
     record: FloatArray
     slip_times: FloatArray
-    families: tuple[CircleFamily, ...]
+    layouts: tuple[CircleLayout, ...]
+    families: tuple[CircleFamily, ...] = ()
 
     @property
     def knots(self) -> FloatArray:
@@ -265,7 +268,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     ramps = [(stage.start, stage.end) for stage in stages]
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *_limit_times(scenario), *report]
-    families = _families(embankment, layers, stages, slip_times, density=0.5 * (1.0 + refine))
+    layouts = _layouts(embankment, layers, stages, slip_times, density=0.5 * (1.0 + refine))
     return SiteModel(
         layers=layers,
         base_drained=scenario.site.base == "drained",
@@ -277,7 +280,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         times=time_axis(ramps, wanted, horizon, refine=refine),
         record=record,
         slip_times=slip_times,
-        families=families,
+        layouts=layouts,
     )
 
 
@@ -350,23 +353,24 @@ def _height(stages: Sequence[StageForm], time: float) -> float:
     return height if height > 1e-9 else 0.0  # a removal may leave a rounding error behind
 
 
-def _families(
+def _layouts(
     embankment: Embankment | None,
     layers: Sequence[LayerForm],
     stages: Sequence[StageForm],
     slip_times: FloatArray,
     *,
     density: float,
-) -> tuple[CircleFamily, ...]:
+) -> tuple[CircleLayout, ...]:
     if embankment is None:
         return ()
-    bottom = sum(layer.mean_thickness for layer in layers)
-    depth = min(_DEEPER * bottom, _WIDTHS * embankment.base_width)
+    boundaries = np.cumsum([layer.mean_thickness for layer in layers]).tolist()
+    depth = min(_DEEPER * boundaries[-1], _WIDTHS * embankment.base_width)
     frictional = any(not layer.is_clay for layer in layers)
     return tuple(
-        circle_family(
-            embankment.section(_height(stages, float(time))),
+        CircleLayout(
+            section=embankment.section(_height(stages, float(time))),
             depth=depth,
+            boundaries=tuple(boundaries),
             density=density,
             frictional_ground=frictional,
         )

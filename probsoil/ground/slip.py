@@ -5,10 +5,18 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import FloatArray, IntArray
-from probsoil.ground._slip_kernel import Moments, least_factor, near_least, strength_on_slices
+from probsoil.ground._slip_kernel import Moments, least_factor, strength_on_slices
 from probsoil.ground.lanes import LANES, Lanes
-from probsoil.ground.slip_circles import N_ZONE, CircleFamily
+from probsoil.ground.slip_circles import (
+    N_ZONE,
+    CircleFamily,
+    CircleLayout,
+    candidate_circles,
+    dense_weights,
+    weighed,
+)
 
+_BLOCK = 2000  # circles weighed at a time while screening
 _FIRM = 1e6  # kPa; below the last layer no circle is ever critical
 
 
@@ -87,14 +95,26 @@ def slip_safety(
     effects, progressive failure and cracks in the fill are left out.
     """
     n_sample = fill.unit_weight.size
-    factor, critical = _least(_packed(ground, fill, family), family)
+    lanes = Lanes(n_sample)
+    tangent = np.tan(np.radians(fill.friction_angle))
+    moments = Moments(
+        strength=_on_slices(ground, family.slice_edge, n_sample),
+        row_start=family.row_start,
+        column=family.column,
+        weight=family.weight,
+        fill=lanes.pack(np.stack([fill.unit_weight, tangent, fill.cohesion], axis=1)),
+        fill_terms=np.stack([family.driving, family.fill_friction, family.fill_cohesion]),
+    )
+    factor = np.empty((lanes.n_block, LANES))
+    critical = np.empty(factor.shape, dtype=np.int64)
+    least_factor(moments, factor, critical)
     return factor.reshape(-1)[:n_sample], critical.reshape(-1)[:n_sample]
 
 
 def competing_circles(
-    ground: GroundStrength, fill: FillStrength, family: CircleFamily, *, within: float
+    ground: GroundStrength, fill: FillStrength, layout: CircleLayout, *, within: float
 ) -> CircleFamily:
-    """Return the circles that are nearly critical in at least one realisation.
+    """Return the circles that are critical or nearly so in at least one realisation.
 
     Parameters
     ----------
@@ -102,7 +122,7 @@ def competing_circles(
         Strength of the layers, n_sample realisations.
     fill : FillStrength
         Fill of the same realisations.
-    family : CircleFamily
+    layout : CircleLayout
         Circles to choose from.
     within : float, [-]
         How far above the least factor a circle may be, as a share of it.
@@ -112,29 +132,31 @@ def competing_circles(
     family : CircleFamily
         The circles kept, in their order.
     """
-    packed = _packed(ground, fill, family)
-    factor, _ = _least(packed, family)
-    near = np.zeros(family.n_circle)
-    near_least(_moments(packed, family), factor, within, near)
-    return family.subset(near > 0.0)
+    n_sample = fill.unit_weight.size
+    strength = Lanes(n_sample).unpack(_on_slices(ground, layout.slice_edge, n_sample)).T
+    tangent = np.tan(np.radians(fill.friction_angle))
+    circles = candidate_circles(layout)
+    factor = np.empty((len(circles), n_sample))
+    for first in range(0, len(circles), _BLOCK):
+        part = slice(first, first + _BLOCK)
+        rows, terms = dense_weights(layout, circles[part])
+        by_fill = np.outer(terms[0], fill.unit_weight * tangent) + np.outer(terms[1], fill.cohesion)
+        factor[part] = (rows @ strength + by_fill) / np.outer(circles.driving[part], fill.unit_weight)
+    near = factor <= (1.0 + within) * factor.min(axis=0)
+    return weighed(layout, circles[np.asarray(near.any(axis=1))])
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class _Packed:
-    strength: FloatArray  # (n_block, n_column, LANES)
-    fill: FloatArray  # (n_block, 3, LANES): unit weight, tangent of friction angle, cohesion
-
-
-def _packed(ground: GroundStrength, fill: FillStrength, family: CircleFamily) -> _Packed:
-    lanes = Lanes(fill.unit_weight.size)
+def _on_slices(ground: GroundStrength, edge: FloatArray, n_sample: int) -> FloatArray:
+    """Return the strength of every zone and slice, shape (n_block, n_column, LANES), [kPa]."""
+    lanes = Lanes(n_sample)
     kinds = [ground.cohesive] if ground.frictional is None else [ground.cohesive, ground.frictional]
     strength = np.concatenate(kinds, axis=1)
-    n_kind, n_slice = strength.shape[1], family.slice_depth.size
+    n_kind, n_slice = strength.shape[1], edge.size - 1
     at_points = np.stack([lanes.pack(strength[:, kind]) for kind in range(n_kind)], axis=1)
     first_point = np.searchsorted(ground.point_layer, np.arange(ground.boundary.shape[1]))
     on_slices = np.empty((lanes.n_block, n_kind, n_slice, LANES))
     strength_on_slices(
-        family.slice_depth,
+        edge,
         lanes.pack(ground.boundary),
         first_point.astype(np.int64),
         lanes.pack(ground.point_depth),
@@ -142,26 +164,4 @@ def _packed(ground: GroundStrength, fill: FillStrength, family: CircleFamily) ->
         np.where(np.arange(n_kind) < N_ZONE, _FIRM, 0.0),
         on_slices,
     )
-    tangent = np.tan(np.radians(fill.friction_angle))
-    return _Packed(
-        on_slices.reshape(lanes.n_block, n_kind * n_slice, LANES),
-        lanes.pack(np.stack([fill.unit_weight, tangent, fill.cohesion], axis=1)),
-    )
-
-
-def _moments(packed: _Packed, family: CircleFamily) -> Moments:
-    return Moments(
-        strength=packed.strength,
-        row_start=family.row_start,
-        column=family.column,
-        weight=family.weight,
-        fill=packed.fill,
-        fill_terms=np.stack([family.driving, family.fill_friction, family.fill_cohesion]),
-    )
-
-
-def _least(packed: _Packed, family: CircleFamily) -> tuple[FloatArray, IntArray]:
-    factor = np.empty((packed.strength.shape[0], LANES))
-    critical = np.empty(factor.shape, dtype=np.int64)
-    least_factor(_moments(packed, family), factor, critical)
-    return factor, critical
+    return on_slices.reshape(lanes.n_block, n_kind * n_slice, LANES)

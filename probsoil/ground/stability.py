@@ -10,7 +10,7 @@ from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.profile import Values, column
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.slip import FillStrength, GroundStrength, competing_circles, slip_safety
-from probsoil.ground.slip_circles import N_ZONE, CircleFamily
+from probsoil.ground.slip_circles import N_ZONE, CircleFamily, circle_family
 from probsoil.ground.undrained_strength import undrained_shear_strength
 
 
@@ -73,7 +73,7 @@ def slip_at_checks(
     Parameters
     ----------
     site : SiteModel
-        Times and families of circles.
+        Times and families of circles; where it holds none, all circles are laid out afresh.
     values : mapping of str to ndarray, shape (n_sample,), or float
         Value of every quantity by its address.
     ground : LoadedGround
@@ -91,7 +91,8 @@ def slip_at_checks(
     n_sample, n_check = ground.points.depth.shape[0], site.slip_times.size
     factor, critical = np.empty((n_sample, n_check)), np.empty((n_sample, n_check), dtype=np.int64)
     for check, (here, fill) in enumerate(_sections(site, values, ground, strength)):
-        factor[:, check], critical[:, check] = slip_safety(here, fill, site.families[check])
+        family = site.families[check] if site.families else circle_family(site.layouts[check])
+        factor[:, check], critical[:, check] = slip_safety(here, fill, family)
     return factor, critical
 
 
@@ -120,8 +121,8 @@ def competing_families(
     """
     sections = _sections(site, values, ground, strength)
     return tuple(
-        competing_circles(here, fill, family, within=within)
-        for (here, fill), family in zip(sections, site.families, strict=True)
+        competing_circles(here, fill, layout, within=within)
+        for (here, fill), layout in zip(sections, site.layouts, strict=True)
     )
 
 

@@ -120,7 +120,7 @@ def test_any_distribution_table_is_read_or_refused(data):
         assert isinstance(outcome, Distribution)
         assert outcome.describe("m")
         assert 0.0 <= outcome.probability_outside(0.1, 5.0) <= 1.0
-        assert outcome.expectation == outcome.expectation
+        assert not math.isnan(outcome.expectation)
 
 
 @settings(max_examples=300, deadline=None)

@@ -9,6 +9,7 @@ from probsoil.sensitivity import driver_sums, drivers, linear_shapley, merge
 
 REPEATABLE = settings(derandomize=True, deadline=None, max_examples=40)
 seeds = st.integers(0, 2**31)
+DRAWN = 4000  # enough for about half of the cases to rank a parameter
 
 
 def correlation_of(d, seed):
@@ -41,16 +42,16 @@ def test_order_and_unit_do_not_matter(d, seed, random):
 
 
 @REPEATABLE
-@given(st.integers(1, 5), seeds, st.floats(-2.0, 2.0), st.integers(1, 199))
+@given(st.integers(1, 5), seeds, st.floats(-2.0, 2.0), st.integers(1, DRAWN - 1))
 def test_drivers_are_sound_for_any_cut_into_chunks(d, seed, threshold, cut):
     generator = np.random.default_rng(seed)
     correlation = correlation_of(d, seed)
-    z = generator.standard_normal((200, d)) @ np.linalg.cholesky(correlation).T
-    quantity = z @ generator.standard_normal(d) + 0.1 * generator.standard_normal(200)
+    z = generator.standard_normal((DRAWN, d)) @ np.linalg.cholesky(correlation).T
+    quantity = z @ generator.standard_normal(d) + 0.1 * generator.standard_normal(DRAWN)
     inverse, flag = np.linalg.inv(correlation), quantity > threshold
-    parts = [driver_sums(z[s], inverse, quantity[s], flag[s]) for s in (slice(0, cut), slice(cut, 200))]
+    parts = [driver_sums(z[s], inverse, quantity[s], flag[s]) for s in (slice(0, cut), slice(cut, DRAWN))]
     result = drivers(merge(*parts), correlation, [f"p{i}" for i in range(d)])
-    assert result.realisations == 200
+    assert result.realisations == DRAWN
     assert result.exceeding == flag.sum()
     assert 0.0 <= result.r_squared <= 1.0
     assert sum(row.share for row in result.rows) == pytest.approx(1.0, abs=1e-9)
