@@ -170,26 +170,60 @@ def dependence_rows(study: Study) -> list[Row]:
     ]
 
 
-def quantiles(values: np.ndarray, levels: Sequence[float] = (0.05, 0.25, 0.5, 0.75, 0.95)) -> Row:
-    """Return quantiles by level, along the first axis, of what is finite.
+def quantiles(
+    values: np.ndarray, levels: Sequence[float] = (0.05, 0.25, 0.5, 0.75, 0.95), *, worst: float = np.inf
+) -> Row:
+    """Return quantiles by level, along the first axis, of all values.
 
     Parameters
     ----------
     values : ndarray, shape (n_sample,) or (n_sample, n), [any]
-        Sample.
+        Sample; infinite values sort as they stand.
     levels : sequence of float, [-]
         Levels.
+    worst : float, [any]
+        Infinity that a value that is not a number sorts as: such a realisation did not converge and
+        counts as exceeding, so plus where a limit says "not more than", minus where "not less than".
 
     Returns
     -------
     quantiles : dict of str to float or list of float
-        By level in figures, e.g. ``"0.05"``; null where nothing is finite.
+        By level in figures, e.g. ``"0.05"``, interpolated between neighbours; null where one of
+        these is infinite or there are no values.
     """
-    clean = np.where(np.isfinite(values), values, np.nan)
-    if np.isnan(clean).all():
-        return {f"{level:g}": None for level in levels}
-    found = np.nanquantile(clean, levels, axis=0)
-    return {f"{level:g}": row.tolist() for level, row in zip(levels, found, strict=True)}
+    order = np.sort(np.where(np.isnan(values), worst, values), axis=0)
+    found: Row = {}
+    for level in levels:
+        found[f"{level:g}"] = _at_level(order, level) if len(order) else None
+    return found
+
+
+def _at_level(order: np.ndarray, level: float) -> object:
+    """Return one quantile of sorted values."""
+    place = level * (len(order) - 1)
+    below = int(place)
+    low, high = order[below], order[min(below + (place > below), len(order) - 1)]
+    known = np.isfinite(low) & np.isfinite(high)
+    step = np.subtract(high, low, out=np.zeros_like(low), where=known)
+    return numbers(np.where(known, low + (place - below) * step, np.nan))
+
+
+def numbers(values: np.ndarray) -> object:
+    """Return an array for JSON, which knows neither infinity nor not-a-number.
+
+    Parameters
+    ----------
+    values : ndarray, shape () or (n,), [any]
+        Numbers.
+
+    Returns
+    -------
+    numbers : float, None or list of float and None, [any]
+        None for what is not finite.
+    """
+    if values.ndim == 0:
+        return finite(float(values))
+    return [finite(value) for value in values.tolist()]
 
 
 def finite(value: float | None) -> float | None:

@@ -6,17 +6,19 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
-from probsoil.assessment.description import Row, finite, quantiles
+from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study
 from probsoil.ground.site_model import SiteModel
 from probsoil.probability import Exceedance, exceedance, exceedance_curve
+from probsoil.scenario import remarks
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
 CONFIDENCE = 0.95
 _UNITS = {"settlement": "m", "time_to_consolidation": "years"}
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
+_WORST = {"not more than": np.inf, "not less than": -np.inf}  # what is not a number counts as exceeding
 _NOTICEABLE = 1e-4  # share of a distribution that is cut off
 
 
@@ -85,7 +87,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
         rows.append(
             _limit_row(limit, found)
             | {
-                "summary": _summary(values),
+                "summary": _summary(values, worst=_WORST[limit.sense]),
                 "curve": {
                     "step": curve.step,
                     "threshold": curve.threshold.tolist(),
@@ -140,12 +142,16 @@ def _time(limit: Limit) -> tuple[Row, str]:
     return {"least_over_stages": True}, "least over the ends of the stages"
 
 
-def _summary(values: FloatArray) -> Row:
-    clean = values[np.isfinite(values)]
-    if clean.size == 0:
-        return {"mean": None, "sd": None, "quantiles": quantiles(values)}
-    spread = float(clean.std(ddof=1)) if clean.size > 1 else 0.0
-    return {"mean": float(clean.mean()), "sd": spread, "quantiles": quantiles(values)}
+def _summary(values: FloatArray, *, worst: float) -> Row:
+    mean, spread = _mean(values), None
+    if mean is not None:
+        spread = float(values.std(ddof=1)) if values.size > 1 else 0.0
+    return {"mean": mean, "sd": spread, "quantiles": quantiles(values, worst=worst)}
+
+
+def _mean(values: FloatArray) -> float | None:
+    """Return the mean; there is none where one value is infinite or not a number."""
+    return float(values.mean()) if values.size and np.isfinite(values).all() else None
 
 
 def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
@@ -163,15 +169,16 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
     record : dict
         Ready for JSON.
     """
-    good = sample.settlement[np.isfinite(sample.settlement).all(axis=1)]
+    worst = _WORST["not more than"]
+    settlement = sample.settlement.astype(np.float64)
     return {
         "station": "centreline",
         "times": site.times.tolist(),
-        "mean": good.mean(axis=0, dtype=np.float64).tolist() if good.size else None,
-        "quantiles": quantiles(good.astype(np.float64)),
-        "realisations": len(good),
+        "mean": numbers(settlement.mean(axis=0)),
+        "quantiles": quantiles(settlement, worst=worst),
+        "realisations": len(settlement),
         "stages": [{"name": stage.name, "start": stage.start, "end": stage.end} for stage in site.stages],
-        "final": {key: value for key, value in _summary(sample.final).items() if key != "sd"},
+        "final": {key: value for key, value in _summary(sample.final, worst=worst).items() if key != "sd"},
     }
 
 
@@ -199,8 +206,8 @@ def slip_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
                 "stage": ends.get(float(time), f"at {time:.3g} years"),
                 "time": float(time),
                 "fill_height": round(site.fill_height(float(time)), 9),
-                "mean": finite(float(np.nanmean(np.where(np.isfinite(factor), factor, np.nan)))),
-                "quantiles": quantiles(factor),
+                "mean": _mean(factor),
+                "quantiles": quantiles(factor, worst=_WORST["not less than"]),
                 "probability_below_one": float((~(factor >= 1.0)).mean()),
             }
         )
@@ -229,6 +236,7 @@ def driver_rows(limits: Sequence[Limit], found: Sequence[Drivers]) -> tuple[list
         quality.append(
             {
                 "limit": limit.name,
+                "ranked_by": result.ranked_by,
                 "exceeding": result.exceeding,
                 "r_squared": finite(result.r_squared),
                 "note": result.note,
@@ -243,8 +251,10 @@ def _driver_row(driver: Driver) -> Row:
         "rank": driver.rank,
         "spread_elasticity": finite(driver.spread_elasticity),
         "spread_interval": [finite(value) for value in driver.spread_interval],
+        "spread_clear": driver.spread_clear,
         "mean_elasticity": finite(driver.mean_elasticity),
         "mean_interval": [finite(value) for value in driver.mean_interval],
+        "mean_clear": driver.mean_clear,
         "share": finite(driver.share),
         "share_interval": [finite(value) for value in driver.share_interval],
         "direction": driver.direction,
@@ -295,6 +305,7 @@ def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationErro
     rows: list[Row] = [
         {"code": code, "message": message, "share": share} for code, message, share in flags if share > 0.0
     ]
+    rows += [{"code": "remark", "message": text, "share": None} for text in remarks(study.scenario)]
     for summary in study.space.summary():
         if summary.cut_share > _NOTICEABLE:
             message = (

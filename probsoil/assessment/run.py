@@ -8,6 +8,7 @@ from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import Executor
 from dataclasses import dataclass
 from datetime import UTC, datetime
+from importlib import metadata
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -211,6 +212,8 @@ def _identity(study: Study) -> str:
         realisations=study.points.n,
         draws=study.points.name,
         version=__version__,
+        numpy=metadata.version("numpy"),
+        numba=metadata.version("numba"),
     )
 
 

@@ -20,6 +20,7 @@ _GROUND = (
     "Water flows vertically; ground level and granular layers drain freely; strains may be large "
     "(finite strain), and permeability falls as the clay compresses.",
     "Each parameter is one representative value per layer, the same over the whole layer in a realisation.",
+    "The effective stress in situ is nowhere taken below 1 kPa.",
 )
 _EMBANKMENT = (
     "Stress from the embankment is that of a trapezoidal strip load on a homogeneous elastic half-space; "
@@ -32,7 +33,10 @@ _EMBANKMENT = (
     "circles leave at or beyond the toe and never go below the last layer.",
 )
 _AREA = ("The load is taken as wide compared with the depth of the clay: every depth feels it in full.",)
-_SUBMERGENCE = ("Fill that settles below the water table loses the weight of the water it displaces.",)
+_SUBMERGENCE = (
+    "The water table keeps its level: what sinks below it, first the ground above it and then the fill, loses "
+    "the weight of the water it displaces.",
+)
 
 
 def assumptions(site: SiteModel) -> tuple[str, ...]:

@@ -11,7 +11,7 @@ def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario fi
     from probsoil.cli._output import answer_console
     from probsoil.cli._understood import print_scenario
     from probsoil.parameters import parameter_space
-    from probsoil.scenario import read_scenario
+    from probsoil.scenario import read_scenario, remarks
 
     scenario = read_scenario(file)
     pairs = [(*rule.between, rule.rank_correlation) for rule in scenario.dependence]
@@ -19,3 +19,5 @@ def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario fi
     console = answer_console()
     console.print(f"{file}: no mistakes found", soft_wrap=True)
     print_scenario(console, scenario, space)
+    for remark in remarks(scenario):
+        console.print(f"Look again: {remark}")

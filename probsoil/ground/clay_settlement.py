@@ -10,6 +10,7 @@ from probsoil.ground.consolidation import (
     Conductivity,
     ConsolidationResult,
     LoadHistory,
+    Submergence,
     conductivity_from_cv,
     conductivity_from_permeability,
     consolidate,
@@ -40,13 +41,11 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     """
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
+    submergence = Submergence(spread=load.spread[:, clay], height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
         stress=load.stress[:, :, clay],
-        spread=load.spread[:, clay],
-        height=load.height,
-        water_depth=load.water_depth,
-        submergence=site.submergence,
+        submergence=submergence if site.submergence else None,
     )
     flow = _conductivity(site, values, state)
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)

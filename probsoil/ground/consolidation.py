@@ -70,6 +70,25 @@ class Conductivity:
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Submergence:
+    """What takes weight off again as the ground sinks below a water table that keeps its level.
+
+    Attributes
+    ----------
+    spread : ndarray, shape (n_sample, n_cell), [-]
+        Share of a change of weight at the surface that reaches the cell.
+    height : ndarray, shape (n_knot,), [m]
+        Height of fill at each knot of the load.
+    water_depth : ndarray, shape (n_sample,), [m]
+        Depth of the water table.
+    """
+
+    spread: FloatArray
+    height: FloatArray
+    water_depth: FloatArray
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class LoadHistory:
     """Vertical stress that the works add, piecewise linear in time.
 
@@ -79,22 +98,13 @@ class LoadHistory:
         Rising; the first is the start of the computation.
     stress : ndarray, shape (n_knot, n_sample, n_cell), [kPa]
         Added total vertical stress at each knot.
-    spread : ndarray, shape (n_sample, n_cell), [-]
-        Share of a change of weight at the surface that reaches the cell, for submergence.
-    height : ndarray, shape (n_knot,), [m]
-        Height of fill at each knot, for submergence.
-    water_depth : ndarray, shape (n_sample,), [m]
-        Depth of the water table.
-    submergence : bool
-        Whether what sinks below the water table loses the weight of water.
+    submergence : Submergence or None
+        Loss of weight below the water table; None for none.
     """
 
     time: FloatArray
     stress: FloatArray
-    spread: FloatArray
-    height: FloatArray
-    water_depth: FloatArray
-    submergence: bool
+    submergence: Submergence | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -176,8 +186,10 @@ def conductivity_from_cv(coefficient: FloatArray, lam: FloatArray, void_ratio: F
     Notes
     -----
     :math:`k = c_v \gamma_w m_v` with :math:`m_v = \lambda / [(1 + e) \max(\sigma', \sigma'_p)]`:
-    below the preconsolidation stress the permeability is that on reaching it, so recompression is
-    faster by :math:`\lambda/\kappa` as the compressibility is smaller.
+    below the preconsolidation stress the permeability is that on reaching it. The coefficient in
+    recompression is then :math:`c_v (\lambda/\kappa)(\sigma'/\sigma'_p)`: larger than cv close to the
+    preconsolidation stress, and smaller than it where the overconsolidation ratio exceeds
+    :math:`\lambda/\kappa`.
     """
     return np.asarray(np.log(coefficient * lam * (1.0 + void_ratio)), dtype=np.float64)
 
@@ -261,13 +273,7 @@ def consolidate(
             joined=cells.joined,
             drained=cells.drained,
         ),
-        Loading(
-            stress=np.stack([lanes.pack(stress) for stress in load.stress], axis=1),
-            spread=lanes.pack(load.spread),
-            height=load.height,
-            water_depth=lanes.pack(load.water_depth[:, None])[:, 0, :],
-            water_weight=WATER_UNIT_WEIGHT if load.submergence else 0.0,
-        ),
+        _loading(lanes, load),
         Schedule(step=np.diff(times), knot=knot, weight=weight, record=slot),
         settlement,
         recorded,
@@ -286,6 +292,27 @@ def consolidate(
         yield_stress=kept[:, :, 1],
         converged=good,
         voids_closed=closed,
+    )
+
+
+def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
+    stress = np.stack([lanes.pack(one) for one in load.stress], axis=1)
+    wet = load.submergence
+    if wet is None:
+        dry = np.zeros((lanes.n_block, load.stress.shape[2], LANES))
+        return Loading(
+            stress=stress,
+            spread=dry,
+            height=np.zeros(load.time.size),
+            water_depth=np.zeros((lanes.n_block, LANES)),
+            water_weight=0.0,
+        )
+    return Loading(
+        stress=stress,
+        spread=lanes.pack(wet.spread),
+        height=wet.height,
+        water_depth=lanes.pack(wet.water_depth[:, None])[:, 0, :],
+        water_weight=WATER_UNIT_WEIGHT,
     )
 
 

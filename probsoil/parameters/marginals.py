@@ -53,15 +53,19 @@ class UncertainQuantity(Protocol):
 
     @property
     def low(self) -> float:
-        """Lowest value physically possible."""
+        """Lowest value physically possible, [`unit`]."""
 
     @property
     def high(self) -> float:
-        """Highest value physically possible."""
+        """Highest value physically possible, [`unit`]."""
 
     @property
     def averaging_length(self) -> float | None:
         """Length over which the representative value is an average [m]."""
+
+    @property
+    def in_series(self) -> bool:
+        """Whether that average is harmonic."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -170,7 +174,7 @@ def marginal(quantity: UncertainQuantity) -> Marginal:
     and lognormal parameters are in closed form. Otherwise values follow the law conditioned on the
     bounds; its mean and standard deviation are then sums over 4001 nodes of z.
     """
-    law = representative_law(quantity.distribution, quantity.averaging_length)
+    law = representative_law(quantity.distribution, quantity.averaging_length, in_series=quantity.in_series)
     own = _own_bounds(law, quantity.distribution)
     start = max(own.start, law.score(quantity.low))
     end = min(own.end, law.score(quantity.high))
@@ -202,7 +206,9 @@ def marginal(quantity: UncertainQuantity) -> Marginal:
     )
 
 
-def representative_law(distribution: Distribution, averaging_length: float | None) -> Law:
+def representative_law(
+    distribution: Distribution, averaging_length: float | None, *, in_series: bool = False
+) -> Law:
     r"""Law of the average of a property over its layer, before any physical bound.
 
     Parameters
@@ -213,6 +219,8 @@ def representative_law(distribution: Distribution, averaging_length: float | Non
     averaging_length : float or None, [m]
         Length over which the representative value is an average; None for none, which leaves the
         variability from point to point whole.
+    in_series : bool
+        Whether the average is harmonic, as for permeability across a layer, instead of arithmetic.
 
     Returns
     -------
@@ -230,18 +238,23 @@ def representative_law(distribution: Distribution, averaging_length: float | Non
     :math:`\Gamma^2` of the layer: normal, :math:`s^2 = s_k^2 + \Gamma^2 (V \mu)^2`; lognormal, the
     variances of the logarithm add, :math:`s^2 = s_k^2 + \Gamma^2 \ln(1 + V^2)`, and the mean is
     kept (an arithmetic average over the layer has the mean of its points), so that the median falls
-    by the factor :math:`\exp(-\Gamma^2 \ln(1 + V^2) / 2)`.
+    by the factor :math:`\exp(-\Gamma^2 \ln(1 + V^2) / 2)`. A harmonic average of a lognormal field
+    is smaller than the arithmetic one by :math:`(1 + V^2)^{-(1 - \Gamma^2)}`, in the limit of a
+    thick layer by :math:`1/(1 + V^2)`; the same factor is used for a normal field.
     """
     match distribution:
         case Normal():
             point_sd = (distribution.inherent_cov or 0.0) * distribution.mean
             extra = _averaged(point_sd**2, distribution.vertical_scale, averaging_length)
-            return NormalLaw(distribution.mean, float(np.sqrt(distribution.sd**2 + extra)))
+            factor = _harmonic_factor(distribution, averaging_length) if in_series else 1.0
+            sd = float(np.sqrt(distribution.sd**2 + extra))
+            return NormalLaw(factor * distribution.mean, factor * sd)
         case Lognormal():
             point = float(np.log1p((distribution.inherent_cov or 0.0) ** 2))
             extra = _averaged(point, distribution.vertical_scale, averaging_length)
             log_sd = float(np.sqrt(distribution.log_sd**2 + extra))
-            return LognormalLaw(distribution.median * float(np.exp(-0.5 * extra)), log_sd)
+            factor = _harmonic_factor(distribution, averaging_length) if in_series else 1.0
+            return LognormalLaw(factor * distribution.median * float(np.exp(-0.5 * extra)), log_sd)
         case Uniform():
             return UniformLaw(distribution.low, distribution.high)
         case Triangular():
@@ -252,6 +265,12 @@ def representative_law(distribution: Distribution, averaging_length: float | Non
             return BetaLaw(distribution.alpha, distribution.beta, distribution.low, distribution.high)
         case _:
             raise ParameterError(f"a distribution of kind {distribution.kind!r} has no uncertain value")
+
+
+def _harmonic_factor(distribution: Normal | Lognormal, length: float | None) -> float:
+    """Harmonic over arithmetic average of the field."""
+    point = float(np.log1p((distribution.inherent_cov or 0.0) ** 2))
+    return float(np.exp(_averaged(point, distribution.vertical_scale, length) - point))
 
 
 def _averaged(point_variance: float, scale: float | None, length: float | None) -> float:

@@ -22,6 +22,7 @@ from probsoil.scenario.models import Dependence, ModelError, Scenario, Site
 from probsoil.scenario.quantities import Quantity
 from probsoil.scenario.reader import parse_scenario, read_scenario
 from probsoil.scenario.reference import reference_table
+from probsoil.scenario.remarks import remarks
 from probsoil.scenario.schema import scenario_schema
 from probsoil.scenario.starters import STARTERS, starter_text
 
@@ -55,6 +56,7 @@ __all__ = [
     "parse_scenario",
     "read_scenario",
     "reference_table",
+    "remarks",
     "scenario_schema",
     "starter_text",
 ]

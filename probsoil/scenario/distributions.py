@@ -34,7 +34,7 @@ class _Described(ABC):
     @property
     @abstractmethod
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
 
     def probability_outside(self, low: float, high: float) -> float:
         """Return the probability beyond a range, point-to-point variability left out.
@@ -88,7 +88,7 @@ class Constant(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return self.value
 
     def _outside(self, low: float, high: float) -> float:
@@ -123,7 +123,7 @@ class Normal(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return self.mean
 
     def _outside(self, low: float, high: float) -> float:
@@ -161,7 +161,7 @@ class Lognormal(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return self.median * math.exp(0.5 * self.log_sd**2)
 
     @property
@@ -196,7 +196,7 @@ class Uniform(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return 0.5 * (self.low + self.high)
 
     def _outside(self, low: float, high: float) -> float:
@@ -224,7 +224,7 @@ class Triangular(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return (self.low + self.mode + self.high) / 3.0
 
     def _outside(self, low: float, high: float) -> float:
@@ -237,8 +237,8 @@ class Triangular(_Described):
         if x >= self.high:
             return 1.0
         if x < self.mode:
-            return (x - self.low) ** 2 / (width * (self.mode - self.low))
-        return 1.0 - (self.high - x) ** 2 / (width * (self.high - self.mode))
+            return (x - self.low) / width * ((x - self.low) / (self.mode - self.low))
+        return 1.0 - (self.high - x) / width * ((self.high - x) / (self.high - self.mode))
 
     def _words(self, unit: str) -> str:
         ends = f"{_figure(self.low)} to {_with_unit(self.high, unit)}"
@@ -265,7 +265,7 @@ class TruncatedNormal(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean after cutting, in the base unit."""
+        """Mean after cutting, [base unit]."""
         a, b = (self.low - self.mean) / self.sd, (self.high - self.mean) / self.sd
         density_drop = (math.exp(-0.5 * a * a) - math.exp(-0.5 * b * b)) / math.sqrt(2.0 * math.pi)
         return self.mean + self.sd * density_drop / self.share_kept
@@ -313,7 +313,7 @@ class Beta(_Described):
 
     @property
     def expectation(self) -> float:
-        """Mean, in the base unit."""
+        """Mean, [base unit]."""
         return self.low + (self.high - self.low) * self.alpha / (self.alpha + self.beta)
 
     def _outside(self, low: float, high: float) -> float:

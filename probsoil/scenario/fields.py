@@ -162,10 +162,14 @@ class Uncertain(Range):
         Last part of the parameter's address; the key itself if empty.
     spatial : bool
         Whether variability from point to point makes sense.
+    in_series : bool
+        Whether the parts of a layer act one after another, as those that water passes through in
+        turn: their average is then harmonic.
     """
 
     symbol: str = ""
     spatial: bool = False
+    in_series: bool = False
 
     def read(self, raw: object) -> Distribution:
         """Return the distribution as written, in the base unit.

@@ -163,6 +163,7 @@ class Permeability(Table):
             source="common practice",
             meaning="coefficient of consolidation on the virgin compression line",
             spatial=True,
+            in_series=True,
         ),
     ] = None
     k: Annotated[
@@ -174,6 +175,7 @@ class Permeability(Table):
             source="common practice",
             meaning="vertical permeability at the void ratio in situ; needs ck",
             spatial=True,
+            in_series=True,
         ),
     ] = None
     ck: Annotated[

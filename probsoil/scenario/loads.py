@@ -12,7 +12,8 @@ _FILL_WEIGHT = Uncertain(
     kind="unit weight", low=0.2, high=30.0, source="common practice", meaning="bulk unit weight of the fill"
 )
 Submergence = Annotated[
-    bool, Field(description="whether fill that settles below the water table loses weight by buoyancy")
+    bool,
+    Field(description="whether ground and fill that sink below the water table lose the weight of water"),
 ]
 
 
@@ -34,7 +35,7 @@ class EmbankmentLoad(Table):
     fill_cohesion : Distribution, [kPa]
         Cohesion of the fill.
     submergence : bool
-        Whether settled fill below the water table loses weight.
+        Whether what sinks below the water table loses the weight of water.
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
@@ -85,7 +86,7 @@ class AreaLoad(Table):
     fill_unit_weight : Distribution or None, [kN/m3]
         Bulk unit weight of the fill; needed when a stage gives a height.
     submergence : bool
-        Whether settled fill below the water table loses weight.
+        Whether what sinks below the water table loses the weight of water.
     """
 
     shape: Literal["area"] = Field(description="kind of load")

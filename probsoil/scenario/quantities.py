@@ -32,6 +32,8 @@ class Quantity:
         What the number is.
     averaging_length : float or None, [m]
         Mean thickness of the layer over which point-to-point variability averages out.
+    in_series : bool
+        Whether that average is harmonic (water passes through the parts of a layer in turn).
     """
 
     address: str
@@ -41,6 +43,7 @@ class Quantity:
     high: float
     meaning: str
     averaging_length: float | None = None
+    in_series: bool = False
 
     @property
     def is_uncertain(self) -> bool:
@@ -173,4 +176,5 @@ def _of_table(name: str, table: object, averaging_length: float | None) -> Itera
                 high=field.high,
                 meaning=field.meaning,
                 averaging_length=averaging_length,
+                in_series=field.in_series,
             )

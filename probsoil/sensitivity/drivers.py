@@ -1,12 +1,12 @@
 """Which parameters decide whether a limit is exceeded, ranked where they can be told apart."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
-from typing import TYPE_CHECKING, Literal, TypeAlias, cast
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Literal, TypeAlias
 
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ShapeError
 from probsoil.sensitivity.accumulate import DriverSums
 from probsoil.sensitivity.elasticities import Elasticity, elasticities
@@ -16,6 +16,8 @@ if TYPE_CHECKING:
     import pandas as pd
 
 Direction: TypeAlias = Literal["raises", "lowers", "unclear"]
+Measure: TypeAlias = Literal["spread", "mean"]
+MIDDLING = (0.3, 0.7)  # probabilities from the one to the other: spread says little, the mean ranks
 LEAST_CASES = 50  # exceedances (and realisations that meet the limit) below which nothing is ranked
 GOOD_CASES = 100
 GOOD_FIT = 0.9
@@ -30,11 +32,16 @@ class Driver:
     parameter : str
         Address of the parameter.
     rank : int or None, [-]
-        Place by spread elasticity; None where it cannot be told from zero or too few exceed.
+        Place by the measure that `Drivers.ranked_by` names; None where the parameter is not
+        distinguishable by it, where more spread makes the rarer side rarer, or where too few
+        realisations lie on one side.
     spread_elasticity, mean_elasticity : float, [-]
         See `probsoil.sensitivity.elasticities`; not a number where nothing exceeds or everything does.
     spread_interval, mean_interval : tuple of float, [-]
         Limits of each, for this parameter alone.
+    spread_clear, mean_clear : bool or None
+        Whether each is distinguishable from zero with all parameters judged together; None where too
+        few realisations lie on one side to judge.
     share : float, [-]
         Share of the variance of the quantity's linear part.
     share_interval : tuple of float, [-]
@@ -47,8 +54,10 @@ class Driver:
     rank: int | None
     spread_elasticity: float
     spread_interval: tuple[float, float]
+    spread_clear: bool | None
     mean_elasticity: float
     mean_interval: tuple[float, float]
+    mean_clear: bool | None
     share: float
     share_interval: tuple[float, float]
     direction: Direction
@@ -62,6 +71,8 @@ class Drivers:
     ----------
     rows : tuple of Driver
         One per parameter: the ranked first, then the others by falling share.
+    ranked_by : {"spread", "mean"}
+        Elasticity that the ranks go by.
     realisations, exceeding : int, [-]
         Realisations behind the result and those that exceed.
     fitted : int, [-]
@@ -75,6 +86,7 @@ class Drivers:
     """
 
     rows: tuple[Driver, ...]
+    ranked_by: Measure
     realisations: int
     exceeding: int
     fitted: int
@@ -100,7 +112,8 @@ class Drivers:
                 record[name] = getattr(row, name)
                 low, high = getattr(row, f"{name.removesuffix('_elasticity')}_interval")
                 record |= {f"{name}_low": low, f"{name}_high": high}
-            records.append(record | {"direction": row.direction})
+            clear = {"spread_clear": row.spread_clear, "mean_clear": row.mean_clear}
+            records.append(record | clear | {"direction": row.direction})
         return pd.DataFrame(records).astype({"rank": "Int64"}) if records else pd.DataFrame()
 
 
@@ -132,8 +145,13 @@ def drivers(
 
     Notes
     -----
-    A parameter is ranked when its spread elasticity is positive and its interval excludes zero with all d
-    intervals holding at once (Bonferroni), and at least 50 realisations lie on either side of the limit.
+    More spread makes the rarer side of a limit less rare, so parameters are ranked by the elasticity of
+    the probability of the rarer side to spread: that of P up to one half, and
+    :math:`-P/(1-P)` times it, the elasticity of 1 - P, beyond. A parameter is ranked where it is positive
+    and its interval excludes zero with all d intervals holding at once (Bonferroni). From P = 0.3 to 0.7
+    neither side is rare and spread says little: there parameters are ranked by the size of the mean
+    elasticity, where its interval excludes zero likewise. Nothing is ranked unless at least 50
+    realisations lie on either side of the limit.
     """
     dimension = sums.dimension
     if len(names) != dimension or correlation.shape != (dimension, dimension):
@@ -144,11 +162,20 @@ def drivers(
     spread, mean = elasticities(sums)
     part = shares(sums, correlation, confidence)
     met, exceeding = (int(number) for number in sums.count)
-    rankable = min(met, exceeding) >= LEAST_CASES
-    ranks = _ranks(spread, confidence) if rankable else cast("list[int | None]", [None] * dimension)
-    rows = _rows(names, ranks, (spread, mean), part, confidence)
+    ranked_by = _measure(met, exceeding)
+    rows = _rows(names, (spread, mean), part, confidence)
+    if min(met, exceeding) >= LEAST_CASES:
+        signs = _sign(spread, confidence), _sign(mean, confidence)
+        rarer = 1 if exceeding <= met else -1  # more spread lowers P where exceeding is the rule
+        by_spread, by_mean = _ranks(spread, signs[0] == rarer), _ranks(mean, signs[1] != 0)
+        ranks = by_mean if ranked_by == "mean" else by_spread
+        rows = [
+            replace(row, rank=rank, spread_clear=bool(first), mean_clear=bool(second))
+            for row, rank, first, second in zip(rows, ranks, *signs, strict=True)
+        ]
     return Drivers(
         rows=tuple(sorted(rows, key=_order)),
+        ranked_by=ranked_by,
         realisations=met + exceeding,
         exceeding=exceeding,
         fitted=part.fitted,
@@ -158,35 +185,43 @@ def drivers(
     )
 
 
-def _ranks(spread: Elasticity, confidence: float) -> list[int | None]:
-    low, _ = spread.interval(confidence, together=len(spread.value))
-    ranks: list[int | None] = [None] * len(low)
-    place = 0
-    for index in np.argsort(-spread.value, kind="stable"):
-        if low[index] > 0.0:
-            place += 1
-            ranks[index] = place
+def _measure(met: int, exceeding: int) -> Measure:
+    low, high = MIDDLING
+    return "mean" if exceeding and low <= exceeding / (met + exceeding) <= high else "spread"
+
+
+def _sign(measure: Elasticity, confidence: float) -> IntArray:
+    """Sign of each elasticity; 0 where its interval, all holding at once, includes zero."""
+    low, high = measure.interval(confidence, together=len(measure.value))
+    return (low > 0.0).astype(np.int64) - (high < 0.0)
+
+
+def _ranks(measure: Elasticity, ranked: BoolArray) -> list[int | None]:
+    """Places by size of those that are ranked."""
+    ranks: list[int | None] = [None] * len(ranked)
+    order = [i for i in np.argsort(-np.abs(measure.value), kind="stable") if ranked[i]]
+    for place, index in enumerate(order, start=1):
+        ranks[index] = place
     return ranks
 
 
 def _rows(
-    names: Sequence[str],
-    ranks: list[int | None],
-    measures: tuple[Elasticity, Elasticity],
-    part: Shares,
-    confidence: float,
+    names: Sequence[str], measures: tuple[Elasticity, Elasticity], part: Shares, confidence: float
 ) -> list[Driver]:
+    """Drivers before anything is ranked."""
     spread, mean = measures
     spread_low, spread_high = spread.interval(confidence)
     mean_low, mean_high = mean.interval(confidence)
     return [
         Driver(
             parameter=name,
-            rank=ranks[i],
+            rank=None,
             spread_elasticity=float(spread.value[i]),
             spread_interval=(float(spread_low[i]), float(spread_high[i])),
+            spread_clear=None,
             mean_elasticity=float(mean.value[i]),
             mean_interval=(float(mean_low[i]), float(mean_high[i])),
+            mean_clear=None,
             share=float(part.share[i]),
             share_interval=(float(part.low[i]), float(part.high[i])),
             direction=_direction(float(mean_low[i]), float(mean_high[i])),

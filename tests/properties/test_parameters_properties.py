@@ -16,6 +16,7 @@ share = st.floats(0.0, 1.0)
 
 class Given:
     averaging_length, unit, meaning = 3.0, "-", "property"
+    in_series = False
 
     def __init__(self, distribution, low=-np.inf, high=np.inf, address="clay.property"):
         self.distribution, self.low, self.high, self.address = distribution, low, high, address

@@ -61,4 +61,6 @@ def test_drivers_are_sound_for_any_cut_into_chunks(d, seed, threshold, cut):
         assert 0.0 <= row.share_interval[0] <= row.share + 1e-12
         assert row.share - 1e-12 <= row.share_interval[1] <= 1.0
         if row.rank is not None:
-            assert row.spread_interval[0] > 0.0
+            low, high = row.mean_interval if result.ranked_by == "mean" else row.spread_interval
+            assert low * high > 0.0
+            assert result.ranked_by == "mean" or (low > 0.0) == (2 * result.exceeding <= DRAWN)

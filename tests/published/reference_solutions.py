@@ -169,8 +169,6 @@ def loaded(column, flow, added, *, end, wanted, grid=1) -> tuple[np.ndarray, Con
     history = LoadHistory(
         time=np.array(knots),
         stress=stress,
-        spread=np.ones((1, column.n_cell)),
-        water_depth=np.array([np.inf]),
     )
     times = time_axis([(0.0, min(end, horizon))], wanted, horizon, refine=grid)
     result = consolidate(column.state, flow, column.cells, history, times=times, record=wanted)

@@ -22,6 +22,7 @@ class Given:
     low: float = 0.0
     high: float = np.inf
     averaging_length: float | None = None
+    in_series: bool = False
     unit: str = "-"
     meaning: str = "property"
 

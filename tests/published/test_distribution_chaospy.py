@@ -17,6 +17,7 @@ class Given:
     low: float = -np.inf
     high: float = np.inf
     averaging_length: float | None = None
+    in_series: bool = False
     address: str = "clay.property"
     unit: str = "-"
     meaning: str = "property"

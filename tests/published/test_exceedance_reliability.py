@@ -43,6 +43,7 @@ class Given:
     """A quantity without physical bounds."""
 
     low, high, averaging_length, unit, meaning = -np.inf, np.inf, None, "-", "quantity"
+    in_series = False
 
     def __init__(self, address, distribution):
         self.address, self.distribution = address, distribution

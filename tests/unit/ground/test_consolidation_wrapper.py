@@ -82,9 +82,7 @@ def test_load_is_linear_between_knots():
     plain = run(times=times)
     knots = times[[0, 5, 12, 20]]
     stress = 60.0 * knots[:, None, None] * np.ones((1, 24))
-    history = LoadHistory(
-        time=knots, stress=stress, spread=np.ones(state.stress.shape), water_depth=np.array([np.inf])
-    )
+    history = LoadHistory(time=knots, stress=stress)
     assert run(times=times, load=history).settlement == pytest.approx(plain.settlement, rel=1e-9)
 
 

@@ -189,8 +189,6 @@ def ramp(state, added, *, end=1.0, horizon=1.0):
     return LoadHistory(
         time=time,
         stress=np.stack([min(t / end, 1.0) * np.broadcast_to(added, state.stress.shape) for t in time]),
-        spread=np.ones(state.stress.shape),
-        water_depth=np.array([np.inf]),
     )
 
 
@@ -239,8 +237,6 @@ def test_settlement_is_the_sum_over_cells(flow):
     load = LoadHistory(
         time=np.array([0.0, 0.1, 0.5, 0.6, 3.0]),
         stress=np.array([0.0, 80.0, 80.0, 20.0, 20.0])[:, None, None] * np.ones((1, 24)),
-        spread=np.ones((1, 24)),
-        water_depth=np.array([np.inf]),
     )
     times = np.unique(np.concatenate([np.linspace(0.0, 3.0, 61), load.time]))
     record = times[[5, 20, -1]]

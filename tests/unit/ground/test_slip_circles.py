@@ -10,9 +10,9 @@ from probsoil.ground.slip_circles import N_ZONE, EmbankmentSection, circle_famil
 SECTIONS = {
     "at full height": EmbankmentSection(height=3.0, side_slope=2.0, base_width=30.0, full_height=3.0),
     "while rising": EmbankmentSection(height=1.2, side_slope=2.0, base_width=30.0, full_height=3.0),
-    "narrow, circles cross the far slope": EmbankmentSection(
-        height=2.5, side_slope=1.5, base_width=9.0, full_height=2.5
-    ),
+    "narrow": EmbankmentSection(height=2.5, side_slope=1.5, base_width=9.0, full_height=2.5),
+    # low enough for circles that pass under the crest and on below the far slope
+    "narrow, while rising": EmbankmentSection(height=0.8, side_slope=1.5, base_width=9.0, full_height=2.5),
     "vertical sides": EmbankmentSection(height=1.0, side_slope=0.0, base_width=12.0, full_height=1.0),
 }
 DEPTH = 7.0
@@ -89,6 +89,13 @@ def test_weights_and_moments_equal_a_brute_force_sum(name):
         assert family.driving[circle] == pytest.approx(driving, rel=1e-3, abs=1e-3 * section.height)
         # one point crosses ground level; elsewhere the sum is smooth, and nothing at the fill's surface
         assert family.fill_friction[circle] == pytest.approx(friction, rel=1e-3, abs=arc * greatest)
+
+
+def test_some_circles_pass_below_the_far_slope():
+    section = SECTIONS["narrow, while rising"]
+    family = family_of(section)
+    far = family.centre_x + np.sqrt(family.radius**2 - family.centre_y**2)
+    assert (far > section.base_width - section.slope_zone + 0.5).sum() > 20
 
 
 @pytest.mark.parametrize("name", SECTIONS)

@@ -32,6 +32,7 @@ class Given:
     low: float = -np.inf
     high: float = np.inf
     averaging_length: float | None = None
+    in_series: bool = False
     address: str = "clay.lambda"
     unit: str = "-"
     meaning: str = "compression index"

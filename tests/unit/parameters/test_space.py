@@ -18,6 +18,7 @@ class Given:
     low: float = -np.inf
     high: float = np.inf
     averaging_length: float | None = None
+    in_series: bool = False
     unit: str = "m"
     meaning: str = "a length"
 

@@ -4,6 +4,7 @@ from functools import reduce
 
 import numpy as np
 import pytest
+from scipy.stats import norm
 
 from probsoil.errors import ParameterError, ShapeError
 from probsoil.sensitivity import GROUPS, driver_sums, drivers, merge, shares
@@ -55,6 +56,76 @@ def test_ranking_directions_and_shares():
     assert result.realisations == result.fitted == 20_000
     assert result.r_squared > 0.98
     assert result.note is None
+    assert result.ranked_by == "spread"
+
+
+@pytest.mark.parametrize("probability", [0.99, 0.8, 0.5, 0.2, 0.01])
+def test_linear_limit_is_ranked_right_on_either_side_of_one_half(probability):
+    """q = z1 + 0.6 z2 + 0.1 z3 with an inert fourth, against the closed form (intervals of 4 s.e.).
+
+    With q = s N(0, 1), P = Phi(-beta) and h = phi(beta)/P the elasticities are h beta b^2/s^2 to the spread
+    and h b/s to the mean; by spread the third is about as strong as its standard error.
+    """
+    b = np.array([1.0, 0.6, 0.1, 0.0])
+    length = np.linalg.norm(b)
+    beta = -norm.ppf(probability)
+    hazard = norm.pdf(beta) / probability
+    z = np.random.default_rng(11).standard_normal((100_000, 4))
+    quantity = z @ b
+    sums = driver_sums(z, np.eye(4), quantity, quantity > beta * length)
+    result = drivers(sums, np.eye(4), ("first", "second", "third", "inert"), confidence=0.99994)
+    rows = {row.parameter: row for row in result.rows}
+    by_mean = probability == 0.5
+    assert result.ranked_by == ("mean" if by_mean else "spread")
+    assert (rows["first"].rank, rows["second"].rank, rows["inert"].rank) == (1, 2, None)
+    assert rows["third"].rank in ({3} if by_mean else {3, None})
+    exact_spread, exact_mean = hazard * beta * (b / length) ** 2, hazard * b / length
+    for i, row in enumerate(rows[name] for name in ("first", "second", "third", "inert")):
+        for value, (low, high), exact in (
+            (row.spread_elasticity, row.spread_interval, exact_spread[i]),
+            (row.mean_elasticity, row.mean_interval, exact_mean[i]),
+        ):
+            assert low < exact < high
+            assert low < value < high
+    assert rows["first"].spread_clear is (probability != 0.5)
+    assert rows["first"].mean_clear
+    assert not rows["inert"].spread_clear
+    assert not rows["inert"].mean_clear
+
+
+def test_a_spread_that_makes_the_rare_side_rarer_is_clear_but_without_a_rank():
+    """Exceeded where z1 + 2.5 exp(-z2^2) is large: near z2 = 0, so more spread of z2 lowers the chance."""
+
+    def hump(z):
+        return z[:, 0] + 2.5 * np.exp(-(z[:, 2] ** 2))
+
+    rare = drivers(sums_of(chunks(40_000), 4.0, hump), CORRELATION, NAMES)
+    (row,) = (row for row in rare.rows if row.parameter == "clay.pop")
+    assert rare.exceeding < 0.1 * 40_000
+    assert row.spread_interval[1] < 0.0
+    assert (row.rank, row.spread_clear, row.mean_clear) == (None, True, False)
+    assert rare.rows[0].parameter == "clay.lambda"
+    # seen from the other side of the same limit the same parameters decide
+    often = drivers(sums_of(chunks(40_000), -4.0, lambda z: -hump(z)), CORRELATION, NAMES)
+    assert often.exceeding == 40_000 - rare.exceeding
+    assert [row.rank for row in often.rows] == [row.rank for row in rare.rows]
+    assert often.rows[0].parameter == "clay.lambda"
+    (row,) = (row for row in often.rows if row.parameter == "clay.pop")
+    assert row.spread_interval[0] > 0.0
+    assert (row.rank, row.spread_clear) == (None, True)
+
+
+@pytest.mark.parametrize(
+    ("exceeding", "expected"),
+    [(299, "spread"), (300, "mean"), (500, "mean"), (700, "mean"), (701, "spread"), (0, "spread")],
+)
+def test_the_mean_ranks_from_three_to_seven_tenths(exceeding, expected):
+    z = np.random.default_rng(4).standard_normal((1000, 1))
+    flag = np.argsort(np.argsort(-z[:, 0])) < exceeding
+    result = drivers(driver_sums(z, np.eye(1), z[:, 0], flag), np.eye(1), ("only",))
+    assert result.exceeding == exceeding
+    assert result.ranked_by == expected
+    assert result.rows[0].rank == (1 if exceeding else None)
 
 
 def test_inert_parameters_lie_within_their_intervals_of_zero():
@@ -95,6 +166,7 @@ def test_few_exceedances_are_not_ranked_and_the_note_says_how_many_would_do():
     result = drivers(sums_of(chunks(2000), 5.2), CORRELATION, NAMES)
     assert 0 < result.exceeding < 50
     assert all(row.rank is None for row in result.rows)
+    assert all(row.spread_clear is None and row.mean_clear is None for row in result.rows)
     enough = float(f"{100 * 2000 / result.exceeding:.2g}")
     assert f"only {result.exceeding} of 2,000 realisations exceed the limit" in result.note
     assert f"about {enough:,.0f} realisations would do" in result.note
@@ -154,6 +226,7 @@ def test_table_has_a_row_per_parameter():
     assert len(frame) == 4
     assert frame["rank"].dtype == "Int64"
     assert (frame["spread_elasticity_low"] < frame["spread_elasticity"]).all()
+    assert frame.loc[frame["rank"].notna(), "spread_clear"].all()
     assert set(frame["direction"]) <= {"raises", "lowers", "unclear"}
 
 
