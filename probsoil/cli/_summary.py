@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from probsoil.cli._output import answer_console, print_table
+from probsoil.report.ranking import basis_text, none_ranked_text, ranked_by
 from probsoil.report.text import (
     chance_text,
     count_text,
@@ -69,7 +70,7 @@ def _print_limits(console: "Console", results: dict[str, Any]) -> None:
     )
 
 
-def _print_drivers(console: "Console", results: Mapping[str, Any]) -> None:
+def _print_drivers(console: "Console", results: dict[str, Any]) -> None:
     rows = []
     for limit in results["limits"]:
         drivers = [driver for driver in results["drivers"] if driver["limit"] == limit["name"]]
@@ -81,9 +82,21 @@ def _print_drivers(console: "Console", results: Mapping[str, Any]) -> None:
             ("limit", "rank", "parameter", "share of the spread", "a larger value"),
             rows,
         )
-    for quality in results["driver_quality"]:
-        if quality["note"]:
-            console.print(f"Drivers of {quality['limit']}: {quality['note']}")
+    notes = {quality["limit"]: quality["note"] for quality in results["driver_quality"]}
+    for limit in results["limits"]:
+        said = [_ranking(limit, results), notes.get(limit["name"])]
+        if any(said):
+            console.print(f"Drivers of {limit['name']}: {'; '.join(part for part in said if part)}")
+
+
+def _ranking(limit: dict[str, Any], results: dict[str, Any]) -> str | None:
+    """Say what the ranks go by; nothing where the note says why there are none."""
+    drivers = [driver for driver in results["drivers"] if driver["limit"] == limit["name"]]
+    measure = ranked_by(results, limit["name"])
+    if any(driver["rank"] for driver in drivers):
+        return basis_text(limit, measure)
+    judged = any(driver.get("spread_clear") is not None for driver in drivers)
+    return none_ranked_text(limit, measure, drivers) if judged else None
 
 
 def _foremost(drivers: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:

@@ -56,4 +56,5 @@ class Lanes:
             Without the padding.
         """
         first = np.moveaxis(values, -1, 1)
-        return np.ascontiguousarray(first.reshape(-1, *first.shape[2:])[: self.n_sample])
+        rows = first.reshape(self.n_block * LANES, *first.shape[2:])
+        return np.ascontiguousarray(rows[: self.n_sample])

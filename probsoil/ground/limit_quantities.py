@@ -93,23 +93,25 @@ def _checks(site: SiteModel, limit: SlipSafetyLimit) -> list[int]:
 
 
 def _time_to_degree(site: SiteModel, limit: ConsolidationTimeLimit, response: Response) -> FloatArray:
-    """Return when the degree is first reached after the last stage, infinite if never.
-
-    Between two computed times the degree is taken as linear in the logarithm of the time since
-    the last stage, along which it is smooth.
-    """
+    """Return when the degree is first reached after the last stage, infinite if never."""
     first = int(np.searchsorted(response.times, site.last_change))
-    since = response.times[first:] - site.last_change
-    degree = response.degree[:, first:]
+    times, degree = response.times[first:], response.degree[:, first:]
     reached = degree >= limit.degree
     index = np.where(reached.any(axis=1), reached.argmax(axis=1), -1)
-    rows = np.arange(index.size)
-    before = np.maximum(index - 1, 0)
-    low, high = degree[rows, before], degree[rows, index]
-    share = np.clip((limit.degree - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
-    start, end = since[before], since[index]
-    begun = np.where(start > 0.0, start, np.maximum(end, 1.0))  # a stand-in where there is no logarithm
-    logarithmic = begun * (np.maximum(end, begun) / begun) ** share
-    between = np.where(start > 0.0, logarithmic, share * end)
-    time = site.last_change + np.where(index == 0, 0.0, between)
+    rows, before = np.arange(index.size), np.maximum(index - 1, 0)
+    low, high = _straightened(degree[rows, before]), _straightened(degree[rows, index])
+    wanted = _straightened(np.array(limit.degree))
+    share = np.clip((wanted - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
+    time = times[before] + share * (times[index] - times[before])
     return np.asarray(np.where(index < 0, np.inf, time), dtype=np.float64)
+
+
+def _straightened(degree: FloatArray) -> FloatArray:
+    """Return the time factor that Terzaghi's theory gives a degree, nearly straight in time.
+
+    Its two usual forms, the parabola up to 60 % and the exponential tail beyond.
+    """
+    tail = -np.log(np.maximum(1.0 - degree, 1e-9))
+    start = 0.6
+    joined = np.pi / 4.0 * start**2 + (tail + np.log(1.0 - start)) * 4.0 / np.pi**2
+    return np.asarray(np.where(degree <= start, np.pi / 4.0 * degree**2, joined))

@@ -3,17 +3,18 @@
 from dataclasses import dataclass
 from typing import Any
 
+from probsoil.report.ranking import SHIFT
 from probsoil.report.text import (
     event_text,
     exceeding_word,
     list_text,
     number_text,
     pair_text,
+    quantile_text,
     quantity_text,
     step_decimals,
     threshold_text,
     trimmed_text,
-    value_text,
     with_unit,
 )
 
@@ -72,8 +73,9 @@ def slip(results: dict[str, Any]) -> Words:
         Title and description.
     """
     parts = [
-        f"{row['stage']}: median {number_text(row['quantiles']['0.5'])}, "
-        f"5 to 95 % {pair_text([row['quantiles']['0.05'], row['quantiles']['0.95']])}"
+        f"{row['stage']}: median {quantile_text(row['quantiles']['0.5'], '-')}, "
+        f"5 to 95 % {quantile_text(row['quantiles']['0.05'], '-')} to "
+        f"{quantile_text(row['quantiles']['0.95'], '-')}"
         for row in results["slip"]
     ]
     return Words(
@@ -82,7 +84,7 @@ def slip(results: dict[str, Any]) -> Words:
     )
 
 
-def drivers(limit: dict[str, Any], rows: list[dict[str, Any]]) -> Words:
+def drivers(limit: dict[str, Any], rows: list[dict[str, Any]], measure: str = "spread") -> Words:
     """Describe the bars of the drivers of one limit.
 
     Parameters
@@ -91,20 +93,30 @@ def drivers(limit: dict[str, Any], rows: list[dict[str, Any]]) -> Words:
         One entry of ``limits`` of the results.
     rows : list of dict
         The drivers the figure shows.
+    measure : str
+        ``spread`` or ``mean``: which elasticity it shows.
 
     Returns
     -------
     words : Words
         Title and description.
     """
-    parts = [
-        f"{row['parameter']} {number_text(row['spread_elasticity'])} "
-        f"({pair_text(row.get('spread_interval'))})"
-        for row in rows
-    ]
+    scale = 100.0 * SHIFT if measure == "mean" else 1.0
+    parts = []
+    for row in rows:
+        ends = [
+            None if end is None else scale * end for end in row.get(f"{measure}_interval") or (None, None)
+        ]
+        value = number_text(scale * row[f"{measure}_elasticity"])
+        parts.append(f"{row['parameter']} {value} ({pair_text(ends)})")
+    cause = (
+        "when the mean moves up by a tenth of its standard deviation"
+        if measure == "mean"
+        else "for 1 % more spread"
+    )
     return Words(
         title=f"What drives the chance that {event_text(limit)}",
-        description=f"Change of the chance in per cent for 1 % more spread: {list_text(parts)}.",
+        description=f"Change of the chance in per cent {cause}: {list_text(parts)}.",
     )
 
 
@@ -164,8 +176,5 @@ def curve(limit: dict[str, Any], chance: str) -> Words:
 
 def _at(data: dict[str, Any], index: int) -> str:
     quantiles = data["quantiles"]
-    ends = [quantiles["0.05"][index], quantiles["0.95"][index]]
-    return (
-        f"At {trimmed_text(data['times'][index])} years: median {value_text(quantiles['0.5'][index], 'm')}, "
-        f"5 to 95 % {pair_text(ends, 3)} m."
-    )
+    low, median, high = (quantile_text(quantiles[level][index], "m") for level in ("0.05", "0.5", "0.95"))
+    return f"At {trimmed_text(data['times'][index])} years: median {median}, 5 to 95 % {low} to {high}."

@@ -4,6 +4,7 @@ import io
 import warnings
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from probsoil.report import alttext
@@ -11,6 +12,7 @@ from probsoil.report.palette import LIGHT
 from probsoil.report.plot_bars import plot_drivers, plot_slip
 from probsoil.report.plot_ground import plot_ground
 from probsoil.report.plot_settlement import plot_settlement
+from probsoil.report.ranking import ranked_by
 from probsoil.report.svg import tidy_svg
 from probsoil.report.text import is_number
 
@@ -71,7 +73,9 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
         shown = shown_drivers(results, limit["name"])
         if shown:
             name = f"drivers-{number}"
-            drawn[name] = _render(name, alttext.drivers(limit, shown), plot_drivers, shown)
+            measure = ranked_by(results, limit["name"])
+            draw = partial(plot_drivers, measure=measure)
+            drawn[name] = _render(name, alttext.drivers(limit, shown, measure), draw, shown)
     return drawn
 
 
@@ -90,12 +94,13 @@ def shown_drivers(results: dict[str, Any], limit_name: str) -> list[dict[str, An
     rows : list of dict
         At most 12 entries of ``drivers``, ranked ones first.
     """
-    rows = [row for row in ordered_drivers(results, limit_name) if is_number(row.get("spread_elasticity"))]
+    key = f"{ranked_by(results, limit_name)}_elasticity"
+    rows = [row for row in ordered_drivers(results, limit_name) if is_number(row.get(key))]
     return rows[:_SHOWN_DRIVERS]
 
 
 def ordered_drivers(results: dict[str, Any], limit_name: str) -> list[dict[str, Any]]:
-    """Put the drivers of one limit in order: by rank, then the indistinguishable by the size of their number.
+    """Put the drivers of one limit in order: by rank, then those without one by the size of their number.
 
     Parameters
     ----------
@@ -110,10 +115,11 @@ def ordered_drivers(results: dict[str, Any], limit_name: str) -> list[dict[str, 
         Entries of ``drivers`` of that limit.
     """
     rows = [row for row in results.get("drivers") or [] if row["limit"] == limit_name]
+    key = f"{ranked_by(results, limit_name)}_elasticity"
 
     def place(row: dict[str, Any]) -> tuple[float, float]:
         rank = row.get("rank")
-        return (float("inf") if rank is None else float(rank), -abs(row.get("spread_elasticity") or 0.0))
+        return (float("inf") if rank is None else float(rank), -abs(row.get(key) or 0.0))
 
     return sorted(rows, key=place)
 

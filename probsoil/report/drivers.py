@@ -4,12 +4,28 @@ from typing import Any
 
 from probsoil.report import text
 from probsoil.report.drawing import ordered_drivers
+from probsoil.report.ranking import (
+    basis_text,
+    leader_text,
+    none_ranked_text,
+    ranked_by,
+    turned,
+    unranked_texts,
+)
 
 _LEADERS = 3
 _DIRECTIONS = {
     "raises": "a larger value raises the chance",
     "lowers": "a larger value lowers the chance",
     "unclear": "direction not clear",
+}
+
+
+_CAPTIONS = {
+    "spread": "Elasticity of the chance of exceeding to the spread of each parameter, with interval. "
+    "A bar to the left: more spread lowers that chance. Dashed outline: no rank.",
+    "mean": "Change of the chance of exceeding, in per cent of itself, when the mean of each parameter "
+    "moves up by a tenth of its standard deviation, with interval. Dashed outline: no rank.",
 }
 
 
@@ -36,31 +52,30 @@ def drivers_view(number: int, limit: dict[str, Any], results: dict[str, Any]) ->
     if not rows and not quality:
         return None
     ranked = [row for row in rows if row.get("rank") is not None]
+    measure = ranked_by(results, limit["name"])
+    basis = basis_text(limit, measure) if ranked else none_ranked_text(limit, measure, rows)
     return {
         "number": number,
         "name": limit["name"],
         "event": text.event_text(limit),
-        "leaders": [_leader(row) for row in ranked[:_LEADERS]],
-        "indistinguishable": text.list_text([row["parameter"] for row in rows if row.get("rank") is None]),
-        "any_ranked": bool(ranked),
-        "rows": [_row(row) for row in rows],
+        "basis": f"{basis[0].upper()}{basis[1:]}.",
+        "leaders": [_leader(row, limit, measure) for row in ranked[:_LEADERS]],
+        "unranked": unranked_texts(rows, measure),
+        "rows": [_row(row, measure) for row in rows],
         "quality": _quality(quality),
         "figure": f"drivers-{number}",
+        "caption": _CAPTIONS[measure],
     }
 
 
-def _leader(row: dict[str, Any]) -> dict[str, str]:
-    elasticity, ends = row.get("spread_elasticity"), row.get("spread_interval")
-    size = text.MISSING if elasticity is None else text.rounded(abs(elasticity), 2)
-    way = "falls" if (elasticity or 0.0) >= 0 else "rises"
-    return {
-        "parameter": row["parameter"],
-        "sentence": f"{_direction(row)}; with 1 % less spread the chance {way} by about {size} % of its "
-        f"value (elasticity {text.pair_text(ends)}); share {_shares(row)}",
-    }
+def _leader(row: dict[str, Any], limit: dict[str, Any], measure: str) -> dict[str, str]:
+    effect = leader_text(row, limit, measure)
+    said = effect if measure == "mean" else f"{_direction(row)}; {effect}"
+    return {"parameter": row["parameter"], "sentence": f"{said}; share {_shares(row)}"}
 
 
-def _row(row: dict[str, Any]) -> list[str]:
+def _row(row: dict[str, Any], measure: str) -> list[str]:
+    contrary = measure == "spread" and turned(row)
     return [
         row["parameter"],
         "–" if row.get("rank") is None else str(row["rank"]),
@@ -69,7 +84,7 @@ def _row(row: dict[str, Any]) -> list[str]:
         _number(row.get("mean_elasticity")),
         text.pair_text(row.get("mean_interval")),
         _shares(row),
-        _direction(row),
+        f"{_direction(row)}; more spread makes the rarer outcome rarer" if contrary else _direction(row),
     ]
 
 

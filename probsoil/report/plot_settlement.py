@@ -65,8 +65,9 @@ def _band(axis: "Axes", times: FloatArray, data: dict[str, Any]) -> None:
 
 
 def _depth_range(data: dict[str, Any]) -> tuple[float, float]:
-    deep = np.nanmax(numbers_array(data["quantiles"]["0.95"]), initial=1e-3)
-    high = np.nanmin(numbers_array(data["quantiles"]["0.05"]), initial=0.0)
+    drawn = np.concatenate([numbers_array(values) for values in data["quantiles"].values()])
+    drawn = drawn[np.isfinite(drawn)]
+    deep, high = drawn.max(initial=1e-3), drawn.min(initial=0.0)
     room = 0.12 * (deep - high)
     return float(deep + room), float(high - room)
 

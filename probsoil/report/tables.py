@@ -3,6 +3,9 @@
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from probsoil.report.ranking import ranked_by
+from probsoil.report.text import UNCOMPUTED, uncomputed_text
+
 if TYPE_CHECKING:
     import pandas as pd
 
@@ -12,7 +15,8 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
 
-    Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it.
+    Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
+    mean or quantile without a number reads ``not reached`` (a time) or ``beyond the computation``.
 
     Parameters
     ----------
@@ -53,13 +57,16 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
 
     rows = {
         "limits": [_limit_row(limit, results.get("currency") or "currency") for limit in results["limits"]],
-        "drivers": [_driver_row(row) for row in results.get("drivers") or []],
+        "drivers": [
+            _driver_row(row, ranked_by(results, row["limit"])) for row in results.get("drivers") or []
+        ],
         "settlement": _settlement_rows(results.get("settlement") or {}),
         "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
     }
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
     if len(frames["drivers"]):
-        frames["drivers"] = frames["drivers"].astype({"rank [-]": "Int64"})
+        whole = {"rank [-]": "Int64", "spread clear": "boolean", "mean clear": "boolean"}
+        frames["drivers"] = frames["drivers"].astype(whole)
     return frames
 
 
@@ -67,6 +74,7 @@ def _limit_row(limit: dict[str, Any], currency: str) -> dict[str, Any]:
     low, high = limit["interval"]
     beta_low, beta_high = limit.get("reliability_interval") or (None, None)
     summary = limit.get("summary") or {}
+    beyond = uncomputed_text(limit["quantity"])
     return {
         "limit": limit["name"],
         "quantity": limit["quantity"],
@@ -90,15 +98,20 @@ def _limit_row(limit: dict[str, Any], currency: str) -> dict[str, Any]:
         "verdict": limit.get("verdict"),
         f"cost if exceeded [{currency}]": limit.get("cost_if_exceeded"),
         f"expected cost [{currency}]": limit.get("expected_cost"),
-        "mean [unit]": summary.get("mean"),
-        "sd [unit]": summary.get("sd"),
-        **_quantile_columns(summary.get("quantiles") or {}, "unit"),
+        "mean [unit]": _or(beyond, summary, "mean"),
+        "sd [unit]": _or(beyond, summary, "sd"),
+        **_quantile_columns(summary.get("quantiles") or {}, "unit", beyond),
         "method": limit.get("method"),
     }
 
 
-def _driver_row(row: dict[str, Any]) -> dict[str, Any]:
-    columns = {"limit": row["limit"], "parameter": row["parameter"], "rank [-]": row.get("rank")}
+def _driver_row(row: dict[str, Any], measure: str) -> dict[str, Any]:
+    columns = {
+        "limit": row["limit"],
+        "parameter": row["parameter"],
+        "rank [-]": row.get("rank"),
+        "ranked by": measure,
+    }
     for label, value, interval in (
         ("spread elasticity", "spread_elasticity", "spread_interval"),
         ("mean elasticity", "mean_elasticity", "mean_interval"),
@@ -106,7 +119,8 @@ def _driver_row(row: dict[str, Any]) -> dict[str, Any]:
     ):
         low, high = row.get(interval) or (None, None)
         columns |= {f"{label} [-]": row.get(value), f"{label} low [-]": low, f"{label} high [-]": high}
-    return columns | {"direction": row.get("direction")}
+    clear = {"spread clear": row.get("spread_clear"), "mean clear": row.get("mean_clear")}
+    return columns | clear | {"direction": row.get("direction")}
 
 
 def _settlement_rows(data: dict[str, Any]) -> list[dict[str, Any]]:
@@ -114,8 +128,10 @@ def _settlement_rows(data: dict[str, Any]) -> list[dict[str, Any]]:
     return [
         {
             "time [years]": time,
-            "mean [m]": data["mean"][place],
-            **_quantile_columns({level: values[place] for level, values in quantiles.items()}, "m"),
+            "mean [m]": UNCOMPUTED if data["mean"][place] is None else data["mean"][place],
+            **_quantile_columns(
+                {level: values[place] for level, values in quantiles.items()}, "m", UNCOMPUTED
+            ),
         }
         for place, time in enumerate(data.get("times") or [])
     ]
@@ -138,5 +154,10 @@ def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:
     }
 
 
-def _quantile_columns(quantiles: dict[str, Any], unit: str) -> dict[str, Any]:
-    return {f"p{round(100 * float(level)):02d} [{unit}]": quantiles.get(level) for level in _LEVELS}
+def _quantile_columns(quantiles: dict[str, Any], unit: str, beyond: str) -> dict[str, Any]:
+    return {f"p{round(100 * float(level)):02d} [{unit}]": _or(beyond, quantiles, level) for level in _LEVELS}
+
+
+def _or(beyond: str, values: dict[str, Any], key: str) -> Any:
+    """Return a number, the words for one that does not exist, or nothing where the results lack it."""
+    return beyond if key in values and values[key] is None else values.get(key)

@@ -43,8 +43,12 @@ _SUMMARIES: dict[str | None, tuple[str, str]] = {
     None: ("has no target", "have no target"),
 }
 
+UNCOMPUTED = "beyond the computation"  # of a quantile that falls on realisations without a finite value
+_UNREACHED = "not reached"  # the same of a time
+
 __all__ = [
     "MISSING",
+    "UNCOMPUTED",
     "chance_text",
     "confidence_of",
     "count_text",
@@ -63,12 +67,15 @@ __all__ = [
     "percent_text",
     "plain_percent",
     "probability_text",
+    "quantile_text",
     "quantity_text",
+    "range_text",
     "realisations_of",
     "rounded",
     "step_decimals",
     "threshold_text",
     "trimmed_text",
+    "uncomputed_text",
     "upper_bound_text",
     "value_text",
     "verdict_label",
@@ -135,6 +142,66 @@ def quantity_text(limit: dict[str, Any]) -> str:
     if quantity == "slip_safety" and "at" not in time:
         return "the least factor of safety against slip over the stages"
     return f"{name} {limit.get('time_text') or _when(time)}".rstrip()
+
+
+def uncomputed_text(quantity: str) -> str:
+    """Say what a mean or a quantile without a number is: one that falls on values that are not finite.
+
+    Parameters
+    ----------
+    quantity : str
+        Quantity of a limit.
+
+    Returns
+    -------
+    text : str
+        ``not reached`` of a time, ``beyond the computation`` of anything else.
+    """
+    return _UNREACHED if quantity == "time_to_consolidation" else UNCOMPUTED
+
+
+def quantile_text(value: float | None, unit: str, beyond: str = UNCOMPUTED) -> str:
+    """Write a mean or a quantile with its unit.
+
+    Parameters
+    ----------
+    value : float or None, [`unit`]
+        Number; None where it falls on values that are not finite.
+    unit : str
+        Its unit, ``-`` for none.
+    beyond : str
+        What to say without a number.
+
+    Returns
+    -------
+    text : str
+        For example ``0.412 m`` or ``beyond the computation``.
+    """
+    return value_text(value, unit) if is_number(value) else beyond
+
+
+def range_text(low: float | None, high: float | None, unit: str, beyond: str = UNCOMPUTED) -> str:
+    """Write the range from the 5 % to the 95 % point of a quantity.
+
+    Parameters
+    ----------
+    low, high : float or None, [`unit`]
+        The two points; None where one falls on values that are not finite.
+    unit : str
+        Their unit, ``-`` for none.
+    beyond : str
+        What to say without a number.
+
+    Returns
+    -------
+    text : str
+        For example ``nine times in ten between 0.31 m and 0.52 m`` or
+        ``5 % point 1.20 years, 95 % point not reached``.
+    """
+    first, last = (quantile_text(value, unit, beyond) for value in (low, high))
+    if is_number(low) and is_number(high):
+        return f"nine times in ten between {first} and {last}"
+    return f"5 % point {first}, 95 % point {last}"
 
 
 def exceeding_word(limit: dict[str, Any]) -> str:

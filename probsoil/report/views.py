@@ -66,13 +66,16 @@ def _limit(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[
         "interval": text.interval_text(limit["probability"], *limit["interval"]),
         "target": "none" if target is None else text.plain_percent(target),
         "reliability": _reliability(limit),
-        "median": text.value_text(_median(limit), limit.get("unit", "-")),
+        "median": _median(limit),
     }
 
 
-def _median(limit: dict[str, Any]) -> float | None:
+def _median(limit: dict[str, Any]) -> str:
     quantiles = (limit.get("summary") or {}).get("quantiles") or {}
-    return quantiles.get("0.5")
+    if "0.5" not in quantiles:
+        return text.MISSING
+    beyond = text.uncomputed_text(limit["quantity"])
+    return text.quantile_text(quantiles["0.5"], limit.get("unit", "-"), beyond)
 
 
 def _reliability(limit: dict[str, Any]) -> str:
@@ -104,12 +107,12 @@ def _evidence(limit: dict[str, Any], results: dict[str, Any]) -> list[tuple[str,
 
 
 def _spread(limit: dict[str, Any]) -> str:
-    summary = limit.get("summary") or {}
-    quantiles, unit = summary.get("quantiles") or {}, limit.get("unit", "-")
-    if not text.is_number(quantiles.get("0.5")):
+    quantiles, unit = (limit.get("summary") or {}).get("quantiles") or {}, limit.get("unit", "-")
+    if not quantiles:
         return ""
-    low, high = (text.value_text(quantiles.get(level), unit) for level in ("0.05", "0.95"))
-    return f"median {text.value_text(quantiles['0.5'], unit)}; nine times in ten between {low} and {high}"
+    low, high = (quantiles.get(level) for level in ("0.05", "0.95"))
+    beyond = text.uncomputed_text(limit["quantity"])
+    return f"median {_median(limit)}; {text.range_text(low, high, unit, beyond)}"
 
 
 def _cost(limit: dict[str, Any], currency: str) -> str:
@@ -153,8 +156,8 @@ def _settlement(data: dict[str, Any]) -> dict[str, Any] | None:
     rows = [
         [
             text.trimmed_text(times[i]),
-            *(metres_text(column[i]) for column in columns),
-            metres_text(data["mean"][i]),
+            *(_metres(column[i]) for column in columns),
+            _metres(data["mean"][i]),
         ]
         for i in sorted(kept)
     ]
@@ -163,8 +166,8 @@ def _settlement(data: dict[str, Any]) -> dict[str, Any] | None:
         rows.append(
             [
                 "final",
-                *(metres_text(final["quantiles"].get(level)) for level in _LEVELS),
-                metres_text(final.get("mean")),
+                *(_metres(final["quantiles"].get(level)) for level in _LEVELS),
+                _metres(final.get("mean")),
             ]
         )
     return {
@@ -177,10 +180,14 @@ def _settlement(data: dict[str, Any]) -> dict[str, Any] | None:
     }
 
 
+def _metres(value: float | None) -> str:
+    return text.UNCOMPUTED if value is None else metres_text(value)
+
+
 def _settlement_sentence(data: dict[str, Any], ends: list[float]) -> str:
     def at(place: int) -> str:
         median, low, high = (data["quantiles"][level][place] for level in ("0.5", "0.05", "0.95"))
-        return f"{text.value_text(median, 'm')} (nine times in ten {text.pair_text([low, high], 3)} m)"
+        return f"{text.quantile_text(median, 'm')} ({text.range_text(low, high, 'm')})"
 
     times = data["times"]
     last = f"after {text.trimmed_text(times[-1])} years the median settlement is {at(-1)}"
@@ -196,7 +203,7 @@ def _slip(row: dict[str, Any]) -> list[str]:
         row["stage"],
         text.trimmed_text(row["time"]),
         text.number_text(row.get("fill_height")),
-        *(text.number_text(quantiles.get(level)) for level in _LEVELS),
-        text.number_text(row.get("mean")),
+        *(text.quantile_text(quantiles.get(level), "-") for level in _LEVELS),
+        text.quantile_text(row.get("mean"), "-"),
         share_text(row.get("probability_below_one")),
     ]

@@ -128,9 +128,19 @@ def _parsed(source: str, file: str) -> dict[str, Any]:
         raise _refusal(file, "lists or tables are nested too deeply", None) from None
     except ValueError as error:  # a whole number with thousands of digits
         raise _refusal(file, f"a value cannot be read ({error})", None) from None
+    if _beyond_64_bits(data):
+        raise _refusal(file, "a whole number is beyond the 64 bits that TOML allows", None)
     if not data:
         raise _refusal(file, "the file is empty", "a starter scenario shows what belongs in one")
     return data
+
+
+def _beyond_64_bits(value: object) -> bool:
+    if isinstance(value, dict):
+        return any(_beyond_64_bits(one) for one in value.values())
+    if isinstance(value, list):
+        return any(_beyond_64_bits(one) for one in value)
+    return isinstance(value, int) and not -(2**63) <= value < 2**63
 
 
 def _all_slips(error: ValidationError, data: dict[str, Any]) -> list[Slip]:

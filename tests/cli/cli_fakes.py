@@ -59,8 +59,8 @@ def results() -> dict[str, Any]:
             for name, share, rank in (("a", 0.1, 2), ("b", 0.5, 3), ("c", 0.05, None), ("d", 0.35, 1))
         ],
         "driver_quality": [
-            {"limit": "residual [m]", "note": None},
-            {"limit": "slip", "note": "nothing exceeded, so nothing can be ranked"},
+            {"limit": "residual [m]", "ranked_by": "spread", "note": None},
+            {"limit": "slip", "ranked_by": "spread", "note": "nothing exceeded, so nothing can be ranked"},
         ],
         "warnings": [{"code": "floor", "message": "the floor acted in 3 % of realisations", "share": 0.03}],
     }
@@ -71,6 +71,8 @@ def driver(name: str, share: float, rank: int | None) -> dict[str, Any]:
         "limit": "residual [m]",
         "parameter": f"soft clay.{name}",
         "rank": rank,
+        "spread_clear": rank is not None,
+        "mean_clear": False,
         "share": share,
         "share_interval": [share - 0.04, share + 0.04],
         "direction": "raises" if share > 0.2 else "unclear",

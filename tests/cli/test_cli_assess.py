@@ -33,6 +33,8 @@ def test_answer_says_chances_verdicts_drivers_report_and_caution(
     assert re.search(r"soft clay\.b +50 % \(46 to 54 %\) +raises the chance", out)
     assert out.index("soft clay.d") < out.index("soft clay.a") < out.index("soft clay.b")
     assert "soft clay.c" not in out  # not ranked
+    basis = "ranked by how much more spread in a parameter raises the chance of exceeding the limit"
+    assert f"Drivers of residual [m]: {basis}" in words
     assert "Drivers of slip: nothing exceeded, so nothing can be ranked" in out
     assert "Warning: the floor acted in 3 % of realisations" in out
     assert f"Report: {Path('results', 'site', 'report.html')}" in out
@@ -41,6 +43,26 @@ def test_answer_says_chances_verdicts_drivers_report_and_caution(
     assert calculation.calls[0]["out"] == Path("results/site")
     assert (desk / "results" / "site" / "report.html").exists()
     assert (desk / "results" / "site" / "limits.csv").exists()
+
+
+def test_answer_says_when_the_mean_ranks_and_when_nothing_does(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,  # noqa: ARG001
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    results = cli_fakes.results()
+    results["limits"][0]["probability"] = 0.5
+    results["driver_quality"][0]["ranked_by"] = "mean"
+    monkeypatch.setattr(cli_fakes, "results", lambda: results)
+    assert main(["assess", "site.toml"]) == 0
+    words = re.sub(r"\s+", " ", capsys.readouterr().out)
+    assert "Drivers of residual [m]: ranked by how much a shift of a parameter's mean changes" in words
+    for driver in results["drivers"]:
+        driver["rank"] = None
+    assert main(["assess", "site.toml"]) == 0
+    words = re.sub(r"\s+", " ", capsys.readouterr().out)
+    assert "Drivers of residual [m]: no parameter has a rank: for none does a shift of the mean" in words
 
 
 def test_options_reach_the_calculation_and_absent_ones_leave_the_scenario_alone(

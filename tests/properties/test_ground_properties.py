@@ -1,6 +1,7 @@
 """What must hold for any ground: monotony, bounds, and independence of the company."""
 
 import functools
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -49,6 +50,7 @@ AREA = '[load]\nshape = "area"\nfill_unit_weight = 20\nsubmergence = {submergenc
 DRY = AREA.format(submergence="false")
 EMBANKMENT = (
     '[load]\nshape = "embankment"\ncrest_width = 8\nside_slope = 2\nfill_unit_weight = 19\nfill_phi = 33\n'
+    "submergence = false\n"  # or the stress falls again where the load comes first and sinks after
 )
 PROMISE = 0.005  # of the final settlement: what the default steps may be wrong by at any time
 LIMIT = '[[limits]]\nname = "end"\nquantity = "settlement"\nat = 30\nnot_more_than = 1\n'
@@ -70,7 +72,9 @@ def built(flow="k", steps=LIFTS, load=DRY, halves=1):
     parts = [CLAY.format(name=f"clay{i}", thickness=5.0 / halves, flow=FLOW[flow]) for i in range(halves)]
     scenario = parse_scenario("".join([HEAD, SAND, *parts, load, stages(steps), LIMIT]), file="any.toml")
     values = {quantity.address: quantity.distribution.expectation for quantity in scenario.quantities()}
-    return site_model(scenario), values
+    site = site_model(scenario)
+    # few circles: they are laid out afresh for every state, and no property depends on how many
+    return replace(site, layouts=tuple(replace(layout, density=0.25) for layout in site.layouts)), values
 
 
 def state_of(site, values, **arrays):

@@ -6,7 +6,7 @@ import numpy as np
 from scipy.optimize import differential_evolution
 
 from probsoil.ground.slip import FillStrength, GroundStrength, slip_safety
-from probsoil.ground.slip_circles import EmbankmentSection, circle_family
+from probsoil.ground.slip_circles import CircleLayout, EmbankmentSection, circle_family
 
 STRENGTH, WEIGHT = 20.0, 18.0
 # The family of circles is as dense as it takes for its least factor to come within 1 % of the least
@@ -29,7 +29,7 @@ def computed_factor(slope, *, width, fill_strength=STRENGTH):
     section = EmbankmentSection(
         height=slope.height, side_slope=slope.run, base_width=width, full_height=slope.height
     )
-    family = circle_family(section, depth=slope.depth)
+    family = circle_family(CircleLayout(section=section, depth=slope.depth))
     points = np.linspace(0.0, 2.0 * slope.depth, 12)[None, :]
     ground = GroundStrength(
         boundary=np.array([[0.0, 2.0 * slope.depth]]),

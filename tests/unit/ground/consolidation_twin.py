@@ -19,6 +19,7 @@ import numpy as np
 from scipy.integrate import solve_ivp
 
 WATER, YEAR = 9.81, 365.25 * 24.0 * 3600.0
+LEAST_STRESS = 1.0  # kPa, by agreement, in the first centimetres below ground level
 
 
 @dataclass(frozen=True)
@@ -57,7 +58,7 @@ class Profile:
 
         weight = of(lambda layer: layer.weight)
         total = np.array([(weight * np.clip(z - edges[:-1], 0.0, self.size)).sum() for z in depth])
-        self.stress0 = total - WATER * np.maximum(depth - water_table, 0.0)
+        self.stress0 = np.maximum(total - WATER * np.maximum(depth - water_table, 0.0), LEAST_STRESS)
         self.e0, self.pop = of(lambda layer: layer.void_ratio), of(lambda layer: layer.pop)
         self.clay = of(lambda layer: layer.lam > 0.0)
         self.lam = np.where(self.clay, of(lambda layer: layer.lam), 1.0)  # stand-ins in sand, never used

@@ -77,7 +77,6 @@ def test_wrong_arguments_are_refused(arguments, error, message):
 
 def test_load_is_linear_between_knots():
     """Two knots more on the straight line change nothing but rounding."""
-    state, _, _ = even_column()
     times = np.linspace(0.0, 1.0, 21)
     plain = run(times=times)
     knots = times[[0, 5, 12, 20]]

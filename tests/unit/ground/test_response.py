@@ -6,7 +6,7 @@ from ground_cases import central, clay, sand, scenario, site_model, stage
 
 from probsoil.ground.clay_settlement import cell_settlement
 from probsoil.ground.response import ground_state, respond, screened
-from probsoil.ground.slip_circles import N_ZONE
+from probsoil.ground.slip_circles import N_ZONE, candidate_circles
 from probsoil.ground.undrained_strength import (
     normally_consolidated_strength_ratio,
     plastic_volumetric_ratio,
@@ -140,13 +140,13 @@ def test_screening_loses_nothing_in_its_pilot_and_little_beyond(built):
 
     pilot = spread(48, 0.5)
     smaller = screened(site, pilot)
-    assert all(
-        0 < few.n_circle < many.n_circle for few, many in zip(smaller.families, site.families, strict=True)
-    )
-    assert np.array_equal(respond(smaller, pilot).slip, respond(site, pilot).slip)
+    candidates = [len(candidate_circles(layout)) for layout in site.layouts]
+    assert all(0 < kept.n_circle < many for kept, many in zip(smaller.families, candidates, strict=True))
+    # the sums of a full search and of the screening differ in rounding only
+    assert respond(smaller, pilot).slip == pytest.approx(respond(site, pilot).slip, rel=1e-12)
     others = spread(200, 0.3)
     full, part = respond(site, others).slip, respond(smaller, others).slip
-    assert (part >= full).all()
+    assert (part >= full * (1.0 - 1e-12)).all()
     assert part == pytest.approx(full, rel=0.01)  # the family itself is no denser than 1 %
 
 
@@ -181,12 +181,23 @@ def test_floors_and_clips_are_reported(built):
 
 
 def test_a_realisation_that_cannot_be_solved_does_not_stop_the_others():
-    """Compression so strong that the void ratio would fall below nothing is marked, not raised."""
+    """Compression so strong that the voids would close is marked, not raised, and yields no number."""
     case = scenario(
         [clay("soft", 6.0, void_ratio=1.5, lam=0.4, kappa=0.05, permeability="{ k = 1e-9, ck = 0.5 }")],
-        [stage("fill", 0, 0.1, pressure=60)],
+        [stage("fill", 0, 0.1, height=3.0)],
+        load=EMBANKMENT,
     )
-    values = central(case) | {"soft.lambda": np.array([0.4, 0.1])}
+    values = central(case) | {"soft.lambda": np.array([0.6, 0.1])}
     response = respond(site_model(case), values)
     assert response.converged.tolist() == [False, True]
+    assert response.voids_closed.tolist() == [True, False]
+    assert np.isnan(response.settlement[0, -1])
+    assert np.isnan(response.slip[0]).all()
     assert np.isfinite(response.settlement[1]).all()
+    assert np.isfinite(response.slip[1]).all()
+
+
+def test_there_is_nothing_to_screen_under_a_wide_load():
+    case = scenario([clay("soft", 4.0)], [stage("fill", 0, 0.1, pressure=30)])
+    site = site_model(case)
+    assert screened(site, central(case)) is site

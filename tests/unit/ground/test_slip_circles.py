@@ -5,7 +5,14 @@ import pytest
 
 from probsoil.errors import ParameterError
 from probsoil.ground._circle_kernel import ARC_POINTS
-from probsoil.ground.slip_circles import N_ZONE, EmbankmentSection, circle_family
+from probsoil.ground.slip_circles import (
+    N_ZONE,
+    CircleLayout,
+    EmbankmentSection,
+    candidate_circles,
+    circle_family,
+    weighed,
+)
 
 SECTIONS = {
     "at full height": EmbankmentSection(height=3.0, side_slope=2.0, base_width=30.0, full_height=3.0),
@@ -18,8 +25,12 @@ SECTIONS = {
 DEPTH = 7.0
 
 
+def layout_of(section, **keys):
+    return CircleLayout(section=section, depth=DEPTH, density=0.35, **keys)
+
+
 def family_of(section, **keys):
-    return circle_family(section, depth=DEPTH, density=0.35, n_slice=20, **keys)
+    return circle_family(layout_of(section, **keys))
 
 
 def some_circles(family, count=40):
@@ -34,7 +45,7 @@ def surface(section, x):
 
 
 def dense_row(family, circle, n_kind):
-    row = np.zeros(n_kind * N_ZONE * family.slice_depth.size)
+    row = np.zeros(n_kind * N_ZONE * (family.slice_edge.size - 1))
     entries = slice(family.row_start[circle], family.row_start[circle + 1])
     row[family.column[entries]] = family.weight[entries]
     return row.reshape(n_kind, N_ZONE, -1)
@@ -47,12 +58,12 @@ def quadrature(section, family, circle, n_arc=60_000):
     angle = first + (last - first) * (np.arange(n_arc) + 0.5) / n_arc
     moment = radius**2 * (last - first) / n_arc
     x, y = x0 + radius * np.sin(angle), y0 - radius * np.cos(angle)
-    edge = DEPTH * np.linspace(0.0, 1.0, 21) ** 1.5
-    level = np.clip(np.searchsorted(edge, -y, side="left") - 1, 0, 19)
+    edge = family.slice_edge
+    level = np.clip(np.searchsorted(edge, -y, side="left") - 1, 0, edge.size - 2)
     beyond = (x < 0.0) | (x > section.base_width)
     sloping = ~beyond & ((x < section.slope_zone) | (x > section.base_width - section.slope_zone))
     zone = np.where(beyond, 0, np.where(sloping, 1, 2))
-    weights = np.zeros((2, N_ZONE, 20))
+    weights = np.zeros((2, N_ZONE, edge.size - 1))
     below = y <= 0.0
     np.add.at(weights[0], (zone[below], level[below]), moment)
     np.add.at(weights[1], (zone[below], level[below]), moment * np.cos(angle[below]) ** 2)
@@ -126,23 +137,48 @@ def test_arc_below_ground_level_in_closed_form():
 def test_frictional_columns_are_left_out_where_nothing_has_friction():
     with_friction = family_of(SECTIONS["at full height"], frictional_ground=True)
     without = family_of(SECTIONS["at full height"])
-    assert without.column.max() < N_ZONE * 20 <= with_friction.column.max()
+    n_slice = without.slice_edge.size - 1
+    assert without.column.max() < N_ZONE * n_slice <= with_friction.column.max()
     assert np.array_equal(without.driving, with_friction.driving)
 
 
-def test_subset_keeps_rows_with_their_circles():
-    family = family_of(SECTIONS["while rising"])
+def test_some_circles_weighed_by_themselves_are_the_same():
+    layout = layout_of(SECTIONS["while rising"])
+    family, candidates = circle_family(layout), candidate_circles(layout)
+    assert len(candidates) == family.n_circle
     keep = np.zeros(family.n_circle, dtype=bool)
     keep[[3, 50, 51, 120]] = True
-    part = family.subset(keep)
+    part = weighed(layout, candidates[keep])
     assert part.n_circle == 4
     assert part.driving.tolist() == family.driving[keep].tolist()
     for new, old in enumerate(np.flatnonzero(keep)):
         assert np.array_equal(dense_row(part, new, 1), dense_row(family, old, 1))
 
 
+def test_slices_end_and_circles_touch_at_layer_boundaries():
+    boundaries = (1.3, 4.1, 7.0, 20.0)  # the last two do not lie within the depth
+    layout = layout_of(SECTIONS["at full height"], boundaries=boundaries)
+    plain = layout_of(SECTIONS["at full height"])
+    assert {1.3, 4.1} <= set(layout.slice_edge.tolist())
+    assert layout.slice_edge[[0, -1]].tolist() == plain.slice_edge[[0, -1]].tolist() == [0.0, DEPTH]
+    assert (np.diff(layout.slice_edge) > 0.0).all()
+    circles = candidate_circles(layout)
+    touch = circles.radius - circles.centre_y
+    for depth in (1.3, 4.1):
+        assert (np.abs(touch - depth) < 1e-9).any()
+    assert touch.max() <= DEPTH * (1.0 + 1e-12)
+
+
+def test_denser_layouts_have_more_circles_and_slices():
+    section = SECTIONS["at full height"]
+    layouts = [CircleLayout(section=section, depth=DEPTH, density=density) for density in (0.25, 0.5)]
+    counts = [len(candidate_circles(layout)) for layout in layouts]
+    assert 5.0 < counts[1] / counts[0] < 12.0  # the cube of two, less the invalid ones
+    assert layouts[1].slice_edge.size - 1 == 2 * (layouts[0].slice_edge.size - 1)
+
+
 @pytest.mark.parametrize(("height", "depth"), [(0.0, 5.0), (-1.0, 5.0), (2.0, 0.0)])
 def test_no_height_or_no_depth_is_refused(height, depth):
     section = EmbankmentSection(height=height, side_slope=2.0, base_width=30.0, full_height=3.0)
     with pytest.raises(ParameterError, match=f"must be above zero; got {height:g} and {depth:g} m"):
-        circle_family(section, depth=depth)
+        CircleLayout(section=section, depth=depth)

@@ -32,8 +32,14 @@ def interval(count: int, n: int = N) -> list[float]:
 
 def quantiles(values: np.ndarray) -> dict[str, Any]:
     levels = ("0.05", "0.25", "0.5", "0.75", "0.95")
-    finite = values[np.isfinite(values)]
-    return {level: float(np.quantile(finite, float(level))) for level in levels}
+    order = np.sort(values)
+    found: dict[str, Any] = {}
+    for level in levels:
+        place = float(level) * (order.size - 1)
+        low, high = order[int(np.floor(place))], order[int(np.ceil(place))]
+        known = np.isfinite(low) and np.isfinite(high)
+        found[level] = float(low + (place - np.floor(place)) * (high - low)) if known else None
+    return found
 
 
 def curve(values: np.ndarray, sense: str, threshold: float, step: float) -> dict[str, Any]:
@@ -95,8 +101,8 @@ def limit(name: str, values: np.ndarray, threshold: float, step: float, **more: 
         "cost_if_exceeded": None,
         "expected_cost": None if cost is None else cost * probability,
         "summary": {
-            "mean": float(values[np.isfinite(values)].mean()),
-            "sd": float(values[np.isfinite(values)].std(ddof=1)),
+            "mean": float(values.mean()) if np.isfinite(values).all() else None,
+            "sd": float(values.std(ddof=1)) if np.isfinite(values).all() else None,
             "quantiles": quantiles(values),
         },
         "curve": curve(values, sense, threshold, step),
@@ -146,6 +152,7 @@ def sample(seed: int = 7, n: int = N) -> dict[str, Any]:
         "driver_quality": [
             {
                 "limit": entry["name"],
+                "ranked_by": ranked_by(entry),
                 "exceeding": entry["exceeding"],
                 "r_squared": 0.93 - 0.05 * k,
                 "note": None,
@@ -226,27 +233,38 @@ def slip(rng: np.random.Generator, safety: np.ndarray) -> list[dict[str, Any]]:
     return rows
 
 
+def ranked_by(entry: dict[str, Any]) -> str:
+    return "mean" if 0.3 <= entry["probability"] <= 0.7 else "spread"
+
+
 def drivers(rng: np.random.Generator, entry: dict[str, Any]) -> list[dict[str, Any]]:
+    """Falling importance; the last parameter's spread makes the rarer outcome rarer still."""
     sizes = np.sort(rng.exponential(0.6, len(PARAMETERS)))[::-1]
     half = 0.35 * max(0.2, 1.0 / max(1, entry["exceeding"]) ** 0.25)
     shares = sizes / sizes.sum()
+    by_mean, rarer = ranked_by(entry) == "mean", -1 if entry["probability"] > 0.5 else 1
     rows = []
     for place, (name, _, _, _) in enumerate(PARAMETERS):
         size, share = float(sizes[place]), float(shares[place])
-        ranked = size > half
-        sign = 1 if place % 3 else -1
+        last = place == len(PARAMETERS) - 1
+        spread = rarer * (0.05 * size if by_mean else -3.0 * half if last else size)
+        mean = (1 if place % 3 else -1) * 0.8 * size
+        clear = {key: abs(value) > 1.4 * half for key, value in (("spread", spread), ("mean", mean))}
+        ranked = clear["mean"] if by_mean else clear["spread"] and not last
         rows.append(
             {
                 "limit": entry["name"],
                 "parameter": name,
                 "rank": place + 1 if ranked else None,
-                "spread_elasticity": size,
-                "spread_interval": [size - half, size + half],
-                "mean_elasticity": sign * 0.8 * size,
-                "mean_interval": [sign * 0.8 * size - half, sign * 0.8 * size + half],
+                "spread_elasticity": spread,
+                "spread_interval": [spread - half, spread + half],
+                "spread_clear": clear["spread"],
+                "mean_elasticity": mean,
+                "mean_interval": [mean - half, mean + half],
+                "mean_clear": clear["mean"],
                 "share": share,
                 "share_interval": [max(0.0, share - 0.03), share + 0.03],
-                "direction": ("raises" if sign > 0 else "lowers") if ranked else "unclear",
+                "direction": "unclear" if abs(mean) < half else "raises" if mean > 0 else "lowers",
             }
         )
     return rows

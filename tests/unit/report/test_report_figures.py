@@ -136,6 +136,36 @@ def test_drivers_come_ranked_first_and_at_most_twelve(results):
     assert len(shown_drivers(many, name)) == 12
 
 
+def test_drivers_ranked_by_the_mean_are_ordered_and_drawn_by_it(results):
+    name = results["limits"][0]["name"]
+    row = results["drivers"][0] | {"rank": None, "spread_elasticity": 9.0}
+    rows = [
+        row | {"parameter": f"p{k}", "mean_elasticity": value} for k, value in enumerate((0.1, -0.3, 0.2))
+    ]
+    quality = [{"limit": name, "ranked_by": "mean"}]
+    some = {"limits": results["limits"][:1], "drivers": rows, "driver_quality": quality}
+    assert [entry["parameter"] for entry in ordered_drivers(some, name)] == ["p1", "p2", "p0"]
+    drawing = figures(some)["drivers-1"]
+    assert "p1 -3.00 (" in drawing  # 10 % of the elasticity
+    assert "9.00" not in drawing
+
+
+def test_band_without_a_number_anywhere_still_draws(results):
+    data = results["settlement"] | {
+        "quantiles": {
+            level: [None] * len(values) for level, values in results["settlement"]["quantiles"].items()
+        },
+        "mean": [None] * len(results["settlement"]["times"]),
+    }
+    assert "settlement" in figures({"limits": results["limits"], "settlement": data})
+
+
+def test_stage_without_a_median_says_so(results):
+    rows = [row | {"quantiles": dict.fromkeys(row["quantiles"]), "mean": None} for row in results["slip"]]
+    drawing = figures({"limits": [], "slip": rows})["slip"]
+    assert drawing.count("median beyond the computation") >= len(rows)
+
+
 def test_a_driver_without_a_number_is_not_drawn(results):
     rows = [results["drivers"][0] | {"spread_elasticity": None, "spread_interval": None, "rank": None}]
     assert shown_drivers({"drivers": rows}, rows[0]["limit"]) == []

@@ -13,7 +13,7 @@ from itertools import pairwise
 
 import numpy as np
 import pytest
-from sample_results import limit, sample
+from sample_results import drivers, limit, ranked_by, sample
 
 from probsoil.errors import ResultsError
 from probsoil.report import render_report, text, write_report
@@ -151,7 +151,10 @@ def test_headings_do_not_skip_a_level(page):
 
 def test_drivers_claim_slopes_not_halving(page):
     assert "what halving a spread would do is not claimed here" in page.text
-    assert "Not to be told from no effect when all parameters are judged together" in page.text
+    assert "Ranked by how much more spread in a parameter raises the chance of exceeding" in page.text
+    assert "model_error.settlement has an effect but no rank, since more spread in it makes" in page.text
+    assert "direction not clear; more spread makes the rarer outcome rarer" in page.text
+    assert "noise" not in page.text
 
 
 AWKWARD = "<script>alert(1)</script> & \"lift\" 'two' </script> {{ 7*7 }} " + "very long " * 20
@@ -244,6 +247,107 @@ def test_failures_to_converge_and_to_reach_are_said(results):
     assert "Every realisation converged." in Page(render_report(results)).text
 
 
+def often_exceeded(results, share):
+    """The results of one settlement limit that so great a share of the realisations exceeds."""
+    rng = np.random.default_rng(3)
+    final = rng.lognormal(np.log(0.62), 0.22, 20_000)
+    threshold = round(float(np.quantile(final, 1.0 - share)), 3)
+    entry = limit("often", final, threshold, 0.005, time={"at": 30.0}, time_text="at 30 years")
+    quality = results["driver_quality"][0] | {"limit": "often", "ranked_by": ranked_by(entry)}
+    quality["exceeding"] = entry["exceeding"]
+    return results | {"limits": [entry], "drivers": drivers(rng, entry), "driver_quality": [quality]}
+
+
+def test_drivers_of_a_limit_that_is_mostly_exceeded_read_right(results):
+    wild = often_exceeded(results, 0.8)
+    entry, first = wild["limits"][0], wild["drivers"][0]
+    assert first["rank"] == 1
+    assert first["spread_elasticity"] < 0
+    shown = Page(render_report(wild)).text
+    assert "raises the chance of meeting the limit, the rarer outcome here." in shown
+    size = text.number_text(-first["spread_elasticity"], 2)
+    other = text.number_text(
+        -first["spread_elasticity"] * entry["probability"] / (1.0 - entry["probability"]), 2
+    )
+    ends = text.pair_text(first["spread_interval"])
+    assert (
+        f"with 1 % less spread the chance rises by about {size} % of its value (elasticity {ends}) and that "
+        f"of meeting the limit falls by about {other} % of its own" in shown
+    )
+    assert "1 % more spread raises the chance of exceeding by about" in shown  # the last, without a rank
+    assert "distinguishable" not in shown.split("model_error.settlement has an effect but no rank")[1][:120]
+
+
+def test_drivers_near_one_half_are_said_to_be_ranked_by_the_mean(results):
+    wild = often_exceeded(results, 0.5)
+    first = wild["drivers"][0]
+    assert first["mean_elasticity"] < 0
+    shown = Page(render_report(wild)).text
+    assert "Ranked by how much a shift of a parameter's mean changes the chance" in shown
+    size = text.number_text(-10.0 * first["mean_elasticity"], 2)
+    assert (
+        "a shift of its mean upwards by a tenth of its standard deviation lowers the chance by about "
+        f"{size} % of its value (a slope;" in shown
+    )
+    assert "when the mean of each parameter moves up by a tenth of its standard deviation" in shown
+    assert "change of the chance [%] when the mean moves up by 0.1 standard deviations" in shown
+    assert "less spread the chance" not in shown
+
+
+@pytest.mark.parametrize(("share", "measure"), [(0.05, "spread"), (0.5, "mean")])
+def test_every_driver_without_a_rank_is_told_for_what_it_is(results, share, measure):
+    wild = often_exceeded(results, share)
+    states = {
+        "p-both": (True, True),
+        "p-spread": (True, False),
+        "p-mean": (False, True),
+        "p-none": (False,) * 2,
+    }
+    wild["drivers"] = [
+        wild["drivers"][0]
+        | {"parameter": name, "rank": None, "spread_elasticity": -0.2, "spread_clear": a, "mean_clear": b}
+        for name, (a, b) in states.items()
+        if measure == "spread" or not b  # ranked by the mean, what is clear by the mean has a rank
+    ]
+    shown = Page(render_report(wild)).text
+    assert "No parameter has a rank: for none does" in shown
+    assert (
+        "Not distinguishable from no effect when all parameters are judged together, and so without a rank: "
+        "p-none." in shown
+    )
+    assert "p-spread has an effect but no rank, since" in shown
+    assert (
+        shown.count("1 % more spread lowers the chance of exceeding by about 0.20 %")
+        == len(wild["drivers"]) / 2
+    )
+    if measure == "spread":
+        assert "though a shift of their mean has one: p-mean." in shown.replace(
+            "of its mean", "of their mean"
+        )
+
+
+def test_quantiles_on_realisations_without_a_number_are_said_in_words(results):
+    wild = copy.deepcopy(results)
+    wild["limits"] = [wild["limits"][0], wild["limits"][3]]
+    for entry in wild["limits"]:
+        entry["summary"] |= {"mean": None, "sd": None}
+        entry["summary"]["quantiles"] |= {"0.75": None, "0.95": None}
+    wild["settlement"]["quantiles"]["0.95"] = [None for _ in wild["settlement"]["times"]]
+    wild["settlement"]["mean"] = [None for _ in wild["settlement"]["times"]]
+    wild["slip"][0]["quantiles"] = dict.fromkeys(wild["slip"][0]["quantiles"])
+    wild["slip"][0]["mean"] = None
+    shown = Page(render_report(wild)).text
+    assert re.search(r"median 0\.\d+ years; 5 % point 0\.\d+ years, 95 % point not reached", shown)
+    assert re.search(r"median 0\.\d+ m; 5 % point 0\.\d+ m, 95 % point beyond the computation", shown)
+    assert re.search(r"is 0\.\d+ m \(5 % point 0\.\d+ m, 95 % point beyond the computation\)", shown)
+    assert "first lift 0.077 1.50" + 6 * " beyond the computation" in shown
+    assert "median beyond the computation, 5 to 95 % beyond the computation to beyond" in shown
+    wild["limits"][1]["summary"]["quantiles"] = dict.fromkeys(("0.05", "0.25", "0.5", "0.75", "0.95"))
+    shown = Page(render_report(wild)).text
+    assert "median not reached; 5 % point not reached, 95 % point not reached" in shown
+    assert "not more than 2 years not reached" in shown  # in the table of limits
+
+
 def test_area_load_without_slip_has_no_slip_section(results):
     stages = [stage | {"height_after": None, "pressure_after": 40.0} for stage in results["ground"]["stages"]]
     ground = results["ground"] | {"load": {"shape": "area", "text": "wide"}, "stages": stages}
@@ -269,6 +373,7 @@ def test_limit_without_exceedances_has_drivers_without_numbers(results):
     nothing = {
         "limit": results["limits"][0]["name"], "parameter": "soft clay.lambda", "rank": None,
         "spread_elasticity": None, "spread_interval": [None, None], "mean_elasticity": None,
+        "spread_clear": None, "mean_clear": None,
         "mean_interval": [None, None], "share": None, "share_interval": [None, None], "direction": "unclear",
     }  # fmt: skip
     quality = {
@@ -279,7 +384,7 @@ def test_limit_without_exceedances_has_drivers_without_numbers(results):
     }
     shown = Page(render_report(results | {"drivers": [nothing], "driver_quality": [quality]})).text
     assert "Read from 0 exceeding realisations. No realisation exceeds the limit." in shown
-    assert "No parameter stands out from the noise of these realisations." in shown
+    assert "No parameter could be judged, and none has a rank." in shown
     assert "lambda – not available not available" in shown
 
 

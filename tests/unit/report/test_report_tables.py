@@ -55,6 +55,34 @@ def test_names_with_commas_and_quotes_are_quoted(results, tmp_path):
     assert pd.read_csv(tmp_path / "limits.csv")["limit"].tolist() == [name]
 
 
+def test_what_has_no_number_is_said_in_words(results, tmp_path):
+    limits = [results["limits"][k] | {"summary": {"mean": None, "sd": None}} for k in (0, 3)]
+    for entry in limits:
+        entry["summary"]["quantiles"] = {"0.05": 0.5, "0.25": 0.75, "0.5": 1.25, "0.75": None, "0.95": None}
+    settlement = results["settlement"] | {"mean": [None, *results["settlement"]["mean"][1:]]}
+    write_tables(results | {"limits": limits, "settlement": settlement}, tmp_path)
+    frame = pd.read_csv(tmp_path / "limits.csv", dtype=str)
+    for column in ("mean [unit]", "sd [unit]", "p75 [unit]", "p95 [unit]"):
+        assert frame[column].tolist() == ["beyond the computation", "not reached"]
+    assert frame["p50 [unit]"].tolist() == ["1.25", "1.25"]
+    means = pd.read_csv(tmp_path / "settlement.csv", dtype=str)["mean [m]"]
+    assert means[0] == "beyond the computation"
+    assert [float(value) for value in means[1:]] == settlement["mean"][1:]
+
+
+def test_drivers_say_what_ranks_and_what_is_clear(results, tmp_path):
+    quality = [row | {"ranked_by": "mean"} for row in results["driver_quality"][:1]]
+    rows = [
+        results["drivers"][0],
+        results["drivers"][0] | {"spread_clear": None, "mean_clear": None},
+        results["drivers"][-1],
+    ]
+    write_tables(results | {"drivers": rows, "driver_quality": quality}, tmp_path)
+    frame = pd.read_csv(tmp_path / "drivers.csv", dtype=str)
+    assert frame["ranked by"].tolist() == ["mean", "mean", "spread"]
+    assert frame["spread clear"].fillna("").tolist() == ["True", "", str(rows[2]["spread_clear"])]
+
+
 def test_missing_parts_give_empty_tables(results):
     frames = tables({"limits": results["limits"]})
     assert [len(frames[name]) for name in ("limits", "drivers", "settlement", "parameters")] == [4, 0, 0, 0]

@@ -188,6 +188,20 @@ def test_pair_text(ends, expected):
     assert text.pair_text(ends) == expected
 
 
+@pytest.mark.parametrize(
+    ("low", "high", "expected"),
+    [
+        (1.2, 3.4, "nine times in ten between 1.20 years and 3.40 years"),
+        (1.2, None, "5 % point 1.20 years, 95 % point not reached"),
+        (None, None, "5 % point not reached, 95 % point not reached"),
+    ],
+)
+def test_range_text(low, high, expected):
+    beyond = text.uncomputed_text("time_to_consolidation")
+    assert text.range_text(low, high, "years", beyond) == expected
+    assert text.uncomputed_text("slip_safety") == "beyond the computation"
+
+
 def test_money_and_lists():
     assert text.money_text(900e3, "EUR") == "EUR 900,000"
     assert text.money_text(None, "EUR") == "not available"
