@@ -34,8 +34,8 @@ _EMBANKMENT = (
 )
 _AREA = ("The load is taken as wide compared with the depth of the clay: every depth feels it in full.",)
 _SUBMERGENCE = (
-    "The water table keeps its level: what sinks below it, first the ground above it and then the fill, loses "
-    "the weight of the water it displaces.",
+    "The water table keeps its level: what sinks below it, first the ground above it and then the fill, "
+    "loses the weight of the water it displaces.",
 )
 
 

@@ -23,8 +23,8 @@ def remarks(scenario: Scenario) -> tuple[str, ...]:
     found = []
     if measured and "mode_factor" not in scenario.site.model_fields_set:
         found.append(
-            f"the undrained strength of {', '.join(measured)} is given outright, and the default mode factor of "
-            "0.80 for triaxial compression is applied to it; if it stems from another test, give "
+            f"the undrained strength of {', '.join(measured)} is given outright, and the default mode factor "
+            "of 0.80 for triaxial compression is applied to it; if it stems from another test, give "
             "site.mode_factor (1.0 for a strength that already is an average along a slip surface)"
         )
     return tuple(found)
