@@ -3,7 +3,7 @@
 Usual engineering units are in a table of exact factors; anything else of the right
 dimension is left to `pint`, which is imported only then because it is slow to load.
 Base units: m, kPa, kN/m3, year of 365.25 days, m/s (permeability), m2/year
-(coefficient of consolidation), degree.
+(coefficient of consolidation), m3/year (discharge capacity), degree.
 """
 
 import math
@@ -21,6 +21,7 @@ Kind = Literal[
     "time",
     "permeability",
     "coefficient of consolidation",
+    "discharge capacity",
     "angle",
     "number",
 ]
@@ -33,6 +34,7 @@ BASE_UNITS: dict[Kind, str] = {
     "time": "year",
     "permeability": "m/s",
     "coefficient of consolidation": "m2/year",
+    "discharge capacity": "m3/year",
     "angle": "degree",
     "number": "-",
 }
@@ -120,6 +122,7 @@ _TABLE: dict[Kind, dict[str, float]] = {
     "time": _TIMES,
     "permeability": _rates(("m", "mm", "cm", "um", "ft", "in"), 1, "s"),
     "coefficient of consolidation": _rates(("m", "mm", "cm", "ft", "in"), 2, "year"),
+    "discharge capacity": _rates(("m", "mm", "cm", "ft"), 3, "year"),
     "angle": {
         "degree": 1.0,
         "degrees": 1.0,
@@ -139,6 +142,7 @@ _USUAL: dict[Kind, tuple[str, ...]] = {
     "time": ("years", "months", "weeks", "days"),
     "permeability": ("m/s", "cm/s", "mm/s", "m/day", "m/year", "ft/day"),
     "coefficient of consolidation": ("m2/year", "m2/s", "cm2/s", "mm2/s", "m2/day", "ft2/day"),
+    "discharge capacity": ("m3/year", "m3/s", "cm3/s", "m3/day", "ft3/year"),
     "angle": ("degrees", "rad"),
     "number": ("%",),
 }
@@ -157,6 +161,7 @@ _PINT_BASES: dict[Kind, str] = {
     "time": "julian_year",
     "permeability": "meter / second",
     "coefficient of consolidation": "meter ** 2 / julian_year",
+    "discharge capacity": "meter ** 3 / julian_year",
 }
 
 _SUPERSCRIPTS = str.maketrans("²³·μµ", "23*uu")

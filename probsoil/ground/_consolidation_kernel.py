@@ -40,6 +40,7 @@ class Soil(NamedTuple):
     kap: FloatArray
     log_conductivity: FloatArray
     decline: FloatArray
+    radial: FloatArray  # flow to drains over flow through half the cell, at the initial void ratio
 
 
 class Faces(NamedTuple):
@@ -49,6 +50,7 @@ class Faces(NamedTuple):
     power: IntArray
     joined: BoolArray
     drained: FloatArray
+    segment: IntArray  # drainage segment of each cell, rising
 
 
 class Loading(NamedTuple):
@@ -68,6 +70,7 @@ class Schedule(NamedTuple):
     knot: IntArray  # (step, stage)
     weight: FloatArray  # (step, stage)
     record: IntArray  # (step,), -1 for none
+    drains: BoolArray  # (step,), whether vertical drains work
 
 
 class _State(NamedTuple):
@@ -170,7 +173,7 @@ def _add_load(b: int, j: int, share: float, soil: Soil, loading: Loading, trial:
 
 @_compiled
 def _conduct(
-    b: int, span: float, soil: Soil, faces: Faces, state: _State, trial: _Trial, work: _Work
+    b: int, span: float, drains: bool, soil: Soil, faces: Faces, state: _State, trial: _Trial, work: _Work
 ) -> None:
     """Conductances over `span`: harmonic between cells, half a cell to a drained face."""
     n_cell = trial.s.shape[0]
@@ -179,6 +182,7 @@ def _conduct(
             exponent = soil.log_conductivity[b, i, lane] - soil.decline[b, i, lane] * trial.w[i, lane]
             exponent -= faces.follows[i] * max(trial.x[i, lane], state.xp[i, lane])
             work.cell[i, lane] = exponential(exponent) * 2.0 * span / soil.thickness[b, i, lane]
+            work.leak[i, lane] = 0.0
         for _ in range(faces.power[i]):
             for lane in range(LANES):
                 work.cell[i, lane] /= 1.0 + soil.void_ratio[b, i, lane] - trial.w[i, lane]
@@ -187,6 +191,13 @@ def _conduct(
             for lane in range(LANES):
                 upper, lower = work.cell[i - 1, lane], work.cell[i, lane]
                 work.between[i, lane] = upper * lower / (upper + lower)
+    if drains:
+        for i in range(n_cell):
+            for lane in range(LANES):
+                # the cell gets lower as it is squeezed, and its flow paths upward shorter
+                voids = 1.0 + soil.void_ratio[b, i, lane]
+                shortened = (voids - trial.w[i, lane]) / voids
+                work.leak[i, lane] = work.cell[i, lane] * soil.radial[b, i, lane] * shortened * shortened
     for i in range(n_cell):
         if faces.drained[i] > 0.0:
             _leak(b, i, span, soil, faces, state, trial, work)
@@ -211,7 +222,7 @@ def _leak(
         value = exponential(exponent) * 2.0 * span * faces.drained[i] / soil.thickness[b, i, lane]
         for _ in range(faces.power[i]):
             value /= 1.0 + soil.void_ratio[b, i, lane] - mean
-        work.leak[i, lane] = value
+        work.leak[i, lane] += value
 
 
 @_compiled
@@ -299,7 +310,7 @@ def _second_target(span: float, state: _State, trial: _Trial, work: _Work) -> No
 
 @_compiled
 def _iterate(
-    b: int, span: float, soil: Soil, faces: Faces, state: _State, trial: _Trial, work: _Work
+    b: int, span: float, drains: bool, soil: Soil, faces: Faces, state: _State, trial: _Trial, work: _Work
 ) -> None:
     """Newton's method on the stress of all cells until every lane has settled down.
 
@@ -309,7 +320,7 @@ def _iterate(
     for lane in range(LANES):
         work.live[lane] = 1.0
     for _ in range(_MOST_ITERATIONS):
-        _conduct(b, span, soil, faces, state, trial, work)
+        _conduct(b, span, drains, soil, faces, state, trial, work)
         _assemble(b, soil, state, trial, work)
         _solve(work)
         going = _apply(trial, work)
@@ -366,7 +377,8 @@ def consolidate_lanes(
 ) -> None:
     """March all blocks of lanes through all steps; see `consolidation.consolidate`.
 
-    `settlement` (block, step, lane) takes the settlement at the end of each step, `recorded`
+    `settlement` (block, segment, step, lane) takes the settlement of every drainage segment at the end
+    of each step and must hold zeros, `recorded`
     (block, slot, 2, cell, lane) effective and preconsolidation stress, `failed`
     (block, 2, lane) the number of stages that did not converge and of cells with closed voids.
     """
@@ -407,15 +419,17 @@ def consolidate_lanes(
                     _second_target(span, state, trial, work)
                     _guess(state, length, trial)
                 _add_load(b, schedule.knot[n, stage], schedule.weight[n, stage], soil, loading, trial, work)
-                _iterate(b, span, soil, faces, state, trial, work)
+                _iterate(b, span, schedule.drains[n], soil, faces, state, trial, work)
                 for lane in range(LANES):
                     if not work.worst[lane] <= _TOLERANCE:  # also when it is not a number
                         failed[b, 0, lane] += 1
             _count_closed(b, soil, trial, failed)
             _finish(b, length, soil, state, trial)
             slot = schedule.record[n]
-            for lane in range(LANES):
-                settlement[b, n, lane] = state.sunk[0, lane]
+            for i in range(n_cell):
+                segment = faces.segment[i]
+                for lane in range(LANES):
+                    settlement[b, segment, n, lane] += state.mass[i, lane] * state.w[i, lane]
             if slot >= 0:
                 for i in range(n_cell):
                     for lane in range(LANES):

@@ -6,6 +6,7 @@ import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
+from probsoil.ground.foundation import Foundation
 from probsoil.ground.load_stress import embankment_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import Embankment, SiteModel
@@ -13,7 +14,7 @@ from probsoil.ground.site_model import Embankment, SiteModel
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class AppliedLoad:
-    """Added vertical stress below the centreline, and what goes with it.
+    """Added vertical stress below the centreline or reported point, and what goes with it.
 
     Attributes
     ----------
@@ -22,8 +23,9 @@ class AppliedLoad:
     spread : ndarray, shape (n_sample, n_point), [-]
         Share of the pressure of the full-height fill that reaches each point.
     slope_share : ndarray, shape (n_sample, n_point), [-]
-        Stress below the middle of the slope over that below the centreline, full height; 1 for a
-        wide area.
+        Stress below the middle of the slope over that below the centreline, full height; for a
+        foundation that below the edge (at the middle of a long side) over that below the reported
+        point, at most 1; 1 for a wide area.
     height : ndarray, shape (n_knot,), [m]
         Height of fill at the load knots.
     water_depth : ndarray, shape (n_sample,), [m]
@@ -85,7 +87,9 @@ def stress_at(site: SiteModel, load: AppliedLoad, time: float) -> FloatArray:
     return np.asarray((1.0 - share) * load.stress[after - 1] + share * load.stress[after])
 
 
-def applied_load(site: SiteModel, values: Values, depth: FloatArray) -> AppliedLoad:
+def applied_load(
+    site: SiteModel, values: Values, depth: FloatArray, thickness: FloatArray | None = None
+) -> AppliedLoad:
     """Return the stress that the stages add at given depths.
 
     Parameters
@@ -96,6 +100,8 @@ def applied_load(site: SiteModel, values: Values, depth: FloatArray) -> AppliedL
         Value of every quantity by its address.
     depth : ndarray, shape (n_sample, n_point), [m]
         Depths of the points.
+    thickness : ndarray or None, shape (n_sample, n_point), [m]
+        Thickness of ground that each point stands for, about its depth; None for points alone.
 
     Returns
     -------
@@ -105,26 +111,25 @@ def applied_load(site: SiteModel, values: Values, depth: FloatArray) -> AppliedL
     Notes
     -----
     Between knots the stress is taken as linear in time, also while an embankment rises and its
-    top narrows; the base stays the same.
+    top narrows; the base stays the same. A foundation adds nothing above its base; where the base
+    cuts through the thickness of a point, the part below it counts.
     """
     n_sample = depth.shape[0]
     heights = [site.fill_height(float(time)) for time in site.knots]
     pressures = [site.pressure(float(time)) for time in site.knots]
-    has_fill = "load.fill_unit_weight" in values
-    weight = column(values, "load.fill_unit_weight", n_sample) if has_fill else np.zeros(n_sample)
-    if site.embankment is None:
+    weight = fill_weight(values, n_sample)
+    if site.embankment is not None:
+        spread, share = _embankment_spread(site.embankment, depth)
+        at_height = {height: _influence(site.embankment, depth, height) for height in set(heights)}
+        stress = [weight[:, None] * height * at_height[height] for height in heights]
+    else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
+        if site.foundation is not None:
+            spread, share = _foundation_spread(site.foundation, depth, thickness)
         stress = [
-            np.broadcast_to((weight * height + pressure)[:, None], depth.shape)
+            (weight * height + pressure)[:, None] * spread
             for height, pressure in zip(heights, pressures, strict=True)
         ]
-    else:
-        shape = site.embankment
-        spread = _influence(shape, depth, shape.full_height)
-        middle = shape.base_width / 2.0 - shape.side_slope * shape.full_height / 2.0
-        share = np.clip(_influence(shape, depth, shape.full_height, middle) / spread, 0.0, 1.0)
-        at_height = {height: _influence(shape, depth, height) for height in set(heights)}
-        stress = [weight[:, None] * height * at_height[height] for height in heights]
     return AppliedLoad(
         stress=np.stack(stress),
         spread=spread,
@@ -132,6 +137,70 @@ def applied_load(site: SiteModel, values: Values, depth: FloatArray) -> AppliedL
         height=np.array(heights),
         water_depth=column(values, "site.water_table", n_sample),
     )
+
+
+def fill_weight(values: Values, n_sample: int) -> FloatArray:
+    """Return the unit weight of the fill.
+
+    Parameters
+    ----------
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    weight : ndarray, shape (n_sample,), [kN/m3]
+        Zero where all stages give a pressure.
+    """
+    key = "load.fill_unit_weight"
+    return column(values, key, n_sample) if key in values else np.zeros(n_sample)
+
+
+def _embankment_spread(shape: Embankment, depth: FloatArray) -> tuple[FloatArray, FloatArray]:
+    spread = _influence(shape, depth, shape.full_height)
+    middle = shape.base_width / 2.0 - shape.side_slope * shape.full_height / 2.0
+    share = np.clip(_influence(shape, depth, shape.full_height, middle) / spread, 0.0, 1.0)
+    return spread, share
+
+
+def _foundation_spread(
+    shape: Foundation, depth: FloatArray, thickness: FloatArray | None
+) -> tuple[FloatArray, FloatArray]:
+    """Return the influence below the reported point, and that below the edge over it."""
+    half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
+    loaded = 1.0 - _share_above(shape.depth, depth, half)
+    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
+    below = 0.5 * (top + bottom) - shape.depth
+    spread = loaded * shape.influence(below, *shape.at)
+    edge = loaded * shape.influence(below, 0.5 * shape.width, 0.0)
+    share = np.clip(edge / np.where(spread > 0.0, spread, 1.0), 0.0, 1.0)
+    return spread, np.where(spread > 0.0, share, 1.0)
+
+
+def share_above_base(shape: Foundation, points: Points) -> FloatArray:
+    """Return the share of each point's thickness that lies above the base of a foundation.
+
+    Parameters
+    ----------
+    shape : Foundation
+        Its depth.
+    points : Points
+        Depths and thicknesses.
+
+    Returns
+    -------
+    share : ndarray, shape (n_sample, n_point), [-]
+        From 0 below the base to 1 above it.
+    """
+    return _share_above(shape.depth, points.depth, 0.5 * points.thickness)
+
+
+def _share_above(base: float, depth: FloatArray, half: FloatArray) -> FloatArray:
+    whole = np.where(half > 0.0, 2.0 * half, 1.0)
+    within = np.clip((base - depth + half) / whole, 0.0, 1.0)
+    return np.asarray(np.where(half > 0.0, within, depth < base), dtype=np.float64)
 
 
 def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: FloatArray) -> FloatArray:

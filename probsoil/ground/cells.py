@@ -8,6 +8,7 @@ from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ParameterError
 
 DEFAULT_CELLS = 48
+FOUNDATION_CELLS = 72  # below a foundation the added stress changes with depth as well
 _FEWEST_PER_LAYER = 3
 _FEWEST_PER_SEGMENT = 8
 _NEAR_SHARE = 0.03  # of a segment's thickness; how far the refinement at a drained face reaches
@@ -42,9 +43,24 @@ class Cells:
         """Number of cells, [-]."""
         return int(self.layer.size)
 
+    @property
+    def segment(self) -> IntArray:
+        """Drainage segment of each cell, counted from the top, shape (n_cell,), [-]."""
+        return np.cumsum(~self.joined) - 1
+
+    @property
+    def n_segment(self) -> int:
+        """Number of drainage segments, [-]."""
+        return int(self.segment[-1]) + 1
+
 
 def graded_cells(
-    thickness: FloatArray, is_clay: BoolArray, *, base_drained: bool, target: int = DEFAULT_CELLS
+    thickness: FloatArray,
+    is_clay: BoolArray,
+    *,
+    base_drained: bool,
+    load_depth: float = 0.0,
+    target: int = DEFAULT_CELLS,
 ) -> Cells:
     """Return the cells of a profile.
 
@@ -56,6 +72,8 @@ def graded_cells(
         Whether a layer consolidates; the others drain freely and bound the segments.
     base_drained : bool
         Whether what lies below the last layer drains freely. Ground level always does.
+    load_depth : float, [m]
+        Depth of the base of a foundation, where water leaves as well: cells are fine there too.
     target : int, [-]
         Number of cells to aim at over the whole profile.
 
@@ -82,9 +100,14 @@ def graded_cells(
     deep = [float(np.sqrt(thickness[first:last].sum())) for first, last in segments]
     parts = []
     for (first, last), weight in zip(segments, deep, strict=True):
+        below_top = load_depth - float(thickness[:first].sum())
         count = max(_FEWEST_PER_SEGMENT, round(target * weight / sum(deep)))
         bottom_drains = base_drained if last == thickness.size else True
-        parts.append(_segment_cells(thickness[first:last], count, bottom_drains=bottom_drains, first=first))
+        parts.append(
+            _segment_cells(
+                thickness[first:last], count, bottom_drains=bottom_drains, first=first, face=below_top
+            )
+        )
     return Cells(
         layer=np.concatenate([part.layer for part in parts]),
         share=np.concatenate([part.share for part in parts]),
@@ -101,10 +124,14 @@ def _segments(is_clay: BoolArray) -> list[tuple[int, int]]:
     return [(int(a), int(b)) for a, b in zip(starts, ends, strict=True)]
 
 
-def _segment_cells(thickness: FloatArray, count: int, *, bottom_drains: bool, first: int) -> Cells:
+def _segment_cells(
+    thickness: FloatArray, count: int, *, bottom_drains: bool, first: int, face: float
+) -> Cells:
+    """Return the cells of one segment; a load begins `face` below its top, or nearer to ground level."""
     height = float(thickness.sum())
     depth = np.linspace(0.0, height, 4001)
-    distance = np.minimum(depth, height - depth) if bottom_drains else depth
+    top = np.abs(depth - face) if 0.0 < face < height else depth
+    distance = np.minimum(top, height - depth) if bottom_drains else top
     density = 1.0 / (distance + _NEAR_SHARE * height)
     done = np.concatenate([[0.0], np.cumsum(0.5 * (density[1:] + density[:-1]))])
     done /= done[-1]

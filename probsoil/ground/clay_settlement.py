@@ -1,24 +1,29 @@
 """Consolidation of the clay layers of a site and how far it has gone."""
 
+from dataclasses import replace
+
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.ground.applied_load import LoadedGround, relief_by_water, stress_at
+from probsoil.ground.applied_load import LoadedGround, relief_by_water, share_above_base, stress_at
 from probsoil.ground.compression import void_ratio_lost
 from probsoil.ground.consolidation import (
     ClayState,
     Conductivity,
     ConsolidationResult,
     LoadHistory,
+    RadialDrainage,
     Submergence,
     conductivity_from_cv,
     conductivity_from_permeability,
     consolidate,
 )
-from probsoil.ground.constants import SECONDS_PER_YEAR
+from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
-from probsoil.ground.site_model import SiteModel
+from probsoil.ground.site_model import DrainForm, SiteModel
+from probsoil.ground.vertical_drains import drain_factor, well_resistance
 
+_OPEN_ABOVE_BASE = np.log(1e4)  # ln of how much more easily water passes above a foundation's base
 _NOTHING = 1e-9  # m; a settlement below it counts as finished
 
 
@@ -48,6 +53,11 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
         submergence=submergence if site.submergence else None,
     )
     flow = _conductivity(site, values, state)
+    if site.foundation is not None:
+        opened = flow.log_value + _OPEN_ABOVE_BASE * share_above_base(site.foundation, ground.points)[:, clay]
+        flow = replace(flow, log_value=opened)
+    if site.drains is not None:
+        flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
 
 
@@ -117,6 +127,47 @@ def _shortening(
     return np.asarray(state.thickness / (1.0 + state.void_ratio) * lost)
 
 
+def _drainage(site: SiteModel, drains: DrainForm, values: Values, ground: LoadedGround) -> RadialDrainage:
+    """Return the sink that the drains make in every cell, by the share of the cell they reach."""
+    layer, clay = site.cells.layer, ground.clay
+    n_sample = ground.points.depth.shape[0]
+    depth, thickness = ground.points.depth[:, clay], ground.points.thickness[:, clay]
+    ratio = np.stack(
+        [
+            column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
+            for form in site.layers
+        ],
+        axis=1,
+    )[:, layer]
+    smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
+    factor = drain_factor(drains.influence_diameter / drains.diameter, drains.smear_ratio, smear)
+    if drains.discharge_capacity is not None:
+        permeability = ratio * _initial_permeability(site, values, ground)
+        factor = factor + well_resistance(depth, drains.bottom, permeability, drains.discharge_capacity)
+    reached = np.clip((drains.bottom - depth) / thickness + 0.5, 0.0, 1.0)
+    return RadialDrainage(
+        rate=reached * 8.0 * ratio / (factor * drains.influence_diameter**2), start=drains.installed
+    )
+
+
+def _initial_permeability(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:
+    """Return the vertical permeability in situ, shape (n_sample, n_cell), [m/year]."""
+    state = _clay_state(site, ground)
+    permeability = np.empty_like(state.lam)
+    for index, form in enumerate(site.layers):
+        if form.is_clay:
+            mine = site.cells.layer == index
+            given = column(values, f"{form.name}.{form.flow}", state.lam.shape[0])[:, None]
+            if form.flow == "k":
+                permeability[:, mine] = given * SECONDS_PER_YEAR
+            else:
+                compressibility = state.lam[:, mine] / (1.0 + state.void_ratio[:, mine])
+                permeability[:, mine] = (
+                    given * WATER_UNIT_WEIGHT * compressibility / state.yield_stress[:, mine]
+                )
+    return permeability
+
+
 def settlement_when_done(
     site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, added: FloatArray
 ) -> FloatArray:
@@ -140,6 +191,53 @@ def settlement_when_done(
     """
     initial = ground.points.stress[:, ground.clay]
     return np.asarray(_shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+
+
+def final_added_stress(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
+    """Return the added stress that stays after the last stage.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Stages.
+    ground : LoadedGround
+        Added stress.
+    result : ConsolidationResult
+        Consolidation of the clay, for what submergence takes off.
+
+    Returns
+    -------
+    added : ndarray, shape (n_sample, n_cell), [kPa]
+        With the settlement at the horizon.
+    """
+    settled = np.nan_to_num(result.settlement[:, -1])
+    relief = relief_by_water(site, ground.load, site.horizon, settled)
+    return np.asarray((stress_at(site, ground.load, site.horizon) - relief)[:, ground.clay])
+
+
+def segment_settlement_when_done(
+    site: SiteModel, ground: LoadedGround, result: ConsolidationResult
+) -> FloatArray:
+    """Return the settlement of every drainage segment once all excess pore pressure has gone.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells and stages.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    result : ConsolidationResult
+        Consolidation of the clay.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample, n_segment), [m]
+        Under the load that stays after the last stage.
+    """
+    final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
+    shortened = _shortening(site, ground, final, result.yield_stress[:, -1])
+    segment = site.cells.segment
+    return np.stack([shortened[:, segment == one].sum(axis=1) for one in range(site.cells.n_segment)], axis=1)
 
 
 def degrees_of_consolidation(

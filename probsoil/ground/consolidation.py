@@ -45,6 +45,22 @@ class ClayState:
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class RadialDrainage:
+    """Flow of water to vertical drains, as a sink in every cell they reach.
+
+    Attributes
+    ----------
+    rate : ndarray, shape (n_sample, n_cell), [1/m2]
+        ``8 (kh/kv) / (mu De^2)``, zero where no drain reaches.
+    start : float, [years]
+        When the drains begin to work.
+    """
+
+    rate: FloatArray
+    start: float
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class Conductivity:
     """How fast water moves, as a function of the state.
 
@@ -61,12 +77,15 @@ class Conductivity:
         1 where the conductivity falls with the larger of stress and preconsolidation stress.
     power : ndarray of int, shape (n_cell,), [-]
         Power of 1/(1 + e).
+    drains : RadialDrainage or None
+        Vertical drains besides; a step that ends by their start runs without them.
     """
 
     log_value: FloatArray
     decline: FloatArray
     follows: FloatArray
     power: IntArray
+    drains: RadialDrainage | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -113,9 +132,9 @@ class ConsolidationResult:
 
     Attributes
     ----------
-    settlement : ndarray, shape (n_sample, n_time), [m]
-        Settlement of the clay since the start; the first time is the start. Not a number where the
-        computation failed.
+    by_segment : ndarray, shape (n_sample, n_segment, n_time), [m]
+        Settlement of every drainage segment since the start; the first time is the start. Not a
+        number where the computation failed.
     stress, yield_stress : ndarray, shape (n_sample, n_record, n_cell), [kPa]
         Effective vertical and preconsolidation stress at the recorded times; those in situ where
         the computation failed.
@@ -126,11 +145,16 @@ class ConsolidationResult:
         far, so initial stress, void ratio and lambda do not belong together.
     """
 
-    settlement: FloatArray
+    by_segment: FloatArray
     stress: FloatArray
     yield_stress: FloatArray
     converged: BoolArray
     voids_closed: BoolArray
+
+    @property
+    def settlement(self) -> FloatArray:
+        """Settlement of the clay since the start, shape (n_sample, n_time), [m]."""
+        return np.asarray(self.by_segment.sum(axis=1))
 
 
 def conductivity_from_permeability(
@@ -239,7 +263,8 @@ def consolidate(
     With the material coordinate a (depth before loading) and excess pore pressure u,
 
     .. math:: \frac{1}{1 + e_0}\frac{\partial e}{\partial t} = \frac{\partial}{\partial a}
-        \left[\frac{k}{\gamma_w}\frac{1 + e_0}{1 + e}\frac{\partial u}{\partial a}\right],
+        \left[\frac{k}{\gamma_w}\frac{1 + e_0}{1 + e}\frac{\partial u}{\partial a}\right]
+        - \frac{k_h}{\gamma_w}\frac{1 + e}{1 + e_0}\frac{8 u}{\mu D_e^2},
         \qquad \sigma' = \sigma'_0 + \Delta\sigma - u
 
     as in Gibson, England and Hussey (1967) without self-weight terms (the stress in situ is the
@@ -249,7 +274,8 @@ def consolidate(
     the effective stress with the slope of the branch in force and conductances renewed, but not
     differentiated, at every iteration. Preconsolidation stress follows at the end of each step,
     never beyond the greatest total stress. Void ratio and conductivity are on the compression curve
-    of `compression.void_ratio_lost`. Only vertical flow; no creep.
+    of `compression.void_ratio_lost`. The last term is radial flow to vertical drains with equal vertical
+    strain (`vertical_drains`). No creep.
 
     References
     ----------
@@ -262,7 +288,7 @@ def consolidate(
     knot, weight = _placed(load.time, times)
     slot = _slots(times, record)
     lanes = Lanes(n_sample)
-    settlement = np.zeros((lanes.n_block, times.size - 1, LANES))
+    settlement = np.zeros((lanes.n_block, cells.n_segment, times.size - 1, LANES))
     recorded = np.zeros((lanes.n_block, record.size, 2, cells.n_cell, LANES))
     failed = np.zeros((lanes.n_block, 2, LANES), dtype=np.int64)
     consolidate_lanes(
@@ -272,9 +298,16 @@ def consolidate(
             power=conductivity.power.astype(np.int64),
             joined=cells.joined,
             drained=cells.drained,
+            segment=cells.segment,
         ),
         _loading(lanes, load),
-        Schedule(step=np.diff(times), knot=knot, weight=weight, record=slot),
+        Schedule(
+            step=np.diff(times),
+            knot=knot,
+            weight=weight,
+            record=slot,
+            drains=_working(times, conductivity.drains),
+        ),
         settlement,
         recorded,
         failed,
@@ -282,17 +315,24 @@ def consolidate(
     through_time = lanes.unpack(settlement)
     kept = lanes.unpack(recorded)
     unsolved, closed = lanes.unpack(failed).T > 0
-    good = ~unsolved & ~closed & np.isfinite(through_time).all(axis=1)
+    good = ~unsolved & ~closed & np.isfinite(through_time).all(axis=(1, 2))
     through_time[~good] = np.nan
     kept[~good, :, 0] = state.stress[~good, None]
     kept[~good, :, 1] = state.yield_stress[~good, None]
     return ConsolidationResult(
-        settlement=np.concatenate([np.zeros((n_sample, 1)), through_time], axis=1),
+        by_segment=np.concatenate([np.zeros((n_sample, cells.n_segment, 1)), through_time], axis=2),
         stress=kept[:, :, 0],
         yield_stress=kept[:, :, 1],
         converged=good,
         voids_closed=closed,
     )
+
+
+def _working(times: FloatArray, drains: RadialDrainage | None) -> BoolArray:
+    """Return for every step whether the drains work."""
+    if drains is None:
+        return np.zeros(times.size - 1, dtype=np.bool_)
+    return np.asarray(times[1:] > drains.start)
 
 
 def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
@@ -317,6 +357,8 @@ def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
 
 
 def _soil(lanes: Lanes, state: ClayState, conductivity: Conductivity) -> Soil:
+    drains = conductivity.drains
+    rate = np.zeros_like(state.thickness) if drains is None else drains.rate
     return Soil(
         thickness=lanes.pack(state.thickness),
         stress=lanes.pack(state.stress),
@@ -326,6 +368,7 @@ def _soil(lanes: Lanes, state: ClayState, conductivity: Conductivity) -> Soil:
         kap=lanes.pack(state.kap),
         log_conductivity=lanes.pack(conductivity.log_value),
         decline=lanes.pack(conductivity.decline),
+        radial=lanes.pack(0.5 * state.thickness**2 * rate),
     )
 
 

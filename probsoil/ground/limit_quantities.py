@@ -5,6 +5,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.degree import time_to_degree
 from probsoil.ground.profile import Values, column
 from probsoil.ground.response import Response
 from probsoil.ground.site_model import SiteModel
@@ -95,23 +96,4 @@ def _checks(site: SiteModel, limit: SlipSafetyLimit) -> list[int]:
 def _time_to_degree(site: SiteModel, limit: ConsolidationTimeLimit, response: Response) -> FloatArray:
     """Return when the degree is first reached after the last stage, infinite if never."""
     first = int(np.searchsorted(response.times, site.last_change))
-    times, degree = response.times[first:], response.degree[:, first:]
-    reached = degree >= limit.degree
-    index = np.where(reached.any(axis=1), reached.argmax(axis=1), -1)
-    rows, before = np.arange(index.size), np.maximum(index - 1, 0)
-    low, high = _straightened(degree[rows, before]), _straightened(degree[rows, index])
-    wanted = _straightened(np.array(limit.degree))
-    share = np.clip((wanted - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
-    time = times[before] + share * (times[index] - times[before])
-    return np.asarray(np.where(index < 0, np.inf, time), dtype=np.float64)
-
-
-def _straightened(degree: FloatArray) -> FloatArray:
-    """Return the time factor that Terzaghi's theory gives a degree, nearly straight in time.
-
-    Its two usual forms, the parabola up to 60 % and the exponential tail beyond.
-    """
-    tail = -np.log(np.maximum(1.0 - degree, 1e-9))
-    start = 0.6
-    joined = np.pi / 4.0 * start**2 + (tail + np.log(1.0 - start)) * 4.0 / np.pi**2
-    return np.asarray(np.where(degree <= start, np.pi / 4.0 * degree**2, joined))
+    return time_to_degree(response.times[first:], response.degree[:, first:], limit.degree)

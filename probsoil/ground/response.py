@@ -10,6 +10,7 @@ from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consoli
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.granular_settlement import granular_settlement
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
+from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
 
@@ -25,7 +26,9 @@ class Response:
     times : ndarray, shape (n_time,), [years]
         Time axis.
     settlement : ndarray, shape (n_sample, n_time), [m]
-        Settlement of ground level at the centreline.
+        Settlement of ground level at the centreline, secondary compression included.
+    secondary : ndarray, shape (n_sample, n_time), [m]
+        Part of it that is secondary compression.
     degree : ndarray, shape (n_sample, n_time), [-]
         Degree of consolidation of the clay under the load of each time from the end of the last
         stage on; not a number before it.
@@ -52,6 +55,7 @@ class Response:
 
     times: FloatArray
     settlement: FloatArray
+    secondary: FloatArray
     degree: FloatArray
     record: FloatArray
     degree_at_record: FloatArray
@@ -137,18 +141,20 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     points = points_in_situ(site, values, n_sample)
     columns = clay_columns(site, values, n_sample)
     yield_stress, floored = yield_stresses(site, values, points)
-    load = applied_load(site, values, points.depth)
+    load = applied_load(site, values, points.depth, points.thickness)
     clay = np.array([site.layers[index].is_clay for index in points.layer])
     ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
     result = consolidate_clay(site, values, ground)
     granular = granular_settlement(site, values, ground)
+    secondary = secondary_settlement(site, values, ground, result)
     strength, before = zone_strengths(site, values, ground, result)
     slip, critical = slip_at_checks(site, values, ground, strength)
     slip[~result.converged] = np.nan
     at_record, after_last = degrees_of_consolidation(site, ground, result)
     response = Response(
         times=site.times,
-        settlement=result.settlement + granular,
+        settlement=result.settlement + granular + secondary,
+        secondary=secondary,
         degree=after_last,
         record=site.record,
         degree_at_record=at_record,

@@ -1,14 +1,16 @@
 """What of a scenario is the same in every realisation: layers in order, shape and stages of the load."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.ground.cells import DEFAULT_CELLS, Cells, graded_cells
+from probsoil.ground.cells import DEFAULT_CELLS, FOUNDATION_CELLS, Cells, graded_cells
+from probsoil.ground.foundation import Foundation, foundation_of
 from probsoil.ground.slip_circles import CircleFamily, CircleLayout, EmbankmentSection
 from probsoil.ground.time_steps import time_axis
+from probsoil.ground.vertical_drains import influence_diameter
 from probsoil.scenario import Scenario
 from probsoil.scenario.layers import ClayLayer, GranularLayer
 from probsoil.scenario.loads import EmbankmentLoad
@@ -42,6 +44,8 @@ class LayerForm:
         Whether S and m replace the strength that follows from M, lambda and kappa.
     weight_above : bool
         Whether the part above the water table has a unit weight of its own.
+    creeps : bool
+        Whether secondary compression is computed.
     """
 
     name: str
@@ -54,6 +58,7 @@ class LayerForm:
     flow: str = "k"
     strength_given: bool = False
     weight_above: bool = False
+    creeps: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -138,6 +143,34 @@ class Embankment:
         )
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DrainForm:
+    """Vertical drains, apart from how much they smear.
+
+    Attributes
+    ----------
+    influence_diameter : float, [m]
+        Diameter of the cylinder of soil that one drain serves.
+    diameter : float, [m]
+        Equivalent diameter of a drain.
+    smear_ratio : float, [-]
+        Diameter of the smear zone over that of the drain.
+    installed : float, [years]
+        Time from which the drains work.
+    bottom : float, [m]
+        Depth that they reach.
+    discharge_capacity : float or None, [m3/year]
+        Flow at a hydraulic gradient of one; None for no resistance.
+    """
+
+    influence_diameter: float
+    diameter: float
+    smear_ratio: float
+    installed: float
+    bottom: float
+    discharge_capacity: float | None
+
+
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class SiteModel:
     """Everything about ground and load that no realisation changes.
@@ -149,9 +182,13 @@ class SiteModel:
     base_drained : bool
         Whether what lies below the last layer drains freely.
     embankment : Embankment or None
-        None for a load over a wide area.
+        None for any other load.
+    foundation : Foundation or None
+        Strip, rectangle or circle; None for any other load.
     stages : tuple of StageForm
         In order of time.
+    drains : DrainForm or None
+        Vertical drains.
     submergence : bool
         Whether fill that sinks below the water table loses weight.
     horizon : float, [years]
@@ -168,12 +205,15 @@ class SiteModel:
         Circles to look at, one layout for each of `slip_times`.
     families : tuple of CircleFamily
         Circles that compete, one family for each of `slip_times`; empty before they are screened.
+    bearing_times : ndarray, shape (n_bearing,), [years]
+        Times among `record` at which bearing is looked at (load on a foundation).
     """
 
     layers: tuple[LayerForm, ...]
     base_drained: bool
     embankment: Embankment | None
     stages: tuple[StageForm, ...]
+    drains: DrainForm | None
     submergence: bool
     horizon: float
     cells: Cells
@@ -182,6 +222,8 @@ class SiteModel:
     slip_times: FloatArray
     layouts: tuple[CircleLayout, ...]
     families: tuple[CircleFamily, ...] = ()
+    foundation: Foundation | None = None
+    bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
 
     @property
     def knots(self) -> FloatArray:
@@ -218,6 +260,12 @@ class SiteModel:
             Pressure on the ground.
         """
         return sum(stage.pressure * _laid(stage, time) for stage in self.stages)
+
+    @property
+    def last_increase(self) -> float:
+        """Middle of the last stage that added load, [years]."""
+        adding = [stage for stage in self.stages if stage.height > 0.0 or stage.pressure > 0.0]
+        return 0.5 * (adding[-1].start + adding[-1].end)
 
     @property
     def last_change(self) -> float:
@@ -257,15 +305,19 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         for stage in scenario.stages
     )
     embankment = _embankment(scenario, stages)
+    foundation = foundation_of(scenario.load)
     record, slip_times = _wanted(scenario, stages, embankment)
     horizon = float(scenario.horizon)
     cells = graded_cells(
         np.array([layer.mean_thickness for layer in layers]),
         np.array([layer.is_clay for layer in layers]),
         base_drained=scenario.site.base == "drained",
-        target=DEFAULT_CELLS * refine,
+        load_depth=0.0 if foundation is None else foundation.depth,
+        target=(DEFAULT_CELLS if foundation is None else FOUNDATION_CELLS) * refine,
     )
     ramps = [(stage.start, stage.end) for stage in stages]
+    drains = _drain_form(scenario)
+    restart = [] if drains is None else [drains.installed]
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *_limit_times(scenario), *report]
     layouts = _layouts(embankment, layers, stages, slip_times, density=0.5 * (1.0 + refine))
@@ -274,13 +326,30 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         base_drained=scenario.site.base == "drained",
         embankment=embankment,
         stages=stages,
+        drains=drains,
         submergence=bool(scenario.load.submergence),
         horizon=horizon,
         cells=cells,
-        times=time_axis(ramps, wanted, horizon, refine=refine),
+        times=time_axis(ramps, wanted, horizon, restart=restart, refine=refine),
         record=record,
         slip_times=slip_times,
         layouts=layouts,
+        foundation=foundation,
+        bearing_times=np.zeros(0) if foundation is None else _bearing_times(scenario, stages),
+    )
+
+
+def _drain_form(scenario: Scenario) -> DrainForm | None:
+    given = scenario.drains
+    if given is None:
+        return None
+    return DrainForm(
+        influence_diameter=influence_diameter(given.spacing, given.pattern),
+        diameter=given.equivalent_diameter,
+        smear_ratio=given.smear_ratio,
+        installed=given.installed,
+        bottom=given.bottom,
+        discharge_capacity=given.discharge_capacity,
     )
 
 
@@ -306,6 +375,7 @@ def _layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
         flow="cv" if layer.permeability.cv is not None else "k",
         strength_given=layer.strength is not None,
         weight_above=layer.unit_weight_above is not None,
+        creeps=layer.C_alpha_ratio is not None,
     )
 
 
@@ -339,13 +409,31 @@ def _wanted(
     """Return the times at which stresses are kept, and those at which slip is looked at."""
     ends = {stage.end for stage in stages}
     degree = {limit.at for limit in scenario.limits if limit.quantity == "degree_of_consolidation"}
-    slip = {limit.at for limit in scenario.limits if limit.quantity == "slip_safety" and limit.at is not None}
-    kept = ends | degree | slip | {float(scenario.horizon)}
+    slip = _times_of(scenario, "slip_safety")
+    kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
     if embankment is None:
         return record, np.zeros(0)
     check = [time for time in sorted(ends | slip) if time > 0.0 and _height(stages, time) > 0.0]
     return record, np.array(check, dtype=np.float64)
+
+
+def _times_of(scenario: Scenario, quantity: str) -> set[float]:
+    """Return the single times at which limits of a quantity look."""
+    times = {getattr(limit, "at", None) for limit in scenario.limits if limit.quantity == quantity}
+    return {time for time in times if time is not None}
+
+
+def _bearing_times(scenario: Scenario, stages: Sequence[StageForm]) -> FloatArray:
+    """Return when bearing is looked at: stage ends and times of limits, where there is a load."""
+    times = {stage.end for stage in stages} | _times_of(scenario, "bearing_safety")
+    loaded = [time for time in sorted(times) if time > 0.0 and _pressed(stages, time)]
+    return np.array(loaded, dtype=np.float64)
+
+
+def _pressed(stages: Sequence[StageForm], time: float) -> bool:
+    pressure = sum(stage.pressure * _laid(stage, time) for stage in stages)
+    return _height(stages, time) > 0.0 or pressure > 1e-9
 
 
 def _height(stages: Sequence[StageForm], time: float) -> float:

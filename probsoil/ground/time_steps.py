@@ -10,11 +10,17 @@ from probsoil.errors import ParameterError
 
 GROWTH = 1.4
 _FIRST_SHARE = 0.25  # of the ramp that ends where the steps begin
+_SUDDEN_SHARE = 0.001  # of the horizon, for the length of a ramp where something sudden happens
 _NEAR = 0.3  # a free step that ends this close (in steps) to a wanted time gives way
 
 
 def time_axis(
-    ramps: Sequence[tuple[float, float]], wanted: Sequence[float], horizon: float, *, refine: int = 1
+    ramps: Sequence[tuple[float, float]],
+    wanted: Sequence[float],
+    horizon: float,
+    *,
+    restart: Sequence[float] = (),
+    refine: int = 1,
 ) -> FloatArray:
     """Return the times at which the ground is computed.
 
@@ -26,6 +32,8 @@ def time_axis(
         Further times that must be hit exactly.
     horizon : float, [years]
         End of the axis.
+    restart : sequence of float, [years]
+        Other times at which something sudden happens and the steps start anew.
     refine : int, [-]
         Steps are about this many times shorter.
 
@@ -45,10 +53,12 @@ def time_axis(
     quarter of that ramp's length: excess pore pressure decays on every time scale at once, and
     a geometric sequence resolves them alike.
     """
-    knots = sorted({0.0, horizon, *(t for ramp in ramps for t in ramp)})
+    sudden = [time for time in restart if 0.0 < time < horizon]
+    knots = sorted({0.0, horizon, *sudden, *(t for ramp in ramps for t in ramp)})
     if knots[0] < 0.0 or knots[-1] > horizon or any(not 0.0 <= t <= horizon for t in wanted):
         raise ParameterError(f"all times must lie from 0 to the horizon of {horizon:g} years")
     length = {start: end - start for start, end in ramps} | {end: end - start for start, end in ramps}
+    length |= {time: _SUDDEN_SHARE * horizon for time in sudden if time not in length}
     pieces = []
     for start, end in pairwise(knots):
         first = _FIRST_SHARE * length.get(start, 4.0 * (end - start))

@@ -12,12 +12,13 @@ from probsoil.scenario.distributions import (
 )
 from probsoil.scenario.layers import ClayLayer, GranularLayer, Permeability, Preconsolidation, Strength
 from probsoil.scenario.limits import (
+    BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
     SettlementLimit,
     SlipSafetyLimit,
 )
-from probsoil.scenario.loads import AreaLoad, EmbankmentLoad, Stage
+from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, Stage, StripLoad
 from probsoil.scenario.models import Dependence, ModelError, Scenario, Site
 from probsoil.scenario.quantities import Quantity
 from probsoil.scenario.reader import parse_scenario, read_scenario
@@ -29,7 +30,9 @@ from probsoil.scenario.starters import STARTERS, starter_text
 __all__ = [
     "STARTERS",
     "AreaLoad",
+    "BearingSafetyLimit",
     "Beta",
+    "CircleLoad",
     "ClayLayer",
     "ConsolidationLimit",
     "ConsolidationTimeLimit",
@@ -44,12 +47,14 @@ __all__ = [
     "Permeability",
     "Preconsolidation",
     "Quantity",
+    "RectangleLoad",
     "Scenario",
     "SettlementLimit",
     "Site",
     "SlipSafetyLimit",
     "Stage",
     "Strength",
+    "StripLoad",
     "Triangular",
     "TruncatedNormal",
     "Uniform",

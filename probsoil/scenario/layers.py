@@ -5,7 +5,7 @@ from typing import Annotated, Literal
 from pydantic import ConfigDict, Field
 
 from probsoil.scenario.base import Name, Table
-from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Uncertain
 
 Thickness = Annotated[
@@ -249,6 +249,10 @@ class ClayLayer(Table):
         Critical-state friction, one of the two.
     permeability : Permeability
         Flow of water.
+    kh_kv : Distribution, [-]
+        Horizontal over vertical permeability, for flow to vertical drains.
+    C_alpha_ratio : Distribution or None, [-]
+        Secondary compression index over compression index; None for no creep.
     strength : Strength or None
         Replaces the undrained strength that follows from M, lambda and kappa.
     """
@@ -296,6 +300,26 @@ class ClayLayer(Table):
     M: FrictionM = None
     phi: FrictionAngle = None
     permeability: Permeability = Field(description="cv alone, or k with ck")
+    kh_kv: Annotated[
+        Distribution,
+        Uncertain(
+            kind="number",
+            low=0.2,
+            high=50.0,
+            source="common practice",
+            meaning="horizontal / vertical permeability, for flow to vertical drains",
+        ),
+    ] = Constant(value=1.0)
+    C_alpha_ratio: Annotated[
+        Distribution | None,
+        Uncertain(
+            kind="number",
+            low=0.0,
+            high=0.15,
+            source="common practice",
+            meaning="secondary compression index / compression index; no creep if left out",
+        ),
+    ] = None
     strength: Strength | None = Field(
         default=None, description="overrides the strength from M, lambda and kappa"
     )

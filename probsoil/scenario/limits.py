@@ -141,6 +141,40 @@ class SlipSafetyLimit(_Limit):
         return self.not_less_than
 
 
+class BearingSafetyLimit(_Limit):
+    """Factor of safety against bearing failure, at one time or the least over the stage ends.
+
+    Attributes
+    ----------
+    quantity : str
+        ``bearing_safety``.
+    at : float or None, [year]
+        Time; None for the least over the stage ends.
+    not_less_than : float, [-]
+        Threshold.
+    """
+
+    sense: ClassVar[Sense] = "not less than"
+    quantity: Literal["bearing_safety"] = Field(description="what is limited")
+    at: OptionalTime = None
+    not_less_than: Annotated[
+        float,
+        Number(
+            kind="number",
+            low=0.0,
+            high=20.0,
+            open_low=True,
+            source="common practice",
+            meaning="least tolerable factor of safety against undrained bearing failure",
+        ),
+    ]
+
+    @property
+    def threshold(self) -> float:
+        """Threshold [-]."""
+        return self.not_less_than
+
+
 class ConsolidationLimit(_Limit):
     """Degree of consolidation that should be reached by a time.
 
@@ -222,6 +256,6 @@ class ConsolidationTimeLimit(_Limit):
 
 
 Limit = Annotated[
-    SettlementLimit | SlipSafetyLimit | ConsolidationLimit | ConsolidationTimeLimit,
+    SettlementLimit | SlipSafetyLimit | BearingSafetyLimit | ConsolidationLimit | ConsolidationTimeLimit,
     Field(discriminator="quantity"),
 ]

@@ -2,11 +2,12 @@
 
 from typing import Annotated, Literal
 
-from pydantic import ConfigDict, Field
+from pydantic import BeforeValidator, ConfigDict, Field
 
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number, Uncertain
+from probsoil.scenario.slips import Slip, refuse
 
 _FILL_WEIGHT = Uncertain(
     kind="unit weight", low=0.2, high=30.0, source="common practice", meaning="bulk unit weight of the fill"
@@ -94,7 +95,125 @@ class AreaLoad(Table):
     submergence: Submergence = True
 
 
-Load = Annotated[EmbankmentLoad | AreaLoad, Field(discriminator="shape")]
+def _side(meaning: str) -> Number:
+    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
+
+
+def _distance(meaning: str, low: float = 0.0) -> Number:
+    return Number(kind="length", low=low, high=1000.0, source="by definition", meaning=meaning)
+
+
+_PLAN_DISTANCE = _distance("distance from the centre of the rectangle", low=-1000.0)
+
+
+def _point(raw: object) -> object:
+    if not isinstance(raw, list | tuple) or len(raw) != 2:
+        refuse([Slip(path=(), message="two distances are needed", allowed="such as [1.5, 0.0]")])
+    return tuple(raw)
+
+
+class _Foundation(Table):
+    """What every foundation has: a load of uniform net pressure at some depth.
+
+    Attributes
+    ----------
+    depth : float, [m]
+        Depth of the base below ground level.
+    contact : str
+        ``rough`` or ``smooth``: whether the base holds the soil under it against sliding outward.
+    fill_unit_weight : Distribution or None, [kN/m3]
+        Unit weight of what a stage adds by height; needed when a stage gives one.
+    submergence : bool
+        Whether what sinks below the water table loses the weight of water.
+    """
+
+    depth: Annotated[
+        float,
+        Number(
+            kind="length",
+            low=0.0,
+            high=50.0,
+            source="common practice",
+            meaning="depth of the base below ground level; stress is added from there down, and the stages "
+            "give the net pressure, in excess of the weight of soil dug out",
+        ),
+    ] = 0.0
+    contact: Literal["rough", "smooth"] = Field(
+        default="rough",
+        description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
+        "flexible tank floor); for bearing",
+    )
+    fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
+    submergence: Submergence = True
+
+
+class StripLoad(_Foundation):
+    """A long strip of uniform pressure.
+
+    Attributes
+    ----------
+    shape : str
+        ``strip``.
+    width : float, [m]
+        Width of the strip.
+    at : float, [m]
+        Distance from the centreline at which settlement is reported.
+    """
+
+    shape: Literal["strip"] = Field(description="kind of load")
+    width: Annotated[float, _side("width of the strip")]
+    at: Annotated[float, _distance("distance from the centreline at which settlement is reported")] = 0.0
+
+
+class RectangleLoad(_Foundation):
+    """A rectangle of uniform pressure.
+
+    Attributes
+    ----------
+    shape : str
+        ``rectangle``.
+    width, length : float, [m]
+        Its sides; either may be the longer.
+    at : tuple of float, [m]
+        Point at which settlement is reported: distances from the centre along the width and the length.
+    """
+
+    shape: Literal["rectangle"] = Field(description="kind of load")
+    width: Annotated[float, _side("width of the rectangle")]
+    length: Annotated[float, _side("length of the rectangle")]
+    at: Annotated[
+        tuple[Annotated[float, _PLAN_DISTANCE], Annotated[float, _PLAN_DISTANCE]], BeforeValidator(_point)
+    ] = Field(
+        default=(0.0, 0.0),
+        description="point at which settlement is reported: distances from the centre along the width and "
+        "along the length",
+    )
+
+
+class CircleLoad(_Foundation):
+    """A circle of uniform pressure, such as a tank.
+
+    Attributes
+    ----------
+    shape : str
+        ``circle``.
+    diameter : float, [m]
+        Its diameter.
+    at : float, [m]
+        Distance from the centre at which settlement is reported.
+    """
+
+    shape: Literal["circle"] = Field(description="kind of load")
+    diameter: Annotated[float, _side("diameter of the circle")]
+    at: Annotated[float, _distance("distance from the centre at which settlement is reported")] = 0.0
+
+
+FOUNDATIONS = (StripLoad, RectangleLoad, CircleLoad)
+"""Classes of loads that can fail in bearing."""
+
+Load = Annotated[
+    EmbankmentLoad | AreaLoad | StripLoad | RectangleLoad | CircleLoad, Field(discriminator="shape")
+]
 
 
 class Stage(Table):
@@ -107,7 +226,7 @@ class Stage(Table):
     height : float or None, [m]
         Height of fill.
     pressure : float or None, [kPa]
-        Pressure; only with the load shape ``area``.
+        Pressure; not with the load shape ``embankment``.
     start, end : float, [year]
         Times.
     """
@@ -124,7 +243,7 @@ class Stage(Table):
             low=-100.0,
             high=100.0,
             source="common practice",
-            meaning="height of fill placed; negative is removal",
+            meaning="height of fill (or of what fills a tank) placed; negative is removal",
         ),
     ] = None
     pressure: Annotated[
@@ -134,7 +253,7 @@ class Stage(Table):
             low=-5000.0,
             high=5000.0,
             source="common practice",
-            meaning='pressure added, only with shape = "area"; negative is removal',
+            meaning='pressure added, net of soil dug out; not with shape = "embankment"; negative is removal',
         ),
     ] = None
     start: Annotated[

@@ -5,12 +5,12 @@ from typing import Any
 
 from pydantic import BaseModel
 
-from probsoil.scenario.later import LATER_KEYS, LATER_QUANTITIES, LATER_SHAPES, NOT_YET
+from probsoil.scenario.later import LATER_KEYS, LATER_QUANTITIES, NOT_YET
 from probsoil.scenario.models import Scenario
 from probsoil.scenario.slips import Path, Slip, did_you_mean, nearest, unknown_key
 from probsoil.scenario.structure import CHOICES, LISTS, inner_table, keys_of, member
 
-_LATER_CHOICES = {"load": LATER_SHAPES, "limits": LATER_QUANTITIES}
+_LATER_CHOICES = {"limits": LATER_QUANTITIES}
 
 
 @dataclass(slots=True)

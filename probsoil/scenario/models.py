@@ -7,6 +7,7 @@ from pydantic import BeforeValidator, Field, StringConstraints, model_validator
 from probsoil.scenario.base import Label, Table
 from probsoil.scenario.checks import cross_checks
 from probsoil.scenario.distributions import Constant, Distribution, Normal
+from probsoil.scenario.drains import Drains
 from probsoil.scenario.fields import Number, Uncertain
 from probsoil.scenario.layers import Layer
 from probsoil.scenario.limits import Limit
@@ -149,10 +150,12 @@ class Scenario(Table):
         What holds for the whole site.
     layers : tuple of ClayLayer or GranularLayer
         From ground level down.
-    load : EmbankmentLoad or AreaLoad
+    load : EmbankmentLoad, AreaLoad, StripLoad, RectangleLoad or CircleLoad
         The load.
     stages : tuple of Stage
         In order of time.
+    drains : Drains or None
+        Vertical drains.
     dependence : tuple of Dependence
         Rank correlations.
     model_error : ModelError
@@ -188,6 +191,7 @@ class Scenario(Table):
     stages: Annotated[tuple[Stage, ...], BeforeValidator(_some)] = Field(
         json_schema_extra={"minItems": 1}, description="stages of loading in order of time"
     )
+    drains: Drains | None = Field(default=None, description="prefabricated vertical drains")
     dependence: Annotated[tuple[Dependence, ...], BeforeValidator(_list)] = Field(
         default=(), description="rank correlations"
     )

@@ -85,7 +85,7 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
     Returns
     -------
     quantities : tuple of Quantity
-        In the order site, layers from the top, load, model error.
+        In the order site, layers from the top, load, drains, model error.
     """
     found = list(_of_table("site", scenario.site, None))
     for layer in scenario.layers:
@@ -93,6 +93,7 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
             known = isinstance(layer.thickness, Distribution)
             found += _of_table(layer.name, layer, layer.thickness.expectation if known else None)
     found += _of_table("load", scenario.load, None)
+    found += _of_table("drains", scenario.drains, None)
     found += _of_table("model_error", scenario.model_error, None)
     return tuple(found)
 

@@ -6,24 +6,35 @@ from pydantic import BaseModel
 
 from probsoil.scenario.layers import ClayLayer, GranularLayer
 from probsoil.scenario.limits import (
+    BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
     SettlementLimit,
     SlipSafetyLimit,
 )
-from probsoil.scenario.loads import AreaLoad, EmbankmentLoad, Stage
+from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, Stage, StripLoad
 from probsoil.scenario.models import Dependence
 
 LISTS = ("layers", "stages", "dependence", "limits")
 # Tables of more than one class: the key that tells the classes apart, and the classes.
 CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
     "layers": ("soil", {"clay": ClayLayer, "granular": GranularLayer}),
-    "load": ("shape", {"embankment": EmbankmentLoad, "area": AreaLoad}),
+    "load": (
+        "shape",
+        {
+            "embankment": EmbankmentLoad,
+            "area": AreaLoad,
+            "strip": StripLoad,
+            "rectangle": RectangleLoad,
+            "circle": CircleLoad,
+        },
+    ),
     "limits": (
         "quantity",
         {
             "settlement": SettlementLimit,
             "slip_safety": SlipSafetyLimit,
+            "bearing_safety": BearingSafetyLimit,
             "degree_of_consolidation": ConsolidationLimit,
             "time_to_consolidation": ConsolidationTimeLimit,
         },

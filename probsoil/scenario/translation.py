@@ -5,7 +5,7 @@ from typing import Any, cast
 from pydantic import BaseModel, ValidationError
 from pydantic_core import ErrorDetails
 
-from probsoil.scenario.later import LATER_QUANTITIES, LATER_SHAPES, NOT_YET
+from probsoil.scenario.later import LATER_QUANTITIES, NOT_YET
 from probsoil.scenario.models import Scenario
 from probsoil.scenario.slips import Path, Slip, did_you_mean
 from probsoil.scenario.structure import CHOICES, LISTS, inner_table, keys_of, member
@@ -104,7 +104,7 @@ def _tag(path: Path, data: dict[str, Any]) -> Slip:
     top = str(path[0])
     tag, models = CHOICES[top]
     table = _at(data, path)
-    later = {"load": LATER_SHAPES, "limits": LATER_QUANTITIES}.get(top, ())
+    later = {"limits": LATER_QUANTITIES}.get(top, ())
     allowed = "one of " + ", ".join(models)
     if not isinstance(table, dict):
         return Slip(path=path, message="this is not a table", allowed=f"a table with the key {tag}")

@@ -26,6 +26,7 @@ PINT_BASES = {
     "time": "julian_year",
     "permeability": "m/s",
     "coefficient of consolidation": "m**2/julian_year",
+    "discharge capacity": "m**3/julian_year",
     "angle": "degree",
 }
 

@@ -49,6 +49,7 @@ class _Addresses:
         tables: list[tuple[Any, Any]] = [
             ("site", scenario.site),
             ("load", scenario.load),
+            ("drains", UNREAD if scenario.drains is None else scenario.drains),
             ("model_error", scenario.model_error),
         ]
         tables += [(layer.name, layer) for layer in scenario.layers if layer is not UNREAD]

@@ -4,8 +4,13 @@ from typing import Any
 
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names
-from probsoil.scenario.limits import ConsolidationTimeLimit, SettlementLimit, SlipSafetyLimit
-from probsoil.scenario.loads import AreaLoad
+from probsoil.scenario.limits import (
+    BearingSafetyLimit,
+    ConsolidationTimeLimit,
+    SettlementLimit,
+    SlipSafetyLimit,
+)
+from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad
 from probsoil.scenario.slips import Slip
 
 
@@ -28,14 +33,25 @@ def limit_slips(scenario: Any) -> list[Slip]:
         if isinstance(limit, SettlementLimit):
             found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
             found += _reversed(limit)
-        if isinstance(limit, SlipSafetyLimit) and isinstance(scenario.load, AreaLoad):
-            message = "a slip needs the edge of an embankment; an area load has none"
-            found.append(
-                Slip(path=("quantity",), message=message, allowed='[load] with shape = "embankment"')
-            )
+        found += _out_of_place(limit, scenario.load)
         found += _beyond_horizon(limit, scenario.horizon)
         slips += [slip.below(("limits", position)) for slip in found]
     return slips
+
+
+def _out_of_place(limit: Any, load: Any) -> list[Slip]:
+    """Refuse a way of failing that the load does not have."""
+    if isinstance(limit, SlipSafetyLimit) and isinstance(load, AreaLoad):
+        message, shapes = "a slip needs the edge of an embankment; an area load has none", '"embankment"'
+    elif isinstance(limit, SlipSafetyLimit) and isinstance(load, FOUNDATIONS):
+        message = "slip circles are for an embankment; a foundation fails in bearing"
+        return [Slip(path=("quantity",), message=message, allowed='quantity = "bearing_safety"')]
+    elif isinstance(limit, BearingSafetyLimit) and isinstance(load, AreaLoad | EmbankmentLoad):
+        message = f"bearing failure is for a foundation; the load is of shape {load.shape}"
+        shapes = '"strip", "rectangle" or "circle"'
+    else:
+        return []
+    return [Slip(path=("quantity",), message=message, allowed=f"[load] with shape = {shapes}")]
 
 
 def _reversed(limit: Any) -> list[Slip]:

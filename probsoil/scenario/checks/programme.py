@@ -5,8 +5,10 @@ from typing import Any
 
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names
-from probsoil.scenario.loads import AreaLoad, EmbankmentLoad, Stage
+from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad, Stage
 from probsoil.scenario.slips import Slip
+
+_PRESSED = (AreaLoad, *FOUNDATIONS)  # loads whose stages may give a pressure
 
 # Heights are given to the millimetre at best; sums of them carry rounding.
 _ROUNDING = 1e-9
@@ -32,7 +34,7 @@ def programme_slips(scenario: Any) -> list[Slip]:
             found = _amount_slips(stage, scenario.load) + _time_slips(stage, scenario.horizon)
             slips += [slip.below(("stages", position)) for slip in found]
     slips += _order_slips(stages) + _removal_slips(stages, "height", "m")
-    if isinstance(scenario.load, AreaLoad):
+    if isinstance(scenario.load, _PRESSED):
         slips += _removal_slips(stages, "pressure", "kPa")
     return slips
 
@@ -48,7 +50,7 @@ def _amount_slips(stage: Any, load: Any) -> list[Slip]:
         )
     else:
         slips += exactly_one(stage, {"height": "height", "pressure": "pressure"}, "what the stage adds")
-    if isinstance(load, AreaLoad) and stage.height is not None and load.fill_unit_weight is None:
+    if isinstance(load, _PRESSED) and stage.height is not None and load.fill_unit_weight is None:
         message = "a height of fill needs the unit weight of the fill"
         slips.append(
             Slip(path=("height",), message=message, allowed="fill_unit_weight in [load], or pressure here")

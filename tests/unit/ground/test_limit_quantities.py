@@ -38,6 +38,7 @@ def answer(site, **parts):
     made = {
         "times": site.times,
         "settlement": 1e-3 * site.times * grown,
+        "secondary": np.zeros((3, site.times.size)),
         "degree": degree,
         "record": site.record,
         "degree_at_record": 0.01 * site.record * grown,

@@ -128,16 +128,16 @@ CASES = {
     ),
     "table of a later version": Spoiled(
         "[load]",
-        "[drains]\nspacing = 1.3\n[load]",
-        "[drains]",
-        "drains",
+        "[investigation]\nbudget = 1\n[load]",
+        "[investigation]",
+        "investigation",
         "not computed in this version",
     ),
     "key of a later version": Spoiled(
         KAPPA,
-        f"{KAPPA}\nkh_kv = 2",
-        "kh_kv",
-        CRUST.format(".kh_kv"),
+        f"{KAPPA}\nC_alpha = 0.01",
+        "C_alpha",
+        CRUST.format(".C_alpha"),
         "not computed in this version",
     ),
     "quantity of a later version": Spoiled(
@@ -683,3 +683,28 @@ def test_one_correlation_that_is_one_in_all_but_name_is_refused(base_text):
     (fault,) = faults_in(base_text.replace("rank_correlation = 0.6", "rank_correlation = 0.9999999999"))
     assert "cannot hold together" in fault.message
     assert "soft clay.Cc with soft clay.Cs: 0.99" in fault.hint
+
+
+DRAINS = (
+    '[drains]\npattern = "square"\nspacing = 1.3\nequivalent_diameter = 0.066\nsmear_ratio = 3\n'
+    "smear_kh_ks = 3\nbottom = 8\n"
+)
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "key", "message"),
+    [
+        ('"square"', '"hexagonal"', "drains.pattern", "hexagonal"),
+        ("spacing = 1.3", "spacing = -1.3", "drains.spacing", "is too small"),
+        ("smear_ratio = 3", "smear_ratio = 0.5", "drains.smear_ratio", "is too small"),
+        ("equivalent_diameter = 0.066", "equivalent_diameter = 0.5", "drains.smear_ratio", "smear zones"),
+        ("bottom = 8", 'bottom = 8\ninstalled = "40 years"', "drains.installed", "end of the time axis"),
+        ("bottom = 8", "bottom = 8\ndepth = 3", "drains.depth", "unknown key"),
+        ("bottom = 8\n", "", "drains", "bottom"),
+    ],
+)
+def test_drains_wrongly_given(base_text, old, new, key, message):
+    text = base_text.replace("[load]", DRAINS.replace(old, new) + "\n[load]", 1)
+    with pytest.raises(ScenarioError, match=message) as caught:
+        parse_scenario(text)
+    assert [fault.key for fault in caught.value.faults][0].startswith(key)
