@@ -45,8 +45,22 @@ class ResultsError(ProbsoilError):
     """A results folder cannot be read, written or continued."""
 
 
+class UnfitFolderError(ResultsError):
+    """A results folder holds what does not go with what is asked for, such as the chunks of another run."""
+
+
 class StoppedEarly(ProbsoilError):  # noqa: N818 - a partial success, not a fault
-    """The user interrupted a campaign; what was finished is kept."""
+    """The user interrupted a campaign; what was finished is kept.
+
+    Attributes
+    ----------
+    kept : bool
+        Whether there is anything to keep: finished chunks, or results.
+    """
+
+    def __init__(self, message: str, *, kept: bool = True) -> None:
+        super().__init__(message)
+        self.kept = kept
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -99,7 +113,7 @@ class Fault:
                 lines.append(" " * (len(gutter) + first - 1) + "^" * max(length, 1))
         for label, text in (("given", self.given), ("allowed", self.allowed), ("hint", self.hint)):
             if text is not None:
-                lines.append(f"      {label + ':':<9}{text}")
+                lines.append(f"      {label + ':':<9}" + text.replace("\n", "\n" + " " * 15))
         return "\n".join(lines)
 
 

@@ -8,6 +8,7 @@ from probsoil.assessment.evaluation import Study
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario import Scenario
+from probsoil.scenario.distributions import Constant
 from probsoil.scenario.loads import EmbankmentLoad
 
 Row = dict[str, object]
@@ -37,6 +38,7 @@ def ground_record(study: Study, at_means: GroundState) -> Row:
         "layers": _layers(scenario),
         "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
         "stages": stage_rows(study.site),
+        "drains": None if scenario.drains is None else scenario.drains.describe(),
         "profile": _profile(at_means),
     }
 
@@ -69,8 +71,19 @@ def _load_text(scenario: Scenario, site: SiteModel) -> str:
         return (
             f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
             f"side slopes {shape.side_slope:g} horizontal to 1 vertical, base {shape.base_width:g} m wide"
+            + _beside(scenario.load)
         )
-    return "load over a wide area"
+    return "load over a wide area" if site.foundation is None else site.foundation.title
+
+
+def _beside(load: EmbankmentLoad) -> str:
+    """Return berms and traffic in words, where there are any."""
+    text = ""
+    if load.berm_width is not None:
+        text += f", with a berm {load.berm_width:g} m wide and {load.berm_height:g} m high on each side"
+    if load.traffic != Constant(value=0.0):
+        text += f"; traffic on the top {load.traffic.describe('kPa')}"
+    return text
 
 
 def stage_rows(site: SiteModel) -> list[Row]:
@@ -170,6 +183,12 @@ def dependence_rows(study: Study) -> list[Row]:
     ]
 
 
+LEAST_FOR_TAILS = 40
+"""Realisations below which no 5 % and 95 % point is given, [-]: two would be expected beyond either."""
+
+_TAIL = 0.1  # levels nearer than this to 0 or 1 are tails
+
+
 def quantiles(
     values: np.ndarray, levels: Sequence[float] = (0.05, 0.25, 0.5, 0.75, 0.95), *, worst: float = np.inf
 ) -> Row:
@@ -189,12 +208,16 @@ def quantiles(
     -------
     quantiles : dict of str to float or list of float
         By level in figures, e.g. ``"0.05"``, interpolated between neighbours; null where one of
-        these is infinite or there are no values.
+        these is infinite, where there are no values, and below 0.1 and above 0.9 with fewer than 40
+        values, which would rest on one or two of them.
     """
     order = np.sort(np.where(np.isnan(values), worst, values), axis=0)
     found: Row = {}
+    few = len(order) < LEAST_FOR_TAILS
+    nothing = None if order.ndim == 1 or not len(order) else [None] * order.shape[1]
     for level in levels:
-        found[f"{level:g}"] = _at_level(order, level) if len(order) else None
+        withheld = not len(order) or (few and min(level, 1.0 - level) < _TAIL)
+        found[f"{level:g}"] = nothing if withheld else _at_level(order, level)
     return found
 
 

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from probsoil._typing import FloatArray
 from probsoil.assessment.evaluation import Study
 from probsoil.ground.response import respond, screened
 from probsoil.ground.site_model import site_model
@@ -25,7 +26,11 @@ class DiscretisationError:
     settlement_error_share : float, [-]
         Greatest error of settlement over the final settlement of its realisation.
     slip_error_share : float or None, [-]
-        Greatest error of a factor of safety over the factor; None without slip circles.
+        Greatest difference of a factor of safety from that over the denser family of circles, over
+        the latter; None without slip circles. Either family may miss the worst circle, so both are too
+        high if anything.
+    bearing_error_share : float or None, [-]
+        The same of bearing on the finer grid; None without a foundation.
     """
 
     realisations: int
@@ -34,6 +39,7 @@ class DiscretisationError:
     settlement_error: float
     settlement_error_share: float
     slip_error_share: float | None
+    bearing_error_share: float | None = None
 
     def to_dict(self) -> dict[str, int | float | None]:
         """Return the fields by name.
@@ -70,12 +76,19 @@ def discretisation_error(study: Study) -> DiscretisationError:
         - fine.settlement[:, np.searchsorted(fine.times, shared)]
     )
     final = np.maximum(fine.settlement[:, -1:], 1e-6)
-    slip = np.abs(coarse.slip / fine.slip - 1.0).max() if coarse.slip.size else None
+    slip, bearing = _greatest(coarse.slip, fine.slip), _greatest(coarse.bearing, fine.bearing)
     return DiscretisationError(
-        realisations=len(z),
+        realisations=len(coarse.settlement),  # one where nothing is uncertain
         cells=study.site.cells.n_cell,
         steps=study.site.times.size - 1,
         settlement_error=_ORDER_FACTOR * float(difference.max()),
         settlement_error_share=_ORDER_FACTOR * float((difference / final).max()),
-        slip_error_share=None if slip is None else float(slip),
+        slip_error_share=slip,
+        bearing_error_share=bearing,
     )
+
+
+def _greatest(coarse: FloatArray, fine: FloatArray) -> float | None:
+    """Return the greatest difference of factors of safety as a share, of those that exist."""
+    there = np.isfinite(coarse) & np.isfinite(fine)
+    return float(np.abs(coarse[there] / fine[there] - 1.0).max()) if there.any() else None

@@ -7,15 +7,21 @@ import numpy as np
 from numpy.typing import NDArray
 
 from probsoil._typing import FloatArray
-from probsoil.ground.limit_quantities import limit_quantities, slip_with_model_error
+from probsoil.ground.limit_quantities import (
+    bearing_with_model_error,
+    limit_quantities,
+    secondary_in_limits,
+    slip_with_model_error,
+)
 from probsoil.ground.profile import column
 from probsoil.ground.response import respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.ground.slip_position import critical_positions
 from probsoil.parameters import Design, ParameterSpace, design, parameter_space
 from probsoil.scenario import Scenario
 
 BAND_CHUNKS = 64
-"""Chunks whose settlement is kept through time for the band, [-]; the rest keep what limits need."""
+"""Chunks whose settlement through time and slip circles are kept, [-]; the rest keep what limits need."""
 
 _PILOT_STAGE = 2  # first spawn key; 0 and 1 belong to the designs
 _PILOT_SIZE = 256
@@ -69,16 +75,21 @@ class Study:
         Returns
         -------
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
-            ``quantity`` of every limit, ``slip`` at every check, ``final`` settlement, flags, and
-            in the first chunks ``settlement`` through time; model error included.
+            ``quantity`` of every limit and what of it is ``secondary`` compression, ``slip`` and
+            ``bearing`` at every check, ``final`` settlement, flags, and in the first chunks
+            ``settlement`` through time (model error included in all these) and where the critical
+            ``circle`` lies.
         """
-        values = self.space.values(self.latent(chunk))
+        z = self.latent(chunk)
+        values = self.space.values(z)
         response = respond(self.site, values)
         error = column(values, "model_error.settlement", response.settlement.shape[0])
         settlement = np.where(response.converged[:, None], error[:, None] * response.settlement, np.nan)
         arrays: dict[str, NDArray[np.generic]] = {
             "quantity": limit_quantities(self.site, self.scenario.limits, response, values),
+            "secondary": secondary_in_limits(self.scenario.limits, response, values),
             "slip": slip_with_model_error(response, values),
+            "bearing": bearing_with_model_error(response, values),
             "final": settlement[:, -1],
             "floored": response.floored,
             "kappa_clipped": response.kappa_clipped,
@@ -87,7 +98,15 @@ class Study:
         }
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
+            arrays["circle"] = critical_positions(self.site, response).astype(np.float32)
+        if self.certain:  # one calculation stands for every realisation
+            return {key: np.repeat(array, len(z), axis=0) for key, array in arrays.items()}
         return arrays
+
+    @property
+    def certain(self) -> bool:
+        """Whether no parameter is uncertain, so that every realisation is the same calculation."""
+        return self.space.dimension == 0
 
 
 def prepare(scenario: Scenario) -> Study:

@@ -1,17 +1,15 @@
 """The results of a campaign in the form that results.json promises."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.assessment.description import Row, finite, numbers, quantiles
-from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study
 from probsoil.ground.site_model import SiteModel
-from probsoil.probability import Exceedance, exceedance, exceedance_curve
-from probsoil.scenario import remarks
+from probsoil.probability import Exceedance, exceedance, exceedance_curve, median_interval
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
@@ -19,7 +17,6 @@ CONFIDENCE = 0.95
 _UNITS = {"settlement": "m", "time_to_consolidation": "years"}
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _WORST = {"not more than": np.inf, "not less than": -np.inf}  # what is not a number counts as exceeding
-_NOTICEABLE = 1e-4  # share of a distribution that is cut off
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -30,12 +27,18 @@ class CampaignSample:
     ----------
     quantity : ndarray, shape (n_sample, n_limit), [m], [-] or [years]
         Quantity of every limit.
+    secondary : ndarray, shape (n_sample, n_limit), [m]
+        Part of a settlement limit's quantity that is secondary compression; not a number for others.
     slip : ndarray, shape (n_sample, n_check), [-]
         Factor of safety at every check.
+    bearing : ndarray, shape (n_sample, n_bearing), [-]
+        Factor of safety against bearing failure at every check.
     final : ndarray, shape (n_sample,), [m]
         Settlement at the horizon.
     settlement : ndarray, shape (n_band, n_time), [m]
         Settlement through time of the first realisations.
+    circle : ndarray, shape (n_band, n_check, 6), [m]
+        Where the critical circles of the first realisations lie.
     converged, voids_closed, floored, kappa_clipped : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -43,6 +46,7 @@ class CampaignSample:
     """
 
     quantity: FloatArray
+    secondary: FloatArray
     slip: FloatArray
     final: FloatArray
     settlement: FloatArray
@@ -51,6 +55,8 @@ class CampaignSample:
     floored: BoolArray
     kappa_clipped: BoolArray
     replicate: IntArray
+    bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -77,17 +83,26 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
             limit.threshold,
             limit.sense,
             replicate=replicate,
-            method=_DRAWS[study.points.name],
+            method=_draws(study),
             confidence=CONFIDENCE,
             target=limit.target_probability,
+            certain=study.certain,
         )
         curve = exceedance_curve(
-            values, limit.sense, through=limit.threshold, replicate=replicate, confidence=CONFIDENCE
+            values,
+            limit.sense,
+            through=limit.threshold,
+            replicate=replicate,
+            confidence=CONFIDENCE,
+            certain=study.certain,
         )
+        worst = _WORST[limit.sense]
         rows.append(
             _limit_row(limit, found)
+            | _creep(study, sample.secondary[:, index], values)
             | {
-                "summary": _summary(values, worst=_WORST[limit.sense]),
+                "summary": _summary(values, worst=worst)
+                | {"median_interval": _median_interval(values, worst=worst)},
                 "curve": {
                     "step": curve.step,
                     "threshold": curve.threshold.tolist(),
@@ -99,6 +114,24 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
             }
         )
     return rows
+
+
+def _creep(study: Study, secondary: FloatArray, quantity: FloatArray) -> Row:
+    """Return what part of a settlement secondary compression makes, on average over realisations."""
+    good = np.isfinite(quantity) & np.isfinite(secondary)
+    creeps = any(layer.creeps for layer in study.site.layers)
+    if not creeps or not good.any() or quantity[good].mean() <= 0.0:
+        return {"secondary_mean": None, "secondary_share": None}
+    mean = float(secondary[good].mean())
+    share = mean / float(quantity[good].mean())
+    # rebound after a removal may take away more than creep adds; then a share says nothing
+    return {"secondary_mean": mean, "secondary_share": share if 0.0 <= share <= 1.0 else None}
+
+
+def _draws(study: Study) -> str:
+    """Name the way the points were drawn, and how often it was repeated."""
+    name, replicates = _DRAWS[study.points.name], study.points.replicates
+    return name if replicates == 1 else f"{name} in {replicates} replicates"
 
 
 def _limit_row(limit: Limit, found: Exceedance) -> Row:
@@ -127,6 +160,7 @@ def _limit_row(limit: Limit, found: Exceedance) -> Row:
         "verdict": found.verdict,
         "cost_if_exceeded": cost,
         "expected_cost": None if cost is None else cost * found.probability,
+        "expected_cost_interval": None if cost is None else [cost * end for end in found.interval],
     }
 
 
@@ -147,6 +181,12 @@ def _summary(values: FloatArray, *, worst: float) -> Row:
     if mean is not None:
         spread = float(values.std(ddof=1)) if values.size > 1 else 0.0
     return {"mean": mean, "sd": spread, "quantiles": quantiles(values, worst=worst)}
+
+
+def _median_interval(values: FloatArray, *, worst: float) -> list[float | None]:
+    """Return the limits of the median; null where infinite or where there are too few values."""
+    ends = median_interval(np.where(np.isnan(values), worst, values), CONFIDENCE)
+    return [None, None] if ends is None else [finite(end) for end in ends]
 
 
 def _mean(values: FloatArray) -> float | None:
@@ -172,7 +212,7 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
     worst = _WORST["not more than"]
     settlement = sample.settlement.astype(np.float64)
     return {
-        "station": "centreline",
+        "station": site.station,
         "times": site.times.tolist(),
         "mean": numbers(settlement.mean(axis=0)),
         "quantiles": quantiles(settlement, worst=worst),
@@ -182,13 +222,13 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
     }
 
 
-def slip_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
-    """Return the factor of safety at every check.
+def slip_rows(study: Study, sample: CampaignSample) -> list[Row]:
+    """Return the factor of safety against slip at every check.
 
     Parameters
     ----------
-    site : SiteModel
-        Checks and stages.
+    study : Study
+        Checks, stages and design.
     sample : CampaignSample
         All realisations.
 
@@ -197,18 +237,50 @@ def slip_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
     rows : list of dict
         Ready for JSON.
     """
-    ends = {stage.end: stage.name for stage in site.stages}
-    rows = []
-    for index, time in enumerate(site.slip_times):
-        factor = sample.slip[:, index]
+    return _factor_rows(study, sample, study.site.slip_times, sample.slip)
+
+
+def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
+    """Return the factor of safety against bearing failure at every check.
+
+    Parameters
+    ----------
+    study : Study
+        Checks, stages and design.
+    sample : CampaignSample
+        All realisations.
+
+    Returns
+    -------
+    rows : list of dict
+        Ready for JSON; besides the height of fill the pressure that stages have added.
+    """
+    site = study.site
+    rows = _factor_rows(study, sample, site.bearing_times, sample.bearing)
+    return [
+        row | {"pressure": round(site.pressure(float(time)), 9)}
+        for row, time in zip(rows, site.bearing_times, strict=True)
+    ]
+
+
+def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factors: FloatArray) -> list[Row]:
+    site = study.site
+    replicate = sample.replicate if study.points.replicates > 1 else None
+    ends = {site.traffic_from: "traffic"} | {stage.end: stage.name for stage in site.stages}
+    rows: list[Row] = []
+    for time, factor in zip(times.tolist(), factors.T, strict=True):
+        below = exceedance(
+            factor, 1.0, "not less than", replicate=replicate, confidence=CONFIDENCE, certain=study.certain
+        )
         rows.append(
             {
-                "stage": ends.get(float(time), f"at {time:.3g} years"),
-                "time": float(time),
-                "fill_height": round(site.fill_height(float(time)), 9),
+                "stage": ends.get(time, f"at {time:.3g} years"),
+                "time": time,
+                "fill_height": round(site.fill_height(time), 9),
                 "mean": _mean(factor),
                 "quantiles": quantiles(factor, worst=_WORST["not less than"]),
-                "probability_below_one": float((~(factor >= 1.0)).mean()),
+                "probability_below_one": below.probability,
+                "interval_below_one": list(below.interval),
             }
         )
     return rows
@@ -259,63 +331,3 @@ def _driver_row(driver: Driver) -> Row:
         "share_interval": [finite(value) for value in driver.share_interval],
         "direction": driver.direction,
     }
-
-
-def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationError) -> list[Row]:
-    """Return what a reader must know before trusting the numbers.
-
-    Parameters
-    ----------
-    study : Study
-        Scenario and parameters.
-    sample : CampaignSample
-        All realisations.
-    error : DiscretisationError
-        Error of the computation.
-
-    Returns
-    -------
-    rows : list of dict
-        Code, message and the share of realisations (or of a distribution) concerned.
-    """
-    flags = [
-        (
-            "not_converged",
-            "realisations in which the consolidation did not converge; they count as exceeding every limit",
-            float((~sample.converged & ~sample.voids_closed).mean()),
-        ),
-        (
-            "voids_closed",
-            "realisations in which the void ratio fell below 0.05 somewhere: initial stress, void ratio and "
-            "lambda do not belong together there; they count as exceeding every limit",
-            float(sample.voids_closed.mean()),
-        ),
-        (
-            "preconsolidation_raised",
-            "realisations in which the preconsolidation stress drawn lay below the stress in situ at some "
-            "depth and was raised to it",
-            float(sample.floored.mean()),
-        ),
-        (
-            "kappa_lowered",
-            "realisations in which kappa was drawn above 0.95 lambda in some layer and lowered to that",
-            float(sample.kappa_clipped.mean()),
-        ),
-    ]
-    rows: list[Row] = [
-        {"code": code, "message": message, "share": share} for code, message, share in flags if share > 0.0
-    ]
-    rows += [{"code": "remark", "message": text, "share": None} for text in remarks(study.scenario)]
-    for summary in study.space.summary():
-        if summary.cut_share > _NOTICEABLE:
-            message = (
-                f"{summary.name}: part of the distribution lay outside the physical range and was cut off"
-            )
-            rows.append({"code": "distribution_cut", "message": message, "share": summary.cut_share})
-    if error.settlement_error_share > 0.005:
-        message = "settlement on a finer grid differs by more than 0.5 % of the final settlement"
-        rows.append({"code": "grid", "message": message, "share": error.settlement_error_share})
-    if error.slip_error_share is not None and error.slip_error_share > 0.01:
-        message = "the factor of safety over a denser family of circles differs by more than 1 %"
-        rows.append({"code": "circles", "message": message, "share": error.slip_error_share})
-    return rows

@@ -3,20 +3,22 @@
 import hashlib
 import io
 import json
+import logging
 import time
 from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import Executor
+from contextlib import ExitStack
 from dataclasses import dataclass
 from datetime import UTC, datetime
-from importlib import metadata
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from probsoil import __version__
 from probsoil._typing import FloatArray
+from probsoil.assessment.caveats import warning_rows
+from probsoil.assessment.circles import circle_rows
 from probsoil.assessment.description import (
     dependence_rows,
     fixed_values,
@@ -25,20 +27,22 @@ from probsoil.assessment.description import (
 )
 from probsoil.assessment.discretisation import discretisation_error
 from probsoil.assessment.evaluation import Study, prepare
+from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
     CampaignSample,
+    bearing_rows,
     driver_rows,
     limit_rows,
     settlement_record,
     slip_rows,
-    warning_rows,
 )
+from probsoil.assessment.results_folder import CHUNKS, COPY, REALISATIONS_FILE, RESULTS, claimed_folder
 from probsoil.assessment.statements import CAUTIONS, assumptions
 from probsoil.campaign import (
-    campaign_identity,
+    NOTICE,
+    deferred_interrupt,
     discard_chunks,
-    prepare_folder,
     provenance,
     run_campaign,
     worker_count,
@@ -57,7 +61,12 @@ Progress = Callable[[str, int, int], None]
 REALISATIONS = "realisations"
 """Name of the stage that progress is reported for."""
 
-_CHUNKS = "chunks"
+GREATEST_REALISATIONS = 100_000_000
+"""As in the scenario file, [-]."""
+GREATEST_SEED = 2**63 - 1
+"""As in the scenario file, [-]."""
+
+logger = logging.getLogger(__name__)
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -109,6 +118,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     seed: int | None = None,
     workers: int | None = None,
     resume: bool = False,
+    force: bool = False,
     progress: Progress | None = None,
     command: str | None = None,
     source: Path | None = None,
@@ -121,7 +131,8 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     scenario : Scenario
         As read.
     out : Path or None
-        Folder for the results; None to write nothing.
+        Folder for the results; None to write nothing. Chunks that an interrupted run of the same
+        campaign left there are gone on from.
     realisations : int or None, [-]
         Number of realisations, instead of the scenario's.
     draws : str or None
@@ -131,7 +142,9 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     workers : int or None, [-]
         Number of workers; None for every core. The numbers do not depend on it.
     resume : bool
-        Whether to go on from the chunks an interrupted run left in `out`.
+        Whether to insist that `out` holds chunks to go on from.
+    force : bool
+        Whether chunks of another campaign, and files that no run wrote, are replaced in `out`.
     progress : callable or None
         Called with a stage name, chunks done and chunks in all.
     command : str or None
@@ -152,69 +165,76 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     ParameterError
         If an override is out of range.
     ResultsError
-        If `out` cannot be written or holds another campaign.
+        If `out` cannot be written, or another run is at work in it.
+    UnfitFolderError
+        If `out` holds chunks of another campaign or files that no run wrote, unless `force`, or no
+        chunks where `resume` insists.
     StoppedEarly
         If the user interrupted; finished chunks are kept in `out`.
     """
     started, clock = datetime.now(UTC), time.perf_counter()
     scenario = _overridden(scenario, realisations=realisations, draws=draws, seed=seed)
-    folder = None if out is None else prepare_folder(out)
-    study = prepare(scenario)
-    seconds = {"preparation": time.perf_counter() - clock}
-    heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
-    chunks = run_campaign(
-        study,
-        study.points.n_chunks,
-        identity=_identity(study),
-        workers=workers,
-        store=None if folder is None else folder / _CHUNKS,
-        resume=resume,
-        executor_factory=executor_factory,
-        progress=heard,
-    )
-    sample, sums = _collect(study, chunks)
-    seconds[REALISATIONS] = time.perf_counter() - clock - seconds["preparation"]
-    results = _results(study, sample, sums)
-    seconds["total"] = time.perf_counter() - clock
-    results["provenance"] = provenance(
-        {
-            "scenario_file": None if source is None else source.name,
-            "scenario_sha256": _digest(scenario, source),
-            "chunks": study.points.n_chunks,
-        },
-        started=started,
-        seconds=seconds,
-        workers=worker_count(workers),
-        command=command,
-    )
-    if folder is not None:
-        _write(folder, results, sample, source)
-    return Assessment(results=results, sample=sample, folder=folder)
+    with ExitStack() as held:
+        folder = None if out is None else held.enter_context(claimed_folder(out, source=source, force=force))
+        with deferred_interrupt():
+            study = prepare(scenario)
+        _announce_rounding(study)
+        seconds = {"preparation": time.perf_counter() - clock}
+        heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
+        chunks = run_campaign(
+            study,
+            study.points.n_chunks,
+            identity=identity_of(study),
+            workers=workers,
+            store=None if folder is None else folder / CHUNKS,
+            resume=resume,
+            force=force,
+            executor_factory=executor_factory,
+            progress=heard,
+        )
+        sample, sums = _collect(study, chunks)
+        seconds[REALISATIONS] = time.perf_counter() - clock - seconds["preparation"]
+        with deferred_interrupt():
+            results = _results(study, sample, sums)
+        seconds["total"] = time.perf_counter() - clock
+        results["provenance"] = provenance(
+            {
+                "scenario_file": None if source is None else source.name,
+                "scenario_sha256": _digest(scenario, source),
+                "chunks": study.points.n_chunks,
+            },
+            started=started,
+            seconds=seconds,
+            workers=worker_count(workers),
+            command=command,
+        )
+        if folder is not None:
+            _write(folder, results, sample, source)
+        return Assessment(results=results, sample=sample, folder=folder)
 
 
 def _overridden(
     scenario: Scenario, *, realisations: int | None, draws: str | None, seed: int | None
 ) -> Scenario:
     """Return the scenario with the caller's numbers in place of its own."""
-    if realisations is not None and realisations < 1:
-        raise ParameterError(f"realisations must be at least 1; got {realisations}")
-    if seed is not None and seed < 0:
-        raise ParameterError(f"seed must be zero or more; got {seed}")
+    if realisations is not None and not 1 <= realisations <= GREATEST_REALISATIONS:
+        raise ParameterError(f"realisations must be 1 to {GREATEST_REALISATIONS:,d}; got {realisations:,d}")
+    if seed is not None and not 0 <= seed <= GREATEST_SEED:
+        raise ParameterError(f"seed must be 0 to {GREATEST_SEED}; got {seed}")
     given = {"realisations": realisations, "draws": draws, "seed": seed}
     return scenario.model_copy(update={key: value for key, value in given.items() if value is not None})
 
 
-def _identity(study: Study) -> str:
-    """Return what tells this campaign from every other whose numbers would differ."""
-    return campaign_identity(
-        repr(study.scenario),
-        seed=study.scenario.seed,
-        realisations=study.points.n,
-        draws=study.points.name,
-        version=__version__,
-        numpy=metadata.version("numpy"),
-        numba=metadata.version("numba"),
-    )
+def _announce_rounding(study: Study) -> None:
+    """Say before the work begins that the way of drawing takes more realisations than were asked for."""
+    asked, drawn = study.scenario.realisations, study.points.n
+    if drawn != asked:
+        logger.log(
+            NOTICE,
+            f"{asked:,d} realisations asked, {drawn:,d} drawn: {study.points.name} takes "
+            f"{study.points.replicates} equal sets"
+            + (", each a power of two" if study.points.name == "sobol" else ""),
+        )
 
 
 def _collect(
@@ -254,6 +274,8 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
     scenario, site = study.scenario, study.site
     error = discretisation_error(study)
     at_means = ground_state(site, fixed_values(study.space.at("mean")))
+    at_medians = ground_state(site, fixed_values(study.space.at("median")))
+    circles = circle_rows(study, sample.circle, at_medians)
     found = [drivers(one, study.space.correlation, study.space.names, confidence=CONFIDENCE) for one in sums]
     rows, quality = driver_rows(scenario.limits, found)
     return {
@@ -267,7 +289,10 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "currency": scenario.currency,
         "limits": limit_rows(study, sample),
         "settlement": settlement_record(site, sample),
-        "slip": slip_rows(site, sample),
+        "slip": [
+            row | {"circle": circle} for row, circle in zip(slip_rows(study, sample), circles, strict=True)
+        ],
+        "bearing": bearing_rows(study, sample),
         "drivers": rows,
         "driver_quality": quality,
         "ground": ground_record(study, at_means),
@@ -289,10 +314,17 @@ def _write(folder: Path, results: dict[str, Any], sample: CampaignSample, source
     """Write the results; the chunks go only when everything else is safely there."""
     buffer = io.BytesIO()
     names = np.array([row["name"] for row in results["limits"]])
-    np.savez_compressed(buffer, limit=names, quantity=sample.quantity, slip=sample.slip, final=sample.final)
-    write_durably(folder / "realisations.npz", buffer.getvalue())
-    if source is not None and source.resolve() != (folder / "scenario.toml").resolve():
-        write_durably(folder / "scenario.toml", source.read_bytes())
+    np.savez_compressed(
+        buffer,
+        limit=names,
+        quantity=sample.quantity,
+        slip=sample.slip,
+        bearing=sample.bearing,
+        final=sample.final,
+    )
+    write_durably(folder / REALISATIONS_FILE, buffer.getvalue())
+    if source is not None and source.resolve() != (folder / COPY).resolve():
+        write_durably(folder / COPY, source.read_bytes())
     text = json.dumps(results, indent=1, allow_nan=False, ensure_ascii=False) + "\n"
-    write_durably(folder / "results.json", text.encode())
-    discard_chunks(folder / _CHUNKS)
+    write_durably(folder / RESULTS, text.encode())
+    discard_chunks(folder / CHUNKS)

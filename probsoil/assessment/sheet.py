@@ -1,24 +1,37 @@
 """One deterministic calculation, layer by layer, for a checker."""
 
-from dataclasses import dataclass
+from collections.abc import Iterator
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, Literal
 
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.assessment.description import fixed_values
-from probsoil.assessment.evaluation import space_of
-from probsoil.ground.applied_load import stress_at
-from probsoil.ground.clay_settlement import cell_settlement
-from probsoil.ground.profile import Values, column
-from probsoil.ground.response import GroundState, ground_state, screened
-from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.assessment import sheet_answers as answers
+from probsoil.assessment.sheet_formulas import example_of
+from probsoil.assessment.sheet_lines import worked_lines
+from probsoil.assessment.sheet_run import SheetRun, sheet_run
+from probsoil.assessment.sheet_sublayers import (
+    PointState,
+    Sublayer,
+    cell_rows,
+    point_state,
+    sublayer_rows,
+    sublayers,
+)
+from probsoil.assessment.statements import SHEET_CAUTIONS, assumptions
+from probsoil.ground.bearing import capacities_at
+from probsoil.ground.bearing_capacity import growth_ratio, strength_growth_factor
+from probsoil.ground.profile import Values
+from probsoil.ground.response import GroundState
+from probsoil.ground.site_model import SiteModel
+from probsoil.ground.squeezing import squeezing_at
 from probsoil.scenario import Scenario
 
 if TYPE_CHECKING:
     import pandas as pd
 
-_CREST = 2  # zone under the crest
+_EDGE, _CREST = 1, 2  # zones below the edge of a foundation and under a crest
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -39,11 +52,43 @@ class Sheet:
         Stresses, strain and settlement of every layer, [kPa], [-], [m]; ``stress_increase`` is that of
         the load at the horizon, before any loss of weight by submergence.
     strength : tuple of dict
-        Undrained strength with depth before loading and at the end of every stage, [kPa].
+        Undrained strength with depth before loading and at the end of every stage, [kPa]: under the
+        crest, or below the edge of a foundation.
     slip_safety : dict of str to float, [-]
         Least factor of safety at the end of every stage with fill on the ground.
     values : dict of str to float
         Every quantity as used, in its unit.
+    bearing_safety : dict of str to float, [-]
+        Least factor of safety against bearing failure at the end of every stage with load on a
+        foundation.
+    bearing : tuple of dict
+        What it comes from: one row for every such stage and level, [m], [kPa], [-].
+    squeezing_safety : dict of str to float, [-]
+        Factor of safety against squeezing of thin clay, at the stages it applies to.
+    station : str
+        Where settlement is.
+    title : str
+        Of the scenario.
+    quantities : tuple of dict
+        The values with unit and meaning.
+    sublayers : tuple of dict
+        A few rows per layer that add up to the settlement, see `sheet_sublayers`, [m], [kPa], [-].
+    through_time : tuple of dict
+        Parts of the settlement and degree of consolidation at chosen times, [years], [m], [-].
+    segments : tuple of dict
+        Primary and secondary settlement of every drainage segment, [m], [years], [-].
+    drains : dict or None
+        Vertical drains and their factor mu, [m], [-].
+    strength_in_rows : tuple of dict
+        Strength at one depth of every clay sub-layer with all that it follows from, [kPa], [-].
+    slip : tuple of dict
+        Critical circle and moments at every time at which slip is looked at, [m], [kNm/m], [-].
+    formulas : tuple of dict
+        Every formula in symbols and with the numbers of one row put in.
+    cells : tuple of dict
+        The program's own cells, [m], [kPa].
+    assumptions, cautions : tuple of str
+        What the calculation rests on, and what its reader must bear in mind.
     """
 
     at: str
@@ -54,6 +99,22 @@ class Sheet:
     strength: tuple[dict[str, Any], ...]
     slip_safety: dict[str, float]
     values: dict[str, float]
+    bearing_safety: dict[str, float] = field(default_factory=dict)
+    bearing: tuple[dict[str, Any], ...] = ()
+    squeezing_safety: dict[str, float] = field(default_factory=dict)
+    station: str = "centreline"
+    title: str = ""
+    quantities: tuple[dict[str, Any], ...] = ()
+    sublayers: tuple[dict[str, Any], ...] = ()
+    through_time: tuple[dict[str, Any], ...] = ()
+    segments: tuple[dict[str, Any], ...] = ()
+    drains: dict[str, Any] | None = None
+    strength_in_rows: tuple[dict[str, Any], ...] = ()
+    slip: tuple[dict[str, Any], ...] = ()
+    formulas: tuple[dict[str, Any], ...] = ()
+    cells: tuple[dict[str, Any], ...] = ()
+    assumptions: tuple[str, ...] = ()
+    cautions: tuple[str, ...] = ()
 
     def to_dict(self) -> dict[str, Any]:
         """Return the sheet for JSON.
@@ -102,34 +163,102 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
     ------
     ParameterError
         If `at` is neither.
+    ConvergenceError
+        If the consolidation cannot be computed with these values.
     """
-    values = space_of(scenario).at(at)
-    one = fixed_values(values)
-    site = screened(site_model(scenario), one, within=0.0)
-    state = ground_state(site, one)
-    response = state.response
-    ends = {stage.end: stage.name for stage in site.stages}
-    slip = {
-        ends[float(time)]: float(response.slip[0, index])
-        for index, time in enumerate(site.slip_times)
-        if float(time) in ends
-    }
+    run = sheet_run(scenario, at)
+    site, state, response = run.site, run.state, run.state.response
+    rows, points, values = sublayers(run), point_state(run), run.at
     return Sheet(
         at=at,
         times=tuple(response.times.tolist()),
         settlement=tuple(response.settlement[0].tolist()),
         final_settlement=float(response.settlement[0, -1]),
-        layers=tuple(_layer_rows(site, state, values)),
+        layers=tuple(_layer_rows(run, points)),
         strength=tuple(_strength_rows(site, state)),
-        slip_safety=slip,
+        slip_safety=_by_stage(site, site.slip_times, response.slip[0]),
         values=values,
+        bearing_safety=_by_stage(site, site.bearing_times, response.bearing[0]),
+        squeezing_safety=_squeezing(site, state, run.values),
+        station=site.station,
+        title=scenario.title,
+        quantities=tuple(
+            {"address": one.address, "value": values[one.address], "unit": one.unit, "meaning": one.meaning}
+            for one in scenario.quantities()
+        ),
+        assumptions=assumptions(site),
+        cautions=SHEET_CAUTIONS,
+        **_in_detail(run, rows, points),
     )
 
 
-def _layer_rows(site: SiteModel, state: GroundState, values: Values) -> list[dict[str, Any]]:
-    points = state.ground.points
-    added = stress_at(site, state.ground.load, site.horizon)[0]
-    settled = _point_settlement(site, state, values)
+def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[str, Any]:
+    """Return what lets a checker follow the calculation line by line."""
+    found = {
+        "sublayers": sublayer_rows(run, rows, points),
+        "through_time": answers.time_rows(run),
+        "segments": answers.segment_rows(run, points),
+        "strength_in_rows": answers.strength_rows(run, rows),
+        "slip": answers.slip_rows(run),
+        "cells": cell_rows(run, rows, points),
+        "bearing": list(_bearing_rows(run.site, run.state, run.values)),
+    }
+    drains = answers.drain_record(run, rows)
+    example = rows[example_of(found["sublayers"])["number"] - 1]
+    found["formulas"] = worked_lines(run, example, {**found, "drains": drains})
+    return {"drains": drains, **{name: tuple(part) for name, part in found.items()}}
+
+
+def _by_stage(site: SiteModel, times: FloatArray, factors: FloatArray) -> dict[str, float]:
+    ends = {stage.end: stage.name for stage in site.stages}
+    pairs = zip(times.tolist(), factors.tolist(), strict=True)
+    return {ends[time]: factor for time, factor in pairs if time in ends}
+
+
+def _bearing_rows(site: SiteModel, state: GroundState, values: Values) -> Iterator[dict[str, Any]]:
+    """Yield every number behind the bearing capacity, for each stage and level."""
+    times = set(site.bearing_times.tolist())
+    for stage in site.stages:
+        if site.foundation is None or stage.end not in times:
+            continue
+        for level, found in capacities_at(site, values, state.ground, state.strength, stage.end):
+            if not level.exists[0]:
+                continue
+            width, rise = float(level.width[0]), float(found.growth[0] * level.width[0])
+            ratio = growth_ratio(found.strength[0], rise)
+            yield {
+                "stage": stage.name,
+                "layer": site.layers[level.layer].name,
+                "depth": float(level.depth[0]),
+                "width": width,
+                "strength": float(found.strength[0]),
+                "growth": float(found.growth[0]),
+                "growth_ratio": float(ratio),
+                "growth_factor": float(strength_growth_factor(ratio, site.foundation.contact)),
+                "least_strength": float(found.least[0]),
+                "strip_capacity": float(found.strip[0]),
+                "shape_factor": float(found.shape_factor[0]),
+                "depth_factor": float(found.depth_factor[0]),
+                "capacity": float(found.capacity[0]),
+                "pressure": float(found.pressure[0]),
+                "safety": float(found.safety[0]),
+            }
+
+
+def _squeezing(site: SiteModel, state: GroundState, values: Values) -> dict[str, float]:
+    looked_at = {*site.slip_times.tolist(), *site.bearing_times.tolist()}
+    found = {}
+    for stage in site.stages:
+        if stage.end in looked_at:
+            factor = squeezing_at(site, values, state.ground, state.strength, stage.end)
+            if factor is not None:
+                found[stage.name] = float(factor[0])
+    return found
+
+
+def _layer_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
+    points, site = run.state.ground.points, run.site
+    decades = answers.decades_by_point(run)
     rows = []
     for index, layer in enumerate(site.layers):
         mine = points.layer == index
@@ -139,44 +268,32 @@ def _layer_rows(site: SiteModel, state: GroundState, values: Values) -> list[dic
         def at_middle(profile: FloatArray, mine: Any = mine, middle: float = middle) -> float:
             return float(np.interp(middle, points.depth[0, mine], profile[mine]))
 
-        settlement = float(settled[mine].sum())
+        settlement = float(state.shortening[mine].sum())
         rows.append(
             {
                 "name": layer.name,
                 "soil": "clay" if layer.is_clay else "granular",
                 "top": top,
                 "bottom": bottom,
-                "initial_stress": at_middle(points.stress[0]),
-                "preconsolidation": at_middle(state.ground.yield_stress[0]) if layer.is_clay else None,
-                "stress_increase": at_middle(added),
-                "void_ratio": float(state.ground.columns.void_ratio[0, index]) if layer.is_clay else None,
+                "initial_stress": at_middle(state.initial),
+                "preconsolidation": at_middle(state.preconsolidation) if layer.is_clay else None,
+                "stress_increase": at_middle(state.added),
+                "void_ratio": float(run.state.ground.columns.void_ratio[0, index]) if layer.is_clay else None,
                 "strain": settlement / (bottom - top),
                 "settlement": settlement,
+                "secondary": float((state.per_decade * decades)[mine].sum()),
             }
         )
     return rows
 
 
-def _point_settlement(site: SiteModel, state: GroundState, values: Values) -> FloatArray:
-    """Return the settlement that each point stands for at the horizon, shape (n_point,), [m]."""
-    ground = state.ground
-    settled = np.zeros(ground.points.layer.size)
-    settled[ground.clay] = cell_settlement(site, ground, state.consolidation)[0]
-    added = stress_at(site, ground.load, site.horizon)[0]
-    for index, layer in enumerate(site.layers):
-        if not layer.is_clay:
-            mine = ground.points.layer == index
-            modulus = float(column(values, f"{layer.name}.constrained_modulus", 1)[0])
-            settled[mine] = added[mine] * ground.points.thickness[0, mine] / modulus
-    return settled
-
-
 def _strength_rows(site: SiteModel, state: GroundState) -> list[dict[str, Any]]:
     ground = state.ground
+    zone = _CREST if site.foundation is None else _EDGE
     rows = []
     for point in np.flatnonzero(ground.clay):
         after = {
-            stage.name: float(state.strength[np.searchsorted(site.record, stage.end), 0, _CREST, point])
+            stage.name: float(state.strength[np.searchsorted(site.record, stage.end), 0, zone, point])
             for stage in site.stages
         }
         rows.append(

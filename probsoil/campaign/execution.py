@@ -8,6 +8,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from probsoil.campaign.identity import Identity
 from probsoil.campaign.interruption import StopRequest
 from probsoil.campaign.store import ChunkStore, open_store
 from probsoil.campaign.workers import thread_pool, worker_count
@@ -27,10 +28,11 @@ def run_campaign(  # noqa: PLR0913 - one call with named options, each with a de
     evaluate: Evaluate,
     n_chunks: int,
     *,
-    identity: str,
+    identity: Identity,
     workers: int | None = None,
     store: Path | None = None,
     resume: bool = False,
+    force: bool = False,
     executor_factory: Callable[[], Executor] | None = None,
     progress: Progress | None = None,
 ) -> Iterator[tuple[int, Result]]:
@@ -46,14 +48,17 @@ def run_campaign(  # noqa: PLR0913 - one call with named options, each with a de
         process pool it must be picklable.
     n_chunks : int, [-]
         Number of chunks.
-    identity : str
+    identity : Identity
         Identity of the campaign, see `campaign_identity`; guards what is on disk.
     workers : int or None, [-]
         Number of workers; None for every core.
     store : Path or None
-        Folder where finished chunks are kept; None to keep none.
+        Folder where finished chunks are kept; None to keep none. Those of the same campaign that
+        are there already are taken as done.
     resume : bool
-        Whether to take chunks found in `store` as done.
+        Whether to insist that there are chunks to go on from.
+    force : bool
+        Whether chunks of another campaign in `store` are removed rather than the call refused.
     executor_factory : callable or None
         Makes a `concurrent.futures.Executor`; called again should that one break. None for threads.
     progress : callable or None
@@ -69,7 +74,9 @@ def run_campaign(  # noqa: PLR0913 - one call with named options, each with a de
     ParameterError
         If `n_chunks` or `workers` is below 1.
     ResultsError
-        If `store` cannot be written or belongs to another campaign.
+        If `store` cannot be written.
+    UnfitFolderError
+        If `store` holds chunks of another campaign, or none where `resume` insists.
     ProbsoilError
         While iterating: a chunk failed or ended its worker; the message names it.
     StoppedEarly
@@ -80,7 +87,7 @@ def run_campaign(  # noqa: PLR0913 - one call with named options, each with a de
     count = worker_count(workers)
     kept = None
     if store is not None:
-        kept = open_store(store, identity=identity, n_chunks=n_chunks, resume=resume)
+        kept = open_store(store, identity=identity, n_chunks=n_chunks, resume=resume, force=force)
     campaign = _Campaign(evaluate, n_chunks, kept, progress or _unheard)
     return campaign.results(executor_factory or thread_pool(count), WINDOW_PER_WORKER * count)
 
@@ -123,6 +130,8 @@ class _Campaign:
                         self._collect()
                         self._fill(min(index + window, self._n_chunks))
                     yield index, self._finished.pop(index)
+                if self._stop.asked:  # while the last chunk was in the caller's hands
+                    raise self._stopped()
         except KeyboardInterrupt:  # a second signal: stop without waiting for what is in flight
             patient = False
             raise self._stopped() from None
@@ -233,8 +242,11 @@ class _Campaign:
     def _stopped(self) -> StoppedEarly:
         head = f"stopped early after {self._n_done} of {self._n_chunks} chunks"
         if self._store is None:
-            return StoppedEarly(f"{head}; nothing is kept, because no folder was given")
+            return StoppedEarly(f"{head}; nothing is kept, because no folder was given", kept=False)
+        kept = len(self._store)
+        if not kept:
+            return StoppedEarly(f"{head}; nothing is kept", kept=False)
         return StoppedEarly(
-            f"{head}; {len(self._store)} are kept in '{self._store.folder}': "
-            "run the same again with resume (--resume) to go on from there"
+            f"{head}; {kept} {'is' if kept == 1 else 'are'} kept in '{self._store.folder}': "
+            "run the same again to go on from there (with --resume it never begins anew)"
         )

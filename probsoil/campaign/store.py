@@ -19,39 +19,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from probsoil.campaign.files import prepare_folder, write_durably
-from probsoil.errors import ProbsoilError, ResultsError
+from probsoil.campaign.identity import Identity, differences
+from probsoil.errors import ProbsoilError, ResultsError, UnfitFolderError
 
-FORMAT = 1
+FORMAT = 2
 MANIFEST = "manifest.json"
+NOTICE = 25
+"""Level of what a user is told in passing: above information, below a warning."""
+MOST_DIFFERENCES = 12  # named in a refusal; the rest are counted
 GUARD_LENGTH = 64  # hexadecimal digits of a SHA-256
 
+logging.addLevelName(NOTICE, "NOTICE")
 logger = logging.getLogger(__name__)
-
-
-def campaign_identity(content: str | bytes, **settings: str | float) -> str:
-    """Return a text that is the same for two campaigns only if their results are the same.
-
-    Parameters
-    ----------
-    content : str or bytes
-        What is computed, such as the text of the input file.
-    **settings : str or float
-        Everything else the results depend on (seed, number of realisations, version, ...).
-
-    Returns
-    -------
-    str
-        SHA-256 of content and settings, with the settings written out for people to read.
-
-    Examples
-    --------
-    >>> campaign_identity("a = 1", seed=3)[-8:]
-    '(seed 3)'
-    """
-    data = content.encode() if isinstance(content, str) else content
-    stated = json.dumps(settings, sort_keys=True)
-    digest = hashlib.sha256(hashlib.sha256(data).digest() + stated.encode()).hexdigest()
-    return f"{digest} ({', '.join(f'{key} {value}' for key, value in settings.items())})"
 
 
 class ChunkStore:
@@ -63,7 +42,7 @@ class ChunkStore:
     ----------
     folder : Path
         Folder of the chunk files; it exists.
-    identity : str
+    identity : Identity
         Identity of the campaign.
     n_chunks : int, [-]
         Number of chunks of the campaign.
@@ -74,9 +53,9 @@ class ChunkStore:
         Folder of the chunk files.
     """
 
-    def __init__(self, folder: Path, *, identity: str, n_chunks: int) -> None:
+    def __init__(self, folder: Path, *, identity: Identity, n_chunks: int) -> None:
         self.folder = folder
-        self._identity = identity
+        self._identity = identity.digest
         self._n_chunks = n_chunks
         self._room_checked = False
 
@@ -168,19 +147,25 @@ class ChunkStore:
             )
 
 
-def open_store(folder: Path, *, identity: str, n_chunks: int, resume: bool) -> ChunkStore:
+def open_store(
+    folder: Path, *, identity: Identity, n_chunks: int, resume: bool = False, force: bool = False
+) -> ChunkStore:
     """Return a store that is known to be writable and to belong to this campaign.
+
+    Chunks of this campaign that are in the folder already are gone on from.
 
     Parameters
     ----------
     folder : Path
         Folder of the chunk files, made where missing.
-    identity : str
+    identity : Identity
         Identity of the campaign, see `campaign_identity`.
     n_chunks : int, [-]
         Number of chunks of the campaign.
     resume : bool
-        Whether to go on from chunks found in the folder. Where false, they are removed.
+        Whether to insist that there are chunks to go on from.
+    force : bool
+        Whether to remove chunks of another campaign rather than refuse.
 
     Returns
     -------
@@ -190,23 +175,57 @@ def open_store(folder: Path, *, identity: str, n_chunks: int, resume: bool) -> C
     Raises
     ------
     ResultsError
-        If the folder cannot be written, or is to be resumed and is of another campaign.
+        If the folder cannot be written.
+    UnfitFolderError
+        If the folder holds chunks of another campaign, or none where `resume` insists; nothing in
+        it is then touched.
     """
-    prepare_folder(folder)
     store = ChunkStore(folder, identity=identity, n_chunks=n_chunks)
-    manifest = {"format": FORMAT, "identity": identity, "n_chunks": n_chunks}
-    found = folder / MANIFEST
-    if resume and found.exists():
-        _require_same(found, manifest)
-        logger.info("going on from %d of %d chunks in '%s'", len(store), n_chunks, folder)
-        _remove(folder, ".chunk-*.part")
-        return store
+    kept = kept_chunks(folder)
+    if kept:
+        differing = _differences(folder / MANIFEST, identity, n_chunks)
+        if differing is None:
+            return _gone_on_from(store, kept, n_chunks)
+        if resume or not force:
+            raise UnfitFolderError(_refusal(folder, kept, differing))
+    elif resume:
+        raise UnfitFolderError(
+            f"'{folder}' holds no finished chunks to go on from (a run that was completed leaves none); "
+            "run the same without resuming (--resume)"
+        )
     if len(store):
-        logger.warning("%d chunks of an earlier run in '%s' are not used and removed", len(store), folder)
+        logger.warning("%d chunks of another run in '%s' are not used and removed", len(store), folder)
     discard_chunks(folder)
     prepare_folder(folder)
-    write_durably(found, (json.dumps(manifest, indent=2) + "\n").encode())
+    manifest = {"format": FORMAT, "n_chunks": n_chunks, **identity.to_dict()}
+    write_durably(folder / MANIFEST, (json.dumps(manifest, indent=1) + "\n").encode())
     return store
+
+
+def _gone_on_from(store: ChunkStore, kept: int, n_chunks: int) -> ChunkStore:
+    """Return a store whose chunks are this campaign's, and say so."""
+    prepare_folder(store.folder)
+    _remove(store.folder, ".chunk-*.part")
+    logger.log(
+        NOTICE, "Going on from %d of %d chunks that are finished in '%s'", kept, n_chunks, store.folder
+    )
+    return store
+
+
+def kept_chunks(folder: Path) -> int:
+    """Return how many finished chunks a folder holds that a campaign can go on from.
+
+    Parameters
+    ----------
+    folder : Path
+        Folder given to `open_store`.
+
+    Returns
+    -------
+    int, [-]
+        Number of chunk files; 0 where no manifest says whose they are.
+    """
+    return sum(1 for _ in folder.glob("chunk-*.npz")) if (folder / MANIFEST).exists() else 0
 
 
 def discard_chunks(folder: Path) -> None:
@@ -241,27 +260,34 @@ def _remove(folder: Path, *patterns: str) -> None:
                 raise ResultsError(f"'{path}' cannot be removed: {fault.strerror}") from fault
 
 
-def _require_same(path: Path, expected: Mapping[str, object]) -> None:
-    """Refuse a manifest of another campaign."""
+def _differences(path: Path, identity: Identity, n_chunks: int) -> list[str] | None:
+    """Return how a stored manifest differs from what is asked for; None where it does not."""
     try:
         found = json.loads(path.read_bytes())
     except (OSError, ValueError) as fault:
-        raise ResultsError(
-            f"'{path}' cannot be read ({fault}); start anew without resuming, or name another folder"
-        ) from fault
-    if found != expected:
-        raise ResultsError(
-            f"the chunks in '{path.parent}' are of another campaign and cannot be resumed:\n"
-            f"  in the folder: {_named(found)}\n  asked for:     {_named(expected)}\n"
-            "start anew without resuming, or name another folder"
-        )
+        return [f"'{path.name}', which says whose they are, cannot be read ({fault})"]
+    if not isinstance(found, Mapping) or found.get("format") != FORMAT:
+        return [f"'{path.name}', which says whose they are, is of another form"]
+    listed = differences(found, identity)
+    if not listed and found.get("n_chunks") != n_chunks:
+        listed = [f"the number of chunks was {found.get('n_chunks')}, is {n_chunks}"]
+    return listed or None
 
 
-def _named(manifest: object) -> str:
-    """Return a manifest in one line."""
-    if not isinstance(manifest, Mapping):
-        return repr(manifest)
-    return f"format {manifest.get('format')}, {manifest.get('n_chunks')} chunks, {manifest.get('identity')}"
+def _refusal(folder: Path, kept: int, differing: list[str]) -> str:
+    """Say why chunks cannot be gone on from, and what to do."""
+    lines = [f"  {phrase}" for phrase in differing[:MOST_DIFFERENCES]]
+    if len(differing) > MOST_DIFFERENCES:
+        lines.append(f"  and {len(differing) - MOST_DIFFERENCES} more differences")
+    chunks = "1 finished chunk" if kept == 1 else f"{kept} finished chunks"
+    return "\n".join(
+        [
+            f"'{folder}' holds {chunks} of another run, not of the one asked for:",
+            *lines,
+            "ask for that run again to go on from there, name another folder, or let what was kept be "
+            "removed (--force)",
+        ]
+    )
 
 
 def _archive(index: int, result: Mapping[str, NDArray[np.generic]]) -> bytes:

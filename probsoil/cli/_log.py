@@ -11,9 +11,9 @@ _FORM = logging.Formatter("%(asctime)s %(levelname)-7s %(name)s: %(message)s")
 
 
 class FolderLog(logging.Handler):
-    """Writes to a file of a folder from the moment the folder exists; never makes the folder.
+    """Writes to a file of a folder from the moment it is told to begin; never makes the folder.
 
-    So a run that is refused before it begins leaves nothing behind.
+    So a run that is refused before it begins leaves nothing behind, in a folder of other things as well.
 
     Parameters
     ----------
@@ -24,16 +24,19 @@ class FolderLog(logging.Handler):
     ----------
     path : Path
         Log file.
+    begun : bool
+        Whether records are written.
     """
 
     def __init__(self, path: Path) -> None:
         super().__init__(logging.INFO)
         self.path = path
+        self.begun = False
         self._waiting: list[str] = []
         self.setFormatter(_FORM)
 
     def emit(self, record: logging.LogRecord) -> None:
-        """Write a record, or keep it until the folder is there.
+        """Write a record, or keep it until the run has begun.
 
         Parameters
         ----------
@@ -43,14 +46,19 @@ class FolderLog(logging.Handler):
         self._waiting.append(self.format(record))
         self._write()
 
+    def begin(self) -> None:
+        """Write what is waiting, and from now on every record at once."""
+        self.begun = True
+        self._write()
+
     def close(self) -> None:
-        """Write what is still waiting, if the folder has come to be, and close."""
+        """Write what is still waiting, if the run has begun, and close."""
         if self._waiting:
             self._write()
         super().close()
 
     def _write(self) -> None:
-        if not self.path.parent.is_dir():
+        if not self.begun or not self.path.parent.is_dir():
             return
         try:
             with self.path.open("a", encoding="utf-8") as stream:
@@ -61,8 +69,8 @@ class FolderLog(logging.Handler):
 
 
 @contextmanager
-def logged_run(folder: Path, command: str, *, quiet: bool) -> Iterator[None]:
-    """Log a run to its folder, warnings of Python included, and warnings of ours to standard error.
+def logged_run(folder: Path, command: str, *, quiet: bool) -> Iterator[FolderLog]:
+    """Log a run to its folder, warnings of Python included; notices and warnings of ours to standard error.
 
     Parameters
     ----------
@@ -75,16 +83,16 @@ def logged_run(folder: Path, command: str, *, quiet: bool) -> Iterator[None]:
 
     Yields
     ------
-    None
-        While the log is open. An unexpected error that passes is logged with its traceback
-        and carries the path of the log as attribute `log`.
+    FolderLog
+        The log, which writes nothing before its `begin` is called. An unexpected error that passes is
+        logged with its traceback and carries the path of the log as attribute `log`.
     """
     root = logging.getLogger("probsoil")
     log = FolderLog(folder / LOG_NAME)
     handlers: list[logging.Handler] = [log]
     if not quiet:
         handlers.append(logging.StreamHandler())
-        handlers[-1].setLevel(logging.WARNING)
+        handlers[-1].setLevel(logging.INFO + 1)  # notices lie between information and warnings
     level = root.level
     root.setLevel(logging.INFO)
     for handler in handlers:
@@ -93,9 +101,9 @@ def logged_run(folder: Path, command: str, *, quiet: bool) -> Iterator[None]:
         with warnings.catch_warnings():
             warnings.showwarning = _log_warning
             root.info("%s", command)
-            yield
+            yield log
             root.info("done")
-    except Exception as fault:
+    except (Exception, KeyboardInterrupt) as fault:
         _log_fault(root, log, fault)
         raise
     finally:
@@ -116,15 +124,16 @@ def _log_warning(
     logging.getLogger("probsoil").info("%s: %s (%s, line %d)", category.__name__, message, filename, lineno)
 
 
-def _log_fault(root: logging.Logger, log: FolderLog, fault: Exception) -> None:
+def _log_fault(root: logging.Logger, log: FolderLog, fault: BaseException) -> None:
     """Log what ended a run: in a line if it was foreseen, else with the traceback."""
+    from probsoil.campaign.interruption import is_interrupt
     from probsoil.errors import ProbsoilError
 
-    if isinstance(fault, ProbsoilError):
-        root.info("ended: %s", fault)
+    if is_interrupt(fault) or isinstance(fault, ProbsoilError):
+        root.info("ended: %s", str(fault) or "interrupted")
         return
     record = root.makeRecord(root.name, logging.INFO, __file__, 0, "failed unexpectedly", (), None)
     record.exc_info = (type(fault), fault, fault.__traceback__)
     log.emit(record)
-    if log.path.is_file():
+    if log.begun and log.path.is_file():
         fault.log = log.path  # type: ignore[attr-defined]

@@ -4,16 +4,11 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from probsoil.cli._output import answer_console, print_table
+from probsoil.cli._output import answer_console, counted, print_table
+from probsoil.report.chance import chance_text, verdict_label
+from probsoil.report.percentages import percent_text, plain_percent
 from probsoil.report.ranking import basis_text, none_ranked_text, ranked_by
-from probsoil.report.text import (
-    chance_text,
-    count_text,
-    event_text,
-    percent_text,
-    plain_percent,
-    verdict_label,
-)
+from probsoil.report.text import event_text, is_number, pair_text, rounded, warning_share
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -22,6 +17,11 @@ DRIVERS_SHOWN = 3  # of each limit; the report has them all
 CAUTION = (
     "An aid to judgement: it answers for its models and for the values given to it, no more. "
     "Local codes and a licensed engineer decide."
+)
+
+ELASTICITY = (
+    "Elasticity: change of the chance, as a part of itself, for a small change of a parameter's spread (as a "
+    "part of that) or of its mean (in standard deviations); ranks go by it, with its interval in brackets."
 )
 
 
@@ -36,12 +36,12 @@ def print_summary(results: dict[str, Any], folder: Path) -> None:
         Results folder.
     """
     console = answer_console()
-    count = count_text(results["realisations"])
-    console.print(f"{results['title']}: {count} realisations ({results['draws']}), seed {results['seed']}\n")
+    count = counted(results["realisations"], "realisation")
+    console.print(f"{results['title']}: {count} ({results['draws']}), seed {results['seed']}\n")
     _print_limits(console, results)
     _print_drivers(console, results)
     for warning in results["warnings"]:
-        console.print(f"Warning: {warning['message']}")
+        console.print(f"Warning: {warning['message']}{warning_share(warning)}")
     console.print(f"Report: {folder / 'report.html'}", soft_wrap=True)
     console.print(CAUTION)
 
@@ -73,15 +73,24 @@ def _print_limits(console: "Console", results: dict[str, Any]) -> None:
 def _print_drivers(console: "Console", results: dict[str, Any]) -> None:
     rows = []
     for limit in results["limits"]:
+        measure = ranked_by(results, limit["name"])
         drivers = [driver for driver in results["drivers"] if driver["limit"] == limit["name"]]
-        rows += [_driver_row(driver) for driver in _foremost(drivers)]
+        rows += [_driver_row(driver, measure) for driver in _foremost(drivers, measure)]
     if rows:
         print_table(
             console,
             "Foremost drivers",
-            ("limit", "rank", "parameter", "share of the spread", "a larger value"),
+            (
+                "limit",
+                "rank",
+                "parameter",
+                "elasticity of the chance",
+                "share of the spread",
+                "a larger value",
+            ),
             rows,
         )
+        console.print(ELASTICITY)
     notes = {quality["limit"]: quality["note"] for quality in results["driver_quality"]}
     for limit in results["limits"]:
         said = [_ranking(limit, results), notes.get(limit["name"])]
@@ -99,20 +108,32 @@ def _ranking(limit: dict[str, Any], results: dict[str, Any]) -> str | None:
     return none_ranked_text(limit, measure, drivers) if judged else None
 
 
-def _foremost(drivers: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:
-    """Return the first by rank; where nothing could be ranked, the first by share."""
-    known = [driver for driver in drivers if driver["share"] is not None]
+def _foremost(drivers: Sequence[Mapping[str, Any]], measure: str) -> list[Mapping[str, Any]]:
+    """Return the first by rank, and after them those of the largest share; none where nothing can be said.
+
+    Without an elasticity, as where nothing or everything exceeds, nothing is known of the chance.
+    """
+    known = [driver for driver in drivers if is_number(driver[f"{measure}_elasticity"])]
     ranked = sorted((driver for driver in known if driver["rank"]), key=lambda driver: int(driver["rank"]))
-    return (ranked or sorted(known, key=lambda driver: -float(driver["share"])))[:DRIVERS_SHOWN]
+    others = [driver for driver in known if not driver["rank"] and driver["share"] is not None]
+    return (ranked + sorted(others, key=lambda driver: -float(driver["share"])))[:DRIVERS_SHOWN]
 
 
-def _driver_row(driver: Mapping[str, Any]) -> tuple[str, str, str, str, str]:
-    low, high = (percent_text(share, 0) for share in driver["share_interval"])
+def _driver_row(driver: Mapping[str, Any], measure: str) -> tuple[str, str, str, str, str, str]:
     direction = driver["direction"]
+    elasticity = rounded(driver[f"{measure}_elasticity"], 2)
     return (
         driver["limit"],
-        str(driver["rank"] or "none"),
+        str(driver["rank"] or "not ranked"),
         driver["parameter"],
-        f"{percent_text(driver['share'], 0)} ({low.removesuffix(' %')} to {high})",
+        f"{measure} {elasticity} ({pair_text(driver[f'{measure}_interval'])})",
+        _share_text(driver),
         "unclear" if direction == "unclear" else f"{direction} the chance",
     )
+
+
+def _share_text(driver: Mapping[str, Any]) -> str:
+    if driver["share"] is None:
+        return "not available"
+    low, high = (percent_text(share, 0) for share in driver["share_interval"])
+    return f"{percent_text(driver['share'], 0)} ({low.removesuffix(' %')} to {high.removesuffix(' %')})"

@@ -2,7 +2,7 @@
 
 from typing import TYPE_CHECKING
 
-from probsoil.cli._output import print_table
+from probsoil.cli._output import counted, print_table
 from probsoil.report.text import event_text, percent_text, plain_percent
 
 if TYPE_CHECKING:
@@ -29,11 +29,14 @@ def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSp
         Its parameters.
     """
     console.print(
-        f"{scenario.title}: {scenario.realisations:,d} realisations ({scenario.draws}), "
-        f"seed {scenario.seed}, to {scenario.horizon:g} years\n"
+        f"{scenario.title}: {counted(scenario.realisations, 'realisation')} ({scenario.draws}), "
+        f"seed {scenario.seed}, to {counted(scenario.horizon, 'year')}\n"
     )
     _print_layers(console, scenario, space)
     _print_stages(console, scenario)
+    if scenario.drains is not None:
+        text = scenario.drains.describe()
+        console.print(f"{text[0].upper()}{text[1:]}\n")
     _print_parameters(console, scenario, space)
     _print_dependence(console, scenario)
     _print_limits(console, scenario)
@@ -51,13 +54,19 @@ def _print_layers(console: "Console", scenario: "Scenario", space: "ParameterSpa
 
 
 def _print_stages(console: "Console", scenario: "Scenario") -> None:
+    from probsoil.ground.foundation import foundation_of
+
     load = scenario.load
     if load.shape == "embankment":
         console.print(
             f"Load: embankment, crest {load.crest_width:g} m wide, side slopes 1 on {load.side_slope:g}\n"
         )
     else:
-        console.print("Load: over a wide area\n")
+        foundation = foundation_of(load)
+        text = "over a wide area" if foundation is None else f"{load.shape}, {foundation.title}"
+        console.print(f"Load: {text}\n")
+        if foundation is not None:
+            console.print(f"Settlement is that of the {foundation.station}\n")
     print_table(
         console,
         "Stages",

@@ -1,7 +1,8 @@
 """The command `probsoil`: its subcommands, and what each ending means to the shell.
 
-Exit codes: 0 done, 1 failed, 2 mistake in what was asked for (options or scenario), 3 stopped early
-with partial results kept. Standard output carries the answer only; the rest goes to standard error.
+Exit codes: 0 done, 1 failed, 2 mistake in what was asked for (options, scenario, or a results folder
+that does not go with them), 3 stopped early with partial results kept. Standard output carries the
+answer only; the rest goes to standard error.
 """
 
 import io
@@ -13,15 +14,17 @@ from typing import Annotated
 import typer
 from typer.main import get_command
 
+from probsoil.cli._output import answering
 from probsoil.cli.assess import assess
 from probsoil.cli.check import check
 from probsoil.cli.new import new
 from probsoil.cli.report import report
 from probsoil.cli.schema import schema
 from probsoil.cli.sheet import sheet
-from probsoil.errors import ParameterError, ProbsoilError, ScenarioError, StoppedEarly
+from probsoil.errors import ParameterError, ProbsoilError, ScenarioError, StoppedEarly, UnfitFolderError
 
 DONE, FAILED, MISTAKE, STOPPED = 0, 1, 2, 3
+_HELP = {"-h", "--help", "--version"}
 _INTERRUPTED = 130  # how typer ends when interrupted outside a campaign
 
 app = typer.Typer(
@@ -71,38 +74,53 @@ def main(arguments: Sequence[str] | None = None) -> int:
         if isinstance(stream, io.TextIOWrapper):  # an odd character is no reason to lose an answer
             stream.reconfigure(errors="backslashreplace")
     try:
+        code = _run(given)
+        with answering():  # what is still on its way
+            pass
+    except ProbsoilError as fault:
+        typer.echo(_message(fault), err=True)
+        return _code(fault)
+    except BaseException as fault:
+        if _interrupted(fault):
+            typer.echo("Interrupted; nothing is kept.", err=True)
+            return FAILED
+        if not isinstance(fault, Exception):
+            raise
+        typer.echo(f"probsoil failed unexpectedly: {type(fault).__name__}: {fault}", err=True)
+        typer.echo(f"The details are in {_write_details(fault)}; please report them.", err=True)
+        return FAILED
+    return code
+
+
+def _run(given: list[str]) -> int:
+    """Hand the command line to its command and return the exit code of an ordinary ending."""
+    try:
         get_command(app).main(
             args=given, prog_name="probsoil", obj={"command": shlex.join(["probsoil", *given])}
         )
     except SystemExit as end:
         code = end.code if isinstance(end.code, int) else DONE if end.code is None else FAILED
-        return FAILED if code == _INTERRUPTED else code
-    except ProbsoilError as fault:
-        typer.echo(_message(fault), err=True)
-        return _code(fault)
-    except Exception as fault:
-        if _interrupted(fault):
-            typer.echo("Interrupted before any realisation was finished; nothing is kept.", err=True)
-            return FAILED
-        typer.echo(f"probsoil failed unexpectedly: {type(fault).__name__}: {fault}", err=True)
-        typer.echo(f"The details are in {_write_details(fault)}; please report them.", err=True)
-        return FAILED
+        if code == _INTERRUPTED:
+            raise KeyboardInterrupt from None
+        return code
+    except OSError:
+        if _HELP & set(given):  # no command ran: only the printing can have failed
+            with answering():
+                raise
+        raise
     return DONE
 
 
-def _interrupted(fault: BaseException | None) -> bool:
-    """Whether a signal lies behind an error: compiled code wraps it in errors of its own."""
-    while fault is not None:
-        if isinstance(fault, KeyboardInterrupt):
-            return True
-        fault = fault.__cause__ or fault.__context__
-    return False
+def _interrupted(fault: BaseException) -> bool:
+    from probsoil.campaign.interruption import is_interrupt
+
+    return is_interrupt(fault)
 
 
 def _code(fault: ProbsoilError) -> int:
     if isinstance(fault, StoppedEarly):
-        return STOPPED
-    return MISTAKE if isinstance(fault, ScenarioError | ParameterError) else FAILED
+        return STOPPED if fault.kept else FAILED
+    return MISTAKE if isinstance(fault, ScenarioError | ParameterError | UnfitFolderError) else FAILED
 
 
 def _message(fault: ProbsoilError) -> str:

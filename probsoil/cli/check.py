@@ -8,7 +8,7 @@ import typer
 
 def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario file.")]) -> None:
     """Read a scenario, name every mistake in it, and print what was understood."""
-    from probsoil.cli._output import answer_console
+    from probsoil.cli._output import answer_console, answering
     from probsoil.cli._understood import print_scenario
     from probsoil.parameters import parameter_space
     from probsoil.scenario import read_scenario, remarks
@@ -16,8 +16,9 @@ def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario fi
     scenario = read_scenario(file)
     pairs = [(*rule.between, rule.rank_correlation) for rule in scenario.dependence]
     space = parameter_space(scenario.quantities(), pairs)
-    console = answer_console()
-    console.print(f"{file}: no mistakes found", soft_wrap=True)
-    print_scenario(console, scenario, space)
-    for remark in remarks(scenario):
-        console.print(f"Look again: {remark}")
+    with answering():
+        console = answer_console()
+        console.print(f"{file}: no mistakes found", soft_wrap=True)
+        print_scenario(console, scenario, space)
+        for remark in remarks(scenario):
+            console.print(f"Look again: {remark}")

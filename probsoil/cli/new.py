@@ -1,16 +1,20 @@
 """`probsoil new`: a starter scenario with comments."""
 
+import shlex
 from pathlib import Path
 from typing import Annotated
 
 import typer
 
+from probsoil.cli._output import answering
 from probsoil.errors import ResultsError
 
 
 def new(
     file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario file to write.")],
-    like: Annotated[str, typer.Option(help="Kind of works to begin from.")] = "embankment",
+    like: Annotated[
+        str, typer.Option(help="Kind of works to begin from: embankment, footing or tank.")
+    ] = "embankment",
     force: Annotated[bool, typer.Option("--force", help="Replace the file if there is one.")] = False,
 ) -> None:
     """Write a starter scenario with comments."""
@@ -26,4 +30,5 @@ def new(
         ) from None
     except OSError as fault:
         raise ResultsError(f"'{file}' cannot be written: {fault.strerror}") from fault
-    typer.echo(f"Wrote {file}. Edit it, then: probsoil check {file}")
+    with answering():
+        typer.echo(f"Wrote {file}. Edit it, then: probsoil check {shlex.quote(str(file))}")

@@ -3,7 +3,8 @@
 
 def schema() -> None:
     """Print the JSON Schema of the scenario file, for editors that complete from it."""
-    from probsoil.cli._output import print_json
+    from probsoil.cli._output import answering, print_json
     from probsoil.scenario import scenario_schema
 
-    print_json(scenario_schema())
+    with answering():
+        print_json(scenario_schema())

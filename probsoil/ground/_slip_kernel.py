@@ -17,9 +17,11 @@ class Moments(NamedTuple):
     """What the factor of safety of every circle is made of.
 
     `strength` is (block, column, lane) [kPa]; the sparse rows are circles, weights in [m2];
-    `fill` (block, 3, lane) holds unit weight, tangent of the friction angle and cohesion;
-    `fill_terms` (3, circle) holds the driving moment per unit weight [m3], the friction moment
-    per unit weight and tangent [m3] and the cohesion moment per kPa [m2].
+    `fill` (block, 4, lane) holds unit weight, tangent of the friction angle, cohesion and traffic;
+    `fill_terms` (5, circle) holds the driving moment per unit weight [m3], the friction moment
+    per unit weight and tangent [m3], the moments of cohesion and of traffic per kPa, and the friction
+    moment of traffic per kPa and tangent [m2]; `touch` (circle,) and `bottom` (block, lane) are depths [m]
+    of the lowest point of a circle and of the firm base.
     """
 
     strength: FloatArray
@@ -28,6 +30,8 @@ class Moments(NamedTuple):
     weight: FloatArray
     fill: FloatArray
     fill_terms: FloatArray
+    touch: FloatArray
+    bottom: FloatArray
 
 
 _compiled = njit(nogil=True, cache=True, error_model="numpy", fastmath={"contract"})
@@ -57,16 +61,15 @@ def strength_on_slices(
     first_point: IntArray,
     point_depth: FloatArray,
     strength: FloatArray,
-    below: FloatArray,
     out: FloatArray,
 ) -> None:
     """Mean strength of every slice, each layer by the thickness it has in the slice.
 
     `edge` (slice + 1,) holds the depths between slices [m]; `boundary` (block, layer + 1, lane) and
     `point_depth` (block, point, lane) are depths [m]; points ``first_point[j]`` to
-    ``first_point[j + 1] - 1`` belong to layer j; `strength` is (block, kind, point, lane); a slice
-    whose middle lies below the last boundary takes ``below[kind]``, and one that reaches below it
-    counts its upper part alone; `out` is (block, kind, slice, lane).
+    ``first_point[j + 1] - 1`` belong to layer j; `strength` is (block, kind, point, lane); of a slice
+    that reaches below the last boundary its upper part alone counts, and below that the strength
+    goes on as it is there; `out` is (block, kind, slice, lane).
     """
     n_block, n_kind, _, _ = strength.shape
     n_layer = first_point.size - 1
@@ -74,12 +77,8 @@ def strength_on_slices(
         for lane in range(LANES):
             for k in range(edge.size - 1):
                 bottom = boundary[b, n_layer, lane]
-                if 0.5 * (edge[k] + edge[k + 1]) > bottom:
-                    for kind in range(n_kind):
-                        out[b, kind, k, lane] = below[kind]
-                    continue
                 for kind in range(n_kind):
-                    out[b, kind, k, lane] = 0.0
+                    out[b, kind, k, lane] = strength[b, kind, -1, lane] if edge[k] >= bottom else 0.0
                 end = min(edge[k + 1], bottom)
                 for layer in range(n_layer):
                     upper = max(edge[k], boundary[b, layer, lane])
@@ -96,10 +95,10 @@ def strength_on_slices(
 @_compiled
 def _factors(b: int, circle: int, moments: Moments, ratio: FloatArray) -> None:
     """Factor of safety of one circle in every lane of a block."""
-    driving, friction, cohesion = moments.fill_terms[:, circle]
+    driving, friction, cohesion, traffic, under_traffic = moments.fill_terms[:, circle]
     for lane in range(LANES):
-        by_friction = moments.fill[b, 0, lane] * moments.fill[b, 1, lane] * friction
-        ratio[lane] = by_friction + moments.fill[b, 2, lane] * cohesion
+        normal = moments.fill[b, 0, lane] * friction + moments.fill[b, 3, lane] * under_traffic
+        ratio[lane] = moments.fill[b, 1, lane] * normal + moments.fill[b, 2, lane] * cohesion
     entry, end = moments.row_start[circle], moments.row_start[circle + 1]
     while entry + 3 < end:  # four at a time, so that the sums go to memory and back less often
         j0, j1, j2, j3 = moments.column[entry : entry + 4]
@@ -114,16 +113,18 @@ def _factors(b: int, circle: int, moments: Moments, ratio: FloatArray) -> None:
             ratio[lane] += moments.weight[entry] * moments.strength[b, moments.column[entry], lane]
         entry += 1
     for lane in range(LANES):
-        ratio[lane] /= moments.fill[b, 0, lane] * driving
+        ratio[lane] /= moments.fill[b, 0, lane] * driving + moments.fill[b, 3, lane] * traffic
 
 
 @_compiled
 def least_factor(moments: Moments, factor: FloatArray, critical: IntArray) -> None:
-    """Least ratio of resisting to driving moment over all circles, and which circle gives it.
+    """Least ratio of resisting to driving moment over the circles above the base, and which gives it.
 
-    `factor` and `critical` are (block, lane).
+    `factor` and `critical` are (block, lane). Where every circle reaches below the base, the shallowest
+    is taken.
     """
     ratio = np.empty(LANES)
+    shallowest = int(np.argmin(moments.touch))
     for b in range(factor.shape[0]):
         for lane in range(LANES):
             factor[b, lane] = np.inf
@@ -131,6 +132,12 @@ def least_factor(moments: Moments, factor: FloatArray, critical: IntArray) -> No
         for c in range(moments.row_start.size - 1):
             _factors(b, c, moments, ratio)
             for lane in range(LANES):
-                if ratio[lane] < factor[b, lane]:
+                above = moments.touch[c] <= moments.bottom[b, lane]
+                if above and ratio[lane] < factor[b, lane]:
                     factor[b, lane] = ratio[lane]
                     critical[b, lane] = c
+        _factors(b, shallowest, moments, ratio)
+        for lane in range(LANES):
+            if critical[b, lane] < 0:
+                factor[b, lane] = ratio[lane]
+                critical[b, lane] = shallowest

@@ -6,10 +6,11 @@ import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
+from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation
-from probsoil.ground.load_stress import embankment_influence
+from probsoil.ground.load_stress import trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
-from probsoil.ground.site_model import Embankment, SiteModel
+from probsoil.ground.site_model import SiteModel
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -30,6 +31,8 @@ class AppliedLoad:
         Height of fill at the load knots.
     water_depth : ndarray, shape (n_sample,), [m]
         Depth of the water table.
+    berm_share : ndarray or None, shape (n_sample, n_point), [-]
+        As `slope_share`, below the middle of a berm and its slope; None without berms.
     """
 
     stress: FloatArray
@@ -37,6 +40,7 @@ class AppliedLoad:
     slope_share: FloatArray
     height: FloatArray
     water_depth: FloatArray
+    berm_share: FloatArray | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -114,14 +118,14 @@ def applied_load(
     top narrows; the base stays the same. A foundation adds nothing above its base; where the base
     cuts through the thickness of a point, the part below it counts.
     """
-    n_sample = depth.shape[0]
+    n_sample, berm = depth.shape[0], None
     heights = [site.fill_height(float(time)) for time in site.knots]
     pressures = [site.pressure(float(time)) for time in site.knots]
     weight = fill_weight(values, n_sample)
     if site.embankment is not None:
-        spread, share = _embankment_spread(site.embankment, depth)
+        spread, share, berm = _embankment_spread(site.embankment, depth)
         at_height = {height: _influence(site.embankment, depth, height) for height in set(heights)}
-        stress = [weight[:, None] * height * at_height[height] for height in heights]
+        stress = [weight[:, None] * at_height[height] for height in heights]
     else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
@@ -136,6 +140,7 @@ def applied_load(
         slope_share=share,
         height=np.array(heights),
         water_depth=column(values, "site.water_table", n_sample),
+        berm_share=berm,
     )
 
 
@@ -158,11 +163,19 @@ def fill_weight(values: Values, n_sample: int) -> FloatArray:
     return column(values, key, n_sample) if key in values else np.zeros(n_sample)
 
 
-def _embankment_spread(shape: Embankment, depth: FloatArray) -> tuple[FloatArray, FloatArray]:
-    spread = _influence(shape, depth, shape.full_height)
-    middle = shape.base_width / 2.0 - shape.side_slope * shape.full_height / 2.0
-    share = np.clip(_influence(shape, depth, shape.full_height, middle) / spread, 0.0, 1.0)
-    return spread, share
+def _embankment_spread(
+    shape: Embankment, depth: FloatArray
+) -> tuple[FloatArray, FloatArray, FloatArray | None]:
+    """Return the influence below the centreline, and what of it acts below slope and berm."""
+    middle, full = 0.5 * shape.base_width, shape.section(shape.full_height)
+    centre = _influence(shape, depth, shape.full_height)
+
+    def share(place: float) -> FloatArray:
+        return np.clip(_influence(shape, depth, shape.full_height, middle - place) / centre, 0.0, 1.0)
+
+    slope = share(0.5 * (full.berm_zone + full.slope_zone))
+    berm = share(0.5 * full.berm_zone) if shape.berm_width > 0.0 else None
+    return centre / shape.full_height, slope, berm
 
 
 def _foundation_spread(
@@ -225,11 +238,11 @@ def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: Fl
     """
     if not site.submergence:
         return np.zeros_like(load.spread)
-    submerged = np.minimum(np.maximum(settled, 0.0), load.water_depth + site.fill_height(time))
+    sunk = np.where(settled > 0.0, settled, 0.0)  # also where there is no number for want of convergence
+    submerged = np.minimum(sunk, load.water_depth + site.fill_height(time))
     return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, stress_at(site, load, time))
 
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:
-    return embankment_influence(
-        depth, offset, base_width=shape.base_width, top_width=max(shape.top_width(height), 0.0)
-    )
+    """Return the added stress at a height of fill over the unit weight of fill, [m]."""
+    return trapezia_influence(depth, offset, shape.trapezia(max(height, 0.0)))

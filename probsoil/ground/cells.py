@@ -1,6 +1,6 @@
 """Where the consolidation cells lie: finer towards every drained face."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -8,9 +8,10 @@ from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ParameterError
 
 DEFAULT_CELLS = 48
-FOUNDATION_CELLS = 72  # below a foundation the added stress changes with depth as well
+FOUNDATION_CELLS = 96  # below a foundation narrower than the ground is deep: its stress fades with depth
 _FEWEST_PER_LAYER = 3
 _FEWEST_PER_SEGMENT = 8
+_LEAST_CUT = 0.02  # of a layer; a base nearer to a boundary gets no face of its own
 _NEAR_SHARE = 0.03  # of a segment's thickness; how far the refinement at a drained face reaches
 
 
@@ -73,7 +74,8 @@ def graded_cells(
     base_drained : bool
         Whether what lies below the last layer drains freely. Ground level always does.
     load_depth : float, [m]
-        Depth of the base of a foundation, where water leaves as well: cells are fine there too.
+        Depth of the base of a foundation, where water leaves as well: cells are fine there too, and
+        one of their faces lies on it.
     target : int, [-]
         Number of cells to aim at over the whole profile.
 
@@ -94,6 +96,41 @@ def graded_cells(
     early gradients there are resolved; segments share the cells by the square root of their
     thickness.
     """
+    cut = _layer_cut(thickness, is_clay, load_depth)
+    if cut is not None:
+        index, share = cut
+        parts = thickness[index] * np.array([share, 1.0 - share])
+        thickness = np.concatenate([thickness[:index], parts, thickness[index + 1 :]])
+        is_clay = np.insert(is_clay, index, True)
+    cells = _graded(thickness, is_clay, base_drained, load_depth, target)
+    return cells if cut is None else _joined(cells, *cut)
+
+
+def _layer_cut(thickness: FloatArray, is_clay: BoolArray, load_depth: float) -> tuple[int, float] | None:
+    """Return the clay layer that the base of a foundation cuts, and where, as a share of it."""
+    bottom = np.cumsum(thickness)
+    index = int(np.searchsorted(bottom, load_depth, side="right"))
+    if index >= thickness.size or not is_clay[index]:
+        return None
+    share = float(1.0 - (bottom[index] - load_depth) / thickness[index])
+    return (index, share) if _LEAST_CUT < share < 1.0 - _LEAST_CUT else None
+
+
+def _joined(cells: Cells, index: int, share: float) -> Cells:
+    """Return cells of a profile in which one layer stood in two parts, as cells of the whole layer."""
+    upper, lower = cells.layer == index, cells.layer == index + 1
+    scale = np.where(upper, share, np.where(lower, 1.0 - share, 1.0))
+    return replace(
+        cells,
+        layer=np.where(cells.layer > index, cells.layer - 1, cells.layer),
+        share=scale * cells.share,
+        centre=scale * cells.centre + np.where(lower, share, 0.0),
+    )
+
+
+def _graded(
+    thickness: FloatArray, is_clay: BoolArray, base_drained: bool, load_depth: float, target: int
+) -> Cells:
     segments = _segments(is_clay)
     if not segments:
         raise ParameterError("is_clay must be true for at least one layer; got none")

@@ -1,6 +1,6 @@
 """Consolidation of the clay layers of a site and how far it has gone."""
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -129,6 +129,58 @@ def _shortening(
 
 def _drainage(site: SiteModel, drains: DrainForm, values: Values, ground: LoadedGround) -> RadialDrainage:
     """Return the sink that the drains make in every cell, by the share of the cell they reach."""
+    found = drain_terms(site, drains, values, ground)
+    factor = found.factor + found.resistance
+    return RadialDrainage(
+        rate=found.reached * 8.0 * found.ratio / (factor * drains.influence_diameter**2),
+        start=drains.installed,
+    )
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class DrainTerms:
+    """What makes up the sink to the drains in every cell.
+
+    Attributes
+    ----------
+    ratio : ndarray, shape (n_sample, n_cell), [-]
+        Horizontal over vertical permeability.
+    factor : ndarray, shape (n_sample, 1), [-]
+        mu of spacing and smear.
+    resistance : ndarray, shape (n_sample, n_cell), [-]
+        What the drain's own resistance adds to it; zero where it has none.
+    permeability : ndarray, shape (n_sample, n_cell), [m/year]
+        Horizontal permeability in situ.
+    reached : ndarray, shape (n_sample, n_cell), [-]
+        Share of the cell that drains reach.
+    """
+
+    ratio: FloatArray
+    factor: FloatArray
+    resistance: FloatArray
+    permeability: FloatArray
+    reached: FloatArray
+
+
+def drain_terms(site: SiteModel, drains: DrainForm, values: Values, ground: LoadedGround) -> DrainTerms:
+    """Return what makes up the sink to vertical drains.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Layers and cells.
+    drains : DrainForm
+        The drains.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        The ground before loading.
+
+    Returns
+    -------
+    terms : DrainTerms
+        Factor mu, what well resistance adds, and the share of each cell that is reached.
+    """
     layer, clay = site.cells.layer, ground.clay
     n_sample = ground.points.depth.shape[0]
     depth, thickness = ground.points.depth[:, clay], ground.points.thickness[:, clay]
@@ -140,13 +192,16 @@ def _drainage(site: SiteModel, drains: DrainForm, values: Values, ground: Loaded
         axis=1,
     )[:, layer]
     smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
-    factor = drain_factor(drains.influence_diameter / drains.diameter, drains.smear_ratio, smear)
+    permeability = ratio * _initial_permeability(site, values, ground)
+    resistance = np.zeros_like(depth)
     if drains.discharge_capacity is not None:
-        permeability = ratio * _initial_permeability(site, values, ground)
-        factor = factor + well_resistance(depth, drains.bottom, permeability, drains.discharge_capacity)
-    reached = np.clip((drains.bottom - depth) / thickness + 0.5, 0.0, 1.0)
-    return RadialDrainage(
-        rate=reached * 8.0 * ratio / (factor * drains.influence_diameter**2), start=drains.installed
+        resistance = well_resistance(depth, drains.bottom, permeability, drains.discharge_capacity)
+    return DrainTerms(
+        ratio=ratio,
+        factor=drain_factor(drains.influence_diameter / drains.diameter, drains.smear_ratio, smear),
+        resistance=resistance,
+        permeability=permeability,
+        reached=np.clip((drains.bottom - depth) / thickness + 0.5, 0.0, 1.0),
     )
 
 

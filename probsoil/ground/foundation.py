@@ -83,11 +83,11 @@ class Foundation:
 
     @property
     def title(self) -> str:
-        """Plan and depth in words."""
+        """Sides and depth in words."""
         plan = {
-            "strip": f"strip, {self.width:g} m wide",
-            "rectangle": f"rectangle, {self.width:g} m by {self.length:g} m",
-            "circle": f"circle, {self.width:g} m in diameter",
+            "strip": f"{self.width:g} m wide",
+            "rectangle": f"{self.width:g} m wide, {self.length:g} m long",
+            "circle": f"{self.width:g} m in diameter",
         }[self.shape]
         level = f"base {self.depth:g} m below ground level" if self.depth > 0.0 else "base at ground level"
         return f"{plan}, {level}, {self.contact} contact, uniform net pressure"

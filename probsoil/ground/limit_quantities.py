@@ -1,6 +1,7 @@
 """The quantity that each limit of a scenario watches, for every realisation."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -10,6 +11,7 @@ from probsoil.ground.profile import Values, column
 from probsoil.ground.response import Response
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario.limits import (
+    BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
     Limit,
@@ -50,8 +52,9 @@ def _quantity(site: SiteModel, limit: Limit, response: Response, values: Values)
     if isinstance(limit, SettlementLimit):
         return _settlement(limit, response, values)
     if isinstance(limit, SlipSafetyLimit):
-        factor = slip_with_model_error(response, values)[:, _checks(site, limit)]
-        return np.asarray(factor.min(axis=1, initial=np.inf))
+        return _least(slip_with_model_error(response, values), site, limit, site.slip_times)
+    if isinstance(limit, BearingSafetyLimit):
+        return _least(bearing_with_model_error(response, values), site, limit, site.bearing_times)
     if isinstance(limit, ConsolidationLimit):
         return response.degree_at_record[:, int(np.searchsorted(response.record, limit.at))]
     return _time_to_degree(site, limit, response)
@@ -62,6 +65,33 @@ def _settlement(limit: SettlementLimit, response: Response, values: Values) -> F
     start, end = (0.0, limit.at) if limit.between is None else limit.between
     settled = _settled(response, end) - _settled(response, start)
     return np.asarray(error * settled)
+
+
+def secondary_in_limits(limits: Sequence[Limit], response: Response, values: Values) -> FloatArray:
+    """Return the part of every settlement limit's quantity that is secondary compression.
+
+    Parameters
+    ----------
+    limits : sequence of Limit
+        The scenario's limits.
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    secondary : ndarray, shape (n_sample, n_limit), [m]
+        Model error included; not a number for limits on other quantities.
+    """
+    creeping = replace(response, settlement=response.secondary)
+    parts = [
+        _settlement(limit, creeping, values)
+        if isinstance(limit, SettlementLimit)
+        else np.full(response.settlement.shape[0], np.nan)
+        for limit in limits
+    ]
+    return np.stack(parts, axis=1)
 
 
 def _settled(response: Response, time: float | None) -> FloatArray:
@@ -87,10 +117,36 @@ def slip_with_model_error(response: Response, values: Values) -> FloatArray:
     return np.asarray(error[:, None] * response.slip)
 
 
-def _checks(site: SiteModel, limit: SlipSafetyLimit) -> list[int]:
-    """Return which checks a limit looks at: one time, or every stage end with fill on the ground."""
-    wanted = {stage.end for stage in site.stages} if limit.at is None else {limit.at}
-    return [index for index, time in enumerate(site.slip_times) if float(time) in wanted]
+def bearing_with_model_error(response: Response, values: Values) -> FloatArray:
+    """Return the factor of safety against bearing failure at every check, model error included.
+
+    Parameters
+    ----------
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    factor : ndarray, shape (n_sample, n_bearing), [-]
+        Capacity over pressure times measured over computed.
+    """
+    error = column(values, "model_error.stability", response.settlement.shape[0])
+    return np.asarray(error[:, None] * response.bearing)
+
+
+def _least(
+    factor: FloatArray, site: SiteModel, limit: SlipSafetyLimit | BearingSafetyLimit, times: FloatArray
+) -> FloatArray:
+    """Return the least factor over what a limit looks at: one time, or every stage end with a load.
+
+    The time at which traffic begins is looked at together with the stage ends.
+    """
+    at_ends = {stage.end for stage in site.stages} | {site.traffic_from}
+    wanted = at_ends if limit.at is None else {limit.at}
+    checks = [index for index, time in enumerate(times) if float(time) in wanted]
+    return np.asarray(factor[:, checks].min(axis=1, initial=np.inf))
 
 
 def _time_to_degree(site: SiteModel, limit: ConsolidationTimeLimit, response: Response) -> FloatArray:

@@ -1,5 +1,8 @@
 """Vertical stress that a load adds to the ground, from elasticity (Boussinesq half-space)."""
 
+from collections.abc import Sequence
+from dataclasses import dataclass
+
 import numpy as np
 
 from probsoil._typing import ArrayLike, FloatArray
@@ -54,6 +57,54 @@ def embankment_influence(
     left = _ramp(z, x + toe, x + shoulder)
     right = _ramp(z, toe - x, shoulder - x)
     return np.asarray(left + right, dtype=np.float64)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Trapezium:
+    """One trapezium of a section of fill.
+
+    Attributes
+    ----------
+    base_width, top_width : float, [m]
+        Its widths.
+    height : float, [m]
+        Its height.
+    """
+
+    base_width: float
+    top_width: float
+    height: float
+
+
+def trapezia_influence(depth: ArrayLike, offset: ArrayLike, trapezia: Sequence[Trapezium]) -> FloatArray:
+    """Return the vertical stress under trapezia stacked on one centreline, per unit weight of fill.
+
+    Parameters
+    ----------
+    depth : array_like, shape (...,), [m]
+        Depth below the base, zero or more.
+    offset : array_like, shape (...,), [m]
+        Horizontal distance from the centreline; broadcast against `depth`.
+    trapezia : sequence of Trapezium
+        Such as berms with the fill between them and what stands above.
+
+    Returns
+    -------
+    influence : ndarray, shape (...,), [m]
+        Added vertical stress over unit weight: the sum of each height times its influence, every
+        trapezium taken as a load on ground level.
+
+    Raises
+    ------
+    ParameterError
+        As for `embankment_influence`.
+    """
+    z, x = np.broadcast_arrays(np.asarray(depth, dtype=np.float64), np.asarray(offset, dtype=np.float64))
+    total = np.zeros(z.shape)
+    for one in trapezia:
+        widths = {"base_width": one.base_width, "top_width": one.top_width}
+        total += one.height * embankment_influence(z, x, **widths)
+    return total
 
 
 def _ramp(z: FloatArray, toe: FloatArray, shoulder: FloatArray) -> FloatArray:
@@ -225,6 +276,8 @@ def _third_kind(complement: FloatArray, ratio: FloatArray) -> FloatArray:
     """
     from scipy.special import elliprf, elliprj
 
+    if not ratio.any():
+        return np.zeros_like(ratio)
     rest = ratio * ratio
     safe = np.where(rest > 0.0, rest, 1.0)
     third = elliprf(0.0, complement, 1.0) + (1.0 - safe) / 3.0 * elliprj(0.0, complement, 1.0, safe)

@@ -140,6 +140,8 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     thickness = per_layer(lambda _: "thickness")
     boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(thickness, axis=1)], axis=1)
     layer, centre, share = _relative_points(site)
+    if site.foundation is not None:
+        centre, share = _with_face_at(site.foundation.depth, site, boundary, centre, share)
     depth = boundary[:, layer] + centre * thickness[:, layer]
     water_table = column(values, "site.water_table", n_sample)
     total = total_vertical_stress(
@@ -168,6 +170,35 @@ def _relative_points(site: SiteModel) -> tuple[IntArray, FloatArray, FloatArray]
             share.append(np.full(_GRANULAR_POINTS.size, 1.0 / _GRANULAR_POINTS.size))
         layer.append(np.full(centre[-1].size, index, dtype=np.int64))
     return np.concatenate(layer), np.concatenate(centre), np.concatenate(share)
+
+
+def _with_face_at(
+    base: float, site: SiteModel, boundary: FloatArray, centre: FloatArray, share: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Return points of which, in each realisation, none reaches across the base of a foundation.
+
+    One face lies on the base at mean thicknesses. Where the layers are thicker or thinner, the parts of
+    the layer above and below the base are stretched so that the face stays there.
+    """
+    bottom = np.cumsum([form.mean_thickness for form in site.layers])
+    index = int(np.searchsorted(bottom, base, side="right"))
+    if index >= bottom.size or not site.layers[index].is_clay:
+        return centre, share
+    thickness = boundary[:, index + 1] - boundary[:, index]
+    at_mean = 1.0 - (bottom[index] - base) / site.layers[index].mean_thickness
+    here = (base - boundary[:, index]) / thickness
+    if at_mean <= 0.0:
+        return centre, share
+    inside = (here > 0.0) & (here < 1.0)
+    here = np.where(inside, here, at_mean)[:, None]
+    mine = _relative_points(site)[0] == index
+
+    def moved(place: FloatArray) -> FloatArray:
+        above, below = place * here / at_mean, 1.0 - (1.0 - place) * (1.0 - here) / (1.0 - at_mean)
+        return np.where(mine, np.where(place <= at_mean + 1e-9, above, below), place)
+
+    upper, lower = moved(centre - 0.5 * share), moved(centre + 0.5 * share)
+    return 0.5 * (upper + lower), lower - upper
 
 
 def clay_columns(site: SiteModel, values: Values, n_sample: int) -> ClayColumns:

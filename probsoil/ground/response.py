@@ -1,11 +1,12 @@
 """The ground's answer to the works, for many realisations at once."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.applied_load import LoadedGround, applied_load
+from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.granular_settlement import granular_settlement
@@ -14,7 +15,7 @@ from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
 
-COMPETING = 0.02
+COMPETING = 5e-4
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -26,7 +27,8 @@ class Response:
     times : ndarray, shape (n_time,), [years]
         Time axis.
     settlement : ndarray, shape (n_sample, n_time), [m]
-        Settlement of ground level at the centreline, secondary compression included.
+        Settlement of ground level (of the base of a foundation) at the centreline or reported point,
+        secondary compression included.
     secondary : ndarray, shape (n_sample, n_time), [m]
         Part of it that is secondary compression.
     degree : ndarray, shape (n_sample, n_time), [-]
@@ -42,6 +44,8 @@ class Response:
         Least factor of safety.
     critical_circle : ndarray of int, shape (n_sample, n_check), [-]
         Its index in the family of that time.
+    bearing : ndarray, shape (n_sample, n_bearing), [-]
+        Least factor of safety of a foundation against bearing failure at the site's `bearing_times`.
     converged : ndarray of bool, shape (n_sample,), [-]
         Whether the consolidation was solved to tolerance with open voids; where not, settlement,
         degree and slip are not numbers.
@@ -66,6 +70,7 @@ class Response:
     voids_closed: BoolArray
     floored: BoolArray
     kappa_clipped: BoolArray
+    bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -150,6 +155,8 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     strength, before = zone_strengths(site, values, ground, result)
     slip, critical = slip_at_checks(site, values, ground, strength)
     slip[~result.converged] = np.nan
+    bearing = bearing_at_checks(site, values, ground, strength)
+    bearing[~result.converged] = np.nan
     at_record, after_last = degrees_of_consolidation(site, ground, result)
     response = Response(
         times=site.times,
@@ -161,6 +168,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip_times=site.slip_times,
         slip=slip,
         critical_circle=critical,
+        bearing=bearing,
         converged=result.converged,
         voids_closed=result.voids_closed,
         floored=np.asarray(floored.any(axis=1)),

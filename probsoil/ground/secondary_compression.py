@@ -91,23 +91,65 @@ def secondary_settlement(
     settled = np.zeros((n_sample, site.times.size))
     if not any(layer.creeps for layer in site.layers):
         return settled
-    first = int(np.searchsorted(site.times, site.last_change))
-    rate = _rates(site, values, ground, result)
-    done = segment_settlement_when_done(site, ground, result)
-    origin = site.last_increase
-    for segment in range(site.cells.n_segment):
-        so_far = result.by_segment[:, segment, first:]
-        degree = np.where(so_far >= done[:, segment, None], 1.0, so_far / done[:, segment, None])
-        start = time_to_degree(site.times[first:], degree, PRIMARY)
-        since = np.maximum(site.times - origin, 0.0)[None, :] / (start[:, None] - origin)
+    per_cell, segment = creep_per_decade(site, values, ground, result), site.cells.segment
+    start, origin = end_of_primary(site, ground, result), site.last_increase
+    for one in range(site.cells.n_segment):
+        rate = per_cell[:, segment == one].sum(axis=1)
+        since = np.maximum(site.times - origin, 0.0)[None, :] / (start[:, one, None] - origin)
         decades = np.log10(np.maximum(since, 1.0))
-        settled += rate[:, segment, None] * decades
+        settled += rate[:, None] * decades
     return settled
 
 
-def _rates(site: SiteModel, values: Values, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
-    """Return the settlement per decade of time of every segment, shape (n_sample, n_segment), [m]."""
-    layer, segment = site.cells.layer, site.cells.segment
+def end_of_primary(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
+    """Return when every drainage segment has reached 95 % of its consolidation after the last stage.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Time axis and stages.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    result : ConsolidationResult
+        Consolidation of the clay.
+
+    Returns
+    -------
+    time : ndarray, shape (n_sample, n_segment), [years]
+        tp, infinite where it is not reached by the horizon.
+    """
+    first = int(np.searchsorted(site.times, site.last_change))
+    done = segment_settlement_when_done(site, ground, result)
+    start = np.empty_like(done)
+    for segment in range(site.cells.n_segment):
+        so_far = result.by_segment[:, segment, first:]
+        degree = np.where(so_far >= done[:, segment, None], 1.0, so_far / done[:, segment, None])
+        start[:, segment] = time_to_degree(site.times[first:], degree, PRIMARY)
+    return start
+
+
+def creep_per_decade(
+    site: SiteModel, values: Values, ground: LoadedGround, result: ConsolidationResult
+) -> FloatArray:
+    """Return the secondary compression of every cell in a tenfold of time.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Which layers creep.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    result : ConsolidationResult
+        Consolidation of the clay.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample, n_cell), [m]
+        Per decade of time; zero in layers that do not creep.
+    """
+    layer = site.cells.layer
     n_sample = ground.points.depth.shape[0]
     ratio = np.zeros((n_sample, len(site.layers)))
     for index, form in enumerate(site.layers):
@@ -117,8 +159,5 @@ def _rates(site: SiteModel, values: Values, ground: LoadedGround, result: Consol
     lam, kap, void_ratio = columns.lam[:, layer], columns.kap[:, layer], columns.void_ratio[:, layer]
     final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
     largest = np.maximum(result.yield_stress[:, -1], final)
-    index = ratio[:, layer] * lam * LN10 * creep_reduction(largest / final, kap / lam)
-    per_decade = index / (1.0 + void_ratio) * ground.points.thickness[:, ground.clay]
-    return np.stack(
-        [per_decade[:, segment == one].sum(axis=1) for one in range(site.cells.n_segment)], axis=1
-    )
+    creep_index = ratio[:, layer] * lam * LN10 * creep_reduction(largest / final, kap / lam)
+    return np.asarray(creep_index / (1.0 + void_ratio) * ground.points.thickness[:, ground.clay])

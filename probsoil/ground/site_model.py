@@ -7,17 +7,21 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.ground.cells import DEFAULT_CELLS, FOUNDATION_CELLS, Cells, graded_cells
+from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation, foundation_of
-from probsoil.ground.slip_circles import CircleFamily, CircleLayout, EmbankmentSection
+from probsoil.ground.slip_circles import CircleFamily, CircleLayout
 from probsoil.ground.time_steps import time_axis
 from probsoil.ground.vertical_drains import influence_diameter
 from probsoil.scenario import Scenario
+from probsoil.scenario.distributions import Constant
 from probsoil.scenario.layers import ClayLayer, GranularLayer
-from probsoil.scenario.loads import EmbankmentLoad
+from probsoil.scenario.loads import EmbankmentLoad, Load
 
 _REPORT_TIMES = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0)  # years, for tables and curves
 _DEEPER = 1.25  # circles reach this far below the mean bottom of the profile, for thicker realisations
 _WIDTHS = 0.75  # and never deeper than this share of the embankment's base
+_ROUNDING = 1e-9  # m; sums of heights carry rounding
+_NONE = Constant(value=0.0)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -85,65 +89,6 @@ class StageForm:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Embankment:
-    """Cross-section of a long embankment.
-
-    Attributes
-    ----------
-    crest_width : float, [m]
-        Width of the top at the greatest height.
-    side_slope : float, [-]
-        Horizontal run per unit of rise.
-    full_height : float, [m]
-        Greatest height.
-    """
-
-    crest_width: float
-    side_slope: float
-    full_height: float
-
-    @property
-    def base_width(self) -> float:
-        """Width at ground level, the same while the fill rises, [m]."""
-        return self.crest_width + 2.0 * self.side_slope * self.full_height
-
-    def top_width(self, height: float) -> float:
-        """Return the width of the top at a fill height, [m].
-
-        Parameters
-        ----------
-        height : float, [m]
-            Height of fill.
-
-        Returns
-        -------
-        width : float, [m]
-            Width of the top.
-        """
-        return self.base_width - 2.0 * self.side_slope * height
-
-    def section(self, height: float) -> EmbankmentSection:
-        """Return the cross-section at a fill height.
-
-        Parameters
-        ----------
-        height : float, [m]
-            Height of fill.
-
-        Returns
-        -------
-        section : EmbankmentSection
-            For slip circles.
-        """
-        return EmbankmentSection(
-            height=height,
-            side_slope=self.side_slope,
-            base_width=self.base_width,
-            full_height=self.full_height,
-        )
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class DrainForm:
     """Vertical drains, apart from how much they smear.
 
@@ -207,6 +152,8 @@ class SiteModel:
         Circles that compete, one family for each of `slip_times`; empty before they are screened.
     bearing_times : ndarray, shape (n_bearing,), [years]
         Times among `record` at which bearing is looked at (load on a foundation).
+    traffic_from : float, [years]
+        Time from which traffic drives a slip; infinite without traffic.
     """
 
     layers: tuple[LayerForm, ...]
@@ -224,6 +171,7 @@ class SiteModel:
     families: tuple[CircleFamily, ...] = ()
     foundation: Foundation | None = None
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
+    traffic_from: float = np.inf
 
     @property
     def knots(self) -> FloatArray:
@@ -266,6 +214,11 @@ class SiteModel:
         """Middle of the last stage that added load, [years]."""
         adding = [stage for stage in self.stages if stage.height > 0.0 or stage.pressure > 0.0]
         return 0.5 * (adding[-1].start + adding[-1].end)
+
+    @property
+    def station(self) -> str:
+        """Where settlement is reported, in words."""
+        return "centreline" if self.foundation is None else self.foundation.station
 
     @property
     def last_change(self) -> float:
@@ -313,14 +266,21 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         np.array([layer.is_clay for layer in layers]),
         base_drained=scenario.site.base == "drained",
         load_depth=0.0 if foundation is None else foundation.depth,
-        target=(DEFAULT_CELLS if foundation is None else FOUNDATION_CELLS) * refine,
+        target=_cell_target(layers, foundation) * refine,
     )
     ramps = [(stage.start, stage.end) for stage in stages]
     drains = _drain_form(scenario)
     restart = [] if drains is None else [drains.installed]
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *_limit_times(scenario), *report]
-    layouts = _layouts(embankment, layers, stages, slip_times, density=0.5 * (1.0 + refine))
+    layouts = _layouts(
+        embankment,
+        layers,
+        stages,
+        slip_times,
+        density=0.5 * (1.0 + refine),
+        cohesive_fill=getattr(scenario.load, "fill_cohesion", _NONE) != _NONE,
+    )
     return SiteModel(
         layers=layers,
         base_drained=scenario.site.base == "drained",
@@ -336,6 +296,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         layouts=layouts,
         foundation=foundation,
         bearing_times=np.zeros(0) if foundation is None else _bearing_times(scenario, stages),
+        traffic_from=_traffic_from(scenario.load, stages),
     )
 
 
@@ -351,6 +312,12 @@ def _drain_form(scenario: Scenario) -> DrainForm | None:
         bottom=given.bottom,
         discharge_capacity=given.discharge_capacity,
     )
+
+
+def _cell_target(layers: Sequence[LayerForm], foundation: Foundation | None) -> int:
+    """Return how many cells there should be: more where the stress of a small foundation fades with depth."""
+    depth = sum(layer.mean_thickness for layer in layers)
+    return DEFAULT_CELLS if foundation is None or foundation.width >= depth else FOUNDATION_CELLS
 
 
 def _layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
@@ -388,8 +355,23 @@ def _embankment(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment |
         return None
     full_height = float(np.cumsum([stage.height for stage in stages]).max())
     return Embankment(
-        crest_width=scenario.load.crest_width, side_slope=scenario.load.side_slope, full_height=full_height
+        crest_width=scenario.load.crest_width,
+        side_slope=scenario.load.side_slope,
+        full_height=full_height,
+        berm_width=scenario.load.berm_width or 0.0,
+        berm_height=scenario.load.berm_height or 0.0,
     )
+
+
+def _traffic_from(load: Load, stages: Sequence[StageForm]) -> float:
+    """Return when traffic begins to count: as given, or when the fill is first at its greatest height."""
+    if not isinstance(load, EmbankmentLoad) or load.traffic == _NONE:
+        return float(np.inf)
+    if load.traffic_from is not None:
+        return load.traffic_from
+    heights = np.cumsum([stage.height for stage in stages])
+    highest = int(np.argmax(heights > heights.max() - _ROUNDING))
+    return stages[highest].end
 
 
 def _limit_times(scenario: Scenario) -> list[float]:
@@ -410,6 +392,8 @@ def _wanted(
     ends = {stage.end for stage in stages}
     degree = {limit.at for limit in scenario.limits if limit.quantity == "degree_of_consolidation"}
     slip = _times_of(scenario, "slip_safety")
+    if embankment is not None and np.isfinite(traffic := _traffic_from(scenario.load, stages)):
+        slip.add(traffic)
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
     if embankment is None:
@@ -438,7 +422,7 @@ def _pressed(stages: Sequence[StageForm], time: float) -> bool:
 
 def _height(stages: Sequence[StageForm], time: float) -> float:
     height = sum(stage.height * _laid(stage, time) for stage in stages)
-    return height if height > 1e-9 else 0.0  # a removal may leave a rounding error behind
+    return height if height > _ROUNDING else 0.0  # a removal may leave a rounding error behind
 
 
 def _layouts(
@@ -448,6 +432,7 @@ def _layouts(
     slip_times: FloatArray,
     *,
     density: float,
+    cohesive_fill: bool,
 ) -> tuple[CircleLayout, ...]:
     if embankment is None:
         return ()
@@ -461,6 +446,7 @@ def _layouts(
             boundaries=tuple(boundaries),
             density=density,
             frictional_ground=frictional,
+            within_fill=cohesive_fill,
         )
         for time in slip_times
     )

@@ -4,20 +4,24 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from probsoil._typing import FloatArray, IntArray
+from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground._slip_kernel import Moments, least_factor, strength_on_slices
 from probsoil.ground.lanes import LANES, Lanes
 from probsoil.ground.slip_circles import (
-    N_ZONE,
     CircleFamily,
     CircleLayout,
+    Circles,
     candidate_circles,
     dense_weights,
+    nearby_circles,
     weighed,
 )
 
 _BLOCK = 2000  # circles weighed at a time while screening
-_FIRM = 1e6  # kPa; below the last layer no circle is ever critical
+_ROUNDS = ((1.0 / 3.0, 0.04), (1.0 / 9.0, 0.02))
+# Rounds of refinement: share of the spacing in depth, and how near the least factor a circle must come for
+# others to be looked at beside it. That spacing costs up to 4 % where a weak layer is thin.
+_LEVEL = 1e-6  # m; a circle may touch the base this much below it, for rounding
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -32,10 +36,10 @@ class GroundStrength:
         Layer of each point, rising.
     point_depth : ndarray, shape (n_sample, n_point), [m]
         Depths of the points.
-    cohesive : ndarray, shape (n_sample, 3, n_point), [kPa]
-        Undrained strength beyond the toe, under the slope and under the crest; zero in layers
-        with friction.
-    frictional : ndarray or None, shape (n_sample, 3, n_point), [kPa]
+    cohesive : ndarray, shape (n_sample, n_zone, n_point), [kPa]
+        Undrained strength beyond the toe, under the slope, under the crest and, with berms, under a
+        berm; zero in layers with friction.
+    frictional : ndarray or None, shape (n_sample, n_zone, n_point), [kPa]
         Effective vertical stress times the tangent of the friction angle in the same zones; None
         where no layer has friction.
     """
@@ -49,7 +53,7 @@ class GroundStrength:
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class FillStrength:
-    """Fill of each realisation.
+    """Fill of each realisation and the traffic on it.
 
     Attributes
     ----------
@@ -59,11 +63,19 @@ class FillStrength:
         Effective friction angle.
     cohesion : ndarray, shape (n_sample,), [kPa]
         Effective cohesion.
+    traffic : ndarray or None, shape (n_sample,), [kPa]
+        Pressure on the top; None for none.
     """
 
     unit_weight: FloatArray
     friction_angle: FloatArray
     cohesion: FloatArray
+    traffic: FloatArray | None = None
+
+    @property
+    def on_top(self) -> FloatArray:
+        """Pressure of traffic on the top, shape (n_sample,), [kPa]."""
+        return np.zeros_like(self.unit_weight) if self.traffic is None else self.traffic
 
 
 def slip_safety(
@@ -91,8 +103,9 @@ def slip_safety(
     -----
     Total-stress analysis: :math:`F = R \sum \tau\,\Delta l / M_d` with undrained strength in clay
     and friction on the ordinary method's normal stress in fill and granular layers. Circles stay
-    above the last layer's bottom, below which the ground counts as firm. Plane strain; end
-    effects, progressive failure and cracks in the fill are left out.
+    above the last layer's bottom, below which the ground counts as firm. Traffic drives, and presses
+    on the fill below it. Plane strain; end effects, progressive failure and cracks in the fill are
+    left out.
     """
     n_sample = fill.unit_weight.size
     lanes = Lanes(n_sample)
@@ -102,8 +115,18 @@ def slip_safety(
         row_start=family.row_start,
         column=family.column,
         weight=family.weight,
-        fill=lanes.pack(np.stack([fill.unit_weight, tangent, fill.cohesion], axis=1)),
-        fill_terms=np.stack([family.driving, family.fill_friction, family.fill_cohesion]),
+        fill=lanes.pack(np.stack([fill.unit_weight, tangent, fill.cohesion, fill.on_top], axis=1)),
+        fill_terms=np.stack(
+            [
+                family.circles.driving,
+                family.fill_friction,
+                family.fill_cohesion,
+                family.circles.traffic,
+                family.traffic_friction,
+            ]
+        ),
+        touch=family.circles.touch,
+        bottom=lanes.pack(ground.boundary[:, -1:])[:, 0] + _LEVEL,
     )
     factor = np.empty((lanes.n_block, LANES))
     critical = np.empty(factor.shape, dtype=np.int64)
@@ -114,7 +137,7 @@ def slip_safety(
 def competing_circles(
     ground: GroundStrength, fill: FillStrength, layout: CircleLayout, *, within: float
 ) -> CircleFamily:
-    """Return the circles that are critical or nearly so in at least one realisation.
+    """Return a few circles that between them are critical, or nearly so, in every realisation.
 
     Parameters
     ----------
@@ -125,25 +148,59 @@ def competing_circles(
     layout : CircleLayout
         Circles to choose from.
     within : float, [-]
-        How far above the least factor a circle may be, as a share of it.
+        How far above the least factor of a realisation the best circle chosen may be, as a share of it.
 
     Returns
     -------
     family : CircleFamily
-        The circles kept, in their order.
+        The circles chosen.
+
+    Notes
+    -----
+    All circles of the layout first, on its slices; then twice those that came near the least factor in
+    some realisation, and others beside them in depth, on slices that end where circles do. Of these
+    a few are taken, one by one, each time the one that serves most of the realisations not yet served.
     """
-    n_sample = fill.unit_weight.size
-    strength = Lanes(n_sample).unpack(_on_slices(ground, layout.slice_edge, n_sample)).T
-    tangent = np.tan(np.radians(fill.friction_angle))
     circles = candidate_circles(layout)
+    factor = _every_factor(ground, fill, layout, circles, layout.slice_edge)
+    for share, worth in _ROUNDS:
+        near = factor <= (1.0 + worth) * factor.min(axis=0)
+        circles = nearby_circles(layout, circles[np.asarray(near.any(axis=1))], share)
+        factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles))
+    chosen = circles[_serving(factor <= (1.0 + within) * factor.min(axis=0))]
+    return weighed(layout, chosen, layout.slice_edge_for(chosen))
+
+
+def _every_factor(
+    ground: GroundStrength, fill: FillStrength, layout: CircleLayout, circles: Circles, edge: FloatArray
+) -> FloatArray:
+    """Return the factor of safety of every circle in every realisation, (n_circle, n_sample), [-]."""
+    n_sample = fill.unit_weight.size
+    strength = Lanes(n_sample).unpack(_on_slices(ground, edge, n_sample)).T
+    tangent = np.tan(np.radians(fill.friction_angle))
     factor = np.empty((len(circles), n_sample))
     for first in range(0, len(circles), _BLOCK):
         part = slice(first, first + _BLOCK)
-        rows, terms = dense_weights(layout, circles[part])
+        rows, terms = dense_weights(layout, circles[part], edge)
         by_fill = np.outer(terms[0], fill.unit_weight * tangent) + np.outer(terms[1], fill.cohesion)
-        factor[part] = (rows @ strength + by_fill) / np.outer(circles.driving[part], fill.unit_weight)
-    near = factor <= (1.0 + within) * factor.min(axis=0)
-    return weighed(layout, circles[np.asarray(near.any(axis=1))])
+        by_fill += np.outer(terms[2], fill.on_top * tangent)
+        driving = np.outer(circles.driving[part], fill.unit_weight)
+        driving += np.outer(circles.traffic[part], fill.on_top)
+        factor[part] = (rows @ strength + by_fill) / driving
+    below = circles.touch[:, None] > ground.boundary[None, :, -1] + _LEVEL
+    below[np.argmin(circles.touch)] = False
+    factor[below] = np.inf
+    return factor
+
+
+def _serving(near: BoolArray) -> IntArray:
+    """Choose circles until every realisation has one that is near its least factor, greedily."""
+    chosen: list[int] = []
+    left = np.ones(near.shape[1], dtype=bool)
+    while left.any():
+        chosen.append(int(np.argmax(near[:, left].sum(axis=1))))
+        left &= ~near[chosen[-1]]
+    return np.array(sorted(chosen), dtype=np.int64)
 
 
 def _on_slices(ground: GroundStrength, edge: FloatArray, n_sample: int) -> FloatArray:
@@ -161,7 +218,6 @@ def _on_slices(ground: GroundStrength, edge: FloatArray, n_sample: int) -> Float
         first_point.astype(np.int64),
         lanes.pack(ground.point_depth),
         at_points,
-        np.where(np.arange(n_kind) < N_ZONE, _FIRM, 0.0),
         on_slices,
     )
     return on_slices.reshape(lanes.n_block, n_kind * n_slice, LANES)

@@ -2,55 +2,58 @@
 
 Everything here depends on the geometry alone and is worked out once for all realisations:
 a circle's driving moment per unit weight of fill and the weight of each strength in its
-resisting moment. Coordinates: x from the toe towards the embankment, y upward from ground level.
+resisting moment. Coordinates: x from the outer toe towards the embankment, y upward from ground level.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
+from itertools import pairwise
 
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ParameterError
-from probsoil.ground._circle_kernel import driving_moments, resisting_weights
+from probsoil.ground import _circle_kernel as kernel
+from probsoil.ground.embankment import EmbankmentSection
+from probsoil.ground.slip_grid import (
+    Arcs,
+    arcs_nearby,
+    arcs_through_ground,
+    arcs_within_fill,
+    ground_touches,
+)
 
-N_ZONE = 3  # beyond the toe, under the slope, under the crest
-_EXITS, _ENTRIES, _DEPTHS, _SLICES = 24, 24, 48, 72
+_SLICES, _FINER = 72, 1.5  # slices, and how many times finer they are once circles are chosen
+_DENSER_IN_FILL = 1.5  # a slip of the shoulder under traffic is small
 _CROWDED = 0.3  # of the spacing
-_SHALLOWEST = 0.2  # m; a circle that touches less deep slips in the fill, not in the ground
+_SHALLOWEST = 0.2  # m; a circle that goes less deep into the ground slips in the fill
+_SHALLOWEST_IN_FILL = 0.5  # m below the shoulder; what is smaller is ravelling
 _LEAST_DRIVING = 1e-9
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class EmbankmentSection:
-    """Cross-section of the fill at one time.
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Circles(Arcs):
+    """Circles and what drives them.
 
     Attributes
     ----------
-    height : float, [m]
-        Height of fill, above zero.
-    side_slope : float, [-]
-        Horizontal run per unit of rise, zero or more.
-    base_width : float, [m]
-        Width at ground level.
-    full_height : float, [m]
-        Greatest height the embankment ever has; it sets where the zone under the slope ends.
+    driving : ndarray, shape (n_circle,), [m3]
+        Overturning moment per metre run and unit weight of fill.
+    traffic : ndarray, shape (n_circle,), [m2]
+        Overturning moment per metre run and kPa of pressure on the top.
+    loaded_x : ndarray, shape (n_circle,), [m]
+        Where traffic on the top that drives begins; where the circle enters if none does.
     """
 
-    height: float
-    side_slope: float
-    base_width: float
-    full_height: float
+    driving: FloatArray
+    traffic: FloatArray
+    loaded_x: FloatArray
 
-    @property
-    def shoulder(self) -> float:
-        """Distance from the toe to the near edge of the present top, [m]."""
-        return self.side_slope * self.height
+    def __len__(self) -> int:
+        return int(self.radius.size)
 
-    @property
-    def slope_zone(self) -> float:
-        """Distance from the toe to where the zone under the crest begins, [m]."""
-        return self.side_slope * self.full_height
+    def __getitem__(self, which: slice | BoolArray | IntArray) -> "Circles":
+        return Circles(**{one.name: getattr(self, one.name)[which] for one in fields(Circles)})
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -59,14 +62,14 @@ class CircleFamily:
 
     Attributes
     ----------
-    centre_x, centre_y, radius : ndarray, shape (n_circle,), [m]
-        Geometry.
-    driving : ndarray, shape (n_circle,), [m3]
-        Overturning moment per metre run and unit weight of fill.
+    circles : Circles
+        Geometry and driving moments.
     fill_friction : ndarray, shape (n_circle,), [m3]
         Resisting moment of friction in the fill per unit weight and tangent of friction angle.
     fill_cohesion : ndarray, shape (n_circle,), [m2]
         Resisting moment of cohesion in the fill per kPa.
+    traffic_friction : ndarray, shape (n_circle,), [m2]
+        Resisting moment of friction in the fill below traffic per kPa and tangent of friction angle.
     row_start : ndarray, shape (n_circle + 1,), [-]
         Sparse rows: place in `column` and `weight` of the first entry of each circle, then their number.
     column : ndarray, shape (n_entry,), [-]
@@ -77,23 +80,24 @@ class CircleFamily:
         is the sum over the entries of a circle.
     slice_edge : ndarray, shape (n_slice + 1,), [m]
         Depths between the slices in which strength is wanted.
+    n_zone : int, [-]
+        Zones of strength: beyond the toe, under the slope, under the crest and, with berms, under a berm.
     """
 
-    centre_x: FloatArray
-    centre_y: FloatArray
-    radius: FloatArray
-    driving: FloatArray
+    circles: Circles
     fill_friction: FloatArray
     fill_cohesion: FloatArray
+    traffic_friction: FloatArray
     row_start: IntArray
     column: IntArray
     weight: FloatArray
     slice_edge: FloatArray
+    n_zone: int
 
     @property
     def n_circle(self) -> int:
         """Number of circles, [-]."""
-        return int(self.radius.size)
+        return len(self.circles)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -113,6 +117,9 @@ class CircleLayout:
         slices in proportion).
     frictional_ground : bool
         Whether some layer has frictional strength; otherwise its columns are left out.
+    within_fill : bool
+        Whether circles wholly in the fill are looked at too: fill with cohesion. Without any, the
+        shallowest of them would always be the worst, and that is ravelling.
     """
 
     section: EmbankmentSection
@@ -120,6 +127,7 @@ class CircleLayout:
     boundaries: tuple[float, ...] = ()
     density: float = 1.0
     frictional_ground: bool = False
+    within_fill: bool = False
 
     def __post_init__(self) -> None:
         if self.section.height <= 0.0 or self.depth <= 0.0:
@@ -135,38 +143,41 @@ class CircleLayout:
     @property
     def slice_edge(self) -> FloatArray:
         """Depths between the slices in which strength is wanted, shape (n_slice + 1,), [m]."""
-        even = np.linspace(0.0, 1.0, round(_SLICES * self.density) + 1)
-        return _with(self.depth * even**1.5, self.inner_boundaries)
+        return self._edges(1.0, self.inner_boundaries)
+
+    def slice_edge_for(self, circles: Circles) -> FloatArray:
+        """Return depths between slices that end where circles do.
+
+        Parameters
+        ----------
+        circles : Circles
+            Some of the layout.
+
+        Returns
+        -------
+        edge : ndarray, shape (n_slice + 1,), [m]
+            A circle runs along the bottom of the last slice it cuts, and takes nothing from below it.
+        """
+        touch = np.round(circles.touch, 6)
+        inner = touch[(touch > 0.0) & (touch < self.depth)]
+        edge = self._edges(_FINER, sorted({*self.inner_boundaries, *inner.tolist()}))
+        return edge[: max(int(np.searchsorted(edge, touch.max(initial=0.0))), 1) + 1]
+
+    def _edges(self, finer: float, fixed: Sequence[float]) -> FloatArray:
+        even = np.linspace(0.0, 1.0, round(finer * _SLICES * self.density) + 1)
+        return _with(self.depth * even**1.5, fixed)
 
     @property
-    def form(self) -> tuple[float, float, float, float]:
-        """Height, side slope, base width and start of the crest zone, for the kernels, [m], [-]."""
-        one = self.section
-        return one.height, max(one.side_slope, 1e-12), one.base_width, one.slope_zone
+    def reach(self) -> float:
+        """How far circles go beyond the toe and behind the shoulder, [m]."""
+        return 2.0 * self.depth + 1.5 * self.section.height + self.section.berm_width
 
-
-@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
-class Circles:
-    """Geometry of circles.
-
-    Attributes
-    ----------
-    centre_x, centre_y, radius : ndarray, shape (n_circle,), [m]
-        Centre and radius.
-    driving : ndarray, shape (n_circle,), [m3]
-        Overturning moment per metre run and unit weight of fill.
-    """
-
-    centre_x: FloatArray
-    centre_y: FloatArray
-    radius: FloatArray
-    driving: FloatArray
-
-    def __len__(self) -> int:
-        return int(self.radius.size)
-
-    def __getitem__(self, which: slice | BoolArray) -> "Circles":
-        return Circles(**{name: getattr(self, name)[which] for name in self.__slots__})
+    @property
+    def touch(self) -> FloatArray:
+        """Depths that circles through the ground touch, shape (n_touch,), [m]."""
+        shallow = min(_SHALLOWEST, 0.5 * self.depth)
+        touch = ground_touches(self.depth, self.density, shallow)
+        return _with(touch, [value for value in self.inner_boundaries if value > shallow])
 
 
 def candidate_circles(layout: CircleLayout) -> Circles:
@@ -180,26 +191,60 @@ def candidate_circles(layout: CircleLayout) -> Circles:
     Returns
     -------
     circles : Circles
-        All that enter at the top of the fill, leave at the toe or beyond and turn over some fill.
+        All that enter at the top of the fill or of a berm, leave on the slope, at the toe or beyond
+        and turn over some fill.
 
     Notes
     -----
-    A circle is fixed by where it leaves (at the toe or beyond), where it enters (on the top of
-    the fill, up to the far shoulder) and the depth it touches. On level ground the soil inside
-    the circle below ground level balances about the centre, so only fill drives. Every circle goes
-    at least 0.2 m into the ground: ravelling of the fill's own slope is not looked at.
+    A circle is fixed by where it leaves, where it enters and the depth it touches; one wholly in the
+    fill by its bend instead. On level ground the soil inside the circle below ground level balances
+    about the centre, so only fill drives, and traffic on the part of the top that lies inside the
+    circle and beyond its centre: elsewhere it would resist.
     """
-    leave, enter, touch = _grid(layout)
-    centre_x, centre_y, valid = _through(leave, enter, touch, layout.section.height)
-    centre_x, centre_y, touch = centre_x[valid], centre_y[valid], touch[valid]
-    radius = centre_y + touch
-    driving = np.empty(radius.size)
-    driving_moments(centre_x, centre_y, radius, layout.form, driving)
-    circles = Circles(centre_x=centre_x, centre_y=centre_y, radius=radius, driving=driving)
+    section, density = layout.section, layout.density
+    groups: list[Arcs] = [arcs_through_ground(section, layout.touch, reach=layout.reach, density=density)]
+    if layout.within_fill:
+        thin = min(_SHALLOWEST_IN_FILL, 0.5 * section.height)
+        groups.append(arcs_within_fill(section, shallowest=thin, density=_DENSER_IN_FILL * density))
+    return _driven(section, groups)
+
+
+def nearby_circles(layout: CircleLayout, circles: Circles, share: float) -> Circles:
+    """Return circles with those beside them in depth.
+
+    Parameters
+    ----------
+    layout : CircleLayout
+        Which circles they were chosen from.
+    circles : Circles
+        Some of its candidates.
+    share : float, [-]
+        How far beside, as a share of the spacing of the depths that candidates touch.
+
+    Returns
+    -------
+    circles : Circles
+        The same and, where they go through the ground, others that touch a little less and more deep:
+        which depth is worst depends on where the layers of a realisation end.
+    """
+    in_ground = circles.touch > 0.0
+    through, within = circles[in_ground], circles[~in_ground]
+    touch = layout.touch
+    step = share * np.interp(through.touch, touch, np.gradient(touch))
+    return _driven(layout.section, [arcs_nearby(layout.section, through, step, layout.depth), within])
+
+
+def _driven(section: EmbankmentSection, groups: Sequence[Arcs]) -> Circles:
+    """Join arcs and add what drives them; those that turn over no fill are left out."""
+    names = [one.name for one in fields(Arcs)]
+    arcs = {name: np.concatenate([getattr(group, name) for group in groups]) for name in names}
+    loaded, traffic = _traffic(section, Arcs(**arcs))
+    driving = _fill_moment(section, Arcs(**arcs))
+    circles = Circles(**arcs, driving=driving, traffic=traffic, loaded_x=loaded)
     return circles[driving > _LEAST_DRIVING]
 
 
-def weighed(layout: CircleLayout, circles: Circles) -> CircleFamily:
+def weighed(layout: CircleLayout, circles: Circles, edge: FloatArray | None = None) -> CircleFamily:
     """Return circles with the weights of strength in their resisting moments.
 
     Parameters
@@ -208,6 +253,8 @@ def weighed(layout: CircleLayout, circles: Circles) -> CircleFamily:
         Section and slices.
     circles : Circles
         Geometry.
+    edge : ndarray or None, shape (n_slice + 1,), [m]
+        Depths between the slices; None for those of the layout.
 
     Returns
     -------
@@ -217,33 +264,32 @@ def weighed(layout: CircleLayout, circles: Circles) -> CircleFamily:
     Notes
     -----
     In the fill friction acts on the normal stress of the ordinary method of slices, the weight of
-    the column times the squared cosine of the base's inclination; in granular ground on the
-    effective vertical stress times the same.
+    the column and of the traffic on it times the squared cosine of the base's inclination; in
+    granular ground on the effective vertical stress, without traffic, times the same.
 
     References
     ----------
     .. [1] W. Fellenius, Calculation of the stability of earth dams, Trans. 2nd Congr. Large Dams,
        Washington, 1936 (ordinary method; from memory, not opened).
     """
-    edge = layout.slice_edge
-    rows, fill = dense_weights(layout, circles)
+    edge = layout.slice_edge if edge is None else edge
+    rows, fill = dense_weights(layout, circles, edge)
     circle, column = np.nonzero(rows > 0.0)
     count = np.bincount(circle, minlength=len(circles))
     return CircleFamily(
-        centre_x=circles.centre_x,
-        centre_y=circles.centre_y,
-        radius=circles.radius,
-        driving=circles.driving,
+        circles=circles,
         fill_friction=fill[0],
         fill_cohesion=fill[1],
+        traffic_friction=fill[2],
         row_start=np.concatenate([[0], np.cumsum(count)]).astype(np.int64),
         column=column.astype(np.int64),
         weight=rows[circle, column],
         slice_edge=edge,
+        n_zone=layout.section.n_zone,
     )
 
 
-def dense_weights(layout: CircleLayout, circles: Circles) -> tuple[FloatArray, FloatArray]:
+def dense_weights(layout: CircleLayout, circles: Circles, edge: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Return the weights of strength as full rows.
 
     Parameters
@@ -252,19 +298,23 @@ def dense_weights(layout: CircleLayout, circles: Circles) -> tuple[FloatArray, F
         Section and slices.
     circles : Circles
         Geometry; a few thousand at a time spare memory.
+    edge : ndarray, shape (n_slice + 1,), [m]
+        Depths between the slices.
 
     Returns
     -------
     rows : ndarray, shape (n_circle, n_column), [m2]
         Weight of the strength of each zone and slice.
-    fill : ndarray, shape (2, n_circle), [m3] and [m2]
-        Moment of friction in the fill per unit weight and tangent, and of cohesion per kPa.
+    fill : ndarray, shape (3, n_circle), [m3] and [m2]
+        Moment of friction in the fill per unit weight and tangent, of cohesion per kPa, and of friction
+        below traffic per kPa and tangent.
     """
-    edge = layout.slice_edge
+    form = _form(layout.section)
     n_kind = 2 if layout.frictional_ground else 1
-    rows = np.zeros((len(circles), n_kind * N_ZONE * (edge.size - 1)))
-    fill = np.zeros((2, len(circles)))
-    resisting_weights(circles.centre_x, circles.centre_y, circles.radius, layout.form, edge, rows, fill)
+    rows = np.zeros((len(circles), n_kind * form.n_zone * (edge.size - 1)))
+    fill = np.zeros((3, len(circles)))
+    arcs = kernel.Circles(**{name: getattr(circles, name) for name in kernel.Circles._fields})
+    kernel.resisting_weights(arcs, form, edge, rows, fill)
     return rows, fill
 
 
@@ -279,24 +329,58 @@ def circle_family(layout: CircleLayout) -> CircleFamily:
     Returns
     -------
     family : CircleFamily
-        Tens of thousands of circles; `slip.competing_circles` keeps those that matter.
+        Tens of thousands of circles; `slip.competing_circles` chooses those that matter.
     """
     return weighed(layout, candidate_circles(layout))
 
 
-def _grid(layout: CircleLayout) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return exit, entry and touch depth of all candidate circles, flattened, [m]."""
-    section, depth, density = layout.section, layout.depth, layout.density
-    reach = 2.0 * depth + 1.5 * section.height
-    leave = -reach * np.linspace(0.0, 1.0, round(_EXITS * density) + 1) ** 2
-    shoulder, far = section.shoulder, section.base_width - section.shoulder
-    run = min(far - shoulder, reach)
-    enter = shoulder + run * np.linspace(0.0, 1.0, round(_ENTRIES * density) + 1)[1:] ** 1.5
-    shallow = min(_SHALLOWEST, 0.5 * depth)
-    touch = shallow + (depth - shallow) * np.linspace(0.0, 1.0, round(_DEPTHS * density)) ** 1.5
-    touch = _with(touch, [value for value in layout.inner_boundaries if value > shallow])
-    mesh = np.meshgrid(leave, enter, touch, indexing="ij")
-    return mesh[0].ravel(), mesh[1].ravel(), mesh[2].ravel()
+def _form(section: EmbankmentSection) -> kernel.Form:
+    bermed = section.berm_width > 0.0
+    return kernel.Form(
+        height=section.height,
+        slope=max(section.side_slope, 1e-12),
+        base=section.base_width,
+        berm_width=section.berm_width if section.above_berms else 0.0,
+        berm_height=section.berm_height if bermed else 0.0,
+        berm_zone=section.berm_zone,
+        slope_zone=section.slope_zone,
+        n_zone=section.n_zone,
+    )
+
+
+def _fill_moment(section: EmbankmentSection, arcs: Arcs) -> FloatArray:
+    """Return the moment of the fill inside each circle about its centre per unit weight, [m3]."""
+    first, last = np.maximum(arcs.exit_x, 0.0) - arcs.centre_x, arcs.entry_x - arcs.centre_x
+    moment = np.zeros(first.size)
+    for (x, y), (next_x, next_y) in pairwise(section.outline.tolist()):
+        if next_x > x:
+            rise = (next_y - y) / (next_x - x)
+            a, b = (np.clip(end, x - arcs.centre_x, next_x - arcs.centre_x) for end in (first, last))
+            level = y + rise * (arcs.centre_x - x)  # of this side of the surface, continued to the centre
+            moment += level * (b * b - a * a) / 2.0 + rise * (b**3 - a**3) / 3.0
+    ground = np.sqrt(np.maximum(arcs.radius**2 - arcs.centre_y**2, 0.0))  # the arc lies in the ground between
+    left, right = np.maximum(np.minimum(-ground, last), first), np.minimum(np.maximum(ground, first), last)
+    below = (
+        _arc_moment(arcs, last)
+        - _arc_moment(arcs, right)
+        + _arc_moment(arcs, left)
+        - _arc_moment(arcs, first)
+    )
+    return np.asarray(moment - below)
+
+
+def _arc_moment(arcs: Arcs, u: FloatArray) -> FloatArray:
+    """Return the integral of the arc's level times the distance u from the centre, up to u."""
+    return np.asarray(arcs.centre_y * u * u / 2.0 + np.maximum(arcs.radius**2 - u * u, 0.0) ** 1.5 / 3.0)
+
+
+def _traffic(section: EmbankmentSection, arcs: Arcs) -> tuple[FloatArray, FloatArray]:
+    """Return where traffic on the top begins to drive, and its moment per kPa."""
+    on_top = arcs.entry_y >= section.height
+    first = np.minimum(np.maximum(section.shoulder, arcs.centre_x), arcs.entry_x)
+    first = np.where(on_top, first, arcs.entry_x)
+    arms = (arcs.entry_x - arcs.centre_x) ** 2 - (first - arcs.centre_x) ** 2
+    return first, np.asarray(0.5 * arms)
 
 
 def _with(depths: FloatArray, fixed: Sequence[float]) -> FloatArray:
@@ -308,25 +392,3 @@ def _with(depths: FloatArray, fixed: Sequence[float]) -> FloatArray:
     keep = nearest > _CROWDED * np.gradient(depths)
     keep[[0, -1]] = True
     return np.unique(np.concatenate([depths[keep], wanted]))
-
-
-def _through(
-    leave: FloatArray, enter: FloatArray, touch: FloatArray, height: float
-) -> tuple[FloatArray, FloatArray, BoolArray]:
-    """Return centres of the circles through (leave, 0) and (enter, height) that touch depth `touch`.
-
-    With the centre at (c, y) and radius y + d: ``(c - leave)^2 = 2 y d + d^2`` and
-    ``(enter - c)^2 = (y + d)^2 - (height - y)^2``; eliminating y leaves a quadratic in c.
-    """
-    ratio = (touch + height) / touch
-    # (enter - c)^2 = ratio * (c - leave)^2 + rest
-    rest = touch * touch - height * height - ratio * touch * touch
-    a = ratio - 1.0
-    b = -2.0 * ratio * leave + 2.0 * enter
-    c0 = ratio * leave * leave + rest - enter * enter
-    discriminant = b * b - 4.0 * a * c0
-    with np.errstate(invalid="ignore"):
-        centre = (-b + np.sqrt(discriminant)) / (2.0 * a)
-    high = ((centre - leave) ** 2 - touch * touch) / (2.0 * touch)
-    valid = np.isfinite(centre) & (centre > leave) & (centre < enter) & (high >= height)
-    return centre, high, valid

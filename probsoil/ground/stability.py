@@ -5,12 +5,12 @@ from collections.abc import Iterator
 import numpy as np
 
 from probsoil._typing import FloatArray, IntArray
-from probsoil.ground.applied_load import LoadedGround, stress_at
+from probsoil.ground.applied_load import AppliedLoad, LoadedGround, stress_at
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.profile import Values, column
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.slip import FillStrength, GroundStrength, competing_circles, slip_safety
-from probsoil.ground.slip_circles import N_ZONE, CircleFamily, circle_family
+from probsoil.ground.slip_circles import CircleFamily, circle_family
 from probsoil.ground.undrained_strength import undrained_shear_strength
 
 
@@ -32,17 +32,18 @@ def zone_strengths(
 
     Returns
     -------
-    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
-        Beyond the toe, under the slope and under the crest; zero in granular layers.
+    strength : ndarray, shape (n_record, n_sample, n_zone, n_point), [kPa]
+        Beyond the toe, under the slope, under the crest and, with berms, under a berm; zero in
+        granular layers.
     before : ndarray, shape (n_sample, n_point), [kPa]
         Before loading.
 
     Notes
     -----
     With the mode factor of the site, which brings triaxial compression to the average along a
-    slip surface. Under the crest the stresses are those below the centreline; under the slope
-    their gain is reduced in proportion to the elastic stress there; beyond the toe they do not
-    change.
+    slip surface. Under the crest the stresses are those below the centreline; under the slope and
+    under a berm their gain is reduced in proportion to the elastic stress there; beyond the toe
+    they do not change.
     """
     n_sample = ground.points.depth.shape[0]
     mode = column(values, "site.mode_factor", n_sample)[:, None]
@@ -51,18 +52,24 @@ def zone_strengths(
     ratio = ground.columns.strength_ratio[:, layer]
     exponent = ground.columns.strength_exponent[:, layer]
     stress0, yield0 = ground.points.stress[:, clay], ground.yield_stress[:, clay]
-    gain = {0: np.zeros_like(stress0), 1: ground.load.slope_share[:, clay], 2: np.ones_like(stress0)}
-    strength = np.zeros((site.record.size, n_sample, N_ZONE, n_point))
+    gains = [share[:, clay] for share in _zone_shares(ground.load)]
+    strength = np.zeros((site.record.size, n_sample, len(gains), n_point))
     for slot in range(site.record.size):
-        for zone in range(N_ZONE):
-            stress = stress0 + gain[zone] * (result.stress[:, slot] - stress0)
-            largest = stress0 + gain[zone] * (result.yield_stress[:, slot] - stress0)
+        for zone, gain in enumerate(gains):
+            stress = stress0 + gain * (result.stress[:, slot] - stress0)
+            largest = stress0 + gain * (result.yield_stress[:, slot] - stress0)
             past = np.maximum(np.maximum(yield0, largest), stress)
             su = undrained_shear_strength(stress, past, ratio, exponent)
             strength[slot, :, zone, clay] = (mode * su).T
     before = np.zeros((n_sample, n_point))
     before[:, clay] = mode * undrained_shear_strength(stress0, yield0, ratio, exponent)
     return strength, before
+
+
+def _zone_shares(load: AppliedLoad) -> list[FloatArray]:
+    """Return the share of the stress below the centreline that acts in each zone."""
+    shares = [np.zeros_like(load.slope_share), load.slope_share, np.ones_like(load.slope_share)]
+    return shares if load.berm_share is None else [*shares, load.berm_share]
 
 
 def slip_at_checks(
@@ -78,7 +85,7 @@ def slip_at_checks(
         Value of every quantity by its address.
     ground : LoadedGround
         Points and added stress.
-    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+    strength : ndarray, shape (n_record, n_sample, n_zone, n_point), [kPa]
         Undrained strength at the recorded times.
 
     Returns
@@ -109,7 +116,7 @@ def competing_families(
         Value of every quantity by its address.
     ground : LoadedGround
         Points and added stress.
-    strength : ndarray, shape (n_record, n_sample, 3, n_point), [kPa]
+    strength : ndarray, shape (n_record, n_sample, n_zone, n_point), [kPa]
         Undrained strength at the recorded times.
     within : float, [-]
         How far above the least factor a circle may be, as a share of it.
@@ -133,14 +140,15 @@ def _sections(
     if site.slip_times.size == 0:
         return
     n_sample = ground.points.depth.shape[0]
-    fill = FillStrength(
-        unit_weight=column(values, "load.fill_unit_weight", n_sample),
-        friction_angle=column(values, "load.fill_phi", n_sample),
-        cohesion=column(values, "load.fill_cohesion", n_sample),
-    )
     tangent = _tangents(site, values, ground)
     for time in site.slip_times:
         slot = int(np.searchsorted(site.record, time))
+        fill = FillStrength(
+            unit_weight=column(values, "load.fill_unit_weight", n_sample),
+            friction_angle=column(values, "load.fill_phi", n_sample),
+            cohesion=column(values, "load.fill_cohesion", n_sample),
+            traffic=column(values, "load.traffic", n_sample) if time >= site.traffic_from else None,
+        )
         here = GroundStrength(
             boundary=ground.points.boundary,
             point_layer=ground.points.layer,
@@ -166,5 +174,5 @@ def _frictional(site: SiteModel, ground: LoadedGround, tangent: FloatArray, time
     if all(layer.is_clay for layer in site.layers):
         return None
     added = stress_at(site, ground.load, time)
-    shares = (np.zeros_like(added), ground.load.slope_share, np.ones_like(added))
+    shares = _zone_shares(ground.load)
     return np.stack([(ground.points.stress + share * added) * tangent for share in shares], axis=1)

@@ -5,6 +5,7 @@ from probsoil.probability.counts import Sense, exceeding_counts, exceeds
 from probsoil.probability.exceedance import Exceedance, exceedance, reliability_index
 from probsoil.probability.exceedance_curve import ExceedanceCurve, exceedance_curve
 from probsoil.probability.intervals import probability_interval
+from probsoil.probability.median import median_interval
 
 __all__ = [
     "Exceedance",
@@ -15,6 +16,7 @@ __all__ = [
     "exceedance_curve",
     "exceeding_counts",
     "exceeds",
+    "median_interval",
     "probability_interval",
     "reliability_index",
     "unseen_bound",

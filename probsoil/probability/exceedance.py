@@ -49,11 +49,13 @@ class Exceedance:
     model_runs : int, [-]
         Realisations behind the estimate.
     unseen_bound : float or None, [-]
-        Where no realisation exceeds, the one-sided upper limit of the probability at `confidence`.
+        Where no realisation exceeds, the one-sided upper limit of the probability at `confidence`; where
+        every one does, the one-sided lower limit; None otherwise and where nothing is uncertain.
     target : float or None, [-]
         Target probability, if there is one.
     verdict : str or None
-        Whether the whole interval lies within or beyond the target.
+        Whether the whole interval lies within or beyond the target; where no or every realisation exceeds,
+        whether the one-sided bound does.
     """
 
     threshold: float
@@ -97,6 +99,7 @@ def exceedance(  # noqa: PLR0913 - keyword-only options
     method: str = "monte carlo",
     confidence: float = 0.95,
     target: float | None = None,
+    certain: bool = False,
 ) -> Exceedance:
     """Probability that a limit is exceeded.
 
@@ -116,6 +119,8 @@ def exceedance(  # noqa: PLR0913 - keyword-only options
         Confidence of the limits.
     target : float, [-], optional
         Target probability.
+    certain : bool
+        True where no parameter is uncertain and every realisation is the same calculation.
 
     Returns
     -------
@@ -140,8 +145,10 @@ def exceedance(  # noqa: PLR0913 - keyword-only options
         raise ParameterError(f"the target probability must lie between 0 and 1; got {target:g}")
     exceeding = int(exceeds(sample, threshold, sense).sum())
     counts = exceeding_counts(sample, np.array([threshold], dtype=np.float64), sense, index)
-    found = probability_interval(counts, replicate_sizes(sample.size, index), confidence)
+    sizes = replicate_sizes(sample.size, index)
+    found = probability_interval(counts, sizes, confidence, certain=certain)
     low, high = float(found.low[0]), float(found.high[0])
+    bound = None if certain else _one_sided(exceeding, sample.size, confidence)
     return Exceedance(
         threshold=float(threshold),
         sense=sense,
@@ -155,9 +162,9 @@ def exceedance(  # noqa: PLR0913 - keyword-only options
         reliability_interval=(reliability_index(high), reliability_index(low)),
         method=f"{method}; {METHODS[int(found.method[0])]}",
         model_runs=sample.size,
-        unseen_bound=unseen_bound(sample.size, confidence) if exceeding == 0 else None,
+        unseen_bound=bound,
         target=target,
-        verdict=None if target is None else _verdict(low, high, target),
+        verdict=None if target is None else _verdict((low, high), bound, exceeding == 0, target),
     )
 
 
@@ -204,7 +211,18 @@ def replicate_sizes(n: int, replicate: IntArray | None) -> IntArray:
     return np.bincount(replicate).astype(np.int64)
 
 
-def _verdict(low: float, high: float, target: float) -> Verdict:
+def _one_sided(exceeding: int, n: int, confidence: float) -> float | None:
+    """Bound of the probability where one outcome was not seen at all."""
+    if 0 < exceeding < n:
+        return None
+    bound = unseen_bound(n, confidence)
+    return bound if exceeding == 0 else 1.0 - bound
+
+
+def _verdict(interval: tuple[float, float], bound: float | None, none_seen: bool, target: float) -> Verdict:
+    low, high = interval
+    if bound is not None:
+        low, high = (0.0, bound) if none_seen else (bound, 1.0)
     if high <= target:
         return "within target"
     return "beyond target" if low > target else "not conclusive"

@@ -76,6 +76,7 @@ def exceedance_curve(
     through: float,
     replicate: ArrayLike | None = None,
     confidence: float = 0.95,
+    certain: bool = False,
 ) -> ExceedanceCurve:
     """Probability of exceeding each of a ladder of round thresholds.
 
@@ -91,6 +92,8 @@ def exceedance_curve(
         Replicate of each realisation, from 0, for points that are not independent.
     confidence : float, [-]
         Confidence of the limits at each threshold.
+    certain : bool
+        True where no parameter is uncertain: limits are then the probabilities themselves.
 
     Returns
     -------
@@ -109,7 +112,8 @@ def exceedance_curve(
         raise ParameterError(f"the threshold to pass through must be finite; got {through:g}")
     step, threshold = round_thresholds(sample[np.isfinite(sample)], float(through))
     counts = exceeding_counts(sample, threshold, sense, index)
-    found = probability_interval(counts, replicate_sizes(sample.size, index), confidence)
+    sizes = replicate_sizes(sample.size, index)
+    found = probability_interval(counts, sizes, confidence, certain=certain)
     exceeding = counts.sum(axis=0)
     return ExceedanceCurve(
         sense=sense,

@@ -5,6 +5,7 @@ from typing import Any
 
 from probsoil.report.ranking import SHIFT
 from probsoil.report.text import (
+    LEAST_FOR_TAILS,
     event_text,
     exceeding_word,
     list_text,
@@ -17,6 +18,8 @@ from probsoil.report.text import (
     trimmed_text,
     with_unit,
 )
+
+_FAILURES = {"slip": "slip", "bearing": "bearing failure"}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -52,20 +55,23 @@ def settlement(results: dict[str, Any]) -> Words:
     stages = data.get("stages") or []
     built = max((stage["end"] for stage in stages), default=data["times"][0])
     after = next((i for i, time in enumerate(data["times"]) if time >= built), 0)
-    read = [_at(data, index) for index in sorted({after, len(data["times"]) - 1})]
+    n = data.get("realisations") or results["realisations"]
+    read = [_at(data, index, n) for index in sorted({after, len(data["times"]) - 1})]
     return Words(
         title=f"Settlement at the {data.get('station', 'centreline')} through time",
         description=f"Band of settlement, downwards, against time; {len(stages)} stages. {' '.join(read)}",
     )
 
 
-def slip(results: dict[str, Any]) -> Words:
-    """Describe the factor of safety against slip, stage by stage.
+def stability(results: dict[str, Any], key: str) -> Words:
+    """Describe the factor of safety against slip or bearing failure, stage by stage.
 
     Parameters
     ----------
     results : dict
         The results of an assessment.
+    key : str
+        ``slip`` or ``bearing``.
 
     Returns
     -------
@@ -73,14 +79,13 @@ def slip(results: dict[str, Any]) -> Words:
         Title and description.
     """
     parts = [
-        f"{row['stage']}: median {quantile_text(row['quantiles']['0.5'], '-')}, "
-        f"5 to 95 % {quantile_text(row['quantiles']['0.05'], '-')} to "
-        f"{quantile_text(row['quantiles']['0.95'], '-')}"
-        for row in results["slip"]
+        f"{row['stage']}: median {quantile_text(row['quantiles']['0.5'], '-')}"
+        f"{_tails(row['quantiles'], '-', results['realisations'])}"
+        for row in results[key]
     ]
     return Words(
-        title="Least factor of safety against slip at the end of each stage",
-        description="; ".join(parts) + ". Slip is at 1.",
+        title=f"Least factor of safety against {_FAILURES[key]} at the end of each stage",
+        description="; ".join(parts) + f". {_FAILURES[key].capitalize()} is at 1.",
     )
 
 
@@ -174,7 +179,14 @@ def curve(limit: dict[str, Any], chance: str) -> Words:
     )
 
 
-def _at(data: dict[str, Any], index: int) -> str:
-    quantiles = data["quantiles"]
-    low, median, high = (quantile_text(quantiles[level][index], "m") for level in ("0.05", "0.5", "0.95"))
-    return f"At {trimmed_text(data['times'][index])} years: median {median}, 5 to 95 % {low} to {high}."
+def _at(data: dict[str, Any], index: int, n: int) -> str:
+    quantiles = {level: values[index] for level, values in data["quantiles"].items()}
+    median = quantile_text(quantiles["0.5"], "m")
+    return f"At {trimmed_text(data['times'][index])} years: median {median}{_tails(quantiles, 'm', n)}."
+
+
+def _tails(quantiles: dict[str, Any], unit: str, n: int) -> str:
+    if n < LEAST_FOR_TAILS:
+        return ""
+    low, high = (quantile_text(quantiles[level], unit) for level in ("0.05", "0.95"))
+    return f", 5 to 95 % {low} to {high}"

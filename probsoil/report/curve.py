@@ -8,8 +8,8 @@ from typing import Any
 
 from probsoil.errors import ResultsError
 from probsoil.report import alttext
+from probsoil.report.chance import chance_text, confidence_of, is_certain, margin_text, realisations_of
 from probsoil.report.text import (
-    chance_text,
     count_text,
     decimals_of,
     exceeding_word,
@@ -18,7 +18,7 @@ from probsoil.report.text import (
     plain_percent,
     probability_text,
     quantity_text,
-    realisations_of,
+    realisations_text,
     rounded,
     step_decimals,
     with_unit,
@@ -41,8 +41,11 @@ class Step:
         The threshold with its unit.
     probability, low, high : float, [-]
         Exceedance probability and its interval.
-    chance, interval, count : str
-        The three readings in words.
+    chance, margin, count : str
+        The three readings in words; the margin is the interval, or the one-sided bound where none or all
+        exceed.
+    interval : str
+        The two ends of the interval in words, for the table.
     """
 
     threshold: float
@@ -51,8 +54,9 @@ class Step:
     low: float
     high: float
     chance: str
-    interval: str
+    margin: str
     count: str
+    interval: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -117,8 +121,9 @@ def curve_steps(limit: dict[str, Any], results: dict[str, Any]) -> list[Step]:
                 f"limit {limit['name']!r}: the curve counts {row[1]} exceedances at the limit's threshold, "
                 f"the headline {own[1]}"
             )
-    n, decimals = realisations_of(limit, results), step_decimals(limit)
-    return [_step(row, n, decimals, limit.get("unit", "-")) for row in sorted([*others, own])]
+    base = (realisations_of(limit, results), confidence_of(limit, results))
+    decimals, unit = step_decimals(limit), limit.get("unit", "-")
+    return [_step(row, base, decimals, unit) for row in sorted([*others, own])]
 
 
 def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any] | None:
@@ -152,7 +157,7 @@ def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> d
         "x": across,
         "y": [axis.heights for axis in axes],
         "value": [rounded(step.threshold, decimals).replace(",", "") for step in steps],
-        "read": [[step.text, step.chance, step.interval, step.count] for step in steps],
+        "read": [[step.text, step.chance, step.margin, step.count] for step in steps],
     }
     words = alttext.curve(limit, chance_text(limit, results))
     return {
@@ -172,20 +177,28 @@ def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> d
         "rare": limit["probability"] < 0.02,
         "target": None if target is None else plain_percent(target),
         "total": count_text(n),
+        "totals": realisations_text(n),
+        "sure": "no interval:"
+        if is_certain(limit)
+        else f"with {plain_percent(confidence_of(limit, results))} confidence",
         "table": [steps[i] for i in _table_rows(len(steps), start)],
         "json": json.dumps(data, separators=(",", ":"), ensure_ascii=False).replace("<", "\\u003c"),
     }
 
 
-def _step(row: tuple[float, int, float, float, float], n: int, decimals: int, unit: str) -> Step:
+def _step(
+    row: tuple[float, int, float, float, float], base: tuple[int, float], decimals: int, unit: str
+) -> Step:
     threshold, count, probability, low, high = row
+    n, confidence = base
     return Step(
         threshold=threshold,
         text=with_unit(rounded(threshold, decimals), unit),
         probability=probability,
         low=low,
         high=high,
-        chance=probability_text(probability, n).removesuffix(f" of {count_text(n)} realisations"),
+        chance=probability_text(probability, n).removesuffix(f" of {realisations_text(n)}"),
+        margin=margin_text(probability, [low, high], n, confidence),
         interval=interval_text(probability, low, high),
         count=count_text(int(count)),
     )

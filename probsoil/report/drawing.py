@@ -9,10 +9,12 @@ from typing import TYPE_CHECKING, Any
 
 from probsoil.report import alttext
 from probsoil.report.palette import LIGHT
-from probsoil.report.plot_bars import plot_drivers, plot_slip
+from probsoil.report.plot_bars import plot_drivers, plot_factors
 from probsoil.report.plot_ground import plot_ground
+from probsoil.report.plot_section import plot_section
 from probsoil.report.plot_settlement import plot_settlement
 from probsoil.report.ranking import ranked_by
+from probsoil.report.section import drawn_check, section_words
 from probsoil.report.svg import tidy_svg
 from probsoil.report.text import is_number
 
@@ -59,14 +61,20 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     Returns
     -------
     drawings : dict of str to str
-        Vector graphic by name: ``settlement``, ``slip``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for
-        the limits in their order.
+        Vector graphic by name: ``settlement``, ``slip`` (with ``section``) or ``bearing``, ``ground`` and
+        ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
     if (results.get("settlement") or {}).get("times"):
         drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
-    if results.get("slip"):
-        drawn["slip"] = _render("slip", alttext.slip(results), plot_slip, results["slip"])
+    for key in ("slip", "bearing"):
+        if results.get(key):
+            words = alttext.stability(results, key)
+            drawn[key] = _render(key, words, partial(plot_factors, failure=key), results[key])
+    shown_check = drawn_check(results)
+    if shown_check is not None and (results.get("ground") or {}).get("layers"):
+        words, data = section_words(shown_check), (shown_check, results["ground"])
+        drawn["section"] = _render("section", words, plot_section, data)
     if (results.get("ground") or {}).get("layers"):
         drawn["ground"] = _render("ground", alttext.ground(results), plot_ground, results["ground"])
     for number, limit in enumerate(results["limits"], start=1):

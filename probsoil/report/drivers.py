@@ -107,7 +107,8 @@ def _shares(row: dict[str, Any]) -> str:
 def _quality(row: dict[str, Any]) -> str:
     if not row:
         return ""
-    parts = [f"Read from {text.count_text(row.get('exceeding'))} exceeding realisations."]
+    count = row["exceeding"]
+    parts = [f"Read from {text.count_text(count)} exceeding realisation{'' if count == 1 else 's'}."]
     if row.get("r_squared") is not None:
         parts.append(
             f"The fit behind the shares explains {text.percent_text(row['r_squared'], 0)} of the variance of "

@@ -1,7 +1,8 @@
-"""Plain numbers, percentages and intervals in words.
+"""Plain numbers and money in words.
 
 Everything is rounded half up in decimal arithmetic, so that 12.45 % reads the same wherever it
-is printed; bounds are rounded outwards, so that a printed bound is never better than the one computed.
+is printed; bounds are rounded outwards in their last digit, so that a printed bound is never better
+than the one computed.
 """
 
 import math
@@ -11,7 +12,7 @@ from typing import TypeGuard
 
 MISSING = "not available"
 _SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
-_MAX_DECIMALS = 9
+_LEAST_LENGTH = 0.001  # metres; lengths are written to the millimetre
 
 
 def is_number(value: object) -> TypeGuard[float]:
@@ -48,7 +49,7 @@ def rounded(value: float, decimals: int, *, rounding: str = ROUND_HALF_UP) -> st
         The number, ``-0`` written as ``0``.
     """
     exact = Decimal(repr(float(value)))
-    return _fixed(exact, decimals, rounding)
+    return fixed_text(exact, decimals, rounding)
 
 
 def number_text(value: float | None, significant: int = 3) -> str:
@@ -75,7 +76,7 @@ def number_text(value: float | None, significant: int = 3) -> str:
     if -4 <= power < 7:
         return rounded(value, max(0, significant - 1 - power))
     mantissa = Decimal(repr(float(value))).scaleb(-power)
-    return f"{_fixed(mantissa, significant - 1, ROUND_HALF_UP)} × 10{str(power).translate(_SUPERSCRIPT)}"
+    return f"{fixed_text(mantissa, significant - 1, ROUND_HALF_UP)} × 10{str(power).translate(_SUPERSCRIPT)}"
 
 
 def with_unit(text: str, unit: str) -> str:
@@ -126,10 +127,12 @@ def value_text(value: float | None, unit: str) -> str:
     Returns
     -------
     text : str
-        For example ``0.412 m`` or ``1.37``.
+        For example ``0.412 m``, ``less than 0.001 m`` or ``1.37``.
     """
     if not is_number(value):
         return MISSING
+    if unit == "m" and 0.0 < value < 0.5 * _LEAST_LENGTH:
+        return f"less than {rounded(_LEAST_LENGTH, 3)} m"
     return with_unit(rounded(value, 3) if unit == "m" else number_text(value), unit)
 
 
@@ -149,6 +152,22 @@ def count_text(count: int | None) -> str:
     return MISSING if count is None else f"{count:,d}"
 
 
+def realisations_text(n: int) -> str:
+    """Write a number of realisations.
+
+    Parameters
+    ----------
+    n : int, [-]
+        The number.
+
+    Returns
+    -------
+    text : str
+        For example ``20,000 realisations`` or ``1 realisation``.
+    """
+    return f"{count_text(n)} realisation{'' if n == 1 else 's'}"
+
+
 def list_text(items: Sequence[str]) -> str:
     """Join words as in a sentence.
 
@@ -163,145 +182,6 @@ def list_text(items: Sequence[str]) -> str:
         For example ``a, b and c``.
     """
     return " and ".join([*([", ".join(items[:-1])] if len(items) > 1 else []), *items[-1:]])
-
-
-def plain_percent(share: float) -> str:
-    """Write a share that somebody chose, such as a target or a confidence, with no more digits than it has.
-
-    Parameters
-    ----------
-    share : float, [-]
-        From 0 to 1.
-
-    Returns
-    -------
-    text : str
-        For example ``5 %`` or ``0.1 %``.
-    """
-    exact = (Decimal(repr(float(share))) * 100).normalize()
-    return f"{exact:f} %"
-
-
-def percent_decimals(share: float) -> int:
-    """Choose how many decimals a percentage needs: one, or more the nearer it is to 0 or 100 %.
-
-    Parameters
-    ----------
-    share : float, [-]
-        From 0 to 1.
-
-    Returns
-    -------
-    decimals : int, [-]
-        Decimals that leave two significant digits of the smaller of the share and the rest.
-    """
-    exact = Decimal(repr(float(share)))
-    rest = min(exact, 1 - exact) * 100
-    if rest <= 0:
-        return 1
-    return min(_MAX_DECIMALS, max(1, 1 - rest.adjusted()))
-
-
-def percent_text(share: float | None, decimals: int | None = None) -> str:
-    """Write a share as a percentage.
-
-    Parameters
-    ----------
-    share : float or None, [-]
-        From 0 to 1.
-    decimals : int or None, [-]
-        Decimals to keep; as `percent_decimals` if not told.
-
-    Returns
-    -------
-    text : str
-        For example ``12.4 %`` or ``0.034 %``.
-    """
-    if not is_number(share):
-        return MISSING
-    keep = percent_decimals(share) if decimals is None else decimals
-    return f"{_fixed(Decimal(repr(float(share))) * 100, keep, ROUND_HALF_UP)} %"
-
-
-def probability_text(probability: float, n: int) -> str:
-    """Write an exceedance probability; never as 0 % or 100 % when all it says is that none or all were seen.
-
-    Parameters
-    ----------
-    probability : float, [-]
-        Exceedance probability.
-    n : int, [-]
-        Realisations it was counted from.
-
-    Returns
-    -------
-    text : str
-        For example ``12.4 %``, ``none of 20,000 realisations`` or ``all of 20,000 realisations``.
-    """
-    if probability <= 0:
-        return f"none of {count_text(n)} realisations"
-    if probability >= 1:
-        return f"all of {count_text(n)} realisations"
-    return percent_text(probability)
-
-
-def interval_text(probability: float, low: float, high: float) -> str:
-    """Write the interval of an exceedance probability, with the decimals of the probability.
-
-    Parameters
-    ----------
-    probability, low, high : float, [-]
-        Exceedance probability and the two ends of its interval.
-
-    Returns
-    -------
-    text : str
-        For example ``11.9 to 12.9 %``; ``below 0.019 %`` where none and ``above 99.98 %`` where all exceeded.
-    """
-    if probability <= 0:
-        return f"below {_bound_text(high, ROUND_CEILING)}"
-    if probability >= 1:
-        return f"above {_bound_text(low, ROUND_FLOOR)}"
-    keep = percent_decimals(probability)
-    ends = [_fixed(Decimal(repr(float(end))) * 100, keep, ROUND_HALF_UP) for end in (low, high)]
-    return f"{ends[0]} to {ends[1]} %"
-
-
-def upper_bound_text(share: float) -> str:
-    """Write an upper bound of a probability, rounded up.
-
-    Parameters
-    ----------
-    share : float, [-]
-        From 0 to 1.
-
-    Returns
-    -------
-    text : str
-        For example ``0.015 %``.
-    """
-    return _bound_text(share, ROUND_CEILING)
-
-
-def odds_text(probability: float) -> str:
-    """Write a probability as one chance in so many, to two digits.
-
-    Parameters
-    ----------
-    probability : float, [-]
-        Probability.
-
-    Returns
-    -------
-    text : str
-        For example ``about 1 in 8``; empty outside 0 to 1 and above one half, where it would not help.
-    """
-    if not 0 < probability <= 0.5:
-        return ""
-    one_in = Decimal(1) / Decimal(repr(float(probability)))
-    step = max(0, one_in.adjusted() - 1)
-    whole = int(one_in.scaleb(-step).quantize(Decimal(1), ROUND_HALF_UP)) * 10**step
-    return f"about 1 in {whole:,d}"
 
 
 def decimals_of(value: float, most: int = 6) -> int:
@@ -341,6 +221,32 @@ def money_text(amount: float | None, currency: str) -> str:
     return f"{currency} {rounded(amount, 0)}" if is_number(amount) else MISSING
 
 
+def rough_money_text(amount: float | None, currency: str, *, up: bool = False, down: bool = False) -> str:
+    """Write an amount of money to three figures and in whole units.
+
+    Parameters
+    ----------
+    amount : float or None, [`currency`]
+        Amount.
+    currency : str
+        Currency code or name; nothing for the number alone.
+    up, down : bool
+        Whether to round up or down instead of to the nearest.
+
+    Returns
+    -------
+    text : str
+        For example ``EUR 203,000``.
+    """
+    if not is_number(amount):
+        return MISSING
+    exact = Decimal(repr(float(amount)))
+    mode = ROUND_CEILING if up else ROUND_FLOOR if down else ROUND_HALF_UP
+    step = max(0, exact.adjusted() - 2)
+    whole = exact.scaleb(-step).quantize(Decimal(1), mode).scaleb(step)
+    return f"{currency} {fixed_text(whole, 0, mode)}".strip()
+
+
 def pair_text(ends: Sequence[float | None] | None, decimals: int = 2) -> str:
     """Write the two ends of an interval of a plain number.
 
@@ -366,11 +272,22 @@ def pair_text(ends: Sequence[float | None] | None, decimals: int = 2) -> str:
     return MISSING
 
 
-def _fixed(exact: Decimal, decimals: int, rounding: str) -> str:
+def fixed_text(exact: Decimal, decimals: int, rounding: str = ROUND_HALF_UP) -> str:
+    """Write an exact number with a fixed count of decimals and comma-grouped thousands.
+
+    Parameters
+    ----------
+    exact : Decimal, [any]
+        Number, in any unit.
+    decimals : int, [-]
+        Decimals to keep, zero or more.
+    rounding : str
+        Rounding mode of the `decimal` module; half up if not told.
+
+    Returns
+    -------
+    text : str
+        The number, ``-0`` written as ``0``.
+    """
     text = f"{exact.quantize(Decimal(1).scaleb(-decimals), rounding):,f}"
     return text.lstrip("-") if not text.strip("-0.,") else text
-
-
-def _bound_text(share: float, rounding: str) -> str:
-    exact = Decimal(repr(float(share)))
-    return f"{_fixed(exact * 100, percent_decimals(share), rounding)} %"

@@ -1,4 +1,4 @@
-"""The bars of slip safety by stage and of the drivers of a limit."""
+"""The bars of safety by stage and of the drivers of a limit."""
 
 from typing import TYPE_CHECKING, Any
 
@@ -18,7 +18,7 @@ _BARS = {
 }
 
 
-def plot_slip(figure: "Figure", rows: list[dict[str, Any]]) -> None:
+def plot_factors(figure: "Figure", rows: list[dict[str, Any]], failure: str = "slip") -> None:
     """Draw the range of the factor of safety at the end of each stage.
 
     Parameters
@@ -26,7 +26,9 @@ def plot_slip(figure: "Figure", rows: list[dict[str, Any]]) -> None:
     figure : Figure
         Empty figure to draw on.
     rows : list of dict
-        Entries of ``slip`` of the results.
+        Entries of ``slip`` or ``bearing`` of the results.
+    failure : str
+        Which of the two.
     """
     figure.set_figheight(1.1 + 0.48 * len(rows))
     axis = figure.subplots()
@@ -42,8 +44,9 @@ def plot_slip(figure: "Figure", rows: list[dict[str, Any]]) -> None:
                 va="center", fontsize=9, color=LIGHT["muted"],
             )  # fmt: skip
     axis.axvline(1.0, color=LIGHT["mark"], lw=1.6, ls=(0, (5, 2)))
+    mark = "slip" if failure == "slip" else "failure"
     axis.annotate(
-        "slip", (1.0, 1.0), xycoords=("data", "axes fraction"), xytext=(0, 3), textcoords="offset points",
+        mark, (1.0, 1.0), xycoords=("data", "axes fraction"), xytext=(0, 3), textcoords="offset points",
         ha="center", fontsize=9, color=LIGHT["mark"],
     )  # fmt: skip
     axis.set_yticks(
@@ -52,7 +55,8 @@ def plot_slip(figure: "Figure", rows: list[dict[str, Any]]) -> None:
     axis.set_ylim(len(rows) - 0.4, -0.6)
     axis.set_xlim(min(0.9, axis.get_xlim()[0]), None)
     axis.grid(visible=True, axis="x")
-    axis.set_xlabel("least factor of safety against slip at the end of the stage [-]")
+    what = "slip" if failure == "slip" else "bearing failure"
+    axis.set_xlabel(f"least factor of safety against {what} at the end of the stage [-]")
 
 
 def plot_drivers(figure: "Figure", rows: list[dict[str, Any]], measure: str = "spread") -> None:

@@ -7,13 +7,14 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_parts import numbers_array
-from probsoil.report.text import is_number
+from probsoil.report.text import is_number, list_text
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 _WEEKS_PER_YEAR = 365.25 / 7.0
+_LABEL_ROOM = 0.065  # height of a label as a part of the axis
 
 
 def plot_settlement(figure: "Figure", results: dict[str, Any]) -> None:
@@ -54,9 +55,10 @@ def plot_settlement(figure: "Figure", results: dict[str, Any]) -> None:
 
 def _band(axis: "Axes", times: FloatArray, data: dict[str, Any]) -> None:
     quantiles = {key: numbers_array(values) for key, values in data["quantiles"].items()}
-    axis.fill_between(
-        times, quantiles["0.05"], quantiles["0.95"], color=LIGHT["haze"], lw=0, label="5 to 95 %"
-    )
+    if np.isfinite(quantiles["0.05"]).any():  # withheld with few realisations
+        axis.fill_between(
+            times, quantiles["0.05"], quantiles["0.95"], color=LIGHT["haze"], lw=0, label="5 to 95 %"
+        )
     axis.fill_between(
         times, quantiles["0.25"], quantiles["0.75"], color=LIGHT["band"], lw=0, label="25 to 75 %"
     )
@@ -105,18 +107,24 @@ def _late_axis(axis: "Axes", start: float, end: float) -> None:
 def _mark_limits(
     axes: "np.ndarray[Any, Any]", limits: list[dict[str, Any]], split: float, factor: float
 ) -> None:
+    marks: dict[tuple[float, float], list[int]] = {}
     for number, limit in enumerate(limits, start=1):
         at = (limit.get("time") or {}).get("at")
-        if limit["quantity"] != "settlement" or not is_number(at):
-            continue
+        if limit["quantity"] == "settlement" and is_number(at):
+            marks.setdefault((float(at), float(limit["threshold"])), []).append(number)
+    deepest = axes[0].get_ylim()[0]
+    taken: dict[float, float] = {}  # by time, where the last label stands, from the bottom up
+    for (at, threshold), numbers in sorted(marks.items(), reverse=True):
         late = len(axes) > 1 and at > split
         axis, place = (axes[1], at) if late else (axes[0], at * factor)
-        inside = limit["threshold"] <= axis.get_ylim()[0]
-        height = limit["threshold"] if inside else axis.get_ylim()[0]
+        inside = threshold <= deepest
+        height = threshold if inside else deepest
+        label_at = min(height, taken.get(at, np.inf) - _LABEL_ROOM * abs(np.diff(axis.get_ylim())[0]))
+        taken[at] = label_at
         axis.plot([place], [height], marker="D", ms=6, color=LIGHT["mark"], ls="", clip_on=False, zorder=5)
         axis.annotate(
-            f"limit {number}" + ("" if inside else " is deeper"),
-            (place, height),
+            _mark_text(numbers, inside=inside),
+            (place, label_at),
             xytext=(-8, 0),
             textcoords="offset points",
             ha="right",
@@ -124,3 +132,9 @@ def _mark_limits(
             fontsize=9,
             color=LIGHT["mark"],
         )
+
+
+def _mark_text(numbers: list[int], *, inside: bool) -> str:
+    one = len(numbers) == 1
+    name = f"limit{'' if one else 's'} {list_text([str(number) for number in numbers])}"
+    return name if inside else f"{name} {'is' if one else 'are'} deeper"

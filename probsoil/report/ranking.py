@@ -75,6 +75,8 @@ def none_ranked_text(limit: dict[str, Any], measure: str, rows: Sequence[dict[st
     text : str
         A clause without a full stop.
     """
+    if not rows:
+        return "no parameter is uncertain, so none drives the chance"
     if all(row.get("spread_clear") is None for row in rows):
         return "no parameter could be judged, and none has a rank"
     side = "meeting" if _mostly_exceeded(limit) else "exceeding"

@@ -1,8 +1,10 @@
 """Ground, parameters, trust and provenance of an assessment arranged for the page."""
 
+from decimal import ROUND_CEILING
 from typing import Any
 
 from probsoil.report import text
+from probsoil.report.chance import confidence_of, is_certain, margin_text, realisations_of
 
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _PROFILE_ROWS = 14
@@ -27,12 +29,26 @@ def record_view(results: dict[str, Any]) -> dict[str, Any]:
         "parameters": [_parameter(row) for row in results.get("parameters") or []],
         "dependence": [_dependence(row) for row in results.get("dependence") or []],
         "trust": _trust(results),
-        "warnings": [_warning(row) for row in results.get("warnings") or []],
+        "warnings": [text.warning_text(row) for row in results.get("warnings") or []],
         "assumptions": results.get("assumptions") or [],
         "cautions": results.get("cautions") or [],
-        "method": sorted({limit["method"] for limit in results["limits"] if limit.get("method")}),
+        "method": _method(results["limits"]),
+        "replicated": any("replicate" in limit["method"] for limit in results["limits"]),
         "provenance": _provenance(results),
     }
+
+
+def _method(limits: list[dict[str, Any]]) -> list[str]:
+    """Say by what each limit was estimated; limits by the same means together."""
+    numbers: dict[str, list[str]] = {}
+    for number, limit in enumerate(limits, start=1):
+        numbers.setdefault(limit["method"], []).append(str(number))
+    if len(numbers) == 1:
+        return [f"{method}." for method in numbers]
+    return [
+        f"Limit{'' if len(those) == 1 else 's'} {text.list_text(those)}: {method}."
+        for method, those in numbers.items()
+    ]
 
 
 def stage_view(number: int, stage: dict[str, Any]) -> dict[str, Any]:
@@ -101,6 +117,23 @@ def share_text(share: float | None) -> str:
     return "none" if share <= 0 else "all" if share >= 1 else text.percent_text(share)
 
 
+def slip_share(row: dict[str, Any]) -> list[str]:
+    """Write the share of realisations that slip or fail in bearing, and its interval.
+
+    Parameters
+    ----------
+    row : dict
+        One entry of ``slip`` or ``bearing`` of the results.
+
+    Returns
+    -------
+    cells : list of str
+        For example ``1.3 %`` and ``1.1 to 1.5 %``.
+    """
+    share, ends = row["probability_below_one"], row.get("interval_below_one")
+    return [share_text(share), text.interval_text(share, *ends) if ends else text.MISSING]
+
+
 def draws_text(results: dict[str, Any]) -> str:
     """Name the way the realisations were drawn.
 
@@ -128,8 +161,9 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
     rows = [[text.number_text(value) for value in row] for row in zip(*columns, strict=True)]
     load = data.get("load") or {}
     return {
-        "water_table": data.get("water_table", text.MISSING),
+        "water_table": text.described_text(data.get("water_table", text.MISSING)),
         "base": data.get("base", text.MISSING),
+        "drains": data.get("drains"),
         "load": ": ".join(str(load[key]) for key in ("shape", "text") if load.get(key)),
         "layers": [
             {
@@ -137,7 +171,10 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
                 "name": layer["name"],
                 "soil": layer["soil"],
                 "depths": f"{text.rounded(layer['top'], 2)} to {text.rounded(layer['bottom'], 2)}",
-                "properties": layer.get("properties") or [_NO_PROPERTY],
+                "properties": [
+                    item | {"text": text.described_text(item["text"])}
+                    for item in layer.get("properties") or [_NO_PROPERTY]
+                ],
             }
             for number, layer in enumerate(data["layers"], start=1)
         ],
@@ -154,7 +191,7 @@ def _parameter(row: dict[str, Any]) -> dict[str, Any]:
         "name": row["name"],
         "meaning": row.get("meaning") or "",
         "unit": row.get("unit") or "-",
-        "text": row.get("text") or "",
+        "text": text.described_text(row.get("text") or ""),
         "numbers": [text.number_text(row.get(key)) for key in ("mean", "sd", "p05", "p50", "p95")],
         "range": _range(row.get("low"), row.get("high")),
         "cut": text.percent_text(cut) if cut > 0 else "nothing",
@@ -174,12 +211,6 @@ def _range(low: float | None, high: float | None) -> str:
 def _dependence(row: dict[str, Any]) -> list[str]:
     first, second = row["between"]
     return [first, second, *(metres_text(row.get(key)) for key in ("rank_correlation", "latent_correlation"))]
-
-
-def _warning(row: dict[str, Any]) -> str:
-    message, share = row["message"].rstrip("."), row.get("share")
-    size = "" if share is None else f" ({share_text(share)})"
-    return f"{message[:1].upper()}{message[1:]}{size}."
 
 
 def _trust(results: dict[str, Any]) -> list[tuple[str, str]]:
@@ -219,16 +250,24 @@ def _driver_quality(results: dict[str, Any]) -> str:
 
 
 def _sampling(results: dict[str, Any]) -> str:
-    parts = [
-        f"limit {number}: {text.interval_text(limit['probability'], *limit['interval'])}"
-        for number, limit in enumerate(results["limits"], start=1)
-    ]
+    limits = results["limits"]
+    if all(is_certain(limit) for limit in limits):
+        return (
+            "Nothing in this scenario is uncertain, so other realisations would give the same and there are "
+            "no intervals."
+        )
+    parts = [f"limit {number}: {_margin(limit, results)}" for number, limit in enumerate(limits, start=1)]
     confidence = text.plain_percent(results.get("confidence") or 0.95)
     return (
-        f"The intervals say how far the chances could shift if {text.count_text(results['realisations'])} "
-        f"other realisations were drawn ({confidence} confidence; {'; '.join(parts)}). They say nothing of "
-        "whether the distributions put into the scenario are right."
+        "Intervals and bounds say how far the chances could shift if as many other realisations were drawn, "
+        f"{text.count_text(results['realisations'])} ({confidence} confidence; {'; '.join(parts)}). They say "
+        "nothing of whether the distributions put into the scenario are right."
     )
+
+
+def _margin(limit: dict[str, Any], results: dict[str, Any]) -> str:
+    n, confidence = realisations_of(limit, results), confidence_of(limit, results)
+    return margin_text(limit["probability"], limit["interval"], n, confidence)
 
 
 def _discretisation(data: dict[str, Any]) -> str:
@@ -238,13 +277,23 @@ def _discretisation(data: dict[str, Any]) -> str:
     text_slip = (
         ""
         if slip is None
-        else f" The factor of safety against slip changed by at most {text.percent_text(slip)}."
+        else f" The factor of safety against slip differed by at most {text.percent_text(slip)} of that over "
+        "a denser family of circles on the finer grid. A family of circles may miss the worst circle, "
+        "so the factor it finds is too high if anything, and the denser family's may be so too."
     )
+    bearing = data.get("bearing_error_share")
+    if bearing is not None:
+        text_slip += (
+            f" The factor of safety against bearing failure differed by at most {text.percent_text(bearing)}."
+        )
+    n = data["realisations"]
+    again = f"{text.realisations_text(n)} {'was' if n == 1 else 'were'}"
     return (
-        f"{text.count_text(data.get('realisations'))} realisations were repeated on a finer grid than the "
-        f"{text.count_text(data.get('cells'))} cells and {text.count_text(data.get('steps'))} time steps "
-        f"used. The settlement changed by at most {text.value_text(data.get('settlement_error'), 'm')}, "
-        f"{text.percent_text(share)} of the final settlement.{text_slip}"
+        f"{again} repeated on a finer grid than the {text.count_text(data.get('cells'))} cells and "
+        f"{text.count_text(data.get('steps'))} time steps used. From the difference, raised for what the "
+        "finer grid itself leaves, the greatest error of the settlement among them, at any time and to "
+        f"either side, is put at {text.rounded(data['settlement_error'], 3, rounding=ROUND_CEILING)} m, and "
+        f"at {text.percent_text(share)} of the final settlement of the same realisation.{text_slip}"
     )
 
 
@@ -252,8 +301,8 @@ def _convergence(stuck: int) -> str:
     if not stuck:
         return "Every realisation converged."
     return (
-        f"For at least one limit {text.count_text(stuck)} realisations did not converge. They are counted as "
-        "exceeding, which can only raise the chances."
+        f"For at least one limit {text.realisations_text(stuck)} did not converge, counted as exceeding, "
+        "which can only raise the chances."
     )
 
 

@@ -3,8 +3,9 @@
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from probsoil.report.chance import realisations_of
 from probsoil.report.ranking import ranked_by
-from probsoil.report.text import UNCOMPUTED, uncomputed_text
+from probsoil.report.text import LEAST_FOR_TAILS, UNCOMPUTED, WITHHELD, uncomputed_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -16,7 +17,8 @@ def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
-    mean or quantile without a number reads ``not reached`` (a time) or ``beyond the computation``.
+    mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
+    ``too few realisations`` (the 5 % and the 95 % point of fewer than 40).
 
     Parameters
     ----------
@@ -56,11 +58,11 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     import pandas as pd
 
     rows = {
-        "limits": [_limit_row(limit, results.get("currency") or "currency") for limit in results["limits"]],
+        "limits": [_limit_row(limit, results) for limit in results["limits"]],
         "drivers": [
             _driver_row(row, ranked_by(results, row["limit"])) for row in results.get("drivers") or []
         ],
-        "settlement": _settlement_rows(results.get("settlement") or {}),
+        "settlement": _settlement_rows(results.get("settlement") or {}, results),
         "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
     }
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
@@ -70,8 +72,10 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     return frames
 
 
-def _limit_row(limit: dict[str, Any], currency: str) -> dict[str, Any]:
+def _limit_row(limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any]:
+    currency, n = results.get("currency") or "currency", realisations_of(limit, results)
     low, high = limit["interval"]
+    cost_low, cost_high = limit.get("expected_cost_interval") or (None, None)
     beta_low, beta_high = limit.get("reliability_interval") or (None, None)
     summary = limit.get("summary") or {}
     beyond = uncomputed_text(limit["quantity"])
@@ -98,9 +102,12 @@ def _limit_row(limit: dict[str, Any], currency: str) -> dict[str, Any]:
         "verdict": limit.get("verdict"),
         f"cost if exceeded [{currency}]": limit.get("cost_if_exceeded"),
         f"expected cost [{currency}]": limit.get("expected_cost"),
+        f"expected cost low [{currency}]": cost_low,
+        f"expected cost high [{currency}]": cost_high,
         "mean [unit]": _or(beyond, summary, "mean"),
         "sd [unit]": _or(beyond, summary, "sd"),
-        **_quantile_columns(summary.get("quantiles") or {}, "unit", beyond),
+        **_quantile_columns(summary.get("quantiles") or {}, "unit", n, beyond),
+        **_median_columns(summary.get("median_interval"), beyond),
         "method": limit.get("method"),
     }
 
@@ -123,14 +130,14 @@ def _driver_row(row: dict[str, Any], measure: str) -> dict[str, Any]:
     return columns | clear | {"direction": row.get("direction")}
 
 
-def _settlement_rows(data: dict[str, Any]) -> list[dict[str, Any]]:
-    quantiles = data.get("quantiles") or {}
+def _settlement_rows(data: dict[str, Any], results: dict[str, Any]) -> list[dict[str, Any]]:
+    quantiles, n = data.get("quantiles") or {}, data.get("realisations") or results.get("realisations") or 0
     return [
         {
             "time [years]": time,
             "mean [m]": UNCOMPUTED if data["mean"][place] is None else data["mean"][place],
             **_quantile_columns(
-                {level: values[place] for level, values in quantiles.items()}, "m", UNCOMPUTED
+                {level: values[place] for level, values in quantiles.items()}, "m", n, UNCOMPUTED
             ),
         }
         for place, time in enumerate(data.get("times") or [])
@@ -154,8 +161,21 @@ def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:
     }
 
 
-def _quantile_columns(quantiles: dict[str, Any], unit: str, beyond: str) -> dict[str, Any]:
-    return {f"p{round(100 * float(level)):02d} [{unit}]": _or(beyond, quantiles, level) for level in _LEVELS}
+def _quantile_columns(quantiles: dict[str, Any], unit: str, n: int, beyond: str) -> dict[str, Any]:
+    columns = {
+        f"p{round(100 * float(level)):02d} [{unit}]": _or(beyond, quantiles, level) for level in _LEVELS
+    }
+    few = {f"p05 [{unit}]": WITHHELD, f"p95 [{unit}]": WITHHELD} if n < LEAST_FOR_TAILS else {}
+    return columns | few
+
+
+def _median_columns(ends: list[float | None] | None, beyond: str) -> dict[str, Any]:
+    names = ("p50 low [unit]", "p50 high [unit]")
+    if not ends:
+        return dict.fromkeys(names)
+    if ends == [None, None]:
+        return dict.fromkeys(names, WITHHELD)
+    return {name: beyond if end is None else end for name, end in zip(names, ends, strict=True)}
 
 
 def _or(beyond: str, values: dict[str, Any], key: str) -> Any:

@@ -1,67 +1,64 @@
-"""What the report and the terminal say of a limit: one place that turns numbers into words for both."""
+"""What the report and the terminal call things: one place that turns limits and quantities into words."""
 
+import re
 from typing import Any
 
 from probsoil.report.numerals import (
     MISSING,
     count_text,
     decimals_of,
-    interval_text,
     is_number,
     list_text,
-    money_text,
     number_text,
-    odds_text,
     pair_text,
+    realisations_text,
+    rounded,
+    trimmed_text,
+    value_text,
+    with_unit,
+)
+from probsoil.report.percentages import (
+    interval_text,
     percent_decimals,
     percent_text,
     plain_percent,
     probability_text,
-    rounded,
-    trimmed_text,
-    upper_bound_text,
-    value_text,
-    with_unit,
 )
 
 _QUANTITY_NAMES = {
     "settlement": "settlement",
     "slip_safety": "factor of safety against slip",
+    "bearing_safety": "factor of safety against bearing failure",
     "degree_of_consolidation": "degree of consolidation",
     "time_to_consolidation": "time to consolidation",
 }
-_VERDICTS = {
-    "within target": "Within the target",
-    "beyond target": "Beyond the target",
-    "not conclusive": "Not conclusive",
-}
-
-_SUMMARIES: dict[str | None, tuple[str, str]] = {
-    "beyond target": ("is beyond its target chance", "are beyond their target chances"),
-    "not conclusive": ("is not conclusive", "are not conclusive"),
-    "within target": ("is within its target chance", "are within their target chances"),
-    None: ("has no target", "have no target"),
-}
-
 UNCOMPUTED = "beyond the computation"  # of a quantile that falls on realisations without a finite value
 _UNREACHED = "not reached"  # the same of a time
+WITHHELD = "too few realisations"
+LEAST_FOR_TAILS = 40
+"""Realisations below which no 5 % and 95 % point is shown, [-]; the results withhold them as well."""
+
+_TAILS = ("0.05", "0.95")
+_ERRORS = ("grid", "circles", "bearing_grid")  # warnings whose share is an error of the computation
+_POWER = re.compile(r"(?<![\w.])(\d+(?:\.\d+)?)e([+-]?\d+)\b")
+_DEGREES = re.compile(r"(?<=\d )degree\b")
+_SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 __all__ = [
+    "LEAST_FOR_TAILS",
     "MISSING",
     "UNCOMPUTED",
-    "chance_text",
-    "confidence_of",
+    "WITHHELD",
+    "at_level",
     "count_text",
     "decimals_of",
+    "described_text",
     "event_text",
     "exceeding_word",
     "interval_text",
     "is_number",
     "list_text",
-    "money_text",
     "number_text",
-    "odds_text",
-    "overall_sentence",
     "pair_text",
     "percent_decimals",
     "percent_text",
@@ -70,18 +67,76 @@ __all__ = [
     "quantile_text",
     "quantity_text",
     "range_text",
-    "realisations_of",
+    "realisations_text",
     "rounded",
     "step_decimals",
     "threshold_text",
     "trimmed_text",
     "uncomputed_text",
-    "upper_bound_text",
     "value_text",
-    "verdict_label",
-    "verdict_sentence",
+    "warning_share",
+    "warning_text",
     "with_unit",
 ]
+
+
+def described_text(words: str) -> str:
+    """Write the numbers in a description of a distribution as they are written elsewhere.
+
+    Parameters
+    ----------
+    words : str
+        Description, as in the results.
+
+    Returns
+    -------
+    text : str
+        Powers of ten written out, ``2e-09`` as ``2 × 10⁻⁹``, and degrees in the plural.
+    """
+
+    def power(found: re.Match[str]) -> str:
+        return f"{found[1]} × 10{str(int(found[2])).translate(_SUPERSCRIPT)}"
+
+    return _DEGREES.sub("degrees", _POWER.sub(power, words))
+
+
+def warning_text(row: dict[str, Any]) -> str:
+    """Write a warning with the share it concerns and what that is a share of.
+
+    Parameters
+    ----------
+    row : dict
+        One entry of ``warnings`` of the results.
+
+    Returns
+    -------
+    text : str
+        For example ``Realisations in which the consolidation did not converge (0.12 % of all
+        realisations).``
+    """
+    message = row["message"].rstrip(".")
+    return f"{message[:1].upper()}{message[1:]}{warning_share(row)}."
+
+
+def warning_share(row: dict[str, Any]) -> str:
+    """Write how much a warning concerns, and of what.
+
+    Parameters
+    ----------
+    row : dict
+        One entry of ``warnings`` of the results.
+
+    Returns
+    -------
+    text : str
+        For example `` (0.12 % of all realisations)``, or of the grid and the circles
+        `` (relative error, 1.3 % of the factor of safety)``; nothing where there is no share.
+    """
+    if row.get("share") is None:
+        return ""
+    of = f" of {row['share_of']}" if row.get("share_of") else ""
+    error = "relative error, " if row["code"] in _ERRORS else ""
+    return f" ({error}{percent_text(row['share'])}{of})"
 
 
 def threshold_text(limit: dict[str, Any]) -> str:
@@ -139,8 +194,8 @@ def quantity_text(limit: dict[str, Any]) -> str:
         aim = "the stated degree of" if degree is None else plain_percent(degree)
         return f"the time to {aim} consolidation"
     name = f"the {_QUANTITY_NAMES.get(quantity, quantity.replace('_', ' '))}"
-    if quantity == "slip_safety" and "at" not in time:
-        return "the least factor of safety against slip over the stages"
+    if quantity in ("slip_safety", "bearing_safety") and "at" not in time:
+        return f"the least {_QUANTITY_NAMES[quantity]} over the stages"
     return f"{name} {limit.get('time_text') or _when(time)}".rstrip()
 
 
@@ -180,7 +235,33 @@ def quantile_text(value: float | None, unit: str, beyond: str = UNCOMPUTED) -> s
     return value_text(value, unit) if is_number(value) else beyond
 
 
-def range_text(low: float | None, high: float | None, unit: str, beyond: str = UNCOMPUTED) -> str:
+def at_level(quantiles: dict[str, Any], level: str, unit: str, n: int, beyond: str = UNCOMPUTED) -> str:
+    """Write one quantile with its unit, or why there is none.
+
+    Parameters
+    ----------
+    quantiles : dict
+        Quantiles by level.
+    level : str
+        For example ``0.05``.
+    unit : str
+        Unit of the quantity, ``-`` for none.
+    n : int, [-]
+        Realisations behind it.
+    beyond : str
+        What to say where the quantile falls on values that are not finite.
+
+    Returns
+    -------
+    text : str
+        For example ``0.412 m``, ``beyond the computation`` or ``too few realisations``.
+    """
+    if level in _TAILS and n < LEAST_FOR_TAILS:
+        return WITHHELD
+    return quantile_text(quantiles.get(level), unit, beyond)
+
+
+def range_text(low: float | None, high: float | None, unit: str, n: int, beyond: str = UNCOMPUTED) -> str:
     """Write the range from the 5 % to the 95 % point of a quantity.
 
     Parameters
@@ -189,6 +270,8 @@ def range_text(low: float | None, high: float | None, unit: str, beyond: str = U
         The two points; None where one falls on values that are not finite.
     unit : str
         Their unit, ``-`` for none.
+    n : int, [-]
+        Realisations behind them.
     beyond : str
         What to say without a number.
 
@@ -198,6 +281,11 @@ def range_text(low: float | None, high: float | None, unit: str, beyond: str = U
         For example ``nine times in ten between 0.31 m and 0.52 m`` or
         ``5 % point 1.20 years, 95 % point not reached``.
     """
+    if n < LEAST_FOR_TAILS:
+        return (
+            f"no range from the 5 % to the 95 % point, which {realisations_text(n)} cannot give: with fewer "
+            f"than {LEAST_FOR_TAILS} it would rest on one or two of them"
+        )
     first, last = (quantile_text(value, unit, beyond) for value in (low, high))
     if is_number(low) and is_number(high):
         return f"nine times in ten between {first} and {last}"
@@ -237,125 +325,6 @@ def event_text(limit: dict[str, Any]) -> str:
     return f"{quantity_text(limit)} is {exceeding_word(limit)} {threshold_text(limit)}{since}"
 
 
-def realisations_of(limit: dict[str, Any], results: dict[str, Any]) -> int:
-    """Give the number of realisations a limit's probability was counted from.
-
-    Parameters
-    ----------
-    limit : dict
-        One entry of ``limits`` of the results.
-    results : dict
-        The results it belongs to.
-
-    Returns
-    -------
-    n : int, [-]
-        Model runs of the limit, or the realisations of the whole assessment.
-    """
-    return int(limit.get("model_runs") or results["realisations"])
-
-
-def chance_text(limit: dict[str, Any], results: dict[str, Any]) -> str:
-    """Write the exceedance probability of a limit with its interval.
-
-    Parameters
-    ----------
-    limit : dict
-        One entry of ``limits`` of the results.
-    results : dict
-        The results it belongs to.
-
-    Returns
-    -------
-    text : str
-        For example ``12.4 % (11.9 to 12.9 %)`` or
-        ``none of 20,000 realisations (below 0.019 % with 95 % confidence)``.
-    """
-    probability, (low, high) = limit["probability"], limit["interval"]
-    interval = interval_text(probability, low, high)
-    if not 0 < probability < 1:
-        interval += f" with {plain_percent(confidence_of(limit, results))} confidence"
-    return f"{probability_text(probability, realisations_of(limit, results))} ({interval})"
-
-
-def confidence_of(limit: dict[str, Any], results: dict[str, Any]) -> float:
-    """Give the confidence of a limit's interval.
-
-    Parameters
-    ----------
-    limit : dict
-        One entry of ``limits`` of the results.
-    results : dict
-        The results it belongs to.
-
-    Returns
-    -------
-    confidence : float, [-]
-        For example 0.95.
-    """
-    return float(limit.get("confidence") or results.get("confidence") or 0.95)
-
-
-def verdict_label(limit: dict[str, Any]) -> str:
-    """Name the verdict on a limit.
-
-    Parameters
-    ----------
-    limit : dict
-        One entry of ``limits`` of the results.
-
-    Returns
-    -------
-    text : str
-        ``Within the target``, ``Beyond the target``, ``Not conclusive`` or ``No target set``.
-    """
-    return _VERDICTS.get(limit.get("verdict") or "", "No target set")
-
-
-def verdict_sentence(limit: dict[str, Any], results: dict[str, Any]) -> str:
-    """Give the verdict on a limit in one sentence for a reader who knows no statistics.
-
-    Parameters
-    ----------
-    limit : dict
-        One entry of ``limits`` of the results.
-    results : dict
-        The results it belongs to.
-
-    Returns
-    -------
-    text : str
-        For example ``Beyond the target of 5 %: the chance that the settlement at 30 years is more than
-        0.40 m is 12.4 %, about 1 in 8.``
-    """
-    return f"{_verdict_head(limit)}: {_chance_clause(limit, results)}{_doubt(limit)}."
-
-
-def overall_sentence(results: dict[str, Any]) -> str:
-    """Sum up the verdicts of all limits in one or two sentences.
-
-    Parameters
-    ----------
-    results : dict
-        The results of an assessment.
-
-    Returns
-    -------
-    text : str
-        For example ``Of 3 limits, 1 is beyond its target chance and 2 are within.``
-    """
-    verdicts = [limit.get("verdict") for limit in results["limits"]]
-    total = len(verdicts)
-    parts = []
-    for verdict, (one, many) in _SUMMARIES.items():
-        count = verdicts.count(verdict)
-        if count:
-            parts.append(f"{count} {one if count == 1 else many}")
-    if total == 1:
-        return f"The one limit {parts[0].removeprefix('1 ')}."
-    return f"Of the {total} limits, {list_text(parts)}."
-
-
 def _least_decimals(limit: dict[str, Any]) -> int:
     return 0 if limit.get("unit") == "years" else 2
 
@@ -367,33 +336,3 @@ def _when(time: dict[str, Any]) -> str:
         first, last = time["between"]
         return f"between {trimmed_text(first)} and {trimmed_text(last)} years"
     return ""
-
-
-def _verdict_head(limit: dict[str, Any]) -> str:
-    label, target = verdict_label(limit), limit.get("target_probability")
-    if target is None or limit.get("verdict") is None:
-        return label
-    return (
-        f"{label} against a target of {plain_percent(target)}"
-        if label == _VERDICTS["not conclusive"]
-        else (f"{label} of {plain_percent(target)}")
-    )
-
-
-def _chance_clause(limit: dict[str, Any], results: dict[str, Any]) -> str:
-    probability, (low, high) = limit["probability"], limit["interval"]
-    if 0 < probability < 1:
-        odds = odds_text(probability)
-        return (
-            f"the chance that {event_text(limit)} is {percent_text(probability)}{f', {odds}' if odds else ''}"
-        )
-    seen = probability_text(probability, realisations_of(limit, results))
-    bound = interval_text(probability, low, high)
-    confidence = plain_percent(confidence_of(limit, results))
-    return f"{event_text(limit)} in {seen}, so the chance is {bound} with {confidence} confidence"
-
-
-def _doubt(limit: dict[str, Any]) -> str:
-    if limit.get("verdict") != "not conclusive":
-        return ""
-    return "; the interval lies on both sides of the target, so more realisations are needed to decide"

@@ -2,13 +2,34 @@
 
 from typing import Any
 
-from probsoil.report import text
+from probsoil.report import chance, text
 from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
-from probsoil.report.record import draws_text, metres_text, record_view, share_text, stage_view
+from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
+from probsoil.report.section import section_view
 
 _MARKS = {"within target": "within", "beyond target": "beyond", "not conclusive": "open"}
 _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
+_SLIP = {
+    "key": "slip",
+    "heading": "Safety against slip, stage by stage",
+    "nav": "Slip",
+    "sentence": "Least factor of safety of the undrained slip circles examined at the end of each stage. "
+    "Below 1 the fill slips. The clay gains strength as it consolidates between stages.",
+    "mark": "slip",
+    "table": "Least factor of safety against slip [-]",
+    "load": "Fill height [m]",
+}
+_BEARING = {
+    "key": "bearing",
+    "heading": "Safety against bearing failure, stage by stage",
+    "nav": "Bearing",
+    "sentence": "Undrained net bearing capacity over net pressure at the end of each stage. Below 1 the "
+    "foundation fails. The clay gains strength as it consolidates between stages.",
+    "mark": "failure",
+    "table": "Factor of safety against bearing failure [-]",
+    "load": "Load",
+}
 _TABLE_TIMES = 18
 
 
@@ -30,12 +51,20 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
     return {
         "title": results["title"],
         "block": _title_block(results),
-        "overall": text.overall_sentence(results) if numbered else "The scenario sets no limits.",
+        "overall": chance.overall_sentence(results),
+        "confidence": text.plain_percent(results["confidence"]),
+        "costs": sum(limit.get("cost_if_exceeded") is not None for limit in results["limits"]) > 1,
+        "certain": all(chance.is_certain(limit) for limit in results["limits"]),
+        "one_sided": any(
+            not 0 < limit["probability"] < 1 and not chance.is_certain(limit) for limit in results["limits"]
+        ),
+        "total": text.realisations_text(results["realisations"]),
+        "tails": results["realisations"] >= text.LEAST_FOR_TAILS,
         "limits": [_limit(number, limit, results) for number, limit in numbered],
-        "settlement": _settlement(results.get("settlement") or {}),
+        "settlement": _settlement(results.get("settlement") or {}, results),
         "curves": [view for view in curves if view is not None],
         "drivers": [view for number, limit in numbered if (view := drivers_view(number, limit, results))],
-        "slip": [_slip(row) for row in results.get("slip") or []],
+        "stability": _stability(results),
     } | record_view(results)
 
 
@@ -57,12 +86,12 @@ def _limit(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[
         "number": number,
         "name": limit["name"],
         "mark": _MARKS.get(limit.get("verdict") or "", "none"),
-        "label": text.verdict_label(limit),
-        "sentence": text.verdict_sentence(limit, results),
+        "label": chance.verdict_label(limit),
+        "sentence": chance.verdict_sentence(limit, results),
         "evidence": _evidence(limit, results),
         "quantity": text.quantity_text(limit),
         "allowed": f"{limit['sense']} {text.threshold_text(limit)}",
-        "chance": text.probability_text(limit["probability"], text.realisations_of(limit, results)),
+        "chance": text.probability_text(limit["probability"], chance.realisations_of(limit, results)),
         "interval": text.interval_text(limit["probability"], *limit["interval"]),
         "target": "none" if target is None else text.plain_percent(target),
         "reliability": _reliability(limit),
@@ -87,107 +116,106 @@ def _reliability(limit: dict[str, Any]) -> str:
 
 
 def _evidence(limit: dict[str, Any], results: dict[str, Any]) -> list[tuple[str, str]]:
-    n = text.count_text(text.realisations_of(limit, results))
-    confidence = text.plain_percent(text.confidence_of(limit, results))
     rows = [
-        (
-            "Counted",
-            f"{text.count_text(limit['exceeding'])} of {n} realisations exceed the limit; {confidence} "
-            f"interval of the chance {text.interval_text(limit['probability'], *limit['interval'])}",
-        ),
-        ("Reliability index", _reliability(limit)),
-        ("The quantity itself", _spread(limit)),
-        ("Cost", _cost(limit, results.get("currency") or "")),
+        ("Counted", chance.counted_text(limit, results)),
+        ("The quantity itself", _spread(limit, results)),
+        ("Creep in it", _creep(limit)),
+        ("Cost", chance.cost_text(limit, results)),
         ("Not reached", _never(limit)),
         ("Not converged", _not_converged(limit)),
-        ("One-sided bound", _unseen(limit, confidence)),
-        ("Estimated by", limit.get("method") or ""),
     ]
     return [(label, value) for label, value in rows if value and value != text.MISSING]
 
 
-def _spread(limit: dict[str, Any]) -> str:
-    quantiles, unit = (limit.get("summary") or {}).get("quantiles") or {}, limit.get("unit", "-")
-    if not quantiles:
+def _creep(limit: dict[str, Any]) -> str:
+    """Say what secondary compression adds to a settlement, on average."""
+    mean, share = limit.get("secondary_mean"), limit.get("secondary_share")
+    if mean is None:
         return ""
-    low, high = (quantiles.get(level) for level in ("0.05", "0.95"))
+    part = "" if share is None else f", {text.plain_percent(share)} of the mean settlement"
+    return f"{text.value_text(mean, limit['unit'])} on average{part}"
+
+
+def _spread(limit: dict[str, Any], results: dict[str, Any]) -> str:
+    summary, unit, n = limit["summary"], limit["unit"], chance.realisations_of(limit, results)
+    quantiles = summary["quantiles"]
+    if chance.is_certain(limit):
+        return f"{_median(limit)} in every realisation"
+    low, high = (quantiles[level] for level in ("0.05", "0.95"))
     beyond = text.uncomputed_text(limit["quantity"])
-    return f"median {_median(limit)}; {text.range_text(low, high, unit, beyond)}"
+    spread = text.range_text(low, high, unit, n, beyond)
+    return f"median of {text.realisations_text(n)} {_median(limit)}{_median_margin(limit, results)}; {spread}"
 
 
-def _cost(limit: dict[str, Any], currency: str) -> str:
-    if limit.get("cost_if_exceeded") is None:
+def _median_margin(limit: dict[str, Any], results: dict[str, Any]) -> str:
+    ends = limit["summary"].get("median_interval")
+    if not ends or not any(map(text.is_number, ends)):
         return ""
-    cost = text.money_text(limit["cost_if_exceeded"], currency)
-    expected = text.money_text(limit.get("expected_cost"), currency)
-    return f"{cost} if exceeded; times the chance, {expected}"
+    beyond = text.uncomputed_text(limit["quantity"])
+    low, high = (text.quantile_text(end, limit["unit"], beyond) for end in ends)
+    return f" ({low} to {high} with {text.plain_percent(chance.confidence_of(limit, results))} confidence)"
 
 
 def _never(limit: dict[str, Any]) -> str:
     count = limit.get("never_reached") or 0
     if not count:
         return ""
-    return f"in {text.count_text(count)} realisations not within the time computed; counted as exceeding"
+    return f"in {text.realisations_text(count)} not within the time computed; counted as exceeding"
 
 
 def _not_converged(limit: dict[str, Any]) -> str:
     count = limit.get("not_converged") or 0
-    return f"{text.count_text(count)} realisations, counted as exceeding" if count else ""
+    return f"{text.realisations_text(count)}, counted as exceeding" if count else ""
 
 
-def _unseen(limit: dict[str, Any], confidence: str) -> str:
-    bound = limit.get("unseen_bound")
-    if bound is None:
-        return ""
-    return (
-        f"none was seen, so with {confidence} confidence the chance is at most {text.upper_bound_text(bound)}"
-    )
-
-
-def _settlement(data: dict[str, Any]) -> dict[str, Any] | None:
-    times = data.get("times") or []
+def _settlement(data: dict[str, Any], results: dict[str, Any]) -> dict[str, Any] | None:
+    times, n = data.get("times") or [], data.get("realisations") or results["realisations"]
     if not times:
         return None
     ends = [stage["end"] for stage in data.get("stages") or []]
     every = max(1, len(times) // _TABLE_TIMES)
     kept = {*range(0, len(times), every), len(times) - 1}
     kept |= {min(range(len(times)), key=lambda i: abs(times[i] - end)) for end in ends}
-    columns = [data["quantiles"][level] for level in _LEVELS]
-    rows = [
-        [
-            text.trimmed_text(times[i]),
-            *(_metres(column[i]) for column in columns),
-            _metres(data["mean"][i]),
-        ]
-        for i in sorted(kept)
-    ]
-    final = data.get("final") or {}
-    if final.get("quantiles"):
-        rows.append(
-            [
-                "final",
-                *(_metres(final["quantiles"].get(level)) for level in _LEVELS),
-                _metres(final.get("mean")),
-            ]
-        )
+    rows = [[text.trimmed_text(times[i]), *_settlement_cells(_at_time(data, i), n)] for i in sorted(kept)]
+    every_one, final = results["realisations"], data.get("final") or {}
+    if final.get("quantiles") and every_one != n:
+        label = f"{text.trimmed_text(times[-1])}, all {text.realisations_text(every_one)}"
+        rows.append([label, *_settlement_cells(final, every_one)])
     return {
         "station": data.get("station", "centreline"),
         "rows": rows,
+        "total": text.realisations_text(n),
+        "tails": n >= text.LEAST_FOR_TAILS,
+        "diamonds": any(_is_diamond(limit) for limit in results["limits"]),
         "stages": [
             stage_view(number, stage) for number, stage in enumerate(data.get("stages") or [], start=1)
         ],
-        "sentence": _settlement_sentence(data, ends),
+        "sentence": _settlement_sentence(data, ends, n),
     }
 
 
-def _metres(value: float | None) -> str:
-    return text.UNCOMPUTED if value is None else metres_text(value)
+def _is_diamond(limit: dict[str, Any]) -> bool:
+    """Whether the figure of settlement marks a limit."""
+    return limit["quantity"] == "settlement" and text.is_number((limit.get("time") or {}).get("at"))
 
 
-def _settlement_sentence(data: dict[str, Any], ends: list[float]) -> str:
+def _at_time(data: dict[str, Any], place: int) -> dict[str, Any]:
+    quantiles = {level: values[place] for level, values in data["quantiles"].items()}
+    return {"quantiles": quantiles, "mean": data["mean"][place]}
+
+
+def _settlement_cells(row: dict[str, Any], n: int) -> list[str]:
+    cells = [text.at_level(row["quantiles"], level, "m", n).removesuffix(" m") for level in _LEVELS]
+    return [*cells, text.UNCOMPUTED if row.get("mean") is None else metres_text(row["mean"])]
+
+
+def _settlement_sentence(data: dict[str, Any], ends: list[float], n: int) -> str:
     def at(place: int) -> str:
         median, low, high = (data["quantiles"][level][place] for level in ("0.5", "0.05", "0.95"))
-        return f"{text.quantile_text(median, 'm')} ({text.range_text(low, high, 'm')})"
+        spread = f" ({text.range_text(low, high, 'm', n)})"
+        if n < text.LEAST_FOR_TAILS or (text.is_number(low) and low == high):
+            spread = ""
+        return f"{text.quantile_text(median, 'm')}{spread}"
 
     times = data["times"]
     last = f"after {text.trimmed_text(times[-1])} years the median settlement is {at(-1)}"
@@ -197,13 +225,34 @@ def _settlement_sentence(data: dict[str, Any], ends: list[float]) -> str:
     return f"When the last stage ends the median settlement is {at(built)}; {last}."
 
 
-def _slip(row: dict[str, Any]) -> list[str]:
+def _stability(results: dict[str, Any]) -> list[dict[str, Any]]:
+    """Arrange what there is of safety against slip and against bearing failure."""
+    n = results["realisations"]
+    return [
+        words
+        | {
+            "rows": [_factor(row, n) for row in results[words["key"]]],
+            "section": section_view(results) if words is _SLIP else None,
+        }
+        for words in (_SLIP, _BEARING)
+        if results.get(words["key"])
+    ]
+
+
+def _load_text(row: dict[str, Any]) -> str:
+    """Write the load of a stage, as far as there is any of each kind."""
+    height, pressure = row.get("fill_height"), row.get("pressure")
+    parts = [f"{text.number_text(height)} m of fill"] if height or not pressure else []
+    return text.list_text(parts + ([f"{text.number_text(pressure)} kPa"] if pressure else []))
+
+
+def _factor(row: dict[str, Any], n: int) -> list[str]:
     quantiles = row["quantiles"]
     return [
         row["stage"],
         text.trimmed_text(row["time"]),
-        text.number_text(row.get("fill_height")),
-        *(text.quantile_text(quantiles.get(level), "-") for level in _LEVELS),
+        _load_text(row) if "pressure" in row else text.number_text(row.get("fill_height")),
+        *(text.at_level(quantiles, level, "-", n) for level in _LEVELS),
         text.quantile_text(row.get("mean"), "-"),
-        share_text(row.get("probability_below_one")),
+        *slip_share(row),
     ]

@@ -108,7 +108,7 @@ def read_distribution(table: Mapping[str, object], kind: Kind, *, spatial: bool)
                 slips.append(outcome)
             else:
                 numbers[key] = outcome
-    slips += _form_slips(name, table, slips) + _value_slips(numbers)
+    slips += _form_slips(name, table, slips) + _value_slips(name, numbers)
     slips += _spatial_slips(table) if extra else []
     if slips:
         return slips
@@ -157,7 +157,7 @@ def _unknown_key(key: str, name: str, known: tuple[str, ...], table: Mapping[str
     if any(key in own_keys(other) for other in FORMS):
         message = f'"{key}" does not belong to a {name} distribution'
         return Slip(path=(key,), message=message, allowed=form_text(name), at_key=True)
-    return unknown_key(key, [choice for choice in ("dist", *known) if choice not in table])
+    return unknown_key(key, ("dist", *known), table)
 
 
 def _read_number(value: object, key: str, kind: Kind) -> float | Slip:
@@ -202,7 +202,7 @@ def _explained(name: str, given: set[str], found: list[Slip]) -> bool:
     return bool(meant) and any(given | meant == set(form) for form in FORMS[name])
 
 
-def _value_slips(numbers: Mapping[str, float]) -> list[Slip]:
+def _value_slips(name: str, numbers: Mapping[str, float]) -> list[Slip]:
     slips = [
         Slip(path=(key,), message=f"{key} is {numbers[key]:g}", allowed="above 0")
         for key in _MUST_BE_POSITIVE
@@ -214,7 +214,11 @@ def _value_slips(numbers: Mapping[str, float]) -> list[Slip]:
     if numbers.get("log_sd", 0.0) > GREATEST_LOG_SD:
         message = f"log_sd is {numbers['log_sd']:g}"
         slips.append(Slip(path=("log_sd",), message=message, allowed=f"above 0, at most {GREATEST_LOG_SD:g}"))
-    if "cov" in numbers and numbers.get("mean", 1.0) <= 0.0:
+    if name == "lognormal" and numbers.get("mean", 1.0) <= 0.0:
+        message = f"mean is {numbers['mean']:g}, and a lognormal variable is never negative"
+        hint = "normal, uniform and triangular may be negative"
+        slips.append(Slip(path=("mean",), message=message, allowed="above 0", hint=hint))
+    elif "cov" in numbers and numbers.get("mean", 1.0) <= 0.0:
         message = "a coefficient of variation needs a mean above 0"
         slips.append(
             Slip(path=("mean",), message=message, allowed="above 0 with cov", hint="give sd instead of cov")
@@ -281,8 +285,6 @@ def _lognormal(numbers: Mapping[str, float]) -> Distribution | list[Slip]:
     if "median" in numbers:
         median, log_sd = numbers["median"], numbers["log_sd"]
     else:
-        if numbers["mean"] <= 0.0:
-            return [Slip(path=("mean",), message="a lognormal mean must be above 0", allowed="above 0")]
         log_sd = math.sqrt(math.log1p((_spread(numbers) / numbers["mean"]) ** 2))
         if log_sd > GREATEST_LOG_SD:
             return [

@@ -104,3 +104,24 @@ class Drains(Table):
             meaning="flow through one drain at a hydraulic gradient of one; no resistance if left out",
         ),
     ] = None
+
+    def describe(self) -> str:
+        """Return the drains in words.
+
+        Returns
+        -------
+        text : str
+            One phrase.
+        """
+        smear = ""
+        if self.smear_ratio > 1.0:
+            smear = (
+                f", smear zone {self.smear_ratio:g} diameters wide, kh/ks {self.smear_kh_ks.describe('-')}"
+            )
+        capacity = self.discharge_capacity
+        flow = "" if capacity is None else f", discharge capacity {capacity:g} m3/year"
+        return (
+            f"vertical drains in a {self.pattern} grid {self.spacing:g} m apart to {self.bottom:g} m depth, "
+            f"equivalent diameter {self.equivalent_diameter:g} m{smear}{flow}, at work from "
+            f"{self.installed:.3g} years"
+        )

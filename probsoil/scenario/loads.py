@@ -19,7 +19,7 @@ Submergence = Annotated[
 
 
 class EmbankmentLoad(Table):
-    """A long embankment, a trapezoid in section, symmetrical about its centre line.
+    """A long embankment, a trapezoid in section, symmetrical about its centre line, with or without berms.
 
     Attributes
     ----------
@@ -35,6 +35,12 @@ class EmbankmentLoad(Table):
         Friction angle of the fill.
     fill_cohesion : Distribution, [kPa]
         Cohesion of the fill.
+    berm_width, berm_height : float or None, [m]
+        Width of the flat top of the berm on each side, outside the slope, and its height; both or none.
+    traffic : Distribution, [kPa]
+        Pressure on the top that drives a slip.
+    traffic_from : float or None, [year]
+        Time from which it counts; None from the end of the stage that first reaches the greatest height.
     submergence : bool
         Whether what sinks below the water table loses the weight of water.
     """
@@ -74,6 +80,52 @@ class EmbankmentLoad(Table):
             kind="pressure", low=0.0, high=500.0, source="common practice", meaning="cohesion of the fill"
         ),
     ] = Constant(value=0.0)
+    berm_width: Annotated[
+        float | None,
+        Number(
+            kind="length",
+            low=0.0,
+            high=1000.0,
+            open_low=True,
+            source="common practice",
+            meaning="width of the flat top of a berm on each side, of the same fill and with the same side "
+            "slope; goes with berm_height",
+        ),
+    ] = None
+    berm_height: Annotated[
+        float | None,
+        Number(
+            kind="length",
+            low=0.0,
+            high=100.0,
+            open_low=True,
+            source="common practice",
+            meaning="height of the berms, below the greatest height of fill; they rise with the fill until "
+            "they reach it, and sink with the fill where it is taken below it",
+        ),
+    ] = None
+    traffic: Annotated[
+        Distribution,
+        Uncertain(
+            kind="pressure",
+            low=0.0,
+            high=200.0,
+            source="common practice",
+            meaning="pressure of traffic or plant on the top; drives a slip, not the settlement",
+        ),
+    ] = Constant(value=0.0)
+    traffic_from: Annotated[
+        float | None,
+        Number(
+            kind="time",
+            low=0.0,
+            high=1000.0,
+            open_low=True,
+            source="by definition",
+            meaning="time from which traffic counts; if left out, from the end of the stage that first "
+            "reaches the greatest height",
+        ),
+    ] = None
     submergence: Submergence = True
 
 

@@ -96,7 +96,10 @@ def _table(model: type[BaseModel], raw: dict[str, Any], path: Path, mended: Mend
             if name is not None:
                 mended.written[(*path, name)] = key
         if name is not None:
-            copy[name] = _value(model, name, raw[key], (*path, name), mended)
+            # One table under a mistyped header, such as [layer], stands for a list of one.
+            alone = name != key and model is Scenario and name in LISTS and isinstance(raw[key], dict)
+            value = [raw[key]] if alone else raw[key]
+            copy[name] = _value(model, name, value, (*path, name), mended)
     return copy
 
 
@@ -138,10 +141,11 @@ def _with_choice_mended(key: str, raw: dict[str, Any], path: Path, mended: Mende
 def _unknown(key: str, model: type[BaseModel], raw: dict[str, Any], path: Path) -> Slip:
     whole = (*path, key)
     top = str(path[0]) if path else ""
-    free = [known for known in keys_of(model) if known not in raw]
     if key in LATER_KEYS.get(top, ()):
         return Slip(path=whole, message=f'"{key}" is {NOT_YET}', hint="take it out of the file", at_key=True)
-    slip = unknown_key(key, free or list(keys_of(model))).below(path)
+    slip = unknown_key(key, list(keys_of(model)), raw).below(path)
+    if model is Scenario and f"{key}s" in LISTS:
+        return replace(slip, hint=f"did you mean [[{key}s]]?")
     if top in CHOICES and model in CHOICES[top][1].values():
         tag, models = CHOICES[top]
         if any(key in keys_of(other) for other in models.values()):

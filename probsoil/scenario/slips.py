@@ -1,6 +1,6 @@
 """One mistake as found by a check, before its place in the file is known."""
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass, replace
 from difflib import get_close_matches
 from typing import NoReturn
@@ -95,7 +95,7 @@ def did_you_mean(given: str, choices: Sequence[str]) -> str | None:
     return f'did you mean "{choice}"?' if choice else None
 
 
-def unknown_key(key: str, choices: Sequence[str]) -> Slip:
+def unknown_key(key: str, choices: Sequence[str], given: Collection[str] = ()) -> Slip:
     """Return the slip of a key that its table does not know.
 
     Parameters
@@ -104,19 +104,22 @@ def unknown_key(key: str, choices: Sequence[str]) -> Slip:
         Key as written.
     choices : sequence of str
         Keys that may stand there.
+    given : collection of str
+        Those of them that are there already; they are marked, and not taken to be what was meant.
 
     Returns
     -------
     slip : Slip
         With the nearest key as a hint, where one is near.
     """
+    free = [choice for choice in choices if choice not in given]
     return Slip(
         path=(key,),
         message=f'unknown key "{key}"',
-        allowed=", ".join(choices),
-        hint=did_you_mean(key, choices),
+        allowed=", ".join(f"{choice} (given)" if choice in given else choice for choice in choices),
+        hint=did_you_mean(key, free),
         at_key=True,
-        meant=nearest(key, choices),
+        meant=nearest(key, free),
     )
 
 

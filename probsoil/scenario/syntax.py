@@ -1,10 +1,13 @@
 """Mistakes of TOML itself, told in plain words."""
 
 import re
+from collections.abc import Sequence
 
 from probsoil.errors import Fault
+from probsoil.scenario.structure import LISTS
 
 _PLACE = re.compile(r"\s*\(at (?:line (\d+), column (\d+)|end of document)\)\s*$")
+_HEADER = re.compile(r"^[ \t]*\[{1,2}[ \t]*\"?([A-Za-z0-9_-]+)\"?[ \t]*\]{1,2}")
 _ONE_LINE = "a table in braces must stand on one line; longer ones go under a header of their own"
 # Beginnings of the parser's messages, with what they mean to someone who does not know TOML.
 _MEANINGS: tuple[tuple[str, str, str | None], ...] = (
@@ -68,6 +71,9 @@ def syntax_fault(message: str, text: str, file: str) -> Fault:
     else:
         line, column = len(lines), len(lines[-1]) + 1
     plain = _PLACE.sub("", message)
+    single = _single_bracket(lines, line, plain)
+    if single is not None:
+        return _bracket_fault(*single, lines, file)
     excerpt = lines[line - 1] if 0 < line <= len(lines) else None
     said, hint = next(
         ((said, hint) for start, said, hint in _MEANINGS if plain.startswith(start)), (plain, None)
@@ -81,6 +87,35 @@ def syntax_fault(message: str, text: str, file: str) -> Fault:
         hint=_special_hint(excerpt, plain) or hint,
         excerpt=excerpt,
         span=(column, 1),
+    )
+
+
+def _single_bracket(lines: Sequence[str], line: int, plain: str) -> tuple[int, str] | None:
+    """Return line and name of a header in single brackets that ought to have double ones."""
+    header = _HEADER.match(lines[line - 1]) if 0 < line <= len(lines) else None
+    if header is None or not plain.startswith(("Cannot overwrite", "Cannot declare")):
+        return None
+    name = header[1]
+    if name not in LISTS and f"{name}s" not in LISTS:
+        return None
+    alone = re.compile(rf'^[ \t]*\[[ \t]*"?{re.escape(name)}"?[ \t]*\](?!\])')
+    found = next((number for number, text in enumerate(lines, start=1) if alone.match(text)), None)
+    return None if found is None else (found, name)
+
+
+def _bracket_fault(line: int, name: str, lines: Sequence[str], file: str) -> Fault:
+    excerpt = lines[line - 1]
+    column = excerpt.index("[") + 1
+    right = name if name in LISTS else f"{name}s"
+    return Fault(
+        file=file,
+        line=line,
+        column=column,
+        message=f"not valid TOML: [{name}] opens one table, and there are more of them in this file",
+        allowed="what follows can be checked only once this is mended",
+        hint=f"double brackets for each: [[{right}]]",
+        excerpt=excerpt,
+        span=(column, excerpt.index("]") + 2 - column),
     )
 
 

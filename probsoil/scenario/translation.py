@@ -15,6 +15,14 @@ _EXAMPLES = {
     "permeability": "permeability = { cv = 1.5 }",
     "strength": "strength = { S = 0.25, m = 0.8 }",
 }
+# How each section of the file that must be there begins.
+SECTIONS = {
+    "site": "[site]\nwater_table = 1.0  # m below ground level; goes with base",
+    "layers": '[[layers]]\nname = "soft clay"  # such a block for each layer, from ground level down',
+    "load": '[load]\nshape = "embankment"  # goes with crest_width, side_slope and the fill',
+    "stages": '[[stages]]\nname = "first lift"  # such a block for each stage, with height, start, end',
+    "limits": '[[limits]]\nname = "residual settlement"  # such a block for each limit',
+}
 _NAME_RULE = "text of at most 60 characters, without a dot and without a blank at either end"
 _LABEL_RULE = "text of at most 80 characters, without a blank at either end"
 
@@ -61,10 +69,12 @@ def _slip(detail: ErrorDetails, data: dict[str, Any]) -> Slip:
         return slip if context["absolute"] else slip.below(path[: len(path) - len(slip.path)])
     if detail["type"] == "missing":
         key = str(path[-1])
+        example = SECTIONS.get(key) if model is Scenario else None
         return Slip(
             path=path[:-1],
-            message=f'key "{key}" is missing',
+            message=f'{"key" if example is None else "section"} "{key}" is missing',
             allowed=_description(model, key),
+            hint=None if example is None else f"such as\n{example}",
             wanting=(key,),
         )
     if detail["type"].startswith("union_tag"):

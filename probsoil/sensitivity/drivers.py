@@ -248,19 +248,32 @@ def _note(met: int, exceeding: int, part: Shares) -> str | None:
         which = "no realisation exceeds" if exceeding == 0 else "every realisation exceeds"
         remarks.append(f"{which} the limit, so nothing can be said of what decides it")
     elif fewer < LEAST_CASES:
-        which = "exceed" if exceeding < met else "meet"
+        which = ("exceed" if exceeding < met else "meet") + ("s" if fewer == 1 else "")
         enough = float(f"{GOOD_CASES * n / fewer:.2g}")
         remarks.append(
             f"only {fewer} of {n:,} realisations {which} the limit, too few to rank parameters "
             f"(at least {LEAST_CASES} are needed); about {enough:,.0f} realisations would do"
         )
     if np.isnan(part.r_squared):
-        remarks.append("there are no shares: the quantity does not vary or has too few finite values")
+        remarks.append(_no_shares(part))
     elif part.r_squared < GOOD_FIT:
         remarks.append(
-            f"the shares are of the part of the quantity that is linear in the latent normals, "
-            f"{100.0 * part.r_squared:.0f} % of its variance"
+            "the shares are of the part of the quantity that follows the parameters in a straight line, each "
+            f"put on a normal scale first, {100.0 * part.r_squared:.0f} % of its variance"
         )
     if part.fitted < n:
-        remarks.append(f"{n - part.fitted:,} realisations without a finite value are left out of the shares")
+        left = n - part.fitted
+        remarks.append(
+            f"{left:,} realisation{'' if left == 1 else 's'} without a finite value "
+            f"{'is' if left == 1 else 'are'} left out of the shares"
+        )
     return "; ".join(remarks) or None
+
+
+def _no_shares(part: Shares) -> str:
+    if not part.enough:
+        return (
+            f"there are no shares: {part.fitted} realisations with a finite value are too few for "
+            f"{len(part.share)} parameters, which take at least {part.needed}"
+        )
+    return "there are no shares: the quantity does not vary"

@@ -6,7 +6,7 @@ import numpy as np
 from scipy.special import stdtrit
 
 from probsoil._typing import FloatArray
-from probsoil.sensitivity.accumulate import DriverSums
+from probsoil.sensitivity.accumulate import GROUPS, DriverSums
 from probsoil.sensitivity.shapley import linear_shapley
 
 _CONSTANT = 1e-13  # variance over mean square below which a quantity does not vary
@@ -24,6 +24,10 @@ class Shares:
         Part of the quantity's variance that the linear fit explains; not a number where there is none.
     fitted : int, [-]
         Realisations with a finite quantity, which the fit is made from.
+    needed : int, [-]
+        Least number of them that allows a fit and its limits, dealt out to the groups evenly.
+    enough : bool
+        Whether they allow a fit with each group left out in turn.
     """
 
     share: FloatArray
@@ -31,6 +35,8 @@ class Shares:
     high: FloatArray
     r_squared: float
     fitted: int
+    needed: int
+    enough: bool
 
 
 def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) -> Shares:
@@ -64,8 +70,18 @@ def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) 
     total = sums.products.sum(axis=0)
     fitted = int(sums.fitted.sum())
     spare = fitted - int(sums.fitted.max(initial=0)) - dimension - 1
-    if dimension == 0 or len(used) < 2 or spare < 1 or not _varies(total):
-        return Shares(share=unknown, low=unknown, high=unknown, r_squared=np.nan, fitted=fitted)
+    needed = dimension + 2 + -(-(dimension + 2) // (GROUPS - 1))
+    enough = len(used) >= 2 and spare >= 1
+    if dimension == 0 or not enough or not _varies(total):
+        return Shares(
+            share=unknown,
+            low=unknown,
+            high=unknown,
+            r_squared=np.nan,
+            fitted=fitted,
+            needed=needed,
+            enough=enough,
+        )
     fits = np.stack([_slopes(total), *(_slopes(total - sums.products[g]) for g in used)], axis=1)
     effects, error = linear_shapley(fits, correlation)
     parts = effects / effects.sum(axis=0)
@@ -80,6 +96,8 @@ def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) 
         high=np.minimum(share + reach, 1.0),
         r_squared=_r_squared(total),
         fitted=fitted,
+        needed=needed,
+        enough=enough,
     )
 
 

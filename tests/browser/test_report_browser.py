@@ -33,7 +33,7 @@ def resize(browser, width, height=900):
 
 
 def expected(step):
-    return [step.text, step.chance, step.interval, step.count]
+    return [step.text, step.chance, step.margin, step.count]
 
 
 def part(browser, number, selector):

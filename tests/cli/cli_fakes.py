@@ -8,11 +8,14 @@ from typing import Any
 
 import pandas as pd
 
+from probsoil.assessment import claimed_folder
+
 
 def results() -> dict[str, Any]:
     """Return the parts of a result that the terminal shows; names hold what could pass for markup."""
     return {
         "format": 1,
+        "kind": "assess",
         "title": "Trial [bold]embankment[/bold]",
         "seed": 7,
         "realisations": 2000,
@@ -62,7 +65,21 @@ def results() -> dict[str, Any]:
             {"limit": "residual [m]", "ranked_by": "spread", "note": None},
             {"limit": "slip", "ranked_by": "spread", "note": "nothing exceeded, so nothing can be ranked"},
         ],
-        "warnings": [{"code": "floor", "message": "the floor acted in 3 % of realisations", "share": 0.03}],
+        "warnings": [
+            {
+                "code": "kappa_lowered",
+                "message": "realisations in which kappa was lowered",
+                "share": 0.03,
+                "share_of": "all realisations",
+            },
+            {
+                "code": "grid",
+                "message": "settlement on a finer grid differs",
+                "share": 0.008,
+                "share_of": "the final settlement",
+            },
+            {"code": "remark", "message": "look at this again", "share": None, "share_of": None},
+        ],
     }
 
 
@@ -71,6 +88,10 @@ def driver(name: str, share: float, rank: int | None) -> dict[str, Any]:
         "limit": "residual [m]",
         "parameter": f"soft clay.{name}",
         "rank": rank,
+        "spread_elasticity": 0.1 if rank is None else 1.0 / rank,
+        "spread_interval": [0.05, 0.15] if rank is None else [0.8 / rank, 1.2 / rank],
+        "mean_elasticity": 0.3,
+        "mean_interval": [0.2, 0.4],
         "spread_clear": rank is not None,
         "mean_clear": False,
         "share": share,
@@ -143,6 +164,7 @@ class Calculation(types.ModuleType):
         super().__init__("probsoil.assessment")
         self.calls: list[dict[str, Any]] = []
         self.ending: BaseException | Callable[[], None] | None = None
+        self.claimed_folder = claimed_folder  # what may be written where is no calculation
 
     def assess(self, scenario: Any, *, out: Path, progress: Any, **options: Any) -> Any:
         self.calls.append({"title": scenario.title, "out": out, "progress": progress, **options})

@@ -1,5 +1,6 @@
 """A folder with a scenario, and a calculation that answers at once."""
 
+import json
 import sys
 from pathlib import Path
 
@@ -34,6 +35,7 @@ def calculation(monkeypatch: pytest.MonkeyPatch) -> cli_fakes.Calculation:
         (folder / "report.html").write_text("<p>report</p>")
 
     monkeypatch.setitem(sys.modules, "probsoil.assessment", fake)
+    monkeypatch.setattr("probsoil.report.page.read_results", lambda path: json.loads(path.read_text()))
     monkeypatch.setattr(probsoil.report, "write_report", write)
     monkeypatch.setattr(
         probsoil.report,

@@ -5,7 +5,6 @@ import logging
 import re
 import warnings
 from pathlib import Path
-from typing import Any
 
 import cli_fakes
 import pytest
@@ -18,6 +17,7 @@ from probsoil.errors import (
     ProbsoilError,
     ResultsError,
     StoppedEarly,
+    UnfitFolderError,
 )
 
 
@@ -29,20 +29,49 @@ def test_answer_says_chances_verdicts_drivers_report_and_caution(
     words = re.sub(r"\s+", " ", out)
     assert "Trial [bold]embankment[/bold]: 2,000 realisations (monte carlo), seed 7" in words
     assert re.search(r"residual \[m\] .* 12\.4 % \(11\.0 to 13\.9 %\) .* Beyond the target", words)
-    assert re.search(r"slip .* none of 2,000 realisations \(below 0\.19 % .* No target set", words)
-    assert re.search(r"soft clay\.b +50 % \(46 to 54 %\) +raises the chance", out)
+    assert re.search(r"slip .* none of 2,000 realisations \(below 0\.15 % .* No target set", words)
+    assert re.search(
+        r"soft clay\.b +spread 0\.33 \(0\.27 to 0\.40\) +50 % \(46 to 54\) +raises the chance", out
+    )
+    assert "ranks go by it" in words
     assert out.index("soft clay.d") < out.index("soft clay.a") < out.index("soft clay.b")
     assert "soft clay.c" not in out  # not ranked
     basis = "ranked by how much more spread in a parameter raises the chance of exceeding the limit"
     assert f"Drivers of residual [m]: {basis}" in words
     assert "Drivers of slip: nothing exceeded, so nothing can be ranked" in out
-    assert "Warning: the floor acted in 3 % of realisations" in out
+    assert "Warning: realisations in which kappa was lowered (3.0 % of all realisations)\n" in out
+    assert "finer grid differs (relative error, 0.80 % of the final settlement)\n" in out
+    assert "Warning: look at this again\n" in out
     assert f"Report: {Path('results', 'site', 'report.html')}" in out
     assert "Local codes and a licensed engineer decide" in words
     assert err == ""
     assert calculation.calls[0]["out"] == Path("results/site")
     assert (desk / "results" / "site" / "report.html").exists()
     assert (desk / "results" / "site" / "limits.csv").exists()
+
+
+def test_drivers_without_a_rank_fill_up_to_three_and_limits_of_which_nothing_is_known_are_left_out(
+    desk: Path,  # noqa: ARG001
+    calculation: cli_fakes.Calculation,  # noqa: ARG001
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    results = cli_fakes.results()
+    for driver in results["drivers"][:2]:
+        driver["rank"] = None  # a and b; the one of the larger share comes first
+    nothing = results["drivers"][0] | {
+        "limit": "slip",
+        "spread_elasticity": None,
+        "spread_interval": [None, None],
+    }
+    results["drivers"].append(nothing)
+    monkeypatch.setattr(cli_fakes, "results", lambda: results)
+    assert main(["assess", "site.toml"]) == 0
+    table = capsys.readouterr().out.split("Foremost drivers")[1].split("Elasticity:")[0]
+    rows = [line.split() for line in table.splitlines() if "soft clay" in line]
+    assert [" ".join(row[2:6]).split(" soft")[0] for row in rows] == ["1", "not ranked", "not ranked"]
+    assert table.index("soft clay.d") < table.index("soft clay.b") < table.index("soft clay.a")
+    assert not re.search(r"^ *slip ", table, re.MULTILINE)
 
 
 def test_answer_says_when_the_mean_ranks_and_when_nothing_does(
@@ -77,10 +106,12 @@ def test_options_reach_the_calculation_and_absent_ones_leave_the_scenario_alone(
     given, absent = calculation.calls
     assert given["out"] == Path("here")
     assert (given["realisations"], given["draws"], given["seed"]) == (500, "latin hypercube", 0)
-    assert (given["workers"], given["resume"]) == (3, True)
+    assert (given["workers"], given["resume"], given["force"]) == (3, True, False)
     assert given["command"] == f"probsoil {line}"
     assert (absent["realisations"], absent["draws"], absent["seed"], absent["workers"]) == (None,) * 4
     assert absent["resume"] is False
+    assert main(["assess", "site.toml", "--force"]) == 0
+    assert calculation.calls[-1]["force"] is True
 
 
 def test_json_is_the_result_and_nothing_else(
@@ -152,7 +183,9 @@ def test_second_run_adds_to_the_log_and_leaves_no_handler_behind(
     ("ending", "code"),
     [
         (StoppedEarly("stopped early after 3 of 20 chunks; 3 are kept in 'x'"), 3),
-        (ResultsError("the chunks are of another campaign"), 1),
+        (StoppedEarly("stopped early; nothing is kept", kept=False), 1),
+        (ResultsError("folder cannot be written"), 1),
+        (UnfitFolderError("the chunks are of another run"), 2),
         (ConvergenceError("no answer", best=1.0, error=0.5), 1),
         (ProbsoilError("chunk 4 of 20 failed: ValueError: odd"), 1),
         (ParameterError("realisations must be a power of two"), 2),
@@ -190,16 +223,6 @@ def test_unexpected_error_is_short_and_its_traceback_is_in_the_log(
     assert log.rstrip().endswith("ZeroDivisionError: clay")
 
 
-def test_interrupt_outside_the_realisations_fails_without_traceback(
-    desk: Path,  # noqa: ARG001
-    calculation: cli_fakes.Calculation,
-    capsys: pytest.CaptureFixture[str],
-) -> None:
-    calculation.ending = KeyboardInterrupt()
-    assert main(["assess", "site.toml"]) == 1
-    assert "Traceback" not in capsys.readouterr().err
-
-
 def test_mistakes_in_the_scenario_are_all_told_and_nothing_is_written(
     desk: Path, calculation: cli_fakes.Calculation, capsys: pytest.CaptureFixture[str]
 ) -> None:
@@ -215,28 +238,22 @@ def test_mistakes_in_the_scenario_are_all_told_and_nothing_is_written(
     assert calculation.calls == []
 
 
-class Refused:
-    """A calculation that is refused before it makes its folder."""
-
-    def __init__(self, ending: Exception) -> None:
-        self.ending = ending
-
-    def assess(self, *_: Any, **__: Any) -> None:
-        raise self.ending
-
-
 @pytest.mark.parametrize("ending", [DependenceError("cannot hold together"), TypeError("odd")])
-def test_run_refused_before_its_folder_is_made_leaves_nothing_behind(
+def test_run_that_ends_before_it_has_a_folder_leaves_nothing_behind(
     desk: Path,
     calculation: cli_fakes.Calculation,
     monkeypatch: pytest.MonkeyPatch,
     capsys: pytest.CaptureFixture[str],
     ending: Exception,
 ) -> None:
-    monkeypatch.setattr(calculation, "assess", Refused(ending).assess)
+    def refuse(file: Path) -> None:  # noqa: ARG001
+        raise ending
+
+    monkeypatch.setattr("probsoil.scenario.read_scenario", refuse)
     before = sorted(desk.rglob("*"))
     assert main(["assess", "site.toml"]) == (2 if isinstance(ending, DependenceError) else 1)
     assert sorted(desk.rglob("*")) == before
+    assert calculation.calls == []
     if isinstance(ending, TypeError):
         err = capsys.readouterr().err
         place = re.search(r"The details are in (\S+\.log);", err)
@@ -251,7 +268,18 @@ def test_run_refused_before_its_folder_is_made_leaves_nothing_behind(
         ("assess site.toml --realisatons 5", "--realisations"),
         ("assess site.toml --realisations 0", "'--realisations'"),
         ("assess site.toml --workers none", "'--workers'"),
-        ("assess site.toml --draws latin", "'latin-hypercube'"),
+        ("assess site.toml --draws latin", "did you mean 'latin-hypercube'?"),
+        (
+            "assess site.toml --realisations 2.5",
+            "'2.5' is not a whole number; allowed: a whole number from 1",
+        ),
+        (
+            "assess site.toml --realisations 100000001",
+            "100,000,001 is too large; allowed: a whole number from 1",
+        ),
+        ("assess site.toml --seed 9223372036854775808", "is too large"),
+        ("assess site.toml --resume --force", "choose one of --resume and --force"),
+        ("sheet site.toml --at mode", "'mode' is none of the choices; allowed: mean, median"),
         ("assess site.toml --seed -1", "'--seed'"),
         ("assess", "Missing argument"),
         ("asess site.toml", "Did you mean 'assess'?"),
@@ -268,5 +296,8 @@ def test_mistakes_on_the_command_line_end_with_two_and_a_hint(
     assert main(line.split()) == 2
     out, err = capsys.readouterr()
     assert out == ""
-    assert message in re.sub(r"[\s│]+", " ", err)
+    words = re.sub(r"[\s│]+", " ", err)
+    assert message in words
+    assert "Input should" not in words
+    assert "Value error" not in words
     assert calculation.calls == []

@@ -13,6 +13,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from probsoil.assessment.results_folder import FILES
 from probsoil.cli import main
 from probsoil.cli._output import PLAIN_WIDTH
 
@@ -58,7 +59,7 @@ def test_run_leaves_everything_it_promises(run: tuple[Path, subprocess.Completed
     names = {path.name for path in out.iterdir()}
     tables = {"limits.csv", "drivers.csv", "settlement.csv", "parameters.csv"}
     assert tables | {"results.json", "realisations.npz", "report.html", "scenario.toml", "log.txt"} <= names
-    assert "chunks" not in names
+    assert names == {*FILES, "figures", "log.txt"}  # what a run may overwrite is all that it writes
     assert list((out / "figures").glob("*.svg"))
     assert (out / "scenario.toml").read_bytes() == (folder / "site.toml").read_bytes()
     results = read(out)
@@ -114,10 +115,12 @@ def test_sheet_as_text_json_and_csv_tell_the_same(
     assert main(["sheet", str(folder / "site.toml")]) == 0
     text = capsys.readouterr().out
     assert main(["sheet", str(folder / "site.toml"), "--csv"]) == 0
-    rows = list(csv.DictReader(capsys.readouterr().out.splitlines()))
-    assert [row["name"] for row in rows] == [layer["name"] for layer in sheet["layers"]]
+    first = capsys.readouterr().out.partition("\n\n")[0].splitlines()
+    assert first[0] == "layers"
+    rows = list(csv.DictReader(first[1:]))
+    assert [row["layer"] for row in rows] == [layer["name"] for layer in sheet["layers"]]
     for row, layer in zip(rows, sheet["layers"], strict=True):
-        assert float(row["settlement"]) == layer["settlement"]
+        assert float(row["settlement [m]"]) == layer["settlement"]
         assert layer["name"] in text
     assert f"{sheet['final_settlement']:.3f} m" in text
     for stage, safety in sheet["slip_safety"].items():
@@ -142,44 +145,92 @@ def test_folder_that_cannot_be_written_fails_before_any_work(
     assert "is a file, not a folder" in captured.err
 
 
-@pytest.mark.slow
-@pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
-def test_interrupted_run_keeps_chunks_refuses_another_seed_and_resumes_to_the_same_numbers(
+LINE = ["assess", "site.toml", "--realisations", "6000", "--workers", "1", "--out"]
+
+
+@pytest.fixture(scope="module")
+def stopped(
     run: tuple[Path, subprocess.CompletedProcess[str]],
-) -> None:
+) -> tuple[Path, subprocess.CompletedProcess[str]]:
+    """Interrupt a run after its first chunk; return the folder, and how a second run meanwhile ended."""
     folder, _ = run
-    line = ["assess", "site.toml", "--realisations", "6000", "--workers", "1", "--quiet", "--out"]
     process = subprocess.Popen(
-        [sys.executable, "-m", "probsoil", *line, "stopped"],
+        [sys.executable, "-m", "probsoil", *LINE, "stopped", "--quiet"],
         cwd=folder,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,
         text=True,
     )
-    chunks = folder / "stopped" / "chunks"
-    deadline = time.monotonic() + 120
-    while not list(chunks.glob("chunk-*.npz")):
-        assert process.poll() is None, "ended before it could be interrupted"
-        assert time.monotonic() < deadline
-        time.sleep(0.02)
-    process.send_signal(signal.SIGTERM)
-    out, err = process.communicate(timeout=120)
-    assert process.returncode == 3, err
-    assert out == ""
-    assert err.startswith("stopped early after ")
-    assert "--resume" in err
-    assert "Traceback" not in err
+    try:
+        deadline = time.monotonic() + 120
+        while not list((folder / "stopped" / "chunks").glob("chunk-*.npz")):
+            assert process.poll() is None, "ended before it could be interrupted"
+            assert time.monotonic() < deadline
+            time.sleep(0.02)
+        process.send_signal(signal.SIGSTOP)  # so that it is still at work when the second one comes
+        before = contents(folder / "stopped")
+        second = program(folder, *LINE, "stopped", "--quiet")
+        assert contents(folder / "stopped") == before
+        assert f"another run is at work in 'stopped' (process {process.pid} on this machine" in second.stderr
+        assert second.returncode == 1
+        process.send_signal(signal.SIGTERM)
+        process.send_signal(signal.SIGCONT)
+        out, err = process.communicate(timeout=120)
+    finally:
+        process.kill()
+        process.communicate()
+    return folder, subprocess.CompletedProcess(process.args, process.returncode, out, err)
+
+
+def contents(folder: Path) -> dict[str, bytes]:
+    return {str(path.relative_to(folder)): path.read_bytes() for path in folder.rglob("*") if path.is_file()}
+
+
+needs_signals = pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
+
+
+@pytest.mark.slow
+@needs_signals
+def test_interrupted_run_says_what_it_keeps(stopped: tuple[Path, subprocess.CompletedProcess[str]]) -> None:
+    folder, done = stopped
+    assert done.returncode == 3, done.stderr
+    assert done.stdout == ""
+    assert done.stderr.startswith("stopped early after ")
+    assert "run the same again" in done.stderr
+    assert "Traceback" not in done.stderr
+    assert not (folder / "stopped" / "run.lock").exists()
     assert not (folder / "stopped" / "results.json").exists()
     assert "stopped early" in (folder / "stopped" / "log.txt").read_text(encoding="utf-8")
 
-    other = program(folder, *line, "stopped", "--resume", "--seed", "99")
-    assert other.returncode == 1
-    assert "of another campaign and cannot be resumed" in other.stderr
-    assert "seed 99" in other.stderr
 
-    assert program(folder, *line, "stopped", "--resume").returncode == 0
-    assert program(folder, *line, "whole").returncode == 0
+@pytest.mark.slow
+@needs_signals
+@pytest.mark.parametrize("option", [[], ["--resume"]])
+def test_interrupted_run_is_not_mixed_with_another(
+    stopped: tuple[Path, subprocess.CompletedProcess[str]], option: list[str]
+) -> None:
+    folder, _ = stopped
+    before = contents(folder / "stopped" / "chunks")
+    other = program(folder, *LINE, "stopped", "--quiet", "--seed", "99", *option)
+    assert other.returncode == 2
+    assert "  seed was 1, is 99\n" in other.stderr
+    assert "--force" in other.stderr
+    assert contents(folder / "stopped" / "chunks") == before
+
+
+@pytest.mark.slow
+@needs_signals
+def test_interrupted_run_is_gone_on_from_to_the_same_numbers(
+    stopped: tuple[Path, subprocess.CompletedProcess[str]],
+) -> None:
+    folder, _ = stopped
+    kept = len(list((folder / "stopped" / "chunks").glob("chunk-*.npz")))
+    assert program(folder, *LINE, "whole", "--resume").returncode == 2  # nothing to go on from
+    again = program(folder, *LINE, "stopped")
+    assert again.returncode == 0
+    assert f"Going on from {kept} of 6 chunks that are finished" in again.stderr
+    assert program(folder, *LINE, "whole", "--quiet").returncode == 0
     assert numbers(read(folder / "stopped")) == numbers(read(folder / "whole"))
     with (
         np.load(folder / "stopped" / "realisations.npz") as one,
@@ -188,3 +239,18 @@ def test_interrupted_run_keeps_chunks_refuses_another_seed_and_resumes_to_the_sa
         assert one.files == two.files
         for name in one.files:
             assert one[name].tobytes() == two[name].tobytes()
+
+
+def test_sheet_as_a_page(
+    run: tuple[Path, subprocess.CompletedProcess[str]], capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder, _ = run
+    page = folder / "sheet.html"
+    capsys.readouterr()
+    assert main(["sheet", str(folder / "site.toml"), "--page", str(page)]) == 0
+    assert capsys.readouterr().out == f"Wrote {page}\n"
+    assert page.read_text(encoding="utf-8").startswith("<!DOCTYPE html>")
+    assert main(["sheet", str(folder / "site.toml"), "--json", "--page", str(page)]) == 0
+    assert json.loads(capsys.readouterr().out)["sublayers"]
+    assert main(["sheet", str(folder / "site.toml"), "--page", str(folder / "none" / "sheet.html")]) == 1
+    assert "the sheet cannot be written" in capsys.readouterr().err

@@ -99,4 +99,4 @@ def test_interrupt_wrapped_by_compiled_code_is_told_as_such(
 
     monkeypatch.setattr("probsoil.scenario.scenario_schema", compiling)
     assert main(["schema"]) == 1
-    assert "Interrupted before any realisation was finished" in capsys.readouterr().err
+    assert "Interrupted; nothing is kept." in capsys.readouterr().err

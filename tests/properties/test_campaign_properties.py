@@ -9,8 +9,9 @@ from hypothesis import strategies as st
 from hypothesis.extra import numpy as hnp
 from numpy.typing import NDArray
 
-from probsoil.campaign import open_store, run_campaign
+from probsoil.campaign import campaign_identity, open_store, run_campaign
 
+SOME = campaign_identity({"seed": 3})
 DTYPES = st.sampled_from([np.float64, np.int64, np.bool_, np.float32, np.dtype("<U7"), np.dtype(">f8")])
 
 
@@ -31,7 +32,7 @@ def test_resumed_campaign_equals_an_uninterrupted_one(
 ) -> None:
     with tempfile.TemporaryDirectory() as name:
         folder = Path(name)
-        store = open_store(folder, identity="a", n_chunks=n_chunks, resume=False)
+        store = open_store(folder, identity=SOME, n_chunks=n_chunks)
         for index in set(range(n_chunks)) - lost:
             store.write(index, drawn(index))
             if index in damaged:
@@ -42,7 +43,7 @@ def test_resumed_campaign_equals_an_uninterrupted_one(
             evaluated.append(index)
             return drawn(index)
 
-        run = run_campaign(evaluate, n_chunks, identity="a", workers=workers, store=folder, resume=True)
+        run = run_campaign(evaluate, n_chunks, identity=SOME, workers=workers, store=folder)
         results = list(run)
     assert [index for index, _ in results] == list(range(n_chunks))
     for index, result in results:
@@ -63,7 +64,7 @@ def test_resumed_campaign_equals_an_uninterrupted_one(
 )
 def test_array_comes_back_from_disk_as_it_went(array: NDArray[np.generic], key: str) -> None:
     with tempfile.TemporaryDirectory() as name:
-        store = open_store(Path(name), identity="a", n_chunks=1, resume=False)
+        store = open_store(Path(name), identity=SOME, n_chunks=1)
         store.write(0, {key: array})
         found = store.read(0)
     assert found is not None
@@ -77,7 +78,7 @@ def test_array_comes_back_from_disk_as_it_went(array: NDArray[np.generic], key: 
 @given(data=st.data())
 def test_no_damage_to_a_chunk_file_goes_unnoticed(data: st.DataObject) -> None:
     with tempfile.TemporaryDirectory() as name:
-        store = open_store(Path(name), identity="a", n_chunks=1, resume=False)
+        store = open_store(Path(name), identity=SOME, n_chunks=1)
         store.write(0, drawn(0))
         content = bytearray(store.path(0).read_bytes())
         place = data.draw(st.integers(0, len(content) - 1))

@@ -64,6 +64,25 @@ def reserved_names(tables: Sequence[Any], key: str) -> Iterator[Slip]:
             )
 
 
+def years_text(time: float, *, digits: int = 4) -> str:
+    """Return a time in words.
+
+    Parameters
+    ----------
+    time : float, [year]
+        Time.
+    digits : int, [-]
+        Significant digits.
+
+    Returns
+    -------
+    text : str
+        Such as ``30 years`` or ``1 year``.
+    """
+    shown = f"{time:.{digits}g}"
+    return f"{shown} year" if shown == "1" else f"{shown} years"
+
+
 def exactly_one(table: Any, keys: dict[str, str], what: str) -> list[Slip]:
     """Return what is wrong where one of several keys is due.
 

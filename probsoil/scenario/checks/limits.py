@@ -3,9 +3,10 @@
 from typing import Any
 
 from probsoil.scenario.base import UNREAD
-from probsoil.scenario.checks.common import exactly_one, repeated_names
+from probsoil.scenario.checks.common import exactly_one, repeated_names, years_text
 from probsoil.scenario.limits import (
     BearingSafetyLimit,
+    ConsolidationLimit,
     ConsolidationTimeLimit,
     SettlementLimit,
     SlipSafetyLimit,
@@ -34,6 +35,7 @@ def limit_slips(scenario: Any) -> list[Slip]:
             found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
             found += _reversed(limit)
         found += _out_of_place(limit, scenario.load)
+        found += _before_loading(limit, scenario.stages)
         found += _beyond_horizon(limit, scenario.horizon)
         slips += [slip.below(("limits", position)) for slip in found]
     return slips
@@ -58,8 +60,22 @@ def _reversed(limit: Any) -> list[Slip]:
     if not isinstance(limit.between, tuple) or limit.between[0] < limit.between[1]:
         return []
     first, second = limit.between
+    if first == second:
+        message = f"the two times are equal, {years_text(first)}, and nothing settles between them"
+        return [Slip(path=("between",), message=message, allowed="two times, the earlier first")]
     message = f"the times are not in order: {first:.4g} and {second:.4g} years"
     return [Slip(path=("between",), message=message, allowed="the earlier time first, then the later")]
+
+
+def _before_loading(limit: Any, stages: Any) -> list[Slip]:
+    """Refuse a degree of consolidation at a time when there is nothing yet to consolidate under."""
+    start = getattr(stages[0], "start", UNREAD) if stages else UNREAD
+    if not isinstance(limit, ConsolidationLimit) or not isinstance(start, float):
+        return []
+    if not isinstance(limit.at, float) or limit.at > start:
+        return []
+    message = f"nothing is loaded before {years_text(start)}, so nothing can have consolidated by then"
+    return [Slip(path=("at",), message=message, allowed="later than the start of the first stage")]
 
 
 def _beyond_horizon(limit: Any, horizon: Any) -> list[Slip]:
@@ -74,8 +90,8 @@ def _beyond_horizon(limit: Any, horizon: Any) -> list[Slip]:
     return [
         Slip(
             path=path,
-            message=f"{time:.4g} years is beyond the horizon",
-            allowed=f"0 to {horizon:g} years",
+            message=f"{years_text(time)} is beyond the horizon",
+            allowed=f"0 to {years_text(horizon, digits=6)}",
             hint="raise horizon, or take an earlier time",
         )
         for path, time in times

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 from typing import Any
 
 from probsoil.scenario.base import UNREAD
-from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names
+from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names, years_text
 from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad, Stage
 from probsoil.scenario.slips import Slip
 
@@ -64,12 +64,19 @@ def _amount_slips(stage: Any, load: Any) -> list[Slip]:
 def _time_slips(stage: Any, horizon: Any) -> list[Slip]:
     slips = []
     if stage.start is not UNREAD and stage.end is not UNREAD and stage.end <= stage.start:
-        message = f"the stage ends at {stage.end:.4g} years, not after its start at {stage.start:.4g} years"
+        message = (
+            f"the stage ends at {years_text(stage.end)}, not after its start at {years_text(stage.start)}"
+        )
         slips.append(Slip(path=("end",), message=message, allowed="later than start"))
     if horizon is not UNREAD and stage.end is not UNREAD and stage.end > horizon:
-        message = f"the stage ends at {stage.end:.4g} years, beyond the horizon"
+        message = f"the stage ends at {years_text(stage.end)}, beyond the horizon"
         slips.append(
-            Slip(path=("end",), message=message, allowed=f"at most {horizon:g} years", hint="raise horizon")
+            Slip(
+                path=("end",),
+                message=message,
+                allowed=f"at most {years_text(horizon, digits=6)}",
+                hint="raise horizon",
+            )
         )
     return slips
 
@@ -81,8 +88,8 @@ def _order_slips(stages: Sequence[Any]) -> list[Slip]:
         start, end = getattr(stage, "start", UNREAD), getattr(stage, "end", UNREAD)
         if latest is not None and start is not UNREAD and start < latest[1] - _ROUNDING:
             message = (
-                f"the stage starts at {start:.4g} years, before stage {latest[0] + 1} "
-                f'"{stages[latest[0]].name}" ends at {latest[1]:.4g} years'
+                f"the stage starts at {years_text(start)}, before stage {latest[0] + 1} "
+                f'"{stages[latest[0]].name}" ends at {years_text(latest[1])}'
             )
             slips.append(
                 Slip(

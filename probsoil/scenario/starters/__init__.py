@@ -4,7 +4,7 @@ from importlib.resources import files
 
 from probsoil.errors import ParameterError
 
-STARTERS: tuple[str, ...] = ("embankment",)
+STARTERS: tuple[str, ...] = ("embankment", "footing", "tank")
 
 
 def starter_text(kind: str) -> str:

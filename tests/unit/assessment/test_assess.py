@@ -13,6 +13,8 @@ from probsoil.assessment import Assessment, assess
 from probsoil.assessment.evaluation import Study
 from probsoil.campaign import process_pool
 from probsoil.errors import ParameterError, ProbsoilError
+from probsoil.report import render_report
+from probsoil.report.validation import check_results
 from probsoil.scenario import Scenario
 
 
@@ -45,6 +47,40 @@ def test_results_file_is_strict_json_and_equals_the_result(whole: Assessment) ->
     text = (whole.folder / "results.json").read_text(encoding="utf-8")
     read = json.loads(text, parse_constant=lambda name: pytest.fail(f"{name} is not JSON"))
     assert read == json.loads(json.dumps(whole.results))
+
+
+def test_results_are_what_the_format_says(whole: Assessment) -> None:
+    assert check_results(json.loads(json.dumps(whole.results)), "here")
+
+
+@pytest.mark.parametrize("draws", ["monte carlo", "latin hypercube", "sobol"])
+def test_scenario_without_anything_uncertain_runs_and_says_so(fixed_scenario: Scenario, draws: str) -> None:
+    found = assess(fixed_scenario, realisations=50, draws=draws)
+    results = found.results
+    assert check_results(json.loads(json.dumps(results)), "here")
+    assert results["parameters"] == results["drivers"] == []
+    assert found.sample.quantity.shape == (results["realisations"], 5)
+    assert (found.sample.quantity == found.sample.quantity[0]).all()
+    for row in results["limits"]:
+        assert row["probability"] in (0.0, 1.0)
+        assert row["interval"] == [row["probability"]] * 2
+        assert row["unseen_bound"] is None
+        assert row["verdict"] in (None, "within target", "beyond target")
+        assert "nothing is uncertain" in row["method"]
+    assert any(row["code"] == "nothing_uncertain" for row in results["warnings"])
+    assert results["discretisation"]["realisations"] == 1
+    page = render_report(results)
+    assert "nothing in this scenario is uncertain" in page
+
+
+def test_ten_realisations_are_called_too_few_and_not_a_quantity_that_does_not_vary(
+    scenario: Scenario,
+) -> None:
+    results = assess(scenario, realisations=10).results
+    notes = [row["note"] for row in results["driver_quality"]]
+    assert all("too few for 9 parameters" in note for note in notes)
+    assert all(row["summary"]["quantiles"]["0.95"] is None for row in results["limits"])
+    assert "too few realisations" in render_report(results)
 
 
 def test_realisations_file_holds_the_counted_quantities(whole: Assessment) -> None:
@@ -149,8 +185,13 @@ def test_broken_run_goes_on_from_what_reached_the_disk(
 @pytest.mark.parametrize(
     ("call", "message"),
     [
-        (lambda scenario: assess(scenario, realisations=0), "realisations must be at least 1"),
-        (lambda scenario: assess(scenario, seed=-1), "seed must be zero or more"),
+        (lambda scenario: assess(scenario, realisations=0), "realisations must be 1 to 100,000,000"),
+        (
+            lambda scenario: assess(scenario, realisations=100_000_001),
+            "realisations must be 1 to 100,000,000; got 100,000,001",
+        ),
+        (lambda scenario: assess(scenario, seed=-1), "seed must be 0 to 9223372036854775807"),
+        (lambda scenario: assess(scenario, seed=2**63), "seed must be 0 to 9223372036854775807"),
         (lambda scenario: assess(scenario, draws="dice"), "draws must be one of"),
     ],
 )

@@ -5,7 +5,9 @@ from dataclasses import fields
 import numpy as np
 import pytest
 
+from probsoil.assessment.caveats import warning_rows
 from probsoil.assessment.description import quantiles
+from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study, prepare
 from probsoil.assessment.record import CampaignSample, driver_rows, limit_rows, settlement_record, slip_rows
 from probsoil.probability import exceedance
@@ -26,6 +28,8 @@ def sample_of(study: Study, **arrays: np.ndarray) -> CampaignSample:
     whole = {field.name: np.zeros(N, dtype=bool) for field in fields(CampaignSample)} | {
         "quantity": np.ones((N, len(study.scenario.limits))),
         "slip": np.ones((N, len(study.site.slip_times))),
+        "bearing": np.ones((N, len(study.site.bearing_times))),
+        "secondary": np.zeros((N, len(study.scenario.limits))),
         "final": np.ones(N),
         "settlement": np.ones((N, len(study.site.times)), dtype=np.float32),
         "converged": np.ones(N, dtype=bool),
@@ -39,8 +43,19 @@ def test_quantiles_of_finite_values_are_the_usual_ones() -> None:
     found = quantiles(values)
     for level in LEVELS:
         np.testing.assert_allclose(found[level], np.quantile(values, float(level), axis=0), rtol=1e-14)
-    assert quantiles(np.array([3.0])) == dict.fromkeys(LEVELS, 3.0)
     assert quantiles(np.array([])) == dict.fromkeys(LEVELS, None)
+
+
+@pytest.mark.parametrize("n", [1, 5, 39])
+def test_tails_of_few_realisations_are_withheld(n: int) -> None:
+    values = np.arange(1.0, n + 1.0)
+    found = quantiles(values)
+    assert (found["0.05"], found["0.95"]) == (None, None)
+    for level in ("0.25", "0.5", "0.75"):
+        assert found[level] == pytest.approx(np.quantile(values, float(level)))
+    both = quantiles(np.stack([values, values], axis=1))
+    assert both["0.95"] == [None, None]
+    assert None not in quantiles(np.arange(40.0)).values()
 
 
 def test_times_never_reached_are_the_longest_and_not_left_out() -> None:
@@ -66,10 +81,10 @@ def test_a_quantile_between_a_number_and_infinity_has_no_number() -> None:
 
 
 def test_what_did_not_converge_sorts_as_the_worst() -> None:
-    values = np.array([np.nan, np.nan, 1.0, 2.0, 3.0])
-    assert quantiles(values) == {"0.05": 1.2, "0.25": 2.0, "0.5": 3.0, "0.75": None, "0.95": None}
+    values = np.repeat([np.nan, np.nan, 1.0, 2.0, 3.0], 21)  # 105 values: quantiles fall on them
+    assert quantiles(values) == {"0.05": 1.0, "0.25": 2.0, "0.5": 3.0, "0.75": None, "0.95": None}
     low = quantiles(values, worst=-np.inf)
-    assert low == {"0.05": None, "0.25": None, "0.5": 1.0, "0.75": 2.0, "0.95": pytest.approx(2.8)}
+    assert low == {"0.05": None, "0.25": None, "0.5": 1.0, "0.75": 2.0, "0.95": 3.0}
 
 
 def test_each_column_has_quantiles_of_its_own() -> None:
@@ -126,7 +141,7 @@ def test_slip_without_fill_is_above_every_number_and_not_converged_below(study: 
     slip = np.tile(np.arange(1.0, N + 1.0)[:, None], (1, len(study.site.slip_times)))
     slip[-300:, 0] = np.inf
     slip[:100, 1] = np.nan
-    first, second = slip_rows(study.site, sample_of(study, slip=slip))[:2]
+    first, second = slip_rows(study, sample_of(study, slip=slip))[:2]
     assert first["mean"] is None
     assert first["quantiles"]["0.5"] == 500.5
     assert first["quantiles"]["0.75"] is None
@@ -137,9 +152,63 @@ def test_slip_without_fill_is_above_every_number_and_not_converged_below(study: 
 
 
 def test_slip_with_no_fill_at_all_has_no_number_and_no_failure(study: Study) -> None:
-    rows = slip_rows(study.site, sample_of(study, slip=np.full((N, len(study.site.slip_times)), np.inf)))
+    rows = slip_rows(study, sample_of(study, slip=np.full((N, len(study.site.slip_times)), np.inf)))
     assert all(row["quantiles"] == dict.fromkeys(LEVELS, None) and row["mean"] is None for row in rows)
     assert all(row["probability_below_one"] == 0.0 for row in rows)
+    assert all(row["interval_below_one"] == [0.0, pytest.approx(1 - 0.025 ** (1 / N))] for row in rows)
+
+
+def test_slip_shares_have_the_interval_of_their_count(study: Study) -> None:
+    slip = np.ones((N, len(study.site.slip_times)))
+    slip[:30, 0], slip[30:35, 0] = 0.9, np.nan  # what did not converge counts as below one
+    row = slip_rows(study, sample_of(study, slip=slip))[0]
+    expected = exceedance(slip[:, 0], 1.0, "not less than")
+    assert row["probability_below_one"] == 0.035
+    assert row["interval_below_one"] == list(expected.interval)
+
+
+def test_median_has_limits_by_order_and_costs_the_limits_of_their_chance(study: Study) -> None:
+    quantity = np.tile(np.arange(1.0, N + 1.0)[:, None], (1, len(study.scenario.limits)))
+    quantity[-520:, 1] = np.inf
+    first, second = limit_rows(study, sample_of(study, quantity=quantity / 1e4))[:2]
+    assert first["summary"]["median_interval"] == [pytest.approx(0.0469), pytest.approx(0.0532)]
+    assert second["summary"]["median_interval"] == [pytest.approx(0.0469), None]
+    low, high = first["interval"]
+    assert first["expected_cost_interval"] == [1000.0 * low, 1000.0 * high]
+    assert second["expected_cost_interval"] is None
+
+
+def warned(study: Study, **arrays: np.ndarray) -> dict[str, list[dict[str, object]]]:
+    error = DiscretisationError(
+        realisations=1,
+        cells=1,
+        steps=1,
+        settlement_error=0.0,
+        settlement_error_share=0.0,
+        slip_error_share=None,
+    )
+    found: dict[str, list[dict[str, object]]] = {}
+    for row in warning_rows(study, sample_of(study, **arrays), error):
+        found.setdefault(str(row["code"]), []).append(row)
+    return found
+
+
+def test_settlement_judged_after_a_slip_is_warned_of(study: Study) -> None:
+    """A slip at the first check comes before every limit, one at the second after the degree at 1 year."""
+    slip = np.full((N, len(study.site.slip_times)), 1.5)
+    assert "slipped_before" not in warned(study, slip=slip)
+    slip[:20, 0] = 0.99
+    slip[20:25, 0] = np.nan  # not converged, and no slip
+    (row,) = warned(study, slip=slip)["slipped_before"]
+    assert row["share"] == 0.02
+    assert row["share_of"] == "all realisations"
+    assert "limits settlement, residual, degree, time;" in str(row["message"])
+    late = int(np.argmax(study.site.slip_times > 1.0))
+    slip[100:110, late] = 0.5
+    rows = {str(row["message"]): row["share"] for row in warned(study, slip=slip)["slipped_before"]}
+    assert sorted(rows.values()) == [0.02, 0.03]
+    assert any("time of limit degree;" in message and share == 0.02 for message, share in rows.items())
+    assert not any("slip," in message.split("time of")[1] for message in rows)
 
 
 def test_driver_rows_say_what_ranks_and_what_is_clear(study: Study) -> None:

@@ -7,8 +7,18 @@ import time
 import numpy as np
 from numpy.typing import NDArray
 
+from probsoil.campaign import Identity, campaign_identity
+
 GUILTY = 5
 N_CHUNKS = 12
+
+
+def named(name: str) -> Identity:
+    """Return an identity that differs from others by a name."""
+    return campaign_identity({"name": name})
+
+
+OURS = named("ours")
 
 
 def drawn(index: int) -> dict[str, NDArray[np.generic]]:

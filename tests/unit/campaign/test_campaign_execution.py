@@ -36,14 +36,16 @@ def reference() -> object:
 
 @pytest.mark.parametrize("workers", [1, 2, 3, 7, 40])
 def test_any_number_of_threads_gives_the_same_bits_in_order(workers: int, reference: object) -> None:
-    results = list(run_campaign(campaign_chunks.drawn, N, identity="a", workers=workers))
+    results = list(run_campaign(campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=workers))
     assert bits(results) == reference
 
 
 @pytest.mark.parametrize("workers", [1, 2])
 def test_processes_give_the_same_bits_as_threads(workers: int, reference: object) -> None:
     factory = process_pool(workers)
-    results = run_campaign(campaign_chunks.drawn, N, identity="a", workers=workers, executor_factory=factory)
+    results = run_campaign(
+        campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=workers, executor_factory=factory
+    )
     assert bits(list(results)) == reference
 
 
@@ -55,7 +57,7 @@ def test_results_come_in_order_whatever_the_order_of_finishing() -> None:
         finished.append(index)
         return {"index": np.array(index)}
 
-    order = [index for index, _ in run_campaign(evaluate, 16, identity="a", workers=4)]
+    order = [index for index, _ in run_campaign(evaluate, 16, identity=campaign_chunks.OURS, workers=4)]
     assert order == list(range(16))
     assert finished != order  # otherwise this test proves nothing
 
@@ -81,7 +83,7 @@ def test_chunks_held_do_not_grow_with_the_number_of_chunks() -> None:
             most = max(most, alive)
         return {"array": array}
 
-    for _index, _result in run_campaign(evaluate, 400, identity="a", workers=2):
+    for _index, _result in run_campaign(evaluate, 400, identity=campaign_chunks.OURS, workers=2):
         pass
     assert most <= WINDOW_PER_WORKER * 2 + 1  # the window, and the one in the consumer's hands
     assert most > 2  # the window was used
@@ -90,14 +92,18 @@ def test_chunks_held_do_not_grow_with_the_number_of_chunks() -> None:
 def test_progress_counts_every_chunk_once() -> None:
     seen: list[tuple[int, int]] = []
     run = run_campaign(
-        campaign_chunks.drawn, N, identity="a", workers=2, progress=lambda *done: seen.append(done)
+        campaign_chunks.drawn,
+        N,
+        identity=campaign_chunks.OURS,
+        workers=2,
+        progress=lambda *done: seen.append(done),
     )
     assert len(list(run)) == N
     assert seen == [(done, N) for done in range(1, N + 1)]
 
 
 def test_failing_chunk_is_named_and_its_error_is_the_cause() -> None:
-    run = run_campaign(campaign_chunks.faulty, N, identity="a", workers=2)
+    run = run_campaign(campaign_chunks.faulty, N, identity=campaign_chunks.OURS, workers=2)
     with pytest.raises(
         ProbsoilError, match=r"chunk 5 of 12 failed: ZeroDivisionError: no clay here"
     ) as caught:
@@ -106,7 +112,9 @@ def test_failing_chunk_is_named_and_its_error_is_the_cause() -> None:
 
 
 def test_chunks_finished_beside_a_failing_one_are_kept(tmp_path: Path) -> None:
-    run = run_campaign(campaign_chunks.faulty, 6, identity="a", workers=1, store=tmp_path / "chunks")
+    run = run_campaign(
+        campaign_chunks.faulty, 6, identity=campaign_chunks.OURS, workers=1, store=tmp_path / "chunks"
+    )
     with pytest.raises(ProbsoilError, match="chunk 5 of 6 failed"):
         list(run)
     assert len(list((tmp_path / "chunks").glob("chunk-*.npz"))) == 5
@@ -116,7 +124,12 @@ def test_chunk_that_ends_its_worker_process_is_named_among_innocents(tmp_path: P
     store = tmp_path / "chunks"
     factory = process_pool(2)
     run = run_campaign(
-        campaign_chunks.deadly, N, identity="a", workers=2, store=store, executor_factory=factory
+        campaign_chunks.deadly,
+        N,
+        identity=campaign_chunks.OURS,
+        workers=2,
+        store=store,
+        executor_factory=factory,
     )
     with pytest.raises(ProbsoilError, match="chunk 5 of 12 ended its worker, also when it ran alone"):
         list(run)
@@ -130,7 +143,11 @@ def test_worker_killed_once_costs_nothing_but_time(
 ) -> None:
     monkeypatch.setenv("PROBSOIL_TEST_MARKER", str(tmp_path / "killed"))
     run = run_campaign(
-        campaign_chunks.killed_once, N, identity="a", workers=2, executor_factory=process_pool(2)
+        campaign_chunks.killed_once,
+        N,
+        identity=campaign_chunks.OURS,
+        workers=2,
+        executor_factory=process_pool(2),
     )
     assert bits(list(run)) == reference
     assert (tmp_path / "killed").exists()
@@ -157,7 +174,9 @@ def test_pool_that_breaks_between_chunks_is_made_anew(
     monkeypatch: pytest.MonkeyPatch, reference: object
 ) -> None:
     monkeypatch.setattr(BrokenAtFirst, "made", 0)
-    run = run_campaign(campaign_chunks.drawn, N, identity="a", executor_factory=BrokenAtFirst)
+    run = run_campaign(
+        campaign_chunks.drawn, N, identity=campaign_chunks.OURS, executor_factory=BrokenAtFirst
+    )
     assert bits(list(run)) == reference
     assert BrokenAtFirst.made == 2
 
@@ -186,7 +205,9 @@ def test_chunks_a_broken_pool_never_answers_for_run_again(
     monkeypatch: pytest.MonkeyPatch, reference: object
 ) -> None:
     monkeypatch.setattr(HalfBroken, "made", 0)
-    run = run_campaign(campaign_chunks.drawn, N, identity="a", workers=2, executor_factory=HalfBroken)
+    run = run_campaign(
+        campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=2, executor_factory=HalfBroken
+    )
     assert bits(list(run)) == reference
 
 
@@ -197,14 +218,16 @@ def test_pool_that_never_starts_is_said_so() -> None:
     def factory() -> Executor:
         return ThreadPoolExecutor(1, initializer=refuse)
 
-    run = run_campaign(campaign_chunks.drawn, N, identity="a", workers=1, executor_factory=factory)
+    run = run_campaign(
+        campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=1, executor_factory=factory
+    )
     with pytest.raises(ProbsoilError, match=r"ended its worker|workers cannot be started"):
         list(run)
 
 
 def test_consumer_that_walks_away_leaves_no_thread_behind() -> None:
     before = threading.active_count()
-    run = run_campaign(campaign_chunks.slow, N, identity="a", workers=2)
+    run = run_campaign(campaign_chunks.slow, N, identity=campaign_chunks.OURS, workers=2)
     next(run)
     run.close()  # type: ignore[attr-defined]
     assert threading.active_count() == before
@@ -219,7 +242,7 @@ def test_consumer_that_walks_away_leaves_no_thread_behind() -> None:
 )
 def test_senseless_counts_are_refused_at_the_call(n_chunks: int, workers: int, message: str) -> None:
     with pytest.raises(ParameterError, match=message):
-        run_campaign(campaign_chunks.drawn, n_chunks, identity="a", workers=workers)
+        run_campaign(campaign_chunks.drawn, n_chunks, identity=campaign_chunks.OURS, workers=workers)
 
 
 def test_default_is_every_core(monkeypatch: pytest.MonkeyPatch) -> None:
@@ -231,7 +254,7 @@ def test_default_is_every_core(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_result_with_python_objects_is_refused_by_name(tmp_path: Path) -> None:
     evaluate: Evaluate = lambda index: {"thing": np.array([object()])}  # noqa: E731, ARG005
     run: Callable[[], object] = lambda: list(  # noqa: E731
-        run_campaign(evaluate, 1, identity="a", workers=1, store=tmp_path / "chunks")
+        run_campaign(evaluate, 1, identity=campaign_chunks.OURS, workers=1, store=tmp_path / "chunks")
     )
     with pytest.raises(ProbsoilError, match="chunk 0: array 'thing' holds Python objects"):
         run()

@@ -11,7 +11,7 @@ from pathlib import Path
 import campaign_chunks
 import pytest
 
-from probsoil.campaign import run_campaign
+from probsoil.campaign import deferred_interrupt, is_interrupt, run_campaign, termination_as_interrupt
 from probsoil.campaign.execution import Result
 from probsoil.errors import StoppedEarly
 
@@ -24,8 +24,8 @@ import campaign_chunks
 from probsoil.campaign import process_pool, run_campaign
 if __name__ == "__main__":
     factory = process_pool(2) if sys.argv[2] == "processes" else None
-    for _ in run_campaign(campaign_chunks.slow, 24, identity="ours", workers=2, store=Path(sys.argv[1]),
-                          executor_factory=factory):
+    for _ in run_campaign(campaign_chunks.slow, 24, identity=campaign_chunks.OURS, workers=2,
+                          store=Path(sys.argv[1]), executor_factory=factory):
         pass
 """
 
@@ -58,7 +58,9 @@ def resumed(folder: Path) -> tuple[list[tuple[int, Result]], int]:
         evaluated.append(index)
         return campaign_chunks.drawn(index)
 
-    run = run_campaign(evaluate, N, identity="ours", workers=2, store=folder / "chunks", resume=True)
+    run = run_campaign(
+        evaluate, N, identity=campaign_chunks.OURS, workers=2, store=folder / "chunks", resume=True
+    )
     return list(run), len(evaluated)
 
 
@@ -163,7 +165,7 @@ def test_chunks_that_run_when_the_stop_comes_are_kept(tmp_path: Path) -> None:
 
     before = signal.getsignal(signal.SIGINT)
     with pytest.raises(StoppedEarly, match="stopped early after 2 of 24 chunks; 2 are kept"):
-        list(run_campaign(evaluate, N, identity="ours", workers=2, store=tmp_path / "chunks"))
+        list(run_campaign(evaluate, N, identity=campaign_chunks.OURS, workers=2, store=tmp_path / "chunks"))
     thread.join()
     assert signal.getsignal(signal.SIGINT) is before
     assert len(list((tmp_path / "chunks").glob("chunk-*.npz"))) == 2
@@ -176,8 +178,8 @@ def test_chunk_that_fails_after_the_stop_does_not_hide_that_it_was_a_stop(tmp_pa
         time.sleep(0.5)
         raise ValueError(index)
 
-    with pytest.raises(StoppedEarly, match="stopped early after 0 of 24 chunks; 0 are kept"):
-        list(run_campaign(evaluate, N, identity="ours", workers=2, store=tmp_path / "chunks"))
+    with pytest.raises(StoppedEarly, match="stopped early after 0 of 24 chunks; nothing is kept"):
+        list(run_campaign(evaluate, N, identity=campaign_chunks.OURS, workers=2, store=tmp_path / "chunks"))
     thread.join()
 
 
@@ -185,7 +187,7 @@ def test_chunk_that_fails_after_the_stop_does_not_hide_that_it_was_a_stop(tmp_pa
 def test_ignored_interrupt_stays_ignored() -> None:
     before = signal.signal(signal.SIGINT, signal.SIG_IGN)  # as for a job in the background
     try:
-        run = run_campaign(campaign_chunks.drawn, N, identity="ours", workers=1)
+        run = run_campaign(campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=1)
         next(run)
         os.kill(os.getpid(), signal.SIGINT)
         assert len(list(run)) == N - 1
@@ -203,8 +205,8 @@ def test_second_interrupt_does_not_wait_for_chunks_that_run(tmp_path: Path) -> N
         return campaign_chunks.drawn(index)
 
     began = time.monotonic()
-    with pytest.raises(StoppedEarly, match="stopped early after 0 of 24 chunks; 0 are kept"):
-        list(run_campaign(evaluate, N, identity="ours", workers=1, store=tmp_path / "chunks"))
+    with pytest.raises(StoppedEarly, match="stopped early after 0 of 24 chunks; nothing is kept"):
+        list(run_campaign(evaluate, N, identity=campaign_chunks.OURS, workers=1, store=tmp_path / "chunks"))
     waited = time.monotonic() - began
     release.set()
     thread.join()
@@ -214,12 +216,12 @@ def test_second_interrupt_does_not_wait_for_chunks_that_run(tmp_path: Path) -> N
 def test_without_a_folder_it_is_said_that_nothing_is_kept() -> None:
     thread = interrupt_after(0.2)
     with pytest.raises(StoppedEarly, match="nothing is kept, because no folder was given"):
-        list(run_campaign(campaign_chunks.slow, 200, identity="ours", workers=1))
+        list(run_campaign(campaign_chunks.slow, 200, identity=campaign_chunks.OURS, workers=1))
     thread.join()
 
 
 def test_interrupt_while_the_consumer_works_is_heard_at_the_next_chunk() -> None:
-    run = run_campaign(campaign_chunks.drawn, N, identity="ours", workers=1)
+    run = run_campaign(campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=1)
     next(run)
     os.kill(os.getpid(), signal.SIGINT)
     time.sleep(0.05)  # the consumer's own work goes on unharmed
@@ -227,11 +229,80 @@ def test_interrupt_while_the_consumer_works_is_heard_at_the_next_chunk() -> None
         list(run)
 
 
+@pytest.mark.parametrize("kept", [False, True])
+def test_interrupt_while_the_consumer_has_the_last_chunk_is_heard(tmp_path: Path, kept: bool) -> None:
+    store = tmp_path / "chunks" if kept else None
+    run = run_campaign(campaign_chunks.drawn, 2, identity=campaign_chunks.OURS, workers=1, store=store)
+    next(run)
+    next(run)
+    os.kill(os.getpid(), signal.SIGINT)
+    time.sleep(0.05)
+    with pytest.raises(StoppedEarly, match="stopped early after 2 of 2 chunks") as caught:
+        next(run)
+    assert caught.value.kept is kept
+
+
+@pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
+def test_termination_ends_as_an_interrupt_does_and_the_former_handler_comes_back() -> None:
+    before = signal.getsignal(signal.SIGTERM)
+
+    def terminated() -> None:
+        with termination_as_interrupt():
+            os.kill(os.getpid(), signal.SIGTERM)
+            time.sleep(1)
+
+    with pytest.raises(KeyboardInterrupt, match=r"^$"):
+        terminated()
+    assert signal.getsignal(signal.SIGTERM) is before
+
+
+def test_interrupt_is_deferred_until_the_work_is_done() -> None:
+    done = []
+
+    def work() -> None:
+        with deferred_interrupt():
+            os.kill(os.getpid(), signal.SIGINT)
+            time.sleep(0.05)
+            done.append(1)
+        done.append(2)
+
+    before = signal.getsignal(signal.SIGINT)
+    with pytest.raises(KeyboardInterrupt, match=r"^$"):
+        work()
+    assert done == [1]
+    assert signal.getsignal(signal.SIGINT) is before
+
+
+@pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
+def test_termination_that_is_handled_or_ignored_already_is_left_so() -> None:
+    before = signal.signal(signal.SIGTERM, signal.SIG_IGN)
+    try:
+        with termination_as_interrupt():
+            os.kill(os.getpid(), signal.SIGTERM)
+            assert signal.getsignal(signal.SIGTERM) is signal.SIG_IGN
+    finally:
+        signal.signal(signal.SIGTERM, before)
+
+
+def test_interrupt_is_found_behind_other_errors() -> None:
+    def wrapped(inner: BaseException) -> BaseException:
+        outer = RuntimeError("not compiled")
+        outer.__context__ = ValueError("on the way")
+        outer.__context__.__cause__ = inner
+        return outer
+
+    assert is_interrupt(KeyboardInterrupt())
+    assert is_interrupt(wrapped(KeyboardInterrupt()))
+    assert not is_interrupt(wrapped(ValueError()))
+
+
 def test_campaign_in_another_thread_leaves_signals_alone() -> None:
     before = signal.getsignal(signal.SIGINT)
     results: list[tuple[int, Result]] = []
     thread = threading.Thread(
-        target=lambda: results.extend(run_campaign(campaign_chunks.drawn, N, identity="a", workers=2))
+        target=lambda: results.extend(
+            run_campaign(campaign_chunks.drawn, N, identity=campaign_chunks.OURS, workers=2)
+        )
     )
     thread.start()
     thread.join()

@@ -2,6 +2,7 @@
 
 import errno
 import json
+import logging
 import os
 import shutil
 import subprocess
@@ -14,19 +15,24 @@ import numpy as np
 import pytest
 
 from probsoil.campaign import (
+    Identity,
     campaign_identity,
     discard_chunks,
+    kept_chunks,
     open_store,
     prepare_folder,
     run_campaign,
     write_durably,
 )
-from probsoil.errors import ResultsError
+from probsoil.errors import ResultsError, UnfitFolderError
 
 N = campaign_chunks.N_CHUNKS
+OURS, THEIRS = campaign_chunks.OURS, campaign_chunks.named("theirs")
 
 
-def run(store: Path, *, identity: str = "ours", resume: bool = False) -> tuple[list[bytes], list[int]]:
+def run(
+    store: Path, *, identity: Identity = OURS, resume: bool = False, force: bool = False
+) -> tuple[list[bytes], list[int]]:
     """Run the campaign; return the bytes of all chunks, and which were evaluated rather than read."""
     evaluated: list[int] = []
 
@@ -34,7 +40,7 @@ def run(store: Path, *, identity: str = "ours", resume: bool = False) -> tuple[l
         evaluated.append(index)
         return campaign_chunks.drawn(index)
 
-    results = run_campaign(evaluate, N, identity=identity, workers=2, store=store, resume=resume)
+    results = run_campaign(evaluate, N, identity=identity, workers=2, store=store, resume=resume, force=force)
     return [result["value"].tobytes() + result["over"].tobytes() for _, result in results], sorted(evaluated)
 
 
@@ -88,53 +94,96 @@ def test_damaged_chunk_is_noticed_and_computed_again(tmp_path: Path, damage: obj
 
 def test_chunk_under_another_number_or_of_another_campaign_is_not_taken(tmp_path: Path) -> None:
     run(tmp_path / "ours")
-    run(tmp_path / "theirs", identity="theirs")
+    run(tmp_path / "theirs", identity=THEIRS)
     shutil.copy(tmp_path / "ours" / "chunk-000001.npz", tmp_path / "ours" / "chunk-000002.npz")
     shutil.copy(tmp_path / "theirs" / "chunk-000008.npz", tmp_path / "ours" / "chunk-000008.npz")
     _, evaluated = run(tmp_path / "ours", resume=True)
     assert evaluated == [2, 8]
 
 
-def test_resume_of_another_campaign_is_refused_naming_both_and_harms_nothing(tmp_path: Path) -> None:
-    ours = campaign_identity("clay", seed=1, realisations=100)
-    theirs = campaign_identity("clay", seed=2, realisations=100)
+def contents(folder: Path) -> dict[str, bytes]:
+    return {path.name: path.read_bytes() for path in folder.iterdir()}
+
+
+@pytest.mark.parametrize("resume", [False, True])
+def test_chunks_of_another_campaign_are_neither_used_nor_harmed_and_the_differences_are_told(
+    tmp_path: Path, resume: bool
+) -> None:
+    theirs = campaign_identity({"seed": 2, "draws": "sobol", "load.width": 12.0}, the_code="0a")
+    ours = campaign_identity({"seed": 1, "draws": "sobol", "load.length": 3.0}, the_code="0b")
     run(tmp_path / "chunks", identity=theirs)
-    before = sorted(path.read_bytes() for path in (tmp_path / "chunks").iterdir())
-    with pytest.raises(ResultsError, match="of another campaign and cannot be resumed") as caught:
-        run_campaign(
-            campaign_chunks.drawn, N, identity=ours, workers=1, store=tmp_path / "chunks", resume=True
-        )
-    assert "(seed 1, realisations 100)" in str(caught.value)
-    assert "(seed 2, realisations 100)" in str(caught.value)
-    assert sorted(path.read_bytes() for path in (tmp_path / "chunks").iterdir()) == before
+    before = contents(tmp_path / "chunks")
+    with pytest.raises(UnfitFolderError, match="12 finished chunks of another run") as caught:
+        run_campaign(campaign_chunks.drawn, N, identity=ours, store=tmp_path / "chunks", resume=resume)
+    lines = str(caught.value).splitlines()
+    assert lines[1:-1] == [
+        "  seed was 2, is 1",
+        "  load.length was not given, is 3.0",
+        "  load.width was 12.0, is not given",
+        "  the code has changed",
+    ]
+    assert "--force" in lines[-1]
+    assert contents(tmp_path / "chunks") == before
 
 
-def test_resume_with_another_number_of_chunks_is_refused(tmp_path: Path) -> None:
+def test_many_differences_are_counted_rather_than_listed(tmp_path: Path) -> None:
+    run(tmp_path / "chunks", identity=campaign_identity({f"x{place}": 1 for place in range(40)}))
+    with pytest.raises(UnfitFolderError, match="and 28 more differences"):
+        run(tmp_path / "chunks", identity=campaign_identity({f"x{place}": 2 for place in range(40)}))
+
+
+def test_another_number_of_chunks_is_refused(tmp_path: Path) -> None:
     run(tmp_path / "chunks")
-    with pytest.raises(ResultsError, match=r"12 chunks, ours\n.*13 chunks, ours"):
-        open_store(tmp_path / "chunks", identity="ours", n_chunks=13, resume=True)
+    with pytest.raises(UnfitFolderError, match="the number of chunks was 12, is 13"):
+        open_store(tmp_path / "chunks", identity=OURS, n_chunks=13)
 
 
-@pytest.mark.parametrize("content", [b"", b"{", b"\xff\xfe", b"[1]"])
-def test_resume_with_a_senseless_manifest_is_refused(tmp_path: Path, content: bytes) -> None:
+@pytest.mark.parametrize("content", [b"", b"{", b"\xff\xfe", b"[1]", b'{"format": 1}'])
+@pytest.mark.parametrize("resume", [False, True])
+def test_chunks_with_a_senseless_manifest_are_refused(tmp_path: Path, content: bytes, resume: bool) -> None:
     run(tmp_path / "chunks")
     (tmp_path / "chunks" / "manifest.json").write_bytes(content)
-    with pytest.raises(ResultsError, match="name another folder"):
-        open_store(tmp_path / "chunks", identity="ours", n_chunks=N, resume=True)
+    with pytest.raises(UnfitFolderError, match=r"manifest\.json', which says whose they are"):
+        open_store(tmp_path / "chunks", identity=OURS, n_chunks=N, resume=resume)
 
 
-def test_start_anew_removes_old_chunks_and_nothing_else(tmp_path: Path) -> None:
-    run(tmp_path, identity="old")
+def test_force_removes_chunks_of_another_campaign_and_nothing_else(tmp_path: Path) -> None:
+    run(tmp_path, identity=THEIRS)
     (tmp_path / "notes.txt").write_text("mine")
-    _, evaluated = run(tmp_path, identity="new")
+    _, evaluated = run(tmp_path, force=True)
     assert evaluated == list(range(N))
     assert (tmp_path / "notes.txt").read_text() == "mine"
-    assert json.loads((tmp_path / "manifest.json").read_text())["identity"] == "new"
+    assert json.loads((tmp_path / "manifest.json").read_text())["stated"] == {"name": "ours"}
 
 
-def test_resume_where_nothing_was_begun_begins(tmp_path: Path) -> None:
-    _, evaluated = run(tmp_path / "chunks", resume=True)
+def test_same_campaign_is_gone_on_from_without_being_asked_and_this_is_said(
+    tmp_path: Path, caplog: pytest.LogCaptureFixture
+) -> None:
+    whole, _ = run(tmp_path / "chunks")
+    (tmp_path / "chunks" / "chunk-000007.npz").unlink()
+    caplog.set_level(logging.INFO, "probsoil")
+    again, evaluated = run(tmp_path / "chunks", force=True)  # force is for what does not belong there
+    assert evaluated == [7]
+    assert again == whole
+    assert "Going on from 11 of 12 chunks that are finished" in caplog.text
+    assert caplog.records[-1].levelname == "NOTICE"
+
+
+def test_chunk_files_without_a_manifest_are_nobodys(tmp_path: Path) -> None:
+    run(tmp_path / "chunks")
+    (tmp_path / "chunks" / "manifest.json").unlink()
+    assert kept_chunks(tmp_path / "chunks") == 0
+    _, evaluated = run(tmp_path / "chunks")
     assert evaluated == list(range(N))
+
+
+@pytest.mark.parametrize("begun", [False, True])
+def test_resume_insists_that_there_is_something_to_go_on_from(tmp_path: Path, begun: bool) -> None:
+    if begun:  # interrupted before its first chunk
+        open_store(tmp_path / "chunks", identity=OURS, n_chunks=N)
+    with pytest.raises(UnfitFolderError, match="holds no finished chunks to go on from"):
+        run(tmp_path / "chunks", resume=True)
+    assert not list(tmp_path.rglob("chunk-*"))
 
 
 def test_discarded_folder_is_gone_unless_something_else_is_in_it(tmp_path: Path) -> None:
@@ -149,9 +198,9 @@ def test_discarded_folder_is_gone_unless_something_else_is_in_it(tmp_path: Path)
 def test_file_where_the_folder_should_be(tmp_path: Path) -> None:
     (tmp_path / "taken").write_text("")
     with pytest.raises(ResultsError, match=r"'.*taken' cannot be written: it is a file, not a folder"):
-        run_campaign(campaign_chunks.drawn, 1, identity="a", store=tmp_path / "taken")
+        run_campaign(campaign_chunks.drawn, 1, identity=OURS, store=tmp_path / "taken")
     with pytest.raises(ResultsError, match=r"cannot be written: '.*taken' is a file, not a folder"):
-        run_campaign(campaign_chunks.drawn, 1, identity="a", store=tmp_path / "taken" / "deeper" / "chunks")
+        run_campaign(campaign_chunks.drawn, 1, identity=OURS, store=tmp_path / "taken" / "deeper" / "chunks")
 
 
 def test_folder_that_takes_no_file_is_refused_before_any_work() -> None:
@@ -210,24 +259,11 @@ def test_failed_write_leaves_the_old_file(tmp_path: Path, monkeypatch: pytest.Mo
     assert [entry.name for entry in tmp_path.iterdir()] == ["results.json"]
 
 
-def test_identity_changes_with_content_and_with_each_setting() -> None:
-    base = campaign_identity("a = 1", seed=1, draws="sobol")
-    assert base == campaign_identity(b"a = 1", seed=1, draws="sobol")
-    others = {
-        campaign_identity("a = 2", seed=1, draws="sobol"),
-        campaign_identity("a = 1", seed=2, draws="sobol"),
-        campaign_identity("a = 1", seed=1, draws="monte carlo"),
-        campaign_identity("a = 1", seed=1),
-        campaign_identity("a = 1", seed="1", draws="sobol"),
-    }
-    assert len(others | {base}) == 6
-
-
 def test_folder_in_the_place_of_a_chunk_is_no_chunk(tmp_path: Path) -> None:
     run(tmp_path / "chunks")
     path = tmp_path / "chunks" / "chunk-000004.npz"
     path.unlink()
     path.mkdir()
-    assert open_store(tmp_path / "chunks", identity="ours", n_chunks=N, resume=True).read(4) is None
+    assert open_store(tmp_path / "chunks", identity=OURS, n_chunks=N).read(4) is None
     with pytest.raises(ResultsError, match=r"chunk-000004\.npz' cannot be removed"):
         discard_chunks(tmp_path / "chunks")

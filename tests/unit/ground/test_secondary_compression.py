@@ -47,7 +47,7 @@ def test_settlement_holds_primary_and_creep():
 
 
 def test_creep_begins_when_primary_is_nearly_done():
-    times, plain, secondary = response(case(permeability='{ k = "5e-10 m/s", ck = 1.0 }'))
+    _, plain, secondary = response(case(permeability='{ k = "5e-10 m/s", ck = 1.0 }'))
     final = plain.max()
     _, without, _ = response(case(ratio=None, permeability='{ k = "5e-10 m/s", ck = 1.0 }'))
     begun = secondary > 0.0

@@ -5,15 +5,10 @@ import pytest
 
 from probsoil.errors import ParameterError
 from probsoil.ground._circle_kernel import ARC_POINTS
-from probsoil.ground.slip_circles import (
-    N_ZONE,
-    CircleLayout,
-    EmbankmentSection,
-    candidate_circles,
-    circle_family,
-    weighed,
-)
+from probsoil.ground.embankment import EmbankmentSection
+from probsoil.ground.slip_circles import CircleLayout, candidate_circles, circle_family, weighed
 
+BERMED = {"side_slope": 2.0, "base_width": 40.0, "full_height": 3.0, "berm_width": 5.0, "berm_height": 1.2}
 SECTIONS = {
     "at full height": EmbankmentSection(height=3.0, side_slope=2.0, base_width=30.0, full_height=3.0),
     "while rising": EmbankmentSection(height=1.2, side_slope=2.0, base_width=30.0, full_height=3.0),
@@ -21,12 +16,14 @@ SECTIONS = {
     # low enough for circles that pass under the crest and on below the far slope
     "narrow, while rising": EmbankmentSection(height=0.8, side_slope=1.5, base_width=9.0, full_height=2.5),
     "vertical sides": EmbankmentSection(height=1.0, side_slope=0.0, base_width=12.0, full_height=1.0),
+    "berms": EmbankmentSection(height=3.0, **BERMED),
+    "berms, while rising": EmbankmentSection(height=0.9, **BERMED),
 }
 DEPTH = 7.0
 
 
 def layout_of(section, **keys):
-    return CircleLayout(section=section, depth=DEPTH, density=0.35, **keys)
+    return CircleLayout(section=section, depth=DEPTH, density=0.35, **({"within_fill": True} | keys))
 
 
 def family_of(section, **keys):
@@ -39,48 +36,62 @@ def some_circles(family, count=40):
 
 
 def surface(section, x):
-    run = max(section.side_slope, 1e-12)
-    top = np.minimum(section.height, np.minimum(x, section.base_width - x) / run)
-    return np.where((x > 0.0) & (x < section.base_width), top, 0.0)
+    """Level of the surface; at a vertical side that of the fill."""
+    inside, run = np.minimum(x, section.base_width - x), max(section.side_slope, 1e-12)
+    level = np.minimum(section.height, inside / run)
+    if section.berm_width > 0.0:
+        berm = np.minimum(min(section.berm_height, section.height), inside / run)
+        if section.height > section.berm_height:
+            level = np.maximum(berm, np.minimum(section.height, (inside - section.berm_width) / run))
+    return np.maximum(level, 0.0)
 
 
 def dense_row(family, circle, n_kind):
-    row = np.zeros(n_kind * N_ZONE * (family.slice_edge.size - 1))
+    row = np.zeros(n_kind * family.n_zone * (family.slice_edge.size - 1))
     entries = slice(family.row_start[circle], family.row_start[circle + 1])
     row[family.column[entries]] = family.weight[entries]
-    return row.reshape(n_kind, N_ZONE, -1)
+    return row.reshape(n_kind, family.n_zone, -1)
+
+
+def zones(section, x):
+    inside = np.minimum(x, section.base_width - x)
+    zone = np.where(inside < section.slope_zone, 1, 2)
+    zone = np.where(inside < section.berm_zone, 3, zone)
+    return np.where(inside < 0.0, 0, zone)
 
 
 def quadrature(section, family, circle, n_arc=60_000):
-    """Weights, driving moment and fill terms by brute force over the arc from exit to entry."""
-    x0, y0, radius = family.centre_x[circle], family.centre_y[circle], family.radius[circle]
-    first, last = -np.arccos(y0 / radius), np.arccos((y0 - section.height) / radius)
+    """Weights, driving moments and fill terms by brute force over the arc from exit to entry."""
+    one = family.circles[np.array([circle])]
+    x0, y0, radius = one.centre_x[0], one.centre_y[0], one.radius[0]
+    first = np.arcsin((one.exit_x[0] - x0) / radius)
+    last = np.arcsin(min((one.entry_x[0] - x0) / radius, 1.0))
     angle = first + (last - first) * (np.arange(n_arc) + 0.5) / n_arc
     moment = radius**2 * (last - first) / n_arc
     x, y = x0 + radius * np.sin(angle), y0 - radius * np.cos(angle)
     edge = family.slice_edge
     level = np.clip(np.searchsorted(edge, -y, side="left") - 1, 0, edge.size - 2)
-    beyond = (x < 0.0) | (x > section.base_width)
-    sloping = ~beyond & ((x < section.slope_zone) | (x > section.base_width - section.slope_zone))
-    zone = np.where(beyond, 0, np.where(sloping, 1, 2))
-    weights = np.zeros((2, N_ZONE, edge.size - 1))
+    zone = zones(section, x)
+    weights = np.zeros((2, family.n_zone, edge.size - 1))
     below = y <= 0.0
     np.add.at(weights[0], (zone[below], level[below]), moment)
     np.add.at(weights[1], (zone[below], level[below]), moment * np.cos(angle[below]) ** 2)
     column = surface(section, x) - y
     in_fill = ~below & (column > 0.0)
     friction = (moment * np.cos(angle) ** 2 * column)[in_fill].sum()
+    loaded = in_fill & (x > max(section.shoulder, x0)) & (one.entry_y[0] >= section.height)
+    under_traffic = (moment * np.cos(angle) ** 2)[loaded].sum()
     # the weight of the fill inside the circle, over a grid of x fine enough for its corners
-    left, right = (
-        max(x0 - np.sqrt(radius**2 - y0**2), 0.0),
-        x0 + np.sqrt(radius**2 - (y0 - section.height) ** 2),
-    )
+    left, right = max(one.exit_x[0], 0.0), one.entry_x[0]
     grid = left + (right - left) * (np.arange(n_arc) + 0.5) / n_arc
     arc = np.maximum(y0 - np.sqrt(np.maximum(radius**2 - (grid - x0) ** 2, 0.0)), 0.0)
     inside = np.maximum(surface(section, grid) - arc, 0.0)
-    driving = (inside * (grid - x0)).sum() * (right - left) / n_arc
+    step = (right - left) / n_arc
+    driving = (inside * (grid - x0)).sum() * step
+    on_top = (grid > max(section.shoulder, x0)) & (one.entry_y[0] >= section.height)
+    traffic = (grid - x0)[on_top].sum() * step
     greatest = (np.cos(angle) ** 2 * column)[in_fill].max(initial=0.0)
-    return weights, driving, (friction, greatest), in_fill.sum() * moment
+    return weights, (driving, traffic), (friction, greatest, under_traffic), in_fill.sum() * moment
 
 
 @pytest.mark.parametrize("name", SECTIONS)
@@ -89,57 +100,102 @@ def test_weights_and_moments_equal_a_brute_force_sum(name):
     family = family_of(section, frictional_ground=True)
     assert family.n_circle > 200
     for circle in some_circles(family):
-        weights, driving, (friction, greatest), cohesion = quadrature(section, family, circle)
+        weights, (driving, traffic), fill, cohesion = quadrature(section, family, circle)
+        friction, greatest, under_traffic = fill
         row = dense_row(family, circle, 2)
-        arc = family.radius[circle] ** 2 * 2.0 * np.pi / ARC_POINTS  # more than one point of the kernel's arc
+        radius = family.circles.radius[circle]
+        arc = radius**2 * 2.0 * np.pi / ARC_POINTS  # more than one point of the kernel's arc
         # a point of the arc may fall on the other side of a slice, a zone or ground level, at each end
         assert row == pytest.approx(weights, abs=2.0 * arc)
         whole = weights[0].sum() + cohesion
         # ground level only moves a point from one sum to the other; the fill's surface may lose one
         assert row[0].sum() + family.fill_cohesion[circle] == pytest.approx(whole, abs=arc)
-        assert family.driving[circle] == pytest.approx(driving, rel=1e-3, abs=1e-3 * section.height)
+        # the brute sum itself is one step wrong where the fill or the traffic ends
+        assert family.circles.driving[circle] == pytest.approx(driving, rel=1e-4, abs=1e-3)
+        assert family.circles.traffic[circle] == pytest.approx(traffic, rel=1e-4, abs=1e-2)
         # one point crosses ground level; elsewhere the sum is smooth, and nothing at the fill's surface
         assert family.fill_friction[circle] == pytest.approx(friction, rel=1e-3, abs=arc * greatest)
+        assert family.traffic_friction[circle] == pytest.approx(under_traffic, abs=arc)
 
 
 def test_some_circles_pass_below_the_far_slope():
     section = SECTIONS["narrow, while rising"]
-    family = family_of(section)
-    far = family.centre_x + np.sqrt(family.radius**2 - family.centre_y**2)
+    circles = family_of(section).circles
+    far = circles.centre_x + np.sqrt(np.maximum(circles.radius**2 - circles.centre_y**2, 0.0))
     assert (far > section.base_width - section.slope_zone + 0.5).sum() > 20
 
 
 @pytest.mark.parametrize("name", SECTIONS)
-def test_circles_leave_beyond_the_toe_enter_on_top_and_stay_above_the_depth(name):
+def test_circles_leave_and_enter_on_the_surface_and_stay_below_it(name):
     section = SECTIONS[name]
-    family = family_of(section)
-    assert (family.radius - family.centre_y <= DEPTH * (1.0 + 1e-12)).all()
-    leave = family.centre_x - np.sqrt(family.radius**2 - family.centre_y**2)
-    enter = family.centre_x + np.sqrt(family.radius**2 - (family.centre_y - section.height) ** 2)
-    assert (leave <= 1e-9 * family.radius).all()
-    assert (enter >= section.shoulder - 1e-9 * family.radius).all()
-    assert (enter <= section.base_width - section.shoulder + 1e-9 * family.radius).all()
-    assert (family.driving > 0.0).all()
+    circles = family_of(section).circles
+    slack = 1e-9 * circles.radius
+    assert (circles.touch <= DEPTH * (1.0 + 1e-12)).all()
+    for x, y in ((circles.exit_x, circles.exit_y), (circles.entry_x, circles.entry_y)):
+        on_circle = np.hypot(x - circles.centre_x, y - circles.centre_y)
+        assert (np.abs(on_circle - circles.radius) <= slack).all()
+    # a vertical side has no height of its own at its foot
+    face = (circles.exit_x == 0.0) & (section.side_slope == 0.0)
+    assert circles.exit_y[~face] == pytest.approx(surface(section, circles.exit_x)[~face], abs=1e-9)
+    short = circles.entry_x < section.base_width - 1e-9  # at a vertical far side it may enter at the edge
+    assert circles.entry_y[short] == pytest.approx(surface(section, circles.entry_x)[short], abs=1e-9)
+    assert (circles.entry_x <= section.base_width - section.shoulder + slack).all()
+    assert (circles.centre_y >= circles.entry_y).all()
+    assert (circles.driving > 0.0).all()
+    share = np.linspace(0.0, 1.0, 41)[1:-1, None]
+    x = circles.exit_x + share * (circles.entry_x - circles.exit_x)
+    arc = circles.centre_y - np.sqrt(np.maximum(circles.radius**2 - (x - circles.centre_x) ** 2, 0.0))
+    assert (arc <= surface(section, x) + slack + 1e-9 * section.height).all()
+
+
+def test_what_kinds_of_circles_there_are():
+    section = SECTIONS["berms"]
+    circles = family_of(section).circles
+    back = section.corners[2, 0]
+    kinds = {
+        "beyond the toe": circles.exit_x < 0.0,
+        "at the toe": (circles.exit_x == 0.0) & (circles.touch > 0.0),
+        "on the slope of the berm": (circles.exit_y > 0.0) & (circles.exit_y < 1.2),
+        "on the berm": (circles.exit_y == 1.2) & (circles.exit_x < back) & (circles.touch > 0.0),
+        "on the slope above it": (circles.exit_y > 1.2) & (circles.touch > 0.0),
+        "in the fill": circles.touch < 0.0,
+        "of the berm alone": circles.entry_y == 1.2,
+    }
+    assert {name: which.sum() > 20 for name, which in kinds.items()} == dict.fromkeys(kinds, True)
+    assert (circles.touch[circles.touch > 0.0] >= 0.2 - 1e-12).all()
+
+
+def test_fill_without_cohesion_has_no_circles_of_its_own():
+    with_own = candidate_circles(layout_of(SECTIONS["at full height"]))
+    without = candidate_circles(layout_of(SECTIONS["at full height"], within_fill=False))
+    assert (without.touch >= 0.2 - 1e-12).all()
+    assert len(without) == (with_own.touch > 0.0).sum()
+    inside = with_own.touch <= 0.0
+    assert (with_own.touch[inside] < 0.0).any()
+    shoulder = SECTIONS["at full height"].shoulder
+    below = with_own.centre_y - np.sqrt(with_own.radius**2 - (shoulder - with_own.centre_x) ** 2)
+    assert (SECTIONS["at full height"].height - below[inside] >= 0.2 - 1e-9).all()
 
 
 def test_arc_below_ground_level_in_closed_form():
     """Half-angle a from the vertical: cohesion R^2 2a, friction R^2 (a + sin a cos a)."""
-    family = family_of(SECTIONS["at full height"], frictional_ground=True)
+    family = family_of(SECTIONS["at full height"], frictional_ground=True, within_fill=False)
     for circle in some_circles(family):
-        radius = family.radius[circle]
-        a = np.arccos(family.centre_y[circle] / radius)
+        radius = family.circles.radius[circle]
+        a = np.arccos(family.circles.centre_y[circle] / radius)
         row = dense_row(family, circle, 2)
         arc = radius**2 * 2.0 * np.pi / ARC_POINTS
-        assert row[0].sum() == pytest.approx(radius**2 * 2.0 * a, abs=arc)
-        assert row[1].sum() == pytest.approx(radius**2 * (a + np.sin(a) * np.cos(a)), abs=arc)
+        # a circle that leaves on the slope crosses ground level twice
+        assert row[0].sum() == pytest.approx(radius**2 * 2.0 * a, abs=2.0 * arc)
+        assert row[1].sum() == pytest.approx(radius**2 * (a + np.sin(a) * np.cos(a)), abs=2.0 * arc)
 
 
 def test_frictional_columns_are_left_out_where_nothing_has_friction():
     with_friction = family_of(SECTIONS["at full height"], frictional_ground=True)
     without = family_of(SECTIONS["at full height"])
     n_slice = without.slice_edge.size - 1
-    assert without.column.max() < N_ZONE * n_slice <= with_friction.column.max()
-    assert np.array_equal(without.driving, with_friction.driving)
+    assert without.column.max() < without.n_zone * n_slice <= with_friction.column.max()
+    assert np.array_equal(without.circles.driving, with_friction.circles.driving)
 
 
 def test_some_circles_weighed_by_themselves_are_the_same():
@@ -150,7 +206,7 @@ def test_some_circles_weighed_by_themselves_are_the_same():
     keep[[3, 50, 51, 120]] = True
     part = weighed(layout, candidates[keep])
     assert part.n_circle == 4
-    assert part.driving.tolist() == family.driving[keep].tolist()
+    assert part.circles.driving.tolist() == family.circles.driving[keep].tolist()
     for new, old in enumerate(np.flatnonzero(keep)):
         assert np.array_equal(dense_row(part, new, 1), dense_row(family, old, 1))
 
@@ -162,8 +218,7 @@ def test_slices_end_and_circles_touch_at_layer_boundaries():
     assert {1.3, 4.1} <= set(layout.slice_edge.tolist())
     assert layout.slice_edge[[0, -1]].tolist() == plain.slice_edge[[0, -1]].tolist() == [0.0, DEPTH]
     assert (np.diff(layout.slice_edge) > 0.0).all()
-    circles = candidate_circles(layout)
-    touch = circles.radius - circles.centre_y
+    touch = candidate_circles(layout).touch
     for depth in (1.3, 4.1):
         assert (np.abs(touch - depth) < 1e-9).any()
     assert touch.max() <= DEPTH * (1.0 + 1e-12)

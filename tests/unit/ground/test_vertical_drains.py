@@ -55,7 +55,7 @@ def test_drains_hasten_settlement_and_leave_its_end_alone():
     _, plain = settlement(case())
     _, drained = settlement(case(drains()))
     assert (drained[2:] > plain[2:]).all()
-    site, state = state_of(case(drains(spacing=0.8)))
+    _, state = state_of(case(drains(spacing=0.8)))
     final = state.ground.load.stress[-1, 0] + state.ground.points.stress[0]
     assert state.consolidation.stress[0, -1] == pytest.approx(final, rel=1e-3)
 

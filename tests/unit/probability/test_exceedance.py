@@ -7,6 +7,7 @@ from probsoil.errors import ParameterError, ShapeError
 from probsoil.probability import (
     clopper_pearson,
     exceedance,
+    exceedance_curve,
     exceeding_counts,
     exceeds,
     probability_interval,
@@ -63,7 +64,46 @@ def test_every_realisation_exceeds():
     assert result.reliability_index is None
     assert result.reliability_interval[0] is None
     assert result.verdict == "beyond target"
+    assert result.unseen_bound == pytest.approx(0.05 ** (1 / 5000))
+
+
+def test_one_bound_decides_where_none_or_all_were_seen():
+    """Between the one-sided bound and the end of the two-sided interval, what is said in words counts."""
+    none = exceedance(np.zeros(1000), 1.0, "not more than", target=0.0033)
+    assert none.unseen_bound < 0.0033 < none.interval[1]
+    assert none.verdict == "within target"
+    every = exceedance(np.full(1000, 2.0), 1.0, "not more than", target=0.9967)
+    assert every.interval[0] < 0.9967 < every.unseen_bound
+    assert every.verdict == "beyond target"
+
+
+@pytest.mark.parametrize(
+    ("value", "probability", "verdict"), [(0.0, 0.0, "within target"), (2.0, 1.0, "beyond target")]
+)
+def test_where_nothing_is_uncertain_there_is_no_interval(value, probability, verdict):
+    values = np.full(50, value)
+    result = exceedance(values, 1.0, "not more than", target=0.01, method="Monte Carlo", certain=True)
+    assert result.interval == (probability, probability)
+    assert result.reliability_interval == (None, None)
     assert result.unseen_bound is None
+    assert result.verdict == verdict
+    assert result.method.startswith("Monte Carlo; no interval, because nothing is uncertain")
+    curve = exceedance_curve(values, "not more than", through=1.0, certain=True)
+    assert curve.low.tolist() == curve.high.tolist() == curve.probability.tolist()
+
+
+def test_replicated_points_never_put_the_limit_at_nought_or_one_where_both_were_seen():
+    """Two cases in sixteen replicates: t alone reaches below nought, where it knows nothing."""
+    counts = np.zeros((16, 3), dtype=np.int64)
+    counts[:2, 0] = 1
+    counts[:, 1] = 1000 - counts[:, 0]
+    counts[0, 2] = 900  # many cases, all in one replicate
+    found = probability_interval(counts, np.full(16, 1000))
+    low, high = clopper_pearson(counts.sum(axis=0), 16_000)
+    assert found.low[0] == low[0] > 0.0
+    assert found.high[1] == high[1] < 1.0
+    assert found.low[2] == low[2] > 0.0
+    assert found.method.tolist() == [2, 2, 1]
 
 
 def test_replicates_give_a_t_interval():

@@ -42,6 +42,18 @@ def quantiles(values: np.ndarray) -> dict[str, Any]:
     return found
 
 
+def median_interval(values: np.ndarray) -> list[float | None]:
+    """The normal approximation to the ranks will do here."""
+    order, half = np.sort(values), 0.98 * np.sqrt(values.size)
+    ends = [order[max(0, min(values.size - 1, round(0.5 * values.size + reach)))] for reach in (-half, half)]
+    return [float(end) if np.isfinite(end) else None for end in ends]
+
+
+def unseen(count: int, n: int) -> float | None:
+    bound = float(1 - 0.05 ** (1 / n))
+    return bound if count == 0 else 1 - bound if count == n else None
+
+
 def curve(values: np.ndarray, sense: str, threshold: float, step: float) -> dict[str, Any]:
     finite = values[np.isfinite(values)]
     span = (float(finite.min()), float(finite.max()))
@@ -95,15 +107,17 @@ def limit(name: str, values: np.ndarray, threshold: float, step: float, **more: 
         ],
         "method": "Monte Carlo, exact binomial interval",
         "model_runs": values.size,
-        "unseen_bound": None if count else float(1 - 0.05 ** (1 / values.size)),
+        "unseen_bound": unseen(count, values.size),
         "target_probability": target,
         "verdict": verdict,
         "cost_if_exceeded": None,
         "expected_cost": None if cost is None else cost * probability,
+        "expected_cost_interval": None if cost is None else [cost * low, cost * high],
         "summary": {
             "mean": float(values.mean()) if np.isfinite(values).all() else None,
-            "sd": float(values.std(ddof=1)) if np.isfinite(values).all() else None,
+            "sd": float(values.std(ddof=min(1, values.size - 1))) if np.isfinite(values).all() else None,
             "quantiles": quantiles(values),
+            "median_interval": median_interval(values),
         },
         "curve": curve(values, sense, threshold, step),
     }
@@ -228,6 +242,7 @@ def slip(rng: np.random.Generator, safety: np.ndarray) -> list[dict[str, Any]]:
                 "mean": float(values.mean()),
                 "quantiles": quantiles(values),
                 "probability_below_one": float(np.mean(values < 1.0)),
+                "interval_below_one": interval(int(np.count_nonzero(values < 1.0)), values.size),
             }
         )
     return rows

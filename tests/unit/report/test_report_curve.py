@@ -6,7 +6,7 @@ import pytest
 from sample_results import interval, sample
 
 from probsoil.errors import ResultsError
-from probsoil.report import text
+from probsoil.report import chance, text
 from probsoil.report.curve import curve_steps, curve_view
 
 
@@ -19,8 +19,8 @@ def results():
 def test_slider_starts_at_the_headline_to_the_digit(results, place):
     limit = results["limits"][place]
     data = json.loads(curve_view(place + 1, limit, results)["json"])
-    _, chance, bounds, count = data["read"][data["start"]]
-    assert f"{chance} ({bounds})" == text.chance_text(limit, results)
+    _, share, bounds, count = data["read"][data["start"]]
+    assert f"{share} ({bounds})" == chance.chance_text(limit, results)
     assert count == text.count_text(limit["exceeding"])
     assert float(data["value"][data["start"]]) == limit["threshold"]
 
@@ -34,6 +34,8 @@ def test_every_step_reads_its_own_count_and_interval(results, place):
     for step, count, low, high in zip(steps, *bounds, strict=True):
         assert step.count == f"{count:,d}"
         assert step.interval == text.interval_text(count / 20_000, low, high)
+        assert step.margin == chance.margin_text(count / 20_000, [low, high], 20_000, 0.95)
+        assert (step.margin == step.interval) == (0 < count < 20_000)
         said = text.probability_text(count / 20_000, 20_000)
         assert step.chance == said.removesuffix(" of 20,000 realisations")
         assert step.chance in {"none", "all"} or 0 < count < 20_000

@@ -117,6 +117,48 @@ def test_settlement_without_stages_or_with_gaps_still_draws(results):
     assert "settlement" in figures({"limits": results["limits"], "settlement": data})
 
 
+def labels_of_limits(drawing):
+    """The words on limits in a figure and the height each stands at, from the top."""
+    found = {}
+    for element in ET.fromstring(drawing).iter(f"{SVG}text"):
+        word = "".join(element.itertext())
+        if word.startswith("limit"):
+            found[word] = float(
+                element.get("y") or re.search(r"[-\d.]+\)?$", element.get("transform")).group().rstrip(")")
+            )
+    return found
+
+
+def test_limits_at_one_time_keep_their_labels_apart(results):
+    one = results["limits"][1]
+    near = [one | {"threshold": one["threshold"] + shift} for shift in (0.0, 0.004, 0.01)]
+    heights = labels_of_limits(figures(results | {"limits": near})["settlement"])
+    assert sorted(heights) == ["limit 1", "limit 2", "limit 3"]
+    order = [heights[name] for name in sorted(heights)]
+    assert all(after - before > 9.0 for before, after in pairwise(order))  # font size
+
+
+def test_limits_at_one_point_share_a_label_and_those_off_the_axis_stand_apart(results):
+    one = results["limits"][1]
+    drawing = figures(results | {"limits": [one, one]})["settlement"]
+    assert list(labels_of_limits(drawing)) == ["limits 1 and 2"]
+    deep = [one | {"threshold": threshold} for threshold in (8.0, 9.0)]
+    heights = labels_of_limits(figures(results | {"limits": deep})["settlement"])
+    assert sorted(heights) == ["limit 1 is deeper", "limit 2 is deeper"]
+    assert heights["limit 2 is deeper"] - heights["limit 1 is deeper"] > 9.0
+
+
+def test_few_realisations_have_no_band_from_5_to_95_percent(results):
+    data = results["settlement"]
+    nothing = [None] * len(data["times"])
+    few = data | {"realisations": 10, "quantiles": data["quantiles"] | {"0.05": nothing, "0.95": nothing}}
+    slip = [row | {"quantiles": row["quantiles"] | {"0.05": None, "0.95": None}} for row in results["slip"]]
+    drawn = figures(results | {"settlement": few, "slip": slip, "realisations": 10})
+    assert "5 to 95 %" not in drawn["settlement"]
+    assert "25 to 75 %" in drawn["settlement"]
+    assert "5 to 95 %" not in drawn["slip"]
+
+
 def test_a_limit_deeper_than_the_axis_is_said_to_be(results):
     limits = [results["limits"][1] | {"threshold": 50.0}]
     drawing = figures({"limits": limits, "settlement": results["settlement"]})["settlement"]
@@ -162,7 +204,7 @@ def test_band_without_a_number_anywhere_still_draws(results):
 
 def test_stage_without_a_median_says_so(results):
     rows = [row | {"quantiles": dict.fromkeys(row["quantiles"]), "mean": None} for row in results["slip"]]
-    drawing = figures({"limits": [], "slip": rows})["slip"]
+    drawing = figures({"limits": [], "slip": rows, "realisations": 20_000})["slip"]
     assert drawing.count("median beyond the computation") >= len(rows)
 
 

@@ -16,7 +16,7 @@ import pytest
 from sample_results import drivers, limit, ranked_by, sample
 
 from probsoil.errors import ResultsError
-from probsoil.report import render_report, text, write_report
+from probsoil.report import chance, render_report, text, write_report
 
 VOID = {"meta", "link", "br", "hr", "img", "input", "wbr"}
 
@@ -80,14 +80,13 @@ def page(rendered):
 
 def test_headline_table_and_first_reading_agree(results, page):
     for entry in results["limits"]:
-        assert text.verdict_sentence(entry, results) in page.text
-        chance = text.probability_text(entry["probability"], 20_000)
+        assert chance.verdict_sentence(entry, results) in page.text
+        said = text.probability_text(entry["probability"], 20_000)
         bounds = text.interval_text(entry["probability"], *entry["interval"])
-        assert (
-            f"{chance} {bounds} {'none' if entry['target_probability'] is None else ''}".strip() in page.text
-        )
-        assert f"interval {bounds} {entry['exceeding']:,d} of 20,000 realisations" in page.text
-    assert text.overall_sentence(results) in page.text
+        assert f"{said} {bounds} {'none' if entry['target_probability'] is None else ''}".strip() in page.text
+        margin = chance.margin_text(entry["probability"], entry["interval"], 20_000, 0.95)
+        assert f"with 95 % confidence {margin} {entry['exceeding']:,d} of 20,000 realisations" in page.text
+    assert chance.overall_sentence(results) in page.text
 
 
 def test_same_results_same_bytes(results, rendered):
@@ -188,53 +187,192 @@ def test_awkward_names_are_text_everywhere(results):
     assert html.escape("{{ 7*7 }}") in rendered
 
 
-OPTIONAL = (
-    *("seed", "draws", "confidence", "currency", "settlement", "slip", "drivers", "driver_quality", "ground"),
-    *("parameters", "dependence", "discretisation", "warnings", "assumptions", "cautions", "provenance"),
+@pytest.mark.parametrize(
+    "key",
+    ["slip", "drivers", "driver_quality", "parameters", "dependence", "warnings", "assumptions", "cautions"],
 )
-
-
-@pytest.mark.parametrize("key", OPTIONAL)
-@pytest.mark.parametrize("empty", [False, True], ids=["absent", "null"])
-def test_page_holds_without_any_one_part(results, key, empty):
-    first = results | {"limits": results["limits"][:1]}
-    less = {name: value for name, value in first.items() if name != key} | ({key: None} if empty else {})
-    shown = Page(render_report(less))
-    assert text.verdict_sentence(results["limits"][0], results) in shown.text
-    assert "None" not in shown.text
-
-
-def test_page_holds_with_nothing_but_the_limits(results):
-    bare = {"format": 1, "kind": "assess", "title": "bare", "realisations": 20_000, "limits": []}
-    assert "The scenario sets no limits." in Page(render_report(bare)).text
-    needed = ("name", "quantity", "unit", "sense", "threshold", "probability", "interval", "exceeding")
-    bare["limits"] = [{key: results["limits"][0][key] for key in needed}]
-    shown = Page(render_report(bare)).text
-    assert (
-        "No target set: the chance that the settlement is more than 0.10 m is 10.8 %, about 1 in 9." in shown
-    )
+def test_page_holds_with_any_one_list_empty(results, key):
+    first = copy.deepcopy(results) | {"limits": results["limits"][:1]}
+    name = first["limits"][0]["name"]
+    for part in ("drivers", "driver_quality"):
+        first[part] = [row for row in first[part] if row["limit"] == name]
+    shown = Page(render_report(first | {key: []})).text
+    assert chance.verdict_sentence(first["limits"][0], results) in shown
     assert "None" not in shown
 
 
-@pytest.mark.parametrize(
-    "key", ["reliability_index", "reliability_interval", "summary", "curve", "method", "time_text"]
-)
-def test_limit_holds_with_a_null_in_each_optional_key(results, key):
-    bare = {name: results[name] for name in ("format", "kind", "title", "realisations")}
-    assert "None" not in Page(render_report(bare | {"limits": [results["limits"][0] | {key: None}]})).text
+def test_null_where_the_format_has_it_is_never_printed(results):
+    bare = only(
+        results, results["limits"][0] | {"reliability_index": None, "reliability_interval": [None, None]}
+    )
+    bare["provenance"] = results["provenance"] | {"command": None}
+    assert "None" not in Page(render_report(bare)).text
 
 
-def test_none_and_all_exceeding(results):
+def only(results, *limits):
+    """The results with these limits and no drivers."""
+    return results | {"limits": list(limits), "drivers": [], "driver_quality": []}
+
+
+def test_none_and_all_exceeding_say_one_bound_and_keep_the_interval_to_tables(results):
     spread = np.linspace(0.2, 0.3, 20_000)
-    some = {"time": {"at": 30.0}, "time_text": "at 30 years"}
+    some = {"time": {"at": 30.0}, "time_text": "at 30 years", "cost_if_exceeded": 2.5e6}
     limits = [
         limit("never", spread, 0.5, 0.002, target_probability=1e-3, **some),
         limit("always", spread, 0.1, 0.002, target_probability=1e-3, **some),
     ]
-    shown = Page(render_report(results | {"limits": limits, "drivers": [], "driver_quality": []})).text
-    assert "in none of 20,000 realisations, so the chance is below 0.019 % with 95 % confidence" in shown
-    assert "in all of 20,000 realisations, so the chance is above 99.981 % with 95 % confidence" in shown
-    assert "with 95 % confidence the chance is at most 0.015 %" in shown  # about 3 / n
+    shown = Page(render_report(only(results, *limits))).text
+    assert "in none of 20,000 realisations, so the chance is below 0.015 % with 95 % confidence" in shown
+    assert "in all of 20,000 realisations, so the chance is above 99.985 % with 95 % confidence" in shown
+    assert (
+        "0 of 20,000 realisations exceed the limit; with 95 % confidence the chance is below 0.015 %" in shown
+    )
+    assert "times the chance, below EUR 375 with 95 % confidence" in shown
+    assert "times the chance, above EUR 2,490,000 with 95 % confidence" in shown
+    assert "none of 20,000 realisations 0 to 0.019 %" in shown  # the table of limits
+    assert "all of 20,000 realisations 99.981 to 100 %" in shown
+    assert "below 0.019 %" not in shown
+    assert "gives the one-sided bound" in shown.replace("give the", "gives the")
+    assert shown.count("limit 1: below 0.015 %") == 1  # under sampling
+
+
+def test_costs_have_intervals_and_may_be_added(results, page):
+    first = results["limits"][0]
+    shares = (first["probability"], *first["interval"])
+    mid, low, high = (f"{float(f'{900e3 * share:.3g}'):,.0f}" for share in shares)
+    expected = f"EUR {mid} ({low} to {high})"
+    assert f"EUR 900,000 if exceeded; times the chance, {expected}" in page.text
+    assert "may be added up over the limits, also where limits are exceeded together" in page.text
+    assert "Their intervals may not be added." in page.text
+    one = Page(render_report(only(results, first))).text
+    assert "may be added up" not in one
+
+
+def certain(results, probability):
+    """The results of a scenario in which nothing is uncertain."""
+    entry = limit("fixed", np.full(50, 0.3), 0.4 if probability == 0 else 0.2, 0.002, target_probability=0.01,
+                  time={"at": 30.0}, time_text="at 30 years", cost_if_exceeded=1000.0)  # fmt: skip
+    curve = entry["curve"] | {"low": entry["curve"]["probability"], "high": entry["curve"]["probability"]}
+    entry |= {
+        "interval": [probability, probability],
+        "reliability_interval": [None, None],
+        "unseen_bound": None,
+        "verdict": "beyond target" if probability else "within target",
+        "curve": curve,
+    }
+    quality = {
+        "limit": "fixed",
+        "ranked_by": "spread",
+        "exceeding": 0,
+        "r_squared": None,
+        "note": "no parameter is uncertain",
+    }
+    wild = only(results, entry) | {"driver_quality": [quality], "parameters": [], "dependence": []}
+    return wild | {"realisations": 50}
+
+
+@pytest.mark.parametrize(
+    ("probability", "said", "cost"),
+    [
+        (0.0, "with its values the settlement at 30 years is not more than 0.40 m.", "which it is not"),
+        (1.0, "with its values the settlement at 30 years is more than 0.20 m.", "which it is"),
+    ],
+)
+def test_a_scenario_without_anything_uncertain_is_said_to_be_one(results, probability, said, cost):
+    shown = Page(render_report(certain(results, probability))).text
+    assert f"nothing in this scenario is uncertain, and {said}" in shown
+    assert f"EUR 1,000 if exceeded, {cost} " in shown
+    assert "0.300 m in every realisation" in shown
+    assert "no interval: nothing is uncertain" in shown
+    assert "No parameter is uncertain: every realisation is the same calculation." in shown
+    assert "so other realisations would give the same" in shown
+    assert "% confidence" not in shown
+
+
+def few(results, n):
+    entry = limit("few", np.linspace(0.2, 0.3, n), 0.4, 0.002, time={"at": 30.0}, time_text="at 30 years")
+    settlement = results["settlement"] | {"realisations": n}
+    return only(results, entry) | {"realisations": n, "settlement": settlement}
+
+
+def test_bands_are_withheld_below_forty_realisations_and_it_is_said_why(results):
+    rendered = render_report(few(results, 39))
+    shown = Page(rendered).text
+    assert "no range from the 5 % to the 95 % point, which 39 realisations cannot give" in shown
+    assert "The band from 5 to 95 % is left out: with fewer than 40 realisations" in shown
+    assert "mean 0 too few realisations 0.000" in shown
+    assert "nine times in ten" not in shown
+    assert "5 to 95 % 0" not in shown
+    enough = Page(render_report(few(results, 40))).text
+    assert "too few" not in enough
+    assert "nine times in ten between" in enough
+
+
+def test_one_realisation_is_one(results):
+    shown = Page(render_report(few(results, 1))).text
+    assert not re.search(r"(?<![\d,])1 realisations", shown)
+    assert "in none of 1 realisation, so the chance is below 95.0 %" in shown
+
+
+def test_median_says_its_realisations_and_its_interval(results, page):
+    low, high = results["limits"][0]["summary"]["median_interval"]
+    median = results["limits"][0]["summary"]["quantiles"]["0.5"]
+    assert (
+        f"median of 20,000 realisations {median:.3f} m ({low:.3f} m to {high:.3f} m with 95 % confidence)"
+        in page.text
+    )
+
+
+def test_diamond_is_spoken_of_where_there_is_one(results, page):
+    assert "A diamond is a limit" in page.text
+    assert "A diamond" not in Page(render_report(only(results, results["limits"][0]))).text
+
+
+def test_last_row_of_settlement_is_explained_where_it_rests_on_more_realisations(results, page):
+    assert "final" not in page.text.split("A selection of times")[0].split("Settlement [m] against time")[1]
+    fewer = results | {"settlement": results["settlement"] | {"realisations": 16_384}}
+    shown = Page(render_report(fewer)).text
+    assert "30, all 20,000 realisations " in shown
+    assert "A selection of times, from 16,384 realisations" in shown
+
+
+def test_warnings_say_what_their_share_is_of(results):
+    rows = [
+        {
+            "code": "slipped_before",
+            "message": "realisations that slip",
+            "share": 0.02,
+            "share_of": "all realisations",
+        },
+        {"code": "circles", "message": "circles differ", "share": 0.013, "share_of": "the factor of safety"},
+    ]
+    shown = Page(render_report(results | {"warnings": rows})).text
+    assert "Realisations that slip (2.0 % of all realisations)." in shown
+    assert "Circles differ (relative error, 1.3 % of the factor of safety)." in shown
+
+
+def test_numbers_in_descriptions_read_as_in_tables(results):
+    wild = copy.deepcopy(results)
+    wild["parameters"][0]["text"] = "lognormal, mean 2e-09 m/s, cov 0.6"
+    wild["ground"]["layers"][0]["properties"][0]["text"] = "fixed at 33 degree"
+    shown = Page(render_report(wild)).text
+    assert "lognormal, mean 2 × 10⁻⁹ m/s, cov 0.6" in shown
+    assert "fixed at 33 degrees" in shown
+    assert "e-09" not in shown
+
+
+def test_slip_shares_have_intervals(results):
+    slip = [results["slip"][0] | {"probability_below_one": 0.013, "interval_below_one": [0.011, 0.015]}]
+    assert "1.3 % 1.1 to 1.5 %" in Page(render_report(results | {"slip": slip})).text
+
+
+def test_errors_of_the_computation_say_what_they_are_of(results):
+    grid = results["discretisation"] | {"realisations": 1, "settlement_error": 0.0002}
+    shown = Page(render_report(results | {"discretisation": grid})).text
+    assert "1 realisation was repeated on a finer grid" in shown
+    assert "is put at 0.001 m, and at 0.21 % of the final settlement" in shown
+    assert "differed by at most 0.60 % of that over a denser family of circles" in shown
+    assert "too high if anything" in shown
 
 
 def test_failures_to_converge_and_to_reach_are_said(results):
@@ -328,7 +466,7 @@ def test_every_driver_without_a_rank_is_told_for_what_it_is(results, share, meas
 
 def test_quantiles_on_realisations_without_a_number_are_said_in_words(results):
     wild = copy.deepcopy(results)
-    wild["limits"] = [wild["limits"][0], wild["limits"][3]]
+    wild = only(wild, wild["limits"][0], wild["limits"][3])
     for entry in wild["limits"]:
         entry["summary"] |= {"mean": None, "sd": None}
         entry["summary"]["quantiles"] |= {"0.75": None, "0.95": None}
@@ -337,14 +475,21 @@ def test_quantiles_on_realisations_without_a_number_are_said_in_words(results):
     wild["slip"][0]["quantiles"] = dict.fromkeys(wild["slip"][0]["quantiles"])
     wild["slip"][0]["mean"] = None
     shown = Page(render_report(wild)).text
-    assert re.search(r"median 0\.\d+ years; 5 % point 0\.\d+ years, 95 % point not reached", shown)
-    assert re.search(r"median 0\.\d+ m; 5 % point 0\.\d+ m, 95 % point beyond the computation", shown)
+    assert re.search(
+        r"median of 20,000 realisations 0\.\d+ years \(.{1,60}\); 5 % point 0\.\d+ years, 95 % point not",
+        shown,
+    )
+    assert re.search(
+        r"median of 20,000 realisations 0\.\d+ m \(.{1,60}\); 5 % point 0\.\d+ m, 95 % point beyond",
+        shown,
+    )
     assert re.search(r"is 0\.\d+ m \(5 % point 0\.\d+ m, 95 % point beyond the computation\)", shown)
     assert "first lift 0.077 1.50" + 6 * " beyond the computation" in shown
     assert "median beyond the computation, 5 to 95 % beyond the computation to beyond" in shown
     wild["limits"][1]["summary"]["quantiles"] = dict.fromkeys(("0.05", "0.25", "0.5", "0.75", "0.95"))
     shown = Page(render_report(wild)).text
-    assert "median not reached; 5 % point not reached, 95 % point not reached" in shown
+    assert "median of 20,000 realisations not reached (" in shown
+    assert "); 5 % point not reached, 95 % point not reached" in shown
     assert "not more than 2 years not reached" in shown  # in the table of limits
 
 
@@ -359,7 +504,7 @@ def test_area_load_without_slip_has_no_slip_section(results):
 def test_twelve_limits_and_one_layer(results):
     limits = [results["limits"][k % 4] | {"name": f"limit no {k}"} for k in range(12)]
     ground = results["ground"] | {"layers": results["ground"]["layers"][1:2]}
-    shown = Page(render_report(results | {"limits": limits, "ground": ground}))
+    shown = Page(render_report(only(results, *limits) | {"ground": ground}))
     assert len(shown.all("output")) == 12
     assert "Of the 12 limits, 3 are beyond their target chances" in shown.text
 
@@ -378,6 +523,7 @@ def test_limit_without_exceedances_has_drivers_without_numbers(results):
     }  # fmt: skip
     quality = {
         "limit": nothing["limit"],
+        "ranked_by": "spread",
         "exceeding": 0,
         "r_squared": None,
         "note": "no realisation exceeds the limit",
@@ -398,9 +544,8 @@ def test_limit_without_exceedances_has_drivers_without_numbers(results):
     ],
 )
 def test_physical_range_in_words(results, low, high, said):
-    bare = {name: results[name] for name in ("format", "kind", "title", "realisations")}
     rows = [results["parameters"][0] | {"low": low, "high": high}]
-    assert f" {said}, cut nothing " in Page(render_report(bare | {"limits": [], "parameters": rows})).text
+    assert f" {said}, cut nothing " in Page(render_report(results | {"parameters": rows})).text
 
 
 def test_written_page_equals_the_rendered_one(results, rendered, tmp_path):
@@ -414,8 +559,8 @@ def test_written_page_equals_the_rendered_one(results, rendered, tmp_path):
 
 
 def test_infinity_in_a_results_file_is_read_as_missing(results, tmp_path):
-    limits = [results["limits"][0] | {"reliability_index": float("inf")}]
-    (tmp_path / "results.json").write_text(json.dumps(results | {"limits": limits}), encoding="utf-8")
+    wild = only(results, results["limits"][0] | {"reliability_index": float("inf")})
+    (tmp_path / "results.json").write_text(json.dumps(wild), encoding="utf-8")
     assert "inf" not in Page(write_report(tmp_path).read_text(encoding="utf-8")).text.split()
 
 
@@ -426,7 +571,7 @@ def test_infinity_in_a_results_file_is_read_as_missing(results, tmp_path):
         ("{", "is not a results file"),
         ("[]", "not the results of an assessment in format 1"),
         ('{"format": 2, "kind": "assess"}', "not the results of an assessment in format 1"),
-        ('{"format": 1, "kind": "assess", "title": "t"}', "no realisations, limits in the results"),
+        ('{"format": 1, "kind": "assess", "title": "t"}', "seed is missing"),
     ],
 )
 def test_wrong_results_are_refused(tmp_path, content, message):

@@ -86,3 +86,25 @@ def test_drivers_say_what_ranks_and_what_is_clear(results, tmp_path):
 def test_missing_parts_give_empty_tables(results):
     frames = tables({"limits": results["limits"]})
     assert [len(frames[name]) for name in ("limits", "drivers", "settlement", "parameters")] == [4, 0, 0, 0]
+
+
+def test_costs_and_medians_have_their_limits(results, tmp_path):
+    write_tables(results, tmp_path)
+    frame = pd.read_csv(tmp_path / "limits.csv")
+    first = results["limits"][0]
+    low, high = first["interval"]
+    ends = frame.loc[0, ["expected cost low [EUR]", "expected cost high [EUR]"]].tolist()
+    assert ends == pytest.approx([900e3 * low, 900e3 * high], rel=1e-12)
+    assert frame.loc[0, ["p50 low [unit]", "p50 high [unit]"]].tolist() == first["summary"]["median_interval"]
+
+
+def test_tails_of_few_realisations_are_withheld_in_words(results, tmp_path):
+    limits = [results["limits"][0] | {"model_runs": 39, "summary": {"median_interval": [None, None]}}]
+    settlement = results["settlement"] | {"realisations": 39}
+    write_tables(results | {"limits": limits, "settlement": settlement}, tmp_path)
+    frame = pd.read_csv(tmp_path / "limits.csv", dtype=str)
+    for column in ("p05 [unit]", "p95 [unit]", "p50 low [unit]", "p50 high [unit]"):
+        assert frame[column].tolist() == ["too few realisations"]
+    band = pd.read_csv(tmp_path / "settlement.csv", dtype=str)
+    assert set(band["p05 [m]"]) == set(band["p95 [m]"]) == {"too few realisations"}
+    assert float(band["p50 [m]"].iloc[-1]) == settlement["quantiles"]["0.5"][-1]

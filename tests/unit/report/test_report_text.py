@@ -5,7 +5,10 @@ import math
 import pytest
 from sample_results import interval, sample
 
-from probsoil.report import text
+from probsoil import probability
+from probsoil.report import chance, text
+from probsoil.report.numerals import money_text, rough_money_text
+from probsoil.report.percentages import bound_text, odds_text, unseen_bound
 
 
 @pytest.mark.parametrize(
@@ -81,9 +84,28 @@ def test_none_and_all_are_never_called_0_or_100_percent():
 def test_bounds_are_rounded_outwards():
     low, high = interval(0)
     assert (low, round(high, 8)) == (0.0, 0.00018443)
-    assert text.interval_text(0.0, low, high) == "below 0.019 %"
+    assert text.interval_text(0.0, low, high) == "0 to 0.019 %"
     low, high = interval(20_000)
-    assert text.interval_text(1.0, low, high) == "above 99.981 %"
+    assert text.interval_text(1.0, low, high) == "99.981 to 100 %"
+
+
+@pytest.mark.parametrize("n", [1, 2, 3, 9, 10, 57, 300, 2999, 20_000, 123_456])
+def test_bound_is_the_one_sided_one_rounded_outwards_by_less_than_its_last_digit(n):
+    bound = unseen_bound(n, 0.95)
+    assert bound == pytest.approx(probability.unseen_bound(n, 0.95), rel=1e-12)
+    for estimate, word, exact in ((0.0, "below", bound), (1.0, "above", 1.0 - bound)):
+        said, shown = bound_text(estimate, bound).removesuffix(" %").split()
+        assert said == word
+        last = 10.0 ** -len(shown.partition(".")[2])
+        beyond = (float(shown) - 100.0 * exact) * (1 if word == "below" else -1)
+        assert -1e-9 <= beyond < last
+
+
+def test_an_end_that_is_neither_nought_nor_all_is_never_written_so():
+    assert text.interval_text(0.001, 2.53e-5, 5.56e-3) == "0.0025 to 0.56 %"
+    assert text.interval_text(0.999, 1.0 - 5.56e-3, 1.0 - 2.53e-5) == "99.44 to 99.9975 %"
+    assert text.interval_text(0.001, 0.0, 5.56e-3) == "0 to 0.56 %"
+    assert text.interval_text(0.5, 0.5, 0.5) == "none"
 
 
 def test_interval_has_the_decimals_of_its_probability():
@@ -96,7 +118,7 @@ def test_interval_has_the_decimals_of_its_probability():
     [(0.124, "about 1 in 8"), (0.0007, "about 1 in 1,400"), (0.5, "about 1 in 2"), (0.51, ""), (0.0, "")],
 )
 def test_odds(probability, expected):
-    assert text.odds_text(probability) == expected
+    assert odds_text(probability) == expected
 
 
 def test_threshold_is_written_as_it_was_given_and_curve_thresholds_as_finely_as_their_step():
@@ -143,13 +165,13 @@ def test_event_without_a_time_text_is_made_from_the_times():
 def test_verdict_sentence_opens_with_the_verdict(verdict, expected):
     results = sample(n=500)
     limit = results["limits"][0] | {"verdict": verdict}
-    sentence = text.verdict_sentence(limit, results)
+    sentence = chance.verdict_sentence(limit, results)
     assert sentence.startswith(expected)
     assert ("more realisations are needed" in sentence) == (verdict == "not conclusive")
 
 
 @pytest.mark.parametrize(
-    ("probability", "word", "bound"), [(0.0, "none", "below 0.019 %"), (1.0, "all", "above 99.981 %")]
+    ("probability", "word", "bound"), [(0.0, "none", "below 0.015 %"), (1.0, "all", "above 99.985 %")]
 )
 def test_verdict_sentence_when_none_or_all_exceed(probability, word, bound):
     results = sample()
@@ -159,19 +181,21 @@ def test_verdict_sentence_when_none_or_all_exceed(probability, word, bound):
         "interval": interval(count),
         "exceeding": count,
     }
-    sentence = text.verdict_sentence(limit, results)
+    sentence = chance.verdict_sentence(limit, results)
     assert f"in {word} of 20,000 realisations, so the chance is {bound} with 95 % confidence." in sentence
-    assert text.chance_text(limit, results) == f"{word} of 20,000 realisations ({bound} with 95 % confidence)"
+    assert (
+        chance.chance_text(limit, results) == f"{word} of 20,000 realisations ({bound} with 95 % confidence)"
+    )
 
 
 def test_overall_sentence_counts_the_verdicts():
     results = sample()
-    assert text.overall_sentence(results) == (
+    assert chance.overall_sentence(results) == (
         "Of the 4 limits, 1 is beyond its target chance, 1 is not conclusive, 1 is within its target chance "
         "and 1 has no target."
     )
     results["limits"] = results["limits"][:1]
-    assert text.overall_sentence(results) == "The one limit is beyond its target chance."
+    assert chance.overall_sentence(results) == "The one limit is beyond its target chance."
 
 
 @pytest.mark.parametrize(
@@ -198,13 +222,19 @@ def test_pair_text(ends, expected):
 )
 def test_range_text(low, high, expected):
     beyond = text.uncomputed_text("time_to_consolidation")
-    assert text.range_text(low, high, "years", beyond) == expected
+    assert text.range_text(low, high, "years", 40, beyond) == expected
+    assert text.range_text(low, high, "years", 39, beyond).startswith("no range from the 5 %")
     assert text.uncomputed_text("slip_safety") == "beyond the computation"
 
 
 def test_money_and_lists():
-    assert text.money_text(900e3, "EUR") == "EUR 900,000"
-    assert text.money_text(None, "EUR") == "not available"
+    assert money_text(900e3, "EUR") == "EUR 900,000"
+    assert money_text(None, "EUR") == "not available"
+    assert rough_money_text(202_612.0, "EUR") == "EUR 203,000"
+    assert rough_money_text(12_961.2, "EUR", up=True) == "EUR 13,000"
+    assert rough_money_text(12_961.2, "EUR", down=True) == "EUR 12,900"
+    assert rough_money_text(99.6, "") == "100"
+    assert rough_money_text(None, "EUR") == "not available"
     assert text.list_text([]) == ""
     assert text.list_text(["a"]) == "a"
     assert text.list_text(["a", "b", "c"]) == "a, b and c"
@@ -213,5 +243,7 @@ def test_money_and_lists():
 def test_units_are_left_off_pure_numbers_and_missing_ones():
     assert text.value_text(0.41234, "m") == "0.412 m"
     assert text.value_text(1.372, "-") == "1.37"
+    assert text.value_text(0.0002, "m") == "less than 0.001 m"
+    assert text.value_text(-0.0002, "m") == text.value_text(0.0, "m") == "0.000 m"
     assert text.value_text(None, "m") == "not available"
     assert text.with_unit("3", "kPa") == "3 kPa"

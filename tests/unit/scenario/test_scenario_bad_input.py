@@ -142,11 +142,19 @@ CASES = {
     ),
     "quantity of a later version": Spoiled(
         SLIP,
-        'quantity = "bearing_safety"\nnot_less_than = 1.0',
-        '"bearing_safety"',
+        'quantity = "angular_distortion"\nnot_less_than = 1.0',
+        '"angular_distortion"',
         'limits[2].quantity (limit "slip")',
         "not computed in this version",
         allowed="slip_safety",
+    ),
+    "bearing of an embankment": Spoiled(
+        SLIP,
+        'quantity = "bearing_safety"\nnot_less_than = 1.0',
+        '"bearing_safety"',
+        'limits[2].quantity (limit "slip")',
+        "bearing failure is for a foundation",
+        allowed='"strip", "rectangle" or "circle"',
     ),
     "format of a later version": Spoiled(
         "format = 1", "format = 2", "2", "format", "this version reads format = 1"
@@ -707,4 +715,4 @@ def test_drains_wrongly_given(base_text, old, new, key, message):
     text = base_text.replace("[load]", DRAINS.replace(old, new) + "\n[load]", 1)
     with pytest.raises(ScenarioError, match=message) as caught:
         parse_scenario(text)
-    assert [fault.key for fault in caught.value.faults][0].startswith(key)
+    assert caught.value.faults[0].key.startswith(key)

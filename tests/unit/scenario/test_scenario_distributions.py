@@ -84,7 +84,8 @@ def test_other_forms():
     [
         ({"dist": "normal", "mean": 1, "sd": 0}, ("sd",), "sd is 0"),
         ({"dist": "normal", "mean": -1, "cov": 0.1}, ("mean",), "needs a mean above 0"),
-        ({"dist": "lognormal", "mean": -1, "sd": 0.1}, ("mean",), "must be above 0"),
+        ({"dist": "lognormal", "mean": -1, "sd": 0.1}, ("mean",), "is never negative"),
+        ({"dist": "lognormal", "mean": -1, "cov": 0.1}, ("mean",), "is never negative"),
         ({"dist": "lognormal", "mean": 1, "sd": 100}, ("sd",), "too large for this mean"),
         ({"dist": "lognormal", "median": 1, "log_sd": 4}, ("log_sd",), "log_sd is 4"),
         ({"dist": "uniform", "low": 2, "high": 2}, ("high",), "high is 2 and low is 2"),

@@ -7,7 +7,7 @@ from pathlib import Path
 import jsonschema
 import pytest
 
-from probsoil.scenario import parse_scenario, scenario_schema, starter_text
+from probsoil.scenario import STARTERS, parse_scenario, scenario_schema, starter_text
 from probsoil.units import KINDS, tabulated_units
 
 DEMOS = Path(__file__).parents[3] / "scenarios"
@@ -33,7 +33,8 @@ def test_demos_pass(file, validator):
 
 
 def test_starter_and_base_pass(validator, base_text):
-    validator.validate(tomllib.loads(starter_text("embankment")))
+    for kind in STARTERS:
+        validator.validate(tomllib.loads(starter_text(kind)))
     validator.validate(tomllib.loads(base_text))
 
 

@@ -198,19 +198,41 @@ def test_values_that_are_not_finite_leave_the_fit_and_are_counted():
 def test_shares_of_a_curved_quantity_carry_a_warning():
     result = drivers(sums_of(chunks(4000), 1.5, lambda z: z[:, 0] + z[:, 1] ** 2), CORRELATION, NAMES)
     assert result.r_squared < 0.9
-    assert "the shares are of the part of the quantity that is linear" in result.note
+    assert "the part of the quantity that follows the parameters in a straight line" in result.note
 
 
-@pytest.mark.parametrize("function", [lambda z: np.full(len(z), 3.0), lambda z: np.full(len(z), np.nan)])
-def test_a_quantity_that_does_not_vary_has_no_shares(function):
+@pytest.mark.parametrize(
+    ("function", "why"),
+    [
+        (lambda z: np.full(len(z), 3.0), "the quantity does not vary"),
+        (lambda z: np.full(len(z), np.nan), "0 realisations with a finite value are too few"),
+    ],
+)
+def test_a_quantity_that_does_not_vary_has_no_shares(function, why):
     result = drivers(sums_of(chunks(2000), 2.0, function), CORRELATION, NAMES)
     assert all(np.isnan(row.share) for row in result.rows)
-    assert "there are no shares" in result.note
+    assert f"there are no shares: {why}" in result.note
 
 
-def test_too_few_realisations_for_the_fit_have_no_shares():
-    result = drivers(sums_of(chunks(5), 2.0), CORRELATION, NAMES)
+@pytest.mark.parametrize("n", [2, 5, 6])
+def test_too_few_realisations_for_the_fit_are_not_called_a_quantity_that_does_not_vary(n):
+    result = drivers(sums_of(chunks(n), 2.0), CORRELATION, NAMES)
     assert np.isnan(result.r_squared)
+    assert (
+        f"{n} realisations with a finite value are too few for 4 parameters, which take at least 7"
+        in result.note
+    )
+
+
+def test_the_number_said_to_be_enough_is():
+    assert np.isfinite(drivers(sums_of(chunks(7), 2.0), CORRELATION, NAMES).r_squared)
+
+
+def test_a_single_exceedance_is_said_in_the_singular():
+    z = chunks(400)[0]
+    flag = np.arange(400) == 7
+    note = drivers(driver_sums(z, INVERSE, quantity(z), flag), CORRELATION, NAMES).note
+    assert "only 1 of 400 realisations exceeds the limit" in note
 
 
 def test_no_uncertain_parameter():

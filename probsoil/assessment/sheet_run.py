@@ -1,0 +1,156 @@
+"""The one computation that a calculation sheet shows, with everything behind it."""
+
+from dataclasses import dataclass, replace
+from typing import Literal
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.assessment.description import fixed_values
+from probsoil.assessment.evaluation import space_of
+from probsoil.errors import ConvergenceError
+from probsoil.ground.applied_load import relief_by_water, stress_at
+from probsoil.ground.response import GroundState, ground_state, screened
+from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.scenario import Scenario
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class SheetRun:
+    """A scenario computed once.
+
+    Attributes
+    ----------
+    scenario : Scenario
+        As read.
+    site : SiteModel
+        With stresses kept at every time of its axis.
+    at : dict of str to float
+        Value of every quantity by its address, each in its own unit.
+    state : GroundState
+        The ground's answer; one realisation.
+    """
+
+    scenario: Scenario
+    site: SiteModel
+    at: dict[str, float]
+    state: GroundState
+
+    @property
+    def values(self) -> dict[str, FloatArray]:
+        """The quantities as arrays of one realisation, shape (1,), [unit of each]."""
+        return fixed_values(self.at)
+
+    def layer_value(self, layer: int, key: str) -> float:
+        """Return one quantity of a layer.
+
+        Parameters
+        ----------
+        layer : int, [-]
+            Index of the layer.
+        key : str
+            Last part of its address.
+
+        Returns
+        -------
+        value : float, [unit of the quantity]
+            As used.
+        """
+        return float(self.at[f"{self.site.layers[layer].name}.{key}"])
+
+    def slot(self, time: float) -> int:
+        """Return where the stresses of a time are kept.
+
+        Parameters
+        ----------
+        time : float, [years]
+            One of the time axis after the first.
+
+        Returns
+        -------
+        slot : int, [-]
+            Place in ``site.record``.
+        """
+        return int(np.searchsorted(self.site.record, time))
+
+    def surface_pressure(self, time: float) -> float:
+        """Return what fill and pressure weigh on the ground at a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        pressure : float, [kPa]
+            Unit weight times height of fill, and pressure besides.
+        """
+        weight = float(self.at.get("load.fill_unit_weight", 0.0))
+        return weight * self.site.fill_height(time) + self.site.pressure(time)
+
+    def added(self, time: float) -> tuple[FloatArray, FloatArray]:
+        """Return the stress that the works add at a time, and what submergence takes off.
+
+        Parameters
+        ----------
+        time : float, [years]
+            One of the time axis.
+
+        Returns
+        -------
+        added, relief : ndarray, shape (n_point,), [kPa]
+            At every point of the profile.
+        """
+        load, clay = self.state.ground.load, self.state.consolidation.settlement
+        settled = clay[:, int(np.searchsorted(self.site.times, time))]
+        return (
+            stress_at(self.site, load, time)[0],
+            relief_by_water(self.site, load, time, settled)[0],
+        )
+
+
+def sheet_run(scenario: Scenario, at: Literal["mean", "median"]) -> SheetRun:
+    """Compute a scenario once.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    at : {"mean", "median"}
+        Which value every uncertain parameter takes.
+
+    Returns
+    -------
+    run : SheetRun
+        The ground's answer and all that led to it.
+
+    Raises
+    ------
+    ParameterError
+        If `at` is neither.
+    ConvergenceError
+        If the consolidation cannot be computed with these values.
+    """
+    values = space_of(scenario).at(at)
+    one = fixed_values(values)
+    site = screened(site_model(scenario), one, within=0.0)
+    site = replace(site, record=site.times[1:])
+    state = ground_state(site, one)
+    if not state.response.converged[0]:
+        reason = (
+            "the void ratio falls below 0.05: initial stress, void ratio and lambda do not belong together"
+            if state.response.voids_closed[0]
+            else "the iteration does not converge"
+        )
+        raise ConvergenceError(
+            f"the consolidation cannot be computed with every parameter at its {at}: {reason}",
+            best=float("nan"),
+            error=float("nan"),
+        )
+    return SheetRun(
+        scenario=scenario,
+        site=site,
+        at={address: float(value) for address, value in values.items()},
+        state=state,
+    )

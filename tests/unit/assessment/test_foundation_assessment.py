@@ -1,0 +1,111 @@
+"""A footing from the scenario to results, warnings, report and sheet."""
+
+import re
+
+import numpy as np
+import pytest
+
+from probsoil.assessment import assess, sheet
+from probsoil.assessment.statements import assumptions
+from probsoil.ground.bearing_capacity import strength_growth_factor
+from probsoil.ground.site_model import site_model
+from probsoil.report import render_report
+from probsoil.scenario import Scenario, parse_scenario, starter_text
+
+N = 256
+
+
+@pytest.fixture(scope="module")
+def footing() -> Scenario:
+    text = starter_text("footing")
+    return parse_scenario(re.sub(r"realisations = \d+", f"realisations = {N}", text))
+
+
+@pytest.fixture(scope="module")
+def results(footing: Scenario) -> dict:
+    return assess(footing, workers=1).results
+
+
+def test_results_hold_the_bearing_of_every_stage(results: dict) -> None:
+    rows = results["bearing"]
+    assert [row["stage"] for row in rows] == ["frame", "finishes and use"]
+    assert [row["pressure"] for row in rows] == [50.0, 83.0]
+    assert all(row["fill_height"] == 0.0 for row in rows)
+    assert rows[1]["mean"] < rows[0]["mean"]
+    assert results["slip"] == []
+    assert results["settlement"]["station"] == "centre"
+    assert "2.5 m wide, 3 m long, base 1.2 m below ground level" in results["ground"]["load"]["text"]
+    assert 0.0 <= results["discretisation"]["bearing_error_share"] < 0.01
+
+
+def test_limit_on_bearing_is_the_least_of_the_stages(footing: Scenario) -> None:
+    found = assess(footing, workers=1)
+    place = [limit.quantity for limit in footing.limits].index("bearing_safety")
+    assert found.sample.quantity[:, place] == pytest.approx(found.sample.bearing.min(axis=1))
+    assert found.sample.bearing.shape == (N, 2)
+
+
+def test_a_foundation_that_is_loaded_too_much_fails(footing: Scenario) -> None:
+    heavy = parse_scenario(
+        starter_text("footing")
+        .replace("pressure = 33", "pressure = 250")
+        .replace("realisations = 20000", "realisations = 64")
+    )
+    results = assess(heavy, workers=1).results
+    assert results["bearing"][1]["probability_below_one"] > 0.5
+    limit = next(limit for limit in results["limits"] if limit["quantity"] == "bearing_safety")
+    assert limit["verdict"] == "beyond target"
+    assert assess(footing, workers=1).results["bearing"][1]["probability_below_one"] == 0.0
+
+
+def test_report_shows_shape_stages_and_assumptions(results: dict) -> None:
+    page = " ".join(re.sub(r"<[^>]+>", " ", render_report(results)).split())
+    assert "Safety against bearing failure, stage by stage" in page
+    assert "Safety against slip" not in page
+    assert "83.0 kPa" in page
+    assert "the least factor of safety against bearing failure over the stages" in page
+    assert "Davis and Booker" in page
+    assert "The factor of safety against bearing failure differed by at most" in page
+
+
+def test_assumptions_follow_the_load(footing: Scenario) -> None:
+    said = " ".join(assumptions(site_model(footing)))
+    assert "uniform pressure" in said
+    assert "net" in said
+    assert "circles" not in said
+
+
+def test_sheet_shows_every_number_of_the_bearing(footing: Scenario) -> None:
+    """Each row by a pocket calculator: strip, factors, capacity, pressure, safety; the least of a stage."""
+    content = sheet(footing).to_dict()
+    rows = content["bearing"]
+    assert {row["layer"] for row in rows} == {"crust", "clay"}
+    for row in rows:
+        rise = row["growth"] * row["width"]
+        line = row["growth_factor"] * ((2.0 + np.pi) * row["strength"] + 0.25 * rise)
+        assert row["strip_capacity"] == pytest.approx(max(line, (2.0 + np.pi) * row["least_strength"]))
+        assert row["growth_ratio"] == pytest.approx(rise / row["strength"])
+        assert row["growth_factor"] == pytest.approx(float(strength_growth_factor(row["growth_ratio"])))
+        product = row["strip_capacity"] * row["shape_factor"] * row["depth_factor"]
+        assert row["capacity"] == pytest.approx(product)
+        assert row["safety"] == pytest.approx(row["capacity"] / row["pressure"])
+        assert row["depth_factor"] == pytest.approx(1.0 + 0.2 * 1.2 / row["width"])
+    by_stage = {row["stage"] for row in rows}
+    least = {stage: min(row["safety"] for row in rows if row["stage"] == stage) for stage in by_stage}
+    assert content["bearing_safety"] == pytest.approx(least)
+    assert content["station"] == "centre"
+    base = [row for row in rows if row["depth"] == pytest.approx(1.2)]
+    assert [row["pressure"] for row in base] == pytest.approx([50.0, 83.0])
+
+
+def test_thin_clay_below_an_embankment_is_checked_for_squeezing() -> None:
+    thick = starter_text("embankment")
+    thin = thick.replace("thickness = 1.5", "thickness = 0.5").replace(
+        'thickness = { dist = "normal", mean = 6.0, sd = 0.5 }', "thickness = 1.5"
+    )
+    assert thin != thick
+    assert sheet(parse_scenario(thick)).squeezing_safety == {}
+    found = sheet(parse_scenario(thin)).squeezing_safety
+    assert set(found) <= {"first lift", "second lift", "surcharge off"}
+    assert "second lift" in found
+    assert found["second lift"] > 0.5
