@@ -24,7 +24,7 @@ BAND_CHUNKS = 64
 """Chunks whose settlement through time and slip circles are kept, [-]; the rest keep what limits need."""
 
 _PILOT_STAGE = 2  # first spawn key; 0 and 1 belong to the designs
-_PILOT_SIZE = 256
+_PILOT_SIZE = 512
 _PILOT_WIDTH = 1.5  # the pilot spreads its latent normals this much more widely
 
 

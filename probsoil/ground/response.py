@@ -15,7 +15,7 @@ from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
 
-COMPETING = 5e-4
+COMPETING = 2e-3
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)

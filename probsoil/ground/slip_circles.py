@@ -17,9 +17,10 @@ from probsoil.ground import _circle_kernel as kernel
 from probsoil.ground.embankment import EmbankmentSection
 from probsoil.ground.slip_grid import (
     Arcs,
-    arcs_nearby,
+    arcs_beside,
     arcs_through_ground,
     arcs_within_fill,
+    end_steps,
     ground_touches,
 )
 
@@ -209,29 +210,34 @@ def candidate_circles(layout: CircleLayout) -> Circles:
     return _driven(section, groups)
 
 
-def nearby_circles(layout: CircleLayout, circles: Circles, share: float) -> Circles:
-    """Return circles with those beside them in depth.
+def circles_beside(layout: CircleLayout, circles: Circles, moves: FloatArray) -> Circles:
+    """Return circles a little beside given ones.
 
     Parameters
     ----------
     layout : CircleLayout
         Which circles they were chosen from.
     circles : Circles
-        Some of its candidates.
-    share : float, [-]
-        How far beside, as a share of the spacing of the depths that candidates touch.
+        Some of its candidates, or circles beside them.
+    moves : ndarray, shape (n_move, 3), [-]
+        How far beside in where it leaves, where it enters and how deep it touches, as shares of the
+        spacing of the candidates; no move at all keeps the circle itself.
 
     Returns
     -------
     circles : Circles
-        The same and, where they go through the ground, others that touch a little less and more deep:
-        which depth is worst depends on where the layers of a realisation end.
+        For each circle through the ground those moved, and all wholly in the fill as they are.
     """
     in_ground = circles.touch > 0.0
     through, within = circles[in_ground], circles[~in_ground]
-    touch = layout.touch
-    step = share * np.interp(through.touch, touch, np.gradient(touch))
-    return _driven(layout.section, [arcs_nearby(layout.section, through, step, layout.depth), within])
+    depths = layout.touch
+    step = np.stack(
+        [
+            *end_steps(layout.section, through, layout.reach) / layout.density,
+            np.interp(through.touch, depths, np.gradient(depths)),
+        ]
+    )
+    return _driven(layout.section, [arcs_beside(layout.section, through, moves, step, layout.depth), within])
 
 
 def _driven(section: EmbankmentSection, groups: Sequence[Arcs]) -> Circles:

@@ -89,16 +89,15 @@ def arcs_through_ground(
         Exits on the ground beyond the toe, at the toe, on the slopes and on the berm; entries on
         the top, up to the far shoulder, and on the berm.
     """
-    far = -reach * np.linspace(0.0, 1.0, round(_GROUND_EXITS * density) + 1)[1:] ** 2
-    beyond = np.stack([far, np.zeros_like(far)], axis=1)
-    leave = np.concatenate([beyond, _exits_on_fill(section, density)])
-    leave, enter, depth = _mesh(leave, _entries(section, reach, density), touch)
+    leave, enter, depth = _mesh(_exits(section, reach, density), _entries(section, reach, density), touch)
     centre, radius = _touching(leave, enter, depth)
     return _valid(section, leave, enter, np.stack([centre, radius - depth], axis=1), radius)
 
 
-def arcs_nearby(section: EmbankmentSection, arcs: Arcs, step: FloatArray, greatest: float) -> Arcs:
-    """Return circles that leave and enter like given ones and touch a little less and more deep.
+def arcs_beside(
+    section: EmbankmentSection, arcs: Arcs, moves: FloatArray, step: FloatArray, greatest: float
+) -> Arcs:
+    """Return circles a little beside given ones.
 
     Parameters
     ----------
@@ -106,23 +105,77 @@ def arcs_nearby(section: EmbankmentSection, arcs: Arcs, step: FloatArray, greate
         Fill.
     arcs : Arcs
         Circles through the ground.
-    step : ndarray, shape (n_circle,), [m]
-        How much.
+    moves : ndarray, shape (n_move, 3), [-]
+        Steps to take in where a circle leaves, where it enters and how deep it touches.
+    step : ndarray, shape (3, n_circle), [m]
+        Length of a step: along the surface (run and rise together) for the ends, in depth.
     greatest : float, [m]
         Depth that is not to be passed.
 
     Returns
     -------
     arcs : Arcs
-        The same and up to two more for each.
+        Up to `n_move` for each circle. Entries stay on the top or the berm they were on.
     """
-    leave = np.tile(np.stack([arcs.exit_x, arcs.exit_y], axis=1), (3, 1))
-    enter = np.tile(np.stack([arcs.entry_x, arcs.entry_y], axis=1), (3, 1))
-    touch = np.concatenate([arcs.touch - step, arcs.touch, arcs.touch + step])
-    kept = (touch > 0.0) & (touch <= greatest * (1.0 + 1e-12))
+    moved = moves[:, :, None] * step
+    leave = surface_point(section, (arcs.exit_x + arcs.exit_y + moved[:, 0]).ravel())
+    enter = surface_point(section, (arcs.entry_x + arcs.entry_y + moved[:, 1]).ravel())
+    touch = (arcs.touch + moved[:, 2]).ravel()
+    kept = (touch > 0.0) & (touch <= greatest * (1.0 + 1e-12)) & (leave < enter).all(axis=1)
+    kept &= enter[:, 1] == np.tile(arcs.entry_y, len(moves))
     leave, enter, touch = leave[kept], enter[kept], touch[kept]
     centre, radius = _touching(leave, enter, touch)
     return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
+
+
+def surface_point(section: EmbankmentSection, way: FloatArray) -> FloatArray:
+    """Return points on the near surface, from the ground beyond the toe to the far shoulder.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    way : ndarray, shape (n,), [m]
+        Run and rise together from the toe, below zero beyond it: x + y, which tells points of a
+        vertical slope apart too.
+
+    Returns
+    -------
+    point : ndarray, shape (n, 2), [m]
+        x and y.
+    """
+    far_shoulder = [section.base_width - section.shoulder, section.height]
+    beyond = min(float(way.min(initial=0.0)), 0.0) - 1.0
+    knots = np.concatenate([[[beyond, 0.0]], section.corners, [far_shoulder]])
+    at = knots.sum(axis=1)
+    return np.stack([np.interp(way, at, knots[:, 0]), np.interp(way, at, knots[:, 1])], axis=1)
+
+
+def end_steps(section: EmbankmentSection, arcs: Arcs, reach: float) -> FloatArray:
+    """Return how far apart candidates leave and enter near the ends of given circles.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    arcs : Arcs
+        Circles.
+    reach : float, [m]
+        How far beyond the toe and behind the shoulder candidates go.
+
+    Returns
+    -------
+    step : ndarray, shape (2, n_circle), [m]
+        Run and rise together, for where they leave and where they enter, at a density of 1.
+    """
+    exits = np.unique(_exits(section, reach, 1.0).sum(axis=1))
+    entries = np.unique(_entries(section, reach, 1.0).sum(axis=1))
+    return np.stack(
+        [
+            np.interp(arcs.exit_x + arcs.exit_y, exits, np.gradient(exits)),
+            np.interp(arcs.entry_x + arcs.entry_y, entries, np.gradient(entries)),
+        ]
+    )
 
 
 def arcs_within_fill(section: EmbankmentSection, *, shallowest: float, density: float) -> Arcs:
@@ -167,6 +220,12 @@ def _half_angle_on_ground(leave: FloatArray, enter: FloatArray, chord: FloatArra
         touching = np.where(radius >= enter[:, 1], np.arcsin(chord / (2.0 * radius)), np.inf)
     tangent = np.arctan2(enter[:, 1] - leave[:, 1], enter[:, 0] - leave[:, 0])  # level where it leaves
     return np.asarray(_CLEAR * np.where(at_toe, tangent, touching))
+
+
+def _exits(section: EmbankmentSection, reach: float, density: float) -> FloatArray:
+    """Return points on the ground beyond the toe, denser near it, and on the fill, shape (n, 2), [m]."""
+    far = -reach * np.linspace(0.0, 1.0, round(_GROUND_EXITS * density) + 1)[1:] ** 2
+    return np.concatenate([np.stack([far, np.zeros_like(far)], axis=1), _exits_on_fill(section, density)])
 
 
 def _exits_on_fill(section: EmbankmentSection, density: float) -> FloatArray:

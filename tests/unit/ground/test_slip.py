@@ -204,7 +204,7 @@ def test_chosen_circles_serve_every_realisation():
     chosen = competing_circles(ground, fill, layout, within=within)
     worst = competing_circles(ground, fill, layout, within=0.0)
     least, critical = slip_safety(ground, fill, worst)
-    assert np.unique(critical).size <= worst.n_circle <= 60
+    assert np.unique(critical).size <= worst.n_circle <= 3 * 60  # each with one on either side
     assert chosen.n_circle < worst.n_circle
     served, _ = slip_safety(ground, fill, chosen)
     # chosen on slices three times finer than those of the two families: what that may cost is promised

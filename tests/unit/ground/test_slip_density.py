@@ -29,13 +29,9 @@ SECTIONS = {
 
 
 def profiles(section, n_sample, seed):
-    """Crust over soft clay, a weak seam, and clay that grows stronger with depth; stronger under the fill.
-
-    Thicknesses are uncertain by a sixth, strengths by more. They were narrowed after the promise failed on
-    wider ones (up to a half): there 1.0 to 1.4 % was seen in two sections and up to 3.5 % in the third.
-    """
+    """Crust over soft clay, a weak seam, and clay that grows stronger with depth; stronger under the fill."""
     rng = np.random.default_rng(np.random.SeedSequence(21, spawn_key=(seed,)))
-    thickness = np.array([1.0, 2.7, 0.4, 4.5]) * rng.uniform(0.833, 1.167, (n_sample, 4))
+    thickness = rng.uniform([0.5, 2.0, 0.3, 4.0], [1.5, 3.5, 0.6, 5.0], (n_sample, 4))
     boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(thickness, axis=1)], axis=1)
     layer = np.repeat(np.arange(4), N_POINT // 4)
     within = np.tile((np.arange(N_POINT // 4) + 0.5) / (N_POINT // 4), 4)
@@ -77,9 +73,9 @@ def least(section, ground, fill, density):
 @pytest.mark.parametrize("name", SECTIONS)
 def test_a_refined_search_moves_the_least_factor_by_under_one_percent(name):
     section = SECTIONS[name]
-    pilot = profiles(section, 256, seed=100 + len(name))
+    pilot = profiles(section, 512, seed=100 + len(name))
     family = competing_circles(*pilot, layout(section, pilot[0], 1.0), within=COMPETING)
-    assert family.n_circle < 256  # several realisations share one
+    assert family.n_circle < 3 * 512 / 2  # each with one on either side; two realisations share one and more
     ground, fill = profiles(section, 48, seed=len(name))
     chosen, fine = slip_safety(ground, fill, family)[0], least(section, ground, fill, 1.5)
     assert np.abs(chosen / fine - 1.0).max() < PROMISE
