@@ -24,6 +24,7 @@ if TYPE_CHECKING:
         ScenarioError,
         ShapeError,
         StoppedEarly,
+        UnfitFolderError,
     )
     from probsoil.scenario import Scenario
     from probsoil.scenario import read_scenario as read
@@ -42,6 +43,7 @@ __all__ = [
     "ShapeError",
     "Sheet",
     "StoppedEarly",
+    "UnfitFolderError",
     "__version__",
     "assess",
     "read",

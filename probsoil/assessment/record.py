@@ -173,7 +173,7 @@ def _time(limit: Limit) -> tuple[Row, str]:
         return {"between": list(between)}, f"between {between[0]:.3g} and {between[1]:.3g} years"
     if limit.at is not None:
         return {"at": limit.at}, f"at {limit.at:.3g} years"
-    return {"least_over_stages": True}, "least over the ends of the stages"
+    return {"least_over_stages": True}, "least over the stages"
 
 
 def _summary(values: FloatArray, *, worst: float) -> Row:

@@ -135,7 +135,7 @@ def slip_safety(
     lanes = Lanes(n_sample)
     tangent = np.tan(np.radians(fill.friction_angle))
     moments = Moments(
-        strength=_on_slices(ground, family.slice_edge, n_sample),
+        strength=slice_strengths(ground, family.slice_edge, n_sample),
         row_start=family.row_start,
         column=family.column,
         weight=family.weight,
@@ -212,7 +212,7 @@ def _every_factor(
 ) -> FloatArray:
     """Return the factor of safety of every circle in every realisation, (n_circle, n_sample), [-]."""
     n_sample = fill.unit_weight.size
-    strength = Lanes(n_sample).unpack(_on_slices(ground, edge, n_sample)).T
+    strength = Lanes(n_sample).unpack(slice_strengths(ground, edge, n_sample)).T
     tangent = np.tan(np.radians(fill.friction_angle))
     factor = np.empty((len(circles), n_sample))
     for first in range(0, len(circles), _BLOCK):
@@ -239,8 +239,23 @@ def _serving(near: BoolArray) -> IntArray:
     return np.array(sorted(chosen), dtype=np.int64)
 
 
-def _on_slices(ground: GroundStrength, edge: FloatArray, n_sample: int) -> FloatArray:
-    """Return the strength of every zone and slice, shape (n_block, n_column, LANES), [kPa]."""
+def slice_strengths(ground: GroundStrength, edge: FloatArray, n_sample: int) -> FloatArray:
+    """Return the strength of every zone and slice.
+
+    Parameters
+    ----------
+    ground : GroundStrength
+        Strength of the layers.
+    edge : ndarray, shape (n_slice + 1,), [m]
+        Depths between slices.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    strength : ndarray, shape (n_block, n_column, LANES), [kPa]
+        Columns run through the slices of each zone, cohesive first, then frictional.
+    """
     lanes = Lanes(n_sample)
     kinds = [ground.cohesive] if ground.frictional is None else [ground.cohesive, ground.frictional]
     strength = np.concatenate(kinds, axis=1)

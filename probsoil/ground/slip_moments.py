@@ -8,9 +8,9 @@ from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.profile import Values
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
-from probsoil.ground.slip import FillStrength, GroundStrength, _on_slices
+from probsoil.ground.slip import FillStrength, GroundStrength, slice_strengths
 from probsoil.ground.slip_circles import CircleFamily
-from probsoil.ground.stability import _sections
+from probsoil.ground.stability import slip_sections
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -98,7 +98,7 @@ def critical_moments(site: SiteModel, values: Values, state: GroundState) -> lis
     moments : list of SlipMoments
         Of the first realisation, one for each of ``site.slip_times``.
     """
-    sections = _sections(site, values, state.ground, state.strength)
+    sections = slip_sections(site, values, state.ground, state.strength)
     return [
         _moments(here, fill, family, int(state.response.critical_circle[0, check]))
         for check, ((here, fill), family) in enumerate(zip(sections, site.families, strict=True))
@@ -107,7 +107,7 @@ def critical_moments(site: SiteModel, values: Values, state: GroundState) -> lis
 
 def _moments(ground: GroundStrength, fill: FillStrength, family: CircleFamily, circle: int) -> SlipMoments:
     n_slice = family.slice_edge.size - 1
-    strength = _on_slices(ground, family.slice_edge, fill.unit_weight.size)[0, :, 0]
+    strength = slice_strengths(ground, family.slice_edge, fill.unit_weight.size)[0, :, 0]
     entries = slice(int(family.row_start[circle]), int(family.row_start[circle + 1]))
     column, weight = family.column[entries], family.weight[entries]
     cohesive = column < family.n_zone * n_slice

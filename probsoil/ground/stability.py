@@ -97,7 +97,7 @@ def slip_at_checks(
     """
     n_sample, n_check = ground.points.depth.shape[0], site.slip_times.size
     factor, critical = np.empty((n_sample, n_check)), np.empty((n_sample, n_check), dtype=np.int64)
-    for check, (here, fill) in enumerate(_sections(site, values, ground, strength)):
+    for check, (here, fill) in enumerate(slip_sections(site, values, ground, strength)):
         family = site.families[check] if site.families else circle_family(site.layouts[check])
         factor[:, check], critical[:, check] = slip_safety(here, fill, family)
     return factor, critical
@@ -126,17 +126,34 @@ def competing_families(
     families : tuple of CircleFamily
         One for each time at which slip is looked at.
     """
-    sections = _sections(site, values, ground, strength)
+    sections = slip_sections(site, values, ground, strength)
     return tuple(
         competing_circles(here, fill, layout, within=within)
         for (here, fill), layout in zip(sections, site.layouts, strict=True)
     )
 
 
-def _sections(
+def slip_sections(
     site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray
 ) -> Iterator[tuple[GroundStrength, FillStrength]]:
-    """Yield the strength of ground and fill at every time at which slip is looked at."""
+    """Yield the strength of ground and fill at every time at which slip is looked at.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Times at which slip is looked at.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points and added stress.
+    strength : ndarray, shape (n_record, n_sample, n_zone, n_point), [kPa]
+        Undrained strength at the recorded times.
+
+    Yields
+    ------
+    ground, fill : GroundStrength, FillStrength
+        At one time.
+    """
     if site.slip_times.size == 0:
         return
     n_sample = ground.points.depth.shape[0]

@@ -164,7 +164,7 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
         "water_table": text.described_text(data.get("water_table", text.MISSING)),
         "base": data.get("base", text.MISSING),
         "drains": data.get("drains"),
-        "load": ": ".join(str(load[key]) for key in ("shape", "text") if load.get(key)),
+        "load": load.get("text") or load.get("shape") or "",
         "layers": [
             {
                 "number": number,
