@@ -1,0 +1,232 @@
+"""Which numbers describe layers, stages and drains; the numbers themselves come with each realisation."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from probsoil.ground.vertical_drains import influence_diameter
+from probsoil.scenario import Scenario
+from probsoil.scenario.layers import ClayLayer, GranularLayer
+
+_ROUNDING = 1e-9  # m; sums of heights carry rounding
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LayerForm:
+    """Which numbers describe a layer; the numbers themselves come with each realisation.
+
+    Attributes
+    ----------
+    name : str
+        Name of the layer, first part of its addresses.
+    is_clay : bool
+        Whether it consolidates; otherwise it is granular.
+    mean_thickness : float, [m]
+        For the layout of cells.
+    compression, swelling : str
+        Key of the slope in virgin compression (lambda, Cc or CR) and in reloading (kappa, Cs or RR).
+    yielding : str
+        Key of the preconsolidation stress (preconsolidation, ocr or pop).
+    friction : str
+        M or phi.
+    flow : str
+        cv or k.
+    strength_given : bool
+        Whether S and m replace the strength that follows from M, lambda and kappa.
+    weight_above : bool
+        Whether the part above the water table has a unit weight of its own.
+    creeps : bool
+        Whether secondary compression is computed.
+    """
+
+    name: str
+    is_clay: bool
+    mean_thickness: float
+    compression: str = "lambda"
+    swelling: str = "kappa"
+    yielding: str = "pop"
+    friction: str = "phi"
+    flow: str = "k"
+    strength_given: bool = False
+    weight_above: bool = False
+    creeps: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class StageForm:
+    """One change of load, spread evenly between two times.
+
+    Attributes
+    ----------
+    name : str
+        Name of the stage.
+    start, end : float, [years]
+        When it begins and ends.
+    height : float, [m]
+        Fill laid (negative: taken away).
+    pressure : float, [kPa]
+        Pressure added besides the fill.
+    """
+
+    name: str
+    start: float
+    end: float
+    height: float = 0.0
+    pressure: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DrainForm:
+    """Vertical drains, apart from how much they smear.
+
+    Attributes
+    ----------
+    influence_diameter : float, [m]
+        Diameter of the cylinder of soil that one drain serves.
+    diameter : float, [m]
+        Equivalent diameter of a drain.
+    smear_ratio : float, [-]
+        Diameter of the smear zone over that of the drain.
+    installed : float, [years]
+        Time from which the drains work.
+    bottom : float, [m]
+        Depth that they reach.
+    discharge_capacity : float or None, [m3/year]
+        Flow at a hydraulic gradient of one; None for no resistance.
+    """
+
+    influence_diameter: float
+    diameter: float
+    smear_ratio: float
+    installed: float
+    bottom: float
+    discharge_capacity: float | None
+
+
+def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
+    """Return the stages of a scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    stages : tuple of StageForm
+        In order of time.
+    """
+    return tuple(
+        StageForm(
+            name=stage.name,
+            start=stage.start,
+            end=stage.end,
+            height=stage.height or 0.0,
+            pressure=stage.pressure or 0.0,
+        )
+        for stage in scenario.stages
+    )
+
+
+def laid_share(stage: StageForm, time: float) -> float:
+    """Return how much of a stage is done at a time.
+
+    Parameters
+    ----------
+    stage : StageForm
+        Its start and end.
+    time : float, [years]
+        Time.
+
+    Returns
+    -------
+    share : float, [-]
+        From 0 to 1.
+    """
+    return min(max((time - stage.start) / (stage.end - stage.start), 0.0), 1.0)
+
+
+def height_at(stages: Sequence[StageForm], time: float) -> float:
+    """Return the height of fill that stages have laid by a time.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In order of time.
+    time : float, [years]
+        Time.
+
+    Returns
+    -------
+    height : float, [m]
+        Exactly zero where all of it has been taken away.
+    """
+    height = sum(stage.height * laid_share(stage, time) for stage in stages)
+    return height if height > _ROUNDING else 0.0  # a removal may leave a rounding error behind
+
+
+def drain_form(scenario: Scenario) -> DrainForm | None:
+    """Return the vertical drains of a scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    drains : DrainForm or None
+        None without drains.
+    """
+    given = scenario.drains
+    if given is None:
+        return None
+    return DrainForm(
+        influence_diameter=influence_diameter(given.spacing, given.pattern),
+        diameter=given.equivalent_diameter,
+        smear_ratio=given.smear_ratio,
+        installed=given.installed,
+        bottom=given.bottom,
+        discharge_capacity=given.discharge_capacity,
+    )
+
+
+def layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
+    """Return which numbers describe a layer.
+
+    Parameters
+    ----------
+    layer : ClayLayer or GranularLayer
+        As read.
+
+    Returns
+    -------
+    form : LayerForm
+        With its mean thickness.
+    """
+    if isinstance(layer, GranularLayer):
+        return LayerForm(
+            name=layer.name,
+            is_clay=False,
+            mean_thickness=layer.thickness.expectation,
+            weight_above=layer.unit_weight_above is not None,
+        )
+    yielding = next(
+        key for key in ("stress", "ocr", "pop") if getattr(layer.preconsolidation, key) is not None
+    )
+    return LayerForm(
+        name=layer.name,
+        is_clay=True,
+        mean_thickness=layer.thickness.expectation,
+        compression=_given(layer, {"lambda_": "lambda", "Cc": "Cc", "CR": "CR"}),
+        swelling=_given(layer, {"kappa": "kappa", "Cs": "Cs", "RR": "RR"}),
+        yielding="preconsolidation" if yielding == "stress" else yielding,
+        friction=_given(layer, {"M": "M", "phi": "phi"}),
+        flow="cv" if layer.permeability.cv is not None else "k",
+        strength_given=layer.strength is not None,
+        weight_above=layer.unit_weight_above is not None,
+        creeps=layer.C_alpha_ratio is not None,
+    )
+
+
+def _given(layer: ClayLayer, keys: dict[str, str]) -> str:
+    return next(key for attribute, key in keys.items() if getattr(layer, attribute) is not None)

@@ -1,0 +1,205 @@
+"""What is laid out once for all realisations: the embankment, when things are looked at, slip circles."""
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.embankment import Embankment
+from probsoil.ground.site_forms import LayerForm, StageForm, height_at, laid_share
+from probsoil.ground.slip_circles import CircleLayout
+from probsoil.scenario import Scenario
+from probsoil.scenario.distributions import Constant
+from probsoil.scenario.loads import EmbankmentLoad, Load
+
+_DEEPER = 1.25  # circles reach this far below the mean bottom of the profile, for thicker realisations
+_WIDTHS = 0.75  # and never deeper than this share of the embankment's base
+_ROUNDING = 1e-9  # m; sums of heights carry rounding
+NONE = Constant(value=0.0)
+"""What is given for nothing."""
+
+
+def embankment_of(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment | None:
+    """Return the embankment that a load is.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    embankment : Embankment or None
+        None for any other load.
+    """
+    if not isinstance(scenario.load, EmbankmentLoad):
+        return None
+    full_height = float(np.cumsum([stage.height for stage in stages]).max())
+    return Embankment(
+        crest_width=scenario.load.crest_width,
+        side_slope=scenario.load.side_slope,
+        full_height=full_height,
+        berm_width=scenario.load.berm_width or 0.0,
+        berm_height=scenario.load.berm_height or 0.0,
+    )
+
+
+def traffic_start(load: Load, stages: Sequence[StageForm]) -> float:
+    """Return when traffic begins to count: as given, or when the fill is first at its greatest height.
+
+    Parameters
+    ----------
+    load : Load
+        Load of a scenario.
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    time : float, [years]
+        Infinite without traffic.
+    """
+    if not isinstance(load, EmbankmentLoad) or load.traffic == NONE:
+        return float(np.inf)
+    if load.traffic_from is not None:
+        return load.traffic_from
+    heights = np.cumsum([stage.height for stage in stages])
+    highest = int(np.argmax(heights > heights.max() - _ROUNDING))
+    return stages[highest].end
+
+
+def limit_times(scenario: Scenario) -> list[float]:
+    """Return the times that limits look at.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    times : list of float, [years]
+        In the order of the limits.
+    """
+    times: list[float] = []
+    for limit in scenario.limits:
+        at, between = getattr(limit, "at", None), getattr(limit, "between", None)
+        times += [] if at is None else [at]
+        times += [] if between is None else list(between)
+        if limit.quantity == "time_to_consolidation" and limit.threshold <= scenario.horizon:
+            times.append(limit.threshold)
+    return times
+
+
+def recorded_times(
+    scenario: Scenario, stages: Sequence[StageForm], embankment: Embankment | None
+) -> tuple[FloatArray, FloatArray]:
+    """Return the times at which stresses are kept, and those at which slip is looked at.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    stages : sequence of StageForm
+        In order of time.
+    embankment : Embankment or None
+        As laid out.
+
+    Returns
+    -------
+    record, slip_times : ndarray, shape (n_record,) and (n_check,), [years]
+        Rising.
+    """
+    ends = {stage.end for stage in stages}
+    degree = {limit.at for limit in scenario.limits if limit.quantity == "degree_of_consolidation"}
+    slip = _times_of(scenario, "slip_safety")
+    if embankment is not None and np.isfinite(traffic := traffic_start(scenario.load, stages)):
+        slip.add(traffic)
+    kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
+    record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
+    if embankment is None:
+        return record, np.zeros(0)
+    check = [time for time in sorted(ends | slip) if time > 0.0 and height_at(stages, time) > 0.0]
+    return record, np.array(check, dtype=np.float64)
+
+
+def _times_of(scenario: Scenario, quantity: str) -> set[float]:
+    """Return the single times at which limits of a quantity look."""
+    times = {getattr(limit, "at", None) for limit in scenario.limits if limit.quantity == quantity}
+    return {time for time in times if time is not None}
+
+
+def bearing_check_times(scenario: Scenario, stages: Sequence[StageForm]) -> FloatArray:
+    """Return when bearing is looked at: stage ends and times of limits, where there is a load.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    times : ndarray, shape (n_bearing,), [years]
+        Rising.
+    """
+    times = {stage.end for stage in stages} | _times_of(scenario, "bearing_safety")
+    loaded = [time for time in sorted(times) if time > 0.0 and _pressed(stages, time)]
+    return np.array(loaded, dtype=np.float64)
+
+
+def _pressed(stages: Sequence[StageForm], time: float) -> bool:
+    pressure = sum(stage.pressure * laid_share(stage, time) for stage in stages)
+    return height_at(stages, time) > 0.0 or pressure > 1e-9
+
+
+def circle_layouts(
+    embankment: Embankment | None,
+    layers: Sequence[LayerForm],
+    stages: Sequence[StageForm],
+    slip_times: FloatArray,
+    *,
+    density: float,
+    cohesive_fill: bool,
+) -> tuple[CircleLayout, ...]:
+    """Return the slip circles to look at.
+
+    Parameters
+    ----------
+    embankment : Embankment or None
+        As laid out.
+    layers : sequence of LayerForm
+        From ground level down.
+    stages : sequence of StageForm
+        In order of time.
+    slip_times : ndarray, shape (n_check,), [years]
+        When slip is looked at.
+    density : float, [-]
+        Circles are this many times denser.
+    cohesive_fill : bool
+        Whether circles wholly in the fill count.
+
+    Returns
+    -------
+    layouts : tuple of CircleLayout
+        One for each of `slip_times`; empty without an embankment.
+    """
+    if embankment is None:
+        return ()
+    boundaries = np.cumsum([layer.mean_thickness for layer in layers]).tolist()
+    depth = min(_DEEPER * boundaries[-1], _WIDTHS * embankment.base_width)
+    frictional = any(not layer.is_clay for layer in layers)
+    return tuple(
+        CircleLayout(
+            section=embankment.section(height_at(stages, float(time))),
+            depth=depth,
+            boundaries=tuple(boundaries),
+            density=density,
+            frictional_ground=frictional,
+            within_fill=cohesive_fill,
+        )
+        for time in slip_times
+    )
