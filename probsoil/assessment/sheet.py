@@ -258,7 +258,6 @@ def _squeezing(site: SiteModel, state: GroundState, values: Values) -> dict[str,
 
 def _layer_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
     points, site = run.state.ground.points, run.site
-    decades = answers.decades_by_point(run)
     rows = []
     for index, layer in enumerate(site.layers):
         mine = points.layer == index
@@ -281,7 +280,7 @@ def _layer_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
                 "void_ratio": float(run.state.ground.columns.void_ratio[0, index]) if layer.is_clay else None,
                 "strain": settlement / (bottom - top),
                 "settlement": settlement,
-                "secondary": float((state.per_decade * decades)[mine].sum()),
+                "secondary": float(state.secondary[mine].sum()),
             }
         )
     return rows

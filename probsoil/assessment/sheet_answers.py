@@ -1,14 +1,19 @@
 """What a calculation sheet says of time, drainage segments, drains, strength and slip."""
 
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
 
-from probsoil._typing import FloatArray
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import PointState, Sublayer
-from probsoil.ground.clay_settlement import drain_terms, segment_settlement_when_done, settlement_when_done
-from probsoil.ground.secondary_compression import end_of_primary
+from probsoil.ground.clay_settlement import (
+    by_segment,
+    drain_terms,
+    segment_settlement_when_done,
+    settlement_when_done,
+)
+from probsoil.ground.secondary_compression import CreepSpell, end_of_primary
 from probsoil.ground.slip_moments import SlipMoments, critical_moments
 
 ZONES = ("beyond_toe", "under_slope", "under_crest", "under_berm")
@@ -87,9 +92,10 @@ def segment_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
     Returns
     -------
     rows : list of dict
-        Depths [m], settlement of the clay at the horizon and when done [m], the degree [-], and the
-        numbers of secondary compression: t0 and tp [years] (None where 95 % is not reached), settlement
-        per decade of time [m], number of decades [-] and settlement at the horizon [m].
+        Depths [m], settlement of the clay at the horizon and when done [m], the degree [-], when primary
+        consolidation ends after the last stage [years] (None where 95 % is not reached), and secondary
+        compression at the horizon [m] with the spells it is made of: t0, tp and their end [years],
+        settlement per decade of time [m] and number of decades [-].
     """
     site, ground, result = run.site, run.state.ground, run.state.consolidation
     points, cells = ground.points, site.cells
@@ -111,7 +117,7 @@ def segment_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
                 "settlement_when_done": done,
                 "degree": 1.0 if now >= done else now / done,
                 "end_of_primary": float(end[segment]) if np.isfinite(end[segment]) else None,
-                **_creep(run, state.per_decade[ground.clay][mine], float(end[segment])),
+                **_creep(run, state.spells, segment),
             }
         )
     return rows
@@ -123,45 +129,26 @@ def _faces(drained: np.ndarray) -> str:
     return "top" if drained[0] else "bottom" if drained[-1] else "nowhere"
 
 
-def _creep(run: SheetRun, per_decade: FloatArray, start: float) -> dict[str, float]:
-    """Return the numbers of secondary compression of one segment."""
-    if not any(layer.creeps for layer in run.site.layers):
-        return {"origin": run.site.last_increase, "creep_per_decade": 0.0, "decades": 0.0, "secondary": 0.0}
-    decades, rate = _decades(run, start), float(per_decade.sum())
+def _creep(run: SheetRun, spells: Sequence[CreepSpell], segment: int) -> dict[str, Any]:
+    """Return the numbers of secondary compression of one segment, spell by spell."""
+    rows = [_spell(run, spells, index, segment) for index in range(len(spells))]
+    crept = [row for row in rows if row["secondary"] > 0.0]
+    return {"creep": crept, "secondary": sum(row["secondary"] for row in crept)}
+
+
+def _spell(run: SheetRun, spells: Sequence[CreepSpell], index: int, segment: int) -> dict[str, Any]:
+    spell, horizon = spells[index], run.site.horizon
+    rate = float(by_segment(run.site, spell.per_cell)[0, segment])
+    decades = float(spell.decades(np.array([horizon]), segment)[0, 0])
     return {
-        "origin": run.site.last_increase,
+        "after": run.site.stages[index].name,
+        "origin": float(spell.origin[0, segment]),
+        "begin": float(spell.begin[0, segment]),
+        "until": min(spell.end, horizon),
         "creep_per_decade": rate,
         "decades": decades,
         "secondary": rate * decades,
     }
-
-
-def _decades(run: SheetRun, start: float) -> float:
-    """Return the decades of time from the end of primary consolidation to the horizon, [-]."""
-    if not np.isfinite(start):
-        return 0.0
-    origin = run.site.last_increase
-    return max(float(np.log10((run.site.horizon - origin) / (start - origin))), 0.0)
-
-
-def decades_by_point(run: SheetRun) -> FloatArray:
-    """Return for how many decades of time the segment of each point has crept at the horizon.
-
-    Parameters
-    ----------
-    run : SheetRun
-        The computation.
-
-    Returns
-    -------
-    decades : ndarray, shape (n_point,), [-]
-        Zero in granular layers.
-    """
-    end = end_of_primary(run.site, run.state.ground, run.state.consolidation)[0]
-    of_segment = np.array([_decades(run, float(start)) for start in end])
-    decades = np.zeros(run.state.ground.clay.size)
-    decades[run.state.ground.clay] = of_segment[run.site.cells.segment]
-    return decades
 
 
 def drain_record(run: SheetRun, rows: list[Sublayer]) -> dict[str, Any] | None:

@@ -79,7 +79,8 @@ def drain_formulas(record: Record | None) -> list[Worked]:
         worked(
             DRAINS,
             "factor of spacing and smear",
-            "μ = n^2/(n^2 − s^2) · ln(n/s) − 3/4 + s^2/(4 · n^2) + q · (n^2 − s^2)/n^2 · ln(s)",
+            "μ = (n^2 · (ln(n/s) + q · ln(s) − 3/4) + s^2 · (1 − s^2/(4 · n^2))"
+            " + q · (1 − s^2 + (s^4 − 1)/(4 · n^2)))/(n^2 − 1)",
             (record["factor"], "-"),
             {"n": n, "s": smear, "q": loss},
             row=place,
@@ -135,19 +136,21 @@ def creep_formulas(run: SheetRun, rows: list[Record], segments: list[Record]) ->
     formula = "s10 = Rm · r · λ · ln(10) · h/(1 + e0)"
     result = (row["creep_per_decade"], "m")
     lines = [worked(CREEP, "settlement in a tenfold of time", formula, result, symbols, row=place)]
-    started = [one for one in segments if one["decades"] > 0.0]
-    if started:
-        one = max(started, key=lambda segment: segment["secondary"])
-        symbols = {
-            "S10": (one["creep_per_decade"], "sum over the segment's sub-layers", "m"),
-            "t": (run.site.horizon, "time", "years"),
-            "t0": (one["origin"], "middle of the last stage that added load", "years"),
-            "tp": (one["end_of_primary"], "end of primary, 95 %", "years"),
-        }
-        formula, result = "sα = S10 · log10((t − t0)/(tp − t0))", (one["secondary"], "m")
-        place = f"segment {one['segment']}, {run.site.horizon:g} years"
-        lines.append(worked(CREEP, "secondary compression", formula, result, symbols, row=place))
-    return lines
+    most = max(segments, key=lambda segment: segment["secondary"])
+    return lines + [_spell_formula(most["segment"], spell) for spell in most["creep"]]
+
+
+def _spell_formula(segment: int, spell: Record) -> Worked:
+    """Return the secondary compression of one segment in one spell."""
+    symbols: dict[str, Symbol] = {
+        "S10": (spell["creep_per_decade"], "sum over the segment's sub-layers", "m"),
+        "t": (spell["until"], "end of the spell", "years"),
+        "t0": (spell["origin"], "from when the clay's age counts", "years"),
+        "tp": (spell["begin"], "from when it creeps", "years"),
+    }
+    formula, result = "sα = S10 · log10((t − t0)/(tp − t0))", (spell["secondary"], "m")
+    place = f"segment {segment}, after {spell['after']}, to {spell['until']:g} years"
+    return worked(CREEP, "secondary compression", formula, result, symbols, row=place)
 
 
 def strength_formulas(run: SheetRun, sublayer: Sublayer, rows: list[Record]) -> list[Worked]:

@@ -16,7 +16,7 @@ from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
-from probsoil.ground.secondary_compression import creep_per_decade, creep_reduction
+from probsoil.ground.secondary_compression import CreepSpell, creep_reduction, creep_spells, secondary_by_cell
 from probsoil.ground.site_model import SiteModel
 
 _MOST = 4  # rows to a clay layer
@@ -108,7 +108,11 @@ class PointState:
     shortening, shortening_done : ndarray, shape (n_point,), [m]
         Primary settlement that the point stands for, at the horizon and when done.
     per_decade : ndarray, shape (n_point,), [m]
-        Secondary compression in a tenfold of time.
+        Secondary compression in a tenfold of time after the last stage.
+    secondary : ndarray, shape (n_point,), [m]
+        Secondary compression at the horizon.
+    spells : tuple of CreepSpell
+        Secondary compression from stage to stage.
     """
 
     clay: BoolArray
@@ -127,6 +131,8 @@ class PointState:
     shortening: FloatArray
     shortening_done: FloatArray
     per_decade: FloatArray
+    secondary: FloatArray
+    spells: tuple[CreepSpell, ...]
 
 
 def point_state(run: SheetRun) -> PointState:
@@ -152,8 +158,11 @@ def point_state(run: SheetRun) -> PointState:
     largest[clay] = np.maximum(result.yield_stress[0, -1], final[clay])
     largest_done = largest.copy()
     largest_done[clay] = np.maximum(result.yield_stress[0, -1], done[clay])
-    per_decade = np.zeros(initial.size)
-    per_decade[clay] = creep_per_decade(run.site, run.values, ground, result)[0]
+    per_decade, secondary = np.zeros(initial.size), np.zeros(initial.size)
+    spells = creep_spells(run.site, run.values, ground, result)
+    if spells:
+        per_decade[clay] = spells[-1].per_cell[0]
+        secondary[clay] = secondary_by_cell(run.site, spells, run.site.horizon)[0]
     shape = _Line.of(run)
     return PointState(
         clay=clay,
@@ -172,6 +181,8 @@ def point_state(run: SheetRun) -> PointState:
         shortening=shape.shortening(run, added, final, largest),
         shortening_done=shape.shortening(run, added, done, largest_done),
         per_decade=per_decade,
+        secondary=secondary,
+        spells=tuple(spells),
     )
 
 

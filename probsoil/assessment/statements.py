@@ -39,9 +39,9 @@ _DRAINS = (
 )
 _NO_CREEP = ("Creep (secondary compression) is not included.",)
 _CREEP = (
-    "Creep starts in each drainage segment when it has reached 95 % of its consolidation after the last "
-    "stage, in proportion to the logarithm of time, and less where a removed surcharge has left the clay "
-    "overconsolidated.",
+    "Creep starts in each drainage segment when it has reached 95 % of its consolidation under the load "
+    "of the time, in proportion to the logarithm of its age, and less where a removed surcharge has left the "
+    "clay overconsolidated; a later increase makes the clay younger, the more the larger it is.",
 )
 _EMBANKMENT = (
     "Stress from the embankment is that of a trapezoidal strip load on a homogeneous elastic half-space; "

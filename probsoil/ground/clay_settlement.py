@@ -110,12 +110,30 @@ def cell_settlement(site: SiteModel, ground: LoadedGround, result: Consolidation
     settlement : ndarray, shape (n_sample, n_cell), [m]
         Shortening of each cell.
     """
-    return _shortening(site, ground, result.stress[:, -1], result.yield_stress[:, -1])
+    return shortening(site, ground, result.stress[:, -1], result.yield_stress[:, -1])
 
 
-def _shortening(
+def shortening(
     site: SiteModel, ground: LoadedGround, stress: FloatArray, yield_stress: FloatArray
 ) -> FloatArray:
+    """Return the compression of every cell at an effective stress.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells.
+    ground : LoadedGround
+        The ground before loading.
+    stress : ndarray, shape (n_sample, n_cell), [kPa]
+        Effective vertical stress.
+    yield_stress : ndarray, shape (n_sample, n_cell), [kPa]
+        Preconsolidation stress reached so far.
+
+    Returns
+    -------
+    shortening : ndarray, shape (n_sample, n_cell), [m]
+        Thickness times strain.
+    """
     state = _clay_state(site, ground)
     lost = void_ratio_lost(
         stress,
@@ -245,7 +263,32 @@ def settlement_when_done(
         Sum over the cells of thickness times strain.
     """
     initial = ground.points.stress[:, ground.clay]
-    return np.asarray(_shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+    return np.asarray(shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+
+
+def added_stress_when_done(
+    site: SiteModel, ground: LoadedGround, time: float, settled: FloatArray
+) -> FloatArray:
+    """Return the added stress that the load of a time leaves once all excess pore pressure has gone.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Stages.
+    ground : LoadedGround
+        Added stress.
+    time : float, [years]
+        Time.
+    settled : ndarray, shape (n_sample,), [m]
+        Settlement, for what submergence takes off.
+
+    Returns
+    -------
+    added : ndarray, shape (n_sample, n_cell), [kPa]
+        Below the centreline.
+    """
+    relief = relief_by_water(site, ground.load, time, settled)
+    return np.asarray((stress_at(site, ground.load, time) - relief)[:, ground.clay])
 
 
 def final_added_stress(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
@@ -265,9 +308,27 @@ def final_added_stress(site: SiteModel, ground: LoadedGround, result: Consolidat
     added : ndarray, shape (n_sample, n_cell), [kPa]
         With the settlement at the horizon.
     """
-    settled = np.nan_to_num(result.settlement[:, -1])
-    relief = relief_by_water(site, ground.load, site.horizon, settled)
-    return np.asarray((stress_at(site, ground.load, site.horizon) - relief)[:, ground.clay])
+    return added_stress_when_done(site, ground, site.horizon, np.nan_to_num(result.settlement[:, -1]))
+
+
+def by_segment(site: SiteModel, of_cells: FloatArray) -> FloatArray:
+    """Return the sums over the cells of every drainage segment.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Cells.
+    of_cells : ndarray, shape (n_sample, n_cell), [m]
+        What is to be summed.
+
+    Returns
+    -------
+    sums : ndarray, shape (n_sample, n_segment), [m]
+        One for each segment.
+    """
+    cells = site.cells
+    parts = [np.ascontiguousarray(of_cells[:, cells.segment == one]) for one in range(cells.n_segment)]
+    return np.stack([part.sum(axis=1) for part in parts], axis=1)
 
 
 def segment_settlement_when_done(
@@ -290,9 +351,7 @@ def segment_settlement_when_done(
         Under the load that stays after the last stage.
     """
     final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
-    shortened = _shortening(site, ground, final, result.yield_stress[:, -1])
-    segment = site.cells.segment
-    return np.stack([shortened[:, segment == one].sum(axis=1) for one in range(site.cells.n_segment)], axis=1)
+    return by_segment(site, shortening(site, ground, final, result.yield_stress[:, -1]))
 
 
 def degrees_of_consolidation(
@@ -339,8 +398,8 @@ def degrees_of_consolidation(
 def _done(
     site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, time: float, settled: FloatArray
 ) -> FloatArray:
-    added = stress_at(site, ground.load, time) - relief_by_water(site, ground.load, time, settled)
-    return settlement_when_done(site, ground, yield_stress, added[:, ground.clay])
+    added = added_stress_when_done(site, ground, time, settled)
+    return settlement_when_done(site, ground, yield_stress, added)
 
 
 def _degree(settled: FloatArray, done: FloatArray) -> FloatArray:

@@ -130,12 +130,6 @@ class SiteModel:
         return sum(stage.pressure * laid_share(stage, time) for stage in self.stages)
 
     @property
-    def last_increase(self) -> float:
-        """Middle of the last stage that added load, [years]."""
-        adding = [stage for stage in self.stages if stage.height > 0.0 or stage.pressure > 0.0]
-        return 0.5 * (adding[-1].start + adding[-1].end)
-
-    @property
     def station(self) -> str:
         """Where settlement is reported, in words."""
         return "centreline" if self.foundation is None else self.foundation.station

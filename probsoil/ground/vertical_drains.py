@@ -58,8 +58,8 @@ def drain_factor(
     Returns
     -------
     factor : ndarray, shape (...,), [-]
-        :math:`\mu = \frac{n^2}{n^2 - s^2} \ln\frac{n}{s} - \frac{3}{4} + \frac{s^2}{4 n^2}
-        + \frac{k_h}{k_s} \frac{n^2 - s^2}{n^2} \ln s`.
+        With q the permeability ratio, :math:`(n^2 - 1)\,\mu = n^2 (\ln\frac{n}{s} + q \ln s - \frac{3}{4})
+        + s^2 (1 - \frac{s^2}{4 n^2}) + q\,(1 - s^2 + \frac{s^4 - 1}{4 n^2})`.
 
     Raises
     ------
@@ -69,7 +69,8 @@ def drain_factor(
     Notes
     -----
     With it :math:`U_r = 1 - \exp(-8 T_h/\mu)`, :math:`T_h = c_h t/D_e^2`. Without smear it is
-    Barron's :math:`F(n)`; for large n Hansbo's :math:`\ln(n/s) + (k_h/k_s) \ln s - 3/4`.
+    Barron's :math:`F(n)`; for large n Hansbo's :math:`\ln(n/s) + (k_h/k_s) \ln s - 3/4`. Exact for
+    equal strain of the soil around the drain, its smear zone included, however wide that is.
 
     References
     ----------
@@ -82,8 +83,10 @@ def drain_factor(
     if (n <= s).any():
         raise ParameterError("spacing_ratio must be above smear_ratio: the smear zones would meet")
     ratio = checked("permeability_ratio", permeability_ratio, at_least=1.0)
-    undisturbed = n**2 / (n**2 - s**2) * np.log(n / s) - 0.75 + s**2 / (4.0 * n**2)
-    return np.asarray(undisturbed + ratio * (n**2 - s**2) / n**2 * np.log(s))
+    wide = n**2 * (np.log(n / s) + ratio * np.log(s) - 0.75)
+    outside = s**2 * (1.0 - s**2 / (4.0 * n**2))
+    in_smear = ratio * (1.0 - s**2 + (s**4 - 1.0) / (4.0 * n**2))
+    return np.asarray((wide + outside + in_smear) / (n**2 - 1.0))
 
 
 def well_resistance(

@@ -156,7 +156,7 @@ def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
         ("bottom [m]", "bottom", ".2f"),
         ("drains at", "drains_at"),
     ]
-    creeping = [row for row in segments if row["creep_per_decade"] > 0.0]
+    spells = [{"segment": row["segment"], **spell} for row in segments for spell in row["creep"]]
     return [
         sheet_table("through time", "Settlement and degree of consolidation in time", rows, columns),
         sheet_table(
@@ -173,12 +173,14 @@ def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
         ),
         sheet_table(
             "secondary compression",
-            "Secondary compression at the horizon",
-            creeping,
+            "Secondary compression up to the horizon, from the middle of a stage to that of the next",
+            spells,
             [
                 ("segment", "segment"),
-                ("origin t0 [years]", "origin", ".3f"),
-                ("end of primary tp [years]", "end_of_primary", ".3f"),
+                ("after stage", "after"),
+                ("age from t0 [years]", "origin", ".3f"),
+                ("creeps from tp [years]", "begin", ".3f"),
+                ("until t [years]", "until", ".3f"),
                 ("per decade S10 [m]", "creep_per_decade", ".5f"),
                 ("decades [-]", "decades", ".4f"),
                 ("secondary sα [m]", "secondary", ".5f"),

@@ -49,9 +49,11 @@ _WORDS = {
     "consolidation equation.",
     "strength": "At the points of the sub-layers, with the mode factor. After a stage the present stresses "
     "take the place of those in situ.",
-    "creep": "Each drainage segment creeps from its own tp, when it has reached 95 % of its consolidation "
-    "after the last stage. Rm is the mean over the cells, by thickness, of what an unloading leaves of the "
-    "creep: 1 where the clay is at the largest stress it has carried.",
+    "creep": "Each drainage segment creeps while it has reached 95 % of its consolidation under the load of "
+    "the time, from tp on. Its age counts from the middle of the first stage; a stage that takes the clay "
+    "beyond the largest stress it knew makes it younger. Rm is the mean over the cells, by thickness, of "
+    "what an unloading leaves of the creep in the end: 1 where the clay is at the largest stress it has "
+    "carried.",
     "drains": "Every cell that drains reach loses water to them at 8 kh u/(γw (μ + μw) De²), besides what "
     "flows up and down.",
     "slip": "The circle with the least factor of safety. Strength changes along the arc; its mean over the "

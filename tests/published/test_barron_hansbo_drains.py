@@ -43,14 +43,15 @@ def factor_by_integration(n: float, s: float = 1.0, ratio: float = 1.0) -> float
 
     inside, _ = quad(lambda r: pressure(r) * r, 1.0, s)
     outside, _ = quad(lambda r: pressure(r) * r, s, n)
-    # mean over the whole circle, drain included, as the formulas have it
-    return 2.0 * (inside + outside) / n**4
+    return 2.0 * (inside + outside) / (n**2 * (n**2 - 1.0))  # mean over the soil alone
+
+
+EXACT = 1e-7  # of the quadrature
 
 
 @pytest.mark.parametrize("n", [5.0, 10.0, 15.0, 25.0, 50.0])
 def test_factor_without_smear(n):
-    # Barron divides by the area of the soil alone, n^2 - 1
-    assert float(drain_factor(n)) == pytest.approx(factor_by_integration(n) * n**2 / (n**2 - 1.0), rel=1e-3)
+    assert float(drain_factor(n)) == pytest.approx(factor_by_integration(n), rel=EXACT)
 
 
 @pytest.mark.parametrize(("degree", "factor"), [(0.5, "0.137"), (0.9, "0.455")])
@@ -61,12 +62,23 @@ def test_recalled_time_factors_of_a_spacing_ratio_of_ten(degree, factor):
     assert found[1] >= degree - 1e-3
 
 
-@pytest.mark.parametrize(("n", "s", "ratio"), [(9.0, 1.4, 2.0), (20.0, 3.0, 4.0), (25.0, 2.0, 3.0)])
-def test_factor_with_smear(n, s, ratio):
-    # the usual formula leaves out terms of the order of (s/n)^2 times kh/ks in the smear zone
-    assert float(drain_factor(n, s, ratio)) == pytest.approx(
-        factor_by_integration(n, s, ratio), rel=0.02, abs=ratio * (s / n) ** 2
-    )
+@pytest.mark.parametrize("n", [5.0, 9.0, 20.0])
+@pytest.mark.parametrize("share", [0.25, 0.5, 0.8, 0.99])
+@pytest.mark.parametrize("ratio", [1.0, 2.0, 5.0])
+def test_factor_with_smear(n, share, ratio):
+    """Up to a smear zone that fills the cylinder."""
+    s = max(share * n, 1.0)
+    assert float(drain_factor(n, s, ratio)) == pytest.approx(factor_by_integration(n, s, ratio), rel=EXACT)
+
+
+def test_more_disturbance_never_drains_faster():
+    wider = drain_factor(10.0, np.linspace(1.0, 9.99, 200), 5.0)
+    assert (np.diff(wider) > 0.0).all()
+    assert (np.diff(drain_factor(10.0, 3.0, np.linspace(1.0, 8.0, 50))) > 0.0).all()
+
+
+def test_smear_zone_that_fills_the_cylinder_is_a_soil_of_its_permeability():
+    assert float(drain_factor(10.0, 10.0 - 1e-9, 5.0)) == pytest.approx(5.0 * float(drain_factor(10.0)))
 
 
 def test_problem_with_smear():
@@ -74,9 +86,10 @@ def test_problem_with_smear():
     t = 0.3 * 6.0 / 4.5**2
     radial = float(radial_degree_of_consolidation(t, factor))
     vertical = float(degree_uniform(0.3 * 6.0 / 4.5**2))
-    assert float(factor) == pytest.approx(1.8196, abs=5e-5)
-    assert radial == pytest.approx(0.3235, abs=5e-5)
-    assert 1.0 - (1.0 - radial) * (1.0 - vertical) == pytest.approx(0.5511, abs=5e-5)
+    exact = factor_by_integration(9.0, 1.4, 2.0)
+    assert float(factor) == pytest.approx(exact, rel=EXACT)
+    assert radial == pytest.approx(1.0 - np.exp(-8.0 * t / exact), rel=1e-6)
+    assert 1.0 - (1.0 - radial) * (1.0 - vertical) == pytest.approx(0.5511, abs=0.005)  # the usual formula
 
 
 def test_recalled_surcharge_with_drains():

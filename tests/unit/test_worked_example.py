@@ -10,6 +10,7 @@ import sys
 from collections.abc import Iterator
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from probsoil.assessment import sheet
@@ -57,9 +58,12 @@ def spread(z: float, toe: float, shoulder: float) -> float:
 
 
 def smeared(n: float, s: float, ratio: float) -> float:
-    """Return mu for equal strain from the flow through undisturbed and smeared soil."""
-    undisturbed = math.log(n / s) * n**2 / (n**2 - s**2) - 0.75 + (s / n) ** 2 / 4.0
-    return undisturbed + ratio * (1.0 - (s / n) ** 2) * math.log(s)
+    """Return mu for equal strain: mean excess pressure, added up ring by ring from the drain."""
+    edge = np.linspace(1.0, n, 400_001)
+    middle = 0.5 * (edge[1:] + edge[:-1])
+    gradient = np.where(middle < s, ratio, 1.0) * (n**2 - middle**2) / middle
+    pressure = np.cumsum(gradient * np.diff(edge))
+    return float(2.0 * (pressure * middle * np.diff(edge)).sum() / (n**2 * (n**2 - 1.0)))
 
 
 def power_law(stress: float, past: float) -> float:
@@ -158,7 +162,7 @@ def from_sheet(found: dict) -> dict[str, float]:
         "μ": found["drains"]["factor"],
         "U": first["degree"],
         "s10": row["creep_per_decade"],
-        "S10": segment["creep_per_decade"],
+        "S10": segment["creep"][0]["creep_per_decade"],
         "sα": segment["secondary"],
         "s": found["final_settlement"],
         "m": strength["exponent"],
