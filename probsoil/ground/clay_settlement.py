@@ -7,19 +7,22 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.ground.applied_load import LoadedGround, relief_by_water, share_above_base, stress_at
 from probsoil.ground.compression import void_ratio_lost
-from probsoil.ground.consolidation import (
-    ClayState,
+from probsoil.ground.conductivity import (
     Conductivity,
-    ConsolidationResult,
-    LoadHistory,
     RadialDrainage,
-    Submergence,
     conductivity_from_cv,
     conductivity_from_permeability,
+)
+from probsoil.ground.consolidation import (
+    ClayState,
+    ConsolidationResult,
+    LoadHistory,
+    Submergence,
     consolidate,
 )
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
+from probsoil.ground.row_sums import row_sum
 from probsoil.ground.site_model import DrainForm, SiteModel
 from probsoil.ground.vertical_drains import drain_factor, well_resistance
 
@@ -245,7 +248,7 @@ def settlement_when_done(
         Sum over the cells of thickness times strain.
     """
     initial = ground.points.stress[:, ground.clay]
-    return np.asarray(_shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+    return row_sum(_shortening(site, ground, initial + added, yield_stress))
 
 
 def final_added_stress(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
@@ -292,7 +295,7 @@ def segment_settlement_when_done(
     final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
     shortened = _shortening(site, ground, final, result.yield_stress[:, -1])
     segment = site.cells.segment
-    return np.stack([shortened[:, segment == one].sum(axis=1) for one in range(site.cells.n_segment)], axis=1)
+    return np.stack([row_sum(shortened[:, segment == one]) for one in range(site.cells.n_segment)], axis=1)
 
 
 def degrees_of_consolidation(

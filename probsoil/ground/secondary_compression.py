@@ -10,6 +10,7 @@ from probsoil.ground.compression import LN10
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.degree import time_to_degree
 from probsoil.ground.profile import Values, column
+from probsoil.ground.row_sums import row_sum
 from probsoil.ground.site_model import SiteModel
 
 PRIMARY = 0.95
@@ -94,7 +95,7 @@ def secondary_settlement(
     per_cell, segment = creep_per_decade(site, values, ground, result), site.cells.segment
     start, origin = end_of_primary(site, ground, result), site.last_increase
     for one in range(site.cells.n_segment):
-        rate = per_cell[:, segment == one].sum(axis=1)
+        rate = row_sum(per_cell[:, segment == one])
         since = np.maximum(site.times - origin, 0.0)[None, :] / (start[:, one, None] - origin)
         decades = np.log10(np.maximum(since, 1.0))
         settled += rate[:, None] * decades

@@ -56,8 +56,9 @@ def zone_strengths(
     strength = np.zeros((site.record.size, n_sample, len(gains), n_point))
     for slot in range(site.record.size):
         for zone, gain in enumerate(gains):
-            stress = stress0 + gain * (result.stress[:, slot] - stress0)
-            largest = stress0 + gain * (result.yield_stress[:, slot] - stress0)
+            # a weighted mean rather than a gain, so that a stress near zero stays above zero
+            stress = (1.0 - gain) * stress0 + gain * result.stress[:, slot]
+            largest = (1.0 - gain) * stress0 + gain * result.yield_stress[:, slot]
             past = np.maximum(np.maximum(yield0, largest), stress)
             su = undrained_shear_strength(stress, past, ratio, exponent)
             strength[slot, :, zone, clay] = (mode * su).T
