@@ -22,7 +22,7 @@ from probsoil.ground.consolidation import (
 )
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
-from probsoil.ground.row_sums import row_sum
+from probsoil.ground.rows import chosen, row_sum
 from probsoil.ground.site_model import DrainForm, SiteModel
 from probsoil.ground.vertical_drains import drain_factor, well_resistance
 
@@ -49,16 +49,17 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     """
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
-    submergence = Submergence(spread=load.spread[:, clay], height=load.height, water_depth=load.water_depth)
+    spread = chosen(load.spread, clay)
+    submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
-        stress=load.stress[:, :, clay],
+        stress=chosen(load.stress, clay),
         submergence=submergence if site.submergence else None,
     )
     flow = _conductivity(site, values, state)
     if site.foundation is not None:
-        opened = flow.log_value + _OPEN_ABOVE_BASE * share_above_base(site.foundation, ground.points)[:, clay]
-        flow = replace(flow, log_value=opened)
+        above = chosen(share_above_base(site.foundation, ground.points), clay)
+        flow = replace(flow, log_value=flow.log_value + _OPEN_ABOVE_BASE * above)
     if site.drains is not None:
         flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
@@ -67,12 +68,12 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
 def _clay_state(site: SiteModel, ground: LoadedGround) -> ClayState:
     layer = site.cells.layer
     return ClayState(
-        thickness=ground.points.thickness[:, ground.clay],
-        stress=ground.points.stress[:, ground.clay],
-        yield_stress=ground.yield_stress[:, ground.clay],
-        void_ratio=ground.columns.void_ratio[:, layer],
-        lam=ground.columns.lam[:, layer],
-        kap=ground.columns.kap[:, layer],
+        thickness=chosen(ground.points.thickness, ground.clay),
+        stress=chosen(ground.points.stress, ground.clay),
+        yield_stress=chosen(ground.yield_stress, ground.clay),
+        void_ratio=chosen(ground.columns.void_ratio, layer),
+        lam=chosen(ground.columns.lam, layer),
+        kap=chosen(ground.columns.kap, layer),
     )
 
 
@@ -186,14 +187,12 @@ def drain_terms(site: SiteModel, drains: DrainForm, values: Values, ground: Load
     """
     layer, clay = site.cells.layer, ground.clay
     n_sample = ground.points.depth.shape[0]
-    depth, thickness = ground.points.depth[:, clay], ground.points.thickness[:, clay]
-    ratio = np.stack(
-        [
-            column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
-            for form in site.layers
-        ],
-        axis=1,
-    )[:, layer]
+    depth, thickness = chosen(ground.points.depth, clay), chosen(ground.points.thickness, clay)
+    ratios = [
+        column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
+        for form in site.layers
+    ]
+    ratio = chosen(np.stack(ratios, axis=1), layer)
     smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
     permeability = ratio * _initial_permeability(site, values, ground)
     resistance = np.zeros_like(depth)
@@ -247,7 +246,7 @@ def settlement_when_done(
     settlement : ndarray, shape (n_sample,), [m]
         Sum over the cells of thickness times strain.
     """
-    initial = ground.points.stress[:, ground.clay]
+    initial = chosen(ground.points.stress, ground.clay)
     return row_sum(_shortening(site, ground, initial + added, yield_stress))
 
 
@@ -270,7 +269,7 @@ def final_added_stress(site: SiteModel, ground: LoadedGround, result: Consolidat
     """
     settled = np.nan_to_num(result.settlement[:, -1])
     relief = relief_by_water(site, ground.load, site.horizon, settled)
-    return np.asarray((stress_at(site, ground.load, site.horizon) - relief)[:, ground.clay])
+    return chosen(stress_at(site, ground.load, site.horizon) - relief, ground.clay)
 
 
 def segment_settlement_when_done(
@@ -292,7 +291,7 @@ def segment_settlement_when_done(
     settlement : ndarray, shape (n_sample, n_segment), [m]
         Under the load that stays after the last stage.
     """
-    final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
+    final = chosen(ground.points.stress, ground.clay) + final_added_stress(site, ground, result)
     shortened = _shortening(site, ground, final, result.yield_stress[:, -1])
     segment = site.cells.segment
     return np.stack([row_sum(shortened[:, segment == one]) for one in range(site.cells.n_segment)], axis=1)
@@ -343,7 +342,7 @@ def _done(
     site: SiteModel, ground: LoadedGround, yield_stress: FloatArray, time: float, settled: FloatArray
 ) -> FloatArray:
     added = stress_at(site, ground.load, time) - relief_by_water(site, ground.load, time, settled)
-    return settlement_when_done(site, ground, yield_stress, added[:, ground.clay])
+    return settlement_when_done(site, ground, yield_stress, chosen(added, ground.clay))
 
 
 def _degree(settled: FloatArray, done: FloatArray) -> FloatArray:

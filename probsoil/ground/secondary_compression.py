@@ -10,7 +10,7 @@ from probsoil.ground.compression import LN10
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.degree import time_to_degree
 from probsoil.ground.profile import Values, column
-from probsoil.ground.row_sums import row_sum
+from probsoil.ground.rows import chosen, row_sum
 from probsoil.ground.site_model import SiteModel
 
 PRIMARY = 0.95
@@ -157,8 +157,8 @@ def creep_per_decade(
         if form.creeps:
             ratio[:, index] = column(values, f"{form.name}.C_alpha_ratio", n_sample)
     columns = ground.columns
-    lam, kap, void_ratio = columns.lam[:, layer], columns.kap[:, layer], columns.void_ratio[:, layer]
-    final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
+    lam, kap, void_ratio = (chosen(one, layer) for one in (columns.lam, columns.kap, columns.void_ratio))
+    final = chosen(ground.points.stress, ground.clay) + final_added_stress(site, ground, result)
     largest = np.maximum(result.yield_stress[:, -1], final)
-    creep_index = ratio[:, layer] * lam * LN10 * creep_reduction(largest / final, kap / lam)
-    return np.asarray(creep_index / (1.0 + void_ratio) * ground.points.thickness[:, ground.clay])
+    creep_index = chosen(ratio, layer) * lam * LN10 * creep_reduction(largest / final, kap / lam)
+    return np.asarray(creep_index / (1.0 + void_ratio) * chosen(ground.points.thickness, ground.clay))

@@ -10,7 +10,7 @@ import probsoil
 from probsoil.assessment.evaluation import prepare
 from probsoil.ground.lanes import LANES
 from probsoil.ground.response import respond
-from probsoil.ground.row_sums import row_sum
+from probsoil.ground.rows import row_sum
 from probsoil.ground.site_model import site_model
 
 SCENARIOS = Path(__file__).parents[3] / "scenarios"
