@@ -7,9 +7,9 @@ sum of strengths times fixed weights, so one sparse row per circle serves all re
 from typing import NamedTuple
 
 import numpy as np
-from numba import njit
 
 from probsoil._typing import FloatArray, IntArray
+from probsoil.ground._compiling import compiled, kept
 from probsoil.ground.lanes import LANES
 
 
@@ -34,10 +34,7 @@ class Moments(NamedTuple):
     bottom: FloatArray
 
 
-_compiled = njit(nogil=True, cache=True, error_model="numpy", fastmath={"contract"})
-
-
-@_compiled
+@compiled
 def _interpolated(
     z: float, first: int, last: int, depth: FloatArray, strength: FloatArray, kind: int, lane: int
 ) -> float:
@@ -54,7 +51,7 @@ def _interpolated(
     return value
 
 
-@_compiled
+@kept
 def strength_on_slices(
     edge: FloatArray,
     boundary: FloatArray,
@@ -92,7 +89,7 @@ def strength_on_slices(
                             )
 
 
-@_compiled
+@compiled
 def _factors(b: int, circle: int, moments: Moments, ratio: FloatArray) -> None:
     """Factor of safety of one circle in every lane of a block."""
     driving, friction, cohesion, traffic, under_traffic = moments.fill_terms[:, circle]
@@ -116,7 +113,7 @@ def _factors(b: int, circle: int, moments: Moments, ratio: FloatArray) -> None:
         ratio[lane] /= moments.fill[b, 0, lane] * driving + moments.fill[b, 3, lane] * traffic
 
 
-@_compiled
+@kept
 def least_factor(moments: Moments, factor: FloatArray, critical: IntArray) -> None:
     """Least ratio of resisting to driving moment over the circles above the base, and which gives it.
 

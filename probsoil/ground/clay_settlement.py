@@ -7,19 +7,22 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.ground.applied_load import LoadedGround, relief_by_water, share_above_base, stress_at
 from probsoil.ground.compression import void_ratio_lost
-from probsoil.ground.consolidation import (
-    ClayState,
+from probsoil.ground.conductivity import (
     Conductivity,
-    ConsolidationResult,
-    LoadHistory,
     RadialDrainage,
-    Submergence,
     conductivity_from_cv,
     conductivity_from_permeability,
+)
+from probsoil.ground.consolidation import (
+    ClayState,
+    ConsolidationResult,
+    LoadHistory,
+    Submergence,
     consolidate,
 )
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
+from probsoil.ground.rows import chosen, row_sum
 from probsoil.ground.site_model import DrainForm, SiteModel
 from probsoil.ground.vertical_drains import drain_factor, well_resistance
 
@@ -46,16 +49,17 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     """
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
-    submergence = Submergence(spread=load.spread[:, clay], height=load.height, water_depth=load.water_depth)
+    spread = chosen(load.spread, clay)
+    submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
-        stress=load.stress[:, :, clay],
+        stress=chosen(load.stress, clay),
         submergence=submergence if site.submergence else None,
     )
     flow = _conductivity(site, values, state)
     if site.foundation is not None:
-        opened = flow.log_value + _OPEN_ABOVE_BASE * share_above_base(site.foundation, ground.points)[:, clay]
-        flow = replace(flow, log_value=opened)
+        above = chosen(share_above_base(site.foundation, ground.points), clay)
+        flow = replace(flow, log_value=flow.log_value + _OPEN_ABOVE_BASE * above)
     if site.drains is not None:
         flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
@@ -64,12 +68,12 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
 def _clay_state(site: SiteModel, ground: LoadedGround) -> ClayState:
     layer = site.cells.layer
     return ClayState(
-        thickness=ground.points.thickness[:, ground.clay],
-        stress=ground.points.stress[:, ground.clay],
-        yield_stress=ground.yield_stress[:, ground.clay],
-        void_ratio=ground.columns.void_ratio[:, layer],
-        lam=ground.columns.lam[:, layer],
-        kap=ground.columns.kap[:, layer],
+        thickness=chosen(ground.points.thickness, ground.clay),
+        stress=chosen(ground.points.stress, ground.clay),
+        yield_stress=chosen(ground.yield_stress, ground.clay),
+        void_ratio=chosen(ground.columns.void_ratio, layer),
+        lam=chosen(ground.columns.lam, layer),
+        kap=chosen(ground.columns.kap, layer),
     )
 
 
@@ -201,14 +205,12 @@ def drain_terms(site: SiteModel, drains: DrainForm, values: Values, ground: Load
     """
     layer, clay = site.cells.layer, ground.clay
     n_sample = ground.points.depth.shape[0]
-    depth, thickness = ground.points.depth[:, clay], ground.points.thickness[:, clay]
-    ratio = np.stack(
-        [
-            column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
-            for form in site.layers
-        ],
-        axis=1,
-    )[:, layer]
+    depth, thickness = chosen(ground.points.depth, clay), chosen(ground.points.thickness, clay)
+    ratios = [
+        column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
+        for form in site.layers
+    ]
+    ratio = chosen(np.stack(ratios, axis=1), layer)
     smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
     permeability = ratio * _initial_permeability(site, values, ground)
     resistance = np.zeros_like(depth)
@@ -262,8 +264,8 @@ def settlement_when_done(
     settlement : ndarray, shape (n_sample,), [m]
         Sum over the cells of thickness times strain.
     """
-    initial = ground.points.stress[:, ground.clay]
-    return np.asarray(shortening(site, ground, initial + added, yield_stress).sum(axis=1))
+    initial = chosen(ground.points.stress, ground.clay)
+    return row_sum(shortening(site, ground, initial + added, yield_stress))
 
 
 def added_stress_when_done(
@@ -288,7 +290,7 @@ def added_stress_when_done(
         Below the centreline.
     """
     relief = relief_by_water(site, ground.load, time, settled)
-    return np.asarray((stress_at(site, ground.load, time) - relief)[:, ground.clay])
+    return chosen(stress_at(site, ground.load, time) - relief, ground.clay)
 
 
 def final_added_stress(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
@@ -327,8 +329,8 @@ def by_segment(site: SiteModel, of_cells: FloatArray) -> FloatArray:
         One for each segment.
     """
     cells = site.cells
-    parts = [np.ascontiguousarray(of_cells[:, cells.segment == one]) for one in range(cells.n_segment)]
-    return np.stack([part.sum(axis=1) for part in parts], axis=1)
+    parts = [of_cells[:, cells.segment == one] for one in range(cells.n_segment)]
+    return np.stack([row_sum(part) for part in parts], axis=1)
 
 
 def segment_settlement_when_done(
@@ -350,7 +352,7 @@ def segment_settlement_when_done(
     settlement : ndarray, shape (n_sample, n_segment), [m]
         Under the load that stays after the last stage.
     """
-    final = ground.points.stress[:, ground.clay] + final_added_stress(site, ground, result)
+    final = chosen(ground.points.stress, ground.clay) + final_added_stress(site, ground, result)
     return by_segment(site, shortening(site, ground, final, result.yield_stress[:, -1]))
 
 

@@ -8,7 +8,7 @@ from probsoil._typing import FloatArray, IntArray
 
 Numbers = TypeVar("Numbers", FloatArray, IntArray)
 
-LANES = 16
+LANES = 32
 """Realisations that a kernel carries side by side, [-]; a multiple of any vector width."""
 
 

@@ -55,7 +55,7 @@ def embankment_influence(
     z, x = np.broadcast_arrays(checked("depth", depth, at_least=0.0), np.abs(checked("offset", offset)))
     toe, shoulder = base_width / 2.0, top_width / 2.0
     left = _ramp(z, x + toe, x + shoulder)
-    right = _ramp(z, toe - x, shoulder - x)
+    right = _ramp(z, toe - x, shoulder - x) if x.any() else left
     return np.asarray(left + right, dtype=np.float64)
 
 
@@ -112,6 +112,8 @@ def _ramp(z: FloatArray, toe: FloatArray, shoulder: FloatArray) -> FloatArray:
     run = toe - shoulder
     steep = run < 1e-9 * (1.0 + np.abs(toe))
     slope = (toe * np.arctan2(toe, z) - shoulder * np.arctan2(shoulder, z)) / np.where(steep, 1.0, run)
+    if not steep.any():
+        return np.asarray(slope / np.pi)
     # a vertical side is the limit of the quotient: the uniform strip
     return np.asarray(np.where(steep, _strip_side(z, toe), slope / np.pi), dtype=np.float64)
 

@@ -12,6 +12,7 @@ from probsoil.ground.in_situ_stress import (
     preconsolidation_stress,
     total_vertical_stress,
 )
+from probsoil.ground.rows import chosen
 from probsoil.ground.site_model import LayerForm, SiteModel
 from probsoil.ground.undrained_strength import (
     m_from_friction_angle,
@@ -142,7 +143,8 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     layer, centre, share = _relative_points(site)
     if site.foundation is not None:
         centre, share = _with_face_at(site.foundation.depth, site, boundary, centre, share)
-    depth = boundary[:, layer] + centre * thickness[:, layer]
+    each = chosen(thickness, layer)
+    depth = chosen(boundary, layer) + centre * each
     water_table = column(values, "site.water_table", n_sample)
     total = total_vertical_stress(
         depth,
@@ -152,9 +154,7 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
         water_table=water_table,
     )
     effective = np.maximum(total - hydrostatic_pressure(depth, water_table), LEAST_STRESS)
-    return Points(
-        layer=layer, boundary=boundary, depth=depth, thickness=share * thickness[:, layer], stress=effective
-    )
+    return Points(layer=layer, boundary=boundary, depth=depth, thickness=share * each, stress=effective)
 
 
 def _relative_points(site: SiteModel) -> tuple[IntArray, FloatArray, FloatArray]:

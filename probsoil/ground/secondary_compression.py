@@ -18,6 +18,7 @@ from probsoil.ground.compression import LN10
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.degree import time_to_degree
 from probsoil.ground.profile import Values, column
+from probsoil.ground.rows import chosen
 from probsoil.ground.site_model import SiteModel
 
 PRIMARY = 0.95
@@ -180,7 +181,7 @@ def creep_spells(
     if not any(layer.creeps for layer in site.layers):
         return []
     ratio, kappa_share = _creep_ratios(site, values, ground)
-    known = ground.yield_stress[:, ground.clay]
+    known = chosen(ground.yield_stress, ground.clay)
     spells: list[CreepSpell] = []
     middles = [0.5 * (stage.start + stage.end) for stage in site.stages] + [np.inf]
     for index, stage in enumerate(site.stages):
@@ -218,7 +219,7 @@ def _creep_ratios(site: SiteModel, values: Values, ground: LoadedGround) -> tupl
     for index, form in enumerate(site.layers):
         if form.creeps:
             ratio[:, index] = column(values, f"{form.name}.C_alpha_ratio", n_sample)
-    return ratio[:, layer], ground.columns.kap[:, layer] / ground.columns.lam[:, layer]
+    return chosen(ratio, layer), chosen(ground.columns.kap, layer) / chosen(ground.columns.lam, layer)
 
 
 def _stress_when_done(
@@ -227,15 +228,17 @@ def _stress_when_done(
     """Return the effective stress that the load of a time comes to, with what has sunk until another."""
     last = int(np.searchsorted(site.times, min(until, site.horizon), side="right")) - 1
     settled = np.nan_to_num(result.settlement[:, last])
-    return ground.points.stress[:, ground.clay] + added_stress_when_done(site, ground, time, settled)
+    return chosen(ground.points.stress, ground.clay) + added_stress_when_done(site, ground, time, settled)
 
 
 def _per_decade(
     site: SiteModel, ground: LoadedGround, ratio: FloatArray, reduction: FloatArray
 ) -> FloatArray:
     """Return the secondary compression of every cell in a tenfold of time, (n_sample, n_cell), [m]."""
-    lam, void_ratio = (part[:, site.cells.layer] for part in (ground.columns.lam, ground.columns.void_ratio))
-    return ratio * lam * LN10 * reduction / (1.0 + void_ratio) * ground.points.thickness[:, ground.clay]
+    lam, void_ratio = (
+        chosen(part, site.cells.layer) for part in (ground.columns.lam, ground.columns.void_ratio)
+    )
+    return ratio * lam * LN10 * reduction / (1.0 + void_ratio) * chosen(ground.points.thickness, ground.clay)
 
 
 def _rejuvenation(

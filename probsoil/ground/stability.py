@@ -8,10 +8,13 @@ from probsoil._typing import FloatArray, IntArray
 from probsoil.ground.applied_load import AppliedLoad, LoadedGround, stress_at
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.profile import Values, column
+from probsoil.ground.rows import chosen
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.slip import FillStrength, GroundStrength, competing_circles, slip_safety
 from probsoil.ground.slip_circles import CircleFamily, circle_family
 from probsoil.ground.undrained_strength import undrained_shear_strength
+
+_BEYOND_TOE = 0  # the zone in which no load changes the stress
 
 
 def zone_strengths(
@@ -49,21 +52,25 @@ def zone_strengths(
     mode = column(values, "site.mode_factor", n_sample)[:, None]
     clay, n_point = ground.clay, ground.points.layer.size
     layer = ground.points.layer[clay]
-    ratio = ground.columns.strength_ratio[:, layer]
-    exponent = ground.columns.strength_exponent[:, layer]
-    stress0, yield0 = ground.points.stress[:, clay], ground.yield_stress[:, clay]
-    gains = [share[:, clay] for share in _zone_shares(ground.load)]
-    strength = np.zeros((site.record.size, n_sample, len(gains), n_point))
-    for slot in range(site.record.size):
-        for zone, gain in enumerate(gains):
-            stress = stress0 + gain * (result.stress[:, slot] - stress0)
-            largest = stress0 + gain * (result.yield_stress[:, slot] - stress0)
-            past = np.maximum(np.maximum(yield0, largest), stress)
-            su = undrained_shear_strength(stress, past, ratio, exponent)
-            strength[slot, :, zone, clay] = (mode * su).T
+    ratio = chosen(ground.columns.strength_ratio, layer)
+    exponent = chosen(ground.columns.strength_exponent, layer)
+    stress0, yield0 = chosen(ground.points.stress, clay), chosen(ground.yield_stress, clay)
+    gains = [chosen(share, clay) for share in _zone_shares(ground.load)]
     before = np.zeros((n_sample, n_point))
     before[:, clay] = mode * undrained_shear_strength(stress0, yield0, ratio, exponent)
-    return strength, before
+    strength = np.zeros((site.record.size, len(gains), n_sample, n_point))
+    strength[:, _BEYOND_TOE] = before
+    for slot in range(site.record.size):
+        for zone, gain in enumerate(gains):
+            if zone == _BEYOND_TOE:
+                continue
+            # a weighted mean rather than a gain, so that a stress near zero stays above zero
+            stress = (1.0 - gain) * stress0 + gain * result.stress[:, slot]
+            largest = (1.0 - gain) * stress0 + gain * result.yield_stress[:, slot]
+            past = np.maximum(np.maximum(yield0, largest), stress)
+            su = undrained_shear_strength(stress, past, ratio, exponent)
+            strength[slot, zone][:, clay] = mode * su
+    return strength.swapaxes(1, 2), before
 
 
 def _zone_shares(load: AppliedLoad) -> list[FloatArray]:

@@ -1,4 +1,4 @@
-/* The consolidation kernel of probsoil/ground/_consolidation_kernel.py once more, in C.
+/* The consolidation kernel of probsoil/ground (_consolidation_kernel.py, _newton_kernel.py) once more, in C.
  *
  * A yardstick, not a part of the package: the same cells, steps, stages, Newton iterations,
  * stopping test per lane, limits on a change and conductances renewed at every iteration, written
@@ -15,6 +15,7 @@
  * simplifies the rounding by a large constant away.
  */
 
+#include <math.h>
 #include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
@@ -26,7 +27,10 @@
 #define GAMMA (1.0 - 0.70710678118654752440)
 #define BEYOND ((1.0 - GAMMA) / GAMMA)
 #define TOLERANCE 1e-4
-#define MOST_ITERATIONS 40
+#define MOST_ITERATIONS 15
+#define LEAST_STRESS 1e-3
+#define LOG_LEAST_STRESS -6.907755278982137
+#define LEAST_LOGARITHM -700.0
 #define LEAST_VOID_RATIO 0.05
 #define EACH_LANE _Pragma("omp simd") for (int l = 0; l < LANES; l++)
 
@@ -62,13 +66,13 @@ typedef struct {
 /* One block's soil, state and scratch, arrays (cell, lane) or (lane,). */
 typedef struct {
     const row *thickness, *stress, *void_ratio, *lam, *kap, *log_conductivity, *decline, *radial;
-    row *s, *x, *w, *xp, *wp, *rate, *mass, *peak;
+    row *s, *w, *xp, *wp, *rate, *mass, *peak;
     row *trial_s, *trial_x, *trial_w, *total, *target;
     row *between, *pivot, *above; /* of the face above each cell, and one more below the last */
     row sunk, sunk_rate, foreseen, live, worst;
 } Block;
 
-enum { SCRATCH_ARRAYS = 16 };
+enum { SCRATCH_ARRAYS = 15 };
 
 static inline double smaller(double a, double b) { return a < b ? a : b; }
 static inline double larger(double a, double b) { return a > b ? a : b; }
@@ -156,7 +160,6 @@ static void start(const Problem *p, int64_t b, Block *k)
             double x = natural_log(s);
             double xp = natural_log(yield_stress[i][l]);
             k->s[i][l] = s;
-            k->x[i][l] = x;
             k->xp[i][l] = xp;
             k->wp[i][l] = k->kap[i][l] * (xp - x);
             k->w[i][l] = 0.0;
@@ -167,10 +170,21 @@ static void start(const Problem *p, int64_t b, Block *k)
     EACH_LANE k->sunk[l] = k->sunk_rate[l] = 0.0;
 }
 
+static inline double log_stress(double s)
+{
+    return natural_log(larger(s, LEAST_STRESS)) + smaller(s * (1.0 / LEAST_STRESS) - 1.0, 0.0);
+}
+
+static inline double guess(double s, double change)
+{
+    double half = 0.5 * s, twice = 2.0 * s;
+    return smaller(larger(s + change, smaller(half, twice)), larger(half, twice));
+}
+
 static inline void compress(double s, double *restrict x, double *restrict w, double xp, double wp, double lam,
                             double kap)
 {
-    *x = natural_log(s);
+    *x = log_stress(s);
     double past = *x - xp;
     *w = wp + kap * smaller(past, 0.0) + lam * larger(past, 0.0);
 }
@@ -190,7 +204,7 @@ static void set_out(const Problem *p, int stage, double length, Block *k)
             EACH_LANE
             {
                 target[l] = w[l];
-                trial_s[l] = smaller(larger(s[l] + span * rate[l], 0.5 * s[l]), 2.0 * s[l]);
+                trial_s[l] = guess(s[l], span * rate[l]);
                 compress(trial_s[l], &trial_x[l], &trial_w[l], xp[l], wp[l], lam[l], kap[l]);
             }
         } else {
@@ -200,7 +214,7 @@ static void set_out(const Problem *p, int stage, double length, Block *k)
                 target[l] = w[l] + BEYOND * gained;
                 rate[l] = (trial_s[l] - s[l]) / span;
                 sum[l] += mass[l] * gained;
-                trial_s[l] = smaller(larger(s[l] + length * rate[l], 0.5 * s[l]), 2.0 * s[l]);
+                trial_s[l] = guess(s[l], length * rate[l]);
                 compress(trial_s[l], &trial_x[l], &trial_w[l], xp[l], wp[l], lam[l], kap[l]);
             }
         }
@@ -267,7 +281,8 @@ static void pass_down(const Problem *p, double span, int drains, Block *k)
         double follows = p->follows[i], joined = p->joined[i] ? 1.0 : 0.0;
         EACH_LANE
         {
-            double exponent = decline[l] * w[l] - log_conductivity[l] + follows * larger(x[l], xp[l]);
+            double held = w[l] + kap[l] * larger(LOG_LEAST_STRESS - x[l], 0.0);
+            double exponent = decline[l] * held - log_conductivity[l] + follows * larger(x[l], xp[l]);
             own[l] = exponential(exponent) * thickness[l] / (2.0 * span);
         }
         for (int64_t n = 0; n < p->power[i]; n++)
@@ -294,7 +309,7 @@ static void pass_down(const Problem *p, double span, int drains, Block *k)
             above[l] = change[l] + flow;
             double inflow = g * reciprocal * change[l] - rest * flow;
             change[l] = mass[l] * (w[l] - target[l]) - leak[l] * excess + inflow;
-            diagonal[l] = mass[l] * slope / s[l] + leak[l] + rest * g;
+            diagonal[l] = mass[l] * slope / larger(s[l], LEAST_STRESS) + leak[l] + rest * g;
             resistance_above[l] = own[l];
             excess_above[l] = excess;
         }
@@ -320,9 +335,10 @@ static int pass_up(const Problem *p, Block *k)
         {
             double delta = (above[l] + below[l]) * pivot[l];
             double old = s[l];
-            double new = larger(old - live[l] * delta, 0.2 * old);
+            double lowest = old > LEAST_STRESS ? 0.2 * old : -INFINITY;
+            double new = larger(old - live[l] * delta, lowest);
             double moved = new > old ? new - old : old - new;
-            worst[l] = larger(worst[l], moved - TOLERANCE * new);
+            worst[l] = larger(worst[l], moved - TOLERANCE * larger(new, LEAST_STRESS));
             s[l] = new;
             compress(new, &x[l], &w[l], xp[l], wp[l], lam[l], kap[l]);
             below[l] = between[l] * delta;
@@ -346,16 +362,15 @@ static void finish(const Problem *p, double length, Block *k)
         const double *restrict trial_s = k->trial_s[i], *restrict total = k->total[i], *restrict lam = k->lam[i];
         const double *restrict mass = k->mass[i], *restrict trial_w = k->trial_w[i], *restrict trial_x = k->trial_x[i];
         double *restrict s = k->s[i], *restrict w = k->w[i], *restrict xp = k->xp[i], *restrict wp = k->wp[i];
-        double *restrict x = k->x[i], *restrict rate = k->rate[i], *restrict peak = k->peak[i];
+        double *restrict rate = k->rate[i], *restrict peak = k->peak[i];
         EACH_LANE
         {
             peak[l] = larger(peak[l], total[l]);
             sum[l] += mass[l] * trial_w[l];
             rate[l] = (trial_s[l] - s[l]) / length;
             s[l] = trial_s[l];
-            x[l] = trial_x[l];
             w[l] = trial_w[l];
-            double further = larger(natural_log(smaller(trial_s[l], peak[l])) - xp[l], 0.0);
+            double further = larger(smaller(trial_x[l], natural_log(peak[l])) - xp[l], 0.0);
             wp[l] += lam[l] * further;
             xp[l] += further;
         }
@@ -393,9 +408,13 @@ static void march(const Problem *p, int64_t b, Block *k)
         }
         if (p->record[n] >= 0) {
             row *kept = p->recorded + (b * p->n_slot + p->record[n]) * 2 * n_cell;
-            memcpy(kept, k->s, n_cell * sizeof(row));
             for (int64_t i = 0; i < n_cell; i++)
-                EACH_LANE kept[n_cell + i][l] = exponential(k->xp[i][l]);
+                EACH_LANE
+                {
+                    double s = k->s[i][l];
+                    kept[i][l] = s > LEAST_STRESS ? s : exponential(larger(k->trial_x[i][l], LEAST_LOGARITHM));
+                    kept[n_cell + i][l] = exponential(k->xp[i][l]);
+                }
         }
     }
 }
@@ -417,9 +436,9 @@ int consolidate(const Problem *p)
             .thickness = p->thickness + at, .stress = p->stress + at, .void_ratio = p->void_ratio + at,
             .lam = p->lam + at, .kap = p->kap + at, .log_conductivity = p->log_conductivity + at,
             .decline = p->decline + at, .radial = p->radial + at,
-            .s = part[0], .x = part[1], .w = part[2], .xp = part[3], .wp = part[4], .rate = part[5],
-            .mass = part[6], .peak = part[7], .trial_s = part[8], .trial_x = part[9], .trial_w = part[10],
-            .total = part[11], .target = part[12], .between = part[13], .pivot = part[14], .above = part[15],
+            .s = part[0], .w = part[1], .xp = part[2], .wp = part[3], .rate = part[4], .mass = part[5],
+            .peak = part[6], .trial_s = part[7], .trial_x = part[8], .trial_w = part[9], .total = part[10],
+            .target = part[11], .between = part[12], .pivot = part[13], .above = part[14],
         };
         march(p, b, &k);
     }

@@ -18,8 +18,9 @@ import pytest
 
 import probsoil
 from probsoil.assessment.evaluation import prepare
-from probsoil.ground import consolidation
-from probsoil.ground._consolidation_kernel import Faces, Loading, Schedule, Soil, consolidate_lanes
+from probsoil.ground import conductivity, consolidation
+from probsoil.ground._consolidation_arrays import Faces, Loading, Schedule, Soil
+from probsoil.ground._consolidation_kernel import consolidate_lanes
 from probsoil.ground.cells import graded_cells
 from probsoil.ground.constants import SECONDS_PER_YEAR
 from probsoil.ground.lanes import LANES
@@ -115,11 +116,11 @@ def column(drains):
         lam=lam,
         kap=0.15 * lam,
     )
-    log_value, decline = consolidation.conductivity_from_permeability(
+    log_value, decline = conductivity.conductivity_from_permeability(
         scattered([2e-9, 1e-9, 1.5e-9], 0.5) * SECONDS_PER_YEAR, 0.5 * void_ratio, void_ratio
     )
-    wells = consolidation.RadialDrainage(rate=np.full(shape, 8.0 * 2.0 / (2.5 * 1.5**2)), start=0.1)
-    flow = consolidation.Conductivity(
+    wells = conductivity.RadialDrainage(rate=np.full(shape, 8.0 * 2.0 / (2.5 * 1.5**2)), start=0.1)
+    flow = conductivity.Conductivity(
         log_value=log_value,
         decline=decline,
         follows=np.zeros(cells.n_cell),

@@ -10,14 +10,8 @@ import numpy as np
 from scipy.optimize import brentq
 
 from probsoil.ground.cells import Cells, graded_cells
-from probsoil.ground.consolidation import (
-    ClayState,
-    Conductivity,
-    ConsolidationResult,
-    LoadHistory,
-    conductivity_from_cv,
-    consolidate,
-)
+from probsoil.ground.conductivity import Conductivity, conductivity_from_cv
+from probsoil.ground.consolidation import ClayState, ConsolidationResult, LoadHistory, consolidate
 from probsoil.ground.time_steps import time_axis
 
 # What a test allows for space and time steps, as a share of the final value, fixed before any run:

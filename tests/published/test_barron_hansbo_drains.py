@@ -17,7 +17,7 @@ from scipy.integrate import quad
 from scipy.optimize import brentq
 from scipy.special import j0, j1, y0, y1
 
-from probsoil.ground.consolidation import RadialDrainage
+from probsoil.ground.conductivity import RadialDrainage
 from probsoil.ground.vertical_drains import (
     drain_factor,
     influence_diameter,

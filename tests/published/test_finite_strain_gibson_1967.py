@@ -28,7 +28,7 @@ import numpy as np
 import pytest
 from reference_solutions import DEFAULT_ALLOWANCE, FINE_ALLOWANCE, SUDDEN, clay_column, degree_uniform, loaded
 
-from probsoil.ground.consolidation import Conductivity
+from probsoil.ground.conductivity import Conductivity
 
 STRESS, VOID_RATIO, LAMBDA, HEIGHT = 20.0, 3.0, 1.1, 2.0
 TIMES = np.array([0.005, 0.02, 0.05, 0.1, 0.2, 0.3, 0.5, 0.848, 1.2])  # as time factors

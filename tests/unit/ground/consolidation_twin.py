@@ -9,6 +9,8 @@ With a the depth before loading and w = e0 - e:
     w = kappa ln(s'/s0) up to the preconsolidation stress sp, then lambda ln(s'/sp) on top
     k = k0 10^(-w/ck)          or          k = cv gw lambda/[(1 + e) max(s', sp)]
 
+Clay that swells below an effective stress of 0.001 kPa conducts as it does there, by agreement.
+
 The preconsolidation stress is brought up to the stress at the end of each of many short spans of time.
 """
 
@@ -20,6 +22,7 @@ from scipy.integrate import solve_ivp
 
 WATER, YEAR = 9.81, 365.25 * 24.0 * 3600.0
 LEAST_STRESS = 1.0  # kPa, by agreement, in the first centimetres below ground level
+LEAST_FOR_FLOW = 1e-3  # kPa, by agreement
 
 
 @dataclass(frozen=True)
@@ -49,7 +52,7 @@ def edges_of(layers, n_cell):
 class Profile:
     """One realisation as cells, with its balance of water."""
 
-    def __init__(self, layers, *, water_table, base_drained, n_cell):
+    def __init__(self, layers, *, water_table, base_drained, n_cell, spread=np.ones_like):
         edges, owner = edges_of(layers, n_cell)
         self.size, depth = np.diff(edges), 0.5 * (edges[1:] + edges[:-1])
 
@@ -67,6 +70,7 @@ class Profile:
         self.first = of(lambda layer: layer.flow[1])
         self.ck = of(lambda layer: layer.flow[2] if layer.flow[0] == "k" else 1.0)
         self.base_drained = base_drained
+        self.spread = spread(depth)
 
     def stress(self, lost, yielding, lost_at_yield):
         """Effective stress for a void ratio lost: the compression curve read backwards."""
@@ -74,9 +78,11 @@ class Profile:
         return yielding * np.exp((lost - lost_at_yield) / slope)
 
     def rates(self, lost, added, yielding, lost_at_yield):
-        """Rate at which each cell loses void ratio under an added pressure."""
-        stress, e = self.stress(lost, yielding, lost_at_yield), self.e0 - lost
-        excess = self.stress0 + added - stress
+        """Rate at which each cell loses void ratio under an added pressure at the surface."""
+        stress = self.stress(lost, yielding, lost_at_yield)
+        excess = self.stress0 + added * self.spread - stress
+        lost = np.maximum(lost, lost_at_yield + self.kap * np.log(LEAST_FOR_FLOW / yielding))
+        e = self.e0 - lost
         by_cv = self.first * WATER * self.lam / ((1.0 + e) * np.maximum(stress, yielding))
         k = np.where(self.by_cv, by_cv, self.first * YEAR * 10.0 ** (-lost / self.ck))
         half = 0.5 * self.size / (k / WATER * (1.0 + self.e0) / (1.0 + e))  # resistance, centre to face
@@ -105,9 +111,12 @@ def stops_for(knot_time, times, span_count):
     return np.unique(np.round([t for t in stops if t <= max(times)], 12))
 
 
-def twin_settlement(layers, knots, times, *, water_table, base_drained, n_cell=60, span_count=40):
-    """Settlement of the clay at `times` under an added pressure given at `knots` [(time, kPa), ...]."""
-    profile = Profile(layers, water_table=water_table, base_drained=base_drained, n_cell=n_cell)
+def twin_settlement(layers, knots, times, *, span_count=40, **ground):
+    """Settlement of the clay at `times` under an added pressure given at `knots` [(time, kPa), ...].
+
+    `ground` is passed on to `Profile`; `spread` there is the share of the pressure that reaches a depth.
+    """
+    profile = Profile(layers, **({"n_cell": 60} | ground))
     knot_time, knot_load = np.array(knots).T
     lost, yielding = np.zeros(profile.size.size), profile.stress0 + profile.pop
     lost_at_yield = profile.kap * np.log(yielding / profile.stress0)

@@ -14,14 +14,8 @@ from ground_cases import central, clay, refined, sand, scenario, stage
 
 from probsoil.ground.cells import Cells
 from probsoil.ground.compression import void_ratio_lost
-from probsoil.ground.consolidation import (
-    ClayState,
-    Conductivity,
-    LoadHistory,
-    conductivity_from_cv,
-    conductivity_from_permeability,
-    consolidate,
-)
+from probsoil.ground.conductivity import Conductivity, conductivity_from_cv, conductivity_from_permeability
+from probsoil.ground.consolidation import ClayState, LoadHistory, consolidate
 from probsoil.ground.response import ground_state
 from probsoil.ground.site_model import site_model
 
