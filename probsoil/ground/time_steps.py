@@ -9,7 +9,9 @@ from probsoil._typing import FloatArray
 from probsoil.errors import ParameterError
 
 GROWTH = 1.4
-_FIRST_SHARE = 0.25  # of the ramp that ends where the steps begin
+_RAMP_STEPS = 12  # within a ramp: clay that drains as fast as it is loaded yields at some time within it
+_RAMP_GRADING = 1.25  # power of the time within a ramp, so that its first steps are shorter
+_FIRST_SHARE = 0.0625  # of the ramp that ends where the steps begin
 _SUDDEN_SHARE = 0.001  # of the horizon, for the length of a ramp where something sudden happens
 _NEAR = 0.3  # a free step that ends this close (in steps) to a wanted time gives way
 
@@ -49,8 +51,8 @@ def time_axis(
 
     Notes
     -----
-    From each start and end of a ramp the steps grow by a constant factor, beginning with a
-    quarter of that ramp's length: excess pore pressure decays on every time scale at once, and
+    A ramp has a dozen steps. From its end the steps grow by a constant factor, beginning with a
+    sixteenth of the ramp's length: excess pore pressure decays on every time scale at once, and
     a geometric sequence resolves them alike.
     """
     sudden = [time for time in restart if 0.0 < time < horizon]
@@ -61,11 +63,19 @@ def time_axis(
     length |= {time: _SUDDEN_SHARE * horizon for time in sudden if time not in length}
     pieces = []
     for start, end in pairwise(knots):
-        first = _FIRST_SHARE * length.get(start, 4.0 * (end - start))
-        pieces.append(_piece(start, end, first / refine, GROWTH ** (1.0 / refine)))
+        if any(ramp[0] <= start and end <= ramp[1] for ramp in ramps):
+            pieces.append(start + (end - start) * _in_ramp(_RAMP_STEPS * refine))
+        else:
+            first = _FIRST_SHARE * length.get(start, (end - start) / _FIRST_SHARE)
+            pieces.append(_piece(start, end, first / refine, GROWTH ** (1.0 / refine)))
     free = np.concatenate([[0.0], *pieces])
     fixed = np.unique(np.concatenate([knots, np.asarray(wanted, dtype=np.float64)]))
     return _with(free, fixed)
+
+
+def _in_ramp(number: int) -> FloatArray:
+    """Return ends of steps within a ramp, as shares of its length."""
+    return np.asarray((np.arange(1, number + 1) / number) ** _RAMP_GRADING)
 
 
 def _piece(start: float, end: float, first: float, growth: float) -> FloatArray:

