@@ -20,6 +20,7 @@ def time_axis(
     horizon: float,
     *,
     restart: Sequence[float] = (),
+    sudden_start: bool = False,
     refine: int = 1,
 ) -> FloatArray:
     """Return the times at which the ground is computed.
@@ -34,6 +35,8 @@ def time_axis(
         End of the axis.
     restart : sequence of float, [years]
         Other times at which something sudden happens and the steps start anew.
+    sudden_start : bool
+        Whether the ground is out of balance at the start, as if loaded suddenly then.
     refine : int, [-]
         Steps are about this many times shorter.
 
@@ -59,6 +62,8 @@ def time_axis(
         raise ParameterError(f"all times must lie from 0 to the horizon of {horizon:g} years")
     length = {start: end - start for start, end in ramps} | {end: end - start for start, end in ramps}
     length |= {time: _SUDDEN_SHARE * horizon for time in sudden if time not in length}
+    if sudden_start:
+        length[0.0] = min(_SUDDEN_SHARE * horizon, length.get(0.0, horizon))
     pieces = []
     for start, end in pairwise(knots):
         first = _FIRST_SHARE * length.get(start, 4.0 * (end - start))
