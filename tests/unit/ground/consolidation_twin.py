@@ -113,10 +113,11 @@ class Profile:
         return float((self.size / (1.0 + self.e0) * lost)[self.clay].sum())
 
 
-def stops_for(knot_time, times, span_count):
+def stops_for(knot_time, times, span_count, *, sudden=False):
     """Ends of the short spans: a kink of the load is followed by fast changes."""
     stops = {0.0, *knot_time, *times}
-    stops |= set(np.geomspace(1e-5, 1.0, span_count) * knot_time[1])  # what is out of balance at the start
+    if sudden:  # the ground is out of balance at the start
+        stops |= set(np.geomspace(1e-5, 1.0, span_count) * knot_time[1])
     for start, end in pairwise(knot_time):
         stops |= set(start + (end - start) * np.geomspace(1e-4, 1.0, span_count))
     return np.unique(np.round([t for t in stops if t <= max(times)], 12))
@@ -136,7 +137,7 @@ def twin_settlement(layers, knots, times, *, span_count=40, **ground):
         return profile.rates(lost, np.interp(time, knot_time, knot_load), yielding, lost_at_yield)
 
     answer = {0.0: 0.0}
-    for start, end in pairwise(stops_for(knot_time, times, span_count)):
+    for start, end in pairwise(stops_for(knot_time, times, span_count, sudden=profile.underway.any())):
         march = solve_ivp(
             rates,
             (start, end),
