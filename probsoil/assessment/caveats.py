@@ -77,6 +77,12 @@ def _flag_rows(sample: CampaignSample) -> list[Row]:
             "realisations in which kappa was drawn above 0.95 lambda in some layer and lowered to that",
             sample.kappa_clipped,
         ),
+        (
+            "uplift",
+            "realisations in which the pore pressure before the works is no less than the weight of the "
+            "ground at some depth: it would be lifted or quick; the effective stress is taken as 1 kPa there",
+            sample.uplifted,
+        ),
     ]
     return [
         _row(code, message, float(flag.mean()), REALISATIONS) for code, message, flag in flags if flag.any()

@@ -31,10 +31,11 @@ def ground_record(study: Study, at_means: GroundState) -> Row:
     """
     scenario = study.scenario
     texts = {quantity.address: quantity for quantity in scenario.quantities()}
-    table = texts["site.water_table"]
+    table, base_head = texts["site.water_table"], texts.get("site.base_head")
     return {
         "water_table": table.distribution.describe(table.unit),
         "base": scenario.site.base,
+        "base_head": None if base_head is None else base_head.distribution.describe(base_head.unit),
         "layers": _layers(scenario),
         "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
         "stages": stage_rows(study.site),
@@ -123,7 +124,7 @@ def stage_rows(site: SiteModel) -> list[Row]:
 def _profile(state: GroundState) -> Row:
     """Return stresses with depth before loading and at the horizon, [m] and [kPa]."""
     points, ground = state.ground.points, state.ground
-    final = points.stress[0] + ground.load.stress[-1, 0]
+    final = points.stress[0] + ground.load.stress[-1, 0]  # granular; clay follows
     final[ground.clay] = state.consolidation.stress[0, -1]
     preconsolidation = [
         float(value) if is_clay else None

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from probsoil._typing import FloatArray
 from probsoil.ground.limit_quantities import (
     bearing_with_model_error,
+    distortion_in_limits,
     limit_quantities,
     secondary_in_limits,
     slip_with_model_error,
@@ -75,10 +76,10 @@ class Study:
         Returns
         -------
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
-            ``quantity`` of every limit and what of it is ``secondary`` compression, ``slip`` and
-            ``bearing`` at every check, ``final`` settlement, flags, and in the first chunks
-            ``settlement`` through time (model error included in all these) and where the critical
-            ``circle`` lies.
+            ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
+            computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
+            settlement, flags, and in the first chunks ``settlement`` through time (model error included in
+            all these) and where the critical ``circle`` lies.
         """
         z = self.latent(chunk)
         values = self.space.values(z)
@@ -96,6 +97,10 @@ class Study:
             "converged": response.converged,
             "voids_closed": response.voids_closed,
         }
+        if self.site.distorts:
+            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values)
+        if self.site.seeps or self.site.excess_layers:
+            arrays["uplifted"] = response.uplifted
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)

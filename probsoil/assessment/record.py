@@ -29,6 +29,8 @@ class CampaignSample:
         Quantity of every limit.
     secondary : ndarray, shape (n_sample, n_limit), [m]
         Part of a settlement limit's quantity that is secondary compression; not a number for others.
+    distortion : ndarray, shape (n_sample, n_limit), [m]
+        The same of undrained distortion; empty where none is computed.
     slip : ndarray, shape (n_sample, n_check), [-]
         Factor of safety at every check.
     bearing : ndarray, shape (n_sample, n_bearing), [-]
@@ -39,8 +41,8 @@ class CampaignSample:
         Settlement through time of the first realisations.
     circle : ndarray, shape (n_band, n_check, 6), [m]
         Where the critical circles of the first realisations lie.
-    converged, voids_closed, floored, kappa_clipped : ndarray of bool, shape (n_sample,), [-]
-        Flags of the ground model.
+    converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
+        Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
         Replicate of the design.
     """
@@ -56,6 +58,8 @@ class CampaignSample:
     kappa_clipped: BoolArray
     replicate: IntArray
     bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
 
 
@@ -75,7 +79,8 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
         Ready for JSON.
     """
     replicate = sample.replicate if study.points.replicates > 1 else None
-    rows = []
+    creeps = any(layer.creeps for layer in study.site.layers)
+    rows, distorts = [], study.site.distorts
     for index, limit in enumerate(study.scenario.limits):
         values = sample.quantity[:, index]
         found = exceedance(
@@ -99,7 +104,8 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
         worst = _WORST[limit.sense]
         rows.append(
             _limit_row(limit, found)
-            | _creep(study, sample.secondary[:, index], values)
+            | _part("secondary", creeps, sample.secondary[:, index], values)
+            | _part("distortion", distorts, sample.distortion[:, index] if distorts else values, values)
             | {
                 "summary": _summary(values, worst=worst)
                 | {"median_interval": _median_interval(values, worst=worst)},
@@ -116,16 +122,15 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
     return rows
 
 
-def _creep(study: Study, secondary: FloatArray, quantity: FloatArray) -> Row:
-    """Return what part of a settlement secondary compression makes, on average over realisations."""
-    good = np.isfinite(quantity) & np.isfinite(secondary)
-    creeps = any(layer.creeps for layer in study.site.layers)
-    if not creeps or not good.any() or quantity[good].mean() <= 0.0:
-        return {"secondary_mean": None, "secondary_share": None}
-    mean = float(secondary[good].mean())
+def _part(name: str, there: bool, part: FloatArray, quantity: FloatArray) -> Row:
+    """Return what a part makes of a settlement, on average over realisations."""
+    good = np.isfinite(quantity) & np.isfinite(part)
+    if not there or not good.any() or quantity[good].mean() <= 0.0:
+        return {f"{name}_mean": None, f"{name}_share": None}
+    mean = float(part[good].mean())
     share = mean / float(quantity[good].mean())
-    # rebound after a removal may take away more than creep adds; then a share says nothing
-    return {"secondary_mean": mean, "secondary_share": share if 0.0 <= share <= 1.0 else None}
+    # rebound after a removal may take away more than this part adds; then a share says nothing
+    return {f"{name}_mean": mean, f"{name}_share": share if 0.0 <= share <= 1.0 else None}
 
 
 def _draws(study: Study) -> str:

@@ -8,6 +8,8 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.assessment import sheet_answers as answers
+from probsoil.assessment.distortion_formulas import distortion_at_horizon, distortion_rows
+from probsoil.assessment.pore_pressure_formulas import seepage_rows
 from probsoil.assessment.sheet_formulas import example_of
 from probsoil.assessment.sheet_lines import worked_lines
 from probsoil.assessment.sheet_run import SheetRun, sheet_run
@@ -87,6 +89,10 @@ class Sheet:
         Every formula in symbols and with the numbers of one row put in.
     cells : tuple of dict
         The program's own cells, [m], [kPa].
+    distortion : tuple of dict
+        Undrained distortion of the sub-layers at the horizon, [m], [kPa]; empty where none is computed.
+    seepage : tuple of dict
+        How the loss of head is shared by the layers, [m], [years], [kPa]; empty where water is at rest.
     assumptions, cautions : tuple of str
         What the calculation rests on, and what its reader must bear in mind.
     """
@@ -113,6 +119,8 @@ class Sheet:
     slip: tuple[dict[str, Any], ...] = ()
     formulas: tuple[dict[str, Any], ...] = ()
     cells: tuple[dict[str, Any], ...] = ()
+    seepage: tuple[dict[str, Any], ...] = ()
+    distortion: tuple[dict[str, Any], ...] = ()
     assumptions: tuple[str, ...] = ()
     cautions: tuple[str, ...] = ()
 
@@ -201,6 +209,8 @@ def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[
         "strength_in_rows": answers.strength_rows(run, rows),
         "slip": answers.slip_rows(run),
         "cells": cell_rows(run, rows, points),
+        "seepage": seepage_rows(run),
+        "distortion": distortion_rows(run, rows),
         "bearing": list(_bearing_rows(run.site, run.state, run.values)),
     }
     drains = answers.drain_record(run, rows)
@@ -258,6 +268,7 @@ def _squeezing(site: SiteModel, state: GroundState, values: Values) -> dict[str,
 
 def _layer_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
     points, site = run.state.ground.points, run.site
+    distorted = distortion_at_horizon(run)
     rows = []
     for index, layer in enumerate(site.layers):
         mine = points.layer == index
@@ -281,6 +292,7 @@ def _layer_rows(run: SheetRun, state: PointState) -> list[dict[str, Any]]:
                 "strain": settlement / (bottom - top),
                 "settlement": settlement,
                 "secondary": float(state.secondary[mine].sum()),
+                "distortion": float(distorted[mine].sum()),
             }
         )
     return rows

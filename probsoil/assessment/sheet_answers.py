@@ -8,6 +8,7 @@ import numpy as np
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import PointState, Sublayer
 from probsoil.ground.clay_settlement import (
+    added_stress_when_done,
     by_segment,
     drain_terms,
     segment_settlement_when_done,
@@ -15,6 +16,7 @@ from probsoil.ground.clay_settlement import (
 )
 from probsoil.ground.secondary_compression import CreepSpell, end_of_primary
 from probsoil.ground.slip_moments import SlipMoments, critical_moments
+from probsoil.ground.stability import zone_gains
 
 ZONES = ("beyond_toe", "under_slope", "under_crest", "under_berm")
 """Zones of strength in their order; the last one only with berms."""
@@ -51,6 +53,7 @@ def time_rows(run: SheetRun) -> list[dict[str, Any]]:
             "clay": float(clay[index]),
             "granular": float(state.granular_settlement[0, index]),
             "secondary": float(state.response.secondary[0, index]),
+            "distortion": float(state.response.distortion[0, index]) if site.distorts else 0.0,
             "settlement": float(state.response.settlement[0, index]),
         }
         rows.append({**row, **_consolidation(run, time)})
@@ -60,10 +63,10 @@ def time_rows(run: SheetRun) -> list[dict[str, Any]]:
 def _consolidation(run: SheetRun, time: float) -> dict[str, float | None]:
     if time == 0.0:
         return {"clay_when_done": None, "degree": None}
-    added, relief = run.added(time)
-    slot, ground = run.slot(time), run.state.ground
-    yielded = run.state.consolidation.yield_stress[:, slot]
-    done = settlement_when_done(run.site, ground, yielded, (added - relief)[None, ground.clay])
+    slot, ground, result = run.slot(time), run.state.ground, run.state.consolidation
+    settled = result.settlement[:, slot + 1]  # the first time is the start
+    to_come = added_stress_when_done(run.site, ground, time, settled)
+    done = settlement_when_done(run.site, ground, result.yield_stress[:, slot], to_come)
     return {
         "clay_when_done": float(done[0]),
         "degree": float(run.state.response.degree_at_record[0, slot]),
@@ -228,19 +231,20 @@ def _strength_row(run: SheetRun, row: Sublayer) -> dict[str, Any]:
     ground, columns = state.ground, state.ground.columns
     cell = int(np.cumsum(ground.clay)[here]) - 1
     start, past = float(ground.points.stress[0, here]), float(ground.yield_stress[0, here])
-    share = float(ground.load.slope_share[0, here])
     stages = {}
     for stage in run.site.stages:
         slot = run.slot(stage.end)
         stress = float(state.consolidation.stress[0, slot, cell])
         kept = float(state.consolidation.yield_stress[0, slot, cell])
-        beside = start + share * (stress - start)
+        gain, largest_gain = (float(one[0, cell]) for one in zone_gains(run.site, ground, stage.end)[_SLOPE])
+        beside = start + gain * (stress - start)
         stages[stage.name] = {
             "stress": stress,
             "preconsolidation": max(past, kept, stress),
             "under_crest": float(state.strength[slot, 0, _CREST, here]),
             "stress_under_slope": beside,
-            "preconsolidation_under_slope": max(past, start + share * (kept - start), beside),
+            "preconsolidation_under_slope": max(past, start + largest_gain * (kept - start), beside),
+            "slope_gain": gain,
             "under_slope": float(state.strength[slot, 0, _SLOPE, here]),
         }
     return {
@@ -251,8 +255,9 @@ def _strength_row(run: SheetRun, row: Sublayer) -> dict[str, Any]:
         "exponent": float(columns.strength_exponent[0, row.layer]),
         "mode_factor": float(run.at["site.mode_factor"]),
         "initial_stress": start,
+        "initial_excess": 0.0 if ground.points.excess is None else float(ground.points.excess[0, here]),
         "preconsolidation": past,
-        "slope_share": share,
+        "slope_share": float(ground.load.slope_share[0, here]),
         "before": float(state.strength_before[0, here]),
         "at_end_of_stage": stages,
     }

@@ -4,15 +4,19 @@ from typing import Any
 
 import numpy as np
 
+from probsoil.assessment.pore_pressure_formulas import (
+    GAMMA_W,
+    IN_SITU,
+    excess_formulas,
+    pore_pressure_formulas,
+)
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import Sublayer, overburden
 from probsoil.assessment.worked import Symbol, Worked, worked
-from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.profile import LEAST_STRESS
 
 Record = dict[str, Any]
-IN_SITU, LOAD, COMPRESSION = "stress in situ", "stress from the load", "compression"
-_GAMMA_W: Symbol = (WATER_UNIT_WEIGHT, "unit weight of water", "kN/m3")
+LOAD, COMPRESSION = "stress from the load", "compression"
 
 
 def example_of(rows: list[Record]) -> Record:
@@ -65,28 +69,25 @@ def in_situ_formulas(run: SheetRun, sublayer: Sublayer, row: Record) -> list[Wor
         Total stress, pore pressure, effective stress and preconsolidation stress.
     """
     place = f"{place_of(row)}, at {row['depth']:.3f} m"
-    depth: Symbol = (row["depth"], "depth", "m")
-    water: Symbol = (run.at["site.water_table"], "depth of the water table", "m")
     total: Symbol = (row["total_stress"], "total stress", "kPa")
     pore: Symbol = (row["pore_pressure"], "pore pressure", "kPa")
     least: Symbol = (LEAST_STRESS, "least effective stress that is used", "kPa")
     effective: Symbol = (row["initial_stress"], "effective stress in situ", "kPa")
+    stresses: dict[str, Symbol] = {"σv": total, "u0": pore}
+    formula = "σ'0 = max(σv − u0, σmin)"
+    if row["initial_excess"]:
+        stresses["ui"] = (row["initial_excess"], "initial excess pore pressure", "kPa")
+        formula = "σ'0 = max(σv − u0 − ui, σmin)"
     lines = [
         _total_stress(run, sublayer, row, place),
-        worked(
-            IN_SITU,
-            "pore pressure",
-            "u0 = γw · max(z − zw, 0)",
-            (row["pore_pressure"], "kPa"),
-            {"γw": _GAMMA_W, "z": depth, "zw": water},
-            row=place,
-        ),
+        *pore_pressure_formulas(run, sublayer, row, place),
+        *excess_formulas(run, sublayer, row, place),
         worked(
             IN_SITU,
             "effective stress",
-            "σ'0 = max(σv − u0, σmin)",
+            formula,
             (row["initial_stress"], "kPa"),
-            {"σv": total, "u0": pore, "σmin": least},
+            stresses | {"σmin": least},
             row=place,
         ),
     ]
@@ -171,7 +172,7 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         lines.append(worked(LOAD, "stress increase", "Δσ = I · (γf · h + p)", result, symbols, row=place))
     if run.site.submergence:
         symbols = {
-            "γw": _GAMMA_W,
+            "γw": GAMMA_W,
             "sc": (max(clay, 0.0), "settlement of the clay", "m"),
             "zw": (run.at["site.water_table"], "depth of the water table", "m"),
             "h": height,
@@ -179,6 +180,9 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
             "Δσ": increase,
         }
         formula = "δ = min(γw · min(sc, zw + h) · I0, Δσ)"
+        if row["initial_excess"]:
+            symbols["ui"] = (row["initial_excess"], "initial excess pore pressure", "kPa")
+            formula = "δ = min(γw · min(sc, zw + h) · I0, max(Δσ + ui, 0))"
         lines.append(
             worked(LOAD, "taken off by submergence", formula, (row["relief"], "kPa"), symbols, row=place)
         )
@@ -188,11 +192,12 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         "δ": (row["relief"], "taken off by submergence", "kPa"),
         "u": (row["excess_pore_pressure"], "excess pore pressure left, from the consolidation", "kPa"),
     }
+    formula = "σ' = σ'0 + Δσ − δ − u"
+    if row["initial_excess"]:
+        symbols["ui"] = (row["initial_excess"], "initial excess pore pressure", "kPa")
+        formula = "σ' = σ'0 + ui + Δσ − δ − u"
     final = (row["final_stress"], "kPa")
-    return [
-        *lines,
-        worked(LOAD, "effective stress", "σ' = σ'0 + Δσ − δ − u", final, symbols, row=place),
-    ]
+    return [*lines, worked(LOAD, "effective stress", formula, final, symbols, row=place)]
 
 
 def _point(run: SheetRun, row: Record) -> int:
@@ -339,7 +344,7 @@ def granular_formulas(run: SheetRun, rows: list[Record]) -> list[Worked]:
 
 
 def sum_formula(run: SheetRun, rows: list[Record]) -> list[Worked]:
-    """Return the sum of the sub-layers and of secondary compression.
+    """Return the sum of the sub-layers, of secondary compression and of undrained distortion.
 
     Parameters
     ----------
@@ -359,6 +364,8 @@ def sum_formula(run: SheetRun, rows: list[Record]) -> list[Worked]:
     secondary = float(run.state.response.secondary[0, -1])
     if secondary:
         symbols["sα"] = (secondary, "secondary compression", "m")
+    if run.site.distorts:
+        symbols["sd"] = (float(run.state.response.distortion[0, -1]), "undrained distortion", "m")
     result = (float(run.state.response.settlement[0, -1]), "m")
     formula = f"s = {' + '.join(symbols)}"
     place = f"all sub-layers, {run.site.horizon:g} years"

@@ -10,6 +10,8 @@ from probsoil.ground.undrained_strength import m_from_friction_angle, sine_of_fr
 Record = dict[str, Any]
 TIME, DRAINS, CREEP = "consolidation", "vertical drains", "secondary compression"
 STRENGTH, SLIP = "undrained strength", "slip"
+_SLOPE_SHARE = "stress under the slope over that under the crest"
+_SLOPE_GAIN = _SLOPE_SHARE + ", both with the initial excess pressure added"
 _GRID = {"triangular": 1.05, "square": 1.13}
 
 
@@ -197,7 +199,7 @@ def strength_formulas(run: SheetRun, sublayer: Sublayer, rows: list[Record]) -> 
         row=f"{place}, end of {name}",
     )
     beside: dict[str, Symbol] = {
-        "c": (row["slope_share"], "stress under the slope over that under the crest", "-"),
+        "c": (after["slope_gain"], _SLOPE_GAIN if row["initial_excess"] else _SLOPE_SHARE, "-"),
         "σ'0": (row["initial_stress"], "effective stress in situ", "kPa"),
         "σ'": stresses["σ'"],
     }

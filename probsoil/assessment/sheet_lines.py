@@ -5,6 +5,7 @@ from typing import Any
 from probsoil.assessment import sheet_formulas as stress
 from probsoil.assessment import sheet_further_formulas as further
 from probsoil.assessment.bearing_formulas import bearing_formulas
+from probsoil.assessment.distortion_formulas import distortion_formulas
 from probsoil.assessment.influence_formulas import influence_formulas
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import Sublayer
@@ -21,7 +22,7 @@ def worked_lines(run: SheetRun, example: Sublayer, content: dict[str, Any]) -> l
         The sub-layer whose numbers are put in.
     content : dict
         Parts of the sheet: ``sublayers``, ``through_time``, ``segments``, ``drains``,
-        ``strength_in_rows``, ``slip`` and ``bearing``.
+        ``strength_in_rows``, ``slip``, ``distortion`` and ``bearing``.
 
     Returns
     -------
@@ -36,6 +37,7 @@ def worked_lines(run: SheetRun, example: Sublayer, content: dict[str, Any]) -> l
         *stress.load_formulas(run, row),
         *stress.compression_formulas(run, example, row),
         *stress.granular_formulas(run, rows),
+        *distortion_formulas(run, content["distortion"]),
         *stress.sum_formula(run, rows),
         *further.degree_formulas(content["through_time"]),
         *further.drain_formulas(content["drains"]),

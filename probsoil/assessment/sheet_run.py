@@ -106,7 +106,7 @@ class SheetRun:
         settled = clay[:, int(np.searchsorted(self.site.times, time))]
         return (
             stress_at(self.site, load, time)[0],
-            relief_by_water(self.site, load, time, settled)[0],
+            relief_by_water(self.site, load, time, settled, self.state.ground.points.excess)[0],
         )
 
 

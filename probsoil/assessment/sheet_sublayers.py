@@ -14,7 +14,6 @@ import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.assessment.sheet_run import SheetRun
-from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.profile import Values, column
 from probsoil.ground.secondary_compression import CreepSpell, creep_reduction, creep_spells, secondary_by_cell
 from probsoil.ground.site_model import SiteModel
@@ -98,7 +97,9 @@ class PointState:
     thickness : ndarray, shape (n_point,), [m]
         Thickness that each stands for.
     total, pore, initial, preconsolidation : ndarray, shape (n_point,), [kPa]
-        Stresses before loading.
+        Stresses before loading; ``pore`` is that at rest or in steady seepage.
+    underway : ndarray, shape (n_point,), [kPa]
+        Excess pore pressure before loading.
     added, relief : ndarray, shape (n_point,), [kPa]
         Stress from the load at the horizon, and what submergence takes off it.
     excess, final, largest : ndarray, shape (n_point,), [kPa]
@@ -121,6 +122,7 @@ class PointState:
     pore: FloatArray
     initial: FloatArray
     preconsolidation: FloatArray
+    underway: FloatArray
     added: FloatArray
     relief: FloatArray
     excess: FloatArray
@@ -152,7 +154,8 @@ def point_state(run: SheetRun) -> PointState:
     points, clay = ground.points, ground.clay
     initial = points.stress[0]
     added, relief = run.added(run.site.horizon)
-    done = initial + np.where(clay, added - relief, added)
+    underway = np.zeros(initial.size) if points.excess is None else points.excess[0]
+    done = initial + np.where(clay, added - relief, added) + underway
     final, largest = done.copy(), done.copy()
     final[clay] = result.stress[0, -1]
     largest[clay] = np.maximum(result.yield_stress[0, -1], final[clay])
@@ -168,9 +171,10 @@ def point_state(run: SheetRun) -> PointState:
         clay=clay,
         thickness=points.thickness[0],
         total=overburden(run)[1].sum(axis=0),
-        pore=WATER_UNIT_WEIGHT * np.maximum(points.depth[0] - run.at["site.water_table"], 0.0),
+        pore=points.pore[0],
         initial=initial,
         preconsolidation=ground.yield_stress[0],
+        underway=underway,
         added=added,
         relief=np.where(clay, relief, 0.0),
         excess=np.where(np.abs(done - final) > _NO_PRESSURE, done - final, 0.0),
@@ -284,6 +288,7 @@ def _row(run: SheetRun, row: Sublayer, state: PointState) -> dict[str, Any]:
         "depth": float(run.state.ground.points.depth[0, here]),
         "total_stress": float(state.total[here]),
         "pore_pressure": float(state.pore[here]),
+        "initial_excess": float(state.underway[here]),
         "initial_stress": float(state.initial[here]),
         "preconsolidation": float(state.preconsolidation[here]) if form.is_clay else None,
         "influence": None if surface == 0.0 else float(state.added[here]) / surface,

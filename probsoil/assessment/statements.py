@@ -24,8 +24,21 @@ SHEET_CAUTIONS = (
 )
 """What the reader of a calculation sheet must bear in mind."""
 
-_GROUND = (
+_NO_DISTORTION = (
     "Vertical compression only: no lateral movement, no settlement from shear distortion of the clay.",
+)
+_DISTORTION = (
+    "Consolidation is vertical. Besides, clay that has an undrained modulus settles at once with the load, "
+    "and rises with its removal, by distortion at constant volume: strains from the stresses in a "
+    "homogeneous elastic half-space over the modulus of each depth (superposition), which stays that of "
+    "before the works. That is settlement, and no part of the degree of consolidation. Local yield, which "
+    "makes it larger where the safety against failure is small, is left out.",
+)
+_GRANULAR = (
+    "Granular layers settle at once with the load, and rise with its removal: added vertical stress over the "
+    "constrained modulus, without lateral strain.",
+)
+_GROUND = (
     "Clay compresses along kappa up to the current preconsolidation stress and along lambda beyond it.",
     "Ground level and granular layers drain freely; strains may be large (finite strain), and permeability "
     "falls as the clay compresses.",
@@ -78,6 +91,18 @@ _FOUNDATION = (
     "Deeper clay layers are checked in the same way under the load spread at 2 vertical to 1 horizontal; "
     "the least safety over the levels counts. A granular layer spreads the load and resists nothing itself.",
 )
+_SEEPAGE = (
+    "Before the works water seeps steadily and vertically between the water table and the levels that are "
+    "given; clay layers share the loss of head by thickness over permeability, granular layers lose none. "
+    "Consolidation runs on the pressure in excess of that state, which the works leave as it is; suction is "
+    "neglected.",
+)
+_EXCESS = (
+    "Clay that has not finished consolidating when the works begin starts with the excess pore pressure "
+    "given: its effective stress, and with it ocr, pop and strength, are those of that time. Settlement "
+    "counts from then and holds what that pressure still brings, with load or without; so does the degree "
+    "of consolidation. Beyond the toe no strength is gained from it.",
+)
 _SUBMERGENCE = (
     "The water table keeps its level: what sinks below it, first the ground above it and then the fill, "
     "loses the weight of the water it displaces.",
@@ -111,4 +136,11 @@ def assumptions(site: SiteModel) -> tuple[str, ...]:
     )
     creep = _CREEP if any(layer.creeps for layer in site.layers) else _NO_CREEP
     flow = _VERTICAL if site.drains is None else _DRAINS
-    return (*_GROUND, *creep, *flow, *load, *(_SUBMERGENCE if site.submergence else ()), *base)
+    ground = (
+        *(_DISTORTION if site.distorts else _NO_DISTORTION),
+        *_GROUND,
+        *(() if all(layer.is_clay for layer in site.layers) else _GRANULAR),
+        *(_SEEPAGE if site.seeps else ()),
+        *(_EXCESS if site.excess_layers else ()),
+    )
+    return (*ground, *creep, *flow, *load, *(_SUBMERGENCE if site.submergence else ()), *base)

@@ -50,7 +50,8 @@ def _print_layers(console: "Console", scenario: "Scenario", space: "ParameterSpa
         top = bottom
     print_table(console, "Layers, at mean thicknesses", ("layer", "soil", "top [m]", "bottom [m]"), rows)
     water = mean["site.water_table"]
-    console.print(f"Water table at {water:.2f} m (mean); {scenario.site.base} below the last layer\n")
+    base = "" if "site.base_head" not in mean else f", water there at {mean['site.base_head']:.2f} m (mean)"
+    console.print(f"Water table at {water:.2f} m (mean); {scenario.site.base} below the last layer{base}\n")
 
 
 def _print_stages(console: "Console", scenario: "Scenario") -> None:

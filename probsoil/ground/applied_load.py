@@ -12,6 +12,8 @@ from probsoil.ground.load_stress import trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
 
+_GAUSS_POINTS = 6
+
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class AppliedLoad:
@@ -92,7 +94,12 @@ def stress_at(site: SiteModel, load: AppliedLoad, time: float) -> FloatArray:
 
 
 def applied_load(
-    site: SiteModel, values: Values, depth: FloatArray, thickness: FloatArray | None = None
+    site: SiteModel,
+    values: Values,
+    depth: FloatArray,
+    thickness: FloatArray | None = None,
+    *,
+    thick: BoolArray | None = None,
 ) -> AppliedLoad:
     """Return the stress that the stages add at given depths.
 
@@ -106,6 +113,9 @@ def applied_load(
         Depths of the points.
     thickness : ndarray or None, shape (n_sample, n_point), [m]
         Thickness of ground that each point stands for, about its depth; None for points alone.
+    thick : ndarray of bool or None, shape (n_point,), [-]
+        Points that stand for so much (a quarter of a granular layer) that the stress of a foundation is
+        averaged over it; None for none.
 
     Returns
     -------
@@ -130,6 +140,9 @@ def applied_load(
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
             spread, share = _foundation_spread(site.foundation, depth, thickness)
+            if thickness is not None and thick is not None and thick.any():
+                mean = _mean_spread(site.foundation, depth[:, thick], 0.5 * thickness[:, thick])
+                spread[:, thick] = mean
         stress = [
             (weight * height + pressure)[:, None] * spread
             for height, pressure in zip(heights, pressures, strict=True)
@@ -192,6 +205,17 @@ def _foundation_spread(
     return spread, np.where(spread > 0.0, share, 1.0)
 
 
+def _mean_spread(shape: Foundation, depth: FloatArray, half: FloatArray) -> FloatArray:
+    """Return the influence below the reported point, averaged over a thickness (Gauss and Legendre)."""
+    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
+    middle, reach = 0.5 * (top + bottom) - shape.depth, 0.5 * (bottom - top)
+    place, weight = np.polynomial.legendre.leggauss(_GAUSS_POINTS)
+    mean = np.zeros_like(depth)
+    for one, part in zip(place, weight, strict=True):
+        mean += 0.5 * part * shape.influence(middle + one * reach, *shape.at)
+    return np.asarray(mean * reach / half)
+
+
 def share_above_base(shape: Foundation, points: Points) -> FloatArray:
     """Return the share of each point's thickness that lies above the base of a foundation.
 
@@ -216,7 +240,13 @@ def _share_above(base: float, depth: FloatArray, half: FloatArray) -> FloatArray
     return np.asarray(np.where(half > 0.0, within, depth < base), dtype=np.float64)
 
 
-def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: FloatArray) -> FloatArray:
+def relief_by_water(
+    site: SiteModel,
+    load: AppliedLoad,
+    time: float,
+    settled: FloatArray,
+    excess: FloatArray | None = None,
+) -> FloatArray:
     """Return the added stress that submergence takes off again.
 
     Parameters
@@ -229,18 +259,23 @@ def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: Fl
         Time, for the height of fill.
     settled : ndarray, shape (n_sample,), [m]
         Settlement of the clay.
+    excess : ndarray or None, shape (n_sample, n_point), [kPa]
+        Pore pressure that is still to dissipate when the works begin.
 
     Returns
     -------
     relief : ndarray, shape (n_sample, n_point), [kPa]
         Weight of the water displaced by what has sunk below the water table, first the ground above
-        it and then the fill, spread like the load and never more than it.
+        it and then the fill, spread like the load and never more than it and the initial excess.
     """
     if not site.submergence:
         return np.zeros_like(load.spread)
     sunk = np.where(settled > 0.0, settled, 0.0)  # also where there is no number for want of convergence
     submerged = np.minimum(sunk, load.water_depth + site.fill_height(time))
-    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, stress_at(site, load, time))
+    most = stress_at(site, load, time)
+    if excess is not None:
+        most = np.maximum(most + excess, 0.0)
+    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, most)
 
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:

@@ -53,7 +53,7 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
-        stress=chosen(load.stress, clay),
+        stress=_added_total(ground),
         submergence=submergence if site.submergence else None,
     )
     flow = _conductivity(site, values, state)
@@ -63,6 +63,15 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     if site.drains is not None:
         flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
+
+
+def _added_total(ground: LoadedGround) -> FloatArray:
+    """Return by how much total stress less steady pore pressure exceeds the effective stress in situ.
+
+    Excess pore pressure that is there before the works acts like a load that stands from the start.
+    """
+    added, excess = chosen(ground.load.stress, ground.clay), ground.points.excess
+    return added if excess is None else added + chosen(excess, ground.clay)
 
 
 def _clay_state(site: SiteModel, ground: LoadedGround) -> ClayState:
@@ -271,7 +280,7 @@ def settlement_when_done(
 def added_stress_when_done(
     site: SiteModel, ground: LoadedGround, time: float, settled: FloatArray
 ) -> FloatArray:
-    """Return the added stress that the load of a time leaves once all excess pore pressure has gone.
+    """Return what the effective stress gains under the load of a time once all excess pore pressure has gone.
 
     Parameters
     ----------
@@ -287,14 +296,15 @@ def added_stress_when_done(
     Returns
     -------
     added : ndarray, shape (n_sample, n_cell), [kPa]
-        Below the centreline.
+        Below the centreline: what the load leaves, and the excess pressure from before the works.
     """
-    relief = relief_by_water(site, ground.load, time, settled)
-    return chosen(stress_at(site, ground.load, time) - relief, ground.clay)
+    excess = ground.points.excess
+    gain = stress_at(site, ground.load, time) - relief_by_water(site, ground.load, time, settled, excess)
+    return chosen(gain if excess is None else gain + excess, ground.clay)
 
 
 def final_added_stress(site: SiteModel, ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
-    """Return the added stress that stays after the last stage.
+    """Return what the effective stress gains after the last stage once all excess pore pressure has gone.
 
     Parameters
     ----------
@@ -379,9 +389,9 @@ def degrees_of_consolidation(
 
     Notes
     -----
-    Settlement of the clay so far over the settlement that the load then present would reach in
-    the end, between 0 and 1; where the ground is already lower than that (after a removal of
-    load) it is 1.
+    Settlement of the clay so far over the settlement that the load then present, and what excess pore
+    pressure there was before the works, would reach in the end, between 0 and 1; where the ground is
+    already lower than that (after a removal of load) it is 1.
     """
     at_record = np.empty((result.settlement.shape[0], site.record.size))
     done_last = np.empty(result.settlement.shape[0])

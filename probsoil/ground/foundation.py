@@ -6,6 +6,11 @@ from typing import Literal
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.load_displacement import (
+    circle_displacement,
+    rectangle_displacement,
+    strip_displacement,
+)
 from probsoil.ground.load_stress import circle_influence, rectangle_influence, strip_influence
 from probsoil.scenario.loads import CircleLoad, RectangleLoad, StripLoad
 
@@ -59,6 +64,27 @@ class Foundation:
         if self.shape == "rectangle":
             return rectangle_influence(depth, x, y, width=self.width, length=self.length)
         return circle_influence(depth, float(np.hypot(x, y)), diameter=self.width)
+
+    def displacement(self, depth: FloatArray, x: float, y: float) -> FloatArray:
+        """Return the vertical displacement of an incompressible half-space, times modulus over pressure.
+
+        Parameters
+        ----------
+        depth : ndarray, shape (...,), [m]
+            Depth below the base.
+        x, y : float, [m]
+            Distances from the centre along the width and along the length.
+
+        Returns
+        -------
+        displacement : ndarray, shape (...,), [m]
+            Below a strip up to a constant.
+        """
+        if self.shape == "strip":
+            return strip_displacement(depth, x, width=self.width)
+        if self.shape == "rectangle":
+            return rectangle_displacement(depth, x, y, width=self.width, length=self.length)
+        return circle_displacement(depth, float(np.hypot(x, y)), diameter=self.width)
 
     def spread_area(self, below: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return width and share of the pressure at a depth, spread at 2 vertical to 1 horizontal.

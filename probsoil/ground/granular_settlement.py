@@ -40,10 +40,24 @@ def granular_settlement(site: SiteModel, values: Values, ground: LoadedGround) -
         modulus = column(values, f"{layer.name}.constrained_modulus", n_sample)
         squeezed = (ground.load.stress[:, :, mine] * ground.points.thickness[:, mine]).sum(axis=2)
         at_knots += squeezed / modulus
-    return _between_knots(site, at_knots)
+    return between_knots(site, at_knots)
 
 
-def _between_knots(site: SiteModel, at_knots: FloatArray) -> FloatArray:
+def between_knots(site: SiteModel, at_knots: FloatArray) -> FloatArray:
+    """Return through time what follows the load at once.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Load knots and time axis.
+    at_knots : ndarray, shape (n_knot, n_sample), [m]
+        Settlement at the load knots.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_sample, n_time), [m]
+        Linear between knots.
+    """
     knots, times = site.knots, site.times
     after = np.clip(np.searchsorted(knots, times), 1, knots.size - 1)
     share = (times - knots[after - 1]) / (knots[after] - knots[after - 1])

@@ -84,9 +84,35 @@ def secondary_in_limits(limits: Sequence[Limit], response: Response, values: Val
     secondary : ndarray, shape (n_sample, n_limit), [m]
         Model error included; not a number for limits on other quantities.
     """
-    creeping = replace(response, settlement=response.secondary)
+    return _part_in_limits(limits, response, values, response.secondary)
+
+
+def distortion_in_limits(limits: Sequence[Limit], response: Response, values: Values) -> FloatArray:
+    """Return the part of every settlement limit's quantity that is undrained distortion.
+
+    Parameters
+    ----------
+    limits : sequence of Limit
+        The scenario's limits.
+    response : Response
+        The ground's answer, with distortion.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    distortion : ndarray, shape (n_sample, n_limit), [m]
+        Model error included; not a number for limits on other quantities.
+    """
+    return _part_in_limits(limits, response, values, response.distortion)
+
+
+def _part_in_limits(
+    limits: Sequence[Limit], response: Response, values: Values, part: FloatArray
+) -> FloatArray:
+    alone = replace(response, settlement=part)
     parts = [
-        _settlement(limit, creeping, values)
+        _settlement(limit, alone, values)
         if isinstance(limit, SettlementLimit)
         else np.full(response.settlement.shape[0], np.nan)
         for limit in limits

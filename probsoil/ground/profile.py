@@ -1,17 +1,18 @@
 """The ground before loading, as arrays over realisations."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
-from probsoil.ground.compression import lambda_from_compression_index, lambda_from_compression_ratio
 from probsoil.ground.in_situ_stress import (
     hydrostatic_pressure,
     preconsolidation_stress,
     total_vertical_stress,
 )
+from probsoil.ground.pore_pressure import initial_excess, layer_seepage
+from probsoil.ground.quantity_values import Values, column, sample_size, slope
 from probsoil.ground.rows import chosen
 from probsoil.ground.site_model import LayerForm, SiteModel
 from probsoil.ground.undrained_strength import (
@@ -22,9 +23,23 @@ from probsoil.ground.undrained_strength import (
 
 GREATEST_KAPPA_SHARE = 0.95  # of lambda; above it the two lines would cross
 _GRANULAR_POINTS = np.array([0.125, 0.375, 0.625, 0.875])  # depths of points, as shares of a granular layer
+_INNER = (
+    0.4  # of a layer's thickness from its middle; no excess pressure stands in the skin at a drained face
+)
+_ROUNDING = 1e-9  # kPa; the uplift of nothing at ground level
 LEAST_STRESS = 1.0  # kPa; the first centimetres carry suction and roots, never nothing
 
-Values = Mapping[str, FloatArray | float]
+__all__ = [
+    "LEAST_STRESS",
+    "ClayColumns",
+    "Points",
+    "Values",
+    "clay_columns",
+    "column",
+    "points_in_situ",
+    "sample_size",
+    "yield_stresses",
+]
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -41,6 +56,12 @@ class Points:
         Depth of each point and the thickness it stands for.
     stress : ndarray, shape (n_sample, n_point), [kPa]
         Effective vertical stress in situ.
+    pore : ndarray, shape (n_sample, n_point), [kPa]
+        Pore pressure in situ: at rest or in steady seepage.
+    excess : ndarray or None, shape (n_sample, n_point), [kPa]
+        Pore pressure above that, still to dissipate; None where no layer has any.
+    uplifted : ndarray of bool, shape (n_sample,), [-]
+        Whether pore pressure beyond that at rest is no less than the weight of the ground somewhere.
     """
 
     layer: IntArray
@@ -48,6 +69,9 @@ class Points:
     depth: FloatArray
     thickness: FloatArray
     stress: FloatArray
+    pore: FloatArray
+    excess: FloatArray | None
+    uplifted: BoolArray
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -74,43 +98,6 @@ class ClayColumns:
     kappa_clipped: BoolArray
 
 
-def sample_size(values: Values) -> int:
-    """Return the number of realisations that a set of values holds.
-
-    Parameters
-    ----------
-    values : mapping of str to ndarray, shape (n_sample,), or float
-        Value of every quantity by its address, each in its own unit.
-
-    Returns
-    -------
-    n_sample : int, [-]
-        Length of the arrays; 1 where all values are fixed.
-    """
-    sizes = {np.size(value) for value in values.values() if np.ndim(value) == 1}
-    return max(sizes, default=1)
-
-
-def column(values: Values, address: str, n_sample: int) -> FloatArray:
-    """Return one quantity for every realisation.
-
-    Parameters
-    ----------
-    values : mapping of str to ndarray, shape (n_sample,), or float
-        Value of every quantity by its address.
-    address : str
-        Which quantity.
-    n_sample : int, [-]
-        Number of realisations.
-
-    Returns
-    -------
-    value : ndarray, shape (n_sample,), [unit of the quantity]
-        The quantity, repeated where it is fixed.
-    """
-    return np.array(np.broadcast_to(np.asarray(values[address], dtype=np.float64), (n_sample,)))
-
-
 def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     """Return depths and stresses in situ of every point of the profile.
 
@@ -131,7 +118,8 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     Notes
     -----
     The effective stress is nowhere taken below 1 kPa (judgement): on the compression line a clay
-    without any stress would have no lower end to its strain.
+    without any stress would have no lower end to its strain. What excess pore pressure is then left is
+    less than given, so that it dissipates to the effective stress of the steady state.
     """
 
     def per_layer(key: Callable[[LayerForm], str]) -> FloatArray:
@@ -146,15 +134,39 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     each = chosen(thickness, layer)
     depth = chosen(boundary, layer) + centre * each
     water_table = column(values, "site.water_table", n_sample)
-    total = total_vertical_stress(
-        depth,
-        boundary,
-        unit_weight=per_layer(lambda _: "unit_weight"),
-        unit_weight_above=per_layer(lambda form: "unit_weight_above" if form.weight_above else "unit_weight"),
-        water_table=water_table,
+    weights = {
+        "unit_weight": per_layer(lambda _: "unit_weight"),
+        "unit_weight_above": per_layer(
+            lambda form: "unit_weight_above" if form.weight_above else "unit_weight"
+        ),
+        "water_table": water_table,
+    }
+    total = total_vertical_stress(depth, boundary, **weights)
+    pore, excess = hydrostatic_pressure(depth, water_table), None
+    uplifted = np.zeros(n_sample, dtype=np.bool_)
+    if site.seeps:
+        seepage = layer_seepage(site, values, boundary, weights)
+        pore = seepage.pressure(depth, layer)
+        at_boundary = total_vertical_stress(boundary, boundary, **weights)
+        uplifted |= (seepage.at_boundaries() > at_boundary + _ROUNDING).any(axis=1)
+    steady = np.maximum(total - pore, LEAST_STRESS)
+    effective = steady
+    if site.excess_layers:
+        excess = initial_excess(site, values, boundary, depth, layer)
+        effective = np.maximum(steady - excess, LEAST_STRESS)
+        inner = np.abs((depth - chosen(boundary, layer)) / each - 0.5) <= _INNER
+        uplifted |= (excess >= total - pore).any(axis=1, where=inner & (excess > 0.0))
+        excess = steady - effective
+    return Points(
+        layer=layer,
+        boundary=boundary,
+        depth=depth,
+        thickness=share * each,
+        stress=effective,
+        pore=pore,
+        excess=excess,
+        uplifted=uplifted,
     )
-    effective = np.maximum(total - hydrostatic_pressure(depth, water_table), LEAST_STRESS)
-    return Points(layer=layer, boundary=boundary, depth=depth, thickness=share * each, stress=effective)
 
 
 def _relative_points(site: SiteModel) -> tuple[IntArray, FloatArray, FloatArray]:
@@ -225,8 +237,8 @@ def clay_columns(site: SiteModel, values: Values, n_sample: int) -> ClayColumns:
         if not layer.is_clay:
             continue
         void[:, index] = column(values, f"{layer.name}.void_ratio", n_sample)
-        lam[:, index] = _slope(layer.name, layer.compression, values, void[:, index])
-        swelling = _slope(layer.name, layer.swelling, values, void[:, index])
+        lam[:, index] = slope(layer.name, layer.compression, values, void[:, index])
+        swelling = slope(layer.name, layer.swelling, values, void[:, index])
         greatest = GREATEST_KAPPA_SHARE * lam[:, index]
         clipped[:, index] = swelling > greatest
         kap[:, index] = np.minimum(swelling, greatest)
@@ -239,15 +251,6 @@ def clay_columns(site: SiteModel, values: Values, n_sample: int) -> ClayColumns:
         strength_exponent=exponent,
         kappa_clipped=clipped,
     )
-
-
-def _slope(name: str, form: str, values: Values, void_ratio: FloatArray) -> FloatArray:
-    given = column(values, f"{name}.{form}", void_ratio.size)
-    if form in ("lambda", "kappa"):
-        return given
-    if form in ("Cc", "Cs"):
-        return lambda_from_compression_index(given)
-    return lambda_from_compression_ratio(given, void_ratio)
 
 
 def _strength(

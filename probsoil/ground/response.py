@@ -14,6 +14,7 @@ from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+from probsoil.ground.undrained_distortion import undrained_distortion
 
 COMPETING = 2e-3
 
@@ -28,7 +29,7 @@ class Response:
         Time axis.
     settlement : ndarray, shape (n_sample, n_time), [m]
         Settlement of ground level (of the base of a foundation) at the centreline or reported point,
-        secondary compression included.
+        secondary compression and undrained distortion included.
     secondary : ndarray, shape (n_sample, n_time), [m]
         Part of it that is secondary compression.
     degree : ndarray, shape (n_sample, n_time), [-]
@@ -55,6 +56,10 @@ class Response:
         Whether the preconsolidation stress was raised to the stress in situ anywhere.
     kappa_clipped : ndarray of bool, shape (n_sample,), [-]
         Whether kappa was brought below lambda in any layer.
+    distortion : ndarray, shape (n_sample, n_time), [m]
+        Part of the settlement that is undrained distortion of the clay; empty where none is computed.
+    uplifted : ndarray of bool, shape (n_sample,), [-]
+        Whether pore pressure in situ is no less than the weight of the ground somewhere.
     """
 
     times: FloatArray
@@ -71,6 +76,8 @@ class Response:
     floored: BoolArray
     kappa_clipped: BoolArray
     bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -140,18 +147,22 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     The consolidation is solved below the centreline. Under the middle of the slope the clay is
     taken to have consolidated to the same degree at each depth under its smaller stress; beyond
     the toe nothing changes. Granular layers settle at once with the added stress over their
-    constrained modulus.
+    constrained modulus; so does clay that has an undrained modulus, by distortion at constant volume.
     """
     n_sample = sample_size(values)
     points = points_in_situ(site, values, n_sample)
     columns = clay_columns(site, values, n_sample)
     yield_stress, floored = yield_stresses(site, values, points)
-    load = applied_load(site, values, points.depth, points.thickness)
     clay = np.array([site.layers[index].is_clay for index in points.layer])
+    load = applied_load(site, values, points.depth, points.thickness, thick=~clay)
     ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
     result = consolidate_clay(site, values, ground)
     granular = granular_settlement(site, values, ground)
     secondary = secondary_settlement(site, values, ground, result)
+    settlement, distortion = result.settlement + granular + secondary, np.zeros((0, 0))
+    if site.distorts:
+        distortion = undrained_distortion(site, values, ground)
+        settlement = settlement + distortion
     strength, before = zone_strengths(site, values, ground, result)
     slip, critical = slip_at_checks(site, values, ground, strength)
     slip[~result.converged] = np.nan
@@ -160,7 +171,8 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     at_record, after_last = degrees_of_consolidation(site, ground, result)
     response = Response(
         times=site.times,
-        settlement=result.settlement + granular + secondary,
+        settlement=settlement,
+        distortion=distortion,
         secondary=secondary,
         degree=after_last,
         record=site.record,
@@ -173,6 +185,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         voids_closed=result.voids_closed,
         floored=np.asarray(floored.any(axis=1)),
         kappa_clipped=np.asarray(columns.kappa_clipped.any(axis=1)),
+        uplifted=points.uplifted,
     )
     return GroundState(
         ground=ground,

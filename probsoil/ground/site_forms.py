@@ -36,6 +36,13 @@ class LayerForm:
         Whether the part above the water table has a unit weight of its own.
     creeps : bool
         Whether secondary compression is computed.
+    has_head : bool
+        Whether a granular layer has a piezometric level of its own.
+    excess : str
+        How initial excess pore pressure is given: the shape that goes with a measured pressure (sine,
+        uniform or triangular), ``degree`` for a degree under an earlier load, or nothing.
+    modulus : str
+        Key of the undrained modulus (Eu or Eu_su), or nothing: then no distortion is computed.
     """
 
     name: str
@@ -49,6 +56,9 @@ class LayerForm:
     strength_given: bool = False
     weight_above: bool = False
     creeps: bool = False
+    has_head: bool = False
+    excess: str = ""
+    modulus: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -209,6 +219,7 @@ def layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
             is_clay=False,
             mean_thickness=layer.thickness.expectation,
             weight_above=layer.unit_weight_above is not None,
+            has_head=layer.head is not None,
         )
     yielding = next(
         key for key in ("stress", "ocr", "pop") if getattr(layer.preconsolidation, key) is not None
@@ -225,7 +236,23 @@ def layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
         strength_given=layer.strength is not None,
         weight_above=layer.unit_weight_above is not None,
         creeps=layer.C_alpha_ratio is not None,
+        excess=_excess_form(layer),
+        modulus=_modulus_form(layer),
     )
+
+
+def _excess_form(layer: ClayLayer) -> str:
+    given = layer.initial_excess
+    if given is None:
+        return ""
+    return "degree" if given.pressure is None else given.shape
+
+
+def _modulus_form(layer: ClayLayer) -> str:
+    given = layer.undrained_modulus
+    if given is None:
+        return ""
+    return "Eu_su" if given.Eu is None else "Eu"
 
 
 def _given(layer: ClayLayer, keys: dict[str, str]) -> str:

@@ -74,6 +74,8 @@ class SiteModel:
         Times among `record` at which bearing is looked at (load on a foundation).
     traffic_from : float, [years]
         Time from which traffic drives a slip; infinite without traffic.
+    base_head : bool
+        Whether the piezometric level at the bottom is given.
     """
 
     layers: tuple[LayerForm, ...]
@@ -92,6 +94,22 @@ class SiteModel:
     foundation: Foundation | None = None
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
+    base_head: bool = False
+
+    @property
+    def seeps(self) -> bool:
+        """Whether the pore pressure in situ is other than that of water at rest."""
+        return self.base_head or any(layer.has_head for layer in self.layers)
+
+    @property
+    def excess_layers(self) -> tuple[int, ...]:
+        """Layers that still hold excess pore pressure when the works begin, [-]."""
+        return tuple(index for index, layer in enumerate(self.layers) if layer.excess)
+
+    @property
+    def distorts(self) -> bool:
+        """Whether undrained distortion of any layer is computed."""
+        return any(layer.modulus for layer in self.layers)
 
     @property
     def knots(self) -> FloatArray:
@@ -172,6 +190,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     ramps = [(stage.start, stage.end) for stage in stages]
     drains = drain_form(scenario)
     restart = [] if drains is None else [drains.installed]
+    still_dissipating = any(layer.excess for layer in layers)
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *limit_times(scenario), *report]
     layouts = circle_layouts(
@@ -191,13 +210,16 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         submergence=bool(scenario.load.submergence),
         horizon=horizon,
         cells=cells,
-        times=time_axis(ramps, wanted, horizon, restart=restart, refine=refine),
+        times=time_axis(
+            ramps, wanted, horizon, restart=restart, sudden_start=still_dissipating, refine=refine
+        ),
         record=record,
         slip_times=slip_times,
         layouts=layouts,
         foundation=foundation,
         bearing_times=np.zeros(0) if foundation is None else bearing_check_times(scenario, stages),
         traffic_from=traffic_start(scenario.load, stages),
+        base_head=scenario.site.base_head is not None,
     )
 
 

@@ -15,6 +15,7 @@ from probsoil.ground.slip_circles import CircleFamily, circle_family
 from probsoil.ground.undrained_strength import undrained_shear_strength
 
 _BEYOND_TOE = 0  # the zone in which no load changes the stress
+_TINY = 1e-12  # kPa; the least pressure that is divided by
 
 
 def zone_strengths(
@@ -46,7 +47,8 @@ def zone_strengths(
     With the mode factor of the site, which brings triaxial compression to the average along a
     slip surface. Under the crest the stresses are those below the centreline; under the slope and
     under a berm their gain is reduced in proportion to the elastic stress there; beyond the toe
-    they do not change.
+    they do not change. What excess pore pressure there was before the works dissipates in full under
+    slope and berm; that it does so beyond the toe is left out, on the safe side.
     """
     n_sample = ground.points.depth.shape[0]
     mode = column(values, "site.mode_factor", n_sample)[:, None]
@@ -55,18 +57,20 @@ def zone_strengths(
     ratio = chosen(ground.columns.strength_ratio, layer)
     exponent = chosen(ground.columns.strength_exponent, layer)
     stress0, yield0 = chosen(ground.points.stress, clay), chosen(ground.yield_stress, clay)
-    gains = [chosen(share, clay) for share in _zone_shares(ground.load)]
+    gains = zone_gains(site, ground, float(site.record[0]))
     before = np.zeros((n_sample, n_point))
     before[:, clay] = mode * undrained_shear_strength(stress0, yield0, ratio, exponent)
     strength = np.zeros((site.record.size, len(gains), n_sample, n_point))
     strength[:, _BEYOND_TOE] = before
-    for slot in range(site.record.size):
-        for zone, gain in enumerate(gains):
+    for slot, time in enumerate(site.record):
+        if slot and ground.points.excess is not None:
+            gains = zone_gains(site, ground, float(time))
+        for zone, (gain, kept) in enumerate(gains):
             if zone == _BEYOND_TOE:
                 continue
             # a weighted mean rather than a gain, so that a stress near zero stays above zero
             stress = (1.0 - gain) * stress0 + gain * result.stress[:, slot]
-            largest = (1.0 - gain) * stress0 + gain * result.yield_stress[:, slot]
+            largest = (1.0 - kept) * stress0 + kept * result.yield_stress[:, slot]
             past = np.maximum(np.maximum(yield0, largest), stress)
             su = undrained_shear_strength(stress, past, ratio, exponent)
             strength[slot, zone][:, clay] = mode * su
@@ -77,6 +81,47 @@ def _zone_shares(load: AppliedLoad) -> list[FloatArray]:
     """Return the share of the stress below the centreline that acts in each zone."""
     shares = [np.zeros_like(load.slope_share), load.slope_share, np.ones_like(load.slope_share)]
     return shares if load.berm_share is None else [*shares, load.berm_share]
+
+
+def zone_gains(site: SiteModel, ground: LoadedGround, time: float) -> list[tuple[FloatArray, FloatArray]]:
+    """Return what share of the gain of stress below the centreline every zone has.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Load knots.
+    ground : LoadedGround
+        The ground before loading and the added stress.
+    time : float, [years]
+        Time.
+
+    Returns
+    -------
+    gains : list of (ndarray, ndarray), shape (n_sample, n_cell), [-]
+        For every zone the share of the effective stress gained so far, and that of the largest so far.
+
+    Notes
+    -----
+    The same degree of consolidation is taken at one depth everywhere: with the initial excess ui, the added
+    stress q and the zone's share c of it, the gain is (ui + c q)/(ui + q) of that below the centreline, and
+    c where there is no ui. Beyond the toe c is zero, and so is the gain.
+    """
+    clay, excess = ground.clay, ground.points.excess
+    shares = [chosen(share, clay) for share in _zone_shares(ground.load)]
+    if excess is None:
+        return [(share, share) for share in shares]
+    underway = chosen(excess, clay)
+    so_far = chosen(ground.load.stress[site.knots <= time].max(axis=0), clay)
+    now = np.maximum(chosen(stress_at(site, ground.load, time), clay), 0.0)
+    most = np.maximum(so_far, now)
+    beside = [
+        tuple(
+            np.where(underway > 0.0, (underway + share * added) / np.maximum(underway + added, _TINY), share)
+            for added in (now, most)
+        )
+        for share in shares[1:]
+    ]
+    return [(shares[0], shares[0]), *((gain, kept) for gain, kept in beside)]
 
 
 def slip_at_checks(

@@ -22,6 +22,7 @@ def time_axis(
     horizon: float,
     *,
     restart: Sequence[float] = (),
+    sudden_start: bool = False,
     refine: int = 1,
 ) -> FloatArray:
     """Return the times at which the ground is computed.
@@ -36,6 +37,8 @@ def time_axis(
         End of the axis.
     restart : sequence of float, [years]
         Other times at which something sudden happens and the steps start anew.
+    sudden_start : bool
+        Whether the ground is out of balance at the start, as if loaded suddenly then.
     refine : int, [-]
         Steps are about this many times shorter.
 
@@ -61,13 +64,19 @@ def time_axis(
         raise ParameterError(f"all times must lie from 0 to the horizon of {horizon:g} years")
     length = {start: end - start for start, end in ramps} | {end: end - start for start, end in ramps}
     length |= {time: _SUDDEN_SHARE * horizon for time in sudden if time not in length}
+    if sudden_start:
+        length[0.0] = min(_SUDDEN_SHARE * horizon, length.get(0.0, horizon))
     pieces = []
     for start, end in pairwise(knots):
+        first = _FIRST_SHARE * length.get(start, (end - start) / _FIRST_SHARE) / refine
+        growth = GROWTH ** (1.0 / refine)
         if any(ramp[0] <= start and end <= ramp[1] for ramp in ramps):
-            pieces.append(start + (end - start) * _in_ramp(_RAMP_STEPS * refine))
+            in_ramp = start + (end - start) * _in_ramp(_RAMP_STEPS * refine)
+            if sudden_start and start == 0.0:
+                pieces.append(_piece(start, in_ramp[0], first, growth))
+            pieces.append(in_ramp)
         else:
-            first = _FIRST_SHARE * length.get(start, (end - start) / _FIRST_SHARE)
-            pieces.append(_piece(start, end, first / refine, GROWTH ** (1.0 / refine)))
+            pieces.append(_piece(start, end, first, growth))
     free = np.concatenate([[0.0], *pieces])
     fixed = np.unique(np.concatenate([knots, np.asarray(wanted, dtype=np.float64)]))
     return _with(free, fixed)

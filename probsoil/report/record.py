@@ -163,6 +163,7 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
     return {
         "water_table": text.described_text(data.get("water_table", text.MISSING)),
         "base": data.get("base", text.MISSING),
+        "base_head": text.described_text(data["base_head"]) if data.get("base_head") else None,
         "drains": data.get("drains"),
         "load": load.get("text") or load.get("shape") or "",
         "layers": [

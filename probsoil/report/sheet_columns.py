@@ -48,6 +48,8 @@ def _layers(content: Mapping[str, Any]) -> list[SheetTable]:
     ]
     if any(row.get("secondary") for row in content["layers"]):
         columns.append(("secondary [m]", "secondary", ".3f"))
+    if content.get("distortion"):
+        columns.append(("distortion [m]", "distortion", ".4f"))
     return [sheet_table("layers", "Layers; stresses at the middle of each", content["layers"], columns)]
 
 
@@ -56,7 +58,24 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
     clay = [row for row in rows if row["soil"] == "clay"]
     granular = [row for row in rows if row["soil"] == "granular"]
     place = (("no.", "number"), ("layer", "layer"))
+    excess = [("excess ui [kPa]", "initial_excess", ".2f")] if any(map(_has_excess, rows)) else []
     return [
+        sheet_table(
+            "seepage",
+            "Steady seepage before loading; levels of water as depths below ground level",
+            content.get("seepage", ()),
+            [
+                ("layer", "layer"),
+                ("top [m]", "top", ".2f"),
+                ("bottom [m]", "bottom", ".2f"),
+                ("permeability [m/year]", "permeability", PLAIN),
+                ("resistance R [years]", "resistance", PLAIN),
+                ("level at top [m]", "level_at_top", ".3f"),
+                ("level at bottom [m]", "level_at_bottom", ".3f"),
+                ("pore at top [kPa]", "pore_pressure_at_top", ".2f"),
+                ("pore at bottom [kPa]", "pore_pressure_at_bottom", ".2f"),
+            ],
+        ),
         sheet_table(
             "stress in situ",
             "Stress in situ, at the cell nearest to the middle of each sub-layer",
@@ -68,6 +87,7 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
                 ("point [m]", "depth", ".3f"),
                 ("total σv [kPa]", "total_stress", ".2f"),
                 ("pore u0 [kPa]", "pore_pressure", ".2f"),
+                *excess,
                 ("effective σ'0 [kPa]", "initial_stress", ".2f"),
                 ("preconsolidation σ'p [kPa]", "preconsolidation", ".2f"),
             ],
@@ -127,7 +147,27 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
                 ("settlement s [m]", "settlement", ".5f"),
             ],
         ),
+        sheet_table(
+            "undrained distortion",
+            "Undrained distortion of clay at the horizon, at once with the load",
+            content.get("distortion", ()),
+            [
+                ("no.", "sublayer"),
+                ("layer", "layer"),
+                ("top below load [m]", "top_below_load", ".3f"),
+                ("bottom below load [m]", "bottom_below_load", ".3f"),
+                ("ft at top [m]", "displacement_at_top", ".4f"),
+                ("fb at bottom [m]", "displacement_at_bottom", ".4f"),
+                ("pressure q [kPa]", "pressure", ".2f"),
+                ("Eu [kPa]", "modulus", ".0f"),
+                ("settlement [m]", "settlement", ".5f"),
+            ],
+        ),
     ]
+
+
+def _has_excess(row: Mapping[str, Any]) -> bool:
+    return bool(row.get("initial_excess"))
 
 
 def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
@@ -144,6 +184,7 @@ def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
             ("clay [m]", "clay", ".4f"),
             ("granular [m]", "granular", ".4f"),
             ("secondary [m]", "secondary", ".4f"),
+            *([("distortion [m]", "distortion", ".4f")] if content.get("distortion") else []),
             ("settlement [m]", "settlement", ".4f"),
             ("clay when done [m]", "clay_when_done", ".4f"),
             ("degree U [-]", "degree", ".3f"),

@@ -123,6 +123,7 @@ _CIRCLE = {
 _GROUND = {
     "water_table": "text",
     "base": "text",
+    "base_head?": ("text", "null"),
     "layers": [
         {
             "name": "text",

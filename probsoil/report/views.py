@@ -119,7 +119,8 @@ def _evidence(limit: dict[str, Any], results: dict[str, Any]) -> list[tuple[str,
     rows = [
         ("Counted", chance.counted_text(limit, results)),
         ("The quantity itself", _spread(limit, results)),
-        ("Creep in it", _creep(limit)),
+        ("Creep in it", _part(limit, "secondary")),
+        ("Undrained distortion in it", _part(limit, "distortion")),
         ("Cost", chance.cost_text(limit, results)),
         ("Not reached", _never(limit)),
         ("Not converged", _not_converged(limit)),
@@ -127,9 +128,9 @@ def _evidence(limit: dict[str, Any], results: dict[str, Any]) -> list[tuple[str,
     return [(label, value) for label, value in rows if value and value != text.MISSING]
 
 
-def _creep(limit: dict[str, Any]) -> str:
-    """Say what secondary compression adds to a settlement, on average."""
-    mean, share = limit.get("secondary_mean"), limit.get("secondary_share")
+def _part(limit: dict[str, Any], name: str) -> str:
+    """Say what secondary compression or undrained distortion adds to a settlement, on average."""
+    mean, share = limit.get(f"{name}_mean"), limit.get(f"{name}_share")
     if mean is None:
         return ""
     part = "" if share is None else f", {text.plain_percent(share)} of the mean settlement"

@@ -7,6 +7,8 @@ from pydantic import ConfigDict, Field
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Uncertain
+from probsoil.scenario.groundwater import InitialExcess, LayerHead
+from probsoil.scenario.undrained_modulus import UndrainedModulus
 
 Thickness = Annotated[
     Distribution,
@@ -255,6 +257,10 @@ class ClayLayer(Table):
         Secondary compression index over compression index; None for no creep.
     strength : Strength or None
         Replaces the undrained strength that follows from M, lambda and kappa.
+    initial_excess : InitialExcess or None
+        Pore pressure that is still to dissipate when the works begin; None for none.
+    undrained_modulus : UndrainedModulus or None
+        For settlement by undrained distortion; None to leave it out.
     """
 
     model_config = ConfigDict(
@@ -323,6 +329,14 @@ class ClayLayer(Table):
     strength: Strength | None = Field(
         default=None, description="overrides the strength from M, lambda and kappa"
     )
+    initial_excess: InitialExcess | None = Field(
+        default=None,
+        description="excess pore pressure when the works begin: pressure alone or with shape, or degree with "
+        "load; none if left out",
+    )
+    undrained_modulus: UndrainedModulus | None = Field(
+        default=None, description="Eu or ratio; no settlement by undrained distortion if left out"
+    )
 
 
 class GranularLayer(Table):
@@ -340,6 +354,8 @@ class GranularLayer(Table):
         Stress per vertical strain without lateral strain.
     phi : Distribution, [degree]
         Friction angle.
+    head : Distribution or None, [m]
+        Piezometric level in the layer, as depth below ground level; None where it follows from the rest.
     """
 
     name: Name = Field(description="name of the layer, unique")
@@ -369,6 +385,7 @@ class GranularLayer(Table):
             spatial=True,
         ),
     ]
+    head: LayerHead = None
 
 
 Layer = Annotated[ClayLayer | GranularLayer, Field(discriminator="soil")]

@@ -9,6 +9,7 @@ from probsoil.scenario.checks import cross_checks
 from probsoil.scenario.distributions import Constant, Distribution, Normal
 from probsoil.scenario.drains import Drains
 from probsoil.scenario.fields import Number, Uncertain
+from probsoil.scenario.groundwater import BaseHead
 from probsoil.scenario.layers import Layer
 from probsoil.scenario.limits import Limit
 from probsoil.scenario.loads import Load, Stage
@@ -54,6 +55,9 @@ class Site(Table):
         Depth below ground level.
     base : str
         What lies under the last layer: ``drained`` or ``undrained``.
+    base_head : Distribution or None, [m]
+        Piezometric level at the bottom of the last layer, as depth below ground level; None for the water
+        table.
     mode_factor : Distribution, [-]
         Undrained strength along a slip surface over that in triaxial compression.
     """
@@ -69,6 +73,7 @@ class Site(Table):
         ),
     ]
     base: Literal["drained", "undrained"] = Field(description="what lies under the last layer")
+    base_head: BaseHead = None
     mode_factor: Annotated[
         Distribution,
         Uncertain(

@@ -42,7 +42,8 @@ def _table(model: type[BaseModel], raw: dict[str, Any], path: Path, failed: Abst
         else:
             values[attribute] = UNREAD if info.is_required() else info.get_default()
     # By attribute name or alias alike; what is missing here was defaulted above.
-    return model.model_construct(set(values), **values)
+    given = {attribute for key, attribute in keys_of(model).items() if key in raw}
+    return model.model_construct(given, **values)
 
 
 def _value(model: type[BaseModel], key: str, raw: Any, path: Path, failed: AbstractSet[Path]) -> Any:

@@ -1,10 +1,8 @@
 """What is no mistake in a scenario but deserves a second look."""
 
-from probsoil.scenario.layers import ClayLayer, Layer
+from probsoil.scenario.layers import ClayLayer, GranularLayer
+from probsoil.scenario.mean_column import mean_column, mean_stress
 from probsoil.scenario.models import Scenario
-
-WATER_UNIT_WEIGHT = 9.81
-"""As in the ground models, which this room cannot see [kN/m3]."""
 
 
 def remarks(scenario: Scenario) -> tuple[str, ...]:
@@ -30,7 +28,8 @@ def remarks(scenario: Scenario) -> tuple[str, ...]:
             "of 0.80 for triaxial compression is applied to it; if it stems from another test, give "
             "site.mode_factor (1.0 for a strength that already is an average along a slip surface)"
         )
-    return (*found, *_dry(scenario), *_under_their_own_weight(scenario))
+    makers = (_dry, _under_their_own_weight, _seepage_and_drains, _still_consolidating)
+    return (*found, *(text for maker in makers for text in maker(scenario)))
 
 
 def _dry(scenario: Scenario) -> list[str]:
@@ -47,35 +46,49 @@ def _dry(scenario: Scenario) -> list[str]:
 
 def _under_their_own_weight(scenario: Scenario) -> list[str]:
     """Remark on a preconsolidation stress that the ground exceeds by its own weight, at the means."""
-    found = []
-    for layer, in_situ in zip(scenario.layers, _middle_stresses(scenario), strict=True):
+    found: list[str] = []
+    column = mean_column(scenario)
+    for index, layer in enumerate(scenario.layers):
         given = layer.preconsolidation.stress if isinstance(layer, ClayLayer) else None
-        if given is not None and given.expectation < in_situ:
+        if given is None or column is None:
+            continue
+        effective, excess = mean_stress(scenario, column, index)
+        if given.expectation < effective - excess:
             found.append(
                 f"the preconsolidation stress of {layer.name}, {given.expectation:.4g} kPa (mean), is less "
-                f"than the effective stress in situ at the middle of the layer, {in_situ:.4g} kPa at the "
-                "means: it is raised to that stress wherever it lies below"
+                f"than the effective stress in situ at the middle of the layer, {effective - excess:.4g} kPa "
+                "at the means: it is raised to that stress wherever it lies below"
             )
     return found
 
 
-def _middle_stresses(scenario: Scenario) -> list[float]:
-    """Return the effective vertical stress at the middle of each layer, everything at its mean [kPa]."""
-    water = scenario.site.water_table.expectation
-    top, total, stresses = 0.0, 0.0, []
-    for layer in scenario.layers:
-        thickness = layer.thickness.expectation
-        middle = top + 0.5 * thickness
-        pressure = WATER_UNIT_WEIGHT * max(middle - water, 0.0)
-        stresses.append(total + _weight(layer, top, middle, water) - pressure)
-        total += _weight(layer, top, top + thickness, water)
-        top += thickness
-    return stresses
+def _seepage_and_drains(scenario: Scenario) -> list[str]:
+    """Remark on drains through ground in which water moves before they are installed."""
+    heads = [layer.head for layer in scenario.layers if isinstance(layer, GranularLayer)]
+    if scenario.drains is None or not any([scenario.site.base_head, *heads]):
+        return []
+    return [
+        "vertical drains change the seepage between the levels of water that are given, and one that reaches "
+        "a layer under artesian pressure lets it flow out; the steady pore pressure is taken as it was before"
+    ]
 
 
-def _weight(layer: Layer, top: float, bottom: float, water: float) -> float:
-    """Return what a layer weighs between two depths [kPa]."""
-    wet = layer.unit_weight.expectation
-    moist = wet if layer.unit_weight_above is None else layer.unit_weight_above.expectation
-    above = min(max(water - top, 0.0), bottom - top)
-    return moist * above + wet * (bottom - top - above)
+def _still_consolidating(scenario: Scenario) -> list[str]:
+    """Remark on a preconsolidation stress beyond what a clay still consolidating has ever carried."""
+    names = [
+        layer.name
+        for layer in scenario.layers
+        if isinstance(layer, ClayLayer) and layer.initial_excess is not None and _overconsolidated(layer)
+    ]
+    if not names:
+        return []
+    return [
+        f"{', '.join(names)} still holds excess pore pressure and yet has a preconsolidation stress above "
+        "its present effective stress, to which ocr and pop refer: part of that pressure then dissipates in "
+        "reloading; a clay that has never carried more than now has pop = 0"
+    ]
+
+
+def _overconsolidated(layer: ClayLayer) -> bool:
+    ocr, pop = layer.preconsolidation.ocr, layer.preconsolidation.pop
+    return (ocr is not None and ocr.expectation > 1.0) or (pop is not None and pop.expectation > 0.0)

@@ -10,6 +10,7 @@ from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
 from probsoil.scenario.checks.ground import ground_slips
+from probsoil.scenario.checks.groundwater import groundwater_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
 from probsoil.scenario.slips import Slip
@@ -30,5 +31,13 @@ def cross_checks(scenario: Any) -> list[Slip]:
     slips : list of Slip
         Paths start at the top of the scenario.
     """
-    checks = (ground_slips, programme_slips, embankment_slips, drain_slips, limit_slips, dependence_slips)
+    checks = (
+        ground_slips,
+        groundwater_slips,
+        programme_slips,
+        embankment_slips,
+        drain_slips,
+        limit_slips,
+        dependence_slips,
+    )
     return [slip for check in checks for slip in check(scenario)]

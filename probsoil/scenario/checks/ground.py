@@ -1,16 +1,14 @@
 """Checks of the layers."""
 
-import math
 from typing import Any
 
-from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names
 from probsoil.scenario.distributions import Distribution
 from probsoil.scenario.layers import ClayLayer, Permeability, Preconsolidation
+from probsoil.scenario.loads import AreaLoad
+from probsoil.scenario.mean_column import RELOADING, VIRGIN, mean_slope
 from probsoil.scenario.slips import Slip
-
-_VIRGIN = {"lambda_": "lambda", "Cc": "Cc", "CR": "CR"}
-_RELOADING = {"kappa": "kappa", "Cs": "Cs", "RR": "RR"}
+from probsoil.scenario.undrained_modulus import UndrainedModulus
 
 
 def ground_slips(scenario: Any) -> list[Slip]:
@@ -33,19 +31,32 @@ def ground_slips(scenario: Any) -> list[Slip]:
         slips.append(Slip(path=("layers",), message=message, allowed='at least one layer with soil = "clay"'))
     for position, layer in enumerate(layers):
         if isinstance(layer, ClayLayer):
-            slips += [slip.below(("layers", position)) for slip in _clay_slips(layer)]
+            found = _clay_slips(layer) + _modulus_slips(layer, scenario.load)
+            slips += [slip.below(("layers", position)) for slip in found]
     return slips
 
 
 def _clay_slips(layer: Any) -> list[Slip]:
-    slips = exactly_one(layer, _VIRGIN, "virgin compression")
-    slips += exactly_one(layer, _RELOADING, "unloading and reloading")
+    slips = exactly_one(layer, VIRGIN, "virgin compression")
+    slips += exactly_one(layer, RELOADING, "unloading and reloading")
     slips += exactly_one(layer, {"M": "M", "phi": "phi"}, "critical-state friction")
     if isinstance(layer.preconsolidation, Preconsolidation):
         slips += _preconsolidation_slips(layer.preconsolidation)
     if isinstance(layer.permeability, Permeability):
         slips += _permeability_slips(layer.permeability)
     return slips + _compression_slips(layer)
+
+
+def _modulus_slips(layer: Any, load: Any) -> list[Slip]:
+    if not isinstance(layer.undrained_modulus, UndrainedModulus):
+        return []
+    if isinstance(load, AreaLoad):
+        message = "clay under a load over a wide area cannot distort without losing water"
+        allowed = 'no undrained_modulus with shape = "area"'
+        return [Slip(path=("undrained_modulus",), message=message, allowed=allowed, at_key=True)]
+    keys = {"Eu": "Eu", "ratio": "ratio"}
+    found = exactly_one(layer.undrained_modulus, keys, "the undrained modulus")
+    return [slip.below(("undrained_modulus",)) for slip in found]
 
 
 def _preconsolidation_slips(table: Any) -> list[Slip]:
@@ -79,7 +90,7 @@ def _permeability_slips(table: Any) -> list[Slip]:
 
 def _compression_slips(layer: Any) -> list[Slip]:
     """Refuse reloading that is no stiffer than virgin compression, at the means."""
-    virgin, reloading = _slope(layer, _VIRGIN), _slope(layer, _RELOADING)
+    virgin, reloading = mean_slope(layer, VIRGIN), mean_slope(layer, RELOADING)
     if virgin is None or reloading is None or reloading[1] < virgin[1]:
         return []
     key = reloading[0]
@@ -89,19 +100,3 @@ def _compression_slips(layer: Any) -> list[Slip]:
     )
     allowed = "kappa below lambda, at their means (by definition)"
     return [Slip(path=(key,), message=message, allowed=allowed, hint=f"are {key} and {virgin[0]} swapped?")]
-
-
-def _slope(layer: Any, keys: dict[str, str]) -> tuple[str, float] | None:
-    """Key in the file and mean slope per unit of natural logarithm, where both can be known."""
-    given = [attribute for attribute in keys if getattr(layer, attribute) is not None]
-    if len(given) != 1 or getattr(layer, given[0]) is UNREAD:
-        return None
-    attribute = given[0]
-    mean = getattr(layer, attribute).expectation
-    if attribute in ("lambda_", "kappa"):
-        return keys[attribute], mean
-    if attribute in ("Cc", "Cs"):
-        return keys[attribute], mean / math.log(10.0)
-    if not isinstance(layer.void_ratio, Distribution):
-        return None
-    return keys[attribute], mean * (1.0 + layer.void_ratio.expectation) / math.log(10.0)

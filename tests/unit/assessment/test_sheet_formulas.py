@@ -21,7 +21,7 @@ horizon = 20
 
 [site]
 water_table = 0.5
-base = "undrained"
+base = "{base}"
 
 [[layers]]
 name = "clay"
@@ -33,6 +33,7 @@ void_ratio = 1.6
 permeability = {{ k = 1e-9, ck = 0.8 }}
 kh_kv = 2
 C_alpha_ratio = 0.05
+{excess}
 
 [drains]
 pattern = "square"
@@ -75,11 +76,46 @@ INDICES = (
 )
 
 
+TRIANGLE = 'initial_excess = { pressure = 6, shape = "triangular" }'
+EVEN = 'initial_excess = { pressure = 2, shape = "uniform" }'
+
+
+def varied(forms: str, *, slope: int = 2, base: str = "undrained", excess: str = "") -> str:
+    return VARIED.format(forms=forms, slope=slope, base=base, excess=excess)
+
+
+def distorting(kind: str) -> str:
+    """The starter with an undrained modulus in its last clay."""
+    head, clay, rest = starter_text(kind).rpartition('soil = "clay"\n')
+    return f"{head}{clay}undrained_modulus = {{ ratio = 300 }}\n{rest}"
+
+
+def earlier_load() -> str:
+    """Crust of another permeability over clay under which the water stands higher than above."""
+    text = varied(
+        RATIOS, base='drained"\nbase_head = "-50 cm', excess="initial_excess = { degree = 0.6, load = 12 }"
+    )
+    crust = text.partition("[[layers]]")[2].partition("[drains]")[0]
+    crust = crust.replace("initial_excess = { degree = 0.6, load = 12 }", "").replace(
+        '"clay"\nsoil', '"crust"\nsoil'
+    )
+    crust = crust.replace("{ k = 1e-9, ck = 0.8 }", "{ cv = 2 }").replace("thickness = 5", "thickness = 1.5")
+    return text.replace("[[layers]]", f"[[layers]]{crust}\n[[layers]]", 1)
+
+
 def scenarios() -> dict[str, Scenario]:
     texts = {kind: starter_text(kind) for kind in ("embankment", "tank", "footing")}
     texts |= {
-        "ratios": VARIED.format(forms=RATIOS, slope=2),
-        "indices, vertical sides": VARIED.format(forms=INDICES, slope=0),
+        "ratios": varied(RATIOS),
+        "indices, vertical sides": varied(INDICES, slope=0),
+        "still consolidating": varied(RATIOS, excess="initial_excess = { pressure = 6 }"),
+        "excess in a triangle": varied(RATIOS, excess=TRIANGLE),
+        "even excess, artesian": varied(INDICES, excess=EVEN, base='drained"\nbase_head = "20 cm'),
+        "an earlier load, two clays": earlier_load(),
+        "distorting fill": varied(RATIOS, excess="undrained_modulus = { ratio = 250 }"),
+        "distorting fill, vertical": varied(INDICES, slope=0, excess='undrained_modulus = { Eu = "4 MPa" }'),
+        "distorting footing": distorting("footing"),
+        "distorting tank": distorting("tank"),
     }
     found = {name: parse_scenario(text) for name, text in texts.items()}
     files = sorted((ROOT / "scenarios").glob("*.toml"))
@@ -116,9 +152,11 @@ def test_every_symbol_of_a_formula_is_explained_and_replaced(found: dict) -> Non
 def test_sublayers_add_up_to_the_settlement_exactly(found: dict) -> None:
     rows, last = found["sublayers"], found["through_time"][-1]
     total = sum(row["settlement"] for row in rows) + sum(one["secondary"] for one in found["segments"])
+    total += sum(row["settlement"] for row in found["distortion"])
     assert total == pytest.approx(found["final_settlement"], rel=1e-9)
     assert last["settlement"] == found["final_settlement"]
-    parts = last["clay"] + last["granular"] + last["secondary"]
+    assert sum(row["distortion"] for row in found["layers"]) == pytest.approx(last["distortion"], abs=1e-12)
+    parts = last["clay"] + last["granular"] + last["secondary"] + last["distortion"]
     assert parts == pytest.approx(last["settlement"], rel=1e-12)
     for one in found["segments"]:
         assert one["secondary"] == pytest.approx(sum(spell["secondary"] for spell in one["creep"]), rel=1e-12)

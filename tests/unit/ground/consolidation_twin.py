@@ -5,11 +5,13 @@ of water are written out again for one realisation, and scipy's stiff integrator
 
 With a the depth before loading and w = e0 - e:
 
-    (1/(1 + e0)) dw/dt = d/da [ (k/gw) (1 + e0)/(1 + e) du/da ],   u = s0 + added - s'
+    (1/(1 + e0)) dw/dt = d/da [ (k/gw) (1 + e0)/(1 + e) du/da ],   u = s0 + u0 + added - s'
     w = kappa ln(s'/s0) up to the preconsolidation stress sp, then lambda ln(s'/sp) on top
     k = k0 10^(-w/ck)          or          k = cv gw lambda/[(1 + e) max(s', sp)]
 
 Clay that swells below an effective stress of 0.001 kPa conducts as it does there, by agreement.
+with u0 the excess pore pressure at the start, which s0 is the lower for, and a pore pressure at rest that
+may rise faster with depth than that of still water.
 
 The preconsolidation stress is brought up to the stress at the end of each of many short spans of time.
 """
@@ -27,7 +29,7 @@ LEAST_FOR_FLOW = 1e-3  # kPa, by agreement
 
 @dataclass(frozen=True)
 class TwinLayer:
-    """Clay: `flow` is ("cv", m2/year) or ("k", m/s, ck); sand has no lam."""
+    """Clay: `flow` is ("cv", m2/year) or ("k", m/s, ck); sand has no lam. `excess` is even over the layer."""
 
     thickness: float
     weight: float
@@ -36,6 +38,7 @@ class TwinLayer:
     kap: float = 0.0
     pop: float = 0.0
     flow: tuple = ("cv", 1.0)
+    excess: float = 0.0
 
 
 def edges_of(layers, n_cell):
@@ -52,7 +55,7 @@ def edges_of(layers, n_cell):
 class Profile:
     """One realisation as cells, with its balance of water."""
 
-    def __init__(self, layers, *, water_table, base_drained, n_cell, spread=np.ones_like):
+    def __init__(self, layers, *, water_table, base_drained, n_cell, base_level=None, spread=np.ones_like):
         edges, owner = edges_of(layers, n_cell)
         self.size, depth = np.diff(edges), 0.5 * (edges[1:] + edges[:-1])
 
@@ -61,7 +64,14 @@ class Profile:
 
         weight = of(lambda layer: layer.weight)
         total = np.array([(weight * np.clip(z - edges[:-1], 0.0, self.size)).sum() for z in depth])
-        self.stress0 = np.maximum(total - WATER * np.maximum(depth - water_table, 0.0), LEAST_STRESS)
+        level = np.full(depth.size, water_table)
+        if base_level is not None:  # one clay, so the level falls or rises evenly below the water table
+            level += (base_level - water_table) * np.clip(
+                (depth - water_table) / (edges[-1] - water_table), 0, 1
+            )
+        steady = np.maximum(total - WATER * np.maximum(depth - level, 0.0), LEAST_STRESS)
+        self.stress0 = np.maximum(steady - of(lambda layer: layer.excess), LEAST_STRESS)
+        self.underway = steady - self.stress0
         self.e0, self.pop = of(lambda layer: layer.void_ratio), of(lambda layer: layer.pop)
         self.clay = of(lambda layer: layer.lam > 0.0)
         self.lam = np.where(self.clay, of(lambda layer: layer.lam), 1.0)  # stand-ins in sand, never used
@@ -80,7 +90,7 @@ class Profile:
     def rates(self, lost, added, yielding, lost_at_yield):
         """Rate at which each cell loses void ratio under an added pressure at the surface."""
         stress = self.stress(lost, yielding, lost_at_yield)
-        excess = self.stress0 + added * self.spread - stress
+        excess = self.stress0 + self.underway + added * self.spread - stress
         lost = np.maximum(lost, lost_at_yield + self.kap * np.log(LEAST_FOR_FLOW / yielding))
         e = self.e0 - lost
         by_cv = self.first * WATER * self.lam / ((1.0 + e) * np.maximum(stress, yielding))
@@ -103,9 +113,11 @@ class Profile:
         return float((self.size / (1.0 + self.e0) * lost)[self.clay].sum())
 
 
-def stops_for(knot_time, times, span_count):
+def stops_for(knot_time, times, span_count, *, sudden=False):
     """Ends of the short spans: a kink of the load is followed by fast changes."""
     stops = {0.0, *knot_time, *times}
+    if sudden:  # the ground is out of balance at the start
+        stops |= set(np.geomspace(1e-5, 1.0, span_count) * knot_time[1])
     for start, end in pairwise(knot_time):
         stops |= set(start + (end - start) * np.geomspace(1e-4, 1.0, span_count))
     return np.unique(np.round([t for t in stops if t <= max(times)], 12))
@@ -125,7 +137,7 @@ def twin_settlement(layers, knots, times, *, span_count=40, **ground):
         return profile.rates(lost, np.interp(time, knot_time, knot_load), yielding, lost_at_yield)
 
     answer = {0.0: 0.0}
-    for start, end in pairwise(stops_for(knot_time, times, span_count)):
+    for start, end in pairwise(stops_for(knot_time, times, span_count, sudden=profile.underway.any())):
         march = solve_ivp(
             rates,
             (start, end),

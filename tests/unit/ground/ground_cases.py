@@ -47,11 +47,20 @@ LIMIT = '[[limits]]\nname = "in the end"\nquantity = "settlement"\nat = {horizon
 
 
 def scenario(
-    layers, stages, *, load=AREA, water_table=0.0, base="undrained", horizon=30.0, limits=None
+    layers,
+    stages,
+    *,
+    load=AREA,
+    water_table=0.0,
+    base="undrained",
+    base_head=None,
+    horizon=30.0,
+    limits=None,
 ) -> Scenario:
     """Scenario of layers and stages given as text."""
     head = f'format = 1\ntitle = "case"\nseed = 1\nhorizon = {horizon}'
     ground = f'[site]\nwater_table = {water_table}\nbase = "{base}"\nmode_factor = 1.0'
+    ground += "" if base_head is None else f"\nbase_head = {base_head!r}"
     tail = [LIMIT.format(horizon=horizon)] if limits is None else limits
     return parse_scenario("\n".join([head, ground, *layers, load, *stages, *tail]), file="case.toml")
 

@@ -4,6 +4,8 @@ Tolerance, fixed before the first run: 0.5 % of the greatest settlement at every
 a grid four times finer than the default (the default grid's own error is in `test_discretisation`).
 """
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from consolidation_twin import TwinLayer, twin_settlement
@@ -130,6 +132,38 @@ def test_kernel_and_twin_agree_where_water_takes_the_stress_of_deeper_clay(name)
     knots = [(0.0, 0.0), (0.1, pressure), (20.0, pressure)]
     ground = {"water_table": 0.0, "base_drained": False, "n_cell": 200, "spread": below_strip(width)}
     twin = twin_settlement([layer], knots, TIMES, **ground)
+    assert kernel == pytest.approx(twin, abs=TOLERANCE * twin.max())
+
+
+@pytest.mark.parametrize("seed", range(3))
+def test_kernel_and_twin_agree_on_clay_still_consolidating(seed):
+    """An even excess in the lowest clay, more head below it where the base drains, one clay in that case."""
+    layers, knots, water_table, base_drained = random_case(seed + 20)
+    rng = np.random.default_rng(np.random.SeedSequence(1943, spawn_key=(seed,)))
+    if base_drained := bool(seed % 2):
+        layers = [random_clay(rng)]
+    layers[-1] = replace(layers[-1], excess=float(rng.uniform(2.0, 6.0)))
+    depth = sum(layer.thickness for layer in layers)
+    base_level = water_table - 0.2 * (depth - water_table) if base_drained else None
+    texts = [text_of(index, layer) for index, layer in enumerate(layers)]
+    texts[-1] += f'\ninitial_excess = {{ pressure = {layers[-1].excess!r}, shape = "uniform" }}'
+    case = scenario(
+        texts,
+        [
+            stage("first", 0.0, 0.1, pressure=knots[1][1]),
+            stage("second", 1.0, 1.2, pressure=knots[3][1] - knots[1][1]),
+        ],
+        water_table=water_table,
+        base="drained" if base_drained else "undrained",
+        base_head=base_level,
+        horizon=20.0,
+    )
+    site = refined(case, 4, also=TIMES)
+    state = ground_state(site, central(case))
+    assert state.response.converged.all()
+    kernel = state.consolidation.settlement[0, np.searchsorted(site.times, TIMES)]
+    water = {"water_table": water_table, "base_drained": base_drained, "base_level": base_level}
+    twin = twin_settlement(layers, knots, TIMES, **water)
     assert kernel == pytest.approx(twin, abs=TOLERANCE * twin.max())
 
 

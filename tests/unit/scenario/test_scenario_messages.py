@@ -78,6 +78,7 @@ def test_allowed_keys_are_all_listed_and_those_given_are_marked(base_text: str) 
         "unit_weight_above",
         "constrained_modulus (given)",
         "phi (given)",
+        "head",
     ]
 
 
@@ -194,4 +195,4 @@ def test_weight_above_the_water_table_counts_in_its_own_measure(base_text: str) 
 
 
 def test_water_weighs_what_it_weighs_in_the_ground_models() -> None:
-    assert sys.modules["probsoil.scenario.remarks"].WATER_UNIT_WEIGHT == WATER_UNIT_WEIGHT
+    assert sys.modules["probsoil.scenario.mean_column"].WATER_UNIT_WEIGHT == WATER_UNIT_WEIGHT
