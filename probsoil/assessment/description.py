@@ -5,9 +5,11 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 
 from probsoil.assessment.evaluation import Study
+from probsoil.ground.applied_load import stress_at
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario import Scenario
+from probsoil.scenario.checks.common import years_text
 from probsoil.scenario.distributions import Constant
 from probsoil.scenario.loads import EmbankmentLoad
 
@@ -39,7 +41,7 @@ def ground_record(study: Study, at_means: GroundState) -> Row:
         "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
         "stages": stage_rows(study.site),
         "drains": None if scenario.drains is None else scenario.drains.describe(),
-        "profile": _profile(at_means),
+        "profile": _profile(study.site, at_means),
     }
 
 
@@ -72,8 +74,17 @@ def _load_text(scenario: Scenario, site: SiteModel) -> str:
             f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
             f"side slopes {shape.side_slope:g} horizontal to 1 vertical, base {shape.base_width:g} m wide"
             + _beside(scenario.load)
+            + _held(site)
         )
-    return "load over a wide area" if site.foundation is None else site.foundation.title
+    return "load over a wide area" + _held(site) if site.foundation is None else site.foundation.title
+
+
+def _held(site: SiteModel) -> str:
+    """Return in words until when the level is held, where it is."""
+    if site.hold_level_until is None:
+        return ""
+    until = years_text(site.hold_level_until)
+    return f"; fill is added as the ground settles, to hold its level until {until}"
 
 
 def _beside(load: EmbankmentLoad) -> str:
@@ -120,10 +131,10 @@ def stage_rows(site: SiteModel) -> list[Row]:
     return rows
 
 
-def _profile(state: GroundState) -> Row:
+def _profile(site: SiteModel, state: GroundState) -> Row:
     """Return stresses with depth before loading and at the horizon, [m] and [kPa]."""
     points, ground = state.ground.points, state.ground
-    final = points.stress[0] + ground.load.stress[-1, 0]
+    final = points.stress[0] + stress_at(site, ground.load, site.horizon)[0]
     final[ground.clay] = state.consolidation.stress[0, -1]
     preconsolidation = [
         float(value) if is_clay else None

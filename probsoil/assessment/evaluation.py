@@ -76,7 +76,8 @@ class Study:
         -------
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
             ``quantity`` of every limit and what of it is ``secondary`` compression, ``slip`` and
-            ``bearing`` at every check, ``final`` settlement, flags, and in the first chunks
+            ``bearing`` at every check, ``final`` settlement, thickness of ``fill_added`` where a level is
+            held, flags, and in the first chunks
             ``settlement`` through time (model error included in all these) and where the critical
             ``circle`` lies.
         """
@@ -96,6 +97,8 @@ class Study:
             "converged": response.converged,
             "voids_closed": response.voids_closed,
         }
+        if self.site.hold_level_until is not None:
+            arrays["fill_added"] = error * response.fill_added[:, -1]
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)

@@ -39,6 +39,8 @@ class CampaignSample:
         Settlement through time of the first realisations.
     circle : ndarray, shape (n_band, n_check, 6), [m]
         Where the critical circles of the first realisations lie.
+    fill_added : ndarray, shape (n_sample,), [m]
+        Thickness of fill added to hold its level; empty where none is.
     converged, voids_closed, floored, kappa_clipped : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -57,6 +59,7 @@ class CampaignSample:
     replicate: IntArray
     bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -220,6 +223,37 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
         "stages": [{"name": stage.name, "start": stage.start, "end": stage.end} for stage in site.stages],
         "final": {key: value for key, value in _summary(sample.final, worst=worst).items() if key != "sd"},
     }
+
+
+def added_fill_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
+    """Return how much fill holding the level takes.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Until when, and the section of an embankment.
+    sample : CampaignSample
+        All realisations.
+
+    Returns
+    -------
+    rows : list of dict
+        One, ready for JSON: thickness on the centreline [m] and volume, per metre run of an embankment
+        [m3/m] or per square metre of an area [m3/m2]; none where no level is held.
+    """
+    if site.hold_level_until is None:
+        return []
+    width, unit = (1.0, "m3/m2") if site.embankment is None else (site.embankment.mean_width, "m3/m")
+    worst = _WORST["not more than"]
+    return [
+        {
+            "until": site.hold_level_until,
+            "unit": unit,
+            "mean_width": None if site.embankment is None else width,
+            "thickness": _summary(sample.fill_added, worst=worst),
+            "volume": _summary(width * sample.fill_added, worst=worst),
+        }
+    ]
 
 
 def slip_rows(study: Study, sample: CampaignSample) -> list[Row]:

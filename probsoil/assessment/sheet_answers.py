@@ -47,6 +47,7 @@ def time_rows(run: SheetRun) -> list[dict[str, Any]]:
         row = {
             "time": time,
             "fill_height": site.fill_height(time),
+            "fill_added": run.fill_added(time),
             "surface_pressure": run.surface_pressure(time),
             "clay": float(clay[index]),
             "granular": float(state.granular_settlement[0, index]),
@@ -311,6 +312,7 @@ def _circle(one: SlipMoments) -> dict[str, Any]:
         "fill_cohesion_moment": one.fill_cohesion,
         "resisting_moment": one.resisting,
         "driving_form": one.driving_form,
+        "heavier": one.heavier,
         "traffic_form": one.traffic_form,
         "traffic_moment": one.traffic,
         "driving_moment": one.driving,

@@ -138,6 +138,12 @@ def _total_stress(run: SheetRun, sublayer: Sublayer, row: Record, place: str) ->
     )
 
 
+FULL = "influence of the load at its full height"
+"""Meaning of I0."""
+ADDED = "fill added to hold the level"
+"""Meaning of ha."""
+
+
 def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
     """Return what leads from the load to the final effective stress.
 
@@ -154,7 +160,7 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         Stress increase, what submergence takes off, and the effective stress at the horizon.
     """
     time, place = run.site.horizon, f"{place_of(row)}, at {row['depth']:.3f} m and {run.site.horizon:g} years"
-    fill: Symbol = (run.at.get("load.fill_unit_weight", 0.0), "unit weight of the fill", "kN/m3")
+    fill: Symbol = (run.fill_weight, "unit weight of the fill", "kN/m3")
     height: Symbol = (run.site.fill_height(time), "height of fill", "m")
     increase: Symbol = (row["stress_increase"], "stress increase", "kPa")
     spread = float(run.state.ground.load.spread[0, _point(run, row)])
@@ -167,18 +173,25 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
             "h": height,
             "p": (run.site.pressure(time), "pressure besides the fill", "kPa"),
         }
+        formula = "Δσ = I · (γf · h + p)"
+        if run.site.hold_level_until is not None:
+            symbols |= {"I0": (spread, FULL, "-"), "ha": (run.fill_added(time), ADDED, "m")}
+            formula += " + I0 · γf · ha"
         result = (row["stress_increase"], "kPa")
-        lines.append(worked(LOAD, "stress increase", "Δσ = I · (γf · h + p)", result, symbols, row=place))
+        lines.append(worked(LOAD, "stress increase", formula, result, symbols, row=place))
     if run.site.submergence:
         symbols = {
             "γw": _GAMMA_W,
             "sc": (max(clay, 0.0), "settlement of the clay", "m"),
             "zw": (run.at["site.water_table"], "depth of the water table", "m"),
             "h": height,
-            "I0": (spread, "influence of the load at its full height", "-"),
+            "I0": (spread, FULL, "-"),
             "Δσ": increase,
         }
         formula = "δ = min(γw · min(sc, zw + h) · I0, Δσ)"
+        if run.site.hold_level_until is not None:
+            symbols["ha"] = (run.fill_added(time), ADDED, "m")
+            formula = "δ = min(γw · min(sc, zw + h + ha) · I0, Δσ)"
         lines.append(
             worked(LOAD, "taken off by submergence", formula, (row["relief"], "kPa"), symbols, row=place)
         )

@@ -86,8 +86,28 @@ class SheetRun:
         pressure : float, [kPa]
             Unit weight times height of fill, and pressure besides.
         """
-        weight = float(self.at.get("load.fill_unit_weight", 0.0))
-        return weight * self.site.fill_height(time) + self.site.pressure(time)
+        height = self.site.fill_height(time) + self.fill_added(time)
+        return self.fill_weight * height + self.site.pressure(time)
+
+    @property
+    def fill_weight(self) -> float:
+        """Unit weight of the fill, zero where there is none, [kN/m3]."""
+        return float(self.at.get("load.fill_unit_weight", 0.0))
+
+    def fill_added(self, time: float) -> float:
+        """Return the fill added to hold its level.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        thickness : float, [m]
+            On the centreline.
+        """
+        return float(self.state.ground.load.fill_added(time)[0])
 
     def added(self, time: float) -> tuple[FloatArray, FloatArray]:
         """Return the stress that the works add at a time, and what submergence takes off.

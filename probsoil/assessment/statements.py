@@ -83,6 +83,16 @@ _SUBMERGENCE = (
     "loses the weight of the water it displaces.",
 )
 
+_LEVEL_HELD = (
+    "Until its stated time the level of the fill is held: fill is added as the ground settles, so that its "
+    "thickness on the centreline is the designed height and the settlement together. It weighs as the fill "
+    "does, spreads its stress as the load does at its greatest height, and is taken to be everywhere in the "
+    "same proportion to the fill above it; its volume follows from that. Afterwards none is added.",
+    "In slip the fill stands as high as designed above the ground as it was; what was added below that "
+    "drives with its whole weight, also under water, and resists nothing. While fill is added there is no "
+    "creep.",
+)
+
 
 def assumptions(site: SiteModel) -> tuple[str, ...]:
     """Return the assumptions behind a result, in words.
@@ -111,4 +121,6 @@ def assumptions(site: SiteModel) -> tuple[str, ...]:
     )
     creep = _CREEP if any(layer.creeps for layer in site.layers) else _NO_CREEP
     flow = _VERTICAL if site.drains is None else _DRAINS
-    return (*_GROUND, *creep, *flow, *load, *(_SUBMERGENCE if site.submergence else ()), *base)
+    submergence = _SUBMERGENCE if site.submergence else ()
+    held = () if site.hold_level_until is None else _LEVEL_HELD
+    return (*_GROUND, *creep, *flow, *load, *held, *submergence, *base)

@@ -11,6 +11,7 @@ from probsoil.ground.foundation import Foundation
 from probsoil.ground.load_stress import trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
+from probsoil.ground.top_up import AddedFill
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -33,6 +34,8 @@ class AppliedLoad:
         Depth of the water table.
     berm_share : ndarray or None, shape (n_sample, n_point), [-]
         As `slope_share`, below the middle of a berm and its slope; None without berms.
+    added_fill : AddedFill or None
+        Fill that held the level, besides `stress`; None where none did or before it is known.
     """
 
     stress: FloatArray
@@ -41,6 +44,22 @@ class AppliedLoad:
     height: FloatArray
     water_depth: FloatArray
     berm_share: FloatArray | None = None
+    added_fill: AddedFill | None = None
+
+    def fill_added(self, time: float) -> FloatArray:
+        """Return the fill added so that the level stays.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        thickness : ndarray, shape (n_sample,), [m]
+            Zero where none is.
+        """
+        return np.zeros(len(self.spread)) if self.added_fill is None else self.added_fill.at(time)
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -83,12 +102,16 @@ def stress_at(site: SiteModel, load: AppliedLoad, time: float) -> FloatArray:
     Returns
     -------
     stress : ndarray, shape (n_sample, n_point), [kPa]
-        Linear between knots.
+        Linear between knots; with the fill that held the level.
     """
     knots = site.knots
     after = int(np.clip(np.searchsorted(knots, time), 1, knots.size - 1))
     share = (time - knots[after - 1]) / (knots[after] - knots[after - 1])
-    return np.asarray((1.0 - share) * load.stress[after - 1] + share * load.stress[after])
+    stress = np.asarray((1.0 - share) * load.stress[after - 1] + share * load.stress[after])
+    if load.added_fill is None:
+        return stress
+    pressure = load.added_fill.unit_weight * load.fill_added(time)
+    return np.asarray(stress + pressure[:, None] * load.spread)
 
 
 def applied_load(
@@ -239,7 +262,7 @@ def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: Fl
     if not site.submergence:
         return np.zeros_like(load.spread)
     sunk = np.where(settled > 0.0, settled, 0.0)  # also where there is no number for want of convergence
-    submerged = np.minimum(sunk, load.water_depth + site.fill_height(time))
+    submerged = np.minimum(sunk, load.water_depth + site.fill_height(time) + load.fill_added(time))
     return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, stress_at(site, load, time))
 
 

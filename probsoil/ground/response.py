@@ -7,13 +7,14 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
-from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
+from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation, level_held
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.granular_settlement import granular_settlement
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+from probsoil.ground.top_up import added_fill
 
 COMPETING = 2e-3
 
@@ -55,6 +56,8 @@ class Response:
         Whether the preconsolidation stress was raised to the stress in situ anywhere.
     kappa_clipped : ndarray of bool, shape (n_sample,), [-]
         Whether kappa was brought below lambda in any layer.
+    fill_added : ndarray, shape (n_sample, n_time), [m]
+        Thickness of fill added on the centreline so that its level stays; no columns where none is.
     """
 
     times: FloatArray
@@ -71,6 +74,7 @@ class Response:
     floored: BoolArray
     kappa_clipped: BoolArray
     bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -150,7 +154,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     clay = np.array([site.layers[index].is_clay for index in points.layer])
     ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
     result = consolidate_clay(site, values, ground)
-    granular = granular_settlement(site, values, ground)
+    ground, granular = _with_added_fill(site, values, ground, result)
     secondary = secondary_settlement(site, values, ground, result)
     strength, before = zone_strengths(site, values, ground, result)
     slip, critical = slip_at_checks(site, values, ground, strength)
@@ -169,6 +173,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip=slip,
         critical_circle=critical,
         bearing=bearing,
+        fill_added=_fill_added(ground, result),
         converged=result.converged,
         voids_closed=result.voids_closed,
         floored=np.asarray(floored.any(axis=1)),
@@ -182,6 +187,25 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         strength_before=before,
         response=response,
     )
+
+
+def _with_added_fill(
+    site: SiteModel, values: Values, ground: LoadedGround, result: ConsolidationResult
+) -> tuple[LoadedGround, FloatArray]:
+    """Return the ground with the fill that held the level, and the settlement of the granular layers."""
+    granular = granular_settlement(site, values, ground)
+    held = level_held(site, values, ground)
+    if held is None:
+        return ground, granular
+    added = added_fill(held, site.times, result.settlement, granular)
+    load = replace(ground.load, added_fill=added)
+    return replace(ground, load=load), granular + held.granular_share[:, None] * added.thickness
+
+
+def _fill_added(ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
+    if ground.load.added_fill is None:
+        return np.zeros((result.converged.size, 0))
+    return np.where(result.converged[:, None], ground.load.added_fill.thickness, np.nan)
 
 
 def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> SiteModel:

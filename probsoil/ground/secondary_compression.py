@@ -185,7 +185,8 @@ def creep_spells(
     spells: list[CreepSpell] = []
     middles = [0.5 * (stage.start + stage.end) for stage in site.stages] + [np.inf]
     for index, stage in enumerate(site.stages):
-        present = _stress_when_done(site, ground, result, stage.end, middles[index + 1])
+        settled = _load_settles(site, index)
+        present = _stress_when_done(site, ground, result, settled, middles[index + 1])
         seen = int(np.searchsorted(site.record, min(middles[index + 1], site.horizon), side="right")) - 1
         reached = result.yield_stress[:, seen]
         largest = np.maximum(reached, present)
@@ -198,7 +199,7 @@ def creep_spells(
             _nearly_done(
                 site, result, by_segment(site, shortening(site, ground, present, largest)), middles[index]
             ),
-            np.maximum(middles[index], origin + (stage.end - middles[index])),
+            np.maximum(max(middles[index], site.hold_level_until or 0.0), origin + (stage.end - middles[index])),
         )
         spells.append(
             CreepSpell(
@@ -210,6 +211,13 @@ def creep_spells(
         )
         known = largest
     return spells
+
+
+def _load_settles(site: SiteModel, index: int) -> float:
+    """Return when the load of a spell is what it stays: also no more fill is added to hold its level."""
+    following = site.stages[index + 1].start if index + 1 < len(site.stages) else site.horizon
+    end = site.stages[index].end
+    return max(end, min(site.hold_level_until or 0.0, following))
 
 
 def _creep_ratios(site: SiteModel, values: Values, ground: LoadedGround) -> tuple[FloatArray, FloatArray]:
@@ -269,7 +277,7 @@ def end_of_primary(site: SiteModel, ground: LoadedGround, result: ConsolidationR
         Infinite where it is not reached by the horizon.
     """
     done = segment_settlement_when_done(site, ground, result)
-    return _nearly_done(site, result, done, site.last_change)
+    return _nearly_done(site, result, done, site.last_load_change)
 
 
 def _nearly_done(site: SiteModel, result: ConsolidationResult, done: FloatArray, since: float) -> FloatArray:

@@ -117,7 +117,9 @@ def recorded_times(
     slip = _times_of(scenario, "slip_safety")
     if embankment is not None and np.isfinite(traffic := traffic_start(scenario.load, stages)):
         slip.add(traffic)
+    hold = getattr(scenario.load, "hold_level_until", None)
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
+    kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
     if embankment is None:
         return record, np.zeros(0)

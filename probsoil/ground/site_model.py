@@ -74,6 +74,8 @@ class SiteModel:
         Times among `record` at which bearing is looked at (load on a foundation).
     traffic_from : float, [years]
         Time from which traffic drives a slip; infinite without traffic.
+    hold_level_until : float or None, [years]
+        Time until which fill is added so that its level stays; None where none is.
     """
 
     layers: tuple[LayerForm, ...]
@@ -92,6 +94,7 @@ class SiteModel:
     foundation: Foundation | None = None
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
+    hold_level_until: float | None = None
 
     @property
     def knots(self) -> FloatArray:
@@ -139,6 +142,11 @@ class SiteModel:
         """End of the last stage, [years]."""
         return self.stages[-1].end
 
+    @property
+    def last_load_change(self) -> float:
+        """Time after which the works add or remove nothing, [years]."""
+        return max(self.last_change, self.hold_level_until or 0.0)
+
 
 def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     """Return the part of a scenario that no realisation changes, with its cells, times and circles.
@@ -174,6 +182,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     restart = [] if drains is None else [drains.installed]
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *limit_times(scenario), *report]
+    hold = getattr(scenario.load, "hold_level_until", None)
     layouts = circle_layouts(
         embankment,
         layers,
@@ -198,6 +207,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         foundation=foundation,
         bearing_times=np.zeros(0) if foundation is None else bearing_check_times(scenario, stages),
         traffic_from=traffic_start(scenario.load, stages),
+        hold_level_until=hold,
     )
 
 

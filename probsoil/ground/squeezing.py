@@ -64,7 +64,7 @@ def squeezing_at(
         thickness=thickness,
         height=height,
         side_slope=shape.side_slope,
-        unit_weight=fill_weight(values, mean.size),
+        unit_weight=fill_weight(values, mean.size) * (1.0 + ground.load.fill_added(time) / height),
     )
 
 

@@ -140,6 +140,7 @@ def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
         columns = [
             ("time [years]", "time", ".3f"),
             ("fill [m]", "fill_height", ".2f"),
+            *([("added [m]", "fill_added", ".3f")] if any(row.get("fill_added") for row in rows) else []),
             ("load [kPa]", "surface_pressure", ".1f"),
             ("clay [m]", "clay", ".4f"),
             ("granular [m]", "granular", ".4f"),

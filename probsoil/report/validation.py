@@ -141,6 +141,14 @@ _GROUND = {
         "final_stress": ["number"],
     },
 }
+_MEAN_AND_QUANTILES = {"mean": _NUMBER, "quantiles": _QUANTILES}
+_ADDED_FILL = {
+    "until": "number",
+    "unit": "text",
+    "mean_width": _NUMBER,
+    "thickness": _MEAN_AND_QUANTILES,
+    "volume": _MEAN_AND_QUANTILES,
+}
 RESULTS: dict[str, Any] = {
     "title": "text",
     "seed": "count",
@@ -160,6 +168,7 @@ RESULTS: dict[str, Any] = {
     },
     "slip": [_FACTOR | {"circle?": _CIRCLE}],
     "bearing?": [_FACTOR | {"pressure": _NUMBER}],
+    "added_fill?": [_ADDED_FILL],
     "drivers": [_DRIVER],
     "driver_quality": [
         {

@@ -17,6 +17,19 @@ Submergence = Annotated[
     Field(description="whether ground and fill that sink below the water table lose the weight of water"),
 ]
 
+HoldLevel = Annotated[
+    float | None,
+    Number(
+        kind="time",
+        low=0.0,
+        high=1000.0,
+        open_low=True,
+        source="by definition",
+        meaning="time until which fill is added as the ground settles, so that its level stays as the stages "
+        "give it; if left out, none is added",
+    ),
+]
+
 
 class EmbankmentLoad(Table):
     """A long embankment, a trapezoid in section, symmetrical about its centre line, with or without berms.
@@ -43,6 +56,8 @@ class EmbankmentLoad(Table):
         Time from which it counts; None from the end of the stage that first reaches the greatest height.
     submergence : bool
         Whether what sinks below the water table loses the weight of water.
+    hold_level_until : float or None, [year]
+        Time until which fill is added so that its level stays as the ground settles.
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
@@ -127,6 +142,7 @@ class EmbankmentLoad(Table):
         ),
     ] = None
     submergence: Submergence = True
+    hold_level_until: HoldLevel = None
 
 
 class AreaLoad(Table):
@@ -140,11 +156,14 @@ class AreaLoad(Table):
         Bulk unit weight of the fill; needed when a stage gives a height.
     submergence : bool
         Whether what sinks below the water table loses the weight of water.
+    hold_level_until : float or None, [year]
+        Time until which fill is added so that its level stays as the ground settles.
     """
 
     shape: Literal["area"] = Field(description="kind of load")
     fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
     submergence: Submergence = True
+    hold_level_until: HoldLevel = None
 
 
 def _side(meaning: str) -> Number:

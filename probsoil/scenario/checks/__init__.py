@@ -12,6 +12,7 @@ from probsoil.scenario.checks.embankment import embankment_slips
 from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
+from probsoil.scenario.checks.top_up import top_up_slips
 from probsoil.scenario.slips import Slip
 
 __all__ = ["cross_checks"]
@@ -30,5 +31,13 @@ def cross_checks(scenario: Any) -> list[Slip]:
     slips : list of Slip
         Paths start at the top of the scenario.
     """
-    checks = (ground_slips, programme_slips, embankment_slips, drain_slips, limit_slips, dependence_slips)
+    checks = (
+        ground_slips,
+        programme_slips,
+        embankment_slips,
+        top_up_slips,
+        drain_slips,
+        limit_slips,
+        dependence_slips,
+    )
     return [slip for check in checks for slip in check(scenario)]

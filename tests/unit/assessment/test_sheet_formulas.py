@@ -81,6 +81,8 @@ def scenarios() -> dict[str, Scenario]:
         "ratios": VARIED.format(forms=RATIOS, slope=2),
         "indices, vertical sides": VARIED.format(forms=INDICES, slope=0),
     }
+    held = 'shape = "embankment"\nhold_level_until = 1.5'
+    texts["level held"] = VARIED.replace('shape = "embankment"', held).format(forms=RATIOS, slope=2)
     found = {name: parse_scenario(text) for name, text in texts.items()}
     files = sorted((ROOT / "scenarios").glob("*.toml"))
     return found | {path.stem: read_scenario(path) for path in files}
