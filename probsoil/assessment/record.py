@@ -300,7 +300,7 @@ def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
 def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factors: FloatArray) -> list[Row]:
     site = study.site
     replicate = sample.replicate if study.points.replicates > 1 else None
-    ends = {site.traffic_from: "traffic"} | {stage.end: stage.name for stage in site.stages}
+    ends = {site.traffic_from: "traffic"} | site.end_names
     rows: list[Row] = []
     for time, factor in zip(times.tolist(), factors.T, strict=True):
         below = exceedance(

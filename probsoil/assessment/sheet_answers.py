@@ -274,7 +274,7 @@ def slip_rows(run: SheetRun) -> list[dict[str, Any]]:
         and the factor of safety [-].
     """
     site, safety = run.site, run.state.response.slip[0]
-    ends = {stage.end: stage.name for stage in site.stages}
+    ends = site.end_names
     moments = critical_moments(site, run.values, run.state)
     return [
         {

@@ -163,9 +163,10 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
     fill: Symbol = (run.fill_weight, "unit weight of the fill", "kN/m3")
     height: Symbol = (run.site.fill_height(time), "height of fill", "m")
     increase: Symbol = (row["stress_increase"], "stress increase", "kPa")
-    spread = float(run.state.ground.load.spread[0, _point(run, row)])
+    load, point = run.state.ground.load, _point(run, row)
+    spread, spread_of_all = float(load.spread[0, point]), float(load.spread_of_all[0, point])
     clay = float(run.state.consolidation.settlement[0, -1])
-    lines = []
+    lines = _further(run, row, place)
     if row["influence"] is not None:
         symbols: dict[str, Symbol] = {
             "I": (row["influence"], "influence of the load", "-"),
@@ -177,6 +178,9 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         if run.site.hold_level_until is not None:
             symbols |= {"I0": (spread, FULL, "-"), "ha": (run.fill_added(time), ADDED, "m")}
             formula += " + I0 · γf · ha"
+        if lines:
+            symbols["Δσn"] = (row["further_stress"], "stress of the further loads", "kPa")
+            formula += " + Δσn"
         result = (row["stress_increase"], "kPa")
         lines.append(worked(LOAD, "stress increase", formula, result, symbols, row=place))
     if run.site.submergence:
@@ -184,8 +188,8 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
             "γw": _GAMMA_W,
             "sc": (max(clay, 0.0), "settlement of the clay", "m"),
             "zw": (run.at["site.water_table"], "depth of the water table", "m"),
-            "h": height,
-            "I0": (spread, FULL, "-"),
+            "h": (run.site.greatest_fill_height(time), "height of fill", "m"),
+            "I0": (spread_of_all, FULL, "-"),
             "Δσ": increase,
         }
         formula = "δ = min(γw · min(sc, zw + h) · I0, Δσ)"
@@ -206,6 +210,31 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         *lines,
         worked(LOAD, "effective stress", "σ' = σ'0 + Δσ − δ − u", final, symbols, row=place),
     ]
+
+
+def _further(run: SheetRun, row: Record, place: str) -> list[Worked]:
+    """Return the stress of each further load, and their sum."""
+    time, point = run.site.horizon, _point(run, row)
+    stresses = run.further(time)[:, point].tolist()
+    lines, parts = [], {}
+    for number, (one, stress) in enumerate(zip(run.site.further_loads, stresses, strict=True), start=1):
+        weight = float(run.at.get(f"{one.address}.fill_unit_weight", 0.0))
+        height, pressure = run.site.fill_height(time, one.name), run.site.pressure(time, one.name)
+        surface = weight * height + pressure
+        parts[f"Δσ{number}"] = (stress, f"stress of {one.name}", "kPa")
+        symbols: dict[str, Symbol] = {
+            "I": (stress / surface if surface else 0.0, f"influence of {one.name}", "-"),
+            "γf": (weight, "unit weight of its fill", "kN/m3"),
+            "h": (height, "height of its fill", "m"),
+            "p": (pressure, "its pressure besides", "kPa"),
+        }
+        formula = f"Δσ{number} = I · (γf · h + p)"
+        lines.append(worked(LOAD, f"stress of {one.name}", formula, (stress, "kPa"), symbols, row=place))
+    if parts:
+        total = (sum(stresses), "kPa")
+        formula = f"Δσn = {' + '.join(parts)}"
+        lines.append(worked(LOAD, "stress of the further loads", formula, total, parts, row=place))
+    return lines
 
 
 def _point(run: SheetRun, row: Record) -> int:

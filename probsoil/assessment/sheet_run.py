@@ -9,7 +9,7 @@ from probsoil._typing import FloatArray
 from probsoil.assessment.description import fixed_values
 from probsoil.assessment.evaluation import space_of
 from probsoil.errors import ConvergenceError
-from probsoil.ground.applied_load import relief_by_water, stress_at
+from probsoil.ground.applied_load import between_knots, relief_by_water, stress_at
 from probsoil.ground.response import GroundState, ground_state, screened
 from probsoil.ground.site_model import SiteModel, site_model
 from probsoil.scenario import Scenario
@@ -93,6 +93,24 @@ class SheetRun:
     def fill_weight(self) -> float:
         """Unit weight of the fill, zero where there is none, [kN/m3]."""
         return float(self.at.get("load.fill_unit_weight", 0.0))
+
+    def further(self, time: float) -> FloatArray:
+        """Return the stress that further loads add at a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        stress : ndarray, shape (n_load, n_point), [kPa]
+            Of each further load at every point of the profile.
+        """
+        found = self.state.ground.load.further
+        if found is None:
+            return np.zeros((0, self.state.ground.clay.size))
+        return np.stack([between_knots(self.site, one, time)[0] for one in found])
 
     def fill_added(self, time: float) -> float:
         """Return the fill added to hold its level.

@@ -93,6 +93,16 @@ _LEVEL_HELD = (
     "creep.",
 )
 
+_FURTHER = (
+    "Further loads add their stress at the reported point (Boussinesq, superposed) and are not assessed "
+    "themselves. The strength that the clay gains from them there counts in slip and bearing of the load; "
+    "under its slope or edge it is reduced as that from the load itself. No failure runs through two loads, "
+    "and a further load neither drives a slip nor holds one back.",
+)
+_FURTHER_SUNK = (
+    "Below further loads the ground is taken to have sunk below the water table as at the reported point.",
+)
+
 
 def assumptions(site: SiteModel) -> tuple[str, ...]:
     """Return the assumptions behind a result, in words.
@@ -123,4 +133,11 @@ def assumptions(site: SiteModel) -> tuple[str, ...]:
     flow = _VERTICAL if site.drains is None else _DRAINS
     submergence = _SUBMERGENCE if site.submergence else ()
     held = () if site.hold_level_until is None else _LEVEL_HELD
+    load = (*load, *_further(site))
     return (*_GROUND, *creep, *flow, *load, *held, *submergence, *base)
+
+
+def _further(site: SiteModel) -> tuple[str, ...]:
+    if not site.further_loads:
+        return ()
+    return (*_FURTHER, *_FURTHER_SUNK) if site.submergence else _FURTHER

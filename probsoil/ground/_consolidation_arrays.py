@@ -40,7 +40,8 @@ class Loading(NamedTuple):
     """Added stress (block, knot, cell, lane), and what submergence takes off again."""
 
     stress: FloatArray
-    spread: FloatArray  # (block, cell, lane)
+    spread: FloatArray  # (block, cell, lane), of what submergence takes off
+    fill_spread: FloatArray  # the same, of fill that holds the level
     height: FloatArray  # (knot,), of fill
     water_depth: FloatArray  # (block, lane)
     water_weight: float  # zero where submergence does not count

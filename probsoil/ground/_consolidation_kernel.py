@@ -110,7 +110,7 @@ def _add_load(b: int, j: int, share: float, soil: Soil, loading: Loading, trial:
     for i in range(n_cell):
         for lane in range(n_lane):
             added = (1.0 - share) * loading.stress[b, j, i, lane] + share * loading.stress[b, j + 1, i, lane]
-            added += work.fill[lane] * loading.spread[b, i, lane]
+            added += work.fill[lane] * loading.fill_spread[b, i, lane]
             relief = min(work.sunk[lane] * loading.spread[b, i, lane], max(added, 0.0))
             trial.total[i, lane] = soil.stress[b, i, lane] + added - relief
 

@@ -57,7 +57,7 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     """
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
-    spread = chosen(load.spread, clay)
+    spread = chosen(load.spread_of_all, clay)
     submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
@@ -99,7 +99,7 @@ def level_held(site: SiteModel, values: Values, ground: LoadedGround) -> LevelHe
     return LevelHeld(
         until=site.hold_level_until,
         unit_weight=weight,
-        spread=load.spread[:, ground.clay],
+        spread=chosen(load.spread, ground.clay),
         granular=granular_at_knots(site, values, ground, load.stress),
         granular_share=granular_at_knots(site, values, ground, one_metre[None])[0],
     )

@@ -238,16 +238,16 @@ def _holding(times: FloatArray, held: LevelHeld | None) -> BoolArray:
 
 def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
     wet, held = load.submergence, load.level_held
-    either = wet if wet is not None else held
     nothing = np.zeros((lanes.n_block, LANES))
 
     def per_lane(value: FloatArray) -> FloatArray:
         return lanes.pack(value[:, None])[:, 0, :]
 
-    n_cell = load.stress.shape[2]
+    dry = np.zeros((lanes.n_block, load.stress.shape[2], LANES))
     return Loading(
         stress=np.stack([lanes.pack(one) for one in load.stress], axis=1),
-        spread=np.zeros((lanes.n_block, n_cell, LANES)) if either is None else lanes.pack(either.spread),
+        spread=dry if wet is None else lanes.pack(wet.spread),
+        fill_spread=dry if held is None else lanes.pack(held.spread),
         height=np.zeros(load.time.size) if wet is None else wet.height,
         water_depth=nothing if wet is None else per_lane(wet.water_depth),
         water_weight=0.0 if wet is None else WATER_UNIT_WEIGHT,

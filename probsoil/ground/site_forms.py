@@ -65,6 +65,8 @@ class StageForm:
         Fill laid (negative: taken away).
     pressure : float, [kPa]
         Pressure added besides the fill.
+    load : str or None
+        Further load that it belongs to; None for the load that is assessed.
     """
 
     name: str
@@ -72,6 +74,7 @@ class StageForm:
     end: float
     height: float = 0.0
     pressure: float = 0.0
+    load: str | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -122,6 +125,7 @@ def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
             end=stage.end,
             height=stage.height or 0.0,
             pressure=stage.pressure or 0.0,
+            load=stage.load,
         )
         for stage in scenario.stages
     )
@@ -145,7 +149,7 @@ def laid_share(stage: StageForm, time: float) -> float:
     return min(max((time - stage.start) / (stage.end - stage.start), 0.0), 1.0)
 
 
-def height_at(stages: Sequence[StageForm], time: float) -> float:
+def height_at(stages: Sequence[StageForm], time: float, load: str | None = None) -> float:
     """Return the height of fill that stages have laid by a time.
 
     Parameters
@@ -154,13 +158,15 @@ def height_at(stages: Sequence[StageForm], time: float) -> float:
         In order of time.
     time : float, [years]
         Time.
+    load : str or None
+        On which further load; None for the load that is assessed.
 
     Returns
     -------
     height : float, [m]
         Exactly zero where all of it has been taken away.
     """
-    height = sum(stage.height * laid_share(stage, time) for stage in stages)
+    height = sum(stage.height * laid_share(stage, time) for stage in stages if stage.load == load)
     return height if height > _ROUNDING else 0.0  # a removal may leave a rounding error behind
 
 

@@ -164,7 +164,12 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
         "water_table": text.described_text(data.get("water_table", text.MISSING)),
         "base": data.get("base", text.MISSING),
         "drains": data.get("drains"),
-        "load": load.get("text") or load.get("shape") or "",
+        "load": "; ".join(
+            [
+                load.get("text") or load.get("shape") or "",
+                *(f"further load {one['name']}: {one['text']}" for one in data.get("further_loads") or []),
+            ]
+        ),
         "layers": [
             {
                 "number": number,

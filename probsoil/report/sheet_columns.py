@@ -56,6 +56,8 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
     clay = [row for row in rows if row["soil"] == "clay"]
     granular = [row for row in rows if row["soil"] == "granular"]
     place = (("no.", "number"), ("layer", "layer"))
+    beside = any(row.get("further_stress") for row in rows)
+    further = [("of further loads Δσn [kPa]", "further_stress", ".2f")] if beside else []
     return [
         sheet_table(
             "stress in situ",
@@ -80,6 +82,7 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
                 *place,
                 ("point [m]", "depth", ".3f"),
                 ("influence I [-]", "influence", ".4f"),
+                *further,
                 ("increase Δσ [kPa]", "stress_increase", ".2f"),
                 ("submergence δ [kPa]", "relief", ".2f"),
                 ("excess u [kPa]", "excess_pore_pressure", ".2f"),

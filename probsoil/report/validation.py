@@ -133,6 +133,7 @@ _GROUND = {
         }
     ],
     "load": {"shape": "text", "text": "text"},
+    "further_loads?": [{"name": "text", "text": "text"}],
     "stages": [_STAGE | {"change_text": "text", "height_after": _NUMBER, "pressure_after": _NUMBER}],
     "profile": {
         "depth": ["number"],

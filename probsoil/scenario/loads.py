@@ -9,9 +9,10 @@ from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number, Uncertain
 from probsoil.scenario.slips import Slip, refuse
 
-_FILL_WEIGHT = Uncertain(
+FILL_WEIGHT = Uncertain(
     kind="unit weight", low=0.2, high=30.0, source="common practice", meaning="bulk unit weight of the fill"
 )
+"""Field of the unit weight of fill."""
 Submergence = Annotated[
     bool,
     Field(description="whether ground and fill that sink below the water table lose the weight of water"),
@@ -29,6 +30,57 @@ HoldLevel = Annotated[
         "give it; if left out, none is added",
     ),
 ]
+
+
+def width_of_top() -> Number:
+    """Return the field of the width of an embankment's top.
+
+    Returns
+    -------
+    field : Number
+        Above 0.
+    """
+    return Number(
+        kind="length",
+        low=0.0,
+        high=1000.0,
+        open_low=True,
+        source="by definition",
+        meaning="width of the top of the embankment at its greatest height",
+    )
+
+
+def slope_run() -> Number:
+    """Return the field of the run of a side slope.
+
+    Returns
+    -------
+    field : Number
+        0 for a vertical side.
+    """
+    return Number(
+        kind="number",
+        low=0.0,
+        high=20.0,
+        source="common practice",
+        meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
+    )
+
+
+def side(meaning: str) -> Number:
+    """Return the field of a side or diameter.
+
+    Parameters
+    ----------
+    meaning : str
+        What it is.
+
+    Returns
+    -------
+    field : Number
+        From 0.1 m.
+    """
+    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
 
 
 class EmbankmentLoad(Table):
@@ -61,28 +113,9 @@ class EmbankmentLoad(Table):
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[
-        float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=1000.0,
-            open_low=True,
-            source="by definition",
-            meaning="width of the top of the embankment at its greatest height",
-        ),
-    ]
-    side_slope: Annotated[
-        float,
-        Number(
-            kind="number",
-            low=0.0,
-            high=20.0,
-            source="common practice",
-            meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
-        ),
-    ]
-    fill_unit_weight: Annotated[Distribution, _FILL_WEIGHT]
+    crest_width: Annotated[float, width_of_top()]
+    side_slope: Annotated[float, slope_run()]
+    fill_unit_weight: Annotated[Distribution, FILL_WEIGHT]
     fill_phi: Annotated[
         Distribution,
         Uncertain(
@@ -161,13 +194,9 @@ class AreaLoad(Table):
     """
 
     shape: Literal["area"] = Field(description="kind of load")
-    fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
+    fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
     hold_level_until: HoldLevel = None
-
-
-def _side(meaning: str) -> Number:
-    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
 
 
 def _distance(meaning: str, low: float = 0.0) -> Number:
@@ -214,7 +243,7 @@ class _Foundation(Table):
         description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
         "flexible tank floor); for bearing",
     )
-    fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
+    fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
 
 
@@ -232,7 +261,7 @@ class StripLoad(_Foundation):
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, _side("width of the strip")]
+    width: Annotated[float, side("width of the strip")]
     at: Annotated[float, _distance("distance from the centreline at which settlement is reported")] = 0.0
 
 
@@ -250,8 +279,8 @@ class RectangleLoad(_Foundation):
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, _side("width of the rectangle")]
-    length: Annotated[float, _side("length of the rectangle")]
+    width: Annotated[float, side("width of the rectangle")]
+    length: Annotated[float, side("length of the rectangle")]
     at: Annotated[
         tuple[Annotated[float, _PLAN_DISTANCE], Annotated[float, _PLAN_DISTANCE]], BeforeValidator(_point)
     ] = Field(
@@ -275,7 +304,7 @@ class CircleLoad(_Foundation):
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, _side("diameter of the circle")]
+    diameter: Annotated[float, side("diameter of the circle")]
     at: Annotated[float, _distance("distance from the centre at which settlement is reported")] = 0.0
 
 
@@ -300,6 +329,8 @@ class Stage(Table):
         Pressure; not with the load shape ``embankment``.
     start, end : float, [year]
         Times.
+    load : str or None
+        Which of the further loads; None for the load that is assessed.
     """
 
     model_config = ConfigDict(
@@ -307,6 +338,9 @@ class Stage(Table):
     )
 
     name: Name = Field(description="name of the stage, unique")
+    load: Name | None = Field(
+        default=None, description="which of the further loads the stage belongs to; if left out, [load]"
+    )
     height: Annotated[
         float | None,
         Number(

@@ -9,6 +9,7 @@ from typing import Any
 from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
+from probsoil.scenario.checks.further_loads import further_load_slips
 from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
@@ -34,6 +35,7 @@ def cross_checks(scenario: Any) -> list[Slip]:
     checks = (
         ground_slips,
         programme_slips,
+        further_load_slips,
         embankment_slips,
         top_up_slips,
         drain_slips,

@@ -24,11 +24,12 @@ def top_up_slips(scenario: Any) -> list[Slip]:
     if not isinstance(until, float):
         return []
     path = ("load", "hold_level_until")
-    raised = [getattr(stage, "height", UNREAD) for stage in scenario.stages]
+    own = [stage for stage in scenario.stages if getattr(stage, "load", None) is None]
+    raised = [getattr(stage, "height", UNREAD) for stage in own]
     if all(height is None for height in raised):
         message = "no stage lays fill whose level could be held"
         return [Slip(path=path, message=message, allowed="stages with height, or leave it out")]
-    start = getattr(scenario.stages[0], "start", UNREAD) if scenario.stages else UNREAD
+    start = getattr(own[0], "start", UNREAD) if own else UNREAD
     if isinstance(start, float) and until <= start:
         message = f"nothing is laid before {years_text(start)}, so there is no level to hold"
         return [Slip(path=path, message=message, allowed="later than the start of the first stage")]
