@@ -149,6 +149,8 @@ def stage_rows(site: SiteModel) -> list[Row]:
             change.append(f"{abs(stage.height):g} m of fill {'laid' if stage.height > 0.0 else 'taken away'}")
         if stage.pressure != 0.0:
             change.append(f"{abs(stage.pressure):g} kPa {'added' if stage.pressure > 0.0 else 'removed'}")
+        if stage.excavate != 0.0:
+            change.append(f"{stage.excavate:g} m of soil dug out")
         on = "" if stage.load is None else f" on {stage.load}"
         pressure = site.pressure(stage.end)
         rows.append(

@@ -8,6 +8,7 @@ from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import Sublayer, overburden
 from probsoil.assessment.worked import Symbol, Worked, worked
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
+from probsoil.ground.excavation import stress_dug_out
 from probsoil.ground.profile import LEAST_STRESS
 
 Record = dict[str, Any]
@@ -159,49 +160,15 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
     lines : list of Worked
         Stress increase, what submergence takes off, and the effective stress at the horizon.
     """
-    time, place = run.site.horizon, f"{place_of(row)}, at {row['depth']:.3f} m and {run.site.horizon:g} years"
-    fill: Symbol = (run.fill_weight, "unit weight of the fill", "kN/m3")
-    height: Symbol = (run.site.fill_height(time), "height of fill", "m")
-    increase: Symbol = (row["stress_increase"], "stress increase", "kPa")
-    load, point = run.state.ground.load, _point(run, row)
-    spread, spread_of_all = float(load.spread[0, point]), float(load.spread_of_all[0, point])
-    clay = float(run.state.consolidation.settlement[0, -1])
+    place = f"{place_of(row)}, at {row['depth']:.3f} m and {run.site.horizon:g} years"
     lines = _further(run, row, place)
     if row["influence"] is not None:
-        symbols: dict[str, Symbol] = {
-            "I": (row["influence"], "influence of the load", "-"),
-            "γf": fill,
-            "h": height,
-            "p": (run.site.pressure(time), "pressure besides the fill", "kPa"),
-        }
-        formula = "Δσ = I · (γf · h + p)"
-        if run.site.hold_level_until is not None:
-            symbols |= {"I0": (spread, FULL, "-"), "ha": (run.fill_added(time), ADDED, "m")}
-            formula += " + I0 · γf · ha"
-        if lines:
-            symbols["Δσn"] = (row["further_stress"], "stress of the further loads", "kPa")
-            formula += " + Δσn"
-        result = (row["stress_increase"], "kPa")
-        lines.append(worked(LOAD, "stress increase", formula, result, symbols, row=place))
+        lines.append(_increase(run, row, place))
     if run.site.submergence:
-        symbols = {
-            "γw": _GAMMA_W,
-            "sc": (max(clay, 0.0), "settlement of the clay", "m"),
-            "zw": (run.at["site.water_table"], "depth of the water table", "m"),
-            "h": (run.site.greatest_fill_height(time), "height of fill", "m"),
-            "I0": (spread_of_all, FULL, "-"),
-            "Δσ": increase,
-        }
-        formula = "δ = min(γw · min(sc, zw + h) · I0, Δσ)"
-        if run.site.hold_level_until is not None:
-            symbols["ha"] = (run.fill_added(time), ADDED, "m")
-            formula = "δ = min(γw · min(sc, zw + h + ha) · I0, Δσ)"
-        lines.append(
-            worked(LOAD, "taken off by submergence", formula, (row["relief"], "kPa"), symbols, row=place)
-        )
-    symbols = {
+        lines.append(_submerged(run, row, place))
+    symbols: dict[str, Symbol] = {
         "σ'0": (row["initial_stress"], "effective stress in situ", "kPa"),
-        "Δσ": increase,
+        "Δσ": (row["stress_increase"], "stress increase", "kPa"),
         "δ": (row["relief"], "taken off by submergence", "kPa"),
         "u": (row["excess_pore_pressure"], "excess pore pressure left, from the consolidation", "kPa"),
     }
@@ -210,6 +177,53 @@ def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
         *lines,
         worked(LOAD, "effective stress", "σ' = σ'0 + Δσ − δ − u", final, symbols, row=place),
     ]
+
+
+def _increase(run: SheetRun, row: Record, place: str) -> Worked:
+    time, formula = run.site.horizon, "Δσ = I · (γf · h + p)"
+    symbols: dict[str, Symbol] = {
+        "I": (row["influence"], "influence of the load", "-"),
+        "γf": (run.fill_weight, "unit weight of the fill", "kN/m3"),
+        "h": (run.site.fill_height(time), "height of fill", "m"),
+        "p": (run.site.pressure(time), "pressure besides the fill", "kPa"),
+    }
+    if run.site.excavates:
+        formula, symbols = "Δσ = I · (γf · h + p − w − r)", symbols | _dug_out(run, time)
+    if run.site.hold_level_until is not None:
+        spread = float(run.state.ground.load.spread[0, _point(run, row)])
+        symbols |= {"I0": (spread, FULL, "-"), "ha": (run.fill_added(time), ADDED, "m")}
+        formula += " + I0 · γf · ha"
+    if run.site.further_loads:
+        symbols["Δσn"] = (row["further_stress"], "stress of the further loads", "kPa")
+        formula += " + Δσn"
+    return worked(LOAD, "stress increase", formula, (row["stress_increase"], "kPa"), symbols, row=place)
+
+
+def _submerged(run: SheetRun, row: Record, place: str) -> Worked:
+    time, clay = run.site.horizon, float(run.state.consolidation.settlement[0, -1])
+    symbols: dict[str, Symbol] = {
+        "γw": _GAMMA_W,
+        "sc": (max(clay, 0.0), "settlement of the clay", "m"),
+        "zw": (run.at["site.water_table"], "depth of the water table", "m"),
+        "h": (run.site.greatest_fill_height(time), "height of fill", "m"),
+        "I0": (float(run.state.ground.load.spread_of_all[0, _point(run, row)]), FULL, "-"),
+        "Δσ": (row["stress_increase"], "stress increase", "kPa"),
+    }
+    sunk, most = "zw + h", "max(Δσ, 0)" if run.site.excavates else "Δσ"
+    if run.site.hold_level_until is not None:
+        symbols["ha"], sunk = (run.fill_added(time), ADDED, "m"), "zw + h + ha"
+    formula = f"δ = min(γw · min(sc, {sunk}) · I0, {most})"
+    return worked(LOAD, "taken off by submergence", formula, (row["relief"], "kPa"), symbols, row=place)
+
+
+def _dug_out(run: SheetRun, time: float) -> dict[str, Symbol]:
+    """Return the water under the base, as far as it carries, and the effective weight of the soil dug out."""
+    total, pore = stress_dug_out(run.site, run.values, 1, run.site.dug(time))
+    placed = run.fill_weight * run.site.fill_height(time) + run.site.pressure(time)
+    return {
+        "w": (min(placed, float(pore[0])), "water under the base", "kPa"),
+        "r": (float(total[0] - pore[0]), "effective weight of the soil dug out", "kPa"),
+    }
 
 
 def _further(run: SheetRun, row: Record, place: str) -> list[Worked]:

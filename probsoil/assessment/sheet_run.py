@@ -10,6 +10,7 @@ from probsoil.assessment.description import fixed_values
 from probsoil.assessment.evaluation import space_of
 from probsoil.errors import ConvergenceError
 from probsoil.ground.applied_load import between_knots, relief_by_water, stress_at
+from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.response import GroundState, ground_state, screened
 from probsoil.ground.site_model import SiteModel, site_model
 from probsoil.scenario import Scenario
@@ -74,7 +75,7 @@ class SheetRun:
         return int(np.searchsorted(self.site.record, time))
 
     def surface_pressure(self, time: float) -> float:
-        """Return what fill and pressure weigh on the ground at a time.
+        """Return what fill and pressure weigh on the ground at a time, less soil dug out for them.
 
         Parameters
         ----------
@@ -84,10 +85,12 @@ class SheetRun:
         Returns
         -------
         pressure : float, [kPa]
-            Unit weight times height of fill, and pressure besides.
+            Unit weight times height of fill, and pressure besides; where soil is dug out, less its effective
+            weight and the water under the base.
         """
         height = self.site.fill_height(time) + self.fill_added(time)
-        return self.fill_weight * height + self.site.pressure(time)
+        placed = np.array([self.fill_weight * height + self.site.pressure(time)])
+        return float(pressure_on_base(self.site, self.values, placed, time)[0])
 
     @property
     def fill_weight(self) -> float:

@@ -63,10 +63,21 @@ _TRAFFIC = (
     "in the fill below it, not in the ground, and causes no consolidation.",
 )
 _AREA = ("The load is taken as wide compared with the depth of the clay: every depth feels it in full.",)
+_NET = (
+    "The pressure on the foundation is net: in excess of the weight of soil dug out, whose removal is not "
+    "computed by itself.",
+)
+_EXCAVATED = (
+    "Soil is dug out over the plan of the foundation in the stages that say so; below its base the effective "
+    "stress falls by what that soil weighs, less the water in it, spread like the load, and the clay swells. "
+    "Water stands in the excavation and presses under the base as high as the water table. What is placed "
+    "first takes the place of that water, then reloads the clay. Heave is settlement below zero.",
+    "Bearing is looked at with the pressure beyond the soil dug out and the water; failure of the bottom or "
+    "the sides of the excavation is not looked at.",
+)
 _FOUNDATION = (
     "Stress from the foundation is that of a uniform pressure on a homogeneous elastic half-space "
-    "(Boussinesq), from its base down; the clay above the base gets none. The pressure is net: in excess of "
-    "the weight of soil dug out, whose removal is not computed by itself. The foundation is flexible; "
+    "(Boussinesq), from its base down; the clay above the base gets none. The foundation is flexible; "
     "settlement is that of the reported point.",
     "Water leaves at the base of the foundation as at ground level, and flows vertically below it: "
     "sideways drainage, which hastens settlement under a small foundation, is left out.",
@@ -123,7 +134,7 @@ def assumptions(site: SiteModel) -> tuple[str, ...]:
     if np.isfinite(site.traffic_from):
         load += (*_TRAFFIC, f"It counts from {site.traffic_from:.3g} years on.")
     if site.foundation is not None:
-        load = _FOUNDATION
+        load = (*_FOUNDATION, *(_EXCAVATED if site.excavates else _NET))
     base = (
         "What lies below the last layer "
         + ("drains freely." if site.base_drained else "lets no water through.")

@@ -87,6 +87,8 @@ def _print_further_loads(console: "Console", scenario: "Scenario") -> None:
 
 def _change(stage: "Stage") -> str:
     on = "" if stage.load is None else f" on {stage.load}"
+    if stage.excavate is not None:
+        return f"{stage.excavate:g} m of soil dug out"
     if stage.height is not None:
         return f"{stage.height:+g} m of fill{on}"
     return f"{stage.pressure:+g} kPa{on}"

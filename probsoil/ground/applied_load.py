@@ -7,6 +7,7 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
+from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
 from probsoil.ground.further_load import foundation_influence, share_above
 from probsoil.ground.load_stress import trapezia_influence
@@ -187,8 +188,8 @@ def applied_load(
         if site.foundation is not None:
             spread, share = _foundation_spread(site.foundation, depth, thickness)
         stress = [
-            (weight * height + pressure)[:, None] * spread
-            for height, pressure in zip(heights, pressures, strict=True)
+            pressure_on_base(site, values, weight * height + pressure, float(time))[:, None] * spread
+            for height, pressure, time in zip(heights, pressures, site.knots, strict=True)
         ]
     alone = AppliedLoad(
         stress=np.stack(stress),
@@ -311,9 +312,8 @@ def relief_by_water(site: SiteModel, load: AppliedLoad, time: float, settled: Fl
         return np.zeros_like(load.spread)
     sunk = np.where(settled > 0.0, settled, 0.0)  # also where there is no number for want of convergence
     submerged = np.minimum(sunk, load.water_depth + site.greatest_fill_height(time) + load.fill_added(time))
-    return np.minimum(
-        WATER_UNIT_WEIGHT * submerged[:, None] * load.spread_of_all, stress_at(site, load, time)
-    )
+    there = np.maximum(stress_at(site, load, time), 0.0)
+    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread_of_all, there)
 
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:

@@ -9,6 +9,7 @@ from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation, level_held
 from probsoil.ground.consolidation import ConsolidationResult
+from probsoil.ground.excavation import kept_above_least
 from probsoil.ground.granular_settlement import granular_settlement
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
@@ -151,6 +152,8 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     columns = clay_columns(site, values, n_sample)
     yield_stress, floored = yield_stresses(site, values, points)
     load = applied_load(site, values, points.depth, points.thickness)
+    if site.excavates:
+        load = replace(load, stress=kept_above_least(load.stress, points.stress))
     clay = np.array([site.layers[index].is_clay for index in points.layer])
     ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
     result = consolidate_clay(site, values, ground)

@@ -67,6 +67,8 @@ class StageForm:
         Pressure added besides the fill.
     load : str or None
         Further load that it belongs to; None for the load that is assessed.
+    excavate : float, [m]
+        Depth of soil dug out.
     """
 
     name: str
@@ -75,6 +77,7 @@ class StageForm:
     height: float = 0.0
     pressure: float = 0.0
     load: str | None = None
+    excavate: float = 0.0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -126,6 +129,7 @@ def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
             height=stage.height or 0.0,
             pressure=stage.pressure or 0.0,
             load=stage.load,
+            excavate=stage.excavate or 0.0,
         )
         for stage in scenario.stages
     )

@@ -317,7 +317,7 @@ Load = Annotated[
 
 
 class Stage(Table):
-    """Fill or pressure added (or, where negative, removed) evenly between two times.
+    """Fill or pressure added (or, where negative, removed), or soil dug out, evenly between two times.
 
     Attributes
     ----------
@@ -331,10 +331,14 @@ class Stage(Table):
         Times.
     load : str or None
         Which of the further loads; None for the load that is assessed.
+    excavate : float or None, [m]
+        Depth of soil dug out over the plan of a foundation.
     """
 
     model_config = ConfigDict(
-        json_schema_extra={"oneOf": [{"required": ["height"]}, {"required": ["pressure"]}]}
+        json_schema_extra={
+            "oneOf": [{"required": ["height"]}, {"required": ["pressure"]}, {"required": ["excavate"]}]
+        }
     )
 
     name: Name = Field(description="name of the stage, unique")
@@ -358,7 +362,20 @@ class Stage(Table):
             low=-5000.0,
             high=5000.0,
             source="common practice",
-            meaning='pressure added, net of soil dug out; not with shape = "embankment"; negative is removal',
+            meaning="pressure added, net of soil dug out unless a stage digs it out; not with "
+            'shape = "embankment"; negative is removal',
+        ),
+    ] = None
+    excavate: Annotated[
+        float | None,
+        Number(
+            kind="length",
+            low=0.0,
+            high=50.0,
+            open_low=True,
+            source="common practice",
+            meaning="depth of soil dug out over the plan of a foundation; with it, pressures and heights "
+            "are those of all that is placed on the base",
         ),
     ] = None
     start: Annotated[

@@ -9,6 +9,7 @@ from typing import Any
 from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
+from probsoil.scenario.checks.excavation import excavation_slips
 from probsoil.scenario.checks.further_loads import further_load_slips
 from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.limits import limit_slips
@@ -36,6 +37,7 @@ def cross_checks(scenario: Any) -> list[Slip]:
         ground_slips,
         programme_slips,
         further_load_slips,
+        excavation_slips,
         embankment_slips,
         top_up_slips,
         drain_slips,

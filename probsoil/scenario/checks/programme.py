@@ -76,6 +76,8 @@ def _named(loads: Sequence[Any]) -> list[tuple[str, Any]]:
 
 
 def _amount_slips(stage: Any, load: Any) -> list[Slip]:
+    if getattr(stage, "excavate", None) is not None and not isinstance(load, FOUNDATIONS):
+        return []  # refused where excavation is looked at
     slips = []
     if isinstance(load, _EMBANKMENTS) and stage.pressure is not None:
         message = "an embankment is raised by a height of fill, not by a pressure"
@@ -85,7 +87,9 @@ def _amount_slips(stage: Any, load: Any) -> list[Slip]:
             Slip(path=(), message="height is missing", allowed="height of fill", wanting=("height",))
         )
     else:
-        slips += exactly_one(stage, {"height": "height", "pressure": "pressure"}, "what the stage adds")
+        keys = {"height": "height", "pressure": "pressure"}
+        keys |= {"excavate": "excavate"} if isinstance(load, FOUNDATIONS) else {}
+        slips += exactly_one(stage, keys, "what the stage adds")
     needs = isinstance(load, (*PRESSED, FurtherEmbankment)) and load.fill_unit_weight is None
     if needs and stage.height is not None:
         where = "[load]" if stage.load is None else f'the load "{stage.load}"'

@@ -74,6 +74,7 @@ INDICES = (
     "Cc = 0.6\nCs = 0.08\npreconsolidation = { stress = 40 }\nM = 1.05\nstrength = { S = 0.24, m = 0.8 }"
 )
 
+DUG = '[[stages]]\nname = "dug out"\nexcavate = 1.2\nstart = 0\nend = "2 weeks"\n\n'
 FURTHER = """
 [[further_loads]]
 name = "bank"
@@ -119,6 +120,12 @@ def scenarios() -> dict[str, Scenario]:
     }
     held = 'shape = "embankment"\nhold_level_until = 1.5'
     texts["level held"] = VARIED.replace('shape = "embankment"', held).format(forms=RATIOS, slope=2)
+    texts["excavation"] = (
+        starter_text("footing")
+        .replace("\n[[stages]]", f"\n{DUG}[[stages]]", 1)
+        .replace("pressure = 33", "pressure = 55")
+        .replace("0 weeks", "3 weeks")
+    )
     texts["further loads"] = (
         texts["level held"]
         .replace("[drains]", FURTHER + "[drains]")
