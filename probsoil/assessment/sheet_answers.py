@@ -142,7 +142,7 @@ def _spell(run: SheetRun, spells: Sequence[CreepSpell], index: int, segment: int
     rate = float(by_segment(run.site, spell.per_cell)[0, segment])
     decades = float(spell.decades(np.array([horizon]), segment)[0, 0])
     return {
-        "after": run.site.stages[index].name,
+        "after": run.site.changes[index].name,
         "origin": float(spell.origin[0, segment]),
         "begin": float(spell.begin[0, segment]),
         "until": min(spell.end, horizon),

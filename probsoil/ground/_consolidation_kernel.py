@@ -74,9 +74,7 @@ def _guess(state: State, span: float, trial: Trial) -> None:
 
 
 @compiled
-def _fill_up(
-    b: int, j: int, share: float, loading: Loading, sunk: FloatArray, fill: FloatArray
-) -> None:
+def _fill_up(b: int, j: int, share: float, loading: Loading, sunk: FloatArray, fill: FloatArray) -> None:
     """Thickness of fill that keeps the level at a settlement of the clay, between load knots j and j + 1."""
     arrays_are_separate()
     for lane in range(fill.size):

@@ -7,7 +7,6 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.ground.applied_load import (
     LoadedGround,
-    fill_weight,
     relief_by_water,
     share_above_base,
     stress_at,
@@ -27,11 +26,10 @@ from probsoil.ground.consolidation import (
     consolidate,
 )
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
-from probsoil.ground.granular_settlement import granular_at_knots
+from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, column
 from probsoil.ground.rows import chosen, row_sum
 from probsoil.ground.site_model import DrainForm, SiteModel
-from probsoil.ground.top_up import LevelHeld
 from probsoil.ground.vertical_drains import drain_factor, well_resistance
 
 _OPEN_ABOVE_BASE = np.log(1e4)  # ln of how much more easily water passes above a foundation's base
@@ -72,37 +70,6 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     if site.drains is not None:
         flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
-
-
-def level_held(site: SiteModel, values: Values, ground: LoadedGround) -> LevelHeld | None:
-    """Return what the consolidation needs to know of fill that holds its level.
-
-    Parameters
-    ----------
-    site : SiteModel
-        Until when.
-    values : mapping of str to ndarray, shape (n_sample,), or float
-        Value of every quantity by its address.
-    ground : LoadedGround
-        The ground before loading and the added stress.
-
-    Returns
-    -------
-    held : LevelHeld or None
-        None where no level is held.
-    """
-    if site.hold_level_until is None:
-        return None
-    load = ground.load
-    weight = fill_weight(values, len(load.spread))
-    one_metre = weight[:, None] * load.spread
-    return LevelHeld(
-        until=site.hold_level_until,
-        unit_weight=weight,
-        spread=chosen(load.spread, ground.clay),
-        granular=granular_at_knots(site, values, ground, load.stress),
-        granular_share=granular_at_knots(site, values, ground, one_metre[None])[0],
-    )
 
 
 def _clay_state(site: SiteModel, ground: LoadedGround) -> ClayState:

@@ -7,10 +7,11 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
-from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation, level_held
+from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
 from probsoil.ground.consolidation import ConsolidationResult
 from probsoil.ground.excavation import kept_above_least
 from probsoil.ground.granular_settlement import granular_settlement
+from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel

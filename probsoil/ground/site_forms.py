@@ -81,6 +81,26 @@ class StageForm:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class LoadChange:
+    """A spell in which the load on the site changes: one stage, or several that overlap.
+
+    Attributes
+    ----------
+    name : str
+        Names of the stages.
+    start, end : float, [years]
+        When the first of them begins and the last ends.
+    digs : bool
+        Whether only soil is dug out.
+    """
+
+    name: str
+    start: float
+    end: float
+    digs: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class DrainForm:
     """Vertical drains, apart from how much they smear.
 
@@ -133,6 +153,31 @@ def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
         )
         for stage in scenario.stages
     )
+
+
+def load_changes(stages: Sequence[StageForm]) -> tuple[LoadChange, ...]:
+    """Return the spells in which the load changes, stages that overlap together.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In the order in which they start.
+
+    Returns
+    -------
+    changes : tuple of LoadChange
+        In order of time, none overlapping.
+    """
+    found: list[LoadChange] = []
+    for stage in stages:
+        digs = stage.excavate > 0.0
+        if found and stage.start < found[-1].end - _ROUNDING:
+            last = found.pop()
+            name, digs = f"{last.name} and {stage.name}", last.digs and digs
+            found.append(LoadChange(name=name, start=last.start, end=max(last.end, stage.end), digs=digs))
+        else:
+            found.append(LoadChange(name=stage.name, start=stage.start, end=stage.end, digs=digs))
+    return tuple(found)
 
 
 def laid_share(stage: StageForm, time: float) -> float:

@@ -13,10 +13,12 @@ from probsoil.ground.further_load import FurtherLoadForm
 from probsoil.ground.site_forms import (
     DrainForm,
     LayerForm,
+    LoadChange,
     StageForm,
     drain_form,
     laid_share,
     layer_form,
+    load_changes,
     stage_forms,
 )
 from probsoil.ground.site_layout import (
@@ -181,6 +183,11 @@ class SiteModel:
     def point(self) -> tuple[float, float]:
         """Plan position x, y at which settlement is reported, from the centre of the load, [m]."""
         return (0.0, 0.0) if self.foundation is None else self.foundation.plan_point
+
+    @property
+    def changes(self) -> tuple[LoadChange, ...]:
+        """Spells in which the load changes, in order of time."""
+        return load_changes(self.stages)
 
     @property
     def end_names(self) -> dict[float, str]:

@@ -172,3 +172,11 @@ def test_a_realisation_alone_is_the_same_as_in_company():
     alone = ground_state(site, {key: value[7:8] for key, value in values.items()}).response
     np.testing.assert_array_equal(alone.settlement[0], together.settlement[7])
     np.testing.assert_array_equal(alone.bearing[0], together.bearing[7])
+
+
+def test_clay_does_not_creep_while_the_pit_stands_open():
+    layers = [clay("clay", 8.0, permeability=FAST, C_alpha_ratio=0.05)]
+    site, state = solved(built(60.0, layers=layers))
+    secondary = state.response.secondary[0]
+    assert (secondary[site.times <= 5.0] == 0.0).all()
+    assert secondary[-1] > 0.0

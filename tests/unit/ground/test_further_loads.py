@@ -112,7 +112,12 @@ def test_each_shape_adds_its_stress_from_its_own_place(height):
     assert found[1] == pytest.approx(expected, rel=1e-12)
     assert found[2] == pytest.approx(90.0 * strip_influence(DEPTHS, -5.0, width=2.0), rel=1e-12)
     assert site.knots.tolist() == [0.0, 0.5, 1.0, 1.5, 2.0, 2.5, 3.0, 3.5, 30.0]
-    assert (site.last_change, site.last_increase) == (3.5, 3.25)
+    assert site.last_change == 3.5
+    assert [(one.name, one.start, one.end) for one in site.changes] == [
+        ("built", 0.0, 0.5),
+        ("bank and tank", 1.0, 2.5),
+        ("wall", 3.0, 3.5),
+    ]
 
 
 def test_the_order_in_which_loads_are_listed_does_not_matter():
@@ -206,3 +211,17 @@ def test_a_realisation_alone_is_the_same_as_in_company():
     alone = ground_state(site, {key: value[7:8] for key, value in values.items()}).response
     np.testing.assert_array_equal(alone.settlement[0], together.settlement[7])
     np.testing.assert_array_equal(alone.bearing[0], together.bearing[7])
+
+
+def test_clay_creeps_alike_under_two_halves_laid_together_and_one_whole():
+    ground = [clay("clay", 1.0, C_alpha_ratio=0.05, permeability="{ cv = 20 }")]
+    whole = built(load("strip", width=16, at=0), stages=[BUILT], layers=ground)
+    halves = built(
+        load("strip", width=8, at=4),
+        [further("other half", "strip", width=8, x=8)],
+        [BUILT, on("other half", "also", 0.0, 0.5, pressure=50)],
+        layers=ground,
+    )
+    one, two = settled(whole).response, settled(halves).response
+    assert one.secondary[0, -1] > 0.01
+    assert two.secondary == pytest.approx(one.secondary, rel=1e-6)
