@@ -78,8 +78,9 @@ class Study:
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
             ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
             computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
-            settlement, flags, and in the first chunks ``settlement`` through time (model error included in
-            all these) and where the critical ``circle`` lies.
+            settlement, thickness of ``fill_added`` where a level is held, flags, and in the first chunks
+            ``settlement`` through time (model error included in all these) and where the critical
+            ``circle`` lies.
         """
         z = self.latent(chunk)
         values = self.space.values(z)
@@ -101,6 +102,8 @@ class Study:
             arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values)
         if self.site.seeps or self.site.excess_layers:
             arrays["uplifted"] = response.uplifted
+        if self.site.hold_level_until is not None:
+            arrays["fill_added"] = error * response.fill_added[:, -1]
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)

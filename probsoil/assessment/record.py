@@ -41,6 +41,8 @@ class CampaignSample:
         Settlement through time of the first realisations.
     circle : ndarray, shape (n_band, n_check, 6), [m]
         Where the critical circles of the first realisations lie.
+    fill_added : ndarray, shape (n_sample,), [m]
+        Thickness of fill added to hold its level; empty where none is.
     converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -61,6 +63,7 @@ class CampaignSample:
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -227,6 +230,37 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
     }
 
 
+def added_fill_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
+    """Return how much fill holding the level takes.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Until when, and the section of an embankment.
+    sample : CampaignSample
+        All realisations.
+
+    Returns
+    -------
+    rows : list of dict
+        One, ready for JSON: thickness on the centreline [m] and volume, per metre run of an embankment
+        [m3/m] or per square metre of an area [m3/m2]; none where no level is held.
+    """
+    if site.hold_level_until is None:
+        return []
+    width, unit = (1.0, "m3/m2") if site.embankment is None else (site.embankment.mean_width, "m3/m")
+    worst = _WORST["not more than"]
+    return [
+        {
+            "until": site.hold_level_until,
+            "unit": unit,
+            "mean_width": None if site.embankment is None else width,
+            "thickness": _summary(sample.fill_added, worst=worst),
+            "volume": _summary(width * sample.fill_added, worst=worst),
+        }
+    ]
+
+
 def slip_rows(study: Study, sample: CampaignSample) -> list[Row]:
     """Return the factor of safety against slip at every check.
 
@@ -271,7 +305,7 @@ def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
 def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factors: FloatArray) -> list[Row]:
     site = study.site
     replicate = sample.replicate if study.points.replicates > 1 else None
-    ends = {site.traffic_from: "traffic"} | {stage.end: stage.name for stage in site.stages}
+    ends = {site.traffic_from: "traffic"} | site.end_names
     rows: list[Row] = []
     for time, factor in zip(times.tolist(), factors.T, strict=True):
         below = exceedance(

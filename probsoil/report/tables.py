@@ -14,8 +14,9 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 
 
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
-    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
+    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
 
+    The last only where fill is added to hold its level.
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
     ``too few realisations`` (the 5 % and the 95 % point of fewer than 40).
@@ -53,7 +54,7 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     -------
     frames : dict of str to DataFrame
         ``limits``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give tables
-        without rows.
+        without rows. With fill added to hold its level also ``added_fill``.
     """
     import pandas as pd
 
@@ -65,6 +66,8 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
         "settlement": _settlement_rows(results.get("settlement") or {}, results),
         "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
     }
+    if results.get("added_fill"):
+        rows["added_fill"] = _added_fill_rows(results)
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
     if len(frames["drivers"]):
         whole = {"rank [-]": "Int64", "spread clear": "boolean", "mean clear": "boolean"}
@@ -141,6 +144,23 @@ def _settlement_rows(data: dict[str, Any], results: dict[str, Any]) -> list[dict
             ),
         }
         for place, time in enumerate(data.get("times") or [])
+    ]
+
+
+def _added_fill_rows(results: dict[str, Any]) -> list[dict[str, Any]]:
+    return [
+        {
+            "fill added": name,
+            "until [years]": row["until"],
+            "unit": unit,
+            "mean [unit]": _or(UNCOMPUTED, row[key], "mean"),
+            **_quantile_columns(row[key]["quantiles"], "unit", results["realisations"], UNCOMPUTED),
+        }
+        for row in results["added_fill"]
+        for name, unit, key in (
+            ("thickness on the centreline", "m", "thickness"),
+            ("volume", row["unit"], "volume"),
+        )
     ]
 
 

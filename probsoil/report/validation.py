@@ -134,6 +134,7 @@ _GROUND = {
         }
     ],
     "load": {"shape": "text", "text": "text"},
+    "further_loads?": [{"name": "text", "text": "text"}],
     "stages": [_STAGE | {"change_text": "text", "height_after": _NUMBER, "pressure_after": _NUMBER}],
     "profile": {
         "depth": ["number"],
@@ -141,6 +142,14 @@ _GROUND = {
         "preconsolidation": [_NUMBER],
         "final_stress": ["number"],
     },
+}
+_MEAN_AND_QUANTILES = {"mean": _NUMBER, "quantiles": _QUANTILES}
+_ADDED_FILL = {
+    "until": "number",
+    "unit": "text",
+    "mean_width": _NUMBER,
+    "thickness": _MEAN_AND_QUANTILES,
+    "volume": _MEAN_AND_QUANTILES,
 }
 RESULTS: dict[str, Any] = {
     "title": "text",
@@ -161,6 +170,7 @@ RESULTS: dict[str, Any] = {
     },
     "slip": [_FACTOR | {"circle?": _CIRCLE}],
     "bearing?": [_FACTOR | {"pressure": _NUMBER}],
+    "added_fill?": [_ADDED_FILL],
     "drivers": [_DRIVER],
     "driver_quality": [
         {
