@@ -78,6 +78,36 @@ def impossible_sets(ranks: Mapping[Pair, float]) -> list[dict[Pair, float]]:
     return found
 
 
+def parts_correlation(correlation: FloatArray, local: ArrayLike) -> FloatArray:
+    r"""Return the correlation that knowledge and local parts must both have to give one at every station.
+
+    Parameters
+    ----------
+    correlation : ndarray, shape (d, d), [-]
+        Correlation R of the latent normals at one station.
+    local : array_like, shape (d,), [-]
+        Share :math:`\beta^2` of each variance that differs from place to place.
+
+    Returns
+    -------
+    parts : ndarray, shape (d, d), [-]
+        :math:`c_{pq} = R_{pq} / (\alpha_p \alpha_q + \beta_p \beta_q)` with
+        :math:`\alpha^2 = 1 - \beta^2`; ones on the diagonal. Not positive definite, or beyond one, where
+        no split into the two parts gives R.
+
+    Notes
+    -----
+    With :math:`z_p = \alpha_p K_p + \beta_p E_p`, K and E independent and each of correlation c, z has the
+    correlation R. For two parameters such a split exists whenever any does: the greatest correlation that
+    two parts of given shares allow is :math:`\alpha_p \alpha_q + \beta_p \beta_q`.
+    """
+    share = np.asarray(local, dtype=np.float64)
+    alpha, beta = np.sqrt(1.0 - share), np.sqrt(share)
+    parts = correlation / (np.outer(alpha, alpha) + np.outer(beta, beta))
+    np.fill_diagonal(parts, 1.0)
+    return np.asarray(parts, dtype=np.float64)
+
+
 def nearest_correlation(matrix: FloatArray, free: BoolArray) -> FloatArray:
     """Return the correlation matrix nearest to a symmetric matrix in the Frobenius norm.
 
