@@ -7,11 +7,11 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.errors import DependenceError, ParameterError, ShapeError
-from probsoil.parameters.dependence import Dependence, correlation_blocks, correlation_matrix
-from probsoil.parameters.local_parts import LocalPart, Position, mixing_matrix
+from probsoil.errors import ParameterError, ShapeError
+from probsoil.parameters.dependence import Dependence, correlation_matrix
+from probsoil.parameters.local_parts import LocalPart, LocalParts, Position, local_parts, mixing_matrix
 from probsoil.parameters.marginals import Marginal, UncertainQuantity, marginal
-from probsoil.scenario.correlation import LEAST_EIGENVALUE, parts_correlation
+from probsoil.scenario.base import RESERVED_NAMES
 from probsoil.scenario.distributions import Constant, Lognormal, Normal
 from probsoil.scenario.spatial_averaging import local_share
 
@@ -68,8 +68,8 @@ class ParameterSpace:
         Lower Cholesky factor C of `correlation`.
     constants : dict of str to float
         Value of every number that is not uncertain, in its own unit.
-    local : tuple of LocalPart
-        What varies between stations; empty for one station.
+    local : LocalParts or None
+        What varies between stations; None where nothing does.
     at_station : ndarray, shape (n_parameter, n_parameter), [-]
         Correlation of the parameters' normal scores at any one station.
     """
@@ -79,7 +79,7 @@ class ParameterSpace:
     inverse_correlation: FloatArray
     triangle: FloatArray
     constants: dict[str, float]
-    local: tuple[LocalPart, ...] = ()
+    local: LocalParts | None = None
     at_station: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
 
     @property
@@ -142,14 +142,8 @@ class ParameterSpace:
         """
         if z.ndim != 2 or z.shape[1] != self.dimension:
             raise ShapeError(f"z must have shape (n, {self.dimension}); got {z.shape}")
-        parts = {part.parameter: part for part in self.local}
-        drawn = {}
-        for i, law in enumerate(self.marginals):
-            score = z[:, i]
-            if i in parts:
-                share = parts[i].share
-                score = np.sqrt(1.0 - share) * score + np.sqrt(share) * parts[i].at(z, station)
-            drawn[law.name] = law.quantile(score)
+        scores = z if self.local is None else self.local.scores(z, station)
+        drawn = {law.name: law.quantile(scores[:, i]) for i, law in enumerate(self.marginals)}
         return {**self.constants, **drawn}
 
     def at(self, point: Literal["mean", "median"]) -> dict[str, float]:
@@ -239,9 +233,9 @@ def parameter_space(
     marginals = tuple(marginal(q) for q in uncertain)
     names = [law.name for law in marginals]
     at_station = correlation_matrix(names, dependence)
-    local, correlation = _local_parts(uncertain, positions), at_station
-    if local:
-        correlation = _with_local_parts(at_station, local, names)
+    local, correlation = _local_parts(uncertain, at_station, positions), at_station
+    if local is not None:
+        correlation = local.correlation
     triangle = np.asarray(np.linalg.cholesky(correlation), dtype=np.float64)
     inverse = np.linalg.inv(correlation)
     inverse = 0.5 * (inverse + inverse.T)
@@ -259,8 +253,8 @@ def parameter_space(
 
 
 def _local_parts(
-    uncertain: Sequence[UncertainQuantity], positions: Sequence[Position]
-) -> tuple[LocalPart, ...]:
+    uncertain: Sequence[UncertainQuantity], at_station: FloatArray, positions: Sequence[Position]
+) -> LocalParts | None:
     """Return what varies between stations, with its latent normals behind those of the parameters."""
     parts: list[LocalPart] = []
     count = len(positions)
@@ -283,46 +277,10 @@ def _local_parts(
                 mixing=mixing_matrix(positions, law.horizontal_scale),
             )
         )
-    return tuple(parts)
-
-
-def _with_local_parts(
-    at_station: FloatArray, local: Sequence[LocalPart], names: Sequence[str]
-) -> FloatArray:
-    """Return the correlation of all latent normals: those of knowledge, then those of every local part.
-
-    Local parts of two parameters correlate like their knowledge parts, station by station; so both have
-    the correlation that gives the one asked for at every station.
-    """
-    share, size = np.zeros(len(at_station)), len(local[0].latent)
-    for part in local:
-        share[part.parameter] = part.share
-    parts = parts_correlation(at_station, share)
-    for block in correlation_blocks(parts):
-        if float(np.linalg.eigvalsh(parts[np.ix_(block, block)])[0]) < LEAST_EIGENVALUE:
-            tied = ", ".join(names[index] for index in block)
-            raise DependenceError(
-                f"the rank correlations of {tied} cannot hold at every station, since what varies from place "
-                "to place is not the same share of each; give them inherent_cov alike, or less correlation"
-            )
-    _check_scales(local, parts, names)
-    varying = [part.parameter for part in local]
-    whole = np.zeros((len(share) + size * len(local),) * 2)
-    whole[: len(share), : len(share)] = parts
-    whole[len(share) :, len(share) :] = np.kron(parts[np.ix_(varying, varying)], np.eye(size))
-    return whole
-
-
-def _check_scales(local: Sequence[LocalPart], parts: FloatArray, names: Sequence[str]) -> None:
-    """Refuse correlated local parts that vary over different distances: they could not keep step."""
-    for number, one in enumerate(local):
-        for other in local[:number]:
-            tied = parts[one.parameter, other.parameter] != 0.0
-            if tied and not np.array_equal(one.mixing, other.mixing):
-                raise DependenceError(
-                    f"{names[other.parameter]} and {names[one.parameter]} are correlated and both vary from "
-                    "station to station: they need the same horizontal_scale"
-                )
+    tables = tuple(f"{name}." for name in RESERVED_NAMES)
+    rigid = [place for place, quantity in enumerate(uncertain) if quantity.address.startswith(tables)]
+    names = [quantity.address for quantity in uncertain]
+    return local_parts(at_station, parts, rigid, names) if parts else None
 
 
 def _summary(law: Marginal) -> ParameterSummary:

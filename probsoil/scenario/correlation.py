@@ -1,6 +1,6 @@
 """Whether rank correlations can hold together, and the nearest set that can."""
 
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 
 import numpy as np
 
@@ -106,6 +106,47 @@ def parts_correlation(correlation: FloatArray, local: ArrayLike) -> FloatArray:
     parts = correlation / (np.outer(alpha, alpha) + np.outer(beta, beta))
     np.fill_diagonal(parts, 1.0)
     return np.asarray(parts, dtype=np.float64)
+
+
+def impossible_parts(
+    ranks: Mapping[Pair, float], local: Mapping[str, float], rigid: Collection[str] = ()
+) -> list[dict[Pair, float]]:
+    """Return every connected set of correlations that cannot hold at each of several stations.
+
+    Parameters
+    ----------
+    ranks : mapping
+        Rank correlation of each pair; pairs not given are uncorrelated.
+    local : mapping of str to float, [-]
+        Share of each number's variance that differs from place to place; 0 where not given.
+    rigid : collection of str
+        Numbers that are the same at all stations. Others follow those they are correlated with.
+
+    Returns
+    -------
+    sets : list of dict
+        For each set that could hold at one station but not at several, its pairs that clash, with the
+        greatest rank correlation, by size, that the shares allow each pair on its own.
+    """
+    fixed = {name for pair in ranks for name in pair if local.get(name, 0.0) > 0.0 or name in rigid}
+    clashing = {pair: rank for pair, rank in ranks.items() if fixed.issuperset(pair)}
+    found = []
+    for component in _components(list(clashing)):
+        given = {pair: clashing[pair] for pair in component}
+        names = list(dict.fromkeys(name for pair in component for name in pair))
+        matrix = _matrix(given, names)
+        if np.linalg.eigvalsh(matrix)[0] < LEAST_EIGENVALUE:
+            continue  # refused already for one station
+        parts = parts_correlation(matrix, [local.get(name, 0.0) for name in names])
+        if np.linalg.eigvalsh(parts)[0] < LEAST_EIGENVALUE:
+            found.append({pair: _greatest(*(local.get(name, 0.0) for name in pair)) for pair in given})
+    return found
+
+
+def _greatest(first: float, second: float) -> float:
+    """Return the greatest rank correlation of two numbers with these local shares."""
+    least = np.sqrt((1.0 - first) * (1.0 - second)) + np.sqrt(first * second)
+    return float(rank_correlation(least))
 
 
 def nearest_correlation(matrix: FloatArray, free: BoolArray) -> FloatArray:

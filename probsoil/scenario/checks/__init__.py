@@ -13,6 +13,7 @@ from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.groundwater import groundwater_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
+from probsoil.scenario.checks.stations import station_slips
 from probsoil.scenario.slips import Slip
 
 __all__ = ["cross_checks"]
@@ -39,5 +40,6 @@ def cross_checks(scenario: Any) -> list[Slip]:
         drain_slips,
         limit_slips,
         dependence_slips,
+        station_slips,
     )
     return [slip for check in checks for slip in check(scenario)]
