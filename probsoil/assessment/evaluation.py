@@ -14,10 +14,19 @@ from probsoil.ground.limit_quantities import (
     secondary_in_limits,
     slip_with_model_error,
 )
-from probsoil.ground.profile import column
-from probsoil.ground.response import respond, screened
+from probsoil.ground.profile import Values, column
+from probsoil.ground.response import Response, respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
 from probsoil.ground.slip_position import critical_positions
+from probsoil.ground.stations import (
+    StationSettlement,
+    StationSite,
+    section_scenario,
+    section_values,
+    settle_stations,
+    station_sites,
+    station_times,
+)
 from probsoil.parameters import Design, ParameterSpace, design, parameter_space
 from probsoil.scenario import Scenario
 
@@ -42,13 +51,17 @@ class Study:
     points : Design
         Where in the latent space the realisations lie.
     site : SiteModel
-        What no realisation changes, with the competing slip circles.
+        What no realisation changes, with the competing slip circles; with stations that of the section
+        of the first.
+    stations : tuple of StationSite
+        Where else settlement is computed; none where the scenario has no stations.
     """
 
     scenario: Scenario
     space: ParameterSpace
     points: Design
     site: SiteModel
+    stations: tuple[StationSite, ...] = ()
 
     def latent(self, chunk: int) -> FloatArray:
         """Return the correlated latent normals of a chunk.
@@ -78,23 +91,27 @@ class Study:
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
             ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
             computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
-            settlement, flags, and in the first chunks ``settlement`` through time (model error included in
-            all these) and where the critical ``circle`` lies.
+            settlement, flags, and in the first chunks ``settlement`` through time, that of every
+            ``station`` at the times they are kept (model error included in all these) and where the
+            critical ``circle`` lies.
         """
         z = self.latent(chunk)
-        values = self.space.values(z)
+        values = self.section_values(z)
         response = respond(self.site, values)
+        stations = self.settled_stations(z, response)
+        converged = response.converged if stations is None else response.converged & stations.converged
         error = column(values, "model_error.settlement", response.settlement.shape[0])
-        settlement = np.where(response.converged[:, None], error[:, None] * response.settlement, np.nan)
+        settled = response.settlement if stations is None else stations.reference
+        settlement = np.where(response.converged[:, None], error[:, None] * settled, np.nan)
         arrays: dict[str, NDArray[np.generic]] = {
-            "quantity": limit_quantities(self.site, self.scenario.limits, response, values),
-            "secondary": secondary_in_limits(self.scenario.limits, response, values),
+            "quantity": limit_quantities(self.site, self.scenario.limits, response, values, stations),
+            "secondary": secondary_in_limits(self.scenario.limits, response, values, stations),
             "slip": slip_with_model_error(response, values),
             "bearing": bearing_with_model_error(response, values),
             "final": settlement[:, -1],
             "floored": response.floored,
             "kappa_clipped": response.kappa_clipped,
-            "converged": response.converged,
+            "converged": converged,
             "voids_closed": response.voids_closed,
         }
         if self.site.distorts:
@@ -103,10 +120,47 @@ class Study:
             arrays["uplifted"] = response.uplifted
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
+            if stations is not None:
+                arrays["station"] = (error[:, None, None] * stations.settlement).astype(np.float32)
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)
         if self.certain:  # one calculation stands for every realisation
             return {key: np.repeat(array, len(z), axis=0) for key, array in arrays.items()}
         return arrays
+
+    def section_values(self, z: FloatArray) -> Values:
+        """Return the values of all quantities where slip and bearing are computed.
+
+        Parameters
+        ----------
+        z : ndarray, shape (n, d), [-]
+            Correlated latent normals.
+
+        Returns
+        -------
+        values : mapping of str to ndarray, shape (n,), or float
+            By address; layer averages and thicknesses are those of the first station.
+        """
+        return section_values(self.scenario, self.space.values(z))
+
+    def settled_stations(self, z: FloatArray, section: Response) -> StationSettlement | None:
+        """Return what settles at the stations.
+
+        Parameters
+        ----------
+        z : ndarray, shape (n, d), [-]
+            Correlated latent normals.
+        section : Response
+            The ground's answer in the section of the first station.
+
+        Returns
+        -------
+        settled : StationSettlement or None
+            None where the scenario has no stations.
+        """
+        if not self.stations:
+            return None
+        times = station_times(self.scenario)
+        return settle_stations(self.stations, lambda place: self.space.values(z, place), section, times)
 
     @property
     def certain(self) -> bool:
@@ -131,8 +185,9 @@ def prepare(scenario: Scenario) -> Study:
     points = design(scenario.draws, seed=scenario.seed, n=scenario.realisations, dimension=space.dimension)
     generator = np.random.default_rng(np.random.SeedSequence(scenario.seed, spawn_key=(_PILOT_STAGE, 0)))
     pilot = generator.standard_normal((_PILOT_SIZE, space.dimension))
-    site = screened(site_model(scenario), space.values(_PILOT_WIDTH * space.correlated(pilot)))
-    return Study(scenario=scenario, space=space, points=points, site=site)
+    values = section_values(scenario, space.values(_PILOT_WIDTH * space.correlated(pilot)))
+    site = screened(site_model(section_scenario(scenario)), values)
+    return Study(scenario=scenario, space=space, points=points, site=site, stations=station_sites(scenario))
 
 
 def space_of(scenario: Scenario) -> ParameterSpace:
@@ -149,4 +204,5 @@ def space_of(scenario: Scenario) -> ParameterSpace:
         Marginals, dependence and fixed numbers.
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
-    return parameter_space(scenario.quantities(), pairs)
+    positions = [(station.x, station.y) for station in scenario.all_stations]
+    return parameter_space(scenario.quantities(), pairs, positions=positions)

@@ -76,6 +76,10 @@ class SiteModel:
         Time from which traffic drives a slip; infinite without traffic.
     base_head : bool
         Whether the piezometric level at the bottom is given.
+    offset : float, [m]
+        Distance of the point of settlement from the centreline of an embankment.
+    station_name : str or None
+        Name of the station where settlement is reported; None for the centreline, centre or point.
     """
 
     layers: tuple[LayerForm, ...]
@@ -95,6 +99,8 @@ class SiteModel:
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
     base_head: bool = False
+    offset: float = 0.0
+    station_name: str | None = None
 
     @property
     def seeps(self) -> bool:
@@ -150,6 +156,8 @@ class SiteModel:
     @property
     def station(self) -> str:
         """Where settlement is reported, in words."""
+        if self.station_name is not None:
+            return f"station {self.station_name}"
         return "centreline" if self.foundation is None else self.foundation.station
 
     @property

@@ -374,6 +374,10 @@ class ConsolidationTimeLimit(_Limit):
         return self.not_more_than
 
 
+OnSettlement = SettlementLimit | DifferentialSettlementLimit | AngularDistortionLimit
+ON_SETTLEMENT = (SettlementLimit, DifferentialSettlementLimit, AngularDistortionLimit)
+"""Classes of limits on what settles by a time or between two."""
+
 Limit = Annotated[
     SettlementLimit
     | DifferentialSettlementLimit

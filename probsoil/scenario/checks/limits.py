@@ -5,19 +5,14 @@ from typing import Any
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, years_text
 from probsoil.scenario.limits import (
-    AngularDistortionLimit,
+    ON_SETTLEMENT,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
-    DifferentialSettlementLimit,
-    SettlementLimit,
     SlipSafetyLimit,
 )
 from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad
 from probsoil.scenario.slips import Slip
-
-SETTLEMENTS = (SettlementLimit, DifferentialSettlementLimit, AngularDistortionLimit)
-"""Classes of limits on what settles by a time or between two."""
 
 
 def limit_slips(scenario: Any) -> list[Slip]:
@@ -36,7 +31,7 @@ def limit_slips(scenario: Any) -> list[Slip]:
     slips = list(repeated_names(scenario.limits, "limits", "limit"))
     for position, limit in enumerate(scenario.limits):
         found: list[Slip] = []
-        if isinstance(limit, SETTLEMENTS):
+        if isinstance(limit, ON_SETTLEMENT):
             found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
             found += _reversed(limit)
         found += _out_of_place(limit, scenario.load)

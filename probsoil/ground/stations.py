@@ -1,0 +1,395 @@
+"""Settlement at several plan positions: each has its own layer averages and its own stress from the load."""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+from itertools import combinations
+
+import numpy as np
+
+from probsoil._typing import BoolArray, FloatArray
+from probsoil.ground.profile import Values
+from probsoil.ground.response import Response, respond
+from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.scenario import Scenario
+from probsoil.scenario.distributions import Constant
+from probsoil.scenario.limits import ON_SETTLEMENT
+from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, StripLoad
+from probsoil.scenario.stations import NEIGHBOURS, Station, along_line
+
+Pairs = tuple[tuple[int, int], ...]
+_NOWHERE = np.zeros(0)
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class StationLayout:
+    """Where the stations are.
+
+    Attributes
+    ----------
+    names : tuple of str
+        In the order given; the first is the one of reference.
+    positions : tuple of (float, float), [m]
+        Across and along, from the centreline or centre of the load.
+    """
+
+    names: tuple[str, ...]
+    positions: tuple[tuple[float, float], ...]
+
+    @property
+    def order(self) -> list[int] | None:
+        """Stations along the straight line they lie on, [-]; None where they lie on none."""
+        return along_line(self.positions)
+
+    def distance(self, first: int, second: int) -> float:
+        """Return the distance in plan between two stations.
+
+        Parameters
+        ----------
+        first, second : int, [-]
+            Stations in the order given.
+
+        Returns
+        -------
+        distance : float, [m]
+            Above zero.
+        """
+        (x, y), (other_x, other_y) = self.positions[first], self.positions[second]
+        return float(np.hypot(x - other_x, y - other_y))
+
+    def pairs(self, compared: tuple[str, str] | str) -> Pairs:
+        """Return the pairs of stations that a limit compares.
+
+        Parameters
+        ----------
+        compared : tuple of str, or str
+            Two names, ``any`` or ``neighbours``.
+
+        Returns
+        -------
+        pairs : tuple of (int, int), [-]
+            Stations in the order given, no pair twice.
+        """
+        if isinstance(compared, tuple):
+            return ((self.names.index(compared[0]), self.names.index(compared[1])),)
+        order = self.order
+        if compared == NEIGHBOURS and order is not None:
+            return tuple(zip(order[:-1], order[1:], strict=True))
+        return tuple(combinations(range(len(self.names)), 2))
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class StationSite:
+    """One station, ready to be computed.
+
+    Attributes
+    ----------
+    station : Station
+        Name, position and thicknesses.
+    site : SiteModel
+        What no realisation changes, without slip and bearing.
+    thicker : tuple of (str, float), [-]
+        Addresses of thicknesses and the factors on them here.
+    in_section : bool
+        Whether the computation of the section that slip and bearing stand for is that of the station.
+    """
+
+    station: Station
+    site: SiteModel
+    thicker: tuple[tuple[str, float], ...]
+    in_section: bool
+
+    def values(self, values: Values) -> Values:
+        """Return the values of all quantities at this station.
+
+        Parameters
+        ----------
+        values : mapping of str to ndarray, shape (n_sample,), or float
+            Value of every quantity by its address, with its layer averages here.
+
+        Returns
+        -------
+        values : mapping of str to ndarray, shape (n_sample,), or float
+            The same, with the thicknesses of this station.
+        """
+        if not self.thicker:
+            return values
+        return {**values, **{address: factor * values[address] for address, factor in self.thicker}}
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class StationSettlement:
+    """What settles at every station, without model error.
+
+    Attributes
+    ----------
+    layout : StationLayout
+        Where the stations are.
+    times : ndarray, shape (n_when,), [years]
+        Times at which settlement is kept, rising.
+    settlement, secondary : ndarray, shape (n_sample, n_station, n_when), [m]
+        Settlement and the part of it that is secondary compression; not a number where the
+        consolidation did not converge.
+    converged : ndarray of bool, shape (n_sample,), [-]
+        Whether it did at every station.
+    reference : ndarray, shape (n_sample, n_time), [m]
+        Settlement of the first station at every time of the axis.
+    """
+
+    layout: StationLayout
+    times: FloatArray
+    settlement: FloatArray
+    secondary: FloatArray
+    converged: BoolArray
+    reference: FloatArray
+
+    def settled(self, time: float, *, secondary: bool = False) -> FloatArray:
+        """Return what has settled at every station by a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            One of `times`, or 0.
+        secondary : bool
+            Whether only secondary compression is meant.
+
+        Returns
+        -------
+        settlement : ndarray, shape (n_sample, n_station), [m]
+            Zero at the start.
+        """
+        kept = self.secondary if secondary else self.settlement
+        if time <= 0.0:
+            return np.zeros(kept.shape[:2])
+        return kept[:, :, int(np.searchsorted(self.times, time))]
+
+
+def station_layout(stations: Sequence[Station]) -> StationLayout:
+    """Return where stations are.
+
+    Parameters
+    ----------
+    stations : sequence of Station
+        In the order given.
+
+    Returns
+    -------
+    layout : StationLayout
+        Names and positions.
+    """
+    return StationLayout(
+        names=tuple(station.name for station in stations),
+        positions=tuple((station.x, station.y) for station in stations),
+    )
+
+
+def section_scenario(scenario: Scenario) -> Scenario:
+    """Return the scenario of the section that slip, bearing and degree of consolidation stand for.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    section : Scenario
+        Below the centreline or centre, with the thicknesses of the first station; as it is without stations.
+    """
+    stations = scenario.all_stations
+    if not stations or not stations[0].thickness:
+        return scenario
+    return scenario.model_copy(update={"layers": _layers_at(scenario, stations[0])})
+
+
+def section_values(scenario: Scenario, values: Values) -> Values:
+    """Return the values of all quantities in that section.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address, with the layer averages of the first station.
+
+    Returns
+    -------
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        The same, with the thicknesses of the first station.
+    """
+    stations = scenario.all_stations
+    factors = _factors(scenario, stations[0]) if stations else ()
+    return {**values, **{address: factor * values[address] for address, factor in factors}} if factors else values
+
+
+def station_sites(scenario: Scenario, *, refine: int = 1) -> tuple[StationSite, ...]:
+    """Return the stations of a scenario, ready to be computed.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    refine : int, [-]
+        As for `site_model`.
+
+    Returns
+    -------
+    stations : tuple of StationSite
+        In the order given; none where the scenario has none.
+    """
+    return tuple(
+        StationSite(
+            station=station,
+            site=settling_site(station_site(scenario, station, refine=refine)),
+            thicker=_factors(scenario, station),
+            in_section=index == 0 and _in_section(scenario, station),
+        )
+        for index, station in enumerate(scenario.all_stations)
+    )
+
+
+def station_site(scenario: Scenario, station: Station, *, refine: int = 1) -> SiteModel:
+    """Return what no realisation changes at one station.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    station : Station
+        One of its own.
+    refine : int, [-]
+        As for `site_model`.
+
+    Returns
+    -------
+    site : SiteModel
+        With its thicknesses and position.
+    """
+    here = scenario.model_copy(
+        update={"layers": _layers_at(scenario, station), "load": _load_at(scenario.load, station)}
+    )
+    offset = station.x if isinstance(scenario.load, EmbankmentLoad) else 0.0
+    return replace(site_model(here, refine=refine), offset=offset, station_name=station.name)
+
+
+def settling_site(site: SiteModel) -> SiteModel:
+    """Return a site of which only the settlement is computed.
+
+    Parameters
+    ----------
+    site : SiteModel
+        As laid out.
+
+    Returns
+    -------
+    site : SiteModel
+        Without slip and bearing; stresses are kept from the end of the last stage on.
+    """
+    return replace(
+        site,
+        record=site.record[site.record >= site.last_change],
+        slip_times=_NOWHERE,
+        layouts=(),
+        families=(),
+        bearing_times=_NOWHERE,
+    )
+
+
+def station_times(scenario: Scenario) -> FloatArray:
+    """Return the times at which the settlement of every station is kept.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    times : ndarray, shape (n_when,), [years]
+        Those of limits on settlement, the end of the last stage and the horizon.
+    """
+    times = {float(scenario.horizon), float(scenario.stages[-1].end)}
+    for limit in scenario.limits:
+        if isinstance(limit, ON_SETTLEMENT):
+            times |= {limit.at or 0.0} if limit.between is None else set(limit.between)
+    return np.array(sorted(times - {0.0}), dtype=np.float64)
+
+
+def settle_stations(
+    stations: Sequence[StationSite],
+    values_at: Callable[[int], Values],
+    section: Response,
+    times: FloatArray,
+) -> StationSettlement:
+    """Return what settles at every station.
+
+    Parameters
+    ----------
+    stations : sequence of StationSite
+        At least one.
+    values_at : callable
+        Gives the value of every quantity by its address for a station in the order given, with its layer
+        averages but without its thicknesses.
+    section : Response
+        The ground's answer in the section of the first station.
+    times : ndarray, shape (n_when,), [years]
+        Times of the axis at which settlement is kept.
+
+    Returns
+    -------
+    settled : StationSettlement
+        One station is computed after another, so that memory does not grow with their number but for
+        what is kept.
+    """
+    kept, creep, converged = [], [], np.ones(section.converged.shape, dtype=np.bool_)
+    reference = section.settlement
+    for index, station in enumerate(stations):
+        here = section if station.in_section else respond(station.site, station.values(values_at(index)))
+        found = np.where(here.converged[:, None], here.settlement, np.nan)
+        when = np.searchsorted(here.times, times)
+        kept.append(found[:, when])
+        creep.append(np.where(here.converged[:, None], here.secondary, np.nan)[:, when])
+        converged &= here.converged
+        reference = found if index == 0 else reference
+    return StationSettlement(
+        layout=station_layout([one.station for one in stations]),
+        times=times,
+        settlement=np.stack(kept, axis=1),
+        secondary=np.stack(creep, axis=1),
+        converged=converged,
+        reference=reference,
+    )
+
+
+def _in_section(scenario: Scenario, station: Station) -> bool:
+    """Tell whether a station lies where slip and bearing are computed."""
+    load = scenario.load
+    if isinstance(load, AreaLoad):
+        return True
+    return station.x == 0.0 and (isinstance(load, EmbankmentLoad | StripLoad) or station.y == 0.0)
+
+
+def _factors(scenario: Scenario, station: Station) -> tuple[tuple[str, float], ...]:
+    means = {layer.name: layer.thickness.expectation for layer in scenario.layers}
+    return tuple((f"{name}.thickness", thickness / means[name]) for name, thickness in station.thickness)
+
+
+def _layers_at(scenario: Scenario, station: Station) -> tuple[object, ...]:
+    """Return the layers with the mean thicknesses of a station, for the layout of cells."""
+    here = dict(station.thickness)
+    return tuple(
+        layer.model_copy(update={"thickness": Constant(value=here[layer.name])})
+        if layer.name in here
+        else layer
+        for layer in scenario.layers
+    )
+
+
+def _load_at(load: object, station: Station) -> object:
+    """Return a load whose settlement is reported at a station."""
+    if isinstance(load, RectangleLoad):
+        return load.model_copy(update={"at": (station.x, station.y)})
+    if isinstance(load, StripLoad):
+        return load.model_copy(update={"at": station.x})
+    if isinstance(load, CircleLoad):
+        return load.model_copy(update={"at": float(np.hypot(station.x, station.y))})
+    return load
