@@ -29,6 +29,7 @@ from probsoil.ground.stations import (
 )
 from probsoil.parameters import Design, ParameterSpace, design, parameter_space
 from probsoil.scenario import Scenario
+from probsoil.sensitivity import Gathering
 
 BAND_CHUNKS = 64
 """Chunks whose settlement through time and slip circles are kept, [-]; the rest keep what limits need."""
@@ -99,7 +100,9 @@ class Study:
         values = self.section_values(z)
         response = respond(self.site, values)
         stations = self.settled_stations(z, response)
-        converged = response.converged if stations is None else response.converged & stations.converged
+        converged, closed = response.converged, response.voids_closed
+        if stations is not None:
+            converged, closed = converged & stations.converged, closed | stations.voids_closed
         error = column(values, "model_error.settlement", response.settlement.shape[0])
         settled = response.settlement if stations is None else stations.reference
         settlement = np.where(response.converged[:, None], error[:, None] * settled, np.nan)
@@ -112,7 +115,7 @@ class Study:
             "floored": response.floored,
             "kappa_clipped": response.kappa_clipped,
             "converged": converged,
-            "voids_closed": response.voids_closed,
+            "voids_closed": closed,
         }
         if self.site.distorts:
             arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values)
@@ -206,3 +209,30 @@ def space_of(scenario: Scenario) -> ParameterSpace:
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
     positions = [(station.x, station.y) for station in scenario.all_stations]
     return parameter_space(scenario.quantities(), pairs, positions=positions)
+
+
+def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
+    """Return the parameters that drivers are told for, and which latent normals make up each.
+
+    Parameters
+    ----------
+    study : Study
+        Parameter space.
+
+    Returns
+    -------
+    names : tuple of str
+        Addresses; with stations besides them ``address (local)`` for what of a parameter varies between
+        the stations, all stations together.
+    gathering : Gathering or None
+        None where each parameter has one latent normal.
+    """
+    space = study.space
+    if space.local is None:
+        return space.names, None
+    member, shift = np.arange(space.dimension), np.ones(space.dimension)
+    names = list(space.names)
+    for part in space.local.parts:
+        member[part.latent], shift[part.latent] = len(names), part.common_shift
+        names.append(f"{space.names[part.parameter]} (local)")
+    return tuple(names), Gathering(member=member, shift=shift)

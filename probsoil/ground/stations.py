@@ -129,8 +129,8 @@ class StationSettlement:
     settlement, secondary : ndarray, shape (n_sample, n_station, n_when), [m]
         Settlement and the part of it that is secondary compression; not a number where the
         consolidation did not converge.
-    converged : ndarray of bool, shape (n_sample,), [-]
-        Whether it did at every station.
+    converged, voids_closed : ndarray of bool, shape (n_sample,), [-]
+        Whether it did at every station, and whether voids closed at any.
     reference : ndarray, shape (n_sample, n_time), [m]
         Settlement of the first station at every time of the axis.
     """
@@ -140,6 +140,7 @@ class StationSettlement:
     settlement: FloatArray
     secondary: FloatArray
     converged: BoolArray
+    voids_closed: BoolArray
     reference: FloatArray
 
     def settled(self, time: float, *, secondary: bool = False) -> FloatArray:
@@ -340,7 +341,8 @@ def settle_stations(
         One station is computed after another, so that memory does not grow with their number but for
         what is kept.
     """
-    kept, creep, converged = [], [], np.ones(section.converged.shape, dtype=np.bool_)
+    kept, creep = [], []
+    converged, closed = np.ones_like(section.converged), np.zeros_like(section.converged)
     reference = section.settlement
     for index, station in enumerate(stations):
         here = section if station.in_section else respond(station.site, station.values(values_at(index)))
@@ -349,6 +351,7 @@ def settle_stations(
         kept.append(found[:, when])
         creep.append(np.where(here.converged[:, None], here.secondary, np.nan)[:, when])
         converged &= here.converged
+        closed |= here.voids_closed
         reference = found if index == 0 else reference
     return StationSettlement(
         layout=station_layout([one.station for one in stations]),
@@ -356,6 +359,7 @@ def settle_stations(
         settlement=np.stack(kept, axis=1),
         secondary=np.stack(creep, axis=1),
         converged=converged,
+        voids_closed=closed,
         reference=reference,
     )
 
