@@ -7,6 +7,7 @@ from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
 from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
 from probsoil.report.section import section_view
+from probsoil.report.stations import stations_view
 
 _MARKS = {"within target": "within", "beyond target": "beyond", "not conclusive": "open"}
 _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
@@ -62,6 +63,7 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
         "tails": results["realisations"] >= text.LEAST_FOR_TAILS,
         "limits": [_limit(number, limit, results) for number, limit in numbered],
         "settlement": _settlement(results.get("settlement") or {}, results),
+        "stations": stations_view(results),
         "curves": [view for view in curves if view is not None],
         "drivers": [view for number, limit in numbered if (view := drivers_view(number, limit, results))],
         "stability": _stability(results),
@@ -90,7 +92,7 @@ def _limit(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[
         "sentence": chance.verdict_sentence(limit, results),
         "evidence": _evidence(limit, results),
         "quantity": text.quantity_text(limit),
-        "allowed": f"{limit['sense']} {text.threshold_text(limit)}",
+        "allowed": f"{limit['sense']} {text.threshold_text(limit)}{text.slope_text(limit)}",
         "chance": text.probability_text(limit["probability"], chance.realisations_of(limit, results)),
         "interval": text.interval_text(limit["probability"], *limit["interval"]),
         "target": "none" if target is None else text.plain_percent(target),
