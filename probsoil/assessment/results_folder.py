@@ -16,8 +16,7 @@ REALISATIONS_FILE = "realisations.npz"
 FIGURES = "figures"
 
 _TABLES = tuple(
-    f"{name}.csv"
-    for name in ("limits", "drivers", "settlement", "parameters", "stations", "station_pairs")
+    f"{name}.csv" for name in ("limits", "drivers", "settlement", "parameters", "stations", "station_pairs")
 )
 FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES)
 

@@ -69,9 +69,8 @@ def _station_rows(scenario: Scenario, layout: StationLayout, settled: FloatArray
 
 def _pair_rows(layout: StationLayout, settled: FloatArray) -> list[Row]:
     """Return the differences between neighbours on a line, or else between the first station and every other."""
-    pairs = layout.pairs(NEIGHBOURS) if layout.order else [(0, other) for other in range(1, len(layout.names))]
     rows: list[Row] = []
-    for first, second in pairs:
+    for first, second in layout.shown_pairs:
         distance = layout.distance(first, second)
         difference = np.abs(settled[:, second] - settled[:, first])
         rows.append(
@@ -153,7 +152,9 @@ def _decided_by(
         return []
     if isinstance(limit, DifferentialSettlementLimit | AngularDistortionLimit):
         worst = compared(limit, settled, layout).argmax(axis=1)
-        named = [[layout.names[first], layout.names[second]] for first, second in layout.pairs(limit.stations)]
+        named = [
+            [layout.names[first], layout.names[second]] for first, second in layout.pairs(limit.stations)
+        ]
     else:
         worst = settled.argmax(axis=1)
         named = [[name] for name in layout.names]

@@ -26,6 +26,7 @@ from probsoil.scenario.limits import (
     SlipSafetyLimit,
 )
 
+
 def limit_quantities(
     site: SiteModel,
     limits: Sequence[Limit],

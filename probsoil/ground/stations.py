@@ -56,6 +56,13 @@ class StationLayout:
         (x, y), (other_x, other_y) = self.positions[first], self.positions[second]
         return float(np.hypot(x - other_x, y - other_y))
 
+    @property
+    def shown_pairs(self) -> Pairs:
+        """Pairs a reader is shown: neighbours on a line, or else the first station with every other."""
+        if self.order is not None:
+            return self.pairs(NEIGHBOURS)
+        return tuple((0, other) for other in range(1, len(self.names)))
+
     def pairs(self, compared: tuple[str, str] | str) -> Pairs:
         """Return the pairs of stations that a limit compares.
 
@@ -219,7 +226,11 @@ def section_values(scenario: Scenario, values: Values) -> Values:
     """
     stations = scenario.all_stations
     factors = _factors(scenario, stations[0]) if stations else ()
-    return {**values, **{address: factor * values[address] for address, factor in factors}} if factors else values
+    return (
+        {**values, **{address: factor * values[address] for address, factor in factors}}
+        if factors
+        else values
+    )
 
 
 def station_sites(scenario: Scenario, *, refine: int = 1) -> tuple[StationSite, ...]:
@@ -242,7 +253,7 @@ def station_sites(scenario: Scenario, *, refine: int = 1) -> tuple[StationSite, 
             station=station,
             site=settling_site(station_site(scenario, station, refine=refine)),
             thicker=_factors(scenario, station),
-            in_section=index == 0 and _in_section(scenario, station),
+            in_section=index == 0 and at_section(scenario, station),
         )
         for index, station in enumerate(scenario.all_stations)
     )
@@ -364,8 +375,21 @@ def settle_stations(
     )
 
 
-def _in_section(scenario: Scenario, station: Station) -> bool:
-    """Tell whether a station lies where slip and bearing are computed."""
+def at_section(scenario: Scenario, station: Station) -> bool:
+    """Tell whether a station lies below the centreline or centre.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Its load.
+    station : Station
+        One of its own.
+
+    Returns
+    -------
+    there : bool
+        Always under a load over a wide area.
+    """
     load = scenario.load
     if isinstance(load, AreaLoad):
         return True

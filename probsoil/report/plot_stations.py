@@ -36,7 +36,9 @@ def plot_stations(figure: "Figure", settlement: dict[str, Any]) -> None:
     draw = _bands if along else _bars
     draw(axis, place, last)
     label = f"median after {trimmed_text(times[-1])} years"
-    axis.plot(place, last["0.5"], color=LIGHT["main"], lw=2.0 if along else 0.0, marker="o", ms=5, label=label)
+    axis.plot(
+        place, last["0.5"], color=LIGHT["main"], lw=2.0 if along else 0.0, marker="o", ms=5, label=label
+    )
     if len(times) > 1:
         axis.plot(
             place,

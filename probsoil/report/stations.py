@@ -164,9 +164,7 @@ def _sentence(stations: list[dict[str, Any]], pairs: list[dict[str, Any]], time:
     known = [one for one in stations if text.is_number(at_horizon(one)["0.5"])]
     if not known:
         return f"After {text.trimmed_text(time)} years {text.UNCOMPUTED}."
-    least, most = (
-        chosen(known, key=lambda one: float(at_horizon(one)["0.5"])) for chosen in (min, max)
-    )
+    least, most = (chosen(known, key=lambda one: float(at_horizon(one)["0.5"])) for chosen in (min, max))
     said = (
         f"After {text.trimmed_text(time)} years the median settlement lies between "
         f"{text.value_text(at_horizon(least)['0.5'], 'm')} at {least['name']} and "

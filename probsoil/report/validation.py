@@ -152,9 +152,7 @@ _STATIONS = {
     "stations?": [
         {"name": "text", "x": "number", "y": "number", "along": _NUMBER, "thickness": "object"} | _SERIES
     ],
-    "pairs?": [
-        {"stations": ["text"], "distance": "number", "difference": _SERIES, "distortion": _SERIES}
-    ],
+    "pairs?": [{"stations": ["text"], "distance": "number", "difference": _SERIES, "distortion": _SERIES}],
 }
 RESULTS: dict[str, Any] = {
     "title": "text",

@@ -188,7 +188,9 @@ def _correlation_slips(scenario: Any) -> list[Slip]:
     shares = {name: local_share(one.distribution, one.averaging_length) for name, one in known.items()}
     slips = []
     for pair, (position, _) in pairs.items():
-        scales = [getattr(known[name].distribution, "horizontal_scale", None) for name in pair if name in known]
+        scales = [
+            getattr(known[name].distribution, "horizontal_scale", None) for name in pair if name in known
+        ]
         if len(scales) == 2 and None not in scales and scales[0] != scales[1]:
             message = (
                 f"{pair[0]} and {pair[1]} vary in plan over {scales[0]:g} m and {scales[1]:g} m, and what "
@@ -266,5 +268,7 @@ def _compared(limit: Any, names: Sequence[str], places: Sequence[tuple[float, fl
         message = f'station "{first}" is compared with itself'
         return [Slip(path=("stations", 1), message=message, allowed="two different stations")]
     return [
-        slip for place, name in enumerate(limit.stations) for slip in _unknown(name, names, ("stations", place))
+        slip
+        for place, name in enumerate(limit.stations)
+        for slip in _unknown(name, names, ("stations", place))
     ]
