@@ -46,16 +46,16 @@ _GROUND = (
     "The effective stress in situ is nowhere taken below 1 kPa.",
 )
 _STATIONS = (
-    "At each station every layer has an average of its own: what is not known of the layer is the same at all "
-    "of them, what varies from point to point (inherent_cov, averaged over the layer's thickness) is correlated "
-    "between them by exp(-2 d / horizontal_scale), d being the distance in plan. A parameter without "
-    "variability of its own varies between stations as far as a rank correlation ties it to one that has. "
-    "Thickness and everything outside the layers do not vary beyond what is stated.",
-    "Stations settle by themselves: neither the fill nor a structure across them spreads the differences. "
-    "One error of the calculation holds for all of them. A distortion is the difference of settlement over the "
-    "distance in plan; the tilt is in it unless the limit takes it off.",
-    "Slip, bearing and degree of consolidation are those of one section: below the centreline or centre, with "
-    "the layer averages and thicknesses of the first station.",
+    "At each station every layer has an average of its own: what is not known of the layer is the same at "
+    "all of them; what varies from point to point (inherent_cov, averaged over the layer's thickness) is "
+    "correlated between them by exp(-2 d / horizontal_scale), d being the distance in plan. A parameter "
+    "without variability of its own varies between stations as far as a rank correlation ties it to one that "
+    "has. Thickness and everything outside the layers do not vary beyond what is stated.",
+    "Stations settle by themselves: neither the fill nor a structure across them evens the differences out. "
+    "One error of the calculation holds for all of them. A distortion is the difference of settlement over "
+    "the distance in plan; the tilt is in it unless the limit takes it off.",
+    "Slip, bearing and degree of consolidation are those of one section: below the centreline or centre, "
+    "with the layer averages and thicknesses of the first station.",
 )
 _VERTICAL = ("Water flows vertically.",)
 _DRAINS = (

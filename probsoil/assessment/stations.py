@@ -68,7 +68,7 @@ def _station_rows(scenario: Scenario, layout: StationLayout, settled: FloatArray
 
 
 def _pair_rows(layout: StationLayout, settled: FloatArray) -> list[Row]:
-    """Return the differences between neighbours on a line, or else between the first station and every other."""
+    """Return the differences between the pairs of stations that a reader is shown."""
     rows: list[Row] = []
     for first, second in layout.shown_pairs:
         distance = layout.distance(first, second)

@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from itertools import combinations
+from itertools import combinations, pairwise
 
 import numpy as np
 
@@ -80,7 +80,7 @@ class StationLayout:
             return ((self.names.index(compared[0]), self.names.index(compared[1])),)
         order = self.order
         if compared == NEIGHBOURS and order is not None:
-            return tuple(zip(order[:-1], order[1:], strict=True))
+            return tuple(pairwise(order))
         return tuple(combinations(range(len(self.names)), 2))
 
 

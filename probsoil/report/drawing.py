@@ -63,14 +63,11 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     Returns
     -------
     drawings : dict of str to str
-        Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``) or ``bearing``, ``ground`` and
-        ``drivers-1``, ``drivers-2``, ... for the limits in their order.
+        Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``)
+        or ``bearing``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
-    if (results.get("settlement") or {}).get("times"):
-        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
-    if len((results.get("settlement") or {}).get("stations") or []) > 1:
-        drawn["stations"] = _render("stations", stations_words(results), plot_stations, results["settlement"])
+    drawn |= _settlement_figures(results)
     for key in ("slip", "bearing"):
         if results.get(key):
             words = alttext.stability(results, key)
@@ -88,6 +85,16 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
             measure = ranked_by(results, limit["name"])
             draw = partial(plot_drivers, measure=measure)
             drawn[name] = _render(name, alttext.drivers(limit, shown, measure), draw, shown)
+    return drawn
+
+
+def _settlement_figures(results: dict[str, Any]) -> dict[str, str]:
+    """Draw settlement through time, and over the stations where there are several."""
+    data, drawn = results.get("settlement") or {}, {}
+    if data.get("times"):
+        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+    if len(data.get("stations") or []) > 1:
+        drawn["stations"] = _render("stations", stations_words(results), plot_stations, data)
     return drawn
 
 

@@ -21,7 +21,7 @@ _ACROSS = Number(
     low=-1000.0,
     high=1000.0,
     source="by definition",
-    meaning="distance across, from the centreline or the centre of the load (of a rectangle, along its width)",
+    meaning="distance across, from the centreline or centre of the load (of a rectangle, along its width)",
 )
 _REACH = 100_000.0
 
@@ -195,16 +195,8 @@ def pair_or_word(raw: object) -> Any:
     ValidationError
         If it is neither.
     """
-    if raw in (ANY, NEIGHBOURS):
-        return raw
-    if isinstance(raw, list | tuple) and len(raw) == 2 and all(isinstance(name, str) for name in raw):
-        return tuple(raw)
-    refuse(
-        [
-            Slip(
-                path=(),
-                message="this does not say which stations are compared",
-                allowed=f'two names such as ["pier", "approach"], or "{ANY}", or "{NEIGHBOURS}"',
-            )
-        ]
-    )
+    named = isinstance(raw, list | tuple) and len(raw) == 2 and all(isinstance(name, str) for name in raw)
+    if raw not in (ANY, NEIGHBOURS) and not named:
+        allowed = f'two names such as ["pier", "approach"], or "{ANY}", or "{NEIGHBOURS}"'
+        refuse([Slip(path=(), message="this does not say which stations are compared", allowed=allowed)])
+    return tuple(raw) if isinstance(raw, list) else raw
