@@ -8,7 +8,7 @@ from probsoil._typing import FloatArray
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_parts import numbers_array, short
 from probsoil.report.stations import LEVELS, in_order, on_line
-from probsoil.report.text import trimmed_text
+from probsoil.report.text import UNCOMPUTED, rounded, trimmed_text
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -52,9 +52,32 @@ def plot_stations(figure: "Figure", settlement: dict[str, Any]) -> None:
     _names(axis, place, [one["name"] for one in stations], along=along)
     axis.set_ylabel("settlement [m], downwards")
     low, high = axis.get_ylim()
-    axis.set_ylim(max(low, high) * 1.02, min(0.0, low, high))
+    axis.set_ylim(max(low, high) * 1.08, min(0.0, low, high))
+    if along:
+        _differences(axis, place, stations, settlement["pairs"])
     axis.grid(visible=True)
-    axis.legend(loc="best", frameon=False, fontsize=9)
+    figure.legend(loc="outside lower center", ncols=4, frameon=False, fontsize=9)
+
+
+def _differences(
+    axis: "Axes", place: FloatArray, stations: list[dict[str, Any]], pairs: list[dict[str, Any]]
+) -> None:
+    """Write the median difference between neighbours at the foot of the profile."""
+    if len(stations) > _MOST_NAMES:
+        return
+    where = {station["name"]: float(at) for station, at in zip(stations, place, strict=True)}
+    for pair in pairs:
+        median = pair["difference"]["quantiles"]["0.5"][-1]
+        axis.annotate(
+            UNCOMPUTED if median is None else f"\N{GREEK CAPITAL LETTER DELTA} {rounded(median, 3)}",
+            (0.5 * sum(where[name] for name in pair["stations"]), 0.0),
+            xycoords=("data", "axes fraction"),
+            xytext=(0, 3),
+            textcoords="offset points",
+            ha="center",
+            fontsize=8,
+            color=LIGHT["mark"],
+        )
 
 
 def _at(stations: list[dict[str, Any]], level: str, when: int) -> FloatArray:
