@@ -35,7 +35,7 @@ def plot_stations(figure: "Figure", settlement: dict[str, Any]) -> None:
     last = {level: _at(stations, level, -1) for level in LEVELS}
     draw = _bands if along else _bars
     draw(axis, place, last)
-    label = f"median after {trimmed_text(times[-1])} years"
+    label = f"median after {_years(times[-1])}"
     axis.plot(
         place, last["0.5"], color=LIGHT["main"], lw=2.0 if along else 0.0, marker="o", ms=5, label=label
     )
@@ -47,7 +47,7 @@ def plot_stations(figure: "Figure", settlement: dict[str, Any]) -> None:
             lw=1.0 if along else 0.0,
             ls=(0, (4, 2)),
             marker="_" if not along else None,
-            label=f"median after {trimmed_text(times[0])} years",
+            label=f"median after {_years(times[0])}",
         )
     _names(axis, place, [one["name"] for one in stations], along=along)
     axis.set_ylabel("settlement [m], downwards")
@@ -57,6 +57,11 @@ def plot_stations(figure: "Figure", settlement: dict[str, Any]) -> None:
         _differences(axis, place, stations, settlement["pairs"])
     axis.grid(visible=True)
     figure.legend(loc="outside lower center", ncols=4, frameon=False, fontsize=9)
+
+
+def _years(time: float) -> str:
+    written = trimmed_text(time)
+    return f"{written} year" if written == "1" else f"{written} years"
 
 
 def _differences(
