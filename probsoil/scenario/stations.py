@@ -4,7 +4,7 @@ import math
 from collections.abc import Sequence
 from typing import Annotated, Any
 
-from pydantic import BeforeValidator, Field, WithJsonSchema
+from pydantic import BeforeValidator, Field, ValidationError, WithJsonSchema
 
 from probsoil.scenario.base import Label, Table
 from probsoil.scenario.fields import Number
@@ -54,7 +54,15 @@ def _by_layer(raw: object) -> object:
                 )
             ]
         )
-    return tuple((str(name), THICKNESS.read(value)) for name, value in raw.items())
+    pairs, slips = [], []
+    for name, value in raw.items():
+        try:
+            pairs.append((str(name), THICKNESS.read(value)))
+        except ValidationError as error:
+            slips += [one["ctx"]["slip"].below((name,)) for one in error.errors()]
+    if slips:
+        refuse(slips)
+    return tuple(pairs)
 
 
 Thicknesses = Annotated[

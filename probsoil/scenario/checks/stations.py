@@ -127,8 +127,8 @@ def _thickness_slips(scenario: Any) -> Iterator[Slip]:
     if len(names) < len(scenario.layers):
         return
     for position, station in enumerate(scenario.stations):
-        given = getattr(station, "thickness", ())
-        for name in given if isinstance(given, dict) else [pair[0] for pair in given or ()]:
+        given: Any = getattr(station, "thickness", UNREAD)
+        for name in () if given is UNREAD else dict(given):
             if name not in names:
                 yield Slip(
                     path=("stations", position, "thickness", name),
