@@ -93,8 +93,8 @@ class Station(Table):
     thickness: Thicknesses = Field(
         default=(),
         description="mean thickness at this station of layers that differ here, by name, such as "
-        '{ "soft clay" = 4.5 }; an uncertain thickness keeps its coefficient of variation, and is as thick '
-        "at all stations at once",
+        '{ "soft clay" = 4.5 }; an uncertain thickness departs from its mean by the same ratio at '
+        "all stations",
     )
 
 

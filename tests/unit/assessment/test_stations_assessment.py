@@ -34,8 +34,8 @@ name = "gravel"
 soil = "granular"
 thickness = 6
 unit_weight = 19
-constrained_modulus = { dist = "lognormal", mean = 20000, cov = 0.05, inherent_cov = 0.1, vertical_scale = 3, \
-horizontal_scale = SCALE }
+constrained_modulus = { dist = "lognormal", mean = 20000, cov = 0.05, inherent_cov = 0.1, \
+vertical_scale = 3, horizontal_scale = SCALE }
 phi = 33
 
 [[layers]]
@@ -240,9 +240,11 @@ def test_nothing_uncertain_at_stations() -> None:
 
 
 def test_sheet_of_a_station(text: str) -> None:
-    scenario = parse_scenario(text.replace('name = "boring 5"', 'name = "boring 5"\nx = 9').replace(
-        'stations = "neighbours"', 'stations = "any"'
-    ))
+    scenario = parse_scenario(
+        text.replace('name = "boring 5"', 'name = "boring 5"\nx = 9').replace(
+            'stations = "neighbours"', 'stations = "any"'
+        )
+    )
     section = sheet(scenario)
     assert section.station == "centreline"
     rows = {row["station"]: row for row in section.stations}
@@ -271,7 +273,8 @@ def test_sheet_without_stations_knows_none() -> None:
 
 
 @pytest.mark.parametrize(
-    ("value", "words"), [(0.002, "1/500"), (0.00209, "1/478"), (0.0, "none"), (None, "beyond the computation")]
+    ("value", "words"),
+    [(0.002, "1/500"), (0.00209, "1/478"), (0.0, "none"), (None, "beyond the computation")],
 )
 def test_distortion_as_a_ratio(value: float | None, words: str) -> None:
     assert ratio_text(value) == words

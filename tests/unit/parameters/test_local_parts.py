@@ -190,7 +190,10 @@ def test_correlated_parts_need_one_scale() -> None:
 
 
 def test_what_is_the_same_everywhere_cannot_follow_too_closely() -> None:
-    laws = [quantity("clay.lambda", lognormal(0.6, log_sd=0.05)), quantity("model_error.settlement", lognormal(0.0))]
+    laws = [
+        quantity("clay.lambda", lognormal(0.6, log_sd=0.05)),
+        quantity("model_error.settlement", lognormal(0.0)),
+    ]
     pair = [("clay.lambda", "model_error.settlement", 0.9)]
     with pytest.raises(DependenceError, match="cannot hold at every station, since what varies from place"):
         parameter_space(laws, pair, positions=PLACES)

@@ -6,7 +6,7 @@ from probsoil.errors import Fault, ScenarioError
 from probsoil.scenario import Scenario, parse_scenario, scenario_schema
 from probsoil.scenario.stations import along_line
 
-CC = "Cc = { dist = \"lognormal\", mean = 0.80, cov = 0.12 }"
+CC = 'Cc = { dist = "lognormal", mean = 0.80, cov = 0.12 }'
 VARYING = (
     'Cc = { dist = "lognormal", mean = 0.80, cov = 0.12, inherent_cov = 0.3, vertical_scale = 2, '
     "horizontal_scale = 40 }"
@@ -73,7 +73,9 @@ def test_stations_as_they_are_understood(text: str) -> None:
 
 
 def test_a_line_by_the_number_of_its_stations(text: str) -> None:
-    named = text.replace("spacing = 10", 'number = 4\nname = "km"\nx = -2').replace('"line 20 m"', '"km 20 m"')
+    named = text.replace("spacing = 10", 'number = 4\nname = "km"\nx = -2').replace(
+        '"line 20 m"', '"km 20 m"'
+    )
     line = parse_scenario(named).station_line
     assert [station.name for station in line.stations()] == ["km 20 m", "km 30 m", "km 40 m", "km 50 m"]
     assert {station.x for station in line.stations()} == {-2.0}
@@ -88,18 +90,36 @@ def test_without_stations_there_are_none(base_text: str) -> None:
     [
         ('name = "edge"', 'name = "pier"', "stations[2].name", "before it is already named", ""),
         ('name = "edge"', 'name = "any"', "stations[2].name", 'a station is named "any"', ""),
-        ("x = 4.5\ny = \"10 ft\"", "x = 0.005", "stations[2]", 'stands where "pier" does', ""),
+        ('x = 4.5\ny = "10 ft"', "x = 0.005", "stations[2]", 'stands where "pier" does', ""),
         ("x = 4.5", "x = 4500", "stations[2].x", "too large", ""),
-        ('"soft clay" = "5.5 m"', '"soft cly" = 5', "stations[1].thickness.soft cly", "no layer is", "soft clay"),
+        (
+            '"soft clay" = "5.5 m"',
+            '"soft cly" = 5',
+            "stations[1].thickness.soft cly",
+            "no layer is",
+            "soft clay",
+        ),
         ('"soft clay" = "5.5 m"', '"soft clay" = -1', "stations[1].thickness.soft clay", "too small", ""),
-        ('{ "soft clay" = "5.5 m", sand = 2 }', "3", "stations[1].thickness", "not a table of thick", "such as"),
+        (
+            '{ "soft clay" = "5.5 m", sand = 2 }',
+            "3",
+            "stations[1].thickness",
+            "not a table of thick",
+            "such as",
+        ),
         ("spacing = 10", "spacing = 7", "station_line.spacing", "does not go into 30 m", "7.5 m would fit"),
         ("spacing = 10", "spacing = 0.1", "station_line.spacing", "does not go into", ""),
         ("spacing = 10", "number = 1", "station_line.number", "no such whole number", ""),
         ("spacing = 10", "spacing = 10\nnumber = 4", "station_line.spacing", "more than once", ""),
         ("spacing = 10\n", "", "station_line", "how many stations the line has is missing", ""),
         ("to = 50", "to = 10", "station_line.to", "ends at 10 m and begins at 20 m", ""),
-        (", horizontal_scale = 40", "", "layers[2].Cc.inherent_cov", "needs horizontal_scale", "tens of metres"),
+        (
+            ", horizontal_scale = 40",
+            "",
+            "layers[2].Cc.inherent_cov",
+            "needs horizontal_scale",
+            "tens of metres",
+        ),
         ('station = "any"', 'station = "peer"', "limits[3].station", 'no station "peer"', '"pier"'),
         ('"line 20 m"]', '"line 25 m"]', "limits[4].stations[2]", 'no station "line 25 m"', "line"),
         ('["pier", "line 20 m"]', '["pier", "pier"]', "limits[4].stations[2]", "compared with itself", ""),
@@ -114,7 +134,9 @@ def test_without_stations_there_are_none(base_text: str) -> None:
         ("between = [1, 30]", "at = 40", "limits[5].at", "beyond the horizon", "raise horizon"),
     ],
 )
-def test_one_mistake_gives_one_fault(text: str, old: str, new: str, key: str, message: str, hint: str) -> None:
+def test_one_mistake_gives_one_fault(
+    text: str, old: str, new: str, key: str, message: str, hint: str
+) -> None:
     assert old in text
     (fault,) = faults_in(text.replace(old, new, 1))
     assert fault.key.split(" (")[0] == key
