@@ -13,11 +13,11 @@ from probsoil.ground.applied_load import relief_by_water, stress_at
 from probsoil.ground.profile import Values
 from probsoil.ground.response import GroundState, ground_state, respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.ground.station_layout import station_layout
 from probsoil.ground.stations import (
     at_section,
     section_scenario,
     section_values,
-    station_layout,
     station_site,
     station_sites,
 )

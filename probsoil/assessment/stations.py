@@ -7,8 +7,9 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.assessment.description import Row, numbers, quantiles
 from probsoil.assessment.evaluation import Study
+from probsoil.ground.station_layout import StationLayout, station_layout
 from probsoil.ground.station_quantities import compared
-from probsoil.ground.stations import StationLayout, station_layout, station_times
+from probsoil.ground.stations import station_times
 from probsoil.scenario import Scenario
 from probsoil.scenario.limits import (
     ON_SETTLEMENT,

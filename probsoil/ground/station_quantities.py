@@ -3,7 +3,8 @@
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.ground.stations import StationLayout, StationSettlement
+from probsoil.ground.station_layout import StationLayout
+from probsoil.ground.stations import StationSettlement
 from probsoil.scenario.limits import (
     AngularDistortionLimit,
     DifferentialSettlementLimit,

@@ -9,9 +9,9 @@ from probsoil.ground.applied_load import applied_load
 from probsoil.ground.limit_quantities import limit_quantities
 from probsoil.ground.load_stress import embankment_influence
 from probsoil.ground.response import respond
+from probsoil.ground.station_layout import StationLayout
 from probsoil.ground.station_quantities import station_quantity, station_secondary
 from probsoil.ground.stations import (
-    StationLayout,
     StationSettlement,
     at_section,
     section_scenario,
