@@ -54,6 +54,28 @@ def on_line(stations: list[dict[str, Any]]) -> bool:
     return all(text.is_number(station.get("along")) for station in stations)
 
 
+def is_marked(limit: dict[str, Any], settlement: dict[str, Any]) -> bool:
+    """Tell whether a limit is marked on the band of settlement through time.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+    settlement : dict
+        ``settlement`` of the results.
+
+    Returns
+    -------
+    marked : bool
+        True for a limit on settlement at one time, at the station the band belongs to where there are
+        stations.
+    """
+    if limit["quantity"] != "settlement" or not text.is_number((limit.get("time") or {}).get("at")):
+        return False
+    place = limit.get("place")
+    return place is None or settlement.get("station") == f"station {place['station']}"
+
+
 def in_order(stations: list[dict[str, Any]]) -> list[dict[str, Any]]:
     """Put stations in the order in which a profile shows them.
 

@@ -11,7 +11,7 @@ from probsoil.assessment import assess, sheet
 from probsoil.assessment.evaluation import drawn_parameters, prepare
 from probsoil.errors import ParameterError
 from probsoil.report import render_report
-from probsoil.report.stations import ratio_text
+from probsoil.report.stations import is_marked, ratio_text
 from probsoil.report.tables import tables
 from probsoil.scenario import Scenario, parse_scenario
 from probsoil.scenario.spatial_averaging import variance_function
@@ -193,9 +193,19 @@ def test_report_shows_the_profile_and_the_differences(found) -> None:
     assert 'id="stations"' in page
     assert "The steepest median difference between neighbours is" in page
     assert "decided by" in page
+    assert "of its variance differs between stations" in page
     assert "0.005 (1/200)" in page
     assert "A parameter marked (local)" in page
     assert "Settlement of the stations after 30 years" in page  # what is said to those who cannot see it
+
+
+def test_the_band_marks_only_limits_of_its_own_station(found) -> None:
+    """The band is that of boring 3; the limit on the worst station is not one of it."""
+    settlement, limit = found.results["settlement"], found.results["limits"][0]
+    assert not is_marked(limit, settlement)
+    assert is_marked(limit | {"place": {"station": "boring 3"}}, settlement)
+    assert not is_marked(found.results["limits"][1], settlement)
+    assert "A diamond is a limit" not in render_report(found.results)
 
 
 def test_tables_hold_every_time(found) -> None:
