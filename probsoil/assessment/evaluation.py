@@ -118,9 +118,9 @@ class Study:
             "voids_closed": closed,
         }
         if self.site.distorts:
-            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values)
+            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values, stations)
         if self.site.seeps or self.site.excess_layers:
-            arrays["uplifted"] = response.uplifted
+            arrays["uplifted"] = response.uplifted if stations is None else stations.uplifted
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             if stations is not None:

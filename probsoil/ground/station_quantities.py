@@ -4,7 +4,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.ground.station_layout import StationLayout
-from probsoil.ground.stations import StationSettlement
+from probsoil.ground.stations import Part, StationSettlement
 from probsoil.scenario.limits import (
     AngularDistortionLimit,
     DifferentialSettlementLimit,
@@ -77,8 +77,8 @@ def compared(
     return np.asarray(np.abs(slope), dtype=np.float64)
 
 
-def station_secondary(limit: SettlementLimit, stations: StationSettlement) -> FloatArray:
-    """Return the part of a settlement at stations that is secondary compression, without model error.
+def station_part(limit: SettlementLimit, stations: StationSettlement, part: Part) -> FloatArray:
+    """Return one part of a settlement at stations, without model error.
 
     Parameters
     ----------
@@ -86,23 +86,25 @@ def station_secondary(limit: SettlementLimit, stations: StationSettlement) -> Fl
         One of the scenario's.
     stations : StationSettlement
         What settles at every station.
+    part : {"settlement", "secondary", "distortion"}
+        Which part.
 
     Returns
     -------
-    secondary : ndarray, shape (n_sample,), [m]
+    part : ndarray, shape (n_sample,), [m]
         Where any station counts, that of the one that settles most.
     """
-    creep = _between(limit, stations, secondary=True)
+    found = _between(limit, stations, part)
     if limit.station != ANY:
-        return creep[:, _place(limit, stations.layout)]
+        return found[:, _place(limit, stations.layout)]
     most = _between(limit, stations).argmax(axis=1)
-    return np.asarray(np.take_along_axis(creep, most[:, None], axis=1)[:, 0])
+    return np.asarray(np.take_along_axis(found, most[:, None], axis=1)[:, 0])
 
 
 def _place(limit: SettlementLimit, layout: StationLayout) -> int:
     return 0 if limit.station is None else layout.names.index(limit.station)
 
 
-def _between(limit: OnSettlement, stations: StationSettlement, *, secondary: bool = False) -> FloatArray:
+def _between(limit: OnSettlement, stations: StationSettlement, part: Part = "settlement") -> FloatArray:
     start, end = (0.0, limit.at or 0.0) if limit.between is None else limit.between
-    return stations.settled(end, secondary=secondary) - stations.settled(start, secondary=secondary)
+    return stations.settled(end, part) - stations.settled(start, part)

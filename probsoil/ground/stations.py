@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from typing import Literal
 
 import numpy as np
 
@@ -16,6 +17,7 @@ from probsoil.scenario.limits import ON_SETTLEMENT
 from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, StripLoad
 from probsoil.scenario.stations import Station
 
+Part = Literal["settlement", "secondary", "distortion"]
 _NOWHERE = np.zeros(0)
 
 
@@ -68,11 +70,11 @@ class StationSettlement:
         Where the stations are.
     times : ndarray, shape (n_when,), [years]
         Times at which settlement is kept, rising.
-    settlement, secondary : ndarray, shape (n_sample, n_station, n_when), [m]
-        Settlement and the part of it that is secondary compression; not a number where the
-        consolidation did not converge.
-    converged, voids_closed : ndarray of bool, shape (n_sample,), [-]
-        Whether it did at every station, and whether voids closed at any.
+    settlement, secondary, distortion : ndarray, shape (n_sample, n_station, n_when), [m]
+        Settlement and the parts of it that are secondary compression and undrained distortion (empty where
+        none is computed); not a number where the consolidation did not converge.
+    converged, voids_closed, uplifted : ndarray of bool, shape (n_sample,), [-]
+        Whether it did at every station; whether voids closed, or pore pressure lifts the ground, at any.
     reference : ndarray, shape (n_sample, n_time), [m]
         Settlement of the first station at every time of the axis.
     """
@@ -81,26 +83,28 @@ class StationSettlement:
     times: FloatArray
     settlement: FloatArray
     secondary: FloatArray
+    distortion: FloatArray
     converged: BoolArray
     voids_closed: BoolArray
+    uplifted: BoolArray
     reference: FloatArray
 
-    def settled(self, time: float, *, secondary: bool = False) -> FloatArray:
+    def settled(self, time: float, part: Part = "settlement") -> FloatArray:
         """Return what has settled at every station by a time.
 
         Parameters
         ----------
         time : float, [years]
             One of `times`, or 0.
-        secondary : bool
-            Whether only secondary compression is meant.
+        part : {"settlement", "secondary", "distortion"}
+            All of it, or one part.
 
         Returns
         -------
         settlement : ndarray, shape (n_sample, n_station), [m]
             Zero at the start.
         """
-        kept = self.secondary if secondary else self.settlement
+        kept: FloatArray = getattr(self, part)
         if time <= 0.0:
             return np.zeros(kept.shape[:2])
         return kept[:, :, int(np.searchsorted(self.times, time))]
@@ -268,26 +272,29 @@ def settle_stations(
         One station is computed after another, so that memory does not grow with their number but for
         what is kept.
     """
-    kept, creep = [], []
-    converged, closed = np.ones_like(section.converged), np.zeros_like(section.converged)
-    reference = section.settlement
+    kept: dict[Part, list[FloatArray]] = {"settlement": [], "secondary": []}
+    if stations[0].site.distorts:
+        kept["distortion"] = []
+    answers, reference = [], section.settlement
     for index, station in enumerate(stations):
         here = section if station.in_section else respond(station.site, station.values(values_at(index)))
-        found = np.where(here.converged[:, None], here.settlement, np.nan)
         when = np.searchsorted(here.times, times)
-        kept.append(found[:, when])
-        creep.append(np.where(here.converged[:, None], here.secondary, np.nan)[:, when])
-        converged &= here.converged
-        closed |= here.voids_closed
-        reference = found if index == 0 else reference
+        for part, series in kept.items():
+            series.append(np.where(here.converged[:, None], getattr(here, part)[:, when], np.nan))
+        answers.append((here.converged, here.voids_closed, here.uplifted))
+        reference = here.settlement if index == 0 else reference
+    converged, closed, uplifted = (np.stack(flags) for flags in zip(*answers, strict=True))
+    whole = {part: np.stack(series, axis=1) for part, series in kept.items()}
     return StationSettlement(
         layout=station_layout([one.station for one in stations]),
         times=times,
-        settlement=np.stack(kept, axis=1),
-        secondary=np.stack(creep, axis=1),
-        converged=converged,
-        voids_closed=closed,
-        reference=reference,
+        settlement=whole["settlement"],
+        secondary=whole["secondary"],
+        distortion=whole.get("distortion", np.zeros((0, 0, 0))),
+        converged=np.asarray(converged.all(axis=0)),
+        voids_closed=np.asarray(closed.any(axis=0)),
+        uplifted=np.asarray(uplifted.any(axis=0)),
+        reference=np.where(answers[0][0][:, None], reference, np.nan),
     )
 
 

@@ -7,10 +7,11 @@ from ground_cases import central, clay, sand, scenario, site_model, stage
 from probsoil.errors import ParameterError
 from probsoil.ground.applied_load import applied_load
 from probsoil.ground.limit_quantities import limit_quantities
+from probsoil.ground.load_displacement import embankment_displacement
 from probsoil.ground.load_stress import embankment_influence
 from probsoil.ground.response import respond
 from probsoil.ground.station_layout import StationLayout
-from probsoil.ground.station_quantities import station_quantity, station_secondary
+from probsoil.ground.station_quantities import station_part, station_quantity
 from probsoil.ground.stations import (
     StationSettlement,
     at_section,
@@ -133,6 +134,16 @@ def test_the_section_has_the_ground_of_the_first_station() -> None:
     assert section_values(case(), central(case()))["soft.thickness"] == 5.0
 
 
+def test_undrained_distortion_at_a_station_is_that_of_the_trapezium_there() -> None:
+    """Displacement of the half-space at the offset: top less bottom of 5 m of clay over its modulus."""
+    stiff = case(station("slope", x=6.0), layers=[clay("soft", 5.0, undrained_modulus="{ Eu = 3000 }"), sand("sand", 2.0)])
+    found = settled(stiff)
+    widths = {"base_width": 18.0, "top_width": 10.0}
+    top, bottom = (float(embankment_displacement(depth, 6.0, **widths)) for depth in (0.0, 5.0))
+    expected = 19.0 * 2.0 * (top - bottom) / 3000.0
+    assert found.distortion[0, 0, -1] == pytest.approx(expected, rel=1e-9)
+
+
 def test_where_the_section_is() -> None:
     beside = case(station("a", x=1.0), station("b", y=9.0))
     assert [at_section(beside, one) for one in beside.all_stations] == [False, True]
@@ -154,8 +165,10 @@ def answers(layout: StationLayout, *rows: list[float]) -> StationSettlement:
         times=np.array([1.0, 10.0]),
         settlement=kept,
         secondary=0.1 * kept,
+        distortion=0.2 * kept,
         converged=np.ones(1, dtype=bool),
         voids_closed=np.zeros(1, dtype=bool),
+        uplifted=np.zeros(1, dtype=bool),
         reference=kept[:, 0],
     )
 
@@ -235,12 +248,13 @@ def test_a_rigid_tilt_distorts_nothing_once_it_is_taken_off() -> None:
     assert station_quantity(off, found)[0] == pytest.approx(0.0, abs=1e-15)
 
 
-def test_creep_at_stations() -> None:
+def test_parts_of_what_settles_at_stations() -> None:
     found = answers(LINE, [0.05, 0.03, 0.10], [0.30, 0.15, 0.33])
     most = SettlementLimit(quantity="settlement", at=10.0, station="any", **LIMIT)
-    assert station_secondary(most, found)[0] == pytest.approx(0.033)
+    assert station_part(most, found, "secondary")[0] == pytest.approx(0.033)
+    assert station_part(most, found, "distortion")[0] == pytest.approx(0.066)
     first = SettlementLimit(quantity="settlement", at=10.0, **LIMIT)
-    assert station_secondary(first, found)[0] == pytest.approx(0.030)
+    assert station_part(first, found, "secondary")[0] == pytest.approx(0.030)
 
 
 def test_without_convergence_there_is_no_number() -> None:
