@@ -195,13 +195,25 @@ def parameter_rows(study: Study) -> list[Row]:
     Returns
     -------
     rows : list of dict
-        One per parameter; bounds that are infinite become null.
+        One per parameter; bounds that are infinite become null. With stations also the share of its
+        variance that differs between them.
     """
     rows = []
+    local = _local_shares(study)
     for summary in study.space.summary():
         row = {name: getattr(summary, name) for name in summary.__slots__}
+        row |= local.get(summary.name, {})
         rows.append({key: finite(value) if isinstance(value, float) else value for key, value in row.items()})
     return rows
+
+
+def _local_shares(study: Study) -> dict[str, Row]:
+    """Return the share of each parameter's variance that differs between stations, by its address."""
+    space = study.space
+    if space.local is None:
+        return {}
+    share = np.clip(1.0 - space.local.shared_weight**2, 0.0, 1.0)
+    return {name: {"local_share": float(one)} for name, one in zip(space.names, share, strict=True)}
 
 
 def dependence_rows(study: Study) -> list[Row]:
@@ -223,7 +235,7 @@ def dependence_rows(study: Study) -> list[Row]:
             "between": list(pair.between),
             "rank_correlation": pair.rank_correlation,
             "latent_correlation": float(
-                study.space.correlation[place[pair.between[0]], place[pair.between[1]]]
+                study.space.at_station[place[pair.between[0]], place[pair.between[1]]]
             ),
         }
         for pair in study.scenario.dependence

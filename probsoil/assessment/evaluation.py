@@ -14,12 +14,22 @@ from probsoil.ground.limit_quantities import (
     secondary_in_limits,
     slip_with_model_error,
 )
-from probsoil.ground.profile import column
-from probsoil.ground.response import respond, screened
+from probsoil.ground.profile import Values, column
+from probsoil.ground.response import Response, respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
 from probsoil.ground.slip_position import critical_positions
+from probsoil.ground.stations import (
+    StationSettlement,
+    StationSite,
+    section_scenario,
+    section_values,
+    settle_stations,
+    station_sites,
+    station_times,
+)
 from probsoil.parameters import Design, ParameterSpace, design, parameter_space
 from probsoil.scenario import Scenario
+from probsoil.sensitivity import Gathering
 
 BAND_CHUNKS = 64
 """Chunks whose settlement through time and slip circles are kept, [-]; the rest keep what limits need."""
@@ -42,13 +52,17 @@ class Study:
     points : Design
         Where in the latent space the realisations lie.
     site : SiteModel
-        What no realisation changes, with the competing slip circles.
+        What no realisation changes, with the competing slip circles; with stations that of the section
+        of the first.
+    stations : tuple of StationSite
+        Where else settlement is computed; none where the scenario has no stations.
     """
 
     scenario: Scenario
     space: ParameterSpace
     points: Design
     site: SiteModel
+    stations: tuple[StationSite, ...] = ()
 
     def latent(self, chunk: int) -> FloatArray:
         """Return the correlated latent normals of a chunk.
@@ -79,37 +93,79 @@ class Study:
             ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
             computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
             settlement, thickness of ``fill_added`` where a level is held, flags, and in the first chunks
-            ``settlement`` through time (model error included in all these) and where the critical
-            ``circle`` lies.
+            ``settlement`` through time, that of every ``station`` at the times they are kept (model error
+            included in all these) and where the critical ``circle`` lies.
         """
         z = self.latent(chunk)
-        values = self.space.values(z)
+        values = self.section_values(z)
         response = respond(self.site, values)
+        stations = self.settled_stations(z, response)
+        converged, closed = response.converged, response.voids_closed
+        if stations is not None:
+            converged, closed = converged & stations.converged, closed | stations.voids_closed
         error = column(values, "model_error.settlement", response.settlement.shape[0])
-        settlement = np.where(response.converged[:, None], error[:, None] * response.settlement, np.nan)
+        settled = response.settlement if stations is None else stations.reference
+        settlement = np.where(response.converged[:, None], error[:, None] * settled, np.nan)
         arrays: dict[str, NDArray[np.generic]] = {
-            "quantity": limit_quantities(self.site, self.scenario.limits, response, values),
-            "secondary": secondary_in_limits(self.scenario.limits, response, values),
+            "quantity": limit_quantities(self.site, self.scenario.limits, response, values, stations),
+            "secondary": secondary_in_limits(self.scenario.limits, response, values, stations),
             "slip": slip_with_model_error(response, values),
             "bearing": bearing_with_model_error(response, values),
             "final": settlement[:, -1],
             "floored": response.floored,
             "kappa_clipped": response.kappa_clipped,
-            "converged": response.converged,
-            "voids_closed": response.voids_closed,
+            "converged": converged,
+            "voids_closed": closed,
         }
         if self.site.distorts:
-            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values)
+            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values, stations)
         if self.site.seeps or self.site.excess_layers:
-            arrays["uplifted"] = response.uplifted
+            arrays["uplifted"] = response.uplifted if stations is None else stations.uplifted
         if self.site.hold_level_until is not None:
             arrays["fill_added"] = error * response.fill_added[:, -1]
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
+            if stations is not None:
+                arrays["station"] = (error[:, None, None] * stations.settlement).astype(np.float32)
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)
         if self.certain:  # one calculation stands for every realisation
             return {key: np.repeat(array, len(z), axis=0) for key, array in arrays.items()}
         return arrays
+
+    def section_values(self, z: FloatArray) -> Values:
+        """Return the values of all quantities where slip and bearing are computed.
+
+        Parameters
+        ----------
+        z : ndarray, shape (n, d), [-]
+            Correlated latent normals.
+
+        Returns
+        -------
+        values : mapping of str to ndarray, shape (n,), or float
+            By address; layer averages and thicknesses are those of the first station.
+        """
+        return section_values(self.scenario, self.space.values(z))
+
+    def settled_stations(self, z: FloatArray, section: Response) -> StationSettlement | None:
+        """Return what settles at the stations.
+
+        Parameters
+        ----------
+        z : ndarray, shape (n, d), [-]
+            Correlated latent normals.
+        section : Response
+            The ground's answer in the section of the first station.
+
+        Returns
+        -------
+        settled : StationSettlement or None
+            None where the scenario has no stations.
+        """
+        if not self.stations:
+            return None
+        times = station_times(self.scenario)
+        return settle_stations(self.stations, lambda place: self.space.values(z, place), section, times)
 
     @property
     def certain(self) -> bool:
@@ -134,8 +190,9 @@ def prepare(scenario: Scenario) -> Study:
     points = design(scenario.draws, seed=scenario.seed, n=scenario.realisations, dimension=space.dimension)
     generator = np.random.default_rng(np.random.SeedSequence(scenario.seed, spawn_key=(_PILOT_STAGE, 0)))
     pilot = generator.standard_normal((_PILOT_SIZE, space.dimension))
-    site = screened(site_model(scenario), space.values(_PILOT_WIDTH * space.correlated(pilot)))
-    return Study(scenario=scenario, space=space, points=points, site=site)
+    values = section_values(scenario, space.values(_PILOT_WIDTH * space.correlated(pilot)))
+    site = screened(site_model(section_scenario(scenario)), values)
+    return Study(scenario=scenario, space=space, points=points, site=site, stations=station_sites(scenario))
 
 
 def space_of(scenario: Scenario) -> ParameterSpace:
@@ -152,4 +209,32 @@ def space_of(scenario: Scenario) -> ParameterSpace:
         Marginals, dependence and fixed numbers.
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
-    return parameter_space(scenario.quantities(), pairs)
+    positions = [(station.x, station.y) for station in scenario.all_stations]
+    return parameter_space(scenario.quantities(), pairs, positions=positions)
+
+
+def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
+    """Return the parameters that drivers are told for, and which latent normals make up each.
+
+    Parameters
+    ----------
+    study : Study
+        Parameter space.
+
+    Returns
+    -------
+    names : tuple of str
+        Addresses; with stations besides them ``address (local)`` for what of a parameter varies between
+        the stations, all stations together.
+    gathering : Gathering or None
+        None where each parameter has one latent normal.
+    """
+    space = study.space
+    if space.local is None:
+        return space.names, None
+    member, shift = np.arange(space.dimension), np.ones(space.dimension)
+    names = list(space.names)
+    for part in space.local.parts:
+        member[part.latent], shift[part.latent] = len(names), part.common_shift
+        names.append(f"{space.names[part.parameter]} (local)")
+    return tuple(names), Gathering(member=member, shift=shift)

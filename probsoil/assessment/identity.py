@@ -11,7 +11,7 @@ from probsoil.assessment.evaluation import Study
 from probsoil.campaign import Identity, campaign_identity, source_digest
 from probsoil.scenario import Scenario
 
-_SINGULAR = {"layers": "layer", "stages": "stage", "limits": "limit"}
+_SINGULAR = {"layers": "layer", "stages": "stage", "stations": "station", "limits": "limit"}
 _PACKAGES = ("numpy", "scipy", "numba")
 
 

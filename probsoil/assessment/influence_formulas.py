@@ -15,6 +15,7 @@ Record = dict[str, Any]
 _NEAR = 1e-9
 _VERTICAL = "I = 2/π · (arctan(a/z) + a · z/(a^2 + z^2))"
 _TRAPEZIUM = "I = 2/π · (a · arctan(a/z) − b · arctan(b/z))/(a − b)"
+_BESIDE = "I = ((a · arctan(a/z) − b · arctan(b/z))/(a − b) + (c · arctan(c/z) − d · arctan(d/z))/(c − d))/π"
 _STRIP = "I = (arctan(a/z) + a · z/(a^2 + z^2) + arctan(b/z) + b · z/(b^2 + z^2))/π"
 _CORNER = (
     "Ic = (arctan(a · b/(z · sqrt(a^2 + b^2 + z^2))) + a · b · z/sqrt(a^2 + b^2 + z^2) · "
@@ -58,23 +59,26 @@ def _embankment(run: SheetRun, row: Record) -> list[Worked]:
     height = run.site.fill_height(run.site.horizon)
     parts = () if shape is None else shape.trapezia(height)
     if len(parts) == 1:
-        return [_trapezium(parts[0], row, "influence", row["influence"])]
-    shares = [_trapezium_influence(part, row["depth"]) for part in parts]
+        return [_trapezium(parts[0], row, "influence", row["influence"], run.site.offset)]
+    shares = [_trapezium_influence(part, row["depth"], run.site.offset) for part in parts]
     terms: dict[str, Symbol] = {}
     for number, (part, share) in enumerate(zip(parts, shares, strict=True), start=1):
         terms[f"I{number}"] = (share, f"influence of part {number}, from the ground up", "-")
         terms[f"h{number}"] = (part.height, f"height of part {number}", "m")
     terms["h"] = (height, "height of fill", "m")
-    first = _trapezium(parts[0], row, "influence of part 1, berms and what lies between", shares[0])
+    name = "influence of part 1, berms and what lies between"
+    first = _trapezium(parts[0], row, name, shares[0], run.site.offset)
     return [first, _line("I = (I1 · h1 + I2 · h2)/h", row, terms)]
 
 
-def _trapezium_influence(part: Trapezium, depth: float) -> float:
+def _trapezium_influence(part: Trapezium, depth: float, offset: float) -> float:
     widths = {"base_width": part.base_width, "top_width": part.top_width}
-    return float(embankment_influence(depth, 0.0, **widths))
+    return float(embankment_influence(depth, offset, **widths))
 
 
-def _trapezium(part: Trapezium, row: Record, name: str, share: float) -> Worked:
+def _trapezium(part: Trapezium, row: Record, name: str, share: float, offset: float) -> Worked:
+    if offset != 0.0:
+        return _beside(part, row, name, share, abs(offset))
     symbols: dict[str, Symbol] = {
         "a": (part.base_width / 2.0, "half of the base's width", "m"),
         "b": (part.top_width / 2.0, "half of the top's width", "m"),
@@ -86,6 +90,24 @@ def _trapezium(part: Trapezium, row: Record, name: str, share: float) -> Worked:
         formula = _VERTICAL
     place = f"{place_of(row)}, at {row['depth']:.3f} m"
     return worked(LOAD, name, formula, (share, "-"), symbols, row=place)
+
+
+def _beside(part: Trapezium, row: Record, name: str, share: float, offset: float) -> Worked:
+    """Return the influence of a trapezium away from its centreline."""
+    place = f"{place_of(row)}, at {row['depth']:.3f} m"
+    base, top = part.base_width / 2.0, part.top_width / 2.0
+    depth: Symbol = (row["depth"], "depth", "m")
+    if base - top < 0.5 * _NEAR:
+        sides = _sides(part.base_width, offset)
+        return worked(LOAD, name, _STRIP, (share, "-"), {**sides, "z": depth}, row=place)
+    symbols: dict[str, Symbol] = {
+        "a": (base + offset, "distance from the point to the farther toe", "m"),
+        "b": (top + offset, "distance from the point to the farther edge of the top", "m"),
+        "c": (base - offset, "distance from the point to the nearer toe, negative beyond it", "m"),
+        "d": (top - offset, "distance from the point to the nearer edge of the top, likewise", "m"),
+        "z": depth,
+    }
+    return worked(LOAD, name, _BESIDE, (share, "-"), symbols, row=place)
 
 
 def _foundation(shape: Foundation, row: Record) -> list[Worked]:

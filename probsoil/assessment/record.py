@@ -8,13 +8,14 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.evaluation import Study
+from probsoil.assessment.stations import place_record, station_record
 from probsoil.ground.site_model import SiteModel
 from probsoil.probability import Exceedance, exceedance, exceedance_curve, median_interval
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
 CONFIDENCE = 0.95
-_UNITS = {"settlement": "m", "time_to_consolidation": "years"}
+_UNITS = {"settlement": "m", "differential_settlement": "m", "time_to_consolidation": "years"}
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _WORST = {"not more than": np.inf, "not less than": -np.inf}  # what is not a number counts as exceeding
 
@@ -43,6 +44,8 @@ class CampaignSample:
         Where the critical circles of the first realisations lie.
     fill_added : ndarray, shape (n_sample,), [m]
         Thickness of fill added to hold its level; empty where none is.
+    station : ndarray, shape (n_band, n_station, n_when), [m]
+        Settlement of the first realisations at every station.
     converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -64,6 +67,7 @@ class CampaignSample:
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
     fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
+    station: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 0)))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -107,6 +111,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
         worst = _WORST[limit.sense]
         rows.append(
             _limit_row(limit, found)
+            | place_record(study, limit, sample.station)
             | _part("secondary", creeps, sample.secondary[:, index], values)
             | _part("distortion", distorts, sample.distortion[:, index] if distorts else values, values)
             | {
@@ -202,13 +207,13 @@ def _mean(values: FloatArray) -> float | None:
     return float(values.mean()) if values.size and np.isfinite(values).all() else None
 
 
-def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
-    """Return the settlement through time as bands.
+def settlement_record(study: Study, sample: CampaignSample) -> Row:
+    """Return the settlement through time as bands, and that of every station.
 
     Parameters
     ----------
-    site : SiteModel
-        Time axis and stages.
+    study : Study
+        Time axis, stages of the load and stations.
     sample : CampaignSample
         All realisations.
 
@@ -217,17 +222,17 @@ def settlement_record(site: SiteModel, sample: CampaignSample) -> Row:
     record : dict
         Ready for JSON.
     """
-    worst = _WORST["not more than"]
+    worst, site = _WORST["not more than"], study.site
     settlement = sample.settlement.astype(np.float64)
     return {
-        "station": site.station,
+        "station": study.stations[0].site.station if study.stations else site.station,
         "times": site.times.tolist(),
         "mean": numbers(settlement.mean(axis=0)),
         "quantiles": quantiles(settlement, worst=worst),
         "realisations": len(settlement),
         "stages": [{"name": stage.name, "start": stage.start, "end": stage.end} for stage in site.stages],
         "final": {key: value for key, value in _summary(sample.final, worst=worst).items() if key != "sd"},
-    }
+    } | station_record(study, sample.station)
 
 
 def added_fill_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:

@@ -15,7 +15,9 @@ COPY = "scenario.toml"
 REALISATIONS_FILE = "realisations.npz"
 FIGURES = "figures"
 
-_TABLES = ("limits.csv", "drivers.csv", "settlement.csv", "parameters.csv")
+_TABLES = tuple(
+    f"{name}.csv" for name in ("limits", "drivers", "settlement", "parameters", "stations", "station_pairs")
+)
 FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES)
 
 

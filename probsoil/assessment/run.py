@@ -26,7 +26,7 @@ from probsoil.assessment.description import (
     parameter_rows,
 )
 from probsoil.assessment.discretisation import discretisation_error
-from probsoil.assessment.evaluation import Study, prepare
+from probsoil.assessment.evaluation import Study, drawn_parameters, prepare
 from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
@@ -51,6 +51,7 @@ from probsoil.campaign import (
 )
 from probsoil.errors import ParameterError
 from probsoil.ground.response import ground_state
+from probsoil.ground.stations import section_values
 from probsoil.probability import exceeds
 from probsoil.scenario import Scenario
 from probsoil.sensitivity import DriverSums, driver_sums, drivers, merge
@@ -259,6 +260,7 @@ def _driver_sums(study: Study, chunk: int, quantity: FloatArray) -> list[DriverS
     z = study.latent(chunk)
     replicated = study.points.replicates > 1
     group = study.points.replicate_index(chunk) if replicated else None
+    _, gathering = drawn_parameters(study)
     return [
         driver_sums(
             z,
@@ -266,6 +268,7 @@ def _driver_sums(study: Study, chunk: int, quantity: FloatArray) -> list[DriverS
             quantity[:, column],
             exceeds(quantity[:, column], limit.threshold, limit.sense),
             group,
+            gathering=gathering,
         )
         for column, limit in enumerate(study.scenario.limits)
     ]
@@ -274,10 +277,16 @@ def _driver_sums(study: Study, chunk: int, quantity: FloatArray) -> list[DriverS
 def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> dict[str, Any]:
     scenario, site = study.scenario, study.site
     error = discretisation_error(study)
-    at_means = ground_state(site, fixed_values(study.space.at("mean")))
-    at_medians = ground_state(site, fixed_values(study.space.at("median")))
+    at_means, at_medians = (
+        ground_state(site, section_values(scenario, fixed_values(study.space.at(point))))
+        for point in ("mean", "median")
+    )
     circles = circle_rows(study, sample.circle, at_medians)
-    found = [drivers(one, study.space.correlation, study.space.names, confidence=CONFIDENCE) for one in sums]
+    names, gathering = drawn_parameters(study)
+    found = [
+        drivers(one, study.space.correlation, names, confidence=CONFIDENCE, gathering=gathering)
+        for one in sums
+    ]
     rows, quality = driver_rows(scenario.limits, found)
     return {
         "format": scenario.format,
@@ -289,7 +298,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "confidence": CONFIDENCE,
         "currency": scenario.currency,
         "limits": limit_rows(study, sample),
-        "settlement": settlement_record(site, sample),
+        "settlement": settlement_record(study, sample),
         "slip": [
             row | {"circle": circle} for row, circle in zip(slip_rows(study, sample), circles, strict=True)
         ],
@@ -302,7 +311,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "dependence": dependence_rows(study),
         "discretisation": error.to_dict(),
         "warnings": warning_rows(study, sample, error),
-        "assumptions": list(assumptions(site)),
+        "assumptions": list(assumptions(site, stations=len(study.stations))),
         "cautions": list(CAUTIONS),
     }
 

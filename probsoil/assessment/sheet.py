@@ -12,7 +12,7 @@ from probsoil.assessment.distortion_formulas import distortion_at_horizon, disto
 from probsoil.assessment.pore_pressure_formulas import seepage_rows
 from probsoil.assessment.sheet_formulas import example_of
 from probsoil.assessment.sheet_lines import worked_lines
-from probsoil.assessment.sheet_run import SheetRun, sheet_run
+from probsoil.assessment.sheet_run import SheetRun, sheet_run, station_rows
 from probsoil.assessment.sheet_sublayers import (
     PointState,
     Sublayer,
@@ -93,6 +93,8 @@ class Sheet:
         Undrained distortion of the sub-layers at the horizon, [m], [kPa]; empty where none is computed.
     seepage : tuple of dict
         How the loss of head is shared by the layers, [m], [years], [kPa]; empty where water is at rest.
+    stations, station_pairs : tuple of dict
+        Settlement of every station and the differences between them, [m], [-].
     assumptions, cautions : tuple of str
         What the calculation rests on, and what its reader must bear in mind.
     """
@@ -121,6 +123,8 @@ class Sheet:
     cells: tuple[dict[str, Any], ...] = ()
     seepage: tuple[dict[str, Any], ...] = ()
     distortion: tuple[dict[str, Any], ...] = ()
+    stations: tuple[dict[str, Any], ...] = ()
+    station_pairs: tuple[dict[str, Any], ...] = ()
     assumptions: tuple[str, ...] = ()
     cautions: tuple[str, ...] = ()
 
@@ -152,7 +156,7 @@ class Sheet:
         return str(self.to_frame().to_html(index=False))
 
 
-def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
+def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: str | None = None) -> Sheet:
     """Return one deterministic calculation.
 
     Parameters
@@ -161,6 +165,9 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
         As read.
     at : {"mean", "median"}
         Which value every uncertain parameter takes. The model error is not applied.
+    station : str or None
+        Name of the station that is calculated; None for the section below the centreline or centre, with
+        the ground of the first station.
 
     Returns
     -------
@@ -170,11 +177,12 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
     Raises
     ------
     ParameterError
-        If `at` is neither.
+        If `at` is neither, or there is no such station.
     ConvergenceError
         If the consolidation cannot be computed with these values.
     """
-    run = sheet_run(scenario, at)
+    run = sheet_run(scenario, at, station)
+    stations, pairs = station_rows(scenario, at)
     site, state, response = run.site, run.state, run.state.response
     rows, points, values = sublayers(run), point_state(run), run.at
     return Sheet(
@@ -183,7 +191,7 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
         settlement=tuple(response.settlement[0].tolist()),
         final_settlement=float(response.settlement[0, -1]),
         layers=tuple(_layer_rows(run, points)),
-        strength=tuple(_strength_rows(site, state)),
+        strength=() if run.beside else tuple(_strength_rows(site, state)),
         slip_safety=_by_stage(site, site.slip_times, response.slip[0]),
         values=values,
         bearing_safety=_by_stage(site, site.bearing_times, response.bearing[0]),
@@ -194,7 +202,9 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean") -> Sheet:
             {"address": one.address, "value": values[one.address], "unit": one.unit, "meaning": one.meaning}
             for one in scenario.quantities()
         ),
-        assumptions=assumptions(site),
+        stations=tuple(stations),
+        station_pairs=tuple(pairs),
+        assumptions=assumptions(site, stations=len(stations)),
         cautions=SHEET_CAUTIONS,
         **_in_detail(run, rows, points),
     )
@@ -206,7 +216,7 @@ def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[
         "sublayers": sublayer_rows(run, rows, points),
         "through_time": answers.time_rows(run),
         "segments": answers.segment_rows(run, points),
-        "strength_in_rows": answers.strength_rows(run, rows),
+        "strength_in_rows": [] if run.beside else answers.strength_rows(run, rows),
         "slip": answers.slip_rows(run),
         "cells": cell_rows(run, rows, points),
         "seepage": seepage_rows(run),

@@ -172,6 +172,8 @@ def strength_formulas(run: SheetRun, sublayer: Sublayer, rows: list[Record]) -> 
     lines : list of Worked
         S where it follows from M, and the strength.
     """
+    if not rows:  # a station beside the section
+        return []
     row = next(one for one in rows if one["sublayer"] == sublayer.number)
     place = f"sub-layer {sublayer.number}, {row['layer']}, at {row['depth']:.3f} m"
     law: dict[str, Symbol] = {

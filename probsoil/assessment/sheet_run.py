@@ -1,18 +1,27 @@
 """The one computation that a calculation sheet shows, with everything behind it."""
 
 from dataclasses import dataclass, replace
-from typing import Literal
+from typing import Any, Literal
 
 import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.assessment.description import fixed_values
 from probsoil.assessment.evaluation import space_of
-from probsoil.errors import ConvergenceError
+from probsoil.errors import ConvergenceError, ParameterError
 from probsoil.ground.applied_load import between_knots, relief_by_water, stress_at
 from probsoil.ground.excavation import pressure_on_base
-from probsoil.ground.response import GroundState, ground_state, screened
+from probsoil.ground.profile import Values
+from probsoil.ground.response import GroundState, ground_state, respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
+from probsoil.ground.station_layout import station_layout
+from probsoil.ground.stations import (
+    at_section,
+    section_scenario,
+    section_values,
+    station_site,
+    station_sites,
+)
 from probsoil.scenario import Scenario
 
 
@@ -30,12 +39,16 @@ class SheetRun:
         Value of every quantity by its address, each in its own unit.
     state : GroundState
         The ground's answer; one realisation.
+    beside : bool
+        Whether this is a station away from the centreline or centre, for which strength, slip and bearing
+        are not computed.
     """
 
     scenario: Scenario
     site: SiteModel
     at: dict[str, float]
     state: GroundState
+    beside: bool = False
 
     @property
     def values(self) -> dict[str, FloatArray]:
@@ -151,7 +164,7 @@ class SheetRun:
         )
 
 
-def sheet_run(scenario: Scenario, at: Literal["mean", "median"]) -> SheetRun:
+def sheet_run(scenario: Scenario, at: Literal["mean", "median"], station: str | None = None) -> SheetRun:
     """Compute a scenario once.
 
     Parameters
@@ -160,6 +173,8 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"]) -> SheetRun:
         As read.
     at : {"mean", "median"}
         Which value every uncertain parameter takes.
+    station : str or None
+        Name of a station; None for the section that slip and bearing stand for.
 
     Returns
     -------
@@ -169,14 +184,12 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"]) -> SheetRun:
     Raises
     ------
     ParameterError
-        If `at` is neither.
+        If `at` is neither, or there is no such station.
     ConvergenceError
         If the consolidation cannot be computed with these values.
     """
-    values = space_of(scenario).at(at)
-    one = fixed_values(values)
-    site = screened(site_model(scenario), one, within=0.0)
-    site = replace(site, record=site.times[1:])
+    site, one, beside = _computed(scenario, fixed_values(space_of(scenario).at(at)), station)
+    site = replace(screened(site, one, within=0.0), record=site.times[1:])
     state = ground_state(site, one)
     if not state.response.converged[0]:
         reason = (
@@ -192,6 +205,71 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"]) -> SheetRun:
     return SheetRun(
         scenario=scenario,
         site=site,
-        at={address: float(value) for address, value in values.items()},
+        at={address: float(np.asarray(value).flat[0]) for address, value in one.items()},
         state=state,
+        beside=beside,
     )
+
+
+def _computed(scenario: Scenario, values: Values, station: str | None) -> tuple[SiteModel, Values, bool]:
+    """Return site and values of the section or of a station, and whether it lies beside the section."""
+    if station is None:
+        return site_model(section_scenario(scenario)), section_values(scenario, values), False
+    stations = {one.station.name: one for one in station_sites(scenario)}
+    if station not in stations:
+        known = f"there are {', '.join(stations)}" if stations else "the scenario has none"
+        raise ParameterError(f'there is no station "{station}": {known}')
+    found = stations[station]
+    beside = not at_section(scenario, found.station)
+    site = found.site if beside else station_site(scenario, found.station)
+    return site, found.values(values), beside
+
+
+def station_rows(
+    scenario: Scenario, at: Literal["mean", "median"]
+) -> tuple[list[dict[str, Any]], list[dict[str, Any]]]:
+    """Compute every station once.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    at : {"mean", "median"}
+        Which value every uncertain parameter takes.
+
+    Returns
+    -------
+    stations : list of dict
+        Position [m] and settlement [m] at the end of the last stage and at the horizon.
+    pairs : list of dict
+        Distance [m], difference of settlement [m] and distortion [-] at the horizon: of neighbours on a line,
+        or else of the first station and every other.
+    """
+    values = fixed_values(space_of(scenario).at(at))
+    sites = station_sites(scenario)
+    settled, rows = [], []
+    for one in sites:
+        response = respond(one.site, one.values(values))
+        built = int(np.searchsorted(response.times, one.site.last_change))
+        settled.append(float(response.settlement[0, -1]))
+        rows.append(
+            {
+                "station": one.station.name,
+                "x": one.station.x,
+                "y": one.station.y,
+                "after_last_stage": float(response.settlement[0, built]),
+                "settlement": settled[-1],
+            }
+        )
+    layout = station_layout([one.station for one in sites])
+    pairs = [
+        {
+            "station": layout.names[first],
+            "other": layout.names[second],
+            "distance": layout.distance(first, second),
+            "difference": abs(settled[second] - settled[first]),
+            "distortion": abs(settled[second] - settled[first]) / layout.distance(first, second),
+        }
+        for first, second in layout.shown_pairs
+    ]
+    return rows, pairs

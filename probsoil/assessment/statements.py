@@ -45,6 +45,18 @@ _GROUND = (
     "Each parameter is one representative value per layer, the same over the whole layer in a realisation.",
     "The effective stress in situ is nowhere taken below 1 kPa.",
 )
+_STATIONS = (
+    "At each station every layer has an average of its own: what is not known of the layer is the same at "
+    "all of them; what varies from point to point (inherent_cov, averaged over the layer's thickness) is "
+    "correlated between them by exp(-2 d / horizontal_scale), d being the distance in plan. A parameter "
+    "without variability of its own varies between stations as far as a rank correlation ties it to one that "
+    "has. Thickness and everything outside the layers do not vary beyond what is stated.",
+    "Stations settle by themselves: neither the fill nor a structure across them evens the differences out. "
+    "One error of the calculation holds for all of them. A distortion is the difference of settlement over "
+    "the distance in plan; the tilt is in it unless the limit takes it off.",
+    "Slip, bearing and degree of consolidation are those of one section: below the centreline or centre, "
+    "with the layer averages and thicknesses of the first station.",
+)
 _VERTICAL = ("Water flows vertically.",)
 _DRAINS = (
     "Water flows vertically and to the drains, with equal vertical strain around each; smear is a ring of "
@@ -140,13 +152,15 @@ _FURTHER_SUNK = (
 )
 
 
-def assumptions(site: SiteModel) -> tuple[str, ...]:
+def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
     """Return the assumptions behind a result, in words.
 
     Parameters
     ----------
     site : SiteModel
         Which models were used.
+    stations : int, [-]
+        Number of stations.
 
     Returns
     -------
@@ -170,6 +184,7 @@ def assumptions(site: SiteModel) -> tuple[str, ...]:
     ground = (
         *(_DISTORTION if site.distorts else _NO_DISTORTION),
         *_GROUND,
+        *(_STATIONS if stations else ()),
         *(() if all(layer.is_clay for layer in site.layers) else _GRANULAR),
         *(_SEEPAGE if site.seeps else ()),
         *(_EXCESS if site.excess_layers else ()),

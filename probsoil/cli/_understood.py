@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from probsoil.scenario.limits import Limit
 
 LEAST_CUT_SHOWN = 1e-6  # smaller shares are in the results, and only clutter here
-LIMIT_UNITS = {"settlement": "m", "time_to_consolidation": "years"}
+LIMIT_UNITS = {"settlement": "m", "differential_settlement": "m", "time_to_consolidation": "years"}
 
 
 def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
@@ -37,6 +37,7 @@ def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSp
     if scenario.drains is not None:
         text = scenario.drains.describe()
         console.print(f"{text[0].upper()}{text[1:]}\n")
+    _print_stations(console, scenario)
     _print_parameters(console, scenario, space)
     _print_dependence(console, scenario)
     _print_limits(console, scenario)
@@ -66,7 +67,7 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
         foundation = foundation_of(load)
         text = "over a wide area" if foundation is None else f"{load.shape}, {foundation.title}"
         console.print(f"Load: {text}\n")
-        if foundation is not None:
+        if foundation is not None and not scenario.all_stations:
             console.print(f"Settlement is that of the {foundation.station}\n")
     _print_further_loads(console, scenario)
     print_table(
@@ -93,6 +94,23 @@ def _change(stage: "Stage") -> str:
     if stage.height is not None:
         return f"{stage.height:+g} m of fill{on}"
     return f"{stage.pressure:+g} kPa{on}"
+
+
+def _print_stations(console: "Console", scenario: "Scenario") -> None:
+    stations = scenario.all_stations
+    if not stations:
+        return
+    rows = [
+        (
+            one.name,
+            f"{one.x:g}",
+            f"{one.y:g}",
+            ", ".join(f"{name} {thickness:g} m" for name, thickness in one.thickness) or "-",
+        )
+        for one in stations
+    ]
+    headings = ("station", "x [m]", "y [m]", "mean thickness here")
+    print_table(console, "Stations; limits look at the first unless they say otherwise", headings, rows)
 
 
 def _print_parameters(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
@@ -124,7 +142,7 @@ def _print_limits(console: "Console", scenario: "Scenario") -> None:
         (
             (
                 limit.name,
-                _event(limit),
+                _event(scenario, limit),
                 "-" if limit.target_probability is None else plain_percent(limit.target_probability),
             )
             for limit in scenario.limits
@@ -132,14 +150,21 @@ def _print_limits(console: "Console", scenario: "Scenario") -> None:
     )
 
 
-def _event(limit: "Limit") -> str:
+def _event(scenario: "Scenario", limit: "Limit") -> str:
     """Return what exceeding a limit means, in the words the results use."""
+    from probsoil.assessment.stations import limit_place
+    from probsoil.scenario.limits import ON_SETTLEMENT
+
+    where = ""
+    if scenario.all_stations and isinstance(limit, ON_SETTLEMENT):
+        where = limit_place(scenario, limit)[1]
     named = {key: getattr(limit, key, None) for key in ("at", "between", "degree")}
     time = {key: value for key, value in named.items() if value is not None}
     return event_text(
         {
             "quantity": limit.quantity,
             "time": time,
+            "place_text": where,
             "sense": limit.sense,
             "threshold": limit.threshold,
             "unit": LIMIT_UNITS.get(limit.quantity, "-"),

@@ -8,14 +8,13 @@ import typer
 
 def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario file.")]) -> None:
     """Read a scenario, name every mistake in it, and print what was understood."""
+    from probsoil.assessment.evaluation import space_of
     from probsoil.cli._output import answer_console, answering
     from probsoil.cli._understood import print_scenario
-    from probsoil.parameters import parameter_space
     from probsoil.scenario import read_scenario, remarks
 
     scenario = read_scenario(file)
-    pairs = [(*rule.between, rule.rank_correlation) for rule in scenario.dependence]
-    space = parameter_space(scenario.quantities(), pairs)
+    space = space_of(scenario)
     with answering():
         console = answer_console()
         console.print(f"{file}: no mistakes found", soft_wrap=True)

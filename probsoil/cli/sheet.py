@@ -31,6 +31,12 @@ def sheet(
             help="Value of every uncertain parameter.",
         ),
     ] = Values.mean,
+    station: Annotated[
+        str | None,
+        typer.Option(
+            "--station", metavar="NAME", help="Calculate at this station, not below the centreline or centre."
+        ),
+    ] = None,
     json: Annotated[bool, typer.Option("--json", help="Print the sheet as JSON.")] = False,
     csv: Annotated[bool, typer.Option("--csv", help="Print every table as CSV, one after another.")] = False,
     page: Annotated[
@@ -49,7 +55,7 @@ def sheet(
     from probsoil.report.sheet_tables import tables_csv
     from probsoil.scenario import read_scenario
 
-    content = calculated(read_scenario(file), at=at.value).to_dict()
+    content = calculated(read_scenario(file), at=at.value, station=station).to_dict()
     if page is not None:
         from probsoil.report.sheet_page import write_sheet
 

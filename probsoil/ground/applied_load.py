@@ -190,8 +190,10 @@ def applied_load(
     pressures = [site.pressure(float(time)) for time in site.knots]
     weight = fill_weight(values, n_sample)
     if site.embankment is not None:
-        spread, share, berm = _embankment_spread(site.embankment, depth)
-        at_height = {height: _influence(site.embankment, depth, height) for height in set(heights)}
+        spread, share, berm = _embankment_spread(site.embankment, depth, site.offset)
+        at_height = {
+            height: _influence(site.embankment, depth, height, site.offset) for height in set(heights)
+        }
         stress = [weight[:, None] * at_height[height] for height in heights]
     else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
@@ -257,11 +259,16 @@ def fill_weight(values: Values, n_sample: int, address: str = "load") -> FloatAr
 
 
 def _embankment_spread(
-    shape: Embankment, depth: FloatArray
+    shape: Embankment, depth: FloatArray, offset: float
 ) -> tuple[FloatArray, FloatArray, FloatArray | None]:
-    """Return the influence below the centreline, and what of it acts below slope and berm."""
+    """Return the influence below the centreline, and what of it acts below slope and berm.
+
+    Away from the centreline no strength is asked for, and the shares are ones.
+    """
     middle, full = 0.5 * shape.base_width, shape.section(shape.full_height)
-    centre = _influence(shape, depth, shape.full_height)
+    centre = _influence(shape, depth, shape.full_height, offset)
+    if offset != 0.0:
+        return centre / shape.full_height, np.ones_like(depth), None
 
     def share(place: float) -> FloatArray:
         return np.clip(_influence(shape, depth, shape.full_height, middle - place) / centre, 0.0, 1.0)
@@ -352,4 +359,6 @@ def relief_by_water(
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:
     """Return the added stress at a height of fill over the unit weight of fill, [m]."""
-    return trapezia_influence(depth, offset, shape.trapezia(max(height, 0.0)))
+    influence = trapezia_influence(depth, offset, shape.trapezia(max(height, 0.0)))
+    # far beside the toe the two halves cancel but for rounding
+    return influence if offset == 0.0 else np.maximum(influence, 0.0)

@@ -6,22 +6,33 @@ from dataclasses import replace
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.errors import ParameterError
 from probsoil.ground.degree import time_to_degree
 from probsoil.ground.profile import Values, column
 from probsoil.ground.response import Response
 from probsoil.ground.site_model import SiteModel
+from probsoil.ground.station_quantities import station_part, station_quantity
+from probsoil.ground.stations import Part, StationSettlement
 from probsoil.scenario.limits import (
+    ON_SETTLEMENT,
+    AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
+    DifferentialSettlementLimit,
     Limit,
+    OnSettlement,
     SettlementLimit,
     SlipSafetyLimit,
 )
 
 
 def limit_quantities(
-    site: SiteModel, limits: Sequence[Limit], response: Response, values: Values
+    site: SiteModel,
+    limits: Sequence[Limit],
+    response: Response,
+    values: Values,
+    stations: StationSettlement | None = None,
 ) -> FloatArray:
     """Return the quantity of every limit, model error included.
 
@@ -35,6 +46,8 @@ def limit_quantities(
         The ground's answer.
     values : mapping of str to ndarray, shape (n_sample,), or float
         Value of every quantity by its address; the model errors are among them.
+    stations : StationSettlement or None
+        What settles at the stations, where there are any; they share one model error.
 
     Returns
     -------
@@ -42,10 +55,20 @@ def limit_quantities(
         Not a number where the realisation did not converge; infinite where a degree of
         consolidation is not reached by the horizon, or where there is no fill to slip.
     """
-    watched = [_quantity(site, limit, response, values) for limit in limits]
+    watched = [
+        _at_stations(limit, stations, values)
+        if stations is not None and isinstance(limit, ON_SETTLEMENT)
+        else _quantity(site, limit, response, values)
+        for limit in limits
+    ]
     quantity = np.stack(watched, axis=1)
     quantity[~response.converged] = np.nan
     return quantity
+
+
+def _at_stations(limit: OnSettlement, stations: StationSettlement, values: Values) -> FloatArray:
+    error = column(values, "model_error.settlement", len(stations.converged))
+    return np.asarray(error * station_quantity(limit, stations))
 
 
 def _quantity(site: SiteModel, limit: Limit, response: Response, values: Values) -> FloatArray:
@@ -55,6 +78,8 @@ def _quantity(site: SiteModel, limit: Limit, response: Response, values: Values)
         return _least(slip_with_model_error(response, values), site, limit, site.slip_times)
     if isinstance(limit, BearingSafetyLimit):
         return _least(bearing_with_model_error(response, values), site, limit, site.bearing_times)
+    if isinstance(limit, DifferentialSettlementLimit | AngularDistortionLimit):
+        raise ParameterError(f"{limit.quantity} needs stations; none are given")
     if isinstance(limit, ConsolidationLimit):
         return response.degree_at_record[:, int(np.searchsorted(response.record, limit.at))]
     return _time_to_degree(site, limit, response)
@@ -67,7 +92,9 @@ def _settlement(limit: SettlementLimit, response: Response, values: Values) -> F
     return np.asarray(error * settled)
 
 
-def secondary_in_limits(limits: Sequence[Limit], response: Response, values: Values) -> FloatArray:
+def secondary_in_limits(
+    limits: Sequence[Limit], response: Response, values: Values, stations: StationSettlement | None = None
+) -> FloatArray:
     """Return the part of every settlement limit's quantity that is secondary compression.
 
     Parameters
@@ -78,16 +105,20 @@ def secondary_in_limits(limits: Sequence[Limit], response: Response, values: Val
         The ground's answer.
     values : mapping of str to ndarray, shape (n_sample,), or float
         Value of every quantity by its address.
+    stations : StationSettlement or None
+        What settles at the stations, where there are any.
 
     Returns
     -------
     secondary : ndarray, shape (n_sample, n_limit), [m]
         Model error included; not a number for limits on other quantities.
     """
-    return _part_in_limits(limits, response, values, response.secondary)
+    return _part_in_limits(limits, response, values, "secondary", stations)
 
 
-def distortion_in_limits(limits: Sequence[Limit], response: Response, values: Values) -> FloatArray:
+def distortion_in_limits(
+    limits: Sequence[Limit], response: Response, values: Values, stations: StationSettlement | None = None
+) -> FloatArray:
     """Return the part of every settlement limit's quantity that is undrained distortion.
 
     Parameters
@@ -98,25 +129,37 @@ def distortion_in_limits(limits: Sequence[Limit], response: Response, values: Va
         The ground's answer, with distortion.
     values : mapping of str to ndarray, shape (n_sample,), or float
         Value of every quantity by its address.
+    stations : StationSettlement or None
+        What settles at the stations, where there are any.
 
     Returns
     -------
     distortion : ndarray, shape (n_sample, n_limit), [m]
         Model error included; not a number for limits on other quantities.
     """
-    return _part_in_limits(limits, response, values, response.distortion)
+    return _part_in_limits(limits, response, values, "distortion", stations)
 
 
 def _part_in_limits(
-    limits: Sequence[Limit], response: Response, values: Values, part: FloatArray
+    limits: Sequence[Limit],
+    response: Response,
+    values: Values,
+    part: Part,
+    stations: StationSettlement | None,
 ) -> FloatArray:
-    alone = replace(response, settlement=part)
-    parts = [
-        _settlement(limit, alone, values)
-        if isinstance(limit, SettlementLimit)
-        else np.full(response.settlement.shape[0], np.nan)
-        for limit in limits
-    ]
+    n_sample = response.settlement.shape[0]
+    error = column(values, "model_error.settlement", n_sample)
+    alone = replace(response, settlement=getattr(response, part))
+    parts = []
+    for limit in limits:
+        found = np.full(n_sample, np.nan)
+        if isinstance(limit, SettlementLimit):
+            found = (
+                _settlement(limit, alone, values)
+                if stations is None
+                else np.asarray(error * station_part(limit, stations, part))
+            )
+        parts.append(found)
     return np.stack(parts, axis=1)
 
 

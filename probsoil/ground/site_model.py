@@ -84,6 +84,12 @@ class SiteModel:
         Time until which fill is added so that its level stays; None where none is.
     further_loads : tuple of FurtherLoadForm
         Loads beside the one that is assessed.
+    offset : float, [m]
+        Distance of the point of settlement from the centreline of an embankment.
+    position : tuple of float or None, [m]
+        Plan position of a station; None for the centreline, centre or point of the load.
+    station_name : str or None
+        Name of the station where settlement is reported; None for the centreline, centre or point.
     """
 
     layers: tuple[LayerForm, ...]
@@ -105,6 +111,9 @@ class SiteModel:
     base_head: bool = False
     hold_level_until: float | None = None
     further_loads: tuple[FurtherLoadForm, ...] = ()
+    offset: float = 0.0
+    position: tuple[float, float] | None = None
+    station_name: str | None = None
 
     @property
     def seeps(self) -> bool:
@@ -200,6 +209,8 @@ class SiteModel:
     @property
     def point(self) -> tuple[float, float]:
         """Plan position x, y at which settlement is reported, from the centre of the load, [m]."""
+        if self.position is not None:
+            return self.position
         return (0.0, 0.0) if self.foundation is None else self.foundation.plan_point
 
     @property
@@ -216,6 +227,8 @@ class SiteModel:
     @property
     def station(self) -> str:
         """Where settlement is reported, in words."""
+        if self.station_name is not None:
+            return f"station {self.station_name}"
         return "centreline" if self.foundation is None else self.foundation.station
 
     @property

@@ -156,12 +156,12 @@ def displacement_of(site: SiteModel, height: float) -> _Curve:
         return lambda depth: foundation.displacement(depth, *foundation.at)
     if shape is None:
         return np.zeros_like
-    return lambda depth: _fill_displacement(shape, height, depth)
+    return lambda depth: _fill_displacement(shape, height, depth, site.offset)
 
 
-def _fill_displacement(shape: Embankment, height: float, depth: FloatArray) -> FloatArray:
+def _fill_displacement(shape: Embankment, height: float, depth: FloatArray, offset: float) -> FloatArray:
     total = np.zeros_like(depth)
     for part in shape.trapezia(max(height, 0.0)):
         widths = {"base_width": part.base_width, "top_width": part.top_width}
-        total += part.height * embankment_displacement(depth, 0.0, **widths)
+        total += part.height * embankment_displacement(depth, offset, **widths)
     return total

@@ -4,8 +4,8 @@ from probsoil.parameters.dependence import correlation_blocks
 from probsoil.parameters.designs import Design, LatinHypercube, MonteCarlo, ScrambledSobol, design
 from probsoil.parameters.marginals import Marginal, marginal
 from probsoil.parameters.space import ParameterSpace, ParameterSummary, parameter_space
-from probsoil.parameters.spatial_averaging import averaged_variance, variance_function
 from probsoil.scenario.correlation import latent_correlation, rank_correlation
+from probsoil.scenario.spatial_averaging import averaged_variance, variance_function
 
 __all__ = [
     "Design",

@@ -14,7 +14,6 @@ from scipy.special import ndtri
 from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import ParameterError
 from probsoil.parameters.laws import BetaLaw, Law, LognormalLaw, NormalLaw, TriangularLaw, UniformLaw
-from probsoil.parameters.spatial_averaging import averaged_variance
 from probsoil.parameters.truncation import Truncation, interval_probability
 from probsoil.scenario.distributions import (
     Beta,
@@ -25,6 +24,7 @@ from probsoil.scenario.distributions import (
     TruncatedNormal,
     Uniform,
 )
+from probsoil.scenario.spatial_averaging import inherent_variance, remaining_variance
 
 NEGLIGIBLE_CUT = 1e-12
 GREATEST_CUT = 0.5
@@ -244,14 +244,12 @@ def representative_law(
     """
     match distribution:
         case Normal():
-            point_sd = (distribution.inherent_cov or 0.0) * distribution.mean
-            extra = _averaged(point_sd**2, distribution.vertical_scale, averaging_length)
+            extra = inherent_variance(distribution, averaging_length)
             factor = _harmonic_factor(distribution, averaging_length) if in_series else 1.0
             sd = float(np.sqrt(distribution.sd**2 + extra))
             return NormalLaw(factor * distribution.mean, factor * sd)
         case Lognormal():
-            point = float(np.log1p((distribution.inherent_cov or 0.0) ** 2))
-            extra = _averaged(point, distribution.vertical_scale, averaging_length)
+            extra = inherent_variance(distribution, averaging_length)
             log_sd = float(np.sqrt(distribution.log_sd**2 + extra))
             factor = _harmonic_factor(distribution, averaging_length) if in_series else 1.0
             return LognormalLaw(factor * distribution.median * float(np.exp(-0.5 * extra)), log_sd)
@@ -270,13 +268,7 @@ def representative_law(
 def _harmonic_factor(distribution: Normal | Lognormal, length: float | None) -> float:
     """Harmonic over arithmetic average of the field."""
     point = float(np.log1p((distribution.inherent_cov or 0.0) ** 2))
-    return float(np.exp(_averaged(point, distribution.vertical_scale, length) - point))
-
-
-def _averaged(point_variance: float, scale: float | None, length: float | None) -> float:
-    if point_variance == 0.0 or scale is None or length is None:
-        return point_variance
-    return averaged_variance(point_variance, scale=scale, length=length)
+    return float(np.exp(remaining_variance(point, distribution.vertical_scale, length) - point))
 
 
 def _own_bounds(law: Law, distribution: Distribution) -> Truncation:

@@ -1,7 +1,7 @@
 """All uncertain parameters of a scenario in one latent standard-normal space."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -9,8 +9,11 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.errors import ParameterError, ShapeError
 from probsoil.parameters.dependence import Dependence, correlation_matrix
+from probsoil.parameters.local_parts import LocalPart, LocalParts, Position, local_parts, mixing_matrix
 from probsoil.parameters.marginals import Marginal, UncertainQuantity, marginal
-from probsoil.scenario.distributions import Constant
+from probsoil.scenario.base import RESERVED_NAMES
+from probsoil.scenario.distributions import Constant, Lognormal, Normal
+from probsoil.scenario.spatial_averaging import local_share
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -57,13 +60,18 @@ class ParameterSpace:
     marginals : tuple of Marginal
         Law of each uncertain parameter, in the order of the file.
     correlation : ndarray, shape (d, d), [-]
-        Correlation R of the latent normals.
+        Correlation R of the latent normals: one for each parameter; with several stations one more
+        for each of them and each parameter that varies between them.
     inverse_correlation : ndarray, shape (d, d), [-]
         Inverse of `correlation`.
     triangle : ndarray, shape (d, d), [-]
         Lower Cholesky factor C of `correlation`.
     constants : dict of str to float
         Value of every number that is not uncertain, in its own unit.
+    local : LocalParts or None
+        What varies between stations; None where nothing does.
+    at_station : ndarray, shape (n_parameter, n_parameter), [-]
+        Correlation of the parameters' normal scores at any one station.
     """
 
     marginals: tuple[Marginal, ...]
@@ -71,6 +79,8 @@ class ParameterSpace:
     inverse_correlation: FloatArray
     triangle: FloatArray
     constants: dict[str, float]
+    local: LocalParts | None = None
+    at_station: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -79,8 +89,8 @@ class ParameterSpace:
 
     @property
     def dimension(self) -> int:
-        """Number of uncertain parameters d [-]."""
-        return len(self.marginals)
+        """Number of latent normals d [-]: that of the uncertain parameters, and more with stations."""
+        return len(self.correlation)
 
     def correlated(self, u: FloatArray) -> FloatArray:
         """Correlated latent normals from independent ones.
@@ -99,7 +109,7 @@ class ParameterSpace:
         Raises
         ------
         ShapeError
-            If `u` does not have one column per uncertain parameter.
+            If `u` does not have one column per latent normal.
         """
         if u.ndim != 2 or u.shape[1] != self.dimension:
             raise ShapeError(f"u must have shape (n, {self.dimension}); got {u.shape}")
@@ -109,13 +119,16 @@ class ParameterSpace:
                 z[:, i] += self.triangle[i, j] * u[:, j]
         return z
 
-    def values(self, z: FloatArray) -> dict[str, FloatArray | float]:
+    def values(self, z: FloatArray, station: int = 0) -> dict[str, FloatArray | float]:
         """Value of every number, uncertain or fixed.
 
         Parameters
         ----------
         z : ndarray, shape (n, d), [-]
             Correlated latent normals.
+        station : int, [-]
+            Place of the station in the order given; values that do not vary between stations are the
+            same at all of them.
 
         Returns
         -------
@@ -125,11 +138,12 @@ class ParameterSpace:
         Raises
         ------
         ShapeError
-            If `z` does not have one column per uncertain parameter.
+            If `z` does not have one column per latent normal.
         """
         if z.ndim != 2 or z.shape[1] != self.dimension:
             raise ShapeError(f"z must have shape (n, {self.dimension}); got {z.shape}")
-        drawn = {law.name: law.quantile(z[:, i]) for i, law in enumerate(self.marginals)}
+        scores = z if self.local is None else self.local.scores(z, station)
+        drawn = {law.name: law.quantile(scores[:, i]) for i, law in enumerate(self.marginals)}
         return {**self.constants, **drawn}
 
     def at(self, point: Literal["mean", "median"]) -> dict[str, float]:
@@ -185,7 +199,10 @@ class ParameterSpace:
 
 
 def parameter_space(
-    quantities: Sequence[UncertainQuantity], dependence: Sequence[Dependence] = ()
+    quantities: Sequence[UncertainQuantity],
+    dependence: Sequence[Dependence] = (),
+    *,
+    positions: Sequence[Position] = (),
 ) -> ParameterSpace:
     """Parameter space of a scenario.
 
@@ -194,7 +211,9 @@ def parameter_space(
     quantities : sequence of UncertainQuantity
         Every number of the scenario that may be uncertain, fixed or not.
     dependence : sequence of (str, str, float), [-]
-        Pairs of addresses with their rank correlation.
+        Pairs of addresses with their rank correlation, which holds at every station.
+    positions : sequence of (float, float), [m]
+        Plan positions of the stations; with fewer than two there is nothing that varies between them.
 
     Returns
     -------
@@ -204,17 +223,23 @@ def parameter_space(
     Raises
     ------
     ParameterError
-        If more than half of a distribution lies outside its parameter's physical bounds.
+        If more than half of a distribution lies outside its parameter's physical bounds, or variability
+        from point to point has no horizontal scale though there are several stations.
     DependenceError
-        If the correlations are wrongly given or cannot hold together.
+        If the correlations are wrongly given or cannot hold together, at every station.
     """
     constants = {q.address: q.distribution.value for q in quantities if isinstance(q.distribution, Constant)}
-    marginals = tuple(marginal(q) for q in quantities if not isinstance(q.distribution, Constant))
-    correlation = correlation_matrix([law.name for law in marginals], dependence)
+    uncertain = [q for q in quantities if not isinstance(q.distribution, Constant)]
+    marginals = tuple(marginal(q) for q in uncertain)
+    names = [law.name for law in marginals]
+    at_station = correlation_matrix(names, dependence)
+    local, correlation = _local_parts(uncertain, at_station, positions), at_station
+    if local is not None:
+        correlation = local.correlation
     triangle = np.asarray(np.linalg.cholesky(correlation), dtype=np.float64)
     inverse = np.linalg.inv(correlation)
     inverse = 0.5 * (inverse + inverse.T)
-    for matrix in (correlation, inverse, triangle):
+    for matrix in (correlation, inverse, triangle, at_station):
         matrix.setflags(write=False)
     return ParameterSpace(
         marginals=marginals,
@@ -222,7 +247,40 @@ def parameter_space(
         inverse_correlation=inverse,
         triangle=triangle,
         constants=constants,
+        local=local,
+        at_station=at_station,
     )
+
+
+def _local_parts(
+    uncertain: Sequence[UncertainQuantity], at_station: FloatArray, positions: Sequence[Position]
+) -> LocalParts | None:
+    """Return what varies between stations, with its latent normals behind those of the parameters."""
+    parts: list[LocalPart] = []
+    count = len(positions)
+    for place, quantity in enumerate(uncertain):
+        law = quantity.distribution
+        share = local_share(law, quantity.averaging_length)
+        if count < 2 or share == 0.0 or not isinstance(law, Normal | Lognormal):
+            continue
+        if law.horizontal_scale is None:
+            raise ParameterError(
+                f"{quantity.address} varies from point to point and there are {count} stations: it needs "
+                "horizontal_scale, over which it varies in plan"
+            )
+        first = len(uncertain) + count * len(parts)
+        parts.append(
+            LocalPart(
+                parameter=place,
+                share=share,
+                latent=np.arange(first, first + count),
+                mixing=mixing_matrix(positions, law.horizontal_scale),
+            )
+        )
+    tables = tuple(f"{name}." for name in RESERVED_NAMES)
+    rigid = [place for place, quantity in enumerate(uncertain) if quantity.address.startswith(tables)]
+    names = [quantity.address for quantity in uncertain]
+    return local_parts(at_station, parts, rigid, names) if parts else None
 
 
 def _summary(law: Marginal) -> ParameterSummary:

@@ -13,8 +13,10 @@ from probsoil.report.plot_bars import plot_drivers, plot_factors
 from probsoil.report.plot_ground import plot_ground
 from probsoil.report.plot_section import plot_section
 from probsoil.report.plot_settlement import plot_settlement
+from probsoil.report.plot_stations import plot_stations
 from probsoil.report.ranking import ranked_by
 from probsoil.report.section import drawn_check, section_words
+from probsoil.report.stations import stations_words
 from probsoil.report.svg import tidy_svg
 from probsoil.report.text import is_number
 
@@ -61,12 +63,11 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     Returns
     -------
     drawings : dict of str to str
-        Vector graphic by name: ``settlement``, ``slip`` (with ``section``) or ``bearing``, ``ground`` and
-        ``drivers-1``, ``drivers-2``, ... for the limits in their order.
+        Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``)
+        or ``bearing``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
-    if (results.get("settlement") or {}).get("times"):
-        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+    drawn |= _settlement_figures(results)
     for key in ("slip", "bearing"):
         if results.get(key):
             words = alttext.stability(results, key)
@@ -84,6 +85,16 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
             measure = ranked_by(results, limit["name"])
             draw = partial(plot_drivers, measure=measure)
             drawn[name] = _render(name, alttext.drivers(limit, shown, measure), draw, shown)
+    return drawn
+
+
+def _settlement_figures(results: dict[str, Any]) -> dict[str, str]:
+    """Draw settlement through time, and over the stations where there are several."""
+    data, drawn = results.get("settlement") or {}, {}
+    if data.get("times"):
+        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+    if len(data.get("stations") or []) > 1:
+        drawn["stations"] = _render("stations", stations_words(results), plot_stations, data)
     return drawn
 
 

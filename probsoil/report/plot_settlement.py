@@ -7,7 +7,8 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_parts import numbers_array
-from probsoil.report.text import is_number, list_text
+from probsoil.report.stations import is_marked
+from probsoil.report.text import list_text
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -49,7 +50,8 @@ def plot_settlement(figure: "Figure", results: dict[str, Any]) -> None:
     early.set_ylim(*_depth_range(data))
     if two:
         _late_axis(axes[1], split, times[-1])
-    _mark_limits(axes, results["limits"], split if two else times[-1], factor)
+    marked = {number: one for number, one in enumerate(results["limits"], 1) if is_marked(one, data)}
+    _mark_limits(axes, marked, split if two else times[-1], factor)
     early.legend(loc="lower left", frameon=False, fontsize=9)
 
 
@@ -105,13 +107,11 @@ def _late_axis(axis: "Axes", start: float, end: float) -> None:
 
 
 def _mark_limits(
-    axes: "np.ndarray[Any, Any]", limits: list[dict[str, Any]], split: float, factor: float
+    axes: "np.ndarray[Any, Any]", limits: dict[int, dict[str, Any]], split: float, factor: float
 ) -> None:
     marks: dict[tuple[float, float], list[int]] = {}
-    for number, limit in enumerate(limits, start=1):
-        at = (limit.get("time") or {}).get("at")
-        if limit["quantity"] == "settlement" and is_number(at):
-            marks.setdefault((float(at), float(limit["threshold"])), []).append(number)
+    for number, limit in limits.items():
+        marks.setdefault((float(limit["time"]["at"]), float(limit["threshold"])), []).append(number)
     deepest = axes[0].get_ylim()[0]
     taken: dict[float, float] = {}  # by time, where the last label stands, from the bottom up
     for (at, threshold), numbers in sorted(marks.items(), reverse=True):

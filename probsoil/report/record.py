@@ -197,11 +197,16 @@ def _parameter(row: dict[str, Any]) -> dict[str, Any]:
         "name": row["name"],
         "meaning": row.get("meaning") or "",
         "unit": row.get("unit") or "-",
-        "text": text.described_text(row.get("text") or ""),
+        "text": text.described_text(row.get("text") or "") + _local_text(row.get("local_share")),
         "numbers": [text.number_text(row.get(key)) for key in ("mean", "sd", "p05", "p50", "p95")],
         "range": _range(row.get("low"), row.get("high")),
         "cut": text.percent_text(cut) if cut > 0 else "nothing",
     }
+
+
+def _local_text(share: float | None) -> str:
+    """Say how much of a parameter differs between stations, where some of it does."""
+    return f"; {text.percent_text(share)} of its variance differs between stations" if share else ""
 
 
 def _range(low: float | None, high: float | None) -> str:

@@ -22,6 +22,7 @@ def sheet_tables(content: Mapping[str, Any]) -> list[SheetTable]:
     """
     makers: tuple[Callable[[Mapping[str, Any]], Iterable[SheetTable]], ...] = (
         _layers,
+        _stations,
         _sublayers,
         _through_time,
         _drains,
@@ -51,6 +52,35 @@ def _layers(content: Mapping[str, Any]) -> list[SheetTable]:
     if content.get("distortion"):
         columns.append(("distortion [m]", "distortion", ".4f"))
     return [sheet_table("layers", "Layers; stresses at the middle of each", content["layers"], columns)]
+
+
+def _stations(content: Mapping[str, Any]) -> list[SheetTable]:
+    return [
+        sheet_table(
+            "stations",
+            "Stations",
+            content.get("stations", ()),
+            [
+                ("station", "station"),
+                ("x [m]", "x", ".2f"),
+                ("y [m]", "y", ".2f"),
+                ("settlement after the last stage [m]", "after_last_stage", ".4f"),
+                ("at the horizon [m]", "settlement", ".4f"),
+            ],
+        ),
+        sheet_table(
+            "station pairs",
+            "Differences between stations at the horizon",
+            content.get("station_pairs", ()),
+            [
+                ("station", "station"),
+                ("and", "other"),
+                ("distance [m]", "distance", ".2f"),
+                ("difference [m]", "difference", ".4f"),
+                ("distortion [-]", "distortion", ".6f"),
+            ],
+        ),
+    ]
 
 
 def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:

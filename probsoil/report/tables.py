@@ -1,5 +1,6 @@
 """The results as tables for a spreadsheet, units in the column names."""
 
+from collections.abc import Iterator
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -16,7 +17,9 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
 
-    The last only where fill is added to hold its level.
+    ``added_fill.csv`` only where fill is added to hold its level. With stations also ``stations.csv`` and
+    ``station_pairs.csv``.
+
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
     ``too few realisations`` (the 5 % and the 95 % point of fewer than 40).
@@ -54,7 +57,8 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     -------
     frames : dict of str to DataFrame
         ``limits``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give tables
-        without rows. With fill added to hold its level also ``added_fill``.
+        without rows. With fill added to hold its level also ``added_fill``, with stations ``stations`` and
+        ``station_pairs``.
     """
     import pandas as pd
 
@@ -68,6 +72,10 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     }
     if results.get("added_fill"):
         rows["added_fill"] = _added_fill_rows(results)
+    settlement = results.get("settlement") or {}
+    if settlement.get("stations"):
+        rows["stations"] = list(_station_rows(settlement, results))
+        rows["station_pairs"] = list(_pair_rows(settlement, results))
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
     if len(frames["drivers"]):
         whole = {"rank [-]": "Int64", "spread clear": "boolean", "mean clear": "boolean"}
@@ -86,6 +94,7 @@ def _limit_row(limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any]
         "limit": limit["name"],
         "quantity": limit["quantity"],
         "time": limit.get("time_text"),
+        **({"place": limit["place_text"]} if limit.get("place_text") else {}),
         "sense": limit["sense"],
         "unit": limit.get("unit"),
         "threshold [unit]": limit["threshold"],
@@ -164,6 +173,43 @@ def _added_fill_rows(results: dict[str, Any]) -> list[dict[str, Any]]:
     ]
 
 
+def _station_rows(data: dict[str, Any], results: dict[str, Any]) -> Iterator[dict[str, Any]]:
+    for station in data["stations"]:
+        head = {
+            "station": station["name"],
+            "x [m]": station["x"],
+            "y [m]": station["y"],
+            "along [m]": station["along"],
+        }
+        for row in _series_rows(station, data, results, "m"):
+            yield head | row
+
+
+def _pair_rows(data: dict[str, Any], results: dict[str, Any]) -> Iterator[dict[str, Any]]:
+    for pair in data["pairs"]:
+        first, second = pair["stations"]
+        head = {"station": first, "other station": second, "distance [m]": pair["distance"]}
+        for part, unit in (("difference", "m"), ("distortion", "-")):
+            for row in _series_rows(pair[part], data, results, unit):
+                named = {key.replace(f"[{unit}]", "[unit]"): value for key, value in row.items()}
+                yield head | {"quantity": part, "unit": unit} | named
+
+
+def _series_rows(
+    series: dict[str, Any], data: dict[str, Any], results: dict[str, Any], unit: str
+) -> Iterator[dict[str, Any]]:
+    """Yield one row for each time of a station or pair."""
+    n = data.get("realisations") or results["realisations"]
+    for place, time in enumerate(data["station_times"]):
+        mean = series["mean"][place]
+        at_time = {level: values[place] for level, values in series["quantiles"].items()}
+        yield {
+            "time [years]": time,
+            f"mean [{unit}]": UNCOMPUTED if mean is None else mean,
+            **_quantile_columns(at_time, unit, n, UNCOMPUTED),
+        }
+
+
 def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:
     return {
         "parameter": row["name"],
@@ -178,7 +224,7 @@ def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:
         "low bound [unit]": row.get("low"),
         "high bound [unit]": row.get("high"),
         "share cut [-]": row.get("cut_share"),
-    }
+    } | ({"share between stations [-]": row["local_share"]} if "local_share" in row else {})
 
 
 def _quantile_columns(quantiles: dict[str, Any], unit: str, n: int, beyond: str) -> dict[str, Any]:

@@ -27,6 +27,8 @@ from probsoil.report.percentages import (
 
 _QUANTITY_NAMES = {
     "settlement": "settlement",
+    "differential_settlement": "differential settlement",
+    "angular_distortion": "angular distortion",
     "slip_safety": "factor of safety against slip",
     "bearing_safety": "factor of safety against bearing failure",
     "degree_of_consolidation": "degree of consolidation",
@@ -69,6 +71,7 @@ __all__ = [
     "range_text",
     "realisations_text",
     "rounded",
+    "slope_text",
     "step_decimals",
     "threshold_text",
     "trimmed_text",
@@ -185,7 +188,7 @@ def quantity_text(limit: dict[str, Any]) -> str:
     Returns
     -------
     text : str
-        For example ``the settlement between 1.17 and 30 years``.
+        For example ``the settlement between 1.17 and 30 years``, with stations also where.
     """
     time = limit.get("time") or {}
     quantity = limit["quantity"]
@@ -196,7 +199,8 @@ def quantity_text(limit: dict[str, Any]) -> str:
     name = f"the {_QUANTITY_NAMES.get(quantity, quantity.replace('_', ' '))}"
     if quantity in ("slip_safety", "bearing_safety") and "at" not in time:
         return f"the least {_QUANTITY_NAMES[quantity]} over the stages"
-    return f"{name} {limit.get('time_text') or _when(time)}".rstrip()
+    where = limit.get("place_text") or ""
+    return " ".join(part for part in (name, limit.get("time_text") or _when(time), where) if part)
 
 
 def uncomputed_text(quantity: str) -> str:
@@ -322,7 +326,27 @@ def event_text(limit: dict[str, Any]) -> str:
         For example ``the settlement at 30 years is more than 0.40 m``.
     """
     since = " from the start" if limit["quantity"] == "time_to_consolidation" else ""
-    return f"{quantity_text(limit)} is {exceeding_word(limit)} {threshold_text(limit)}{since}"
+    return (
+        f"{quantity_text(limit)} is {exceeding_word(limit)} {threshold_text(limit)}{slope_text(limit)}{since}"
+    )
+
+
+def slope_text(limit: dict[str, Any]) -> str:
+    """Write the threshold of an angular distortion once more as a ratio.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+
+    Returns
+    -------
+    text : str
+        For example `` (1/500)``; nothing for other quantities.
+    """
+    if limit["quantity"] != "angular_distortion":
+        return ""
+    return f" (1/{trimmed_text(1.0 / limit['threshold'])})"
 
 
 def _least_decimals(limit: dict[str, Any]) -> int:

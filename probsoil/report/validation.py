@@ -53,6 +53,7 @@ def _is_pair(value: list[Any]) -> bool:
 
 
 _NUMBER = ("number", "null")
+_APART = ("stages", "station_times", "stations", "pairs")  # lists with lengths of their own
 _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 _QUANTILES = dict.fromkeys(_LEVELS, _NUMBER)
 _STAGE = {"name": "text", "start": "number", "end": "number"}
@@ -81,6 +82,9 @@ _LIMIT = {
     "expected_cost": _NUMBER,
     "expected_cost_interval?": ("pair", "null"),
     "summary": {"mean": _NUMBER, "sd": _NUMBER, "quantiles": _QUANTILES, "median_interval?": "pair"},
+    "place?": ("object", "null"),
+    "place_text?": "text",
+    "decided_by?": [{"stations": ["text"], "share": "share"}],
     "curve": {
         "step": "number",
         "threshold": ["number"],
@@ -151,6 +155,14 @@ _ADDED_FILL = {
     "thickness": _MEAN_AND_QUANTILES,
     "volume": _MEAN_AND_QUANTILES,
 }
+_SERIES = {"mean": [_NUMBER], "quantiles": {level: [_NUMBER] for level in _LEVELS}}
+_STATIONS = {
+    "station_times?": ["number"],
+    "stations?": [
+        {"name": "text", "x": "number", "y": "number", "along": _NUMBER, "thickness": "object"} | _SERIES
+    ],
+    "pairs?": [{"stations": ["text"], "distance": "number", "difference": _SERIES, "distortion": _SERIES}],
+}
 RESULTS: dict[str, Any] = {
     "title": "text",
     "seed": "count",
@@ -167,7 +179,8 @@ RESULTS: dict[str, Any] = {
         "realisations": "positive count",
         "stages": [_STAGE],
         "final": {"mean": _NUMBER, "quantiles": _QUANTILES},
-    },
+    }
+    | _STATIONS,
     "slip": [_FACTOR | {"circle?": _CIRCLE}],
     "bearing?": [_FACTOR | {"pressure": _NUMBER}],
     "added_fill?": [_ADDED_FILL],
@@ -185,7 +198,7 @@ RESULTS: dict[str, Any] = {
     "parameters": [
         dict.fromkeys(("name", "unit", "meaning", "text"), "text")
         | dict.fromkeys(("mean", "sd", "p05", "p50", "p95", "low", "high"), _NUMBER)
-        | {"cut_share": "share"}
+        | {"cut_share": "share", "local_share?": "share"}
     ],
     "dependence": [{"between": ["text"], "rank_correlation": "number", "latent_correlation": "number"}],
     "discretisation": {
@@ -288,6 +301,7 @@ def _contradictions(results: dict[str, Any]) -> Iterator[str]:
     yield from _lengths(
         {"times": settlement["times"], **settlement["quantiles"]}, "times", "settlement.quantiles"
     )
+    yield from _station_lengths(settlement)
     yield from _lengths(results["ground"]["profile"], "depth", "ground.profile")
     names = {limit["name"] for limit in results["limits"]}
     for part in ("drivers", "driver_quality"):
@@ -296,10 +310,21 @@ def _contradictions(results: dict[str, Any]) -> Iterator[str]:
                 yield f"{part}[{place}].limit must be the name of a limit; got {_shown(row['limit'])}"
 
 
+def _station_lengths(settlement: dict[str, Any]) -> Iterator[str]:
+    times = {"station_times": settlement.get("station_times") or []}
+    for place, row in enumerate(settlement.get("stations") or []):
+        key = f"settlement.stations[{place}]"
+        yield from _lengths(times | {"mean": row["mean"]} | row["quantiles"], "station_times", key)
+    for place, row in enumerate(settlement.get("pairs") or []):
+        for part in ("difference", "distortion"):
+            key = f"settlement.pairs[{place}].{part}"
+            yield from _lengths(times | row[part]["quantiles"], "station_times", key)
+
+
 def _lengths(columns: dict[str, Any], first: str, key: str) -> Iterator[str]:
     wanted = len(columns[first])
     for name, values in columns.items():
-        if isinstance(values, list) and name != "stages" and len(values) != wanted:
+        if isinstance(values, list) and name not in _APART and len(values) != wanted:
             yield f"{key}.{name} must have as many values as {first}, {wanted}; got {len(values)}"
 
 

@@ -8,6 +8,7 @@ from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
 from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
 from probsoil.report.section import section_view
+from probsoil.report.stations import is_marked, stations_view
 
 _MARKS = {"within target": "within", "beyond target": "beyond", "not conclusive": "open"}
 _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
@@ -64,6 +65,7 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
         "limits": [_limit(number, limit, results) for number, limit in numbered],
         "settlement": _settlement(results.get("settlement") or {}, results),
         "added_fill": added_fill_sentences(results),
+        "stations": stations_view(results),
         "curves": [view for view in curves if view is not None],
         "drivers": [view for number, limit in numbered if (view := drivers_view(number, limit, results))],
         "stability": _stability(results),
@@ -92,7 +94,7 @@ def _limit(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[
         "sentence": chance.verdict_sentence(limit, results),
         "evidence": _evidence(limit, results),
         "quantity": text.quantity_text(limit),
-        "allowed": f"{limit['sense']} {text.threshold_text(limit)}",
+        "allowed": f"{limit['sense']} {text.threshold_text(limit)}{text.slope_text(limit)}",
         "chance": text.probability_text(limit["probability"], chance.realisations_of(limit, results)),
         "interval": text.interval_text(limit["probability"], *limit["interval"]),
         "target": "none" if target is None else text.plain_percent(target),
@@ -189,17 +191,12 @@ def _settlement(data: dict[str, Any], results: dict[str, Any]) -> dict[str, Any]
         "rows": rows,
         "total": text.realisations_text(n),
         "tails": n >= text.LEAST_FOR_TAILS,
-        "diamonds": any(_is_diamond(limit) for limit in results["limits"]),
+        "diamonds": any(is_marked(limit, data) for limit in results["limits"]),
         "stages": [
             stage_view(number, stage) for number, stage in enumerate(data.get("stages") or [], start=1)
         ],
         "sentence": _settlement_sentence(data, ends, n),
     }
-
-
-def _is_diamond(limit: dict[str, Any]) -> bool:
-    """Whether the figure of settlement marks a limit."""
-    return limit["quantity"] == "settlement" and text.is_number((limit.get("time") or {}).get("at"))
 
 
 def _at_time(data: dict[str, Any], place: int) -> dict[str, Any]:

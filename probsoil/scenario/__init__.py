@@ -12,9 +12,11 @@ from probsoil.scenario.distributions import (
 )
 from probsoil.scenario.layers import ClayLayer, GranularLayer, Permeability, Preconsolidation, Strength
 from probsoil.scenario.limits import (
+    AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
+    DifferentialSettlementLimit,
     SettlementLimit,
     SlipSafetyLimit,
 )
@@ -26,9 +28,11 @@ from probsoil.scenario.reference import reference_table
 from probsoil.scenario.remarks import remarks
 from probsoil.scenario.schema import scenario_schema
 from probsoil.scenario.starters import STARTERS, starter_text
+from probsoil.scenario.stations import Station, StationLine
 
 __all__ = [
     "STARTERS",
+    "AngularDistortionLimit",
     "AreaLoad",
     "BearingSafetyLimit",
     "Beta",
@@ -38,6 +42,7 @@ __all__ = [
     "ConsolidationTimeLimit",
     "Constant",
     "Dependence",
+    "DifferentialSettlementLimit",
     "Distribution",
     "EmbankmentLoad",
     "GranularLayer",
@@ -53,6 +58,8 @@ __all__ = [
     "Site",
     "SlipSafetyLimit",
     "Stage",
+    "Station",
+    "StationLine",
     "Strength",
     "StripLoad",
     "Triangular",

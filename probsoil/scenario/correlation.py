@@ -1,6 +1,6 @@
 """Whether rank correlations can hold together, and the nearest set that can."""
 
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 
 import numpy as np
 
@@ -76,6 +76,77 @@ def impossible_sets(ranks: Mapping[Pair, float]) -> list[dict[Pair, float]]:
         if np.linalg.eigvalsh(matrix)[0] < LEAST_EIGENVALUE:
             found.append(_mended(matrix, given, names))
     return found
+
+
+def parts_correlation(correlation: FloatArray, local: ArrayLike) -> FloatArray:
+    r"""Return the correlation that knowledge and local parts must both have to give one at every station.
+
+    Parameters
+    ----------
+    correlation : ndarray, shape (d, d), [-]
+        Correlation R of the latent normals at one station.
+    local : array_like, shape (d,), [-]
+        Share :math:`\beta^2` of each variance that differs from place to place.
+
+    Returns
+    -------
+    parts : ndarray, shape (d, d), [-]
+        :math:`c_{pq} = R_{pq} / (\alpha_p \alpha_q + \beta_p \beta_q)` with
+        :math:`\alpha^2 = 1 - \beta^2`; ones on the diagonal. Not positive definite, or beyond one, where
+        no split into the two parts gives R.
+
+    Notes
+    -----
+    With :math:`z_p = \alpha_p K_p + \beta_p E_p`, K and E independent and each of correlation c, z has the
+    correlation R. For two parameters such a split exists whenever any does: the greatest correlation that
+    two parts of given shares allow is :math:`\alpha_p \alpha_q + \beta_p \beta_q`.
+    """
+    share = np.asarray(local, dtype=np.float64)
+    alpha, beta = np.sqrt(1.0 - share), np.sqrt(share)
+    parts = correlation / (np.outer(alpha, alpha) + np.outer(beta, beta))
+    np.fill_diagonal(parts, 1.0)
+    return np.asarray(parts, dtype=np.float64)
+
+
+def impossible_parts(
+    ranks: Mapping[Pair, float], local: Mapping[str, float], rigid: Collection[str] = ()
+) -> list[dict[Pair, float]]:
+    """Return every connected set of correlations that cannot hold at each of several stations.
+
+    Parameters
+    ----------
+    ranks : mapping
+        Rank correlation of each pair; pairs not given are uncorrelated.
+    local : mapping of str to float, [-]
+        Share of each number's variance that differs from place to place; 0 where not given.
+    rigid : collection of str
+        Numbers that are the same at all stations. Others follow those they are correlated with.
+
+    Returns
+    -------
+    sets : list of dict
+        For each set that could hold at one station but not at several, its pairs that clash, with the
+        greatest rank correlation, by size, that the shares allow each pair on its own.
+    """
+    fixed = {name for pair in ranks for name in pair if local.get(name, 0.0) > 0.0 or name in rigid}
+    clashing = {pair: rank for pair, rank in ranks.items() if fixed.issuperset(pair)}
+    found = []
+    for component in _components(list(clashing)):
+        given = {pair: clashing[pair] for pair in component}
+        names = list(dict.fromkeys(name for pair in component for name in pair))
+        matrix = _matrix(given, names)
+        if np.linalg.eigvalsh(matrix)[0] < LEAST_EIGENVALUE:
+            continue  # refused already for one station
+        parts = parts_correlation(matrix, [local.get(name, 0.0) for name in names])
+        if np.linalg.eigvalsh(parts)[0] < LEAST_EIGENVALUE:
+            found.append({pair: _greatest(*(local.get(name, 0.0) for name in pair)) for pair in given})
+    return found
+
+
+def _greatest(first: float, second: float) -> float:
+    """Return the greatest rank correlation of two numbers with these local shares."""
+    least = np.sqrt((1.0 - first) * (1.0 - second)) + np.sqrt(first * second)
+    return float(rank_correlation(least))
 
 
 def nearest_correlation(matrix: FloatArray, free: BoolArray) -> FloatArray:

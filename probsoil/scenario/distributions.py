@@ -131,7 +131,7 @@ class Normal(_Described):
 
     def _words(self, unit: str) -> str:
         text = f"normal, mean {_with_unit(self.mean, unit)}, standard deviation {_with_unit(self.sd, unit)}"
-        return text + _inherent_text(self.inherent_cov, self.vertical_scale)
+        return text + _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -177,7 +177,7 @@ class Lognormal(_Described):
 
     def _words(self, unit: str) -> str:
         text = f"lognormal, mean {_with_unit(self.expectation, unit)}, cov {self.cov:.3g}"
-        return text + _inherent_text(self.inherent_cov, self.vertical_scale)
+        return text + _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -337,7 +337,10 @@ Distribution: TypeAlias = Constant | Normal | Lognormal | Uniform | Triangular |
 BOUNDED = (Uniform, Triangular, TruncatedNormal, Beta)
 
 
-def _inherent_text(inherent_cov: float, vertical_scale: float | None) -> str:
+def _inherent_text(inherent_cov: float, vertical_scale: float | None, horizontal_scale: float | None) -> str:
     if inherent_cov == 0.0 or vertical_scale is None:
         return ""
-    return f"; point-to-point cov {inherent_cov:.3g}, vertical scale of fluctuation {vertical_scale:.3g} m"
+    scales = f"vertical scale of fluctuation {vertical_scale:.3g} m"
+    if horizontal_scale is not None:
+        scales += f", horizontal {horizontal_scale:.3g} m"
+    return f"; point-to-point cov {inherent_cov:.3g}, {scales}"

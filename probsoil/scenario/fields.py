@@ -1,5 +1,6 @@
 """Types of the numbers in a scenario: what may be written, its range and where the range comes from."""
 
+import re
 from abc import ABC, abstractmethod
 from dataclasses import dataclass
 from typing import Any, Literal, cast
@@ -16,6 +17,7 @@ from probsoil.units import BASE_UNITS, Kind, UnitError, allowed_text, to_base, u
 Source = Literal["by definition", "common practice"]
 GREATEST_SHARE_OUTSIDE = 0.05
 FIELD_MARK = "x-field"
+RATIO_PATTERN = r"^\s*1\s*/\s*([1-9][0-9]*(?:\.[0-9]+)?)\s*$"
 
 
 def _unit_text(kind: Kind) -> str:
@@ -150,6 +152,20 @@ class Number(Range):
         if not self.holds(value):
             refuse([self._outside(value)])
         return value
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Ratio(Number):
+    """A number that may also be written as one over another, such as ``"1/500"``."""
+
+    def _quantity(self, raw: object) -> float:
+        match = re.match(RATIO_PATTERN, raw) if isinstance(raw, str) else None
+        if match is not None:
+            return 1.0 / float(match[1])
+        if isinstance(raw, str):
+            allowed = 'a number such as 0.002, or text such as "1/500"'
+            refuse([Slip(path=(), message="this is no ratio", allowed=allowed)])
+        return Range._quantity(self, raw)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

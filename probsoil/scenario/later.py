@@ -3,10 +3,8 @@
 NOT_YET = "not computed in this version"
 
 LATER_DISTRIBUTIONS = ("gamma", "gumbel", "discrete", "empirical", "percentiles")
-LATER_QUANTITIES = ("differential_settlement", "angular_distortion")
 # By the table the key stands in; "" is the top of the file.
 LATER_KEYS: dict[str, tuple[str, ...]] = {
-    "": ("stations", "evidence", "alternatives", "tests_on_offer", "investigation", "readings"),
+    "": ("evidence", "alternatives", "tests_on_offer", "investigation", "readings"),
     "layers": ("C_alpha", "drained"),
-    "limits": ("station", "stations"),
 }

@@ -5,8 +5,9 @@ from typing import Annotated, ClassVar, Literal
 from pydantic import BeforeValidator, ConfigDict, Field
 
 from probsoil.scenario.base import Label, Table
-from probsoil.scenario.fields import Number
+from probsoil.scenario.fields import Number, Ratio
 from probsoil.scenario.slips import Slip, refuse
+from probsoil.scenario.stations import pair_or_word
 
 Sense = Literal["not more than", "not less than"]
 
@@ -66,6 +67,9 @@ class _Limit(Table):
     cost_if_exceeded: Cost = None
 
 
+ONE_TIME = ConfigDict(json_schema_extra={"oneOf": [{"required": ["at"]}, {"required": ["between"]}]})
+
+
 class SettlementLimit(_Limit):
     """Settlement at a time, or between two times, that should not be more than a threshold.
 
@@ -77,11 +81,13 @@ class SettlementLimit(_Limit):
         Time; either this or `between`.
     between : tuple of float or None, [year]
         Two times.
+    station : str or None
+        Name of a station, or ``any`` for the one that settles most; None for the first.
     not_more_than : float, [m]
         Threshold.
     """
 
-    model_config = ConfigDict(json_schema_extra={"oneOf": [{"required": ["at"]}, {"required": ["between"]}]})
+    model_config = ONE_TIME
 
     sense: ClassVar[Sense] = "not more than"
     quantity: Literal["settlement"] = Field(description="what is limited")
@@ -100,10 +106,123 @@ class SettlementLimit(_Limit):
             meaning="settlement that should not be exceeded",
         ),
     ]
+    station: Label | None = Field(
+        default=None,
+        description='name of the station, or "any" for the one that settles most in each realisation; '
+        "the first station if left out",
+    )
 
     @property
     def threshold(self) -> float:
         """Threshold [m]."""
+        return self.not_more_than
+
+
+_Compared = Annotated[tuple[Label, Label] | Literal["any", "neighbours"], BeforeValidator(pair_or_word)]
+
+
+class DifferentialSettlementLimit(_Limit):
+    """Difference of settlement between two stations that should not be more than a threshold.
+
+    Attributes
+    ----------
+    quantity : str
+        ``differential_settlement``.
+    at : float or None, [year]
+        Time; either this or `between`.
+    between : tuple of float or None, [year]
+        Two times.
+    stations : tuple of str, or str
+        Two names; ``any`` for the worst of all pairs, ``neighbours`` for the worst of those next to each
+        other on a line.
+    not_more_than : float, [m]
+        Threshold.
+    """
+
+    model_config = ONE_TIME
+
+    sense: ClassVar[Sense] = "not more than"
+    quantity: Literal["differential_settlement"] = Field(description="what is limited")
+    at: OptionalTime = None
+    between: TimePair | None = Field(
+        default=None, description="two times; the difference in what settles from one to the other"
+    )
+    stations: _Compared = Field(
+        default="any",
+        description='two names; or "any", the worst of all pairs in each realisation; or "neighbours", the '
+        "worst of those next to each other on the line of the stations",
+    )
+    not_more_than: Annotated[
+        float,
+        Number(
+            kind="length",
+            low=0.0,
+            high=100.0,
+            open_low=True,
+            source="common practice",
+            meaning="difference of settlement that should not be exceeded",
+        ),
+    ]
+
+    @property
+    def threshold(self) -> float:
+        """Threshold [m]."""
+        return self.not_more_than
+
+
+class AngularDistortionLimit(_Limit):
+    """Difference of settlement over distance that should not be more than a threshold.
+
+    Attributes
+    ----------
+    quantity : str
+        ``angular_distortion``.
+    at : float or None, [year]
+        Time; either this or `between`.
+    between : tuple of float or None, [year]
+        Two times.
+    stations : tuple of str, or str
+        As for a differential settlement.
+    tilt : str
+        ``kept``, or ``removed``: the slope from end to end of the line is taken off first.
+    not_more_than : float, [-]
+        Threshold.
+    """
+
+    model_config = ONE_TIME
+
+    sense: ClassVar[Sense] = "not more than"
+    quantity: Literal["angular_distortion"] = Field(description="what is limited")
+    at: OptionalTime = None
+    between: TimePair | None = Field(
+        default=None, description="two times; from what settles from one to the other"
+    )
+    stations: _Compared = Field(
+        default="any",
+        description='two names; or "any", the worst of all pairs in each realisation; or "neighbours", the '
+        "worst of those next to each other on the line of the stations (on a line the same as any)",
+    )
+    tilt: Literal["kept", "removed"] = Field(
+        default="kept",
+        description="whether the slope from end to end of the line of stations, its tilt as a rigid body, "
+        "is taken off first",
+    )
+    not_more_than: Annotated[
+        float,
+        Ratio(
+            kind="number",
+            low=0.0,
+            high=1.0,
+            open_low=True,
+            source="by definition",
+            meaning="difference of settlement over distance in plan that should not be exceeded, such as "
+            '0.002 or "1/500"',
+        ),
+    ]
+
+    @property
+    def threshold(self) -> float:
+        """Threshold [-]."""
         return self.not_more_than
 
 
@@ -255,7 +374,17 @@ class ConsolidationTimeLimit(_Limit):
         return self.not_more_than
 
 
+OnSettlement = SettlementLimit | DifferentialSettlementLimit | AngularDistortionLimit
+ON_SETTLEMENT = (SettlementLimit, DifferentialSettlementLimit, AngularDistortionLimit)
+"""Classes of limits on what settles by a time or between two."""
+
 Limit = Annotated[
-    SettlementLimit | SlipSafetyLimit | BearingSafetyLimit | ConsolidationLimit | ConsolidationTimeLimit,
+    SettlementLimit
+    | DifferentialSettlementLimit
+    | AngularDistortionLimit
+    | SlipSafetyLimit
+    | BearingSafetyLimit
+    | ConsolidationLimit
+    | ConsolidationTimeLimit,
     Field(discriminator="quantity"),
 ]

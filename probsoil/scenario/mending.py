@@ -5,12 +5,10 @@ from typing import Any
 
 from pydantic import BaseModel
 
-from probsoil.scenario.later import LATER_KEYS, LATER_QUANTITIES, NOT_YET
+from probsoil.scenario.later import LATER_KEYS, NOT_YET
 from probsoil.scenario.models import Scenario
 from probsoil.scenario.slips import Path, Slip, did_you_mean, nearest, unknown_key
 from probsoil.scenario.structure import CHOICES, LISTS, inner_table, keys_of, member
-
-_LATER_CHOICES = {"limits": LATER_QUANTITIES}
 
 
 @dataclass(slots=True)
@@ -127,7 +125,7 @@ def _with_choice_mended(key: str, raw: dict[str, Any], path: Path, mended: Mende
         return raw
     tag, models = CHOICES[key]
     value = raw.get(tag)
-    if not isinstance(value, str) or value in models or value in _LATER_CHOICES.get(key, ()):
+    if not isinstance(value, str) or value in models:
         return raw
     meant = nearest(value, list(models))
     if meant is None:

@@ -15,6 +15,7 @@ from probsoil.scenario.layers import Layer
 from probsoil.scenario.limits import Limit
 from probsoil.scenario.loads import Load, Stage
 from probsoil.scenario.slips import Slip, refuse
+from probsoil.scenario.stations import Station, StationLine
 
 if TYPE_CHECKING:
     from probsoil.scenario.quantities import Quantity
@@ -164,6 +165,10 @@ class Scenario(Table):
         In order of time.
     drains : Drains or None
         Vertical drains.
+    stations : tuple of Station
+        Plan positions at which settlement is computed.
+    station_line : StationLine or None
+        More of them, evenly along the load.
     dependence : tuple of Dependence
         Rank correlations.
     model_error : ModelError
@@ -203,6 +208,12 @@ class Scenario(Table):
         json_schema_extra={"minItems": 1}, description="stages of loading in order of time"
     )
     drains: Drains | None = Field(default=None, description="prefabricated vertical drains")
+    stations: Annotated[tuple[Station, ...], BeforeValidator(_list)] = Field(
+        default=(),
+        description="plan positions at which settlement is computed; if left out, with station_line, the "
+        "centreline or centre",
+    )
+    station_line: StationLine | None = Field(default=None, description="stations evenly along the load")
     dependence: Annotated[tuple[Dependence, ...], BeforeValidator(_list)] = Field(
         default=(), description="rank correlations"
     )
@@ -217,6 +228,11 @@ class Scenario(Table):
         if slips:
             refuse(slips, absolute=True)
         return self
+
+    @property
+    def all_stations(self) -> tuple[Station, ...]:
+        """Stations listed, then those of the line; the first is the one of reference."""
+        return self.stations + (() if self.station_line is None else self.station_line.stations())
 
     def quantities(self) -> "tuple[Quantity, ...]":
         """Return every number that may be uncertain, fixed or not.

@@ -2,9 +2,10 @@
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Any, get_args
+from types import NoneType, UnionType
+from typing import Annotated, Any, Literal, Union, get_args, get_origin
 
-from pydantic import BaseModel
+from pydantic import BaseModel, WithJsonSchema
 from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
@@ -113,13 +114,27 @@ def _row(table: str, key: str, info: FieldInfo) -> ReferenceRow:
 
 
 def _allowed(info: FieldInfo) -> str:
-    annotation: Any = info.annotation
-    choices = get_args(annotation)
-    if choices and all(isinstance(choice, str | int) for choice in choices):
-        return " | ".join(str(choice) for choice in choices)
-    if annotation in (str, bool, int):
-        return {str: "text", bool: "true | false", int: "whole number"}[annotation]
-    return "list" if "tuple" in str(annotation) else "table"
+    if any(isinstance(part, WithJsonSchema) for part in info.metadata):
+        return "table"
+    parts = [part for part in _alternatives(info.annotation) if part is not NoneType]
+    return " | ".join(dict.fromkeys(_kind(part) for part in parts))
+
+
+def _alternatives(annotation: Any) -> list[Any]:
+    """Take a union and a list of choices apart; what is said of a type besides falls away."""
+    origin = get_origin(annotation)
+    if origin is Annotated:
+        return _alternatives(get_args(annotation)[0])
+    if origin in (Union, UnionType):
+        return [one for part in get_args(annotation) for one in _alternatives(part)]
+    return list(get_args(annotation)) if origin is Literal else [annotation]
+
+
+def _kind(part: Any) -> str:
+    if isinstance(part, str | int):
+        return str(part)
+    named = {str: "text", bool: "true | false", int: "whole number"}
+    return named.get(part) or ("list" if "tuple" in str(part) else "table")
 
 
 def _default(info: FieldInfo, unit: str = "") -> str:

@@ -21,7 +21,7 @@ from probsoil.scenario.distribution_tables import (
     own_keys,
 )
 from probsoil.scenario.distributions import Constant, Normal
-from probsoil.scenario.fields import FIELD_MARK, Range, Uncertain
+from probsoil.scenario.fields import FIELD_MARK, RATIO_PATTERN, Range, Ratio, Uncertain
 from probsoil.scenario.models import Scenario
 from probsoil.units import KINDS, NUMBER_PATTERN, Kind, has_other_units, tabulated_units
 
@@ -141,6 +141,8 @@ def _field(field: Range) -> dict[str, Any]:
         "exclusiveMaximum" if field.open_high else "maximum": field.high,
     }
     choices: list[dict[str, Any]] = [{"type": "number", **bounds}, _reference(_text_name(field.kind))]
+    if isinstance(field, Ratio):
+        choices[1] = {"type": "string", "pattern": RATIO_PATTERN}
     if isinstance(field, Uncertain):
         choices.append(_reference(_table_name(field.kind, spatial=field.spatial)))
     return {"description": f"{field.meaning}; {field.range_text}", "anyOf": choices}

@@ -13,16 +13,19 @@ from probsoil.scenario.further_loads import (
 )
 from probsoil.scenario.layers import ClayLayer, GranularLayer
 from probsoil.scenario.limits import (
+    AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
+    DifferentialSettlementLimit,
     SettlementLimit,
     SlipSafetyLimit,
 )
 from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, Stage, StripLoad
 from probsoil.scenario.models import Dependence
+from probsoil.scenario.stations import Station
 
-LISTS = ("layers", "further_loads", "stages", "dependence", "limits")
+LISTS = ("layers", "further_loads", "stages", "stations", "dependence", "limits")
 # Tables of more than one class: the key that tells the classes apart, and the classes.
 CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
     "layers": ("soil", {"clay": ClayLayer, "granular": GranularLayer}),
@@ -50,6 +53,8 @@ CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
         "quantity",
         {
             "settlement": SettlementLimit,
+            "differential_settlement": DifferentialSettlementLimit,
+            "angular_distortion": AngularDistortionLimit,
             "slip_safety": SlipSafetyLimit,
             "bearing_safety": BearingSafetyLimit,
             "degree_of_consolidation": ConsolidationLimit,
@@ -57,7 +62,7 @@ CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
         },
     ),
 }
-_PLAIN: dict[str, type[BaseModel]] = {"stages": Stage, "dependence": Dependence}
+_PLAIN: dict[str, type[BaseModel]] = {"stages": Stage, "stations": Station, "dependence": Dependence}
 
 
 def keys_of(model: type[BaseModel]) -> dict[str, str]:

@@ -5,9 +5,9 @@ from typing import Any, cast
 from pydantic import BaseModel, ValidationError
 from pydantic_core import ErrorDetails
 
-from probsoil.scenario.later import LATER_QUANTITIES, NOT_YET
 from probsoil.scenario.models import Scenario
 from probsoil.scenario.slips import Path, Slip, did_you_mean
+from probsoil.scenario.stations import GREATEST_COUNT
 from probsoil.scenario.structure import CHOICES, LISTS, inner_table, keys_of, member
 
 _EXAMPLES = {
@@ -114,15 +114,12 @@ def _tag(path: Path, data: dict[str, Any]) -> Slip:
     top = str(path[0])
     tag, models = CHOICES[top]
     table = _at(data, path)
-    later = {"limits": LATER_QUANTITIES}.get(top, ())
     allowed = "one of " + ", ".join(models)
     if not isinstance(table, dict):
         return Slip(path=path, message="this is not a table", allowed=f"a table with the key {tag}")
     if tag not in table:
         return Slip(path=path, message=f'key "{tag}" is missing', allowed=allowed, wanting=(tag,))
     value = table[tag]
-    if value in later:
-        return Slip(path=(*path, tag), message=f'{tag} = "{value}" is {NOT_YET}', allowed=allowed)
     hint = did_you_mean(value, list(models)) if isinstance(value, str) else None
     return Slip(path=(*path, tag), message=f"unknown {tag}", allowed=allowed, hint=hint)
 
@@ -180,4 +177,6 @@ def _text_rule(path: Path) -> str:
 def _integer_rule(key: str) -> str:
     if key == "seed":
         return "a whole number from 0 to 9223372036854775807"
+    if key == "number":
+        return f"a whole number from 2 to {GREATEST_COUNT}"
     return "a whole number from 1 to 100000000"

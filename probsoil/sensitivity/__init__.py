@@ -1,6 +1,6 @@
 """Drivers of exceedance: which uncertain parameters decide whether a limit is exceeded."""
 
-from probsoil.sensitivity.accumulate import GROUPS, DriverSums, driver_sums, merge
+from probsoil.sensitivity.accumulate import GROUPS, DriverSums, Gathering, driver_sums, merge
 from probsoil.sensitivity.drivers import Driver, Drivers, drivers
 from probsoil.sensitivity.elasticities import Elasticity, elasticities
 from probsoil.sensitivity.shapley import linear_shapley
@@ -12,6 +12,7 @@ __all__ = [
     "DriverSums",
     "Drivers",
     "Elasticity",
+    "Gathering",
     "Shares",
     "driver_sums",
     "drivers",

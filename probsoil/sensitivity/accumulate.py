@@ -15,16 +15,57 @@ GROUPS = 20  # groups of realisations that the jackknife leaves out in turn
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Gathering:
+    """Latent normals that count together as one parameter, such as one at each of several places.
+
+    Attributes
+    ----------
+    member : ndarray of int, shape (d,), [-]
+        Parameter that each latent normal belongs to, from 0.
+    shift : ndarray, shape (d,), [-]
+        How far each moves when its parameter moves up by one standard deviation as a whole.
+    """
+
+    member: IntArray
+    shift: FloatArray
+
+    @property
+    def size(self) -> int:
+        """Number of parameters [-]."""
+        return int(self.member.max(initial=-1)) + 1
+
+    def added_up(self, values: FloatArray) -> FloatArray:
+        """Add up what belongs to the latent normals of each parameter.
+
+        Parameters
+        ----------
+        values : ndarray, shape (d, ...), [any]
+            One row per latent normal.
+
+        Returns
+        -------
+        sums : ndarray, shape (n_parameter, ...), [any]
+            One row per parameter; the order of the sums is fixed.
+        """
+        sums = np.zeros((self.size, *values.shape[1:]))
+        for place, member in enumerate(self.member):
+            sums[member] += values[place]
+        return sums
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class DriverSums:
-    """Additive sums over realisations, for one limit and d parameters.
+    """Additive sums over realisations, for one limit, m parameters and their d latent normals.
+
+    Each parameter has one latent normal, m = d, unless several are gathered.
 
     Attributes
     ----------
     count : ndarray of int, shape (2,), [-]
         Realisations that meet the limit and that exceed it.
-    mean_score, mean_square : ndarray, shape (2, d), [-]
+    mean_score, mean_square : ndarray, shape (2, m), [-]
         Sums of w = R^-1 z and of its square, over those that meet and those that exceed.
-    spread_score, spread_square : ndarray, shape (2, d), [-]
+    spread_score, spread_square : ndarray, shape (2, m), [-]
         Sums of z w - 1 and of its square, likewise.
     fitted : ndarray of int, shape (20,), [-]
         Realisations with a finite quantity, by jackknife group.
@@ -42,8 +83,8 @@ class DriverSums:
 
     @property
     def dimension(self) -> int:
-        """Number of parameters d [-]."""
-        return int(self.mean_score.shape[1])
+        """Number of latent normals d [-]."""
+        return int(self.products.shape[1]) - 2
 
 
 def driver_sums(
@@ -52,6 +93,8 @@ def driver_sums(
     quantity: FloatArray,
     exceeded: ArrayLike,
     group: ArrayLike | None = None,
+    *,
+    gathering: Gathering | None = None,
 ) -> DriverSums:
     """Sum over the realisations of one chunk.
 
@@ -68,6 +111,8 @@ def driver_sums(
     group : array_like of int, shape (n,), [-], optional
         Jackknife group of each realisation, 0 to 19: the replicate, for points that are not independent.
         None deals the rows out in turn.
+    gathering : Gathering or None
+        Which latent normals count together; None for each by itself.
 
     Returns
     -------
@@ -91,6 +136,9 @@ def driver_sums(
         raise ParameterError(f"group must lie between 0 and {GROUPS - 1}; got {index.min()} to {index.max()}")
     mean_score = np.einsum("ni,ij->nj", z, inverse_correlation)
     spread_score = z * mean_score - 1.0
+    if gathering is not None:
+        mean_score = gathering.added_up((gathering.shift * mean_score).T).T
+        spread_score = gathering.added_up(spread_score.T).T
     sides = [~flag, flag]
     rows = np.column_stack([np.ones(n), z, quantity])
     fit = np.isfinite(quantity)

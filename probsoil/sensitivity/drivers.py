@@ -8,7 +8,7 @@ import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.errors import ShapeError
-from probsoil.sensitivity.accumulate import DriverSums
+from probsoil.sensitivity.accumulate import DriverSums, Gathering
 from probsoil.sensitivity.elasticities import Elasticity, elasticities
 from probsoil.sensitivity.shares import Shares, shares
 
@@ -118,7 +118,12 @@ class Drivers:
 
 
 def drivers(
-    sums: DriverSums, correlation: FloatArray, names: Sequence[str], *, confidence: float = 0.95
+    sums: DriverSums,
+    correlation: FloatArray,
+    names: Sequence[str],
+    *,
+    confidence: float = 0.95,
+    gathering: Gathering | None = None,
 ) -> Drivers:
     """Drivers of a limit from the sums over all realisations.
 
@@ -129,9 +134,11 @@ def drivers(
     correlation : ndarray, shape (d, d), [-]
         Correlation R of the latent normals.
     names : sequence of str
-        Addresses of the d parameters.
+        Addresses of the parameters: d of them, or as many as are gathered.
     confidence : float, [-]
         Confidence of the limits.
+    gathering : Gathering or None
+        As the sums were made with.
 
     Returns
     -------
@@ -154,13 +161,13 @@ def drivers(
     realisations lie on either side of the limit.
     """
     dimension = sums.dimension
-    if len(names) != dimension or correlation.shape != (dimension, dimension):
+    if len(names) != sums.mean_score.shape[1] or correlation.shape != (dimension, dimension):
         raise ShapeError(
-            f"sums over {dimension} parameters match neither {len(names)} names "
+            f"sums over {sums.mean_score.shape[1]} parameters match neither {len(names)} names "
             f"nor correlation {correlation.shape}"
         )
     spread, mean = elasticities(sums)
-    part = shares(sums, correlation, confidence)
+    part = shares(sums, correlation, confidence, gathering=gathering)
     met, exceeding = (int(number) for number in sums.count)
     ranked_by = _measure(met, exceeding)
     rows = _rows(names, (spread, mean), part, confidence)

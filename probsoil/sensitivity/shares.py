@@ -6,7 +6,7 @@ import numpy as np
 from scipy.special import stdtrit
 
 from probsoil._typing import FloatArray
-from probsoil.sensitivity.accumulate import GROUPS, DriverSums
+from probsoil.sensitivity.accumulate import GROUPS, DriverSums, Gathering
 from probsoil.sensitivity.shapley import linear_shapley
 
 _CONSTANT = 1e-13  # variance over mean square below which a quantity does not vary
@@ -39,7 +39,13 @@ class Shares:
     enough: bool
 
 
-def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) -> Shares:
+def shares(
+    sums: DriverSums,
+    correlation: FloatArray,
+    confidence: float = 0.95,
+    *,
+    gathering: Gathering | None = None,
+) -> Shares:
     """Shapley shares of the best linear fit of a quantity in the latent normals.
 
     Parameters
@@ -50,6 +56,9 @@ def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) 
         Correlation R of the latent normals.
     confidence : float, [-]
         Confidence of the limits.
+    gathering : Gathering or None
+        Latent normals whose shares are added up. That is the Shapley effect of the lot only where no two of
+        them lie in one group of correlated ones.
 
     Returns
     -------
@@ -65,7 +74,7 @@ def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) 
     shares.
     """
     dimension = sums.dimension
-    unknown = np.full(dimension, np.nan)
+    unknown = np.full(dimension if gathering is None else gathering.size, np.nan)
     used = np.flatnonzero(sums.fitted)
     total = sums.products.sum(axis=0)
     fitted = int(sums.fitted.sum())
@@ -84,6 +93,8 @@ def shares(sums: DriverSums, correlation: FloatArray, confidence: float = 0.95) 
         )
     fits = np.stack([_slopes(total), *(_slopes(total - sums.products[g]) for g in used)], axis=1)
     effects, error = linear_shapley(fits, correlation)
+    if gathering is not None:  # the errors stem from the same random orders, so they add up themselves
+        effects, error = gathering.added_up(effects), gathering.added_up(error)
     parts = effects / effects.sum(axis=0)
     share, left_out = parts[:, 0], parts[:, 1:]
     groups = len(used)

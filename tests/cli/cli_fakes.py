@@ -176,8 +176,9 @@ class Calculation(types.ModuleType):
         (out / "results.json").write_text(json.dumps(results()))
         return types.SimpleNamespace(results=results(), folder=out)
 
-    def sheet(self, scenario: Any, at: str = "mean") -> Sheet:
-        self.calls.append({"title": scenario.title, "at": at})
+    def sheet(self, scenario: Any, at: str = "mean", station: str | None = None) -> Sheet:
+        there = {} if station is None else {"station": station}
+        self.calls.append({"title": scenario.title, "at": at} | there)
         self._end()
         return Sheet()
 

@@ -292,3 +292,40 @@ def test_no_colour_where_it_is_not_wanted(
     monkeypatch.setattr("sys.stdout.isatty", lambda: True)
     assert main(["check", "site.toml"]) == 0
     assert not re.search(r"\x1b\[[0-9;]*3\d", capsys.readouterr().out)
+
+
+STATIONS = """
+[[stations]]
+name = "west"
+
+[[stations]]
+name = "east"
+y = 12
+
+[[limits]]
+name = "evenness"
+quantity = "angular_distortion"
+at = 10
+not_more_than = "1/300"
+"""
+
+
+def test_check_prints_stations_and_what_limits_compare(
+    desk: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (desk / "yard.toml").write_text(AREA + STATIONS, encoding="utf-8")
+    assert main(["check", "yard.toml"]) == 0
+    said = squeezed(capsys.readouterr().out)
+    assert "Stations; limits look at the first unless they say otherwise" in said
+    assert "east 0 12 -" in said
+    assert "between the two stations for which it is greatest is more than 0.003333 (1/300)" in said
+
+
+def test_sheet_of_a_station(desk: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (desk / "yard.toml").write_text(AREA + STATIONS, encoding="utf-8")
+    assert main(["sheet", "yard.toml", "--station", "east"]) == 0
+    said = squeezed(capsys.readouterr().out)
+    assert "at the station east" in said
+    assert "Differences between stations at the horizon" in said
+    assert main(["sheet", "yard.toml", "--station", "north"]) == 2
+    assert 'there is no station "north": there are west, east' in squeezed(capsys.readouterr().err)

@@ -84,3 +84,12 @@ def test_far_down_only_the_total_counts():
     assert float(embankment_influence(depth, 0.0, base_width=base, top_width=top)) == pytest.approx(
         line_load, rel=1e-4
     )
+
+
+@pytest.mark.parametrize("slope", SLOPE)
+@pytest.mark.parametrize("flat", [0.2, 0.5, 1.0, 2.0, 3.0])
+def test_station_below_the_edge_of_the_top(flat, slope):
+    """From the table: a slope alone on one side, the whole top and a slope on the other; five digits each."""
+    expected = HALF[0.0][SLOPE.index(slope)] + HALF[flat][SLOPE.index(slope)]
+    found = embankment_influence(1.0, 0.5 * flat, base_width=flat + 2.0 * slope, top_width=flat)
+    assert float(found) == pytest.approx(expected, abs=1.05e-5)

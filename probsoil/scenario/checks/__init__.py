@@ -6,6 +6,7 @@ returns slips, so that one pass over a file finds every mistake.
 
 from typing import Any
 
+from probsoil.scenario.checks.combinations import combination_slips
 from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
@@ -15,6 +16,7 @@ from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.groundwater import groundwater_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
+from probsoil.scenario.checks.stations import station_slips
 from probsoil.scenario.checks.top_up import top_up_slips
 from probsoil.scenario.slips import Slip
 
@@ -45,5 +47,7 @@ def cross_checks(scenario: Any) -> list[Slip]:
         drain_slips,
         limit_slips,
         dependence_slips,
+        station_slips,
+        combination_slips,
     )
     return [slip for check in checks for slip in check(scenario)]

@@ -5,10 +5,10 @@ from typing import Any
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, years_text
 from probsoil.scenario.limits import (
+    ON_SETTLEMENT,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
-    SettlementLimit,
     SlipSafetyLimit,
 )
 from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad
@@ -31,7 +31,7 @@ def limit_slips(scenario: Any) -> list[Slip]:
     slips = list(repeated_names(scenario.limits, "limits", "limit"))
     for position, limit in enumerate(scenario.limits):
         found: list[Slip] = []
-        if isinstance(limit, SettlementLimit):
+        if isinstance(limit, ON_SETTLEMENT):
             found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
             found += _reversed(limit)
         found += _out_of_place(limit, scenario.load)

@@ -62,7 +62,7 @@ def test_two_half_strips_side_by_side_are_one(wet):
     )
     assert added(halves).stress == pytest.approx(added(whole).stress, rel=1e-9)
     one, two = settled(whole).response, settled(halves).response
-    # iteration stops at 1e-4 of a stress in one step, a millionth of the settlement: one may stop a round earlier
+    # iteration stops at 1e-4 of a stress in one step, a millionth of the settlement; either may stop earlier
     assert two.settlement == pytest.approx(one.settlement, rel=1e-6)
     assert two.degree_at_record == pytest.approx(one.degree_at_record, rel=1e-6)
 

@@ -140,13 +140,13 @@ CASES = {
         CRUST.format(".C_alpha"),
         "not computed in this version",
     ),
-    "quantity of a later version": Spoiled(
+    "distortion without stations": Spoiled(
         SLIP,
-        'quantity = "angular_distortion"\nnot_less_than = 1.0',
+        'quantity = "angular_distortion"\nnot_more_than = "1/500"\nat = 1',
         '"angular_distortion"',
         'limits[2].quantity (limit "slip")',
-        "not computed in this version",
-        allowed="slip_safety",
+        "angular distortion needs two stations; none given",
+        allowed="[[stations]] or [station_line]",
     ),
     "bearing of an embankment": Spoiled(
         SLIP,

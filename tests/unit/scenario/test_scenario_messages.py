@@ -44,7 +44,10 @@ def test_lone_table_under_the_singular_is_checked_as_a_list_of_one(base_text: st
 def test_single_brackets_among_double_ones_are_found_where_they_stand(
     base_text: str, key: str, which: int
 ) -> None:
-    parts = base_text.split(f"[[{key}]]")
+    text = base_text
+    if key == "stations":
+        text += '\n[[stations]]\nname = "a"\n\n[[stations]]\nname = "b"\ny = 10\n'
+    parts = text.split(f"[[{key}]]")
     marks = [f"[[{key}]]"] * (len(parts) - 1)
     marks[which] = f" [ {key} ]"
     text = parts[0] + "".join(mark + part for mark, part in zip(marks, parts[1:], strict=True))

@@ -1,9 +1,13 @@
-"""How much of the point-to-point variability of a property is left in a layer average."""
+"""How much of the point-to-point variability of a property is left in a layer average.
+
+The checks of a scenario need it as well as the drawing of parameters, hence its place in this room.
+"""
 
 import numpy as np
 
 from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import ParameterError
+from probsoil.scenario.distributions import Distribution, Lognormal, Normal
 
 _SERIES_BELOW = 0.25  # the closed form loses digits to cancellation at smaller ratios
 _SERIES_TERMS = 16
@@ -83,3 +87,67 @@ def averaged_variance(point_variance: float, *, scale: float, length: float) -> 
     if not scale > 0.0:
         raise ParameterError(f"the scale of fluctuation must be above zero; got {scale:g} m")
     return point_variance * float(variance_function(length / scale))
+
+
+def inherent_variance(distribution: Normal | Lognormal, length: float | None) -> float:
+    """Variance that variability from point to point leaves in a layer average.
+
+    Parameters
+    ----------
+    distribution : Normal or Lognormal
+        Law as the user gave it.
+    length : float or None, [m]
+        Length averaged over; None for none, which leaves the variability whole.
+
+    Returns
+    -------
+    variance : float, [any]
+        Of the property for a normal law, of its logarithm for a lognormal one.
+    """
+    cov = distribution.inherent_cov
+    if isinstance(distribution, Normal):
+        return remaining_variance((cov * distribution.mean) ** 2, distribution.vertical_scale, length)
+    return remaining_variance(float(np.log1p(cov**2)), distribution.vertical_scale, length)
+
+
+def remaining_variance(point_variance: float, scale: float | None, length: float | None) -> float:
+    """Variance of an average where there may be nothing to average over.
+
+    Parameters
+    ----------
+    point_variance : float, [any]
+        Variance from point to point.
+    scale, length : float or None, [m]
+        Vertical scale of fluctuation and length averaged over.
+
+    Returns
+    -------
+    variance : float, [any]
+        The whole of it where the scale or the length is not known.
+    """
+    if point_variance == 0.0 or scale is None or length is None:
+        return point_variance
+    return averaged_variance(point_variance, scale=scale, length=length)
+
+
+def local_share(distribution: Distribution, length: float | None) -> float:
+    """Share of a layer average's variance that differs from place to place.
+
+    Parameters
+    ----------
+    distribution : Distribution
+        Law as the user gave it.
+    length : float or None, [m]
+        Length averaged over.
+
+    Returns
+    -------
+    share : float, [-]
+        Inherent variance over the whole variance, in the logarithm for a lognormal law; 0 for a law
+        without variability from point to point.
+    """
+    if not isinstance(distribution, Normal | Lognormal):
+        return 0.0
+    known = distribution.sd if isinstance(distribution, Normal) else distribution.log_sd
+    local = inherent_variance(distribution, length)
+    return local / (known**2 + local)
