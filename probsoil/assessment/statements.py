@@ -74,7 +74,7 @@ _FOUNDATION = (
     "from M, lambda, kappa and the current stresses, times the mode factor. The straight line that is "
     "nowhere above the strength within two widths below the base (level from one width on) and carries most "
     "goes into Davis and Booker's solution, with factors for shape and Skempton's for depth. A crust above "
-    "that line raises the capacity as much as it raises that of slip circles.",
+    "that line raises the capacity in the proportion in which it raises what circular arcs carry.",
     "Deeper clay layers are checked in the same way under the load spread at 2 vertical to 1 horizontal; "
     "the least safety over the levels counts. A granular layer spreads the load and resists nothing itself.",
 )

@@ -95,7 +95,13 @@ def test_points_above_the_level_do_not_count():
 
 def test_level_within_the_last_slice_takes_its_strength():
     strength = np.full((1, 3), 15.0)
-    assert line(strength, below=np.array([[-1.2, -0.7, -0.2]])) == pytest.approx((15.0, 0.0, 1.0))
+    below = np.array([[-1.2, -0.7, -0.2]])
+    assert line(strength, below=below) == pytest.approx((15.0, 0.0, 1.0))
+    found = strength_line(STRIP, below=below, edge=below - 0.25, strength=strength, width=WIDTH)
+    parts = crust_parts(found, below=below[0], edge=below[0] - 0.25, strength=strength[0], width=4.0)
+    assert parts.number.tolist() == [2]
+    assert parts.excess.tolist() == [0.0]
+    assert parts.arc.sum() * 15.0 == pytest.approx(parts.alone)
 
 
 def test_strength_at_the_level_is_carried_on_where_it_grows():
