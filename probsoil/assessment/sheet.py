@@ -1,6 +1,5 @@
 """One deterministic calculation, layer by layer, for a checker."""
 
-from collections.abc import Iterator
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, Literal
 
@@ -8,6 +7,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.assessment import sheet_answers as answers
+from probsoil.assessment.bearing_answers import bearing_detail, bearing_rows
 from probsoil.assessment.distortion_formulas import distortion_at_horizon, distortion_rows
 from probsoil.assessment.pore_pressure_formulas import seepage_rows
 from probsoil.assessment.sheet_formulas import example_of
@@ -22,8 +22,6 @@ from probsoil.assessment.sheet_sublayers import (
     sublayers,
 )
 from probsoil.assessment.statements import SHEET_CAUTIONS, assumptions
-from probsoil.ground.bearing import capacities_at
-from probsoil.ground.bearing_capacity import growth_ratio, strength_growth_factor
 from probsoil.ground.profile import Values
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
@@ -65,6 +63,8 @@ class Sheet:
         foundation.
     bearing : tuple of dict
         What it comes from: one row for every such stage and level, [m], [kPa], [-].
+    bearing_points : tuple of dict
+        Strength, line and crust below the level where the factor is least, [m], [kPa], [-].
     squeezing_safety : dict of str to float, [-]
         Factor of safety against squeezing of thin clay, at the stages it applies to.
     station : str
@@ -109,6 +109,7 @@ class Sheet:
     values: dict[str, float]
     bearing_safety: dict[str, float] = field(default_factory=dict)
     bearing: tuple[dict[str, Any], ...] = ()
+    bearing_points: tuple[dict[str, Any], ...] = ()
     squeezing_safety: dict[str, float] = field(default_factory=dict)
     station: str = "centreline"
     title: str = ""
@@ -212,6 +213,8 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: s
 
 def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[str, Any]:
     """Return what lets a checker follow the calculation line by line."""
+    bearing = bearing_rows(run)
+    least = bearing_detail(run, bearing)
     found = {
         "sublayers": sublayer_rows(run, rows, points),
         "through_time": answers.time_rows(run),
@@ -221,11 +224,12 @@ def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[
         "cells": cell_rows(run, rows, points),
         "seepage": seepage_rows(run),
         "distortion": distortion_rows(run, rows),
-        "bearing": list(_bearing_rows(run.site, run.state, run.values)),
+        "bearing": bearing,
+        "bearing_points": [] if least is None else least["points"],
     }
     drains = answers.drain_record(run, rows)
     example = rows[example_of(found["sublayers"])["number"] - 1]
-    found["formulas"] = worked_lines(run, example, {**found, "drains": drains})
+    found["formulas"] = worked_lines(run, example, {**found, "drains": drains, "bearing_least": least})
     return {"drains": drains, **{name: tuple(part) for name, part in found.items()}}
 
 
@@ -233,36 +237,6 @@ def _by_stage(site: SiteModel, times: FloatArray, factors: FloatArray) -> dict[s
     ends = site.end_names
     pairs = zip(times.tolist(), factors.tolist(), strict=True)
     return {ends[time]: factor for time, factor in pairs if time in ends}
-
-
-def _bearing_rows(site: SiteModel, state: GroundState, values: Values) -> Iterator[dict[str, Any]]:
-    """Yield every number behind the bearing capacity, for each stage and level."""
-    times = set(site.bearing_times.tolist())
-    for stage in site.stages:
-        if site.foundation is None or stage.end not in times:
-            continue
-        for level, found in capacities_at(site, values, state.ground, state.strength, stage.end):
-            if not level.exists[0]:
-                continue
-            width, rise = float(level.width[0]), float(found.growth[0] * level.width[0])
-            ratio = growth_ratio(found.strength[0], rise)
-            yield {
-                "stage": stage.name,
-                "layer": site.layers[level.layer].name,
-                "depth": float(level.depth[0]),
-                "width": width,
-                "strength": float(found.strength[0]),
-                "growth": float(found.growth[0]),
-                "growth_ratio": float(ratio),
-                "growth_factor": float(strength_growth_factor(ratio, site.foundation.contact)),
-                "least_strength": float(found.least[0]),
-                "strip_capacity": float(found.strip[0]),
-                "shape_factor": float(found.shape_factor[0]),
-                "depth_factor": float(found.depth_factor[0]),
-                "capacity": float(found.capacity[0]),
-                "pressure": float(found.pressure[0]),
-                "safety": float(found.safety[0]),
-            }
 
 
 def _squeezing(site: SiteModel, state: GroundState, values: Values) -> dict[str, float]:

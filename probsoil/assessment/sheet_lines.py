@@ -23,7 +23,7 @@ def worked_lines(run: SheetRun, example: Sublayer, content: dict[str, Any]) -> l
         The sub-layer whose numbers are put in.
     content : dict
         Parts of the sheet: ``sublayers``, ``through_time``, ``segments``, ``drains``,
-        ``strength_in_rows``, ``slip``, ``distortion`` and ``bearing``.
+        ``strength_in_rows``, ``slip``, ``distortion`` and ``bearing_least``.
 
     Returns
     -------
@@ -45,6 +45,6 @@ def worked_lines(run: SheetRun, example: Sublayer, content: dict[str, Any]) -> l
         *further.creep_formulas(run, rows, content["segments"]),
         *further.strength_formulas(run, example, content["strength_in_rows"]),
         *further.slip_formulas(run, content["slip"]),
-        *bearing_formulas(content["bearing"]),
+        *bearing_formulas(content["bearing_least"]),
     ]
     return [line.to_dict() for line in lines]

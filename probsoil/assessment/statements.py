@@ -107,10 +107,10 @@ _FOUNDATION = (
     "Water leaves at the base of the foundation as at ground level, and flows vertically below it: "
     "sideways drainage, which hastens settlement under a small foundation, is left out.",
     "Bearing is undrained, on the strength below the edge of the foundation at that time, which follows "
-    "from M, lambda, kappa and the current stresses, times the mode factor. A line through the strength "
-    "within one width below the base (least squares; the mean where it would fall with depth; from zero "
-    "where it would start below) goes into Davis and Booker's solution, with factors for shape and "
-    "Skempton's for depth. The capacity is never taken below that of the least strength in that depth.",
+    "from M, lambda, kappa and the current stresses, times the mode factor. The straight line that is "
+    "nowhere above the strength within two widths below the base (level from one width on) and carries most "
+    "goes into Davis and Booker's solution, with factors for shape and Skempton's for depth. A crust above "
+    "that line raises the capacity in the proportion in which it raises what circular arcs carry.",
     "Deeper clay layers are checked in the same way under the load spread at 2 vertical to 1 horizontal; "
     "the least safety over the levels counts. A granular layer spreads the load and resists nothing itself.",
 )

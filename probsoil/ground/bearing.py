@@ -7,13 +7,13 @@ import numpy as np
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.applied_load import LoadedGround, fill_weight
 from probsoil.ground.bearing_capacity import (
-    STRIP_FACTOR,
     circle_shape_factor,
     depth_factor,
     growth_ratio,
     rectangle_shape_factor,
     strip_capacity,
 )
+from probsoil.ground.bearing_line import StrengthLine, proportion, strength_line
 from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
 from probsoil.ground.profile import Values
@@ -36,10 +36,8 @@ class BearingLevel:
         Width of the foundation there, spread at 2 vertical to 1 horizontal.
     share : ndarray, shape (n_sample,), [-]
         Its pressure over that at the base.
-    below : ndarray, shape (n_sample, n_point), [m]
-        Depth of each clay point below the level, negative above it.
-    weight : ndarray, shape (n_sample, n_point), [m]
-        Thickness of each clay point within one width below the level; zero elsewhere.
+    below, edge : ndarray, shape (n_sample, n_point), [m]
+        Depth of each clay point and of its upper edge below the level, negative above it.
     exists : ndarray of bool, shape (n_sample,), [-]
         Whether any of that clay lies below the base.
     """
@@ -49,7 +47,7 @@ class BearingLevel:
     width: FloatArray
     share: FloatArray
     below: FloatArray
-    weight: FloatArray
+    edge: FloatArray
     exists: BoolArray
 
 
@@ -59,12 +57,8 @@ class LevelCapacity:
 
     Attributes
     ----------
-    strength : ndarray, shape (n_sample,), [kPa]
-        Strength at the level, of the line through the profile.
-    growth : ndarray, shape (n_sample,), [kPa/m]
-        Its growth with depth.
-    least : ndarray, shape (n_sample,), [kPa]
-        Least strength of the clay within one width below the level.
+    line : StrengthLine
+        Line below the strength profile, and what a crust adds.
     strip : ndarray, shape (n_sample,), [kPa]
         Capacity of a strip at the surface.
     shape_factor, depth_factor : ndarray, shape (n_sample,), [-]
@@ -77,9 +71,7 @@ class LevelCapacity:
         Capacity over pressure; infinite where the level does not exist.
     """
 
-    strength: FloatArray
-    growth: FloatArray
-    least: FloatArray
+    line: StrengthLine
     strip: FloatArray
     shape_factor: FloatArray
     depth_factor: FloatArray
@@ -112,73 +104,25 @@ def bearing_levels(site: SiteModel, shape: Foundation, ground: LoadedGround) -> 
     to 1 horizontal (common practice): the check against punching through.
     """
     clay, points = ground.clay, ground.points
-    top = points.depth[:, clay] - 0.5 * points.thickness[:, clay]
-    bottom = points.depth[:, clay] + 0.5 * points.thickness[:, clay]
+    middle, half = points.depth[:, clay], 0.5 * points.thickness[:, clay]
     levels = []
     for index, layer in enumerate(site.layers):
         if not layer.is_clay:
             continue
         depth = np.maximum(points.boundary[:, index], shape.depth)
         width, share = shape.spread_area(depth - shape.depth)
-        upper = np.maximum(top, depth[:, None])
-        lower = np.minimum(bottom, (depth + width)[:, None])
         levels.append(
             BearingLevel(
                 layer=index,
                 depth=depth,
                 width=width,
                 share=share,
-                below=points.depth[:, clay] - depth[:, None],
-                weight=np.maximum(lower - upper, 0.0),
+                below=middle - depth[:, None],
+                edge=middle - half - depth[:, None],
                 exists=points.boundary[:, index + 1] > depth,
             )
         )
     return tuple(levels)
-
-
-def line_of_strength(
-    strength: FloatArray, below: FloatArray, weight: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return the straight line that stands for a strength profile, and the least strength in it.
-
-    Parameters
-    ----------
-    strength : ndarray, shape (n_sample, n_point), [kPa]
-        Undrained strength.
-    below : ndarray, shape (n_sample, n_point), [m]
-        Depth below the level.
-    weight : ndarray, shape (n_sample, n_point), [m]
-        Thickness that each point stands for; zero to leave it out.
-
-    Returns
-    -------
-    at_level : ndarray, shape (n_sample,), [kPa]
-        Strength at the level, zero or more.
-    growth : ndarray, shape (n_sample,), [kPa/m]
-        Growth with depth, zero or more.
-    least : ndarray, shape (n_sample,), [kPa]
-        Least strength of the points.
-
-    Notes
-    -----
-    Least squares, weighted by thickness. Where the line would fall with depth (a crust) the weighted
-    mean takes its place; where it would start below zero, the best line from zero does.
-    """
-    # sums run along each row in one order, so that no realisation depends on its company
-    strength, below, weight = (np.ascontiguousarray(one) for one in (strength, below, weight))
-    total = np.where(weight.any(axis=1), weight.sum(axis=1), 1.0)
-    mean_depth = (weight * below).sum(axis=1) / total
-    mean = (weight * strength).sum(axis=1) / total
-    apart = weight * (below - mean_depth[:, None])
-    spread = (apart * below).sum(axis=1)
-    slope = (apart * strength).sum(axis=1) / np.where(spread > 0.0, spread, 1.0)
-    growth = np.maximum(slope, 0.0)
-    at_level = mean - growth * mean_depth
-    squares = (weight * below * below).sum(axis=1)
-    from_zero = (weight * below * strength).sum(axis=1) / np.where(squares > 0.0, squares, 1.0)
-    growth = np.where(at_level < 0.0, from_zero, growth)
-    least = np.where(weight > 0.0, strength, np.inf).min(axis=1)
-    return np.maximum(at_level, 0.0), growth, np.where(np.isfinite(least), least, 0.0)
 
 
 def level_capacity(
@@ -204,26 +148,22 @@ def level_capacity(
 
     Notes
     -----
-    Davis and Booker on the line of strength, but never less than a strip on clay of the least
-    strength within one width (a lower bound), times the factors of shape and depth. The depth is
+    Davis and Booker on the line of strength, times the factors of crust, shape and depth. The depth is
     that of the foundation also for deeper levels, and its width the spread one: on the safe side.
     """
-    c0, growth, least = line_of_strength(strength, level.below, level.weight)
-    on_line = strip_capacity(c0, growth, level.width, shape.contact)
-    strip = np.maximum(on_line, STRIP_FACTOR * least)
-    ratio = growth_ratio(c0, growth * level.width)
+    width = level.width
+    line = strength_line(shape, below=level.below, edge=level.edge, strength=strength, width=width)
+    strip = strip_capacity(line.start, line.growth, width, shape.contact) * line.crust_factor
+    ratio = growth_ratio(line.start, line.growth * width)
     if shape.shape == "circle":
         shape_factor = circle_shape_factor(ratio, shape.contact)
     else:
-        across = level.width / (level.width - shape.width + shape.length)
-        shape_factor = rectangle_shape_factor(ratio, across, shape.contact)
-    deep = depth_factor(shape.depth, level.width)
+        shape_factor = rectangle_shape_factor(ratio, proportion(shape, width), shape.contact)
+    deep = depth_factor(shape.depth, width)
     capacity, there = strip * shape_factor * deep, pressure * level.share
     pressed = pressure > 0.0
     return LevelCapacity(
-        strength=c0,
-        growth=growth,
-        least=least,
+        line=line,
         strip=strip,
         shape_factor=shape_factor,
         depth_factor=deep,

@@ -13,7 +13,9 @@ STRIP_FACTOR = 2.0 + np.pi
 DEEPEST = 2.5
 """Depth over width beyond which Skempton's depth factor stays as it is, [-]."""
 
-_SQUARE = 0.2  # a square on clay of one strength carries this much more than a strip (Skempton 1951)
+RECTANGLE_SHARE = 0.2
+"""What a square on clay of one strength carries more than a strip, as a share, [-] (Skempton 1951)."""
+
 # Own slip-line solutions (tests/published/slip_line_fields.py makes them), c0 at the base, c0 + rho z
 # below it: rho B/c0; Davis and Booker's F of a smooth and a rough strip; mean pressure below a smooth and a
 # rough circle over that below such a strip. The last row stands for c0 = 0, where the strip carries rho B/4
@@ -46,12 +48,33 @@ _TABLE = np.array(
 _COLUMN = {"smooth": (1, 3), "rough": (2, 4)}
 
 
-def _looked_up(ratio: ArrayLike, contact: Contact, which: int) -> FloatArray:
+def growth_table(contact: Contact) -> tuple[FloatArray, FloatArray, FloatArray]:
+    r"""Return the table of strength that grows with depth.
+
+    Parameters
+    ----------
+    contact : {"rough", "smooth"}
+        Contact of the base with the soil.
+
+    Returns
+    -------
+    place, factor, circle : ndarray, shape (n_row,), [-]
+        :math:`\ln(1 + \rho B/c_0)`, Davis and Booker's factor of a strip, and a circle over a strip.
+
+    Raises
+    ------
+    ParameterError
+        If the contact is unknown.
+    """
     if contact not in _COLUMN:
         raise ParameterError(f"contact must be rough or smooth; got {contact!r}")
-    place = np.log1p(checked("ratio", ratio, at_least=0.0))
-    values = _TABLE[:, _COLUMN[contact][which]]
-    return np.asarray(np.interp(place, np.log1p(_TABLE[:, 0]), values))
+    factor, circle = (np.ascontiguousarray(_TABLE[:, column]) for column in _COLUMN[contact])
+    return np.log1p(_TABLE[:, 0]), factor, circle
+
+
+def _looked_up(ratio: ArrayLike, contact: Contact, which: int) -> FloatArray:
+    place, *values = growth_table(contact)
+    return np.asarray(np.interp(np.log1p(checked("ratio", ratio, at_least=0.0)), place, values[which]))
 
 
 def strength_growth_factor(ratio: ArrayLike, contact: Contact = "rough") -> FloatArray:
@@ -156,7 +179,7 @@ def rectangle_shape_factor(
         raise ParameterError("width_over_length must be at most 1: the width is the shorter side")
     excess = circle_shape_factor(ratio, contact) - 1.0
     most = circle_shape_factor(0.0, contact) - 1.0
-    return np.asarray(1.0 + np.where(excess > 0.0, _SQUARE * excess / most, excess) * share)
+    return np.asarray(1.0 + np.where(excess > 0.0, RECTANGLE_SHARE * excess / most, excess) * share)
 
 
 def depth_factor(depth: ArrayLike, width: ArrayLike) -> FloatArray:

@@ -33,7 +33,7 @@ _SECTIONS = (
         "bearing",
         "Bearing",
         "bearing",
-        ("bearing strength", "bearing capacity", "bearing safety", "squeezing safety"),
+        ("bearing strength", "bearing points", "bearing capacity", "bearing safety", "squeezing safety"),
     ),
 )
 _WORDS = {
@@ -60,6 +60,11 @@ _WORDS = {
     "length in a zone times that length and the radius is the moment. K and V are the form of the circle in "
     "the fill: K the sum of h cos²α R² Δθ over the arc in the fill, V the sum of h (x − xc) Δx over the fill "
     "inside the circle.",
+    "bearing": "The line c0 + ρ min(z, B) is nowhere above the strength below the edge down to two "
+    "widths, and of such lines the one that carries most. The crust is what of the strength above it never "
+    "grows with depth. Arc: what the circle carries per unit of strength there, with depths of 0.9 z. The "
+    "points are those below the level where the factor is least; the strength at the level itself is carried "
+    "on from the two points below it.",
 }
 
 

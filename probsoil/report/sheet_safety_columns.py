@@ -156,7 +156,7 @@ def bearing_tables(content: Mapping[str, Any]) -> list[SheetTable]:
     return [
         sheet_table(
             "bearing strength",
-            "Strength for bearing: c0 + rho z below each level",
+            "Strength for bearing: c0 + rho z below each level, and what a crust adds",
             rows,
             [
                 *place,
@@ -165,8 +165,22 @@ def bearing_tables(content: Mapping[str, Any]) -> list[SheetTable]:
                 ("rho [kPa/m]", "growth", ".2f"),
                 ("rho B/c0 [-]", "growth_ratio", ".3f"),
                 ("F [-]", "growth_factor", ".3f"),
-                ("least [kPa]", "least_strength", ".2f"),
+                ("crust factor [-]", "crust_factor", ".3f"),
             ],
+        ),
+        sheet_table(
+            "bearing points",
+            "Strength, line and crust below the level where the factor is least",
+            content.get("bearing_points", ()),
+            [
+                ("depth [m]", "depth", ".3f"),
+                ("z below level [m]", "below", ".3f"),
+                ("su [kPa]", "strength", ".2f"),
+                ("line [kPa]", "line", ".2f"),
+                ("crust [kPa]", "excess", ".2f"),
+                ("arc [-]", "arc", ".4f"),
+            ],
+            brief=False,
         ),
         sheet_table(
             "bearing capacity",

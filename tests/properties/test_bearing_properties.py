@@ -5,8 +5,11 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from probsoil.ground.bearing import bearing_at_checks, line_of_strength
-from probsoil.ground.bearing_capacity import strip_capacity
+from probsoil.ground._bearing_kernel import best_lines
+from probsoil.ground.bearing import bearing_at_checks
+from probsoil.ground.bearing_capacity import circle_shape_factor, growth_ratio, growth_table, strip_capacity
+from probsoil.ground.bearing_line import CIRCLES, CRUST_RATIOS, Factors, strength_line
+from probsoil.ground.foundation import Foundation
 from probsoil.ground.load_stress import circle_influence, rectangle_influence, strip_influence
 from probsoil.ground.response import ground_state
 from probsoil.ground.site_model import site_model
@@ -109,22 +112,91 @@ def test_capacity_grows_with_strength_growth_and_roughness(c0, rho, width, more)
     assert found >= (2.0 + np.pi) * c0 - 1e-9
 
 
-@PROPERTY
+PROFILE = st.lists(st.floats(1.0, 80.0), min_size=4, max_size=20)
+BELOW = 0.5 + np.arange(20, dtype=np.float64)[None, :]
+
+
+def foundation(shape, width):
+    length = np.inf if shape == "strip" else width
+    return Foundation(shape=shape, width=width, length=length, depth=0.0, contact="smooth", at=(0.0, 0.0))
+
+
+def on_profile(profile, at_level, width=8.0, circle=True):
+    """Capacity with the strength at the level given by itself."""
+    place, growth, over_strip = growth_table("smooth")
+    below = BELOW[:, : len(profile)] / width
+    start, ratio, crust, _ = best_lines(
+        below,
+        below - 0.5 / width,
+        np.array([profile]),
+        np.array([at_level]),
+        np.ones(1) if circle else np.zeros(1),
+        np.array(CRUST_RATIOS),
+        Factors(np.expm1(place), place, growth, over_strip, 1.0),
+        CIRCLES,
+    )
+    shape = circle_shape_factor(ratio, "smooth") if circle else 1.0
+    return float((strip_capacity(start, ratio * start / width, width, "smooth") * shape * crust)[0])
+
+
+@settings(PROPERTY, max_examples=300)
 @given(
-    profile=st.lists(st.floats(1.0, 80.0), min_size=3, max_size=12),
-    scale=st.floats(0.5, 3.0),
+    profile=PROFILE,
+    at_level=st.floats(1.0, 80.0),
+    place=st.integers(-1, 19),
+    more=st.floats(0.1, 60.0),
+    circle=st.booleans(),
+    width=st.sampled_from((3.0, 8.0, 15.0)),
 )
-def test_line_of_strength_scales_and_is_nowhere_below_zero(profile, scale):
-    strength = np.array([profile])
-    below = 0.5 + np.arange(len(profile), dtype=np.float64)[None, :]
-    weight = np.ones_like(below)
-    start, growth, least = line_of_strength(strength, below, weight)
-    assert start[0] >= 0.0
-    assert growth[0] >= 0.0
-    assert min(profile) == least[0]
-    scaled = line_of_strength(scale * strength, below, weight)
-    for one, other in zip(scaled, (start, growth, least), strict=True):
-        assert one == pytest.approx(scale * other, rel=1e-9, abs=1e-9)
+def test_more_strength_anywhere_never_lowers_the_capacity(profile, at_level, place, more, circle, width):
+    """To 1e-6, the width to which the search for the best line goes being 1e-8."""
+    raised = list(profile)
+    if place >= 0:
+        raised[place % len(profile)] += more
+    weaker = on_profile(profile, at_level, width, circle)
+    stronger = on_profile(raised, at_level + (more if place < 0 else 0.0), width, circle)
+    assert stronger >= weaker * (1.0 - 1e-6)
+
+
+@PROPERTY
+@given(profile=PROFILE, scale=st.floats(0.5, 3.0), shape=st.sampled_from(("strip", "circle")))
+def test_line_scales_and_lies_below_the_profile(profile, scale, shape):
+    strength, below, width = np.array([profile]), BELOW[:, : len(profile)], np.array([8.0])
+    given_by = {"below": below, "edge": below - 0.5, "width": width}
+    found = strength_line(foundation(shape, 8.0), strength=strength, **given_by)
+    line = found.start + found.growth * np.minimum(below, 8.0)
+    assert (line <= strength * (1.0 + 1e-9))[below <= 16.0].all()
+    assert found.growth[0] >= 0.0
+    assert found.crust_factor[0] >= 1.0
+    carried = strip_capacity(found.start, found.growth, width, "smooth") * found.crust_factor
+    if shape == "strip":  # a lower bound: clay as weak as the weakest all over; at the level by the first two
+        least = min(*profile, max(1.5 * profile[0] - 0.5 * profile[1], 0.0))
+        assert carried[0] >= (2.0 + np.pi) * least * (1.0 - 1e-9)
+    scaled = strength_line(foundation(shape, 8.0), strength=scale * strength, **given_by)
+    again = strip_capacity(scaled.start, scaled.growth, width, "smooth") * scaled.crust_factor
+    factors = [
+        circle_shape_factor(growth_ratio(one.start, one.growth * width), "smooth")
+        if shape == "circle"
+        else 1.0
+        for one in (found, scaled)
+    ]
+    assert again * factors[1] == pytest.approx(scale * carried * factors[0], rel=1e-6)
+
+
+@PROPERTY
+@given(profiles=st.lists(st.lists(st.floats(1.0, 80.0), min_size=6, max_size=6), min_size=2, max_size=5))
+def test_line_of_one_realisation_is_that_in_company_bit_for_bit(profiles):
+    strength, n_sample = np.array(profiles), len(profiles)
+    below, width = np.tile(BELOW[:, :6], (n_sample, 1)), np.full(n_sample, 5.0)
+    shape = foundation("strip", 5.0)
+    all_at_once = strength_line(shape, below=below, edge=below - 0.5, strength=strength, width=width)
+    for row in range(n_sample):
+        mine = slice(row, row + 1)
+        alone = strength_line(
+            shape, below=below[mine], edge=below[mine] - 0.5, strength=strength[mine], width=width[mine]
+        )
+        for name in ("start", "growth", "crust_factor", "circle"):
+            assert getattr(alone, name).tobytes() == getattr(all_at_once, name)[mine].tobytes()
 
 
 @SLOW

@@ -4,8 +4,8 @@ Values from memory, none of the sources opened: 2 + pi (L. Prandtl 1921), 5.69 a
 the rough circle (R. T. Shield 1955; G. Eason and R. T. Shield 1960), A. W. Skempton's square (1951), J.
 Mandel and J. Salencon's thin layer (1972). E. H. Davis and J. R. Booker (Geotechnique 23(4), 1973) give a
 chart that was not read: the table of the package is computed anew by the method of characteristics in
-`slip_line_fields.py`, and `EARLIER` holds numbers of a first, coarser computation of the same kind. The
-tolerance of 0.01 on F was set then.
+`slip_line_fields.py`. `EARLIER` holds numbers of this project's own first, coarser computation: a guard
+against change, not a check from outside. The tolerance of 0.01 on F was set then.
 """
 
 import numpy as np
@@ -24,7 +24,7 @@ from probsoil.ground.bearing_capacity import (
 
 PRANDTL = 2.0 + np.pi
 ON_F = 0.01
-EARLIER = {  # rho B/c0: F smooth, F rough
+EARLIER = {  # regression, own numbers; rho B/c0: F smooth, F rough
     0.25: (1.033, 1.074),
     0.5: (1.062, 1.134),
     1.0: (1.109, 1.226),
@@ -45,7 +45,7 @@ def pressure_of_strip(ratio):
 
 
 @pytest.mark.parametrize(("ratio", "factors"), EARLIER.items())
-def test_growing_strength_against_the_earlier_computation(ratio, factors):
+def test_growing_strength_has_not_changed_since_the_first_computation(ratio, factors):
     assert float(strength_growth_factor(ratio, "smooth")) == pytest.approx(factors[0], abs=ON_F)
     assert float(strength_growth_factor(ratio, "rough")) == pytest.approx(factors[1], abs=ON_F)
 

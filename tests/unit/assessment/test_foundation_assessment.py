@@ -83,7 +83,7 @@ def test_sheet_shows_every_number_of_the_bearing(footing: Scenario) -> None:
     for row in rows:
         rise = row["growth"] * row["width"]
         line = row["growth_factor"] * ((2.0 + np.pi) * row["strength"] + 0.25 * rise)
-        assert row["strip_capacity"] == pytest.approx(max(line, (2.0 + np.pi) * row["least_strength"]))
+        assert row["strip_capacity"] == pytest.approx(line * row["crust_factor"])
         assert row["growth_ratio"] == pytest.approx(rise / row["strength"])
         assert row["growth_factor"] == pytest.approx(float(strength_growth_factor(row["growth_ratio"])))
         product = row["strip_capacity"] * row["shape_factor"] * row["depth_factor"]
@@ -96,6 +96,31 @@ def test_sheet_shows_every_number_of_the_bearing(footing: Scenario) -> None:
     assert content["station"] == "centre"
     base = [row for row in rows if row["depth"] == pytest.approx(1.2)]
     assert [row["pressure"] for row in base] == pytest.approx([50.0, 83.0])
+
+
+@pytest.mark.parametrize("kind", ["footing", "tank"])
+def test_points_of_the_sheet_give_line_and_crust(kind: str) -> None:
+    """Every column of the table by hand: the line, what is above it and never grows, and the arcs."""
+    content = sheet(parse_scenario(starter_text(kind))).to_dict()
+    row = min(content["bearing"], key=lambda one: one["safety"])
+    points, last = content["bearing_points"], np.inf
+    level, first, second = points[:3]
+    rise = (second["strength"] - first["strength"]) / (second["below"] - first["below"])
+    assert level["strength"] == pytest.approx(first["strength"] - max(rise, 0.0) * first["below"])
+    assert (level["below"], level["arc"]) == (0.0, 0.0)
+    assert len(points) > 10
+    for point in points:
+        line = row["strength"] + row["growth"] * min(point["below"], row["width"])
+        assert point["line"] == pytest.approx(line)
+        assert point["strength"] >= line * (1.0 - 1e-9)
+        last = min(last, point["strength"] - line)
+        assert point["excess"] == pytest.approx(last, abs=1e-9)
+        assert point["depth"] == pytest.approx(row["depth"] + point["below"])
+    lines = {line["name"]: line for line in content["formulas"] if line["topic"] == "bearing"}
+    numbers = {one["symbol"]: one["value"] for one in lines["crust factor"]["symbols"]}
+    assert sum(one["excess"] * one["arc"] for one in points) == pytest.approx(numbers["Qe"])
+    even = lines["a circle on strength 1"]["result"]
+    assert sum(one["arc"] for one in points) == pytest.approx(even)
 
 
 def test_thin_clay_below_an_embankment_is_checked_for_squeezing() -> None:

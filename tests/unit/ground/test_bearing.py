@@ -7,7 +7,7 @@ import pytest
 from ground_cases import central, clay, sand, scenario, site_model, stage
 
 from probsoil.errors import ParameterError
-from probsoil.ground.bearing import bearing_at_checks, capacities_at, level_capacity, line_of_strength
+from probsoil.ground.bearing import bearing_at_checks, capacities_at, level_capacity
 from probsoil.ground.bearing_capacity import (
     circle_shape_factor,
     depth_factor,
@@ -16,13 +16,17 @@ from probsoil.ground.bearing_capacity import (
     strength_growth_factor,
     strip_capacity,
 )
+from probsoil.ground.bearing_line import circle_sections, crust_parts, strength_at_level, strength_line
+from probsoil.ground.foundation import Foundation
 from probsoil.ground.limit_quantities import limit_quantities
 from probsoil.ground.response import ground_state
 from probsoil.ground.squeezing import squeezing_at
 
 PRANDTL = 2.0 + np.pi
-BELOW = np.linspace(0.25, 3.75, 8)[None, :]  # eight slices of half a metre
-WEIGHT = np.full((1, 8), 0.5)
+BELOW = np.linspace(0.25, 11.75, 24)[None, :]  # slices of half a metre
+EDGE = BELOW - 0.25
+WIDTH = np.array([4.0])
+STRIP = Foundation(shape="strip", width=4.0, length=np.inf, depth=0.0, contact="rough", at=(0.0, 0.0))
 QUICK = {  # stiff, and nothing drains in the time looked at
     "permeability": "{ cv = 0.01 }",
     "preconsolidation": "{ pop = 30 }",
@@ -43,31 +47,89 @@ def state_with(given, strength):
     return site, replace(state, strength=np.broadcast_to(profile, state.strength.shape).copy())
 
 
-def line(strength):
-    return tuple(float(one[0]) for one in line_of_strength(strength, BELOW, WEIGHT))
+def line(strength, shape=STRIP, below=BELOW):
+    found = strength_line(shape, below=below, edge=below - 0.25, strength=strength, width=WIDTH)
+    return float(found.start[0]), float(found.growth[0]), float(found.crust_factor[0])
 
 
-def test_straight_profile_is_found_again():
-    assert line(12.0 + 3.0 * BELOW) == pytest.approx((12.0, 3.0, 12.75))
-    assert line(np.full((1, 8), 20.0)) == pytest.approx((20.0, 0.0, 20.0))
+@pytest.mark.parametrize("shape", ["strip", "circle"])
+def test_straight_profile_is_found_again(shape):
+    plan = replace(STRIP, shape=shape, length=np.inf if shape == "strip" else 4.0)
+    assert line(12.0 + 3.0 * BELOW, plan) == pytest.approx((12.0, 3.0, 1.0))
+    assert line(np.full(BELOW.shape, 20.0), plan) == (20.0, 0.0, 1.0)
 
 
-def test_crust_counts_with_its_mean_and_not_with_a_line_that_falls():
-    assert line(40.0 - 5.0 * BELOW) == pytest.approx((30.0, 0.0, 21.25))
+def test_line_from_nothing():
+    start, growth, crust = line(3.0 * BELOW)
+    assert (start, crust) == (pytest.approx(0.0, abs=2e-5), 1.0)
+    assert growth == pytest.approx(3.0, rel=1e-3)
+    carried = strip_capacity(start, growth, 4.0)
+    assert float(carried) == pytest.approx(3.0 * 4.0 / 4.0, rel=1e-3)
 
 
-def test_line_never_starts_below_zero():
-    step = np.where(BELOW < 3.0, 5.0, 80.0)
-    start, growth, least = line(step)
-    assert (start, least) == (0.0, 5.0)
-    assert growth == pytest.approx((step * BELOW).sum() / (BELOW**2).sum())
+def test_line_bends_over_below_one_width():
+    """Strength that stops growing at one width carries what it would if it went on."""
+    assert line(12.0 + 3.0 * np.minimum(BELOW, 4.0)) == pytest.approx((12.0, 3.0, 1.0))
 
 
-def test_points_outside_the_depth_looked_at_do_not_count():
-    strength, weight = 10.0 + 2.0 * BELOW, WEIGHT.copy()
-    strength[0, 5:], weight[0, 5:] = 1.0, 0.0
-    assert [float(one[0]) for one in line_of_strength(strength, BELOW, weight)] == pytest.approx(
-        [10.0, 2.0, 10.5]
+def test_line_lies_nowhere_above_the_profile_and_touches_it():
+    soft = np.where(BELOW < 1.5, 5.0, 80.0)
+    start, growth, _ = line(soft)
+    assert growth > 0.0
+    gap = soft - (start + growth * np.minimum(BELOW, 4.0))
+    assert gap[BELOW <= 8.0].min() == pytest.approx(0.0, abs=1e-9)
+    assert start < 5.0
+    assert line(np.where(BELOW < 4.0, 5.0, 80.0))[0] == pytest.approx(5.0)
+
+
+def test_clay_deeper_than_two_widths_does_not_count():
+    changed = np.where(BELOW > 8.0, 1.0, 12.0 + 3.0 * BELOW)
+    assert line(changed) == line(12.0 + 3.0 * BELOW)
+
+
+def test_points_above_the_level_do_not_count():
+    below = BELOW - 1.0
+    strength = np.where(below < 0.0, 1.0, 10.0 + 2.0 * below)
+    assert line(strength, below=below) == pytest.approx((10.0, 2.0, 1.0))
+
+
+def test_level_within_the_last_slice_takes_its_strength():
+    strength = np.full((1, 3), 15.0)
+    below = np.array([[-1.2, -0.7, -0.2]])
+    assert line(strength, below=below) == pytest.approx((15.0, 0.0, 1.0))
+    found = strength_line(STRIP, below=below, edge=below - 0.25, strength=strength, width=WIDTH)
+    parts = crust_parts(found, below=below[0], edge=below[0] - 0.25, strength=strength[0], width=4.0)
+    assert parts.number.tolist() == [2]
+    assert parts.excess.tolist() == [0.0]
+    assert parts.arc.sum() * 15.0 == pytest.approx(parts.alone)
+
+
+def test_strength_at_the_level_is_carried_on_where_it_grows():
+    below = np.array([[-0.5, 0.5, 1.5]])
+    for strength, expected in (([9.0, 10.0, 12.0], 9.0), ([9.0, 10.0, 7.0], 10.0), ([9.0, 1.0, 9.0], 3.2e-5)):
+        found = strength_at_level(below, np.array([strength]), WIDTH)
+        assert found == pytest.approx([expected])
+
+
+def test_crust_by_hand():
+    """30 kPa to 2 m on 10 kPa, width 4 m: the circle the program calls worst, by its own geometry."""
+    strength = np.where(BELOW < 2.0, 30.0, 10.0)
+    found = strength_line(STRIP, below=BELOW, edge=EDGE, strength=strength, width=WIDTH)
+    parts = crust_parts(found, below=BELOW[0], edge=EDGE[0], strength=strength[0], width=4.0)
+
+    def carried(aside, above):  # the soft clay begins at nine tenths of 2 m, over the width
+        radius = np.hypot(1.0 + aside, above)
+        whole, deep = np.arccos(above / radius), np.arccos(min((above + 0.45) / radius, 1.0))
+        return 2.0 * radius**2 * (30.0 * (whole - deep) + 10.0 * deep) / (aside + 0.5)
+
+    of_one_strength = 10.0 * 4.0 * (1.0 + 0.4288**2) * np.arctan(1.0 / 0.4288)
+    assert parts.alone == pytest.approx(of_one_strength)
+    least = min(carried(a, y) for a, y in zip(*circle_sections(), strict=True))
+    assert found.crust_factor[0] == pytest.approx(least / of_one_strength)
+    assert parts.worst_on_line + (parts.excess * parts.arc).sum() == pytest.approx(least)
+    assert (parts.line, parts.excess) == (
+        pytest.approx(np.full(16, 10.0)),
+        pytest.approx(np.where(BELOW[0, :16] < 2.0, 20.0, 0.0)),
     )
 
 
@@ -105,7 +167,8 @@ def test_soft_clay_below_a_crust_governs_by_the_spread_load():
     site, state = state_with(given, lambda z: np.where(z < 1.0, 60.0, 8.0))
     (first, upper), (second, lower) = capacities_at(site, {}, state.ground, state.strength, 0.01)
     assert (float(first.depth[0]), float(second.depth[0])) == (0.0, 1.0)
-    assert upper.strength[0] == pytest.approx(34.0, rel=1e-6)  # half crust, half soft
+    assert (upper.line.start[0], upper.line.growth[0]) == pytest.approx((8.0, 0.0))
+    assert 2.0 < upper.line.crust_factor[0] < 4.0
     assert lower.pressure[0] == pytest.approx(50.0 * 2.0 / 3.0)
     factor = bearing_at_checks(site, {}, state.ground, state.strength)
     assert factor[0, 0] == pytest.approx(PRANDTL * 8.0 / (50.0 * 2.0 / 3.0), rel=1e-6)
@@ -116,8 +179,8 @@ def test_thin_soft_clay_on_stiff_is_not_taken_below_its_own_strength():
     given = case('shape = "strip"\nwidth = 3', *layers)
     site, state = state_with(given, lambda z: np.where(z < 2.4, 10.0, 200.0))
     (_, found), _ = capacities_at(site, {}, state.ground, state.strength, 0.01)
-    assert found.strength[0] == 0.0
-    assert found.strip[0] == pytest.approx(PRANDTL * 10.0)
+    assert PRANDTL * 10.0 <= found.strip[0] <= 10.0 * (np.pi + 1.0 + 0.5 * 3.0 / 2.4) * 1.1
+    assert found.line.start[0] <= 10.0
 
 
 def test_granular_pad_spreads_the_load_onto_the_clay():
@@ -193,9 +256,36 @@ def test_squeezing_is_looked_at_where_the_clay_is_thin():
     thick = case('shape = "circle"\ndiameter = 7', clay("clay", 4.0, **QUICK), sand("sand", 2.0))
     site, state = state_with(thick, lambda z: np.full(z.shape, 20.0))
     assert squeezing_at(site, {}, state.ground, state.strength, 0.01) is None
-    buried = case('shape = "circle"\ndiameter = 20', sand("sand", 1.0), clay("clay", 4.0, **QUICK))
-    site, state = state_with(buried, lambda z: np.full(z.shape, 20.0))
-    assert squeezing_at(site, {}, state.ground, state.strength, 0.01) is None
+
+
+@pytest.mark.parametrize("blanket", [sand("sand", 1.0), clay("crust", 1.0, **QUICK)])
+def test_squeezing_is_looked_at_below_a_blanket_and_a_crust(blanket):
+    given = case('shape = "circle"\ndiameter = 20', blanket, clay("clay", 4.0, **QUICK))
+    site, state = state_with(given, lambda z: np.where(z < 1.0, 90.0, 20.0))
+    factor = squeezing_at(site, {}, state.ground, state.strength, 0.01)
+    pressure = 50.0 * (20.0 / 21.0) ** 2
+    assert factor == pytest.approx([(np.pi + 1.0 + 0.5 * 21.0 / 4.0) * 20.0 / pressure])
+
+
+@pytest.mark.parametrize(("lower", "looked_at"), [(40.0, True), (39.0, False)])
+def test_clay_twice_as_strong_is_firm(lower, looked_at):
+    given = case('shape = "strip"\nwidth = 10', clay("soft", 3.0, **QUICK), clay("stiff", 12.0, **QUICK))
+    site, state = state_with(given, lambda z: np.where(z < 3.0, 20.0, lower))
+    factor = squeezing_at(site, {}, state.ground, state.strength, 0.01)
+    if looked_at:
+        assert factor == pytest.approx([(np.pi + 1.0 + 0.5 * 10.0 / 3.0) * 20.0 / 50.0])
+    else:
+        assert factor is None
+
+
+def test_squeezing_is_judged_in_every_realisation():
+    given = case('shape = "strip"\nwidth = 10', clay("clay", 4.0, **QUICK), sand("sand", 2.0))
+    site = site_model(given)
+    state = ground_state(site, central(given) | {"clay.thickness": np.array([4.0, 6.0, 3.0])})
+    strength = np.full_like(state.strength, 20.0)
+    factor = squeezing_at(site, {}, state.ground, strength, 0.01)
+    nc = [np.pi + 1.0 + 0.5 * 10.0 / 4.0, np.inf, np.pi + 1.0 + 0.5 * 10.0 / 3.0]
+    assert factor == pytest.approx(np.array(nc) * 20.0 / 50.0)
 
 
 def test_level_wider_than_the_foundation_keeps_its_proportions():
