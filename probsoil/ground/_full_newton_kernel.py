@@ -87,7 +87,9 @@ def _linearise(
 ) -> None:
     """Take derivatives by differences, every third cell at once, for a cell knows its neighbours only."""
     n_cell, n_lane = trial.s.shape
-    system.origin[:] = trial.s
+    for i in range(n_cell):  # written out: a copy by slice brings in all the text of its errors to compile
+        for lane in range(n_lane):
+            system.origin[i, lane] = trial.s[i, lane]
     _imbalance(b, span, drains, soil, faces, state, trial, work, system.imbalance)
     for first in range(3):
         for i in range(first, n_cell, 3):
@@ -189,9 +191,9 @@ def solve_fully(
     shape, n_lane = trial.s.shape, trial.s.shape[1]
     system = _System(
         np.empty(shape),
-        np.zeros(shape),
         np.empty(shape),
-        np.zeros(shape),
+        np.empty(shape),
+        np.empty(shape),
         np.empty(shape),
         np.empty(n_lane),
         np.empty(n_lane),

@@ -141,7 +141,7 @@ CASES = {
 
 def test_time_of_parts(monkeypatch):
     print(f"\nload on the machine {os.getloadavg()[0]:.1f}, {os.cpu_count()} processors")
-    print("| Heron Flats | cells, steps | kernel | whole chunk |")
+    print("| Heron Flats | cells, steps | kernel | ground's answer in full |")
     for name, (make, slips) in CASES.items():
         study = prepare(make())
         site = study.site
