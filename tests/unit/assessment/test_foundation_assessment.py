@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from probsoil.assessment import assess, sheet
+from probsoil.assessment.bearing_formulas import bearing_formulas
 from probsoil.assessment.statements import assumptions
 from probsoil.ground.bearing_capacity import strength_growth_factor
 from probsoil.ground.site_model import site_model
@@ -134,3 +135,85 @@ def test_thin_clay_below_an_embankment_is_checked_for_squeezing() -> None:
     assert set(found) <= {"first lift", "second lift", "surcharge off"}
     assert "second lift" in found
     assert found["second lift"] > 0.5
+
+
+PLAIN = """
+format = 1
+title = "no crust"
+seed = 1
+horizon = 5
+[site]
+water_table = 0
+base = "undrained"
+[[layers]]
+name = "clay"
+soil = "clay"
+thickness = 12
+unit_weight = 16
+void_ratio = 1.8
+lambda = 0.3
+kappa = 0.05
+preconsolidation = { ocr = 1.3 }
+M = 1.0
+permeability = { cv = 0.01 }
+[load]
+shape = "strip"
+width = 6
+submergence = false
+[[stages]]
+name = "all"
+start = 0
+end = 0.01
+pressure = 5
+[[limits]]
+name = "end"
+quantity = "settlement"
+at = 5
+not_more_than = 1
+"""
+
+
+def test_sheet_of_strength_that_grows_from_the_surface_has_no_crust() -> None:
+    content = sheet(parse_scenario(PLAIN)).to_dict()
+    lines = {line["name"]: line for line in content["formulas"] if line["topic"] == "bearing"}
+    assert "crust factor" not in lines
+    (row,) = content["bearing"]
+    assert row["crust_factor"] == 1.0
+    assert row["growth_ratio"] > 10.0
+    start = lines["strength at the level, of the line that touches the profile"]
+    values = {one["symbol"]: one["value"] for one in start["symbols"]}
+    touched = next(one for one in content["bearing_points"] if one["below"] == values["z"])
+    assert touched["strength"] == pytest.approx(touched["line"], rel=1e-9)
+    assert all(point["excess"] == 0.0 for point in content["bearing_points"])
+
+
+def test_line_that_touches_at_the_level_is_worked_from_two_points() -> None:
+    """10 kPa at 0.5 m and 12 at 1.5 m: 9 kPa at the level, by the straight line."""
+    row = {
+        "stage": "all",
+        "depth": 0.0,
+        "width": 4.0,
+        "strength": 9.0,
+        "growth": 1.8,
+        "growth_ratio": 0.8,
+        "growth_factor": 1.18,
+        "crust_factor": 1.0,
+        "strip_capacity": 56.73,
+        "shape_factor": 1.0,
+        "depth_factor": 1.0,
+        "capacity": 56.73,
+        "pressure": 10.0,
+        "safety": 5.673,
+    }
+    profile = ((0.0, 9.0, 9.0), (0.5, 10.0, 9.9), (1.5, 12.0, 11.7))
+    points = [dict(zip(("below", "strength", "line"), point, strict=True)) for point in profile]
+    lines = bearing_formulas({"row": row, "circle": None, "points": points})
+    assert [line.name for line in lines] == [
+        "strength at the level, where the line touches the profile",
+        "growth of the line",
+        "capacity of a strip",
+        "bearing capacity",
+        "factor of safety",
+    ]
+    assert lines[0].numbers == "10 − max((12 − 10)/(1.5 − 0.5), 0) · 0.5"
+    assert lines[0].result == 9.0
