@@ -47,17 +47,19 @@ typedef struct {
     const uint8_t *joined;
     const double *drained;
     const int64_t *segment;
-    /* loading: stress (block, knot, cell, lane), spread (block, cell, lane), height (knot,), depth (block, lane) */
-    const row *load, *spread;
+    /* loading: stress (block, knot, cell, lane), spreads (block, cell, lane), height (knot,), depth (block, lane),
+       weight of fill that holds the level and gain (block, lane), granular (block, knot, lane) */
+    const row *load, *spread, *fill_spread;
     const double *height;
     const row *water_depth;
     double water_weight;
+    const row *fill_weight, *granular, *gain;
     /* schedule: (step,), (step, stage) */
     const double *step;
     const int64_t *knot;
     const double *weight;
     const int64_t *record;
-    const uint8_t *drains;
+    const uint8_t *drains, *held;
     /* answers: (block, segment, step, lane) of zeros, (block, slot, 2, cell, lane), (block, 2, lane) */
     row *settlement, *recorded;
     int64_t *failed;
@@ -70,6 +72,7 @@ typedef struct {
     row *trial_s, *trial_x, *trial_w, *total, *target;
     row *between, *pivot, *above; /* of the face above each cell, and one more below the last */
     row sunk, sunk_rate, foreseen, live, worst;
+    row fill, filling; /* thickness added so that the level stays, before the stage and in it */
 } Block;
 
 enum { SCRATCH_ARRAYS = 15 };
@@ -167,7 +170,7 @@ static void start(const Problem *p, int64_t b, Block *k)
             k->peak[i][l] = s;
             k->mass[i][l] = k->thickness[i][l] / (1.0 + k->void_ratio[i][l]);
         }
-    EACH_LANE k->sunk[l] = k->sunk_rate[l] = 0.0;
+    EACH_LANE k->sunk[l] = k->sunk_rate[l] = k->fill[l] = 0.0;
 }
 
 static inline double log_stress(double s)
@@ -222,19 +225,36 @@ static void set_out(const Problem *p, int stage, double length, Block *k)
     EACH_LANE k->foreseen[l] = k->sunk[l] + (stage == 0 ? span * k->sunk_rate[l] : sum[l] / GAMMA);
 }
 
+/* Thickness of fill that keeps the level at a settlement of the clay. */
+static void fill_up(const Problem *p, int64_t b, int64_t j, double share, const double *restrict sunk,
+                    double *restrict fill)
+{
+    const row *before = p->granular + b * p->n_knot + j, *after = before + 1;
+    EACH_LANE
+    {
+        double granular = (1.0 - share) * before[0][l] + share * after[0][l];
+        fill[l] = larger(sunk[l] + granular, 0.0) * p->gain[b][l];
+    }
+}
+
 static void add_load(const Problem *p, int64_t b, int64_t j, double share, Block *k)
 {
     double height = (1.0 - share) * p->height[j] + share * p->height[j + 1];
     const row *before = p->load + (b * p->n_knot + j) * p->n_cell, *after = before + p->n_cell;
-    const row *spread = p->spread + b * p->n_cell;
-    row off;
+    const row *spread = p->spread + b * p->n_cell, *fill_spread = p->fill_spread + b * p->n_cell;
+    row off, fill;
     EACH_LANE
-    off[l] = p->water_weight * smaller(larger(k->foreseen[l], 0.0), p->water_depth[b][l] + height);
+    {
+        double above_base = height + k->filling[l];
+        off[l] = p->water_weight * smaller(larger(k->foreseen[l], 0.0), p->water_depth[b][l] + above_base);
+        fill[l] = k->filling[l] * p->fill_weight[b][l];
+    }
     for (int64_t i = 0; i < p->n_cell; i++) {
         double *restrict total = k->total[i];
         EACH_LANE
         {
             double added = (1.0 - share) * before[i][l] + share * after[i][l];
+            added += fill[l] * fill_spread[i][l];
             total[l] = k->stress[i][l] + added - smaller(off[l] * spread[i][l], larger(added, 0.0));
         }
     }
@@ -303,7 +323,7 @@ static void pass_down(const Problem *p, double span, int drains, Block *k)
             double flow = g * (excess - excess_above[l]);
             double reciprocal = 1.0 / (diagonal[l] + g);
             double rest = diagonal[l] * reciprocal;
-            double slope = x[l] > xp[l] ? lam[l] : kap[l];
+            double slope = x[l] >= xp[l] ? lam[l] : kap[l];
             between[l] = g;
             pivot[l] = reciprocal;
             above[l] = change[l] + flow;
@@ -390,7 +410,13 @@ static void march(const Problem *p, int64_t b, Block *k)
         double length = p->step[n], span = GAMMA * length;
         for (int stage = 0; stage < 2; stage++) {
             set_out(p, stage, length, k);
-            add_load(p, b, p->knot[2 * n + stage], p->weight[2 * n + stage], k);
+            int64_t j = p->knot[2 * n + stage];
+            double share = p->weight[2 * n + stage];
+            if (p->held[n])
+                fill_up(p, b, j, share, k->foreseen, k->filling);
+            else
+                memcpy(k->filling, k->fill, sizeof(row));
+            add_load(p, b, j, share, k);
             EACH_LANE k->live[l] = 1.0;
             for (int round = 0; round < MOST_ITERATIONS; round++) {
                 pass_down(p, span, p->drains[n], k);
@@ -402,6 +428,8 @@ static void march(const Problem *p, int64_t b, Block *k)
         for (int64_t i = 0; i < n_cell; i++)
             EACH_LANE failed[LANES + l] += k->void_ratio[i][l] - k->trial_w[i][l] < LEAST_VOID_RATIO;
         finish(p, length, k);
+        if (p->held[n])
+            fill_up(p, b, p->knot[2 * n + 1], p->weight[2 * n + 1], k->sunk, k->fill);
         for (int64_t i = 0; i < n_cell; i++) {
             double *restrict sum = p->settlement[(b * p->n_segment + p->segment[i]) * p->n_step + n];
             EACH_LANE sum[l] += k->mass[i][l] * k->w[i][l];

@@ -37,6 +37,7 @@ AGREEMENT = 1e-9  # of each realisation's greatest settlement; both stop iterati
 
 SIZES = ("n_block", "n_cell", "n_knot", "n_step", "n_slot", "n_segment")
 ANSWERS = ("settlement", "recorded", "failed")
+KINDS = {"water_weight": ctypes.c_double}  # where it is no array
 
 
 class Problem(ctypes.Structure):
@@ -45,8 +46,7 @@ class Problem(ctypes.Structure):
     _fields_ = (
         *((name, ctypes.c_int64) for name in SIZES),
         *((name, ctypes.c_void_p) for name in (*Soil._fields, *Faces._fields)),
-        *((f"load_{name}", ctypes.c_void_p) for name in Loading._fields[:-1]),
-        ("water_weight", ctypes.c_double),
+        *((f"load_{name}", KINDS.get(name, ctypes.c_void_p)) for name in Loading._fields),
         *((name, ctypes.c_void_p) for name in (*Schedule._fields, *ANSWERS)),
     )
 
@@ -61,15 +61,9 @@ def problem(soil, faces, loading, schedule, answers):
         recorded.shape[1],
         settlement.shape[1],
     )
-    arrays = (*soil, *faces, *loading[:-1])
-    for array in (*arrays, *schedule, *answers):
-        assert array.flags.c_contiguous
-    return Problem(
-        *sizes,
-        *(array.ctypes.data for array in arrays),
-        loading.water_weight,
-        *(array.ctypes.data for array in (*schedule, *answers)),
-    )
+    given = (*soil, *faces, *loading, *schedule, *answers)
+    assert all(one.flags.c_contiguous for one in given if isinstance(one, np.ndarray))
+    return Problem(*sizes, *(one.ctypes.data if isinstance(one, np.ndarray) else one for one in given))
 
 
 @pytest.fixture(scope="module")
