@@ -92,9 +92,9 @@ class Study:
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
             ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
             computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
-            settlement, flags, and in the first chunks ``settlement`` through time, that of every
-            ``station`` at the times they are kept (model error included in all these) and where the
-            critical ``circle`` lies.
+            settlement, thickness of ``fill_added`` where a level is held, flags, and in the first chunks
+            ``settlement`` through time, that of every ``station`` at the times they are kept (model error
+            included in all these) and where the critical ``circle`` lies.
         """
         z = self.latent(chunk)
         values = self.section_values(z)
@@ -121,6 +121,8 @@ class Study:
             arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values, stations)
         if self.site.seeps or self.site.excess_layers:
             arrays["uplifted"] = response.uplifted if stations is None else stations.uplifted
+        if self.site.hold_level_until is not None:
+            arrays["fill_added"] = error * response.fill_added[:, -1]
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             if stations is not None:

@@ -9,6 +9,7 @@ from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.evaluation import Study
 from probsoil.assessment.stations import place_record, station_record
+from probsoil.ground.site_model import SiteModel
 from probsoil.probability import Exceedance, exceedance, exceedance_curve, median_interval
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
@@ -43,6 +44,8 @@ class CampaignSample:
         Where the critical circles of the first realisations lie.
     station : ndarray, shape (n_band, n_station, n_when), [m]
         Settlement of the first realisations at every station.
+    fill_added : ndarray, shape (n_sample,), [m]
+        Thickness of fill added to hold its level; empty where none is.
     converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -64,6 +67,7 @@ class CampaignSample:
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
     station: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 0)))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -231,6 +235,37 @@ def settlement_record(study: Study, sample: CampaignSample) -> Row:
     } | station_record(study, sample.station)
 
 
+def added_fill_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
+    """Return how much fill holding the level takes.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Until when, and the section of an embankment.
+    sample : CampaignSample
+        All realisations.
+
+    Returns
+    -------
+    rows : list of dict
+        One, ready for JSON: thickness on the centreline [m] and volume, per metre run of an embankment
+        [m3/m] or per square metre of an area [m3/m2]; none where no level is held.
+    """
+    if site.hold_level_until is None:
+        return []
+    width, unit = (1.0, "m3/m2") if site.embankment is None else (site.embankment.mean_width, "m3/m")
+    worst = _WORST["not more than"]
+    return [
+        {
+            "until": site.hold_level_until,
+            "unit": unit,
+            "mean_width": None if site.embankment is None else width,
+            "thickness": _summary(sample.fill_added, worst=worst),
+            "volume": _summary(width * sample.fill_added, worst=worst),
+        }
+    ]
+
+
 def slip_rows(study: Study, sample: CampaignSample) -> list[Row]:
     """Return the factor of safety against slip at every check.
 
@@ -275,7 +310,7 @@ def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
 def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factors: FloatArray) -> list[Row]:
     site = study.site
     replicate = sample.replicate if study.points.replicates > 1 else None
-    ends = {site.traffic_from: "traffic"} | {stage.end: stage.name for stage in site.stages}
+    ends = {site.traffic_from: "traffic"} | site.end_names
     rows: list[Row] = []
     for time, factor in zip(times.tolist(), factors.T, strict=True):
         below = exceedance(

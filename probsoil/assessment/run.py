@@ -31,6 +31,7 @@ from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
     CampaignSample,
+    added_fill_rows,
     bearing_rows,
     driver_rows,
     limit_rows,
@@ -302,6 +303,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
             row | {"circle": circle} for row, circle in zip(slip_rows(study, sample), circles, strict=True)
         ],
         "bearing": bearing_rows(study, sample),
+        "added_fill": added_fill_rows(site, sample),
         "drivers": rows,
         "driver_quality": quality,
         "ground": ground_record(study, at_means),
@@ -330,6 +332,7 @@ def _write(folder: Path, results: dict[str, Any], sample: CampaignSample, source
         slip=sample.slip,
         bearing=sample.bearing,
         final=sample.final,
+        fill_added=sample.fill_added,
     )
     write_durably(folder / REALISATIONS_FILE, buffer.getvalue())
     if source is not None and source.resolve() != (folder / COPY).resolve():

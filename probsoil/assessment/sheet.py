@@ -230,7 +230,7 @@ def _in_detail(run: SheetRun, rows: list[Sublayer], points: PointState) -> dict[
 
 
 def _by_stage(site: SiteModel, times: FloatArray, factors: FloatArray) -> dict[str, float]:
-    ends = {stage.end: stage.name for stage in site.stages}
+    ends = site.end_names
     pairs = zip(times.tolist(), factors.tolist(), strict=True)
     return {ends[time]: factor for time, factor in pairs if time in ends}
 

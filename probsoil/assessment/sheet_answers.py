@@ -49,6 +49,7 @@ def time_rows(run: SheetRun) -> list[dict[str, Any]]:
         row = {
             "time": time,
             "fill_height": site.fill_height(time),
+            "fill_added": run.fill_added(time),
             "surface_pressure": run.surface_pressure(time),
             "clay": float(clay[index]),
             "granular": float(state.granular_settlement[0, index]),
@@ -144,7 +145,7 @@ def _spell(run: SheetRun, spells: Sequence[CreepSpell], index: int, segment: int
     rate = float(by_segment(run.site, spell.per_cell)[0, segment])
     decades = float(spell.decades(np.array([horizon]), segment)[0, 0])
     return {
-        "after": run.site.stages[index].name,
+        "after": run.site.changes[index].name,
         "origin": float(spell.origin[0, segment]),
         "begin": float(spell.begin[0, segment]),
         "until": min(spell.end, horizon),
@@ -278,7 +279,7 @@ def slip_rows(run: SheetRun) -> list[dict[str, Any]]:
         and the factor of safety [-].
     """
     site, safety = run.site, run.state.response.slip[0]
-    ends = {stage.end: stage.name for stage in site.stages}
+    ends = site.end_names
     moments = critical_moments(site, run.values, run.state)
     return [
         {
@@ -316,6 +317,7 @@ def _circle(one: SlipMoments) -> dict[str, Any]:
         "fill_cohesion_moment": one.fill_cohesion,
         "resisting_moment": one.resisting,
         "driving_form": one.driving_form,
+        "heavier": one.heavier,
         "traffic_form": one.traffic_form,
         "traffic_moment": one.traffic,
         "driving_moment": one.driving,

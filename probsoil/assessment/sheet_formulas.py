@@ -5,7 +5,6 @@ from typing import Any
 import numpy as np
 
 from probsoil.assessment.pore_pressure_formulas import (
-    GAMMA_W,
     IN_SITU,
     excess_formulas,
     pore_pressure_formulas,
@@ -137,71 +136,6 @@ def _total_stress(run: SheetRun, sublayer: Sublayer, row: Record, place: str) ->
         symbols,
         row=place,
     )
-
-
-def load_formulas(run: SheetRun, row: Record) -> list[Worked]:
-    """Return what leads from the load to the final effective stress.
-
-    Parameters
-    ----------
-    run : SheetRun
-        The computation.
-    row : dict
-        Numbers of the sub-layer of the example.
-
-    Returns
-    -------
-    lines : list of Worked
-        Stress increase, what submergence takes off, and the effective stress at the horizon.
-    """
-    time, place = run.site.horizon, f"{place_of(row)}, at {row['depth']:.3f} m and {run.site.horizon:g} years"
-    fill: Symbol = (run.at.get("load.fill_unit_weight", 0.0), "unit weight of the fill", "kN/m3")
-    height: Symbol = (run.site.fill_height(time), "height of fill", "m")
-    increase: Symbol = (row["stress_increase"], "stress increase", "kPa")
-    spread = float(run.state.ground.load.spread[0, _point(run, row)])
-    clay = float(run.state.consolidation.settlement[0, -1])
-    lines = []
-    if row["influence"] is not None:
-        symbols: dict[str, Symbol] = {
-            "I": (row["influence"], "influence of the load", "-"),
-            "γf": fill,
-            "h": height,
-            "p": (run.site.pressure(time), "pressure besides the fill", "kPa"),
-        }
-        result = (row["stress_increase"], "kPa")
-        lines.append(worked(LOAD, "stress increase", "Δσ = I · (γf · h + p)", result, symbols, row=place))
-    if run.site.submergence:
-        symbols = {
-            "γw": GAMMA_W,
-            "sc": (max(clay, 0.0), "settlement of the clay", "m"),
-            "zw": (run.at["site.water_table"], "depth of the water table", "m"),
-            "h": height,
-            "I0": (spread, "influence of the load at its full height", "-"),
-            "Δσ": increase,
-        }
-        formula = "δ = min(γw · min(sc, zw + h) · I0, Δσ)"
-        if row["initial_excess"]:
-            symbols["ui"] = (row["initial_excess"], "initial excess pore pressure", "kPa")
-            formula = "δ = min(γw · min(sc, zw + h) · I0, max(Δσ + ui, 0))"
-        lines.append(
-            worked(LOAD, "taken off by submergence", formula, (row["relief"], "kPa"), symbols, row=place)
-        )
-    symbols = {
-        "σ'0": (row["initial_stress"], "effective stress in situ", "kPa"),
-        "Δσ": increase,
-        "δ": (row["relief"], "taken off by submergence", "kPa"),
-        "u": (row["excess_pore_pressure"], "excess pore pressure left, from the consolidation", "kPa"),
-    }
-    formula = "σ' = σ'0 + Δσ − δ − u"
-    if row["initial_excess"]:
-        symbols["ui"] = (row["initial_excess"], "initial excess pore pressure", "kPa")
-        formula = "σ' = σ'0 + ui + Δσ − δ − u"
-    final = (row["final_stress"], "kPa")
-    return [*lines, worked(LOAD, "effective stress", formula, final, symbols, row=place)]
-
-
-def _point(run: SheetRun, row: Record) -> int:
-    return int(np.abs(run.state.ground.points.depth[0] - row["depth"]).argmin())
 
 
 def compression_formulas(run: SheetRun, sublayer: Sublayer, row: Record) -> list[Worked]:

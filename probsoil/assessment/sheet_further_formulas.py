@@ -307,10 +307,13 @@ def slip_formulas(run: SheetRun, rows: list[Record]) -> list[Worked]:
     lines.append(worked(SLIP, "moment of friction in the fill", formula, moment, symbols, row=place))
     symbols = {"γf": fill, "V": (row["driving_form"], "moment of the fill inside the circle", "m3")}
     formula = "Md = γf · V"
+    if row["heavier"] != 1.0:
+        symbols["w"] = (row["heavier"], "weight with the fill that was added over that without", "-")
+        formula = "Md = w · γf · V"
     if row["traffic_moment"]:
         symbols["p"] = (run.at["load.traffic"], "pressure of traffic", "kPa")
         symbols["Vt"] = (row["traffic_form"], "moment of a unit pressure on the top", "m2")
-        formula = "Md = γf · V + p · Vt"
+        formula += " + p · Vt"
     moment = (row["driving_moment"], "kNm/m")
     lines.append(worked(SLIP, "driving moment", formula, moment, symbols, row=place))
     return [*lines, _factor(row, place)]

@@ -7,6 +7,7 @@ from probsoil.assessment import sheet_further_formulas as further
 from probsoil.assessment.bearing_formulas import bearing_formulas
 from probsoil.assessment.distortion_formulas import distortion_formulas
 from probsoil.assessment.influence_formulas import influence_formulas
+from probsoil.assessment.load_formulas import load_formulas
 from probsoil.assessment.sheet_run import SheetRun
 from probsoil.assessment.sheet_sublayers import Sublayer
 
@@ -34,7 +35,7 @@ def worked_lines(run: SheetRun, example: Sublayer, content: dict[str, Any]) -> l
     lines = [
         *stress.in_situ_formulas(run, example, row),
         *influence_formulas(run, row),
-        *stress.load_formulas(run, row),
+        *load_formulas(run, row),
         *stress.compression_formulas(run, example, row),
         *stress.granular_formulas(run, rows),
         *distortion_formulas(run, content["distortion"]),

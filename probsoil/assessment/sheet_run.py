@@ -9,7 +9,8 @@ from probsoil._typing import FloatArray
 from probsoil.assessment.description import fixed_values
 from probsoil.assessment.evaluation import space_of
 from probsoil.errors import ConvergenceError, ParameterError
-from probsoil.ground.applied_load import relief_by_water, stress_at
+from probsoil.ground.applied_load import between_knots, relief_by_water, stress_at
+from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.profile import Values
 from probsoil.ground.response import GroundState, ground_state, respond, screened
 from probsoil.ground.site_model import SiteModel, site_model
@@ -87,7 +88,7 @@ class SheetRun:
         return int(np.searchsorted(self.site.record, time))
 
     def surface_pressure(self, time: float) -> float:
-        """Return what fill and pressure weigh on the ground at a time.
+        """Return what fill and pressure weigh on the ground at a time, less soil dug out for them.
 
         Parameters
         ----------
@@ -97,10 +98,50 @@ class SheetRun:
         Returns
         -------
         pressure : float, [kPa]
-            Unit weight times height of fill, and pressure besides.
+            Unit weight times height of fill, and pressure besides; where soil is dug out, less its effective
+            weight and the water under the base.
         """
-        weight = float(self.at.get("load.fill_unit_weight", 0.0))
-        return weight * self.site.fill_height(time) + self.site.pressure(time)
+        height = self.site.fill_height(time) + self.fill_added(time)
+        placed = np.array([self.fill_weight * height + self.site.pressure(time)])
+        return float(pressure_on_base(self.site, self.values, placed, time)[0])
+
+    @property
+    def fill_weight(self) -> float:
+        """Unit weight of the fill, zero where there is none, [kN/m3]."""
+        return float(self.at.get("load.fill_unit_weight", 0.0))
+
+    def further(self, time: float) -> FloatArray:
+        """Return the stress that further loads add at a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        stress : ndarray, shape (n_load, n_point), [kPa]
+            Of each further load at every point of the profile.
+        """
+        found = self.state.ground.load.further
+        if found is None:
+            return np.zeros((0, self.state.ground.clay.size))
+        return np.stack([between_knots(self.site, one, time)[0] for one in found])
+
+    def fill_added(self, time: float) -> float:
+        """Return the fill added to hold its level.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        thickness : float, [m]
+            On the centreline.
+        """
+        return float(self.state.ground.load.fill_added(time)[0])
 
     def added(self, time: float) -> tuple[FloatArray, FloatArray]:
         """Return the stress that the works add at a time, and what submergence takes off.

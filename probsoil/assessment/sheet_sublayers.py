@@ -282,7 +282,10 @@ def sublayer_rows(run: SheetRun, rows: list[Sublayer], state: PointState) -> lis
 
 def _row(run: SheetRun, row: Sublayer, state: PointState) -> dict[str, Any]:
     here, form = row.nearest, run.site.layers[row.layer]
-    surface = run.surface_pressure(run.site.horizon)
+    topped = run.fill_weight * run.fill_added(run.site.horizon)
+    surface = run.surface_pressure(run.site.horizon) - topped
+    further = float(run.further(run.site.horizon)[:, here].sum())
+    by_stages = float(state.added[here] - topped * run.state.ground.load.spread[0, here]) - further
     height = row.bottom - row.top
     at_point = {
         "depth": float(run.state.ground.points.depth[0, here]),
@@ -291,7 +294,8 @@ def _row(run: SheetRun, row: Sublayer, state: PointState) -> dict[str, Any]:
         "initial_excess": float(state.underway[here]),
         "initial_stress": float(state.initial[here]),
         "preconsolidation": float(state.preconsolidation[here]) if form.is_clay else None,
-        "influence": None if surface == 0.0 else float(state.added[here]) / surface,
+        "influence": None if surface == 0.0 else by_stages / surface,
+        "further_stress": further,
         "stress_increase": float(state.added[here]),
         "relief": float(state.relief[here]),
         "excess_pore_pressure": float(state.excess[here]),

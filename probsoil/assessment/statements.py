@@ -88,10 +88,21 @@ _TRAFFIC = (
     "in the fill below it, not in the ground, and causes no consolidation.",
 )
 _AREA = ("The load is taken as wide compared with the depth of the clay: every depth feels it in full.",)
+_NET = (
+    "The pressure on the foundation is net: in excess of the weight of soil dug out, whose removal is not "
+    "computed by itself.",
+)
+_EXCAVATED = (
+    "Soil is dug out over the plan of the foundation in the stages that say so; below its base the effective "
+    "stress falls by what that soil weighs, less the water in it, spread like the load, and the clay swells. "
+    "Water stands in the excavation and presses under the base as high as the water table. What is placed "
+    "first takes the place of that water, then reloads the clay. Heave is settlement below zero.",
+    "Bearing is looked at with the pressure beyond the soil dug out and the water; failure of the bottom or "
+    "the sides of the excavation is not looked at.",
+)
 _FOUNDATION = (
     "Stress from the foundation is that of a uniform pressure on a homogeneous elastic half-space "
-    "(Boussinesq), from its base down; the clay above the base gets none. The pressure is net: in excess of "
-    "the weight of soil dug out, whose removal is not computed by itself. The foundation is flexible; "
+    "(Boussinesq), from its base down; the clay above the base gets none. The foundation is flexible; "
     "settlement is that of the reported point.",
     "Water leaves at the base of the foundation as at ground level, and flows vertically below it: "
     "sideways drainage, which hastens settlement under a small foundation, is left out.",
@@ -120,6 +131,26 @@ _SUBMERGENCE = (
     "loses the weight of the water it displaces.",
 )
 
+_LEVEL_HELD = (
+    "Until its stated time the level of the fill is held: fill is added as the ground settles, so that its "
+    "thickness on the centreline is the designed height and the settlement together. It weighs as the fill "
+    "does, spreads its stress as the load does at its greatest height, and is taken to be everywhere in the "
+    "same proportion to the fill above it; its volume follows from that. Afterwards none is added.",
+    "In slip the fill stands as high as designed above the ground as it was; what was added below that "
+    "drives with its whole weight, also under water, and resists nothing. While fill is added there is no "
+    "creep.",
+)
+
+_FURTHER = (
+    "Further loads add their stress at the reported point (Boussinesq, superposed) and are not assessed "
+    "themselves. The strength that the clay gains from them there counts in slip and bearing of the load; "
+    "under its slope or edge it is reduced as that from the load itself. No failure runs through two loads, "
+    "and a further load neither drives a slip nor holds one back.",
+)
+_FURTHER_SUNK = (
+    "Below further loads the ground is taken to have sunk below the water table as at the reported point.",
+)
+
 
 def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
     """Return the assumptions behind a result, in words.
@@ -142,7 +173,7 @@ def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
     if np.isfinite(site.traffic_from):
         load += (*_TRAFFIC, f"It counts from {site.traffic_from:.3g} years on.")
     if site.foundation is not None:
-        load = _FOUNDATION
+        load = (*_FOUNDATION, *(_EXCAVATED if site.excavates else _NET))
     base = (
         "What lies below the last layer "
         + ("drains freely." if site.base_drained else "lets no water through.")
@@ -158,4 +189,12 @@ def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
         *(_SEEPAGE if site.seeps else ()),
         *(_EXCESS if site.excess_layers else ()),
     )
-    return (*ground, *creep, *flow, *load, *(_SUBMERGENCE if site.submergence else ()), *base)
+    submergence = _SUBMERGENCE if site.submergence else ()
+    held = () if site.hold_level_until is None else _LEVEL_HELD
+    return (*ground, *creep, *flow, *load, *_further(site), *held, *submergence, *base)
+
+
+def _further(site: SiteModel) -> tuple[str, ...]:
+    if not site.further_loads:
+        return ()
+    return (*_FURTHER, *_FURTHER_SUNK) if site.submergence else _FURTHER

@@ -69,6 +69,7 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
         console.print(f"Load: {text}\n")
         if foundation is not None and not scenario.all_stations:
             console.print(f"Settlement is that of the {foundation.station}\n")
+    _print_further_loads(console, scenario)
     print_table(
         console,
         "Stages",
@@ -77,10 +78,22 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
     )
 
 
+def _print_further_loads(console: "Console", scenario: "Scenario") -> None:
+    from probsoil.assessment.description import further_load_text
+    from probsoil.ground.site_forms import stage_forms
+    from probsoil.ground.site_layout import further_load_forms
+
+    for one in further_load_forms(scenario, stage_forms(scenario)):
+        console.print(f"Further load {one.name}: {further_load_text(one)}\n")
+
+
 def _change(stage: "Stage") -> str:
+    on = "" if stage.load is None else f" on {stage.load}"
+    if stage.excavate is not None:
+        return f"{stage.excavate:g} m of soil dug out"
     if stage.height is not None:
-        return f"{stage.height:+g} m of fill"
-    return f"{stage.pressure:+g} kPa"
+        return f"{stage.height:+g} m of fill{on}"
+    return f"{stage.pressure:+g} kPa{on}"
 
 
 def _print_stations(console: "Console", scenario: "Scenario") -> None:

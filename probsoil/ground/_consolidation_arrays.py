@@ -40,10 +40,14 @@ class Loading(NamedTuple):
     """Added stress (block, knot, cell, lane), and what submergence takes off again."""
 
     stress: FloatArray
-    spread: FloatArray  # (block, cell, lane)
+    spread: FloatArray  # (block, cell, lane), of what submergence takes off
+    fill_spread: FloatArray  # the same, of fill that holds the level
     height: FloatArray  # (knot,), of fill
     water_depth: FloatArray  # (block, lane)
     water_weight: float  # zero where submergence does not count
+    fill_weight: FloatArray  # (block, lane), of fill that holds the level; zero where none does
+    granular: FloatArray  # (block, knot, lane), settlement of granular layers without that fill
+    gain: FloatArray  # (block, lane), fill added per settlement without it
 
 
 class Schedule(NamedTuple):
@@ -54,6 +58,7 @@ class Schedule(NamedTuple):
     weight: FloatArray  # (step, stage)
     record: IntArray  # (step,), -1 for none
     drains: BoolArray  # (step,), whether vertical drains work
+    held: BoolArray  # (step,), whether fill is added so that its level stays
 
 
 class State(NamedTuple):
@@ -67,6 +72,7 @@ class State(NamedTuple):
     mass: FloatArray
     peak: FloatArray  # greatest total so far, which no effective stress exceeds
     sunk: FloatArray  # (2, lane): settlement and its rate
+    fill: FloatArray  # (lane,): thickness added so that the level stays
 
 
 class Trial(NamedTuple):
@@ -96,6 +102,7 @@ class Work(NamedTuple):
     live: FloatArray
     worst: FloatArray  # by how much a change of stress exceeds the tolerance
     sunk: FloatArray  # settlement foreseen, then the pressure it takes off
+    fill: FloatArray  # thickness added so that the level stays, then its pressure
 
 
 @compiled
@@ -111,6 +118,7 @@ def empty_state(n_cell: int, n_lane: int) -> State:
         np.empty(shape),
         np.empty(shape),
         np.empty((2, n_lane)),
+        np.empty(n_lane),
     )
 
 
@@ -131,6 +139,7 @@ def empty_work(n_cell: int, n_lane: int) -> Work:
         np.empty(one_more),
         np.empty(one_more),
         np.empty(one_more),
+        np.empty(n_lane),
         np.empty(n_lane),
         np.empty(n_lane),
         np.empty(n_lane),

@@ -57,6 +57,7 @@ def _start(b: int, soil: Soil, state: State) -> None:
     for lane in range(n_lane):
         state.sunk[0, lane] = 0.0
         state.sunk[1, lane] = 0.0
+        state.fill[lane] = 0.0
 
 
 @compiled
@@ -73,21 +74,41 @@ def _guess(state: State, span: float, trial: Trial) -> None:
 
 
 @compiled
+def _fill_up(b: int, j: int, share: float, loading: Loading, sunk: FloatArray, fill: FloatArray) -> None:
+    """Thickness of fill that keeps the level at a settlement of the clay, between load knots j and j + 1."""
+    arrays_are_separate()
+    for lane in range(fill.size):
+        granular = (1.0 - share) * loading.granular[b, j, lane] + share * loading.granular[b, j + 1, lane]
+        fill[lane] = max(sunk[lane] + granular, 0.0) * loading.gain[b, lane]
+
+
+@compiled
+def _keep(before: FloatArray, fill: FloatArray) -> None:
+    """Thickness of fill that was added before."""
+    arrays_are_separate()
+    for lane in range(fill.size):
+        fill[lane] = before[lane]
+
+
+@compiled
 def _add_load(b: int, j: int, share: float, soil: Soil, loading: Loading, trial: Trial, work: Work) -> None:
     """Total of initial and added stress between load knots j and j + 1.
 
     What has sunk below the water table, first the ground above it and then the fill, loses the
-    weight of water.
+    weight of water. Fill that holds the level is spread as the load is.
     """
     arrays_are_separate()
     n_cell, n_lane = trial.s.shape
     height = (1.0 - share) * loading.height[j] + share * loading.height[j + 1]
     for lane in range(n_lane):
-        submerged = min(max(work.sunk[lane], 0.0), loading.water_depth[b, lane] + height)
+        above_base = height + work.fill[lane]
+        submerged = min(max(work.sunk[lane], 0.0), loading.water_depth[b, lane] + above_base)
         work.sunk[lane] = loading.water_weight * submerged
+        work.fill[lane] *= loading.fill_weight[b, lane]
     for i in range(n_cell):
         for lane in range(n_lane):
             added = (1.0 - share) * loading.stress[b, j, i, lane] + share * loading.stress[b, j + 1, i, lane]
+            added += work.fill[lane] * loading.fill_spread[b, i, lane]
             relief = min(work.sunk[lane] * loading.spread[b, i, lane], max(added, 0.0))
             trial.total[i, lane] = soil.stress[b, i, lane] + added - relief
 
@@ -193,13 +214,20 @@ def consolidate_lanes(
                 else:
                     _second_target(span, state, trial, work)
                     _guess(state, length, trial)
-                _add_load(b, schedule.knot[n, stage], schedule.weight[n, stage], soil, loading, trial, work)
+                j, share = schedule.knot[n, stage], schedule.weight[n, stage]
+                if schedule.held[n]:
+                    _fill_up(b, j, share, loading, work.sunk, work.fill)
+                else:
+                    _keep(state.fill, work.fill)
+                _add_load(b, j, share, soil, loading, trial, work)
                 solve_stage(b, span, schedule.drains[n], soil, faces, state, trial, work)
                 for lane in range(n_lane):
                     if not work.worst[lane] <= 0.0:  # also when it is not a number
                         failed[b, 0, lane] += 1
             _count_closed(b, soil, trial, failed)
             _finish(b, length, soil, state, trial)
+            if schedule.held[n]:
+                _fill_up(b, schedule.knot[n, 1], schedule.weight[n, 1], loading, state.sunk[0], state.fill)
             slot = schedule.record[n]
             for i in range(n_cell):
                 segment = faces.segment[i]

@@ -36,7 +36,7 @@ def _eliminate(b: int, soil: Soil, faces: Faces, state: State, trial: Trial, wor
             flow = between * (excess - work.excess[lane])
             pivot = 1.0 / (work.diagonal[lane] + between)
             rest = work.diagonal[lane] * pivot  # that is 1 - between * pivot, without the cancellation
-            virgin = trial.x[i, lane] > state.xp[i, lane]
+            virgin = trial.x[i, lane] >= state.xp[i, lane]
             slope = soil.lam[b, i, lane] if virgin else soil.kap[b, i, lane]
             capacity = state.mass[i, lane] * slope / max(trial.s[i, lane], LEAST_STRESS) + work.leak[i, lane]
             stored = state.mass[i, lane] * (trial.w[i, lane] - trial.target[i, lane])

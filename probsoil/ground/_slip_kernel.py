@@ -17,7 +17,8 @@ class Moments(NamedTuple):
     """What the factor of safety of every circle is made of.
 
     `strength` is (block, column, lane) [kPa]; the sparse rows are circles, weights in [m2];
-    `fill` (block, 4, lane) holds unit weight, tangent of the friction angle, cohesion and traffic;
+    `fill` (block, 5, lane) holds unit weight, tangent of the friction angle, cohesion, traffic and the
+    unit weight that drives;
     `fill_terms` (5, circle) holds the driving moment per unit weight [m3], the friction moment
     per unit weight and tangent [m3], the moments of cohesion and of traffic per kPa, and the friction
     moment of traffic per kPa and tangent [m2]; `touch` (circle,) and `bottom` (block, lane) are depths [m]
@@ -110,7 +111,7 @@ def _factors(b: int, circle: int, moments: Moments, ratio: FloatArray) -> None:
             ratio[lane] += moments.weight[entry] * moments.strength[b, moments.column[entry], lane]
         entry += 1
     for lane in range(LANES):
-        ratio[lane] /= moments.fill[b, 0, lane] * driving + moments.fill[b, 3, lane] * traffic
+        ratio[lane] /= moments.fill[b, 4, lane] * driving + moments.fill[b, 3, lane] * traffic
 
 
 @kept

@@ -1,16 +1,19 @@
 """Stress that the works add to each point of the ground through the stages."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
+from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
+from probsoil.ground.further_load import foundation_influence, share_above
 from probsoil.ground.load_stress import trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
+from probsoil.ground.top_up import AddedFill
 
 _GAUSS_POINTS = 6
 
@@ -30,11 +33,17 @@ class AppliedLoad:
         foundation that below the edge (at the middle of a long side) over that below the reported
         point, at most 1; 1 for a wide area.
     height : ndarray, shape (n_knot,), [m]
-        Height of fill at the load knots.
+        Height of fill at the load knots, where it is highest on the site.
     water_depth : ndarray, shape (n_sample,), [m]
         Depth of the water table.
     berm_share : ndarray or None, shape (n_sample, n_point), [-]
         As `slope_share`, below the middle of a berm and its slope; None without berms.
+    further : ndarray or None, shape (n_load, n_knot, n_sample, n_point), [kPa]
+        What of `stress` each further load adds; None without.
+    further_spread : ndarray or None, shape (n_sample, n_point), [-]
+        As `spread`, of all further loads together; None without.
+    added_fill : AddedFill or None
+        Fill that held the level, besides `stress`; None where none did or before it is known.
     """
 
     stress: FloatArray
@@ -43,6 +52,29 @@ class AppliedLoad:
     height: FloatArray
     water_depth: FloatArray
     berm_share: FloatArray | None = None
+    further: FloatArray | None = None
+    further_spread: FloatArray | None = None
+    added_fill: AddedFill | None = None
+
+    @property
+    def spread_of_all(self) -> FloatArray:
+        """Share of a pressure on every load of the site that reaches each point, (n_sample, n_point), [-]."""
+        return self.spread if self.further_spread is None else self.spread + self.further_spread
+
+    def fill_added(self, time: float) -> FloatArray:
+        """Return the fill added so that the level stays.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+
+        Returns
+        -------
+        thickness : ndarray, shape (n_sample,), [m]
+            Zero where none is.
+        """
+        return np.zeros(len(self.spread)) if self.added_fill is None else self.added_fill.at(time)
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -85,12 +117,36 @@ def stress_at(site: SiteModel, load: AppliedLoad, time: float) -> FloatArray:
     Returns
     -------
     stress : ndarray, shape (n_sample, n_point), [kPa]
+        Linear between knots; with the fill that held the level.
+    """
+    stress = between_knots(site, load.stress, time)
+    if load.added_fill is None:
+        return stress
+    pressure = load.added_fill.unit_weight * load.fill_added(time)
+    return np.asarray(stress + pressure[:, None] * load.spread)
+
+
+def between_knots(site: SiteModel, stress: FloatArray, time: float) -> FloatArray:
+    """Return a stress given at the load knots at a time between them.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Its load knots.
+    stress : ndarray, shape (n_knot, n_sample, n_point), [kPa]
+        At the knots.
+    time : float, [years]
+        Time.
+
+    Returns
+    -------
+    stress : ndarray, shape (n_sample, n_point), [kPa]
         Linear between knots.
     """
     knots = site.knots
     after = int(np.clip(np.searchsorted(knots, time), 1, knots.size - 1))
     share = (time - knots[after - 1]) / (knots[after] - knots[after - 1])
-    return np.asarray((1.0 - share) * load.stress[after - 1] + share * load.stress[after])
+    return np.asarray((1.0 - share) * stress[after - 1] + share * stress[after])
 
 
 def applied_load(
@@ -126,7 +182,8 @@ def applied_load(
     -----
     Between knots the stress is taken as linear in time, also while an embankment rises and its
     top narrows; the base stays the same. A foundation adds nothing above its base; where the base
-    cuts through the thickness of a point, the part below it counts.
+    cuts through the thickness of a point, the part below it counts. Further loads add their stress at
+    the reported point, each from its own place.
     """
     n_sample, berm = depth.shape[0], None
     heights = [site.fill_height(float(time)) for time in site.knots]
@@ -146,20 +203,41 @@ def applied_load(
                 mean = _mean_spread(site.foundation, depth[:, thick], 0.5 * thickness[:, thick])
                 spread[:, thick] = mean
         stress = [
-            (weight * height + pressure)[:, None] * spread
-            for height, pressure in zip(heights, pressures, strict=True)
+            pressure_on_base(site, values, weight * height + pressure, float(time))[:, None] * spread
+            for height, pressure, time in zip(heights, pressures, site.knots, strict=True)
         ]
-    return AppliedLoad(
+    alone = AppliedLoad(
         stress=np.stack(stress),
         spread=spread,
         slope_share=share,
-        height=np.array(heights),
+        height=np.array([site.greatest_fill_height(float(time)) for time in site.knots]),
         water_depth=column(values, "site.water_table", n_sample),
         berm_share=berm,
     )
+    return _with_further_loads(alone, site, values, depth, thickness)
 
 
-def fill_weight(values: Values, n_sample: int) -> FloatArray:
+def _with_further_loads(
+    load: AppliedLoad, site: SiteModel, values: Values, depth: FloatArray, thickness: FloatArray | None
+) -> AppliedLoad:
+    if not site.further_loads:
+        return load
+    n_sample, spread = len(depth), np.zeros_like(depth)
+    half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
+    stresses = np.empty((len(site.further_loads), *load.stress.shape))
+    for place, one in enumerate(site.further_loads):
+        weight = fill_weight(values, n_sample, one.address)[:, None]
+        by_pressure = one.pressure_influence(depth, half, site.point)
+        spread += by_pressure
+        for knot, time in enumerate(site.knots.tolist()):
+            by_fill = one.fill_influence(depth, half, site.point, site.fill_height(time, one.name))
+            stresses[place, knot] = weight * by_fill + site.pressure(time, one.name) * by_pressure
+    # what submergence takes off is taken to be the same under every load
+    total = load.stress + stresses.sum(axis=0)
+    return replace(load, stress=total, further=stresses, further_spread=spread)
+
+
+def fill_weight(values: Values, n_sample: int, address: str = "load") -> FloatArray:
     """Return the unit weight of the fill.
 
     Parameters
@@ -168,13 +246,15 @@ def fill_weight(values: Values, n_sample: int) -> FloatArray:
         Value of every quantity by its address.
     n_sample : int, [-]
         Number of realisations.
+    address : str
+        First part of the load's addresses.
 
     Returns
     -------
     weight : ndarray, shape (n_sample,), [kN/m3]
         Zero where all stages give a pressure.
     """
-    key = "load.fill_unit_weight"
+    key = f"{address}.fill_unit_weight"
     return column(values, key, n_sample) if key in values else np.zeros(n_sample)
 
 
@@ -203,11 +283,8 @@ def _foundation_spread(
 ) -> tuple[FloatArray, FloatArray]:
     """Return the influence below the reported point, and that below the edge over it."""
     half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
-    loaded = 1.0 - _share_above(shape.depth, depth, half)
-    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
-    below = 0.5 * (top + bottom) - shape.depth
-    spread = loaded * shape.influence(below, *shape.at)
-    edge = loaded * shape.influence(below, 0.5 * shape.width, 0.0)
+    spread = foundation_influence(shape, depth, half, *shape.at)
+    edge = foundation_influence(shape, depth, half, 0.5 * shape.width, 0.0)
     share = np.clip(edge / np.where(spread > 0.0, spread, 1.0), 0.0, 1.0)
     return spread, np.where(spread > 0.0, share, 1.0)
 
@@ -238,13 +315,7 @@ def share_above_base(shape: Foundation, points: Points) -> FloatArray:
     share : ndarray, shape (n_sample, n_point), [-]
         From 0 below the base to 1 above it.
     """
-    return _share_above(shape.depth, points.depth, 0.5 * points.thickness)
-
-
-def _share_above(base: float, depth: FloatArray, half: FloatArray) -> FloatArray:
-    whole = np.where(half > 0.0, 2.0 * half, 1.0)
-    within = np.clip((base - depth + half) / whole, 0.0, 1.0)
-    return np.asarray(np.where(half > 0.0, within, depth < base), dtype=np.float64)
+    return share_above(shape.depth, points.depth, 0.5 * points.thickness)
 
 
 def relief_by_water(
@@ -273,16 +344,17 @@ def relief_by_water(
     -------
     relief : ndarray, shape (n_sample, n_point), [kPa]
         Weight of the water displaced by what has sunk below the water table, first the ground above
-        it and then the fill, spread like the load and never more than it and the initial excess.
+        it and then the fill, spread like the load and never more than it and the initial excess; under
+        further loads the ground is taken to have sunk as much.
     """
     if not site.submergence:
         return np.zeros_like(load.spread)
     sunk = np.where(settled > 0.0, settled, 0.0)  # also where there is no number for want of convergence
-    submerged = np.minimum(sunk, load.water_depth + site.fill_height(time))
+    submerged = np.minimum(sunk, load.water_depth + site.greatest_fill_height(time) + load.fill_added(time))
     most = stress_at(site, load, time)
     if excess is not None:
-        most = np.maximum(most + excess, 0.0)
-    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread, most)
+        most = most + excess
+    return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread_of_all, np.maximum(most, 0.0))
 
 
 def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:

@@ -14,6 +14,7 @@ from probsoil.ground.bearing_capacity import (
     rectangle_shape_factor,
     strip_capacity,
 )
+from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
 from probsoil.ground.profile import Values
 from probsoil.ground.site_model import SiteModel
@@ -194,7 +195,7 @@ def level_capacity(
     strength : ndarray, shape (n_sample, n_point), [kPa]
         Undrained strength of the clay points.
     pressure : ndarray, shape (n_sample,), [kPa]
-        Net pressure at the base, above zero.
+        Net pressure at the base; where it is not above zero nothing can fail.
 
     Returns
     -------
@@ -218,6 +219,7 @@ def level_capacity(
         shape_factor = rectangle_shape_factor(ratio, across, shape.contact)
     deep = depth_factor(shape.depth, level.width)
     capacity, there = strip * shape_factor * deep, pressure * level.share
+    pressed = pressure > 0.0
     return LevelCapacity(
         strength=c0,
         growth=growth,
@@ -227,7 +229,7 @@ def level_capacity(
         depth_factor=deep,
         capacity=capacity,
         pressure=there,
-        safety=np.where(level.exists, capacity / there, np.inf),
+        safety=np.where(level.exists & pressed, capacity / np.where(pressed, there, 1.0), np.inf),
     )
 
 
@@ -248,9 +250,11 @@ def net_pressure(site: SiteModel, values: Values, n_sample: int, time: float) ->
     Returns
     -------
     pressure : ndarray, shape (n_sample,), [kPa]
-        Fill height times unit weight, and pressure.
+        Fill height times unit weight, and pressure; where soil is dug out for it, less that soil and the
+        water under the base.
     """
-    return np.asarray(fill_weight(values, n_sample) * site.fill_height(time) + site.pressure(time))
+    placed = np.asarray(fill_weight(values, n_sample) * site.fill_height(time) + site.pressure(time))
+    return pressure_on_base(site, values, placed, time)
 
 
 def capacities_at(

@@ -5,7 +5,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.ground.applied_load import LoadedGround, relief_by_water, share_above_base, stress_at
+from probsoil.ground.applied_load import (
+    LoadedGround,
+    relief_by_water,
+    share_above_base,
+    stress_at,
+)
 from probsoil.ground.compression import void_ratio_lost
 from probsoil.ground.conductivity import (
     Conductivity,
@@ -21,6 +26,7 @@ from probsoil.ground.consolidation import (
     consolidate,
 )
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
+from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, column
 from probsoil.ground.rows import chosen, row_sum
 from probsoil.ground.site_model import DrainForm, SiteModel
@@ -49,12 +55,13 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     """
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
-    spread = chosen(load.spread, clay)
+    spread = chosen(load.spread_of_all, clay)
     submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
         stress=_added_total(ground),
         submergence=submergence if site.submergence else None,
+        level_held=level_held(site, values, ground),
     )
     flow = _conductivity(site, values, state)
     if site.foundation is not None:
@@ -400,7 +407,7 @@ def degrees_of_consolidation(
         now = result.settlement[:, np.searchsorted(site.times, time)]
         done = _done(site, ground, result.yield_stress[:, slot], float(time), now)
         at_record[:, slot] = _degree(now, done)
-        if time == site.last_change:
+        if time == site.last_load_change:
             done_last = _done(site, ground, result.yield_stress[:, slot], float(time), final)
     after_last = _degree(result.settlement, done_last[:, None])
     after_last[:, site.times < site.last_change] = np.nan

@@ -13,6 +13,7 @@ from probsoil.ground.cells import Cells
 from probsoil.ground.conductivity import Conductivity, RadialDrainage
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.lanes import LANES, Lanes
+from probsoil.ground.top_up import LevelHeld
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -70,11 +71,14 @@ class LoadHistory:
         Added total vertical stress at each knot.
     submergence : Submergence or None
         Loss of weight below the water table; None for none.
+    level_held : LevelHeld or None
+        Fill added as the ground settles, besides `stress`; None for none.
     """
 
     time: FloatArray
     stress: FloatArray
     submergence: Submergence | None = None
+    level_held: LevelHeld | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -90,7 +94,7 @@ class ConsolidationResult:
         Effective vertical and preconsolidation stress at the recorded times; those in situ where
         the computation failed.
     converged : ndarray of bool, shape (n_sample,), [-]
-        Whether every step was solved to tolerance with open voids.
+        Whether every step was solved to tolerance with open voids, and no fill was to be added without end.
     voids_closed : ndarray of bool, shape (n_sample,), [-]
         Whether the void ratio fell below 0.05 somewhere: the compression line does not reach that
         far, so initial stress, void ratio and lambda do not belong together.
@@ -197,6 +201,7 @@ def consolidate(
             weight=weight,
             record=slot,
             drains=_working(times, conductivity.drains),
+            held=_holding(times, load.level_held),
         ),
         settlement,
         recorded,
@@ -206,6 +211,7 @@ def consolidate(
     kept = lanes.unpack(recorded)
     unsolved, closed = lanes.unpack(failed).T > 0
     good = ~unsolved & ~closed & np.isfinite(through_time).all(axis=(1, 2))
+    good &= True if load.level_held is None else load.level_held.possible
     through_time[~good] = np.nan
     kept[~good, :, 0] = state.stress[~good, None]
     kept[~good, :, 1] = state.yield_stress[~good, None]
@@ -225,24 +231,31 @@ def _working(times: FloatArray, drains: RadialDrainage | None) -> BoolArray:
     return np.asarray(times[1:] > drains.start)
 
 
+def _holding(times: FloatArray, held: LevelHeld | None) -> BoolArray:
+    """Return for every step whether the level of the fill is held."""
+    return np.asarray(times[1:] <= (-np.inf if held is None else held.until))
+
+
 def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
-    stress = np.stack([lanes.pack(one) for one in load.stress], axis=1)
-    wet = load.submergence
-    if wet is None:
-        dry = np.zeros((lanes.n_block, load.stress.shape[2], LANES))
-        return Loading(
-            stress=stress,
-            spread=dry,
-            height=np.zeros(load.time.size),
-            water_depth=np.zeros((lanes.n_block, LANES)),
-            water_weight=0.0,
-        )
+    wet, held = load.submergence, load.level_held
+    nothing = np.zeros((lanes.n_block, LANES))
+
+    def per_lane(value: FloatArray) -> FloatArray:
+        return lanes.pack(value[:, None])[:, 0, :]
+
+    dry = np.zeros((lanes.n_block, load.stress.shape[2], LANES))
     return Loading(
-        stress=stress,
-        spread=lanes.pack(wet.spread),
-        height=wet.height,
-        water_depth=lanes.pack(wet.water_depth[:, None])[:, 0, :],
-        water_weight=WATER_UNIT_WEIGHT,
+        stress=np.stack([lanes.pack(one) for one in load.stress], axis=1),
+        spread=dry if wet is None else lanes.pack(wet.spread),
+        fill_spread=dry if held is None else lanes.pack(held.spread),
+        height=np.zeros(load.time.size) if wet is None else wet.height,
+        water_depth=nothing if wet is None else per_lane(wet.water_depth),
+        water_weight=0.0 if wet is None else WATER_UNIT_WEIGHT,
+        fill_weight=nothing if held is None else per_lane(held.unit_weight),
+        granular=np.zeros((lanes.n_block, load.time.size, LANES))
+        if held is None
+        else np.stack([per_lane(one) for one in held.granular], axis=1),
+        gain=nothing if held is None else per_lane(held.gain),
     )
 
 

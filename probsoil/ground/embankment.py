@@ -111,6 +111,13 @@ class Embankment:
         """Width at ground level, berms included, the same while the fill rises, [m]."""
         return self.crest_width + 2.0 * (self.side_slope * self.full_height + self.berm_width)
 
+    @property
+    def mean_width(self) -> float:
+        """Area of the section at its greatest height over that height, [m]."""
+        parts = self.trapezia(self.full_height)
+        area = sum(0.5 * (part.base_width + part.top_width) * part.height for part in parts)
+        return area / self.full_height
+
     def section(self, height: float) -> EmbankmentSection:
         """Return the cross-section at a fill height.
 

@@ -1,6 +1,6 @@
 """A foundation: its plan, its depth and the stress that it adds to the ground."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 import numpy as np
@@ -12,6 +12,7 @@ from probsoil.ground.load_displacement import (
     strip_displacement,
 )
 from probsoil.ground.load_stress import circle_influence, rectangle_influence, strip_influence
+from probsoil.scenario.further_loads import FurtherCircle, FurtherRectangle, FurtherStrip
 from probsoil.scenario.loads import CircleLoad, RectangleLoad, StripLoad
 
 Contact = Literal["rough", "smooth"]
@@ -35,6 +36,8 @@ class Foundation:
         Whether the base holds the soil under it.
     at : tuple of float, [m]
         Where settlement is reported: distances from the centre along the width and the length.
+    turned : bool
+        Whether the rectangle was given with its longer side first, so that its width lies along the plan.
     """
 
     shape: Literal["strip", "rectangle", "circle"]
@@ -43,6 +46,7 @@ class Foundation:
     depth: float
     contact: Contact
     at: tuple[float, float]
+    turned: bool = field(default=False, compare=False)
 
     def influence(self, depth: FloatArray, x: float, y: float) -> FloatArray:
         """Return the vertical stress at a plan position, as a share of the net pressure.
@@ -108,6 +112,11 @@ class Foundation:
         return width, share * share if self.shape == "circle" else share
 
     @property
+    def plan_point(self) -> tuple[float, float]:
+        """Where settlement is reported: distances from the centre across and along the load, [m]."""
+        return (self.at[1], self.at[0]) if self.turned else self.at
+
+    @property
     def title(self) -> str:
         """Sides and depth in words."""
         plan = {
@@ -145,14 +154,47 @@ def foundation_of(load: object) -> Foundation | None:
     """
     if not isinstance(load, StripLoad | RectangleLoad | CircleLoad):
         return None
+    turned = False
     if isinstance(load, RectangleLoad):
         width, length, at = load.width, load.length, load.at
-        if width > length:
+        if turned := width > length:
             width, length, at = length, width, (at[1], at[0])
     elif isinstance(load, StripLoad):
         width, length, at = load.width, float("inf"), (load.at, 0.0)
     else:
         width, length, at = load.diameter, load.diameter, (load.at, 0.0)
     return Foundation(
-        shape=load.shape, width=width, length=length, depth=load.depth, contact=load.contact, at=at
+        shape=load.shape,
+        width=width,
+        length=length,
+        depth=load.depth,
+        contact=load.contact,
+        at=at,
+        turned=turned,
+    )
+
+
+def further_foundation(load: object) -> Foundation | None:
+    """Return the foundation that a further load is.
+
+    Parameters
+    ----------
+    load : FurtherLoad
+        Further load of a scenario.
+
+    Returns
+    -------
+    foundation : Foundation or None
+        None for an embankment or an area; its width across and its length along, whichever is longer.
+    """
+    if isinstance(load, FurtherRectangle):
+        width, length = load.width, load.length
+    elif isinstance(load, FurtherStrip):
+        width, length = load.width, float("inf")
+    elif isinstance(load, FurtherCircle):
+        width, length = load.diameter, load.diameter
+    else:
+        return None
+    return Foundation(
+        shape=load.shape, width=width, length=length, depth=load.depth, contact="rough", at=(0.0, 0.0)
     )

@@ -31,16 +31,40 @@ def granular_settlement(site: SiteModel, values: Values, ground: LoadedGround) -
     comes back when load is removed. The loss of weight of submerged fill is left out here, which
     is on the large side.
     """
+    return between_knots(site, granular_at_knots(site, values, ground, ground.load.stress))
+
+
+def granular_at_knots(
+    site: SiteModel, values: Values, ground: LoadedGround, stress: FloatArray
+) -> FloatArray:
+    """Return the settlement of the granular layers under given stresses.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Layers.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points.
+    stress : ndarray, shape (n_knot, n_sample, n_point), [kPa]
+        Added stress.
+
+    Returns
+    -------
+    settlement : ndarray, shape (n_knot, n_sample), [m]
+        For each of the stresses.
+    """
     n_sample = ground.points.depth.shape[0]
-    at_knots = np.zeros((site.knots.size, n_sample))
+    at_knots = np.zeros((len(stress), n_sample))
     for index, layer in enumerate(site.layers):
         if layer.is_clay:
             continue
         mine = ground.points.layer == index
         modulus = column(values, f"{layer.name}.constrained_modulus", n_sample)
-        squeezed = (ground.load.stress[:, :, mine] * ground.points.thickness[:, mine]).sum(axis=2)
+        squeezed = (stress[:, :, mine] * ground.points.thickness[:, mine]).sum(axis=2)
         at_knots += squeezed / modulus
-    return between_knots(site, at_knots)
+    return at_knots
 
 
 def between_knots(site: SiteModel, at_knots: FloatArray) -> FloatArray:

@@ -9,11 +9,14 @@ from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
 from probsoil.ground.consolidation import ConsolidationResult
+from probsoil.ground.excavation import kept_above_least
 from probsoil.ground.granular_settlement import granular_settlement
+from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+from probsoil.ground.top_up import added_fill
 from probsoil.ground.undrained_distortion import undrained_distortion
 
 COMPETING = 2e-3
@@ -60,6 +63,8 @@ class Response:
         Part of the settlement that is undrained distortion of the clay; empty where none is computed.
     uplifted : ndarray of bool, shape (n_sample,), [-]
         Whether pore pressure in situ is no less than the weight of the ground somewhere.
+    fill_added : ndarray, shape (n_sample, n_time), [m]
+        Thickness of fill added on the centreline so that its level stays; no columns where none is.
     """
 
     times: FloatArray
@@ -78,6 +83,7 @@ class Response:
     bearing: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -155,9 +161,11 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     yield_stress, floored = yield_stresses(site, values, points)
     clay = np.array([site.layers[index].is_clay for index in points.layer])
     load = applied_load(site, values, points.depth, points.thickness, thick=~clay)
+    if site.excavates:
+        load = replace(load, stress=kept_above_least(load.stress, points.stress))
     ground = LoadedGround(points=points, columns=columns, yield_stress=yield_stress, clay=clay, load=load)
     result = consolidate_clay(site, values, ground)
-    granular = granular_settlement(site, values, ground)
+    ground, granular = _with_added_fill(site, values, ground, result)
     secondary = secondary_settlement(site, values, ground, result)
     settlement, distortion = result.settlement + granular + secondary, np.zeros((0, 0))
     if site.distorts:
@@ -181,6 +189,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip=slip,
         critical_circle=critical,
         bearing=bearing,
+        fill_added=_fill_added(ground, result),
         converged=result.converged,
         voids_closed=result.voids_closed,
         floored=np.asarray(floored.any(axis=1)),
@@ -195,6 +204,25 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         strength_before=before,
         response=response,
     )
+
+
+def _with_added_fill(
+    site: SiteModel, values: Values, ground: LoadedGround, result: ConsolidationResult
+) -> tuple[LoadedGround, FloatArray]:
+    """Return the ground with the fill that held the level, and the settlement of the granular layers."""
+    granular = granular_settlement(site, values, ground)
+    held = level_held(site, values, ground)
+    if held is None:
+        return ground, granular
+    added = added_fill(held, site.times, result.settlement, granular)
+    load = replace(ground.load, added_fill=added)
+    return replace(ground, load=load), granular + held.granular_share[:, None] * added.thickness
+
+
+def _fill_added(ground: LoadedGround, result: ConsolidationResult) -> FloatArray:
+    if ground.load.added_fill is None:
+        return np.zeros((result.converged.size, 0))
+    return np.where(result.converged[:, None], ground.load.added_fill.thickness, np.nan)
 
 
 def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> SiteModel:

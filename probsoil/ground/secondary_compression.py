@@ -167,6 +167,9 @@ def creep_spells(
 
     Notes
     -----
+    Stages of several loads that overlap count as one. No clay creeps while a pit stands open in which
+    nothing has been placed, nor while fill is added to hold its level.
+
     The age of the clay counts from the middle of the first stage. A later stage that takes it beyond
     the largest stress it knew makes it younger: with r the ratio of the new largest stress to the old,
     the age is multiplied by :math:`r^{-(1 - \kappa/\lambda) C_c/C_\alpha}`, the mean over the segment by
@@ -183,9 +186,10 @@ def creep_spells(
     ratio, kappa_share = _creep_ratios(site, values, ground)
     known = chosen(ground.yield_stress, ground.clay)
     spells: list[CreepSpell] = []
-    middles = [0.5 * (stage.start + stage.end) for stage in site.stages] + [np.inf]
-    for index, stage in enumerate(site.stages):
-        present = _stress_when_done(site, ground, result, stage.end, middles[index + 1])
+    middles = [0.5 * (change.start + change.end) for change in site.changes] + [np.inf]
+    for index, change in enumerate(site.changes):
+        settled = _load_settles(site, index)
+        present = _stress_when_done(site, ground, result, settled, middles[index + 1])
         seen = int(np.searchsorted(site.record, min(middles[index + 1], site.horizon), side="right")) - 1
         reached = result.yield_stress[:, seen]
         largest = np.maximum(reached, present)
@@ -198,7 +202,10 @@ def creep_spells(
             _nearly_done(
                 site, result, by_segment(site, shortening(site, ground, present, largest)), middles[index]
             ),
-            np.maximum(middles[index], origin + (stage.end - middles[index])),
+            np.maximum(
+                np.inf if change.digs else max(middles[index], site.hold_level_until or 0.0),
+                origin + (change.end - middles[index]),
+            ),
         )
         spells.append(
             CreepSpell(
@@ -210,6 +217,12 @@ def creep_spells(
         )
         known = largest
     return spells
+
+
+def _load_settles(site: SiteModel, index: int) -> float:
+    """Return when the load of a spell is what it stays: also no more fill is added to hold its level."""
+    following = site.changes[index + 1].start if index + 1 < len(site.changes) else site.horizon
+    return max(site.changes[index].end, min(site.hold_level_until or 0.0, following))
 
 
 def _creep_ratios(site: SiteModel, values: Values, ground: LoadedGround) -> tuple[FloatArray, FloatArray]:
@@ -269,7 +282,7 @@ def end_of_primary(site: SiteModel, ground: LoadedGround, result: ConsolidationR
         Infinite where it is not reached by the horizon.
     """
     done = segment_settlement_when_done(site, ground, result)
-    return _nearly_done(site, result, done, site.last_change)
+    return _nearly_done(site, result, done, site.last_load_change)
 
 
 def _nearly_done(site: SiteModel, result: ConsolidationResult, done: FloatArray, since: float) -> FloatArray:

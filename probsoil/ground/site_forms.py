@@ -75,6 +75,10 @@ class StageForm:
         Fill laid (negative: taken away).
     pressure : float, [kPa]
         Pressure added besides the fill.
+    load : str or None
+        Further load that it belongs to; None for the load that is assessed.
+    excavate : float, [m]
+        Depth of soil dug out.
     """
 
     name: str
@@ -82,6 +86,28 @@ class StageForm:
     end: float
     height: float = 0.0
     pressure: float = 0.0
+    load: str | None = None
+    excavate: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LoadChange:
+    """A spell in which the load on the site changes: one stage, or several that overlap.
+
+    Attributes
+    ----------
+    name : str
+        Names of the stages.
+    start, end : float, [years]
+        When the first of them begins and the last ends.
+    digs : bool
+        Whether only soil is dug out.
+    """
+
+    name: str
+    start: float
+    end: float
+    digs: bool
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -132,9 +158,36 @@ def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
             end=stage.end,
             height=stage.height or 0.0,
             pressure=stage.pressure or 0.0,
+            load=stage.load,
+            excavate=stage.excavate or 0.0,
         )
         for stage in scenario.stages
     )
+
+
+def load_changes(stages: Sequence[StageForm]) -> tuple[LoadChange, ...]:
+    """Return the spells in which the load changes, stages that overlap together.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In the order in which they start.
+
+    Returns
+    -------
+    changes : tuple of LoadChange
+        In order of time, none overlapping.
+    """
+    found: list[LoadChange] = []
+    for stage in stages:
+        digs = stage.excavate > 0.0
+        if found and stage.start < found[-1].end - _ROUNDING:
+            last = found.pop()
+            name, digs = f"{last.name} and {stage.name}", last.digs and digs
+            found.append(LoadChange(name=name, start=last.start, end=max(last.end, stage.end), digs=digs))
+        else:
+            found.append(LoadChange(name=stage.name, start=stage.start, end=stage.end, digs=digs))
+    return tuple(found)
 
 
 def laid_share(stage: StageForm, time: float) -> float:
@@ -155,7 +208,7 @@ def laid_share(stage: StageForm, time: float) -> float:
     return min(max((time - stage.start) / (stage.end - stage.start), 0.0), 1.0)
 
 
-def height_at(stages: Sequence[StageForm], time: float) -> float:
+def height_at(stages: Sequence[StageForm], time: float, load: str | None = None) -> float:
     """Return the height of fill that stages have laid by a time.
 
     Parameters
@@ -164,13 +217,15 @@ def height_at(stages: Sequence[StageForm], time: float) -> float:
         In order of time.
     time : float, [years]
         Time.
+    load : str or None
+        On which further load; None for the load that is assessed.
 
     Returns
     -------
     height : float, [m]
         Exactly zero where all of it has been taken away.
     """
-    height = sum(stage.height * laid_share(stage, time) for stage in stages)
+    height = sum(stage.height * laid_share(stage, time) for stage in stages if stage.load == load)
     return height if height > _ROUNDING else 0.0  # a removal may leave a rounding error behind
 
 

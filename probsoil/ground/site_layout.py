@@ -6,11 +6,15 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.ground.embankment import Embankment
+from probsoil.ground.foundation import further_foundation
+from probsoil.ground.further_load import FurtherLoadForm
 from probsoil.ground.site_forms import LayerForm, StageForm, height_at, laid_share
 from probsoil.ground.slip_circles import CircleLayout
 from probsoil.scenario import Scenario
 from probsoil.scenario.distributions import Constant
+from probsoil.scenario.further_loads import FurtherEmbankment
 from probsoil.scenario.loads import EmbankmentLoad, Load
+from probsoil.scenario.quantities import further_address
 
 _DEEPER = 1.25  # circles reach this far below the mean bottom of the profile, for thicker realisations
 _WIDTHS = 0.75  # and never deeper than this share of the embankment's base
@@ -36,13 +40,65 @@ def embankment_of(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment
     """
     if not isinstance(scenario.load, EmbankmentLoad):
         return None
-    full_height = float(np.cumsum([stage.height for stage in stages]).max())
+    full_height = greatest_height(stages)
     return Embankment(
         crest_width=scenario.load.crest_width,
         side_slope=scenario.load.side_slope,
         full_height=full_height,
         berm_width=scenario.load.berm_width or 0.0,
         berm_height=scenario.load.berm_height or 0.0,
+    )
+
+
+def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> float:
+    """Return the greatest height of fill that a load ever has.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In order of time.
+    load : str or None
+        Which further load; None for the load that is assessed.
+
+    Returns
+    -------
+    height : float, [m]
+        Greatest over the ends of its stages.
+    """
+    return float(np.cumsum([stage.height for stage in stages if stage.load == load]).max())
+
+
+def further_load_forms(scenario: Scenario, stages: Sequence[StageForm]) -> tuple[FurtherLoadForm, ...]:
+    """Return the further loads of a scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    loads : tuple of FurtherLoadForm
+        In the order given.
+    """
+    return tuple(
+        FurtherLoadForm(
+            name=load.name,
+            address=further_address(load.name),
+            embankment=Embankment(
+                crest_width=load.crest_width,
+                side_slope=load.side_slope,
+                full_height=greatest_height(stages, load.name),
+            )
+            if isinstance(load, FurtherEmbankment)
+            else None,
+            foundation=further_foundation(load),
+            x=getattr(load, "x", 0.0),
+            y=getattr(load, "y", 0.0),
+        )
+        for load in scenario.further_loads
     )
 
 
@@ -65,9 +121,10 @@ def traffic_start(load: Load, stages: Sequence[StageForm]) -> float:
         return float(np.inf)
     if load.traffic_from is not None:
         return load.traffic_from
-    heights = np.cumsum([stage.height for stage in stages])
+    own = [stage for stage in stages if stage.load is None]
+    heights = np.cumsum([stage.height for stage in own])
     highest = int(np.argmax(heights > heights.max() - _ROUNDING))
-    return stages[highest].end
+    return own[highest].end
 
 
 def limit_times(scenario: Scenario) -> list[float]:
@@ -117,7 +174,9 @@ def recorded_times(
     slip = _times_of(scenario, "slip_safety")
     if embankment is not None and np.isfinite(traffic := traffic_start(scenario.load, stages)):
         slip.add(traffic)
+    hold = getattr(scenario.load, "hold_level_until", None)
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
+    kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
     if embankment is None:
         return record, np.zeros(0)
@@ -152,7 +211,8 @@ def bearing_check_times(scenario: Scenario, stages: Sequence[StageForm]) -> Floa
 
 
 def _pressed(stages: Sequence[StageForm], time: float) -> bool:
-    pressure = sum(stage.pressure * laid_share(stage, time) for stage in stages)
+    own = [stage for stage in stages if stage.load is None]
+    pressure = sum(stage.pressure * laid_share(stage, time) for stage in own)
     return height_at(stages, time) > 0.0 or pressure > 1e-9
 
 

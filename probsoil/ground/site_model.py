@@ -9,13 +9,16 @@ from probsoil._typing import FloatArray
 from probsoil.ground.cells import DEFAULT_CELLS, FOUNDATION_CELLS, Cells, graded_cells
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation, foundation_of
+from probsoil.ground.further_load import FurtherLoadForm
 from probsoil.ground.site_forms import (
     DrainForm,
     LayerForm,
+    LoadChange,
     StageForm,
     drain_form,
     laid_share,
     layer_form,
+    load_changes,
     stage_forms,
 )
 from probsoil.ground.site_layout import (
@@ -23,6 +26,7 @@ from probsoil.ground.site_layout import (
     bearing_check_times,
     circle_layouts,
     embankment_of,
+    further_load_forms,
     limit_times,
     recorded_times,
     traffic_start,
@@ -76,10 +80,14 @@ class SiteModel:
         Time from which traffic drives a slip; infinite without traffic.
     base_head : bool
         Whether the piezometric level at the bottom is given.
-    offset : float, [m]
-        Distance of the point of settlement from the centreline of an embankment.
+    station_point : tuple of float or None, [m]
+        Plan position of the station where settlement is reported; None for the centreline, centre or point.
     station_name : str or None
-        Name of the station where settlement is reported; None for the centreline, centre or point.
+        Its name.
+    hold_level_until : float or None, [years]
+        Time until which fill is added so that its level stays; None where none is.
+    further_loads : tuple of FurtherLoadForm
+        Loads beside the one that is assessed.
     """
 
     layers: tuple[LayerForm, ...]
@@ -99,8 +107,10 @@ class SiteModel:
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
     base_head: bool = False
-    offset: float = 0.0
+    station_point: tuple[float, float] | None = None
     station_name: str | None = None
+    hold_level_until: float | None = None
+    further_loads: tuple[FurtherLoadForm, ...] = ()
 
     @property
     def seeps(self) -> bool:
@@ -123,8 +133,25 @@ class SiteModel:
         times = {0.0, self.horizon, *(t for stage in self.stages for t in (stage.start, stage.end))}
         return np.array(sorted(times))
 
-    def fill_height(self, time: float) -> float:
+    def fill_height(self, time: float, load: str | None = None) -> float:
         """Return the height of fill at a time.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+        load : str or None
+            On which further load; None for the load that is assessed.
+
+        Returns
+        -------
+        height : float, [m]
+            Fill on the ground.
+        """
+        return sum(stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load)
+
+    def greatest_fill_height(self, time: float) -> float:
+        """Return the height of fill at a time where it is highest on the site.
 
         Parameters
         ----------
@@ -134,12 +161,35 @@ class SiteModel:
         Returns
         -------
         height : float, [m]
-            Fill on the ground.
+            Of the load that is assessed where there is no other.
         """
-        return sum(stage.height * laid_share(stage, time) for stage in self.stages)
+        further = [self.fill_height(time, load.name) for load in self.further_loads]
+        return max([self.fill_height(time), *further])
 
-    def pressure(self, time: float) -> float:
+    def pressure(self, time: float, load: str | None = None) -> float:
         """Return the pressure that stages have added besides fill.
+
+        Parameters
+        ----------
+        time : float, [years]
+            Time.
+        load : str or None
+            Of which further load; None for the load that is assessed.
+
+        Returns
+        -------
+        pressure : float, [kPa]
+            Pressure on the ground.
+        """
+        return sum(stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load)
+
+    @property
+    def excavates(self) -> bool:
+        """Whether soil is dug out for the foundation; then pressures count what is placed in full."""
+        return any(stage.excavate for stage in self.stages)
+
+    def dug(self, time: float) -> float:
+        """Return the depth to which soil has been dug out.
 
         Parameters
         ----------
@@ -148,10 +198,33 @@ class SiteModel:
 
         Returns
         -------
-        pressure : float, [kPa]
-            Pressure on the ground.
+        depth : float, [m]
+            Below ground level.
         """
-        return sum(stage.pressure * laid_share(stage, time) for stage in self.stages)
+        return sum(stage.excavate * laid_share(stage, time) for stage in self.stages)
+
+    @property
+    def point(self) -> tuple[float, float]:
+        """Plan position x, y at which settlement is reported, from the centre of the load, [m]."""
+        if self.station_point is not None:
+            return self.station_point
+        return (0.0, 0.0) if self.foundation is None else self.foundation.plan_point
+
+    @property
+    def offset(self) -> float:
+        """Distance of that point from the centreline of an embankment, [m]; 0 for any other load."""
+        return 0.0 if self.embankment is None else self.point[0]
+
+    @property
+    def changes(self) -> tuple[LoadChange, ...]:
+        """Spells in which the load changes, in order of time."""
+        return load_changes(self.stages)
+
+    @property
+    def end_names(self) -> dict[float, str]:
+        """Names of the stages that end at each time, by that time [years]."""
+        ends = sorted({stage.end for stage in self.stages})
+        return {end: " and ".join(stage.name for stage in self.stages if stage.end == end) for end in ends}
 
     @property
     def station(self) -> str:
@@ -163,7 +236,12 @@ class SiteModel:
     @property
     def last_change(self) -> float:
         """End of the last stage, [years]."""
-        return self.stages[-1].end
+        return max(stage.end for stage in self.stages)
+
+    @property
+    def last_load_change(self) -> float:
+        """Time after which the works add or remove nothing, [years]."""
+        return max(self.last_change, self.hold_level_until or 0.0)
 
 
 def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
@@ -195,12 +273,14 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         load_depth=0.0 if foundation is None else foundation.depth,
         target=_cell_target(layers, foundation) * refine,
     )
-    ramps = [(stage.start, stage.end) for stage in stages]
+    # where stages of several loads begin or end together, the shortest says how fine the steps are
+    ramps = sorted(((stage.start, stage.end) for stage in stages), key=lambda ramp: ramp[0] - ramp[1])
     drains = drain_form(scenario)
     restart = [] if drains is None else [drains.installed]
     still_dissipating = any(layer.excess for layer in layers)
     report = [time for time in _REPORT_TIMES if time < horizon]
     wanted = [*record, *limit_times(scenario), *report]
+    hold = getattr(scenario.load, "hold_level_until", None)
     layouts = circle_layouts(
         embankment,
         layers,
@@ -219,7 +299,12 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         horizon=horizon,
         cells=cells,
         times=time_axis(
-            ramps, wanted, horizon, restart=restart, sudden_start=still_dissipating, refine=refine
+            ramps,
+            wanted,
+            horizon,
+            restart=restart,
+            sudden_start=still_dissipating,
+            refine=refine,
         ),
         record=record,
         slip_times=slip_times,
@@ -228,6 +313,8 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         bearing_times=np.zeros(0) if foundation is None else bearing_check_times(scenario, stages),
         traffic_from=traffic_start(scenario.load, stages),
         base_head=scenario.site.base_head is not None,
+        hold_level_until=hold,
+        further_loads=further_load_forms(scenario, stages),
     )
 
 

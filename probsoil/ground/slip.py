@@ -80,12 +80,16 @@ class FillStrength:
         Effective cohesion.
     traffic : ndarray or None, shape (n_sample,), [kPa]
         Pressure on the top; None for none.
+    heavier : ndarray or None, shape (n_sample,), [-]
+        Weight that drives over that of the fill in the section, where fill lies below it besides; None
+        for 1.
     """
 
     unit_weight: FloatArray
     friction_angle: FloatArray
     cohesion: FloatArray
     traffic: FloatArray | None = None
+    heavier: FloatArray | None = None
 
     def __getitem__(self, some: slice) -> "FillStrength":
         """Return some of the realisations."""
@@ -94,12 +98,18 @@ class FillStrength:
             friction_angle=self.friction_angle[some],
             cohesion=self.cohesion[some],
             traffic=None if self.traffic is None else self.traffic[some],
+            heavier=None if self.heavier is None else self.heavier[some],
         )
 
     @property
     def on_top(self) -> FloatArray:
         """Pressure of traffic on the top, shape (n_sample,), [kPa]."""
         return np.zeros_like(self.unit_weight) if self.traffic is None else self.traffic
+
+    @property
+    def driving_weight(self) -> FloatArray:
+        """Unit weight of the section that drives as the whole fill does, shape (n_sample,), [kN/m3]."""
+        return self.unit_weight if self.heavier is None else self.unit_weight * self.heavier
 
 
 def slip_safety(
@@ -139,7 +149,9 @@ def slip_safety(
         row_start=family.row_start,
         column=family.column,
         weight=family.weight,
-        fill=lanes.pack(np.stack([fill.unit_weight, tangent, fill.cohesion, fill.on_top], axis=1)),
+        fill=lanes.pack(
+            np.stack([fill.unit_weight, tangent, fill.cohesion, fill.on_top, fill.driving_weight], axis=1)
+        ),
         fill_terms=np.stack(
             [
                 family.circles.driving,
@@ -220,7 +232,7 @@ def _every_factor(
         rows, terms = dense_weights(layout, circles[part], edge)
         by_fill = np.outer(terms[0], fill.unit_weight * tangent) + np.outer(terms[1], fill.cohesion)
         by_fill += np.outer(terms[2], fill.on_top * tangent)
-        driving = np.outer(circles.driving[part], fill.unit_weight)
+        driving = np.outer(circles.driving[part], fill.driving_weight)
         driving += np.outer(circles.traffic[part], fill.on_top)
         factor[part] = (rows @ strength + by_fill) / driving
     below = circles.touch[:, None] > ground.boundary[None, :, -1] + _LEVEL

@@ -40,6 +40,9 @@ class SlipMoments:
         Length of the arc in the fill.
     driving_form : float, [m3]
         Driving moment per unit weight of fill.
+    heavier : float, [-]
+        Weight that drives over that of the fill in the section: more than 1 where fill was added to hold
+        the level.
     traffic_form : float, [m2]
         Driving moment of traffic per unit pressure.
     traffic : float, [kNm/m]
@@ -64,6 +67,7 @@ class SlipMoments:
     traffic_friction_form: float
     fill_length: float
     driving_form: float
+    heavier: float
     traffic_form: float
     traffic: float
     driving: float
@@ -141,7 +145,8 @@ def _moments(ground: GroundStrength, fill: FillStrength, family: CircleFamily, c
         traffic_friction_form=under_traffic,
         fill_length=float(family.fill_cohesion[circle]) / radius,
         driving_form=float(arc.driving[0]),
+        heavier=1.0 if fill.heavier is None else float(fill.heavier[0]),
         traffic_form=float(arc.traffic[0]),
         traffic=traffic,
-        driving=weight_of_fill * float(arc.driving[0]) + traffic,
+        driving=float(fill.driving_weight[0] * arc.driving[0]) + traffic,
     )

@@ -55,7 +55,9 @@ def squeezing_at(
         factor = limited_thickness_factor(site.foundation.width, thickness)
         thin = site.foundation.width > _THIN * thickness[0]
         pressure = net_pressure(site, values, mean.size, time)
-        return np.asarray(factor * mean / pressure) if thin else None
+        pressed = pressure > 0.0
+        safety = np.where(pressed, factor * mean / np.where(pressed, pressure, 1.0), np.inf)
+        return safety if thin and pressed[0] else None
     height, shape = site.fill_height(time), site.embankment
     if shape is None or thickness[0] >= shape.side_slope * height:
         return None
@@ -64,7 +66,7 @@ def squeezing_at(
         thickness=thickness,
         height=height,
         side_slope=shape.side_slope,
-        unit_weight=fill_weight(values, mean.size),
+        unit_weight=fill_weight(values, mean.size) * (1.0 + ground.load.fill_added(time) / height),
     )
 
 

@@ -217,6 +217,7 @@ def slip_sections(
             friction_angle=column(values, "load.fill_phi", n_sample),
             cohesion=column(values, "load.fill_cohesion", n_sample),
             traffic=column(values, "load.traffic", n_sample) if time >= site.traffic_from else None,
+            heavier=heavier_by_added_fill(site, ground.load, float(time)),
         )
         here = GroundStrength(
             boundary=ground.points.boundary,
@@ -226,6 +227,34 @@ def slip_sections(
             frictional=_frictional(site, ground, tangent, float(time)),
         )
         yield here, fill
+
+
+def heavier_by_added_fill(site: SiteModel, load: AppliedLoad, time: float) -> FloatArray | None:
+    """Return how much more the fill weighs by what was added to hold its level.
+
+    Parameters
+    ----------
+    site : SiteModel
+        For the height of fill.
+    load : AppliedLoad
+        With the fill that was added.
+    time : float, [years]
+        A time with fill on the ground.
+
+    Returns
+    -------
+    ratio : ndarray or None, shape (n_sample,), [-]
+        Thickness of the fill over its height above the ground as it was; None where none is added.
+
+    Notes
+    -----
+    The fill that was added lies below the section, in the hollow that the ground has sunk by, and is
+    taken to be everywhere in the same proportion to the fill above it. Its whole weight counts, also
+    below the water table.
+    """
+    if load.added_fill is None:
+        return None
+    return np.asarray(1.0 + load.fill_added(time) / site.fill_height(time))
 
 
 def _tangents(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:

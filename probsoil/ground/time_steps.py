@@ -30,7 +30,8 @@ def time_axis(
     Parameters
     ----------
     ramps : sequence of (float, float), [years]
-        Start and end of each change of load, in order, none overlapping.
+        Start and end of each change of load; where two share a time, the later in the list says how fine
+        the steps are there.
     wanted : sequence of float, [years]
         Further times that must be hit exactly.
     horizon : float, [years]

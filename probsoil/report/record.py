@@ -165,7 +165,12 @@ def _ground(data: dict[str, Any]) -> dict[str, Any] | None:
         "base": data.get("base", text.MISSING),
         "base_head": text.described_text(data["base_head"]) if data.get("base_head") else None,
         "drains": data.get("drains"),
-        "load": load.get("text") or load.get("shape") or "",
+        "load": "; ".join(
+            [
+                load.get("text") or load.get("shape") or "",
+                *(f"further load {one['name']}: {one['text']}" for one in data.get("further_loads") or []),
+            ]
+        ),
         "layers": [
             {
                 "number": number,

@@ -89,6 +89,8 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
     granular = [row for row in rows if row["soil"] == "granular"]
     place = (("no.", "number"), ("layer", "layer"))
     excess = [("excess ui [kPa]", "initial_excess", ".2f")] if any(map(_has_excess, rows)) else []
+    beside = any(row.get("further_stress") for row in rows)
+    further = [("of further loads Δσn [kPa]", "further_stress", ".2f")] if beside else []
     return [
         sheet_table(
             "seepage",
@@ -130,6 +132,7 @@ def _sublayers(content: Mapping[str, Any]) -> list[SheetTable]:
                 *place,
                 ("point [m]", "depth", ".3f"),
                 ("influence I [-]", "influence", ".4f"),
+                *further,
                 ("increase Δσ [kPa]", "stress_increase", ".2f"),
                 ("submergence δ [kPa]", "relief", ".2f"),
                 ("excess u [kPa]", "excess_pore_pressure", ".2f"),
@@ -210,6 +213,7 @@ def _through_time(content: Mapping[str, Any]) -> list[SheetTable]:
         columns = [
             ("time [years]", "time", ".3f"),
             ("fill [m]", "fill_height", ".2f"),
+            *([("added [m]", "fill_added", ".3f")] if any(row.get("fill_added") for row in rows) else []),
             ("load [kPa]", "surface_pressure", ".1f"),
             ("clay [m]", "clay", ".4f"),
             ("granular [m]", "granular", ".4f"),

@@ -15,9 +15,10 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 
 
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
-    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
+    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
 
-    With stations also ``stations.csv`` and ``station_pairs.csv``.
+    The last only where fill is added to hold its level. With stations also ``stations.csv``
+    and ``station_pairs.csv``.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
@@ -56,7 +57,8 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     -------
     frames : dict of str to DataFrame
         ``limits``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give tables
-        without rows. With stations also ``stations`` and ``station_pairs``.
+        without rows. With fill added to hold its level also ``added_fill``, with stations ``stations`` and
+        ``station_pairs``.
     """
     import pandas as pd
 
@@ -72,6 +74,8 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     if settlement.get("stations"):
         rows["stations"] = list(_station_rows(settlement, results))
         rows["station_pairs"] = list(_pair_rows(settlement, results))
+    if results.get("added_fill"):
+        rows["added_fill"] = _added_fill_rows(results)
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
     if len(frames["drivers"]):
         whole = {"rank [-]": "Int64", "spread clear": "boolean", "mean clear": "boolean"}
@@ -187,6 +191,23 @@ def _series_rows(
             f"mean [{unit}]": UNCOMPUTED if mean is None else mean,
             **_quantile_columns(at_time, unit, n, UNCOMPUTED),
         }
+
+
+def _added_fill_rows(results: dict[str, Any]) -> list[dict[str, Any]]:
+    return [
+        {
+            "fill added": name,
+            "until [years]": row["until"],
+            "unit": unit,
+            "mean [unit]": _or(UNCOMPUTED, row[key], "mean"),
+            **_quantile_columns(row[key]["quantiles"], "unit", results["realisations"], UNCOMPUTED),
+        }
+        for row in results["added_fill"]
+        for name, unit, key in (
+            ("thickness on the centreline", "m", "thickness"),
+            ("volume", row["unit"], "volume"),
+        )
+    ]
 
 
 def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:

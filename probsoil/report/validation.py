@@ -138,6 +138,7 @@ _GROUND = {
         }
     ],
     "load": {"shape": "text", "text": "text"},
+    "further_loads?": [{"name": "text", "text": "text"}],
     "stages": [_STAGE | {"change_text": "text", "height_after": _NUMBER, "pressure_after": _NUMBER}],
     "profile": {
         "depth": ["number"],
@@ -153,6 +154,14 @@ _STATIONS = {
         {"name": "text", "x": "number", "y": "number", "along": _NUMBER, "thickness": "object"} | _SERIES
     ],
     "pairs?": [{"stations": ["text"], "distance": "number", "difference": _SERIES, "distortion": _SERIES}],
+}
+_MEAN_AND_QUANTILES = {"mean": _NUMBER, "quantiles": _QUANTILES}
+_ADDED_FILL = {
+    "until": "number",
+    "unit": "text",
+    "mean_width": _NUMBER,
+    "thickness": _MEAN_AND_QUANTILES,
+    "volume": _MEAN_AND_QUANTILES,
 }
 RESULTS: dict[str, Any] = {
     "title": "text",
@@ -174,6 +183,7 @@ RESULTS: dict[str, Any] = {
     | _STATIONS,
     "slip": [_FACTOR | {"circle?": _CIRCLE}],
     "bearing?": [_FACTOR | {"pressure": _NUMBER}],
+    "added_fill?": [_ADDED_FILL],
     "drivers": [_DRIVER],
     "driver_quality": [
         {

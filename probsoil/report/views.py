@@ -3,6 +3,7 @@
 from typing import Any
 
 from probsoil.report import chance, text
+from probsoil.report.added_fill import added_fill_sentences
 from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
 from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
@@ -64,6 +65,7 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
         "limits": [_limit(number, limit, results) for number, limit in numbered],
         "settlement": _settlement(results.get("settlement") or {}, results),
         "stations": stations_view(results),
+        "added_fill": added_fill_sentences(results),
         "curves": [view for view in curves if view is not None],
         "drivers": [view for number, limit in numbered if (view := drivers_view(number, limit, results))],
         "stability": _stability(results),

@@ -8,7 +8,7 @@ from probsoil.scenario.positions import Place, places
 from probsoil.scenario.slips import Path, Slip
 
 _LONGEST_GIVEN = 80
-_SINGULAR = {"layers": "layer", "stages": "stage", "limits": "limit"}
+_SINGULAR = {"layers": "layer", "further_loads": "load", "stages": "stage", "limits": "limit"}
 
 
 def faults_of(slips: Sequence[Slip], data: dict[str, Any], text: str, file: str) -> list[Fault]:

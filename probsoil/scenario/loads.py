@@ -9,13 +9,78 @@ from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number, Uncertain
 from probsoil.scenario.slips import Slip, refuse
 
-_FILL_WEIGHT = Uncertain(
+FILL_WEIGHT = Uncertain(
     kind="unit weight", low=0.2, high=30.0, source="common practice", meaning="bulk unit weight of the fill"
 )
+"""Field of the unit weight of fill."""
 Submergence = Annotated[
     bool,
     Field(description="whether ground and fill that sink below the water table lose the weight of water"),
 ]
+
+HoldLevel = Annotated[
+    float | None,
+    Number(
+        kind="time",
+        low=0.0,
+        high=1000.0,
+        open_low=True,
+        source="by definition",
+        meaning="time until which fill is added as the ground settles, so that its level stays as the stages "
+        "give it; if left out, none is added",
+    ),
+]
+
+
+def width_of_top() -> Number:
+    """Return the field of the width of an embankment's top.
+
+    Returns
+    -------
+    field : Number
+        Above 0.
+    """
+    return Number(
+        kind="length",
+        low=0.0,
+        high=1000.0,
+        open_low=True,
+        source="by definition",
+        meaning="width of the top of the embankment at its greatest height",
+    )
+
+
+def slope_run() -> Number:
+    """Return the field of the run of a side slope.
+
+    Returns
+    -------
+    field : Number
+        0 for a vertical side.
+    """
+    return Number(
+        kind="number",
+        low=0.0,
+        high=20.0,
+        source="common practice",
+        meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
+    )
+
+
+def side(meaning: str) -> Number:
+    """Return the field of a side or diameter.
+
+    Parameters
+    ----------
+    meaning : str
+        What it is.
+
+    Returns
+    -------
+    field : Number
+        From 0.1 m.
+    """
+    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
 
 
 class EmbankmentLoad(Table):
@@ -43,31 +108,14 @@ class EmbankmentLoad(Table):
         Time from which it counts; None from the end of the stage that first reaches the greatest height.
     submergence : bool
         Whether what sinks below the water table loses the weight of water.
+    hold_level_until : float or None, [year]
+        Time until which fill is added so that its level stays as the ground settles.
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[
-        float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=1000.0,
-            open_low=True,
-            source="by definition",
-            meaning="width of the top of the embankment at its greatest height",
-        ),
-    ]
-    side_slope: Annotated[
-        float,
-        Number(
-            kind="number",
-            low=0.0,
-            high=20.0,
-            source="common practice",
-            meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
-        ),
-    ]
-    fill_unit_weight: Annotated[Distribution, _FILL_WEIGHT]
+    crest_width: Annotated[float, width_of_top()]
+    side_slope: Annotated[float, slope_run()]
+    fill_unit_weight: Annotated[Distribution, FILL_WEIGHT]
     fill_phi: Annotated[
         Distribution,
         Uncertain(
@@ -127,6 +175,7 @@ class EmbankmentLoad(Table):
         ),
     ] = None
     submergence: Submergence = True
+    hold_level_until: HoldLevel = None
 
 
 class AreaLoad(Table):
@@ -140,15 +189,14 @@ class AreaLoad(Table):
         Bulk unit weight of the fill; needed when a stage gives a height.
     submergence : bool
         Whether what sinks below the water table loses the weight of water.
+    hold_level_until : float or None, [year]
+        Time until which fill is added so that its level stays as the ground settles.
     """
 
     shape: Literal["area"] = Field(description="kind of load")
-    fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
+    fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
-
-
-def _side(meaning: str) -> Number:
-    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
+    hold_level_until: HoldLevel = None
 
 
 def _distance(meaning: str, low: float = 0.0) -> Number:
@@ -195,7 +243,7 @@ class _Foundation(Table):
         description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
         "flexible tank floor); for bearing",
     )
-    fill_unit_weight: Annotated[Distribution | None, _FILL_WEIGHT] = None
+    fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
 
 
@@ -213,7 +261,7 @@ class StripLoad(_Foundation):
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, _side("width of the strip")]
+    width: Annotated[float, side("width of the strip")]
     at: Annotated[float, _distance("distance from the centreline at which settlement is reported")] = 0.0
 
 
@@ -231,8 +279,8 @@ class RectangleLoad(_Foundation):
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, _side("width of the rectangle")]
-    length: Annotated[float, _side("length of the rectangle")]
+    width: Annotated[float, side("width of the rectangle")]
+    length: Annotated[float, side("length of the rectangle")]
     at: Annotated[
         tuple[Annotated[float, _PLAN_DISTANCE], Annotated[float, _PLAN_DISTANCE]], BeforeValidator(_point)
     ] = Field(
@@ -256,7 +304,7 @@ class CircleLoad(_Foundation):
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, _side("diameter of the circle")]
+    diameter: Annotated[float, side("diameter of the circle")]
     at: Annotated[float, _distance("distance from the centre at which settlement is reported")] = 0.0
 
 
@@ -269,7 +317,7 @@ Load = Annotated[
 
 
 class Stage(Table):
-    """Fill or pressure added (or, where negative, removed) evenly between two times.
+    """Fill or pressure added (or, where negative, removed), or soil dug out, evenly between two times.
 
     Attributes
     ----------
@@ -281,13 +329,22 @@ class Stage(Table):
         Pressure; not with the load shape ``embankment``.
     start, end : float, [year]
         Times.
+    load : str or None
+        Which of the further loads; None for the load that is assessed.
+    excavate : float or None, [m]
+        Depth of soil dug out over the plan of a foundation.
     """
 
     model_config = ConfigDict(
-        json_schema_extra={"oneOf": [{"required": ["height"]}, {"required": ["pressure"]}]}
+        json_schema_extra={
+            "oneOf": [{"required": ["height"]}, {"required": ["pressure"]}, {"required": ["excavate"]}]
+        }
     )
 
     name: Name = Field(description="name of the stage, unique")
+    load: Name | None = Field(
+        default=None, description="which of the further loads the stage belongs to; if left out, [load]"
+    )
     height: Annotated[
         float | None,
         Number(
@@ -305,7 +362,20 @@ class Stage(Table):
             low=-5000.0,
             high=5000.0,
             source="common practice",
-            meaning='pressure added, net of soil dug out; not with shape = "embankment"; negative is removal',
+            meaning="pressure added, net of soil dug out unless a stage digs it out; not with "
+            'shape = "embankment"; negative is removal',
+        ),
+    ] = None
+    excavate: Annotated[
+        float | None,
+        Number(
+            kind="length",
+            low=0.0,
+            high=50.0,
+            open_low=True,
+            source="common practice",
+            meaning="depth of soil dug out over the plan of a foundation; with it, pressures and heights "
+            "are those of all that is placed on the base",
         ),
     ] = None
     start: Annotated[

@@ -9,6 +9,7 @@ from probsoil.scenario.checks import cross_checks
 from probsoil.scenario.distributions import Constant, Distribution, Normal
 from probsoil.scenario.drains import Drains
 from probsoil.scenario.fields import Number, Uncertain
+from probsoil.scenario.further_loads import FurtherLoad
 from probsoil.scenario.groundwater import BaseHead
 from probsoil.scenario.layers import Layer
 from probsoil.scenario.limits import Limit
@@ -157,7 +158,9 @@ class Scenario(Table):
     layers : tuple of ClayLayer or GranularLayer
         From ground level down.
     load : EmbankmentLoad, AreaLoad, StripLoad, RectangleLoad or CircleLoad
-        The load.
+        The load that is assessed.
+    further_loads : tuple of further loads
+        Others, which add stress below it.
     stages : tuple of Stage
         In order of time.
     drains : Drains or None
@@ -198,6 +201,9 @@ class Scenario(Table):
         json_schema_extra={"minItems": 1}, description="layers from ground level down"
     )
     load: Load = Field(description="the load")
+    further_loads: Annotated[tuple[FurtherLoad, ...], BeforeValidator(_list)] = Field(
+        default=(), description="further loads on the site, which add stress below the load"
+    )
     stages: Annotated[tuple[Stage, ...], BeforeValidator(_some)] = Field(
         json_schema_extra={"minItems": 1}, description="stages of loading in order of time"
     )

@@ -85,7 +85,7 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
     Returns
     -------
     quantities : tuple of Quantity
-        In the order site, layers from the top, load, drains, model error.
+        In the order site, layers from the top, load, further loads, drains, model error.
     """
     found = list(_of_table("site", scenario.site, None))
     for layer in scenario.layers:
@@ -93,9 +93,28 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
             known = isinstance(layer.thickness, Distribution)
             found += _of_table(layer.name, layer, layer.thickness.expectation if known else None)
     found += _of_table("load", scenario.load, None)
+    for load in scenario.further_loads:
+        if isinstance(load, BaseModel) and isinstance(load.name, str):
+            found += _of_table(further_address(load.name), load, None)
     found += _of_table("drains", scenario.drains, None)
     found += _of_table("model_error", scenario.model_error, None)
     return tuple(found)
+
+
+def further_address(name: str) -> str:
+    """Return the first part of the addresses of a further load.
+
+    Parameters
+    ----------
+    name : str
+        Of the load.
+
+    Returns
+    -------
+    start : str
+        Such as ``further_loads.tank B``.
+    """
+    return f"further_loads.{name}"
 
 
 def possible_addresses(name: str, model: type[BaseModel]) -> tuple[str, ...]:

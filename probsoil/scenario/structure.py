@@ -4,6 +4,13 @@ from typing import get_args
 
 from pydantic import BaseModel
 
+from probsoil.scenario.further_loads import (
+    FurtherArea,
+    FurtherCircle,
+    FurtherEmbankment,
+    FurtherRectangle,
+    FurtherStrip,
+)
 from probsoil.scenario.layers import ClayLayer, GranularLayer
 from probsoil.scenario.limits import (
     AngularDistortionLimit,
@@ -18,7 +25,7 @@ from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, Rectan
 from probsoil.scenario.models import Dependence
 from probsoil.scenario.stations import Station
 
-LISTS = ("layers", "stages", "stations", "dependence", "limits")
+LISTS = ("layers", "further_loads", "stages", "stations", "dependence", "limits")
 # Tables of more than one class: the key that tells the classes apart, and the classes.
 CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
     "layers": ("soil", {"clay": ClayLayer, "granular": GranularLayer}),
@@ -30,6 +37,16 @@ CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
             "strip": StripLoad,
             "rectangle": RectangleLoad,
             "circle": CircleLoad,
+        },
+    ),
+    "further_loads": (
+        "shape",
+        {
+            "embankment": FurtherEmbankment,
+            "area": FurtherArea,
+            "strip": FurtherStrip,
+            "rectangle": FurtherRectangle,
+            "circle": FurtherCircle,
         },
     ),
     "limits": (

@@ -171,7 +171,7 @@ def _text_message(kind: str, key: str) -> str:
 def _text_rule(path: Path) -> str:
     if path[-1] == "currency":
         return "up to 8 characters without a blank, such as EUR"
-    return _NAME_RULE if path[0] in ("layers", "stages") else _LABEL_RULE
+    return _NAME_RULE if path[0] in ("layers", "further_loads", "stages") else _LABEL_RULE
 
 
 def _integer_rule(key: str) -> str:

@@ -3,9 +3,8 @@
 Source: Terzaghi's solutions for uniform, triangular and sine-shaped excess pressure (recalled, not opened;
 `reference_solutions` writes them from the theory and a printed table is held to them in
 `test_terzaghi_uniform_and_triangular`). The excess is small against the stress in situ, so that coefficients
-stay constant; kappa is close to lambda, because the kernel stops iterating at changes of one part in ten
-thousand of the stress, which so small an excess does not stand clear of where the slope changes. Tolerance:
-what the default grid promises, and the size of the excess over the stress for the change of stiffness.
+stay constant, in clay at its preconsolidation stress. Tolerance: what the default grid promises, and the
+size of the excess over the stress for the change of stiffness.
 """
 
 import numpy as np
@@ -47,7 +46,7 @@ thickness = {thickness}
 unit_weight = 10
 void_ratio = 1.0
 lambda = 0.1
-kappa = 0.095
+kappa = 0.02
 preconsolidation = {{ pop = 0 }}
 M = 1.0
 permeability = {{ cv = {cv} }}

@@ -9,11 +9,14 @@ from typing import Any
 from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
+from probsoil.scenario.checks.excavation import excavation_slips
+from probsoil.scenario.checks.further_loads import further_load_slips
 from probsoil.scenario.checks.ground import ground_slips
 from probsoil.scenario.checks.groundwater import groundwater_slips
 from probsoil.scenario.checks.limits import limit_slips
 from probsoil.scenario.checks.programme import programme_slips
 from probsoil.scenario.checks.stations import station_slips
+from probsoil.scenario.checks.top_up import top_up_slips
 from probsoil.scenario.slips import Slip
 
 __all__ = ["cross_checks"]
@@ -36,7 +39,10 @@ def cross_checks(scenario: Any) -> list[Slip]:
         ground_slips,
         groundwater_slips,
         programme_slips,
+        further_load_slips,
+        excavation_slips,
         embankment_slips,
+        top_up_slips,
         drain_slips,
         limit_slips,
         dependence_slips,

@@ -3,7 +3,12 @@
 from typing import Any
 
 from probsoil.scenario.base import UNREAD
-from probsoil.scenario.quantities import possible_addresses, quantities_of, unread_addresses
+from probsoil.scenario.quantities import (
+    further_address,
+    possible_addresses,
+    quantities_of,
+    unread_addresses,
+)
 from probsoil.scenario.slips import Slip, did_you_mean
 
 Pair = tuple[str, str]
@@ -39,6 +44,10 @@ def dependence_slips(scenario: Any) -> list[Slip]:
     return slips + _joint_slips(sound)
 
 
+def _further(name: Any) -> Any:
+    return name if name is UNREAD else further_address(name)
+
+
 class _Addresses:
     """What each address of a scenario may be used for."""
 
@@ -49,9 +58,11 @@ class _Addresses:
         tables: list[tuple[Any, Any]] = [
             ("site", scenario.site),
             ("load", scenario.load),
-            ("drains", UNREAD if scenario.drains is None else scenario.drains),
             ("model_error", scenario.model_error),
         ]
+        tables += [] if scenario.drains is None else [("drains", scenario.drains)]
+        further = [load for load in scenario.further_loads if load is not UNREAD]
+        tables += [(_further(load.name), load) for load in further]
         tables += [(layer.name, layer) for layer in scenario.layers if layer is not UNREAD]
         named = [(name, table) for name, table in tables if name is not UNREAD and table is not UNREAD]
         self.possible = {
@@ -59,7 +70,8 @@ class _Addresses:
         }
         self.unread = {address for name, table in named for address in unread_addresses(name, table)}
         self.names = [name for name, _ in named]
-        self.some_unnamed = len(named) < len(tables) or UNREAD in scenario.layers
+        unread = UNREAD in scenario.layers or UNREAD in scenario.further_loads
+        self.some_unnamed = len(named) < len(tables) or unread
 
     def complaint(self, address: str) -> tuple[str, str | None] | None:
         """Message and hint where an address cannot be correlated."""

@@ -38,7 +38,8 @@ def _berm_slips(load: Any, stages: Sequence[Any]) -> list[Slip]:
     if len(missing) == 1:
         message = f"a berm needs both its width and its height; {missing[0]} is missing"
         return [Slip(path=(), message=message, allowed="berm_width and berm_height", wanting=(missing[0],))]
-    raised = [getattr(stage, "height", UNREAD) for stage in stages]
+    own = [stage for stage in stages if getattr(stage, "load", None) is None]
+    raised = [getattr(stage, "height", UNREAD) for stage in own]
     heights: list[float] = [one for one in raised if isinstance(one, float)]
     if not isinstance(load.berm_height, float) or len(heights) < len(raised):
         return []

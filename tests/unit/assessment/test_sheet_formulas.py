@@ -75,6 +75,43 @@ INDICES = (
     "Cc = 0.6\nCs = 0.08\npreconsolidation = { stress = 40 }\nM = 1.05\nstrength = { S = 0.24, m = 0.8 }"
 )
 
+DUG = '[[stages]]\nname = "dug out"\nexcavate = 1.2\nstart = 0\nend = "2 weeks"\n\n'
+FURTHER = """
+[[further_loads]]
+name = "bank"
+shape = "embankment"
+crest_width = 5
+side_slope = 1.5
+fill_unit_weight = 18
+x = 25
+
+[[further_loads]]
+name = "house"
+shape = "rectangle"
+width = 8
+length = 12
+depth = 0.5
+x = -14
+y = 3
+
+"""
+FURTHER_STAGES = """name = "bank"
+load = "bank"
+height = 1.5
+start = 0
+end = 0.2
+
+[[stages]]
+name = "house"
+load = "house"
+pressure = 40
+start = 0
+end = 0.4
+
+[[stages]]
+name = "fill"
+"""
+
 
 TRIANGLE = 'initial_excess = { pressure = 6, shape = "triangular" }'
 EVEN = 'initial_excess = { pressure = 2, shape = "uniform" }'
@@ -117,6 +154,19 @@ def scenarios() -> dict[str, Scenario]:
         "distorting footing": distorting("footing"),
         "distorting tank": distorting("tank"),
     }
+    held = 'shape = "embankment"\nhold_level_until = 1.5'
+    texts["level held"] = varied(RATIOS).replace('shape = "embankment"', held)
+    texts["excavation"] = (
+        starter_text("footing")
+        .replace("\n[[stages]]", f"\n{DUG}[[stages]]", 1)
+        .replace("pressure = 33", "pressure = 55")
+        .replace("0 weeks", "3 weeks")
+    )
+    texts["further loads"] = (
+        texts["level held"]
+        .replace("[drains]", FURTHER + "[drains]")
+        .replace('name = "fill"\n', FURTHER_STAGES)
+    )
     found = {name: parse_scenario(text) for name, text in texts.items()}
     files = sorted((ROOT / "scenarios").glob("*.toml"))
     return found | {path.stem: read_scenario(path) for path in files}

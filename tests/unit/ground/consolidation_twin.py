@@ -123,18 +123,26 @@ def stops_for(knot_time, times, span_count, *, sudden=False):
     return np.unique(np.round([t for t in stops if t <= max(times)], 12))
 
 
-def twin_settlement(layers, knots, times, *, span_count=40, **ground):
+def twin_settlement(layers, knots, times, *, span_count=40, filled_up=None, **ground):
     """Settlement of the clay at `times` under an added pressure given at `knots` [(time, kPa), ...].
 
     `ground` is passed on to `Profile`; `spread` there is the share of the pressure that reaches a depth.
+    With `filled_up` (kN/m3, until) the pressure grows besides, at every moment, by that unit weight times
+    the settlement of the clay so far, and from then on by what it was; no sand may settle.
     """
     profile = Profile(layers, **({"n_cell": 60} | ground))
     knot_time, knot_load = np.array(knots).T
     lost, yielding = np.zeros(profile.size.size), profile.stress0 + profile.pop
     lost_at_yield = profile.kap * np.log(yielding / profile.stress0)
 
+    weight, until = filled_up or (0.0, -1.0)
+    band = {} if filled_up else {"lband": 1, "uband": 1}  # a load that follows the settlement joins all cells
+    kept = 0.0
+
     def rates(time, lost, yielding, lost_at_yield):
-        return profile.rates(lost, np.interp(time, knot_time, knot_load), yielding, lost_at_yield)
+        added = np.interp(time, knot_time, knot_load)
+        added += weight * (profile.settlement(lost) if end <= until else kept)
+        return profile.rates(lost, added, yielding, lost_at_yield)
 
     answer = {0.0: 0.0}
     for start, end in pairwise(stops_for(knot_time, times, span_count, sudden=profile.underway.any())):
@@ -146,8 +154,7 @@ def twin_settlement(layers, knots, times, *, span_count=40, **ground):
             rtol=1e-6,
             atol=1e-8,
             args=(yielding, lost_at_yield),
-            lband=1,
-            uband=1,
+            **band,
         )
         assert march.success
         lost = march.y[:, -1]
@@ -155,4 +162,5 @@ def twin_settlement(layers, knots, times, *, span_count=40, **ground):
         yielding = np.where(further, profile.stress(lost, yielding, lost_at_yield), yielding)
         lost_at_yield = np.where(further, lost, lost_at_yield)
         answer[end] = profile.settlement(lost)
+        kept = answer[end] if end <= until else kept
     return np.array([answer[np.round(time, 12)] for time in times])

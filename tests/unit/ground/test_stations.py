@@ -136,7 +136,10 @@ def test_the_section_has_the_ground_of_the_first_station() -> None:
 
 def test_undrained_distortion_at_a_station_is_that_of_the_trapezium_there() -> None:
     """Displacement of the half-space at the offset: top less bottom of 5 m of clay over its modulus."""
-    stiff = case(station("slope", x=6.0), layers=[clay("soft", 5.0, undrained_modulus="{ Eu = 3000 }"), sand("sand", 2.0)])
+    stiff = case(
+        station("slope", x=6.0),
+        layers=[clay("soft", 5.0, undrained_modulus="{ Eu = 3000 }"), sand("sand", 2.0)],
+    )
     found = settled(stiff)
     widths = {"base_width": 18.0, "top_width": 10.0}
     top, bottom = (float(embankment_displacement(depth, 6.0, **widths)) for depth in (0.0, 5.0))

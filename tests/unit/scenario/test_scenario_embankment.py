@@ -46,3 +46,39 @@ def test_what_cannot_be_is_refused(base_text, more, key, message):
 def test_berms_are_of_an_embankment(base_text):
     with pytest.raises(ScenarioError, match='"berm_width" does not go with shape = "area"'):
         parse_scenario(base_text.replace('shape = "embankment"', 'shape = "area"\nberm_width = 3'))
+
+
+def test_level_is_held_until_a_time(base_text):
+    load = parse_scenario(with_load(base_text, 'hold_level_until = "1 year"')).load
+    assert load.hold_level_until == 1.0
+    assert parse_scenario(base_text).load.hold_level_until is None
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        ("hold_level_until = 0", "too small"),
+        ("hold_level_until = 400", "400 years is beyond the horizon"),
+    ],
+)
+def test_level_that_cannot_be_held_is_refused(base_text, text, message):
+    with pytest.raises(ScenarioError, match=message) as caught:
+        parse_scenario(with_load(base_text, text))
+    assert [fault.key for fault in caught.value.faults] == ["load.hold_level_until"]
+
+
+def test_level_cannot_be_held_before_the_first_stage(base_text):
+    late = with_load(base_text, 'hold_level_until = "1 week"')
+    first = late.index("start = ")
+    late = late[:first] + 'start = "2 weeks"' + late[late.index("\n", first) :]
+    with pytest.raises(ScenarioError, match="so there is no level to hold"):
+        parse_scenario(late)
+
+
+def test_level_is_of_fill(base_text):
+    head = base_text.partition("[load]")[0]
+    load = '[load]\nshape = "area"\nhold_level_until = 1\n'
+    stages = '[[stages]]\nname = "vacuum"\npressure = 60\nstart = 0\nend = 0.5\n'
+    settlement = '[[limits]]\nname = "end"\nquantity = "settlement"\nat = 1\nnot_more_than = 1\n'
+    with pytest.raises(ScenarioError, match="no stage lays fill whose level could be held"):
+        parse_scenario(head + load + stages + settlement)

@@ -157,3 +157,54 @@ def test_schema_accepts_what_is_read(load):
     text = text_of(load)
     parse_scenario(text)
     jsonschema.Draft202012Validator(scenario_schema()).validate(tomllib.loads(text))
+
+
+DIG = '[[stages]]\nname = "dug out"\nstart = 0\nend = 0.5\nexcavate = {}\n'
+PIT = 'shape = "circle"\ndiameter = 8\ndepth = 1.5'
+
+
+def dug(load=PIT, depth="1.5", stage="start = 1\nend = 2\npressure = 60", first=True):
+    built = TEXT.format(load=load, amount="pressure = 60", quantity="bearing_safety")
+    block = built[built.index("[[stages]]") : built.index("[[limits]]")]
+    later = f'[[stages]]\nname = "built"\n{stage}\n'
+    both = (
+        DIG.format(depth) + later
+        if first
+        else later + DIG.format(depth).replace("0.5", "3").replace("= 0\n", "= 2\n")
+    )
+    return built.replace(block, both)
+
+
+def test_soil_is_dug_out_to_the_base():
+    scenario = parse_scenario(dug())
+    assert [stage.excavate for stage in scenario.stages] == [1.5, None]
+    jsonschema.validate(tomllib.loads(dug()), scenario_schema())
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        (dug(depth="1.0"), r"1 m are dug out in all, but the base lies 1\.5 m below ground level"),
+        (dug(depth="0"), "too small"),
+        (dug(load='shape = "area"'), "soil is dug out for a foundation with a depth"),
+        (dug(first=False), 'soil is dug out after stage 1 "built" has loaded it'),
+        (dug(stage="start = 1\nend = 2\npressure = 60\nexcavate = 1"), "given more than once, as"),
+        (
+            dug()
+            .replace('name = "built"\nstart = 1\nend = 2\npressure = 60\n', "")
+            .rsplit("[[stages]]", 1)[0]
+            + '[[limits]]\nname = "stands"\nquantity = "bearing_safety"\nnot_less_than = 1.5\n',
+            "nothing is placed in the excavation",
+        ),
+    ],
+)
+def test_what_cannot_be_dug_is_refused(text, message):
+    with pytest.raises(ScenarioError, match=message):
+        parse_scenario(text)
+
+
+def test_soil_is_not_dug_out_for_a_further_load():
+    further = '[[further_loads]]\nname = "pit"\nshape = "circle"\ndiameter = 5\ndepth = 1\nx = 9\n'
+    text = dug().replace("[[stages]]", further + "[[stages]]", 1)
+    with pytest.raises(ScenarioError, match=r"soil is dug out for \[load\] only"):
+        parse_scenario(text.replace('name = "dug out"', 'name = "dug out"\nload = "pit"'))

@@ -39,7 +39,7 @@ def test_lone_table_under_the_singular_is_checked_as_a_list_of_one(base_text: st
     assert [fault.message for fault in faults] == ['unknown key "limit"', "-1 is too small"]
 
 
-@pytest.mark.parametrize("key", [key for key in LISTS if key != "dependence"])
+@pytest.mark.parametrize("key", [key for key in LISTS if key not in ("dependence", "further_loads")])
 @pytest.mark.parametrize("which", [0, 1])
 def test_single_brackets_among_double_ones_are_found_where_they_stand(
     base_text: str, key: str, which: int

@@ -1,0 +1,129 @@
+"""Vertical stress of any load at any point of the plan, and further loads beside the one assessed.
+
+Plan positions are measured from the centre of the load that is assessed: x across (along the width of a
+foundation), y along.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from probsoil._typing import FloatArray
+from probsoil.ground.embankment import Embankment
+from probsoil.ground.foundation import Foundation
+from probsoil.ground.load_stress import trapezia_influence
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FurtherLoadForm:
+    """A further load: its shape and place.
+
+    Attributes
+    ----------
+    name, address : str
+        Its name, and the first part of its addresses.
+    embankment : Embankment or None
+        None for any other load.
+    foundation : Foundation or None
+        Strip, rectangle or circle; None for an embankment or a wide area.
+    x, y : float, [m]
+        Its centre.
+    """
+
+    name: str
+    address: str
+    embankment: Embankment | None
+    foundation: Foundation | None
+    x: float
+    y: float
+
+    def fill_influence(
+        self, depth: FloatArray, half: FloatArray, point: tuple[float, float], height: float
+    ) -> FloatArray:
+        """Return the stress per unit weight of fill at a height of fill.
+
+        Parameters
+        ----------
+        depth, half : ndarray, shape (n_sample, n_point), [m]
+            Depths, and half the thickness that each stands for.
+        point : tuple of float, [m]
+            Plan position x, y.
+        height : float, [m]
+            Height of fill.
+
+        Returns
+        -------
+        influence : ndarray, shape (n_sample, n_point), [m]
+            Of a foundation or an area the height times the influence of its pressure.
+        """
+        if self.embankment is None:
+            return height * self.pressure_influence(depth, half, point)
+        return trapezia_influence(depth, point[0] - self.x, self.embankment.trapezia(max(height, 0.0)))
+
+    def pressure_influence(
+        self, depth: FloatArray, half: FloatArray, point: tuple[float, float]
+    ) -> FloatArray:
+        """Return the stress as a share of the pressure, of an embankment that of its greatest height.
+
+        Parameters
+        ----------
+        depth, half : ndarray, shape (n_sample, n_point), [m]
+            Depths, and half the thickness that each stands for.
+        point : tuple of float, [m]
+            Plan position x, y.
+
+        Returns
+        -------
+        influence : ndarray, shape (n_sample, n_point), [-]
+            Boussinesq half-space; 1 below a wide area.
+        """
+        if self.embankment is not None:
+            full = self.embankment.full_height
+            return self.fill_influence(depth, half, point, full) / full
+        if self.foundation is None:
+            return np.ones_like(depth)
+        return foundation_influence(self.foundation, depth, half, point[0] - self.x, point[1] - self.y)
+
+
+def foundation_influence(
+    shape: Foundation, depth: FloatArray, half: FloatArray, x: float, y: float
+) -> FloatArray:
+    """Return the stress below a point of the plan as a share of the pressure of a foundation.
+
+    Parameters
+    ----------
+    shape : Foundation
+        Plan and depth.
+    depth, half : ndarray, shape (n_sample, n_point), [m]
+        Depths, and half the thickness that each stands for.
+    x, y : float, [m]
+        Distances of the point from the centre along `width` and `length`.
+
+    Returns
+    -------
+    influence : ndarray, shape (n_sample, n_point), [-]
+        None above the base; where the base cuts through a thickness, the part below it counts.
+    """
+    loaded = 1.0 - share_above(shape.depth, depth, half)
+    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
+    return np.asarray(loaded * shape.influence(0.5 * (top + bottom) - shape.depth, x, y))
+
+
+def share_above(base: float, depth: FloatArray, half: FloatArray) -> FloatArray:
+    """Return the share of a thickness that lies above a level.
+
+    Parameters
+    ----------
+    base : float, [m]
+        Depth of the level.
+    depth, half : ndarray, shape (n_sample, n_point), [m]
+        Depth of the middle, and half the thickness.
+
+    Returns
+    -------
+    share : ndarray, shape (n_sample, n_point), [-]
+        From 0 below the level to 1 above it.
+    """
+    whole = np.where(half > 0.0, 2.0 * half, 1.0)
+    within = np.clip((base - depth + half) / whole, 0.0, 1.0)
+    return np.asarray(np.where(half > 0.0, within, depth < base), dtype=np.float64)

@@ -1,0 +1,142 @@
+"""Further loads on the site, beside the one that is assessed: each adds stress below that one."""
+
+from typing import Annotated, Literal
+
+from pydantic import Field
+
+from probsoil.scenario.base import Name, Table
+from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.fields import Number
+from probsoil.scenario.loads import FILL_WEIGHT, side, slope_run, width_of_top
+
+_ACROSS = "across (along the width of [load])"
+
+
+def _place(meaning: str) -> Number:
+    return Number(kind="length", low=-2000.0, high=2000.0, source="by definition", meaning=meaning)
+
+
+_X = _place(f"distance of its centre from that of [load], {_ACROSS}")
+_Y = _place("distance of its centre from that of [load], along (the length of [load])")
+_DEPTH = Number(
+    kind="length",
+    low=0.0,
+    high=50.0,
+    source="common practice",
+    meaning="depth of its base below ground level; stress is added from there down",
+)
+
+
+class _Further(Table):
+    """What every further load has.
+
+    Attributes
+    ----------
+    name : str
+        Name, unique among the further loads.
+    fill_unit_weight : Distribution or None, [kN/m3]
+        Unit weight of what a stage adds by height; needed when a stage gives one.
+    """
+
+    name: Name = Field(description="name of the further load, unique; its stages give it as load")
+    fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
+
+
+class FurtherEmbankment(_Further):
+    """A long embankment beside the load, parallel to its length.
+
+    Attributes
+    ----------
+    shape : str
+        ``embankment``.
+    crest_width, side_slope : float, [m], [-]
+        Width of the top at the greatest height, run of the slope per unit of rise.
+    x : float, [m]
+        Distance of its centreline from the centre of the load.
+    """
+
+    shape: Literal["embankment"] = Field(description="kind of load")
+    crest_width: Annotated[float, width_of_top()]
+    side_slope: Annotated[float, slope_run()]
+    x: Annotated[float, _X]
+
+
+class FurtherArea(_Further):
+    """A load over a wide area.
+
+    Attributes
+    ----------
+    shape : str
+        ``area``.
+    """
+
+    shape: Literal["area"] = Field(description="kind of load")
+
+
+class FurtherStrip(_Further):
+    """A long strip of uniform pressure, parallel to the length of the load.
+
+    Attributes
+    ----------
+    shape : str
+        ``strip``.
+    width, depth : float, [m]
+        Width, and depth of the base.
+    x : float, [m]
+        Distance of its centreline from the centre of the load.
+    """
+
+    shape: Literal["strip"] = Field(description="kind of load")
+    width: Annotated[float, side("width of the strip")]
+    depth: Annotated[float, _DEPTH] = 0.0
+    x: Annotated[float, _X]
+
+
+class FurtherRectangle(_Further):
+    """A rectangle of uniform pressure.
+
+    Attributes
+    ----------
+    shape : str
+        ``rectangle``.
+    width, length, depth : float, [m]
+        Sides across and along, and depth of the base.
+    x, y : float, [m]
+        Distances of its centre from that of the load.
+    """
+
+    shape: Literal["rectangle"] = Field(description="kind of load")
+    width: Annotated[float, side("side of the rectangle across")]
+    length: Annotated[float, side("side of the rectangle along")]
+    depth: Annotated[float, _DEPTH] = 0.0
+    x: Annotated[float, _X]
+    y: Annotated[float, _Y] = 0.0
+
+
+class FurtherCircle(_Further):
+    """A circle of uniform pressure.
+
+    Attributes
+    ----------
+    shape : str
+        ``circle``.
+    diameter, depth : float, [m]
+        Diameter, and depth of the base.
+    x, y : float, [m]
+        Distances of its centre from that of the load.
+    """
+
+    shape: Literal["circle"] = Field(description="kind of load")
+    diameter: Annotated[float, side("diameter of the circle")]
+    depth: Annotated[float, _DEPTH] = 0.0
+    x: Annotated[float, _X]
+    y: Annotated[float, _Y] = 0.0
+
+
+FURTHER = (FurtherEmbankment, FurtherArea, FurtherStrip, FurtherRectangle, FurtherCircle)
+"""Classes of further loads."""
+
+FurtherLoad = Annotated[
+    FurtherEmbankment | FurtherArea | FurtherStrip | FurtherRectangle | FurtherCircle,
+    Field(discriminator="shape"),
+]
