@@ -42,10 +42,10 @@ class CampaignSample:
         Settlement through time of the first realisations.
     circle : ndarray, shape (n_band, n_check, 6), [m]
         Where the critical circles of the first realisations lie.
-    fill_added : ndarray, shape (n_sample,), [m]
-        Thickness of fill added to hold its level; empty where none is.
     station : ndarray, shape (n_band, n_station, n_when), [m]
         Settlement of the first realisations at every station.
+    fill_added : ndarray, shape (n_sample,), [m]
+        Thickness of fill added to hold its level; empty where none is.
     converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -66,8 +66,8 @@ class CampaignSample:
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
-    fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
     station: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 0)))
+    fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:

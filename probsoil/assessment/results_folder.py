@@ -15,10 +15,11 @@ COPY = "scenario.toml"
 REALISATIONS_FILE = "realisations.npz"
 FIGURES = "figures"
 
-_TABLES = tuple(
-    f"{name}.csv" for name in ("limits", "drivers", "settlement", "parameters", "stations", "station_pairs")
-)
-FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES)
+_TABLES = ("limits.csv", "drivers.csv", "settlement.csv", "parameters.csv")
+OCCASIONAL = ("stations.csv", "station_pairs.csv", "added_fill.csv")
+"""Tables that only some scenarios have."""
+
+FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES, *OCCASIONAL)
 
 
 @contextmanager

@@ -80,16 +80,14 @@ class SiteModel:
         Time from which traffic drives a slip; infinite without traffic.
     base_head : bool
         Whether the piezometric level at the bottom is given.
+    station_point : tuple of float or None, [m]
+        Plan position of the station where settlement is reported; None for the centreline, centre or point.
+    station_name : str or None
+        Its name.
     hold_level_until : float or None, [years]
         Time until which fill is added so that its level stays; None where none is.
     further_loads : tuple of FurtherLoadForm
         Loads beside the one that is assessed.
-    offset : float, [m]
-        Distance of the point of settlement from the centreline of an embankment.
-    position : tuple of float or None, [m]
-        Plan position of a station; None for the centreline, centre or point of the load.
-    station_name : str or None
-        Name of the station where settlement is reported; None for the centreline, centre or point.
     """
 
     layers: tuple[LayerForm, ...]
@@ -109,11 +107,10 @@ class SiteModel:
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
     base_head: bool = False
+    station_point: tuple[float, float] | None = None
+    station_name: str | None = None
     hold_level_until: float | None = None
     further_loads: tuple[FurtherLoadForm, ...] = ()
-    offset: float = 0.0
-    position: tuple[float, float] | None = None
-    station_name: str | None = None
 
     @property
     def seeps(self) -> bool:
@@ -209,9 +206,14 @@ class SiteModel:
     @property
     def point(self) -> tuple[float, float]:
         """Plan position x, y at which settlement is reported, from the centre of the load, [m]."""
-        if self.position is not None:
-            return self.position
+        if self.station_point is not None:
+            return self.station_point
         return (0.0, 0.0) if self.foundation is None else self.foundation.plan_point
+
+    @property
+    def offset(self) -> float:
+        """Distance of that point from the centreline of an embankment, [m]; 0 for any other load."""
+        return 0.0 if self.embankment is None else self.point[0]
 
     @property
     def changes(self) -> tuple[LoadChange, ...]:

@@ -199,9 +199,8 @@ def station_site(scenario: Scenario, station: Station, *, refine: int = 1) -> Si
     here = scenario.model_copy(
         update={"layers": _layers_at(scenario, station), "load": _load_at(scenario.load, station)}
     )
-    offset = station.x if isinstance(scenario.load, EmbankmentLoad) else 0.0
-    laid_out = site_model(here, refine=refine)
-    return replace(laid_out, offset=offset, position=(station.x, station.y), station_name=station.name)
+    point = (station.x, station.y)
+    return replace(site_model(here, refine=refine), station_point=point, station_name=station.name)
 
 
 def settling_site(site: SiteModel) -> SiteModel:
@@ -215,16 +214,9 @@ def settling_site(site: SiteModel) -> SiteModel:
     Returns
     -------
     site : SiteModel
-        Without slip and bearing; stresses are kept from the end of the last stage on.
+        Without slip and bearing.
     """
-    return replace(
-        site,
-        record=site.record[site.record >= site.last_change],
-        slip_times=_NOWHERE,
-        layouts=(),
-        families=(),
-        bearing_times=_NOWHERE,
-    )
+    return replace(site, slip_times=_NOWHERE, layouts=(), families=(), bearing_times=_NOWHERE)
 
 
 def station_times(scenario: Scenario) -> FloatArray:
@@ -240,7 +232,7 @@ def station_times(scenario: Scenario) -> FloatArray:
     times : ndarray, shape (n_when,), [years]
         Those of limits on settlement, the end of the last stage and the horizon.
     """
-    times = {float(scenario.horizon), float(scenario.stages[-1].end)}
+    times = {float(scenario.horizon), max(float(stage.end) for stage in scenario.stages)}
     for limit in scenario.limits:
         if isinstance(limit, ON_SETTLEMENT):
             times |= {limit.at or 0.0} if limit.between is None else set(limit.between)

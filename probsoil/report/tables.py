@@ -17,8 +17,8 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
 
-    ``added_fill.csv`` only where fill is added to hold its level. With stations also ``stations.csv`` and
-    ``station_pairs.csv``.
+    The last only where fill is added to hold its level. With stations also ``stations.csv``
+    and ``station_pairs.csv``.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
@@ -70,12 +70,12 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
         "settlement": _settlement_rows(results.get("settlement") or {}, results),
         "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
     }
-    if results.get("added_fill"):
-        rows["added_fill"] = _added_fill_rows(results)
     settlement = results.get("settlement") or {}
     if settlement.get("stations"):
         rows["stations"] = list(_station_rows(settlement, results))
         rows["station_pairs"] = list(_pair_rows(settlement, results))
+    if results.get("added_fill"):
+        rows["added_fill"] = _added_fill_rows(results)
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}
     if len(frames["drivers"]):
         whole = {"rank [-]": "Int64", "spread clear": "boolean", "mean clear": "boolean"}
@@ -156,23 +156,6 @@ def _settlement_rows(data: dict[str, Any], results: dict[str, Any]) -> list[dict
     ]
 
 
-def _added_fill_rows(results: dict[str, Any]) -> list[dict[str, Any]]:
-    return [
-        {
-            "fill added": name,
-            "until [years]": row["until"],
-            "unit": unit,
-            "mean [unit]": _or(UNCOMPUTED, row[key], "mean"),
-            **_quantile_columns(row[key]["quantiles"], "unit", results["realisations"], UNCOMPUTED),
-        }
-        for row in results["added_fill"]
-        for name, unit, key in (
-            ("thickness on the centreline", "m", "thickness"),
-            ("volume", row["unit"], "volume"),
-        )
-    ]
-
-
 def _station_rows(data: dict[str, Any], results: dict[str, Any]) -> Iterator[dict[str, Any]]:
     for station in data["stations"]:
         head = {
@@ -208,6 +191,23 @@ def _series_rows(
             f"mean [{unit}]": UNCOMPUTED if mean is None else mean,
             **_quantile_columns(at_time, unit, n, UNCOMPUTED),
         }
+
+
+def _added_fill_rows(results: dict[str, Any]) -> list[dict[str, Any]]:
+    return [
+        {
+            "fill added": name,
+            "until [years]": row["until"],
+            "unit": unit,
+            "mean [unit]": _or(UNCOMPUTED, row[key], "mean"),
+            **_quantile_columns(row[key]["quantiles"], "unit", results["realisations"], UNCOMPUTED),
+        }
+        for row in results["added_fill"]
+        for name, unit, key in (
+            ("thickness on the centreline", "m", "thickness"),
+            ("volume", row["unit"], "volume"),
+        )
+    ]
 
 
 def _parameter_row(row: dict[str, Any]) -> dict[str, Any]:

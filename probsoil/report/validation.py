@@ -147,14 +147,6 @@ _GROUND = {
         "final_stress": ["number"],
     },
 }
-_MEAN_AND_QUANTILES = {"mean": _NUMBER, "quantiles": _QUANTILES}
-_ADDED_FILL = {
-    "until": "number",
-    "unit": "text",
-    "mean_width": _NUMBER,
-    "thickness": _MEAN_AND_QUANTILES,
-    "volume": _MEAN_AND_QUANTILES,
-}
 _SERIES = {"mean": [_NUMBER], "quantiles": {level: [_NUMBER] for level in _LEVELS}}
 _STATIONS = {
     "station_times?": ["number"],
@@ -162,6 +154,14 @@ _STATIONS = {
         {"name": "text", "x": "number", "y": "number", "along": _NUMBER, "thickness": "object"} | _SERIES
     ],
     "pairs?": [{"stations": ["text"], "distance": "number", "difference": _SERIES, "distortion": _SERIES}],
+}
+_MEAN_AND_QUANTILES = {"mean": _NUMBER, "quantiles": _QUANTILES}
+_ADDED_FILL = {
+    "until": "number",
+    "unit": "text",
+    "mean_width": _NUMBER,
+    "thickness": _MEAN_AND_QUANTILES,
+    "volume": _MEAN_AND_QUANTILES,
 }
 RESULTS: dict[str, Any] = {
     "title": "text",

@@ -75,6 +75,31 @@ def test_stations_computed_by_themselves_agree_with_the_section() -> None:
     assert (found.secondary[:, :, -1] > 0.0).all()
 
 
+def test_stages_creep_and_a_level_that_is_held_are_the_same_at_a_station() -> None:
+    stages = [*FILL, stage("more", 2.0, 2.5, height=1.0), stage("off", 6.0, 6.2, height=-0.5)]
+    load = f"{EMBANKMENT}\nhold_level_until = 9"
+    found = settled(case(station("here"), station("there", y=25.0), load=load, stages=stages))
+    assert np.array_equal(found.settlement[:, 0], found.settlement[:, 1])
+    plain = settled(case(station("here"), station("there", y=25.0), stages=stages))
+    assert np.array_equal(plain.secondary[:, 0], plain.secondary[:, 1])
+    assert (found.settlement[:, :, -1] > plain.settlement[:, :, -1]).all()
+
+
+def test_a_further_load_is_felt_from_its_own_place() -> None:
+    """A second tank 15 m to one side: the side towards it settles more, and 9 m off as 9 m off."""
+    neighbour = (
+        '[[further_loads]]\nname = "tank B"\nshape = "circle"\ndiameter = 12\nx = 15\n'
+        '[[stages]]\nname = "B"\nload = "tank B"\nstart = 0\nend = 0.5\npressure = 40'
+    )
+    points = [station(name, x, y) for name, x, y in (("near", 6, 0), ("far", -6, 0), ("side", 0, 6))]
+    found = settled(case(*points, neighbour, load=SHAPES["circle"], stages=PRESS))
+    near, far, side = found.settlement[0, :, -1]
+    assert near > side > far
+    alone = settled(case(*points, load=SHAPES["circle"], stages=PRESS)).settlement[0, :, -1]
+    assert np.ptp(alone) == 0.0
+    assert far > alone[1]
+
+
 def test_both_sides_of_an_embankment_settle_alike_and_less_than_its_middle() -> None:
     """Without creep, which the model lets go on in normally consolidated clay also where no load arrives."""
     ground = [clay("soft", 5.0), sand("sand", 2.0)]
