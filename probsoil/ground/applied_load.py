@@ -9,13 +9,11 @@ from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
-from probsoil.ground.further_load import foundation_influence, share_above
+from probsoil.ground.further_load import Places, foundation_influence, share_above
 from probsoil.ground.load_stress import trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.top_up import AddedFill
-
-_GAUSS_POINTS = 6
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -186,6 +184,8 @@ def applied_load(
     the reported point, each from its own place.
     """
     n_sample, berm = depth.shape[0], None
+    half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
+    places = Places(depth=depth, half=half, thick=None if thickness is None else thick)
     heights = [site.fill_height(float(time)) for time in site.knots]
     pressures = [site.pressure(float(time)) for time in site.knots]
     weight = fill_weight(values, n_sample)
@@ -198,10 +198,7 @@ def applied_load(
     else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
-            spread, share = _foundation_spread(site.foundation, depth, thickness)
-            if thickness is not None and thick is not None and thick.any():
-                mean = _mean_spread(site.foundation, depth[:, thick], 0.5 * thickness[:, thick])
-                spread[:, thick] = mean
+            spread, share = _foundation_spread(site.foundation, places)
         stress = [
             pressure_on_base(site, values, weight * height + pressure, float(time))[:, None] * spread
             for height, pressure, time in zip(heights, pressures, site.knots, strict=True)
@@ -214,23 +211,20 @@ def applied_load(
         water_depth=column(values, "site.water_table", n_sample),
         berm_share=berm,
     )
-    return _with_further_loads(alone, site, values, depth, thickness)
+    return _with_further_loads(alone, site, values, places)
 
 
-def _with_further_loads(
-    load: AppliedLoad, site: SiteModel, values: Values, depth: FloatArray, thickness: FloatArray | None
-) -> AppliedLoad:
+def _with_further_loads(load: AppliedLoad, site: SiteModel, values: Values, places: Places) -> AppliedLoad:
     if not site.further_loads:
         return load
-    n_sample, spread = len(depth), np.zeros_like(depth)
-    half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
+    n_sample, spread = len(places.depth), np.zeros_like(places.depth)
     stresses = np.empty((len(site.further_loads), *load.stress.shape))
     for place, one in enumerate(site.further_loads):
         weight = fill_weight(values, n_sample, one.address)[:, None]
-        by_pressure = one.pressure_influence(depth, half, site.point)
+        by_pressure = one.pressure_influence(places, site.point)
         spread += by_pressure
         for knot, time in enumerate(site.knots.tolist()):
-            by_fill = one.fill_influence(depth, half, site.point, site.fill_height(time, one.name))
+            by_fill = one.fill_influence(places, site.point, site.fill_height(time, one.name))
             stresses[place, knot] = weight * by_fill + site.pressure(time, one.name) * by_pressure
     # what submergence takes off is taken to be the same under every load
     total = load.stress + stresses.sum(axis=0)
@@ -278,26 +272,13 @@ def _embankment_spread(
     return centre / shape.full_height, slope, berm
 
 
-def _foundation_spread(
-    shape: Foundation, depth: FloatArray, thickness: FloatArray | None
-) -> tuple[FloatArray, FloatArray]:
+def _foundation_spread(shape: Foundation, places: Places) -> tuple[FloatArray, FloatArray]:
     """Return the influence below the reported point, and that below the edge over it."""
-    half = np.zeros_like(depth) if thickness is None else 0.5 * thickness
-    spread = foundation_influence(shape, depth, half, *shape.at)
-    edge = foundation_influence(shape, depth, half, 0.5 * shape.width, 0.0)
+    at_depth = replace(places, thick=None)
+    spread = foundation_influence(shape, at_depth, *shape.at)
+    edge = foundation_influence(shape, at_depth, 0.5 * shape.width, 0.0)
     share = np.clip(edge / np.where(spread > 0.0, spread, 1.0), 0.0, 1.0)
-    return spread, np.where(spread > 0.0, share, 1.0)
-
-
-def _mean_spread(shape: Foundation, depth: FloatArray, half: FloatArray) -> FloatArray:
-    """Return the influence below the reported point, averaged over a thickness (Gauss and Legendre)."""
-    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
-    middle, reach = 0.5 * (top + bottom) - shape.depth, 0.5 * (bottom - top)
-    place, weight = np.polynomial.legendre.leggauss(_GAUSS_POINTS)
-    mean = np.zeros_like(depth)
-    for one, part in zip(place, weight, strict=True):
-        mean += 0.5 * part * shape.influence(middle + one * reach, *shape.at)
-    return np.asarray(mean * reach / half)
+    return foundation_influence(shape, places, *shape.at), np.where(spread > 0.0, share, 1.0)
 
 
 def share_above_base(shape: Foundation, points: Points) -> FloatArray:

@@ -8,10 +8,30 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation
 from probsoil.ground.load_stress import trapezia_influence
+
+_GAUSS_POINTS = 6
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class Places:
+    """Depths at which stress is looked at.
+
+    Attributes
+    ----------
+    depth, half : ndarray, shape (n_sample, n_point), [m]
+        Depths, and half the thickness that each stands for.
+    thick : ndarray of bool or None, shape (n_point,), [-]
+        Points that stand for so much (a quarter of a granular layer) that the stress of a foundation is
+        averaged over it; None for none.
+    """
+
+    depth: FloatArray
+    half: FloatArray
+    thick: BoolArray | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,15 +57,13 @@ class FurtherLoadForm:
     x: float
     y: float
 
-    def fill_influence(
-        self, depth: FloatArray, half: FloatArray, point: tuple[float, float], height: float
-    ) -> FloatArray:
+    def fill_influence(self, places: Places, point: tuple[float, float], height: float) -> FloatArray:
         """Return the stress per unit weight of fill at a height of fill.
 
         Parameters
         ----------
-        depth, half : ndarray, shape (n_sample, n_point), [m]
-            Depths, and half the thickness that each stands for.
+        places : Places
+            Depths.
         point : tuple of float, [m]
             Plan position x, y.
         height : float, [m]
@@ -57,18 +75,16 @@ class FurtherLoadForm:
             Of a foundation or an area the height times the influence of its pressure.
         """
         if self.embankment is None:
-            return height * self.pressure_influence(depth, half, point)
-        return trapezia_influence(depth, point[0] - self.x, self.embankment.trapezia(max(height, 0.0)))
+            return height * self.pressure_influence(places, point)
+        return trapezia_influence(places.depth, point[0] - self.x, self.embankment.trapezia(max(height, 0.0)))
 
-    def pressure_influence(
-        self, depth: FloatArray, half: FloatArray, point: tuple[float, float]
-    ) -> FloatArray:
+    def pressure_influence(self, places: Places, point: tuple[float, float]) -> FloatArray:
         """Return the stress as a share of the pressure, of an embankment that of its greatest height.
 
         Parameters
         ----------
-        depth, half : ndarray, shape (n_sample, n_point), [m]
-            Depths, and half the thickness that each stands for.
+        places : Places
+            Depths.
         point : tuple of float, [m]
             Plan position x, y.
 
@@ -79,23 +95,21 @@ class FurtherLoadForm:
         """
         if self.embankment is not None:
             full = self.embankment.full_height
-            return self.fill_influence(depth, half, point, full) / full
+            return self.fill_influence(places, point, full) / full
         if self.foundation is None:
-            return np.ones_like(depth)
-        return foundation_influence(self.foundation, depth, half, point[0] - self.x, point[1] - self.y)
+            return np.ones_like(places.depth)
+        return foundation_influence(self.foundation, places, point[0] - self.x, point[1] - self.y)
 
 
-def foundation_influence(
-    shape: Foundation, depth: FloatArray, half: FloatArray, x: float, y: float
-) -> FloatArray:
+def foundation_influence(shape: Foundation, places: Places, x: float, y: float) -> FloatArray:
     """Return the stress below a point of the plan as a share of the pressure of a foundation.
 
     Parameters
     ----------
     shape : Foundation
         Plan and depth.
-    depth, half : ndarray, shape (n_sample, n_point), [m]
-        Depths, and half the thickness that each stands for.
+    places : Places
+        Depths.
     x, y : float, [m]
         Distances of the point from the centre along `width` and `length`.
 
@@ -104,9 +118,26 @@ def foundation_influence(
     influence : ndarray, shape (n_sample, n_point), [-]
         None above the base; where the base cuts through a thickness, the part below it counts.
     """
+    depth, half, thick = places.depth, places.half, places.thick
     loaded = 1.0 - share_above(shape.depth, depth, half)
     top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
-    return np.asarray(loaded * shape.influence(0.5 * (top + bottom) - shape.depth, x, y))
+    found = np.asarray(loaded * shape.influence(0.5 * (top + bottom) - shape.depth, x, y))
+    if thick is not None and thick.any():
+        found[:, thick] = _mean_influence(shape, depth[:, thick], half[:, thick], (x, y))
+    return found
+
+
+def _mean_influence(
+    shape: Foundation, depth: FloatArray, half: FloatArray, point: tuple[float, float]
+) -> FloatArray:
+    """Return the influence averaged over a thickness (Gauss and Legendre)."""
+    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
+    middle, reach = 0.5 * (top + bottom) - shape.depth, 0.5 * (bottom - top)
+    place, weight = np.polynomial.legendre.leggauss(_GAUSS_POINTS)
+    mean = np.zeros_like(depth)
+    for one, part in zip(place, weight, strict=True):
+        mean += 0.5 * part * shape.influence(middle + one * reach, *point)
+    return np.asarray(mean * reach / half)
 
 
 def share_above(base: float, depth: FloatArray, half: FloatArray) -> FloatArray:

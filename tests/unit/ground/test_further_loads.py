@@ -226,3 +226,21 @@ def test_clay_creeps_alike_under_two_halves_laid_together_and_one_whole():
     one, two = settled(whole).response, settled(halves).response
     assert one.secondary[0, -1] > 0.01
     assert two.secondary == pytest.approx(one.secondary, rel=1e-6)
+
+
+def test_stress_in_thick_granular_points_is_a_mean_for_further_loads_too():
+    """A quarter of a sand layer is one point: two halves must give what the whole does there as well."""
+    depth, thickness = np.array([[1.0, 2.5, 4.0]]), np.array([[0.2, 1.5, 1.5]])
+    thick = np.array([False, True, True])
+    whole = built(load("strip", width=6, at=0), stages=[BUILT])
+    halves = built(
+        load("strip", width=3, at=1.5),
+        [further("other half", "strip", width=3, x=3)],
+        [BUILT, on("other half", "also", 0.0, 0.5, pressure=50)],
+    )
+    keys = {"depth": depth, "thickness": thickness, "thick": thick}
+    one, two = (applied_load(site_model(case), central(case), **keys) for case in (whole, halves))
+    assert two.stress == pytest.approx(one.stress, rel=1e-9)
+    fine = np.linspace(1.75, 3.25, 2001)[None]
+    mean = np.trapezoid(applied_load(site_model(halves), central(halves), fine).stress[-1, 0], fine[0]) / 1.5
+    assert two.stress[-1, 0, 1] == pytest.approx(mean, rel=1e-6)
