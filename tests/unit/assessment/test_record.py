@@ -127,7 +127,7 @@ def test_settlement_band_counts_what_did_not_converge_as_the_deepest(study: Stud
     settlement = np.tile(np.arange(1.0, N + 1.0, dtype=np.float32)[:, None], (1, len(study.site.times)))
     settlement[-300:, 2:] = np.nan
     final = settlement[:, -1].astype(np.float64)
-    record = settlement_record(study.site, sample_of(study, settlement=settlement, final=final))
+    record = settlement_record(study, sample_of(study, settlement=settlement, final=final))
     assert record["realisations"] == N
     assert record["mean"][:3] == [500.5, 500.5, None]
     assert record["quantiles"]["0.5"][:3] == [500.5, 500.5, 500.5]
