@@ -18,7 +18,8 @@ from probsoil.ground.site_forms import LayerForm
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario.groundwater import controlled_boundaries, excess_runs, piezometric_levels
 
-_EARLY_FACTOR, _EARLY_DEGREE = 0.05, 0.25  # below them the root-time form is exact to 1e-9
+_EARLY_FACTOR = 0.05  # below it the root-time form is exact to 1e-9
+_EARLY_DEGREE = 2.0 * np.sqrt(_EARLY_FACTOR / np.pi)
 _MODE = (2.0 * np.arange(8) + 1.0) * np.pi / 2.0  # exp(-M^2 T) of the next is below 1e-60 at T = 0.05
 _MOST_DEGREE = 1.0 - 1e-12
 _ITERATIONS = 6
@@ -246,7 +247,7 @@ def time_factor(degree: ArrayLike) -> FloatArray:
 
     Notes
     -----
-    :math:`\pi U^2/4` below U = 0.25, where it is exact to rounding; beyond, Newton's method on the series
+    :math:`\pi U^2/4` below T = 0.05, where it is exact to rounding; beyond, Newton's method on the series
     :math:`U = 1 - \sum 2 M^{-2} e^{-M^2 T}`, :math:`M = (2m + 1)\pi/2` (Terzaghi, recalled, not opened).
     """
     wanted = np.minimum(checked("degree", degree, at_least=0.0), _MOST_DEGREE)

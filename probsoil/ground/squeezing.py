@@ -8,6 +8,7 @@ from probsoil._typing import BoolArray, FloatArray
 from probsoil.ground.applied_load import LoadedGround, fill_weight
 from probsoil.ground.bearing import net_pressure
 from probsoil.ground.bearing_capacity import limited_thickness_factor, squeezing_safety
+from probsoil.ground.foundation import Foundation
 from probsoil.ground.profile import Values
 from probsoil.ground.site_model import SiteModel
 
@@ -49,7 +50,8 @@ def squeezing_at(
     granular layer, the end of the profile, or clay of `FIRM` times its mean strength or more. Strength is
     the mean below the slope or the edge. A crust or a granular blanket above the run resists nothing; it
     spreads a foundation's load at 2 vertical to 1 horizontal, an embankment's not. Under a foundation it is
-    Mandel and Salencon's strip, without factors for shape and depth.
+    Mandel and Salencon's strip without a factor for depth, with less friction under a circle and a smooth
+    base.
     """
     if site.foundation is None and site.embankment is None:
         return None
@@ -96,6 +98,16 @@ def _run(
     return top, np.maximum(boundary[:, last] - top, 0.0), mean, firm
 
 
+def _held_share(shape: Foundation) -> float:
+    """Return how much of its width counts in the friction that holds the clay: all of a rough strip's.
+
+    Mean pressure of clay pressed out between two plates with the strength on both: half the width over the
+    thickness of a strip, a third of the diameter of a circle; half of that where one plate is smooth.
+    """
+    plan = 2.0 / 3.0 if shape.shape == "circle" else 1.0
+    return plan * (0.5 if shape.contact == "smooth" else 1.0)
+
+
 def _factor(
     site: SiteModel,
     values: Values,
@@ -110,7 +122,7 @@ def _factor(
         width, share = site.foundation.spread_area(top - site.foundation.depth)
         pressure = net_pressure(site, values, mean.size, time) * share
         pressed = pressure > 0.0
-        capacity = limited_thickness_factor(width, there) * su
+        capacity = limited_thickness_factor(_held_share(site.foundation) * width, there) * su
         safety = np.where(pressed, capacity / np.where(pressed, pressure, 1.0), np.inf)
         return safety, width > _THIN * thickness
     height, shape = site.fill_height(time), site.embankment

@@ -117,6 +117,15 @@ def test_an_earlier_load_goes_on_where_it_has_got_to(base, degree):
     assert mean == pytest.approx((1.0 - degree) * EXCESS, abs=DEFAULT_ALLOWANCE * EXCESS)
 
 
+def test_time_factor_undoes_the_series_at_every_degree():
+    """Rising, also where the root-time form hands over to the series, at a degree of 0.2523."""
+    # below 0.01 the reference series has too few terms
+    degree = np.unique([*np.linspace(0.01, 0.99, 981), *np.linspace(0.2495, 0.2535, 401)])
+    factor = pore_pressure.time_factor(degree)
+    assert (np.diff(factor) > 0.0).all()
+    assert np.asarray(degree_uniform(factor)) == pytest.approx(degree, abs=1e-8)
+
+
 @pytest.mark.parametrize("factor", [1e-4, 0.01, 0.0499, 0.05, 0.2, 1.0])
 def test_isochrones_are_those_of_the_series(factor):
     place = np.linspace(0.0, 1.0, 11)

@@ -252,7 +252,7 @@ def test_squeezing_is_looked_at_where_the_clay_is_thin():
     thin = case('shape = "circle"\ndiameter = 20', clay("clay", 4.0, **QUICK), sand("sand", 2.0))
     site, state = state_with(thin, lambda z: np.full(z.shape, 20.0))
     factor = squeezing_at(site, {}, state.ground, state.strength, 0.01)
-    assert factor == pytest.approx([(np.pi + 1.0 + 0.5 * 5.0) * 20.0 / 50.0])
+    assert factor == pytest.approx([(np.pi + 1.0 + 5.0 / 3.0) * 20.0 / 50.0])  # D/3H
     thick = case('shape = "circle"\ndiameter = 7', clay("clay", 4.0, **QUICK), sand("sand", 2.0))
     site, state = state_with(thick, lambda z: np.full(z.shape, 20.0))
     assert squeezing_at(site, {}, state.ground, state.strength, 0.01) is None
@@ -264,7 +264,25 @@ def test_squeezing_is_looked_at_below_a_blanket_and_a_crust(blanket):
     site, state = state_with(given, lambda z: np.where(z < 1.0, 90.0, 20.0))
     factor = squeezing_at(site, {}, state.ground, state.strength, 0.01)
     pressure = 50.0 * (20.0 / 21.0) ** 2
-    assert factor == pytest.approx([(np.pi + 1.0 + 0.5 * 21.0 / 4.0) * 20.0 / pressure])
+    assert factor == pytest.approx([(np.pi + 1.0 + 21.0 / 4.0 / 3.0) * 20.0 / pressure])
+
+
+@pytest.mark.parametrize(
+    ("shape", "contact", "width"), [("circle", "rough", 30.0), ("strip", "smooth", 24.0)]
+)
+def test_friction_of_squeezing_is_the_mean_pressure_that_equilibrium_asks_for(shape, contact, width):
+    """Clay pressed out between two plates: dp/dr = (c1 + c2)/H from the edge inward, by adding up rings."""
+    size = "diameter" if shape == "circle" else "width"
+    load = f'shape = "{shape}"\n{size} = {width}\ncontact = "{contact}"'
+    given = case(load, clay("clay", 4.0, **QUICK), sand("sand", 2.0))
+    site, state = state_with(given, lambda z: np.full(z.shape, 20.0))
+    factor = squeezing_at(site, {}, state.ground, state.strength, 0.01)
+    r = (np.arange(200_000) + 0.5) * 0.5 * width / 200_000
+    faces = 2.0 if contact == "rough" else 1.0
+    pressure, weight = faces * (0.5 * width - r) / 4.0, r if shape == "circle" else np.ones_like(r)
+    assert factor == pytest.approx(
+        [(np.pi + 1.0 + np.average(pressure, weights=weight)) * 20.0 / 50.0], rel=1e-6
+    )
 
 
 @pytest.mark.parametrize(("lower", "looked_at"), [(40.0, True), (39.0, False)])
