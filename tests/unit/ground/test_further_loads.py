@@ -171,20 +171,24 @@ def test_settlement_and_strength_grow_with_a_further_load(x, more):
 
 def test_only_the_load_itself_presses_on_its_base_and_drives_a_slip():
     bank = load("embankment", crest_width=8, side_slope=2, fill_unit_weight=19, fill_phi=33)
-    lift = stage("lift", 2.0, 2.2, height=2.0)
-    beside = further("beside", "embankment", crest_width=8, side_slope=2, fill_unit_weight=19, x=30)
-    alone = built(bank, stages=[lift])
-    both = built(bank, [beside], [on("beside", "before", 0.0, 0.2, height=3.0), lift])
+    lift = stage("lift", 25.0, 25.2, height=2.0)  # when the clay has consolidated under what is beside
+    near, far = (
+        further("beside", "embankment", crest_width=8, side_slope=2, fill_unit_weight=19, x=x)
+        for x in (30, 2000)
+    )
+    both, alone = (
+        built(bank, [one], [on("beside", "before", 0.0, 0.2, height=3.0), lift]) for one in (near, far)
+    )
     site = site_model(both)
-    assert [site.fill_height(2.2), site.fill_height(2.2, "beside"), site.greatest_fill_height(2.2)] == [
+    assert [site.fill_height(25.2), site.fill_height(25.2, "beside"), site.greatest_fill_height(25.2)] == [
         2,
         3,
         3,
     ]
-    assert site.slip_times.tolist() == [2.2]
+    assert site.slip_times.tolist() == [25.2]
     assert site.embankment == site_model(alone).embankment
     safer, first = settled(both).response.slip[0, 0], settled(alone).response.slip[0, 0]
-    assert 0.995 * first <= safer < 1.2 * first  # other knots, other steps
+    assert first < safer < 1.2 * first
 
 
 def test_level_is_held_against_the_settlement_by_every_load():

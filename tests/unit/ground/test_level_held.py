@@ -213,13 +213,14 @@ def test_slip_is_driven_by_the_added_fill_and_not_resisted_by_it():
     assert moments[-1].heavier > 1.01
 
 
-def test_screening_weighs_the_added_fill_as_the_campaign_does():
-    """The search refines the circles laid out first: by up to 4 % where a layer is thin, and never upward."""
+def test_circles_chosen_with_the_added_fill_are_the_worst_with_it():
+    """Against a denser search, to the 1 % that the circles promise; without its weight others are chosen."""
     site, values, state = embankment(20.0)
+    layouts = tuple(replace(layout, density=1.5) for layout in site.layouts)
+    denser = ground_state(screened(replace(site, layouts=layouts), values, within=0.0), values)
+    assert state.response.slip == pytest.approx(denser.response.slip, rel=0.01)
     every = ground_state(replace(site, families=()), values)
-    ratio = state.response.slip / every.response.slip
-    assert (ratio <= 1.0 + 1e-9).all()
-    assert (ratio > 0.96).all()
+    assert (state.response.slip <= every.response.slip * (1.0 + 1e-9)).all()  # all that were laid out first
 
 
 def test_no_creep_while_the_level_is_held():
@@ -236,6 +237,7 @@ def test_no_creep_while_the_level_is_held():
 def test_degree_is_that_under_the_load_that_stays():
     site, state = solved(area(10.0, [clay("clay", 4.0)]))
     degree = state.response.degree[0, site.times >= site.last_change]
-    assert (np.diff(degree) >= -0.005).all()  # what the default steps may be wrong by
+    # iteration stops at 1e-4 of a stress in one step, a millionth of the settlement
+    assert (np.diff(degree) >= -1e-6).all()
     assert degree[0] < 0.9
     assert degree[-1] == pytest.approx(1.0, abs=0.01)
