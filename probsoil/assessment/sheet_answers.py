@@ -10,10 +10,10 @@ from probsoil.assessment.sheet_sublayers import PointState, Sublayer
 from probsoil.ground.clay_settlement import (
     added_stress_when_done,
     by_segment,
-    drain_terms,
     segment_settlement_when_done,
     settlement_when_done,
 )
+from probsoil.ground.drain_flow import drain_terms
 from probsoil.ground.secondary_compression import CreepSpell, end_of_primary
 from probsoil.ground.slip_moments import SlipMoments, critical_moments
 from probsoil.ground.stability import zone_gains

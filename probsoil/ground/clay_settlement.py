@@ -1,6 +1,6 @@
 """Consolidation of the clay layers of a site and how far it has gone."""
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import numpy as np
 
@@ -14,7 +14,6 @@ from probsoil.ground.applied_load import (
 from probsoil.ground.compression import void_ratio_lost
 from probsoil.ground.conductivity import (
     Conductivity,
-    RadialDrainage,
     conductivity_from_cv,
     conductivity_from_permeability,
 )
@@ -25,12 +24,12 @@ from probsoil.ground.consolidation import (
     Submergence,
     consolidate,
 )
-from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
+from probsoil.ground.constants import SECONDS_PER_YEAR
+from probsoil.ground.drain_flow import radial_drainage
 from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, column
 from probsoil.ground.rows import chosen, row_sum
-from probsoil.ground.site_model import DrainForm, SiteModel
-from probsoil.ground.vertical_drains import drain_factor, well_resistance
+from probsoil.ground.site_model import SiteModel
 
 _OPEN_ABOVE_BASE = np.log(1e4)  # ln of how much more easily water passes above a foundation's base
 _NOTHING = 1e-9  # m; a settlement below it counts as finished
@@ -68,7 +67,7 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
         above = chosen(share_above_base(site.foundation, ground.points), clay)
         flow = replace(flow, log_value=flow.log_value + _OPEN_ABOVE_BASE * above)
     if site.drains is not None:
-        flow = replace(flow, drains=_drainage(site, site.drains, values, ground))
+        flow = replace(flow, drains=radial_drainage(site, site.drains, values, ground))
     return consolidate(state, flow, cells, history, times=site.times, record=site.record)
 
 
@@ -163,100 +162,6 @@ def shortening(
         slopes=(state.lam, state.kap),
     )
     return np.asarray(state.thickness / (1.0 + state.void_ratio) * lost)
-
-
-def _drainage(site: SiteModel, drains: DrainForm, values: Values, ground: LoadedGround) -> RadialDrainage:
-    """Return the sink that the drains make in every cell, by the share of the cell they reach."""
-    found = drain_terms(site, drains, values, ground)
-    factor = found.factor + found.resistance
-    return RadialDrainage(
-        rate=found.reached * 8.0 * found.ratio / (factor * drains.influence_diameter**2),
-        start=drains.installed,
-    )
-
-
-@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
-class DrainTerms:
-    """What makes up the sink to the drains in every cell.
-
-    Attributes
-    ----------
-    ratio : ndarray, shape (n_sample, n_cell), [-]
-        Horizontal over vertical permeability.
-    factor : ndarray, shape (n_sample, 1), [-]
-        mu of spacing and smear.
-    resistance : ndarray, shape (n_sample, n_cell), [-]
-        What the drain's own resistance adds to it; zero where it has none.
-    permeability : ndarray, shape (n_sample, n_cell), [m/year]
-        Horizontal permeability in situ.
-    reached : ndarray, shape (n_sample, n_cell), [-]
-        Share of the cell that drains reach.
-    """
-
-    ratio: FloatArray
-    factor: FloatArray
-    resistance: FloatArray
-    permeability: FloatArray
-    reached: FloatArray
-
-
-def drain_terms(site: SiteModel, drains: DrainForm, values: Values, ground: LoadedGround) -> DrainTerms:
-    """Return what makes up the sink to vertical drains.
-
-    Parameters
-    ----------
-    site : SiteModel
-        Layers and cells.
-    drains : DrainForm
-        The drains.
-    values : mapping of str to ndarray, shape (n_sample,), or float
-        Value of every quantity by its address.
-    ground : LoadedGround
-        The ground before loading.
-
-    Returns
-    -------
-    terms : DrainTerms
-        Factor mu, what well resistance adds, and the share of each cell that is reached.
-    """
-    layer, clay = site.cells.layer, ground.clay
-    n_sample = ground.points.depth.shape[0]
-    depth, thickness = chosen(ground.points.depth, clay), chosen(ground.points.thickness, clay)
-    ratios = [
-        column(values, f"{form.name}.kh_kv", n_sample) if form.is_clay else np.ones(n_sample)
-        for form in site.layers
-    ]
-    ratio = chosen(np.stack(ratios, axis=1), layer)
-    smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
-    permeability = ratio * _initial_permeability(site, values, ground)
-    resistance = np.zeros_like(depth)
-    if drains.discharge_capacity is not None:
-        resistance = well_resistance(depth, drains.bottom, permeability, drains.discharge_capacity)
-    return DrainTerms(
-        ratio=ratio,
-        factor=drain_factor(drains.influence_diameter / drains.diameter, drains.smear_ratio, smear),
-        resistance=resistance,
-        permeability=permeability,
-        reached=np.clip((drains.bottom - depth) / thickness + 0.5, 0.0, 1.0),
-    )
-
-
-def _initial_permeability(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:
-    """Return the vertical permeability in situ, shape (n_sample, n_cell), [m/year]."""
-    state = _clay_state(site, ground)
-    permeability = np.empty_like(state.lam)
-    for index, form in enumerate(site.layers):
-        if form.is_clay:
-            mine = site.cells.layer == index
-            given = column(values, f"{form.name}.{form.flow}", state.lam.shape[0])[:, None]
-            if form.flow == "k":
-                permeability[:, mine] = given * SECONDS_PER_YEAR
-            else:
-                compressibility = state.lam[:, mine] / (1.0 + state.void_ratio[:, mine])
-                permeability[:, mine] = (
-                    given * WATER_UNIT_WEIGHT * compressibility / state.yield_stress[:, mine]
-                )
-    return permeability
 
 
 def settlement_when_done(

@@ -154,26 +154,19 @@ class MonteCarlo:
 
 
 @dataclass(frozen=True, slots=True)
-class LatinHypercube:
-    """Sixteen independent Latin hypercubes with random placement in their cells.
+class _Replicated:
+    """Sixteen replicates of equal size, drawn independently of each other.
 
     Attributes
     ----------
     seed : int, [-]
         Seed of the run.
     asked : int, [-]
-        Number of points asked for; rounded up to sixteen equal replicates.
+        Number of points asked for; rounded up to what the replicates hold.
     dimension : int, [-]
         Number of uncertain parameters d.
-
-    References
-    ----------
-    .. [1] M. D. McKay, R. J. Beckman and W. J. Conover, "A comparison of three methods for selecting
-       values of input variables in the analysis of output from a computer code", Technometrics, 21,
-       1979 (recalled; not opened).
     """
 
-    name: ClassVar[str] = "latin hypercube"
     replicates: ClassVar[int] = REPLICATES
     chunk_size: ClassVar[int] = CHUNK_SIZE
     seed: int
@@ -196,7 +189,7 @@ class LatinHypercube:
     @property
     def n_chunks(self) -> int:
         """Number of chunks [-]."""
-        return REPLICATES * _chunks_per_replicate(self.per_replicate)
+        return REPLICATES * -(-self.per_replicate // CHUNK_SIZE)
 
     def chunk(self, index: int) -> FloatArray:
         """Independent standard normals of one chunk.
@@ -216,11 +209,7 @@ class LatinHypercube:
         ParameterError
             If there is no such chunk.
         """
-        _check_chunk(index, self.n_chunks)
-        replicate, first, size = _place(index, self.per_replicate)
-        cells = _latin_cells(self.seed, replicate, self.per_replicate, self.dimension)[first : first + size]
-        within = _generator(self.seed, POINT_STAGE, index).random((size, self.dimension))
-        return ndtri(np.clip((cells + within) / self.per_replicate, _EDGE, 1.0 - _EDGE))
+        return np.asarray(ndtri(self._uniform(index, *self._place(index))))
 
     def replicate_index(self, index: int) -> IntArray:
         """Replicate that each point of one chunk belongs to.
@@ -240,13 +229,50 @@ class LatinHypercube:
         ParameterError
             If there is no such chunk.
         """
-        _check_chunk(index, self.n_chunks)
-        replicate, _, size = _place(index, self.per_replicate)
+        replicate, _, size = self._place(index)
         return np.full(size, replicate, dtype=np.int64)
+
+    def _place(self, index: int) -> tuple[int, int, int]:
+        """Replicate of a chunk, its first point within the replicate, and its size."""
+        _check_chunk(index, self.n_chunks)
+        replicate, part = divmod(index, self.n_chunks // REPLICATES)
+        first = part * CHUNK_SIZE
+        return replicate, first, min(CHUNK_SIZE, self.per_replicate - first)
+
+    def _uniform(self, index: int, replicate: int, first: int, size: int) -> FloatArray:
+        raise NotImplementedError
 
 
 @dataclass(frozen=True, slots=True)
-class ScrambledSobol:
+class LatinHypercube(_Replicated):
+    """Sixteen independent Latin hypercubes with random placement in their cells.
+
+    Attributes
+    ----------
+    seed : int, [-]
+        Seed of the run.
+    asked : int, [-]
+        Number of points asked for; rounded up to sixteen equal replicates.
+    dimension : int, [-]
+        Number of uncertain parameters d.
+
+    References
+    ----------
+    .. [1] M. D. McKay, R. J. Beckman and W. J. Conover, "A comparison of three methods for selecting
+       values of input variables in the analysis of output from a computer code", Technometrics, 21,
+       1979 (recalled; not opened).
+    """
+
+    name: ClassVar[str] = "latin hypercube"
+
+    def _uniform(self, index: int, replicate: int, first: int, size: int) -> FloatArray:
+        cells = _latin_cells(self.seed, replicate, self.per_replicate, self.dimension)[first : first + size]
+        within = _generator(self.seed, POINT_STAGE, index).random((size, self.dimension))
+        return np.clip((cells + within) / self.per_replicate, _EDGE, 1.0 - _EDGE)
+
+
+@dataclass(frozen=True, slots=True)
+class ScrambledSobol(_Replicated):
     """Sixteen independently scrambled Sobol' sets, each with its columns in random order.
 
     Attributes
@@ -267,50 +293,13 @@ class ScrambledSobol:
     """
 
     name: ClassVar[str] = "sobol"
-    replicates: ClassVar[int] = REPLICATES
-    chunk_size: ClassVar[int] = CHUNK_SIZE
-    seed: int
-    asked: int
-    dimension: int
-
-    def __post_init__(self) -> None:
-        _check(self.asked, self.dimension)
 
     @property
     def per_replicate(self) -> int:
         """Points in each replicate, a power of two [-]."""
         return 1 << (-(-self.asked // REPLICATES) - 1).bit_length()
 
-    @property
-    def n(self) -> int:
-        """Number of points [-]."""
-        return REPLICATES * self.per_replicate
-
-    @property
-    def n_chunks(self) -> int:
-        """Number of chunks [-]."""
-        return REPLICATES * _chunks_per_replicate(self.per_replicate)
-
-    def chunk(self, index: int) -> FloatArray:
-        """Independent standard normals of one chunk.
-
-        Parameters
-        ----------
-        index : int, [-]
-            Number of the chunk, from 0.
-
-        Returns
-        -------
-        u : ndarray, shape (n_i, d), [-]
-            Standard normals.
-
-        Raises
-        ------
-        ParameterError
-            If there is no such chunk.
-        """
-        _check_chunk(index, self.n_chunks)
-        replicate, first, size = _place(index, self.per_replicate)
+    def _uniform(self, index: int, replicate: int, first: int, size: int) -> FloatArray:  # noqa: ARG002
         if self.dimension == 0:
             return np.empty((size, 0))
         from scipy.stats import qmc  # deferred: half a second that only this design needs
@@ -320,29 +309,7 @@ class ScrambledSobol:
         if first:  # moving on by zero is an error in scipy
             sequence.fast_forward(first)
         columns = _generator(self.seed, PERMUTATION_STAGE, replicate).permutation(self.dimension)
-        return ndtri(sequence.random(size)[:, columns] + 0.5 * 2.0**-_SOBOL_BITS)
-
-    def replicate_index(self, index: int) -> IntArray:
-        """Replicate that each point of one chunk belongs to.
-
-        Parameters
-        ----------
-        index : int, [-]
-            Number of the chunk, from 0.
-
-        Returns
-        -------
-        replicate : ndarray, shape (n_i,), [-]
-            One number throughout, from 0 to 15.
-
-        Raises
-        ------
-        ParameterError
-            If there is no such chunk.
-        """
-        _check_chunk(index, self.n_chunks)
-        replicate, _, size = _place(index, self.per_replicate)
-        return np.full(size, replicate, dtype=np.int64)
+        return np.asarray(sequence.random(size)[:, columns] + 0.5 * 2.0**-_SOBOL_BITS)
 
 
 _DESIGNS: dict[str, Callable[[int, int, int], Design]] = {
@@ -393,17 +360,6 @@ def _latin_cells(seed: int, replicate: int, n: int, dimension: int) -> IntArray:
 
 def _generator(seed: int, stage: int, index: int) -> np.random.Generator:
     return np.random.default_rng(np.random.SeedSequence(seed, spawn_key=(stage, index)))
-
-
-def _chunks_per_replicate(per_replicate: int) -> int:
-    return -(-per_replicate // CHUNK_SIZE)
-
-
-def _place(index: int, per_replicate: int) -> tuple[int, int, int]:
-    """Replicate of a chunk, its first point within the replicate, and its size."""
-    replicate, part = divmod(index, _chunks_per_replicate(per_replicate))
-    first = part * CHUNK_SIZE
-    return replicate, first, min(CHUNK_SIZE, per_replicate - first)
 
 
 def _check(n: int, dimension: int) -> None:

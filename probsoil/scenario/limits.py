@@ -66,6 +66,21 @@ class _Limit(Table):
     target_probability: TargetProbability = None
     cost_if_exceeded: Cost = None
 
+    @property
+    def threshold(self) -> float:
+        """Threshold, in the unit of its key [m], [-] or [years]."""
+        return float(getattr(self, self.sense.replace(" ", "_")))
+
+
+def _settled(meaning: str) -> Number:
+    return Number(
+        kind="length", low=0.0, high=100.0, open_low=True, source="common practice", meaning=meaning
+    )
+
+
+def _safety(meaning: str) -> Number:
+    return Number(kind="number", low=0.0, high=20.0, open_low=True, source="common practice", meaning=meaning)
+
 
 ONE_TIME = ConfigDict(json_schema_extra={"oneOf": [{"required": ["at"]}, {"required": ["between"]}]})
 
@@ -97,25 +112,13 @@ class SettlementLimit(_Limit):
     )
     not_more_than: Annotated[
         float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=100.0,
-            open_low=True,
-            source="common practice",
-            meaning="settlement that should not be exceeded",
-        ),
+        _settled("settlement that should not be exceeded"),
     ]
     station: Label | None = Field(
         default=None,
         description='name of the station, or "any" for the one that settles most in each realisation; '
         "the first station if left out",
     )
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [m]."""
-        return self.not_more_than
 
 
 _Compared = Annotated[tuple[Label, Label] | Literal["any", "neighbours"], BeforeValidator(pair_or_word)]
@@ -154,20 +157,8 @@ class DifferentialSettlementLimit(_Limit):
     )
     not_more_than: Annotated[
         float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=100.0,
-            open_low=True,
-            source="common practice",
-            meaning="difference of settlement that should not be exceeded",
-        ),
+        _settled("difference of settlement that should not be exceeded"),
     ]
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [m]."""
-        return self.not_more_than
 
 
 class AngularDistortionLimit(_Limit):
@@ -220,11 +211,6 @@ class AngularDistortionLimit(_Limit):
         ),
     ]
 
-    @property
-    def threshold(self) -> float:
-        """Threshold [-]."""
-        return self.not_more_than
-
 
 class SlipSafetyLimit(_Limit):
     """Factor of safety against a slip, at one time or the least over the stage ends.
@@ -244,20 +230,8 @@ class SlipSafetyLimit(_Limit):
     at: OptionalTime = None
     not_less_than: Annotated[
         float,
-        Number(
-            kind="number",
-            low=0.0,
-            high=20.0,
-            open_low=True,
-            source="common practice",
-            meaning="least tolerable factor of safety against a slip",
-        ),
+        _safety("least tolerable factor of safety against a slip"),
     ]
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [-]."""
-        return self.not_less_than
 
 
 class BearingSafetyLimit(_Limit):
@@ -278,20 +252,8 @@ class BearingSafetyLimit(_Limit):
     at: OptionalTime = None
     not_less_than: Annotated[
         float,
-        Number(
-            kind="number",
-            low=0.0,
-            high=20.0,
-            open_low=True,
-            source="common practice",
-            meaning="least tolerable factor of safety against undrained bearing failure",
-        ),
+        _safety("least tolerable factor of safety against undrained bearing failure"),
     ]
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [-]."""
-        return self.not_less_than
 
 
 class ConsolidationLimit(_Limit):
@@ -322,11 +284,6 @@ class ConsolidationLimit(_Limit):
             meaning="degree of consolidation that should be reached",
         ),
     ]
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [-]."""
-        return self.not_less_than
 
 
 class ConsolidationTimeLimit(_Limit):
@@ -367,11 +324,6 @@ class ConsolidationTimeLimit(_Limit):
             meaning="time by which the degree should be reached; not beyond the horizon",
         ),
     ]
-
-    @property
-    def threshold(self) -> float:
-        """Threshold [year]."""
-        return self.not_more_than
 
 
 OnSettlement = SettlementLimit | DifferentialSettlementLimit | AngularDistortionLimit
