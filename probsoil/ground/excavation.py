@@ -4,7 +4,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.ground.in_situ_stress import hydrostatic_pressure, total_vertical_stress
-from probsoil.ground.profile import LEAST_STRESS, Values, column
+from probsoil.ground.profile import LEAST_STRESS, Values, layers_by_weight
 from probsoil.ground.site_model import SiteModel
 
 
@@ -29,22 +29,10 @@ def stress_dug_out(
     total, pore : ndarray, shape (n_sample,), [kPa]
         Weight of the soil above the level, and pressure of the water there.
     """
-
-    def per_layer(key: str, *, above: bool = False) -> FloatArray:
-        keys = [f"{key}_above" if above and form.weight_above else key for form in site.layers]
-        pairs = zip(site.layers, keys, strict=True)
-        return np.stack([column(values, f"{form.name}.{one}", n_sample) for form, one in pairs], axis=1)
-
-    boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(per_layer("thickness"), axis=1)], axis=1)
-    depth, water_table = np.full((n_sample, 1), level), column(values, "site.water_table", n_sample)
-    total = total_vertical_stress(
-        depth,
-        boundary,
-        unit_weight=per_layer("unit_weight"),
-        unit_weight_above=per_layer("unit_weight", above=True),
-        water_table=water_table,
-    )
-    return total[:, 0], hydrostatic_pressure(depth, water_table)[:, 0]
+    _, boundary, weights = layers_by_weight(site, values, n_sample)
+    depth = np.full((n_sample, 1), level)
+    total = total_vertical_stress(depth, boundary, **weights)
+    return total[:, 0], hydrostatic_pressure(depth, weights["water_table"])[:, 0]
 
 
 def pressure_on_base(site: SiteModel, values: Values, placed: FloatArray, time: float) -> FloatArray:

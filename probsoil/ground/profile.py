@@ -98,6 +98,46 @@ class ClayColumns:
     kappa_clipped: BoolArray
 
 
+def layers_by_weight(
+    site: SiteModel, values: Values, n_sample: int
+) -> tuple[FloatArray, FloatArray, dict[str, FloatArray]]:
+    """Return where the layers lie and what makes the stress of their weight.
+
+    Parameters
+    ----------
+    site : SiteModel
+        Layers.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    thickness : ndarray, shape (n_sample, n_layer), [m]
+        Of each layer.
+    boundary : ndarray, shape (n_sample, n_layer + 1), [m]
+        Depths of the layer boundaries, ground level first.
+    weights : dict of str to ndarray
+        Arguments of `in_situ_stress.total_vertical_stress`: unit weights [kN/m3] and water table [m].
+    """
+
+    def per_layer(key: Callable[[LayerForm], str]) -> FloatArray:
+        columns = [column(values, f"{layer.name}.{key(layer)}", n_sample) for layer in site.layers]
+        return np.stack(columns, axis=1)
+
+    thickness = per_layer(lambda _: "thickness")
+    boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(thickness, axis=1)], axis=1)
+    weights = {
+        "unit_weight": per_layer(lambda _: "unit_weight"),
+        "unit_weight_above": per_layer(
+            lambda form: "unit_weight_above" if form.weight_above else "unit_weight"
+        ),
+        "water_table": column(values, "site.water_table", n_sample),
+    }
+    return thickness, boundary, weights
+
+
 def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     """Return depths and stresses in situ of every point of the profile.
 
@@ -121,28 +161,14 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     without any stress would have no lower end to its strain. What excess pore pressure is then left is
     less than given, so that it dissipates to the effective stress of the steady state.
     """
-
-    def per_layer(key: Callable[[LayerForm], str]) -> FloatArray:
-        columns = [column(values, f"{layer.name}.{key(layer)}", n_sample) for layer in site.layers]
-        return np.stack(columns, axis=1)
-
-    thickness = per_layer(lambda _: "thickness")
-    boundary = np.concatenate([np.zeros((n_sample, 1)), np.cumsum(thickness, axis=1)], axis=1)
+    thickness, boundary, weights = layers_by_weight(site, values, n_sample)
     layer, centre, share = _relative_points(site)
     if site.foundation is not None:
         centre, share = _with_face_at(site.foundation.depth, site, boundary, centre, share)
     each = chosen(thickness, layer)
     depth = chosen(boundary, layer) + centre * each
-    water_table = column(values, "site.water_table", n_sample)
-    weights = {
-        "unit_weight": per_layer(lambda _: "unit_weight"),
-        "unit_weight_above": per_layer(
-            lambda form: "unit_weight_above" if form.weight_above else "unit_weight"
-        ),
-        "water_table": water_table,
-    }
     total = total_vertical_stress(depth, boundary, **weights)
-    pore, excess = hydrostatic_pressure(depth, water_table), None
+    pore, excess = hydrostatic_pressure(depth, weights["water_table"]), None
     uplifted = np.zeros(n_sample, dtype=np.bool_)
     if site.seeps:
         seepage = layer_seepage(site, values, boundary, weights)
