@@ -118,6 +118,25 @@ def margin_text(probability: float, interval: list[float], n: int, confidence: f
     return bound_text(probability, unseen_bound(n, confidence))
 
 
+def limit_margin(limit: dict[str, Any], results: dict[str, Any]) -> str:
+    """Write how far the chance of exceeding a limit could lie from its estimate.
+
+    Parameters
+    ----------
+    limit : dict
+        One entry of ``limits`` of the results.
+    results : dict
+        The results it belongs to.
+
+    Returns
+    -------
+    text : str
+        As by `margin_text`.
+    """
+    n, confidence = realisations_of(limit, results), confidence_of(limit, results)
+    return margin_text(limit["probability"], limit["interval"], n, confidence)
+
+
 def chance_text(limit: dict[str, Any], results: dict[str, Any]) -> str:
     """Write the exceedance probability of a limit with its margin.
 
@@ -135,8 +154,7 @@ def chance_text(limit: dict[str, Any], results: dict[str, Any]) -> str:
         ``none of 20,000 realisations (below 0.015 % with 95 % confidence)``.
     """
     probability, n = limit["probability"], realisations_of(limit, results)
-    confidence = confidence_of(limit, results)
-    margin = margin_text(probability, limit["interval"], n, confidence)
+    confidence, margin = confidence_of(limit, results), limit_margin(limit, results)
     if not 0 < probability < 1 and not is_certain(limit):
         margin += f" with {plain_percent(confidence)} confidence"
     return f"{probability_text(probability, n)} ({margin})"
@@ -262,8 +280,7 @@ def _chance_clause(limit: dict[str, Any], results: dict[str, Any]) -> str:
             f"the chance that {event_text(limit)} is {percent_text(probability)}{f', {odds}' if odds else ''}"
         )
     seen = probability_text(probability, n)
-    confidence = confidence_of(limit, results)
-    bound = margin_text(probability, limit["interval"], n, confidence)
+    confidence, bound = confidence_of(limit, results), limit_margin(limit, results)
     return (
         f"{event_text(limit)} in {seen}, so the chance is {bound} with {plain_percent(confidence)} confidence"
     )
@@ -294,8 +311,7 @@ def counted_text(limit: dict[str, Any], results: dict[str, Any]) -> str:
         12.9 %``.
     """
     n, probability = realisations_of(limit, results), limit["probability"]
-    confidence = confidence_of(limit, results)
-    margin = margin_text(probability, limit["interval"], n, confidence)
+    confidence, margin = confidence_of(limit, results), limit_margin(limit, results)
     verb = "exceeds" if limit["exceeding"] == 1 else "exceed"
     said = f"{count_text(limit['exceeding'])} of {realisations_text(n)} {verb} the limit"
     if is_certain(limit):

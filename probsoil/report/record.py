@@ -4,7 +4,7 @@ from decimal import ROUND_CEILING
 from typing import Any
 
 from probsoil.report import text
-from probsoil.report.chance import confidence_of, is_certain, margin_text, realisations_of
+from probsoil.report.chance import is_certain, limit_margin
 
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _PROFILE_ROWS = 14
@@ -267,18 +267,15 @@ def _sampling(results: dict[str, Any]) -> str:
             "Nothing in this scenario is uncertain, so other realisations would give the same and there are "
             "no intervals."
         )
-    parts = [f"limit {number}: {_margin(limit, results)}" for number, limit in enumerate(limits, start=1)]
+    parts = [
+        f"limit {number}: {limit_margin(limit, results)}" for number, limit in enumerate(limits, start=1)
+    ]
     confidence = text.plain_percent(results.get("confidence") or 0.95)
     return (
         "Intervals and bounds say how far the chances could shift if as many other realisations were drawn, "
         f"{text.count_text(results['realisations'])} ({confidence} confidence; {'; '.join(parts)}). They say "
         "nothing of whether the distributions put into the scenario are right."
     )
-
-
-def _margin(limit: dict[str, Any], results: dict[str, Any]) -> str:
-    n, confidence = realisations_of(limit, results), confidence_of(limit, results)
-    return margin_text(limit["probability"], limit["interval"], n, confidence)
 
 
 def _discretisation(data: dict[str, Any]) -> str:
