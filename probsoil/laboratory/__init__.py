@@ -1,0 +1,1 @@
+"""Test sheets in hand: read from tables, interpreted, and turned into evidence."""
