@@ -108,7 +108,8 @@ def _failed_rows(study: Study, code: str, what: str, checks: tuple[FloatArray, F
     times, factor = checks
     concerned: dict[bytes, list[str]] = {}
     for limit in study.scenario.limits:
-        if len(times) and limit.quantity not in _SAFETY:
+        own = getattr(limit, "load", None) is None
+        if len(times) and own and limit.quantity not in _SAFETY:
             failed = (factor[:, times <= _judged_at(limit)] < 1.0).any(axis=1)
             concerned.setdefault(failed.tobytes(), []).append(limit.name)
     rows = []

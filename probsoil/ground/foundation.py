@@ -196,5 +196,5 @@ def further_foundation(load: object) -> Foundation | None:
     else:
         return None
     return Foundation(
-        shape=load.shape, width=width, length=length, depth=load.depth, contact="rough", at=(0.0, 0.0)
+        shape=load.shape, width=width, length=length, depth=load.depth, contact=load.contact, at=(0.0, 0.0)
     )

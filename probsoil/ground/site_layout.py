@@ -91,6 +91,8 @@ def further_load_forms(scenario: Scenario, stages: Sequence[StageForm]) -> tuple
                 crest_width=load.crest_width,
                 side_slope=load.side_slope,
                 full_height=greatest_height(stages, load.name),
+                berm_width=load.berm_width or 0.0,
+                berm_height=load.berm_height or 0.0,
             )
             if isinstance(load, FurtherEmbankment)
             else None,
@@ -178,7 +180,7 @@ def recorded_times(
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
-    if embankment is None:
+    if embankment is None or getattr(scenario.load, "fill_phi", None) is None:
         return record, np.zeros(0)
     check = [time for time in sorted(ends | slip) if time > 0.0 and height_at(stages, time) > 0.0]
     return record, np.array(check, dtype=np.float64)

@@ -82,6 +82,7 @@ _LIMIT = {
     "expected_cost": _NUMBER,
     "expected_cost_interval?": ("pair", "null"),
     "summary": {"mean": _NUMBER, "sd": _NUMBER, "quantiles": _QUANTILES, "median_interval?": "pair"},
+    "load?": ("text", "null"),
     "place?": ("object", "null"),
     "place_text?": "text",
     "decided_by?": [{"stations": ["text"], "share": "share"}],

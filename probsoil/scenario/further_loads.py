@@ -1,13 +1,25 @@
-"""Further loads on the site, beside the one that is assessed: each adds stress below that one."""
+"""Further loads on the site, beside [load]: each adds stress below that one, and limits may look at it."""
 
 from typing import Annotated, Literal
 
 from pydantic import Field
 
 from probsoil.scenario.base import Name, Table
-from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number
-from probsoil.scenario.loads import FILL_WEIGHT, side, slope_run, width_of_top
+from probsoil.scenario.loads import (
+    BERM_HEIGHT,
+    BERM_WIDTH,
+    FILL_COHESION,
+    FILL_PHI,
+    FILL_WEIGHT,
+    TRAFFIC,
+    TRAFFIC_FROM,
+    Contact,
+    side,
+    slope_run,
+    width_of_top,
+)
 
 _ACROSS = "across (along the width of [load])"
 
@@ -51,6 +63,12 @@ class FurtherEmbankment(_Further):
         ``embankment``.
     crest_width, side_slope : float, [m], [-]
         Width of the top at the greatest height, run of the slope per unit of rise.
+    fill_phi : Distribution or None, [degree]
+        Friction angle of the fill; needed where a limit looks at its slip.
+    fill_cohesion : Distribution, [kPa]
+        Cohesion of the fill.
+    berm_width, berm_height, traffic, traffic_from
+        As of the load that is assessed.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
@@ -58,6 +76,12 @@ class FurtherEmbankment(_Further):
     shape: Literal["embankment"] = Field(description="kind of load")
     crest_width: Annotated[float, width_of_top()]
     side_slope: Annotated[float, slope_run()]
+    fill_phi: Annotated[Distribution | None, FILL_PHI] = None
+    fill_cohesion: Annotated[Distribution, FILL_COHESION] = Constant(value=0.0)
+    berm_width: Annotated[float | None, BERM_WIDTH] = None
+    berm_height: Annotated[float | None, BERM_HEIGHT] = None
+    traffic: Annotated[Distribution, TRAFFIC] = Constant(value=0.0)
+    traffic_from: Annotated[float | None, TRAFFIC_FROM] = None
     x: Annotated[float, _X]
 
 
@@ -73,34 +97,48 @@ class FurtherArea(_Further):
     shape: Literal["area"] = Field(description="kind of load")
 
 
-class FurtherStrip(_Further):
+class _FurtherFoundation(_Further):
+    """What every further foundation has.
+
+    Attributes
+    ----------
+    depth : float, [m]
+        Depth of the base.
+    contact : str
+        ``rough`` or ``smooth``, for its own bearing.
+    """
+
+    depth: Annotated[float, _DEPTH] = 0.0
+    contact: Contact = "rough"
+
+
+class FurtherStrip(_FurtherFoundation):
     """A long strip of uniform pressure, parallel to the length of the load.
 
     Attributes
     ----------
     shape : str
         ``strip``.
-    width, depth : float, [m]
-        Width, and depth of the base.
+    width : float, [m]
+        Width of the strip.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
     width: Annotated[float, side("width of the strip")]
-    depth: Annotated[float, _DEPTH] = 0.0
     x: Annotated[float, _X]
 
 
-class FurtherRectangle(_Further):
+class FurtherRectangle(_FurtherFoundation):
     """A rectangle of uniform pressure.
 
     Attributes
     ----------
     shape : str
         ``rectangle``.
-    width, length, depth : float, [m]
-        Sides across and along, and depth of the base.
+    width, length : float, [m]
+        Sides across and along.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
@@ -108,27 +146,25 @@ class FurtherRectangle(_Further):
     shape: Literal["rectangle"] = Field(description="kind of load")
     width: Annotated[float, side("side of the rectangle across")]
     length: Annotated[float, side("side of the rectangle along")]
-    depth: Annotated[float, _DEPTH] = 0.0
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 
 
-class FurtherCircle(_Further):
+class FurtherCircle(_FurtherFoundation):
     """A circle of uniform pressure.
 
     Attributes
     ----------
     shape : str
         ``circle``.
-    diameter, depth : float, [m]
-        Diameter, and depth of the base.
+    diameter : float, [m]
+        Its diameter.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
     diameter: Annotated[float, side("diameter of the circle")]
-    depth: Annotated[float, _DEPTH] = 0.0
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 

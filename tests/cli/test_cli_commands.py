@@ -321,6 +321,21 @@ def test_check_prints_stations_and_what_limits_compare(
     assert "between the two stations for which it is greatest is more than 0.003333 (1/300)" in said
 
 
+def test_sheet_of_a_further_load(desk: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text = AREA.replace(
+        "[[stages]]",
+        '[[further_loads]]\nname = "pad"\nshape = "area"\n\n'
+        '[[stages]]\nname = "stock"\nload = "pad"\npressure = 20\nstart = 0\nend = 0.1\n\n[[stages]]',
+        1,
+    )
+    (desk / "two.toml").write_text(text)
+    assert main(["sheet", "two.toml", "--load", "pad"]) == 0
+    assert "of pad" in squeezed(capsys.readouterr().out)
+    assert main(["sheet", "two.toml", "--load", "yard"]) == 2
+    assert 'there is no further load "yard": there are pad' in squeezed(capsys.readouterr().err)
+    assert main(["sheet", "two.toml", "--load", "pad", "--station", "east"]) == 2
+
+
 def test_sheet_of_a_station(desk: Path, capsys: pytest.CaptureFixture[str]) -> None:
     (desk / "yard.toml").write_text(AREA + STATIONS, encoding="utf-8")
     assert main(["sheet", "yard.toml", "--station", "east"]) == 0
