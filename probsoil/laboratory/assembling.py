@@ -187,12 +187,22 @@ def _vanes(collection: Collection, ground: _Ground) -> Iterator[VaneSheet]:
             test=test,
             place=ground.place(hole, float(depth[0])),
             origin=_origin(table, int(rows.min())),
-            corrected={"yes": True, "no": False}.get(table.text("corrected", first)),
+            corrected=_corrected(table, rows),
             depth=depth,
             strength=table.numbers("strength")[rows],
             remoulded=table.numbers("remoulded strength")[rows],
             plasticity_index=_plasticity(table, rows, hole, ground),
         )
+
+
+def _corrected(table: Table, rows: IntArray) -> bool | None:
+    words = {table.text("corrected", row) for row in rows.tolist()}
+    return True if "yes" in words else False if "no" in words else None
+
+
+def _first_known(numbers: FloatArray) -> float | None:
+    known = numbers[~np.isnan(numbers)]
+    return float(known[0]) if known.size else None
 
 
 def _plasticity(table: Table, rows: IntArray, hole: str, ground: _Ground) -> FloatArray:
@@ -210,7 +220,7 @@ def _cones(collection: Collection, ground: _Ground) -> Iterator[ConeSheet]:
             test=test,
             place=ground.place(table.text("hole", first), float(depth[0])),
             origin=_origin(table, first),
-            area_ratio=_known(table.numbers("area ratio")[first]),
+            area_ratio=_first_known(table.numbers("area ratio")[rows]),
             depth=depth,
             cone_resistance=table.numbers("cone resistance")[rows],
             sleeve_friction=table.numbers("sleeve friction")[rows],

@@ -15,7 +15,7 @@ from probsoil.laboratory.columns import Column
 from probsoil.laboratory.grouping import elsewhere, groups
 from probsoil.laboratory.profiles import profile_codes
 from probsoil.laboratory.relations import PROFILES
-from probsoil.laboratory.tables import Table
+from probsoil.laboratory.tables import EMPTY, Table
 
 VOID_RATIO_RISE = 0.005  # a rise under growing load up to this is taken as reading error
 
@@ -165,23 +165,25 @@ def _report_senseless(collection: Collection, table: Table, column: Column, row:
 
 def _unlike_within_profile(collection: Collection) -> None:
     cone, vane = collection.tables["cone"], collection.tables["vane"]
-    ratio = np.nan_to_num(cone.numbers("area ratio"), nan=-1.0)
-    _constant(collection, cone, "area ratio", np.unique(ratio, return_inverse=True)[1].astype(np.int64))
+    ratio = np.nan_to_num(cone.numbers("area ratio"), nan=EMPTY)
+    _constant(collection, cone, "area ratio", np.unique(np.append(ratio, EMPTY), return_inverse=True)[1][:-1])
     _constant(collection, vane, "corrected", vane.codes("corrected"))
     for table in (cone, vane):
         _constant(collection, table, "hole", table.codes("hole"))
 
 
 def _constant(collection: Collection, table: Table, name: str, values: IntArray) -> None:
+    """Ask for one value in a profile; empty cells say nothing."""
     for group in groups(profile_codes(table, collection.names), table.kept()):
-        unlike = group[values[group] != values[group[0]]]
+        told = group[values[group] != EMPTY]
+        unlike = told[values[told] != values[told[0]]] if told.size else told
         if unlike.size:
             row = int(unlike[0])
             collection.fault(
                 table.fault(
                     row,
                     name,
-                    f"{name} is not that of {elsewhere(table, row, int(group[0]))}, of the same profile",
+                    f"{name} is not that of {elsewhere(table, row, int(told[0]))}, of the same profile",
                     allowed=f"one {name} throughout a profile",
                     hint="mend it, or give the profiles names in a column test",
                 )

@@ -1,15 +1,15 @@
 """Everything read so far and every mistake met, and the reader that fills both from rows of cells."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from probsoil.errors import Fault
 from probsoil.laboratory.cells import Cell, CellError, Heading, number_in, shown, text_in
-from probsoil.laboratory.columns import Column
 from probsoil.laboratory.layout import LAYOUTS
 from probsoil.laboratory.tables import Names, Source, Table
 
 GREATEST_FAULTS = 200  # listed one by one; beyond, they are counted
+GREATEST_REMARKS = 500
 _LONGEST_GIVEN = 60
 
 
@@ -23,8 +23,8 @@ class Collection:
         All names.
     tables : dict of str to Table
         By name of the layout.
-    faults : list of Fault
-        Mistakes, at most `GREATEST_FAULTS` of them.
+    faults : dict of Fault to None
+        Mistakes in the order met, at most `GREATEST_FAULTS` of them.
     uncounted : int, [-]
         Further mistakes.
     fatal : bool
@@ -35,7 +35,7 @@ class Collection:
 
     names: Names = field(default_factory=Names)
     tables: dict[str, Table] = field(init=False)
-    faults: list[Fault] = field(default_factory=list)
+    faults: dict[Fault, None] = field(default_factory=dict)
     uncounted: int = 0
     fatal: bool = False
     remarks: dict[str, None] = field(default_factory=dict)
@@ -44,17 +44,17 @@ class Collection:
         self.tables = {layout.name: Table(layout, self.names) for layout in LAYOUTS}
 
     def fault(self, fault: Fault) -> None:
-        """Note a mistake.
+        """Note a mistake; the same one once.
 
         Parameters
         ----------
         fault : Fault
             With its place.
         """
-        if len(self.faults) < GREATEST_FAULTS:
-            self.faults.append(fault)
-        else:
+        if fault not in self.faults and len(self.faults) >= GREATEST_FAULTS:
             self.uncounted += 1
+        else:
+            self.faults.setdefault(fault)
 
     def unreadable(self, file: str, message: str, hint: str | None = None) -> None:
         """Note that a file cannot be read at all.
@@ -79,7 +79,10 @@ class Collection:
         text : str
             With file and row.
         """
-        self.remarks.setdefault(text)
+        if len(self.remarks) < GREATEST_REMARKS:
+            self.remarks.setdefault(text)
+        else:
+            self.remarks.setdefault("further remarks are not listed")
 
 
 class RowReader:
@@ -98,38 +101,36 @@ class RowReader:
     def __init__(self, collection: Collection, table: Table, source: Source) -> None:
         self._collection = collection
         self._table = table
-        self._source = source
-        self._columns: list[tuple[Column, Heading]] = [
-            (column, source.headings[column.name])
-            for column in table.layout.columns
-            if column.name in source.headings
-        ]
+        self._file = source.file
         table.begin(source)
 
-    def take(self, row: int, cells: Sequence[Cell]) -> None:
+    def take(self, row: int, cells: Mapping[str, tuple[Cell, Heading]]) -> None:
         """Read one row.
 
         Parameters
         ----------
         row : int, [-]
             Where it stands.
-        cells : sequence of str, float, bool or None, [as written]
-            From the first column of the file on.
+        cells : mapping of str to tuple
+            By name of the column: the cell and the heading it stands under.
+
+        Raises
+        ------
+        TooManyRowsError
+            If the table is full.
         """
         read: dict[str, float | str] = {}
-        sound = True
-        for column, heading in self._columns:
-            cell = cells[heading.position - 1] if heading.position <= len(cells) else None
+        for column in self._table.layout.columns:
+            if column.name not in cells:
+                continue
+            cell, heading = cells[column.name]
             try:
                 read[column.name] = (
-                    text_in(cell, column)
-                    if column.is_text
-                    else number_in(_trimmed(cell), column, heading.factor)
+                    text_in(cell, column) if column.is_text else number_in(cell, column, heading.factor)
                 )
             except CellError as error:
-                sound = False
                 self._refuse(row, heading, cell, error)
-        if sound:
+        if len(read) == len(cells):
             self._table.add(row, read)
         else:
             head = [
@@ -140,7 +141,7 @@ class RowReader:
     def _refuse(self, row: int, heading: Heading, cell: Cell, error: CellError) -> None:
         self._collection.fault(
             Fault(
-                file=self._source.file,
+                file=self._file,
                 line=row,
                 column=heading.position,
                 key=heading.text,
@@ -150,7 +151,3 @@ class RowReader:
                 hint=error.hint,
             )
         )
-
-
-def _trimmed(cell: Cell) -> Cell:
-    return cell.strip() if isinstance(cell, str) else cell

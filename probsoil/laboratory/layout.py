@@ -283,7 +283,7 @@ _FIELD = (
                 choices=("yes", "no"),
             ),
         ),
-        key=("hole", "test", "depth"),
+        key=("hole", "test", "depth", "strength"),
     ),
     TableLayout(
         name="cone",

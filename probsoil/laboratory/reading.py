@@ -5,6 +5,7 @@ from os import PathLike
 from pathlib import Path
 
 from probsoil.errors import Fault, SheetError
+from probsoil.laboratory.ags_tables import read_ags
 from probsoil.laboratory.assembling import site_sheets
 from probsoil.laboratory.checks import check_tests
 from probsoil.laboratory.collection import Collection
@@ -17,6 +18,7 @@ from probsoil.laboratory.workbooks import read_workbook
 
 TEXT_TABLES = (".csv", ".txt", ".tsv")
 WORKBOOKS = (".xlsx", ".xlsm", ".xlsb", ".xls", ".ods")
+AGS_FILES = (".ags",)
 SOME_PATHS = str | PathLike[str] | Sequence[str | PathLike[str]]
 
 
@@ -87,7 +89,7 @@ def _read_path(collection: Collection, path: Path) -> None:
 
 def _is_readable(file: Path) -> bool:
     ending = file.suffix.lower()
-    return ending in WORKBOOKS or (ending in TEXT_TABLES and layout_of(file.stem) is not None)
+    return ending in (*WORKBOOKS, *AGS_FILES) or (ending in TEXT_TABLES and layout_of(file.stem) is not None)
 
 
 def _read_file(collection: Collection, path: Path) -> None:
@@ -95,6 +97,8 @@ def _read_file(collection: Collection, path: Path) -> None:
     layout = layout_of(path.stem)
     if ending in WORKBOOKS:
         read_workbook(collection, path, file)
+    elif ending in AGS_FILES:
+        read_ags(collection, path, file)
     elif ending not in TEXT_TABLES:
         collection.unreadable(
             file, "this is not a CSV file, a workbook or an AGS file", "give .csv, .xlsx or .ags"

@@ -34,8 +34,9 @@ def check_relations(collection: Collection) -> None:
     for child, parent in _PARENTS:
         _orphans(collection, child, parent)
     _readings_without_increment(collection)
-    for name in (*SPECIMENS, *PROFILES):
-        _below_the_hole(collection, collection.tables[name])
+    for name in (*SPECIMENS, *PROFILES, "plasticity"):
+        _below_the_hole(collection, collection.tables[name], "depth")
+    _below_the_hole(collection, collection.tables["strata"], "top")
 
 
 def _keys(table: Table) -> list[IntArray]:
@@ -160,7 +161,7 @@ def _readings_without_increment(collection: Collection) -> None:
         )
 
 
-def _below_the_hole(collection: Collection, table: Table) -> None:
+def _below_the_hole(collection: Collection, table: Table, name: str) -> None:
     holes = collection.tables["holes"]
     if not len(holes):
         return
@@ -169,7 +170,7 @@ def _below_the_hole(collection: Collection, table: Table) -> None:
         zip(holes.codes("hole")[kept].tolist(), holes.numbers("final depth")[kept].tolist(), strict=True)
     )
     told: set[int] = set()
-    codes, depths = table.codes("hole").tolist(), table.numbers("depth").tolist()
+    codes, depths = table.codes("hole").tolist(), table.numbers(name).tolist()
     for row in table.kept().tolist():
         end = final.get(codes[row])
         if end is None:
@@ -189,8 +190,8 @@ def _below_the_hole(collection: Collection, table: Table) -> None:
             collection.fault(
                 table.fault(
                     row,
-                    "depth",
-                    f"the depth is below the hole, which ends at {end:g} m",
+                    name,
+                    f"the {name} is below the hole, which ends at {end:g} m",
                     allowed="a depth within the hole",
                     hint="mend the depth, or the final depth in the table holes",
                 )

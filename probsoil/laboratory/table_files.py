@@ -29,6 +29,7 @@ def read_rows(
         Place of each row, counted from 1, and its cells.
     """
     reader: RowReader | None = None
+    headings: dict[str, Heading] = {}
     for row, cells in rows:
         if _is_idle(cells):
             continue
@@ -38,11 +39,12 @@ def read_rows(
                 collection.tables[layout.name].whole = False
                 return
             reader = RowReader(collection, collection.tables[layout.name], source)
+            headings = source.headings
             continue
         try:
-            reader.take(row, cells)
-        except TooManyRowsError:
-            collection.fault(full_table(file, row, layout))
+            reader.take(row, {name: (_cell(cells, under), under) for name, under in headings.items()})
+        except TooManyRowsError as full:
+            collection.fault(full_table(file, full))
             return
     if reader is None:
         collection.fault(
@@ -51,17 +53,15 @@ def read_rows(
         collection.tables[layout.name].whole = False
 
 
-def full_table(file: str, row: int, layout: TableLayout) -> Fault:
+def full_table(file: str, full: TooManyRowsError) -> Fault:
     """Return the mistake of a table with more rows than one site can have.
 
     Parameters
     ----------
     file : str
         As the user named it.
-    row : int, [-]
-        First row that was not read.
-    layout : TableLayout
-        Which table it is.
+    full : TooManyRowsError
+        Which table, and from which row on.
 
     Returns
     -------
@@ -70,11 +70,16 @@ def full_table(file: str, row: int, layout: TableLayout) -> Fault:
     """
     return Fault(
         file=file,
-        line=row,
-        message=f"the table {layout.name} has more rows than can be read; what follows was not looked at",
+        line=full.row,
+        message=f"the table {full.layout.name} has too many rows; what follows was not looked at",
         allowed=f"up to {GREATEST_ROWS:,d} rows of a kind in one reading",
         hint="give the files of one site only, or thin the readings",
     )
+
+
+def _cell(cells: Sequence[Cell], heading: Heading) -> Cell:
+    cell = cells[heading.position - 1] if heading.position <= len(cells) else None
+    return cell.strip() if isinstance(cell, str) else cell
 
 
 def _is_idle(cells: Sequence[Cell]) -> bool:

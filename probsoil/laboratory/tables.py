@@ -20,7 +20,20 @@ EMPTY = 0  # the number of the empty name
 
 
 class TooManyRowsError(Exception):
-    """A table is full."""
+    """A table is full.
+
+    Attributes
+    ----------
+    row : int, [-]
+        First row that found no place.
+    layout : TableLayout
+        Of the table.
+    """
+
+    def __init__(self, row: int, layout: TableLayout) -> None:
+        super().__init__(f"{layout.name} is full at row {row}")
+        self.row = row
+        self.layout = layout
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -133,7 +146,7 @@ class Table:
             If the table is full.
         """
         if len(self._row) >= GREATEST_ROWS:
-            raise TooManyRowsError
+            raise TooManyRowsError(row, self.layout)
         for name, stored in self._cells.items():
             cell = cells.get(name, "" if stored.typecode == "l" else np.nan)
             stored.append(self._names.number(cell) if isinstance(cell, str) else cell)  # type: ignore[arg-type]
