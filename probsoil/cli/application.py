@@ -21,6 +21,7 @@ from probsoil.cli.new import new
 from probsoil.cli.report import report
 from probsoil.cli.schema import schema
 from probsoil.cli.sheet import sheet
+from probsoil.cli.template import template
 from probsoil.errors import FaultyInputError, ParameterError, ProbsoilError, StoppedEarly, UnfitFolderError
 
 DONE, FAILED, MISTAKE, STOPPED = 0, 1, 2, 3
@@ -35,7 +36,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
     context_settings={"help_option_names": ["-h", "--help"]},
 )
-for command in (new, check, sheet, assess, report, schema):
+for command in (new, check, sheet, assess, report, schema, template):
     app.command()(command)
 
 

@@ -22,6 +22,8 @@ class Column:
         Kind of quantity, or ``text`` or ``whole number``.
     unit : str
         Unit of the number in a sheet (`probsoil.laboratory.sheets`); empty where there is none.
+    usual : str
+        Unit a template asks for; that of the sheet where empty.
     bare : bool
         Whether the heading may do without a unit.
     required : bool
@@ -41,6 +43,7 @@ class Column:
     meaning: str
     kind: CellKind
     unit: str = ""
+    usual: str = ""
     bare: bool = False
     required: bool = True
     positive: bool = False
@@ -57,7 +60,7 @@ class Column:
     @property
     def heading(self) -> str:
         """Heading as a template writes it."""
-        return f"{self.name} ({self.unit})" if self.unit and not self.bare else self.name
+        return f"{self.name} ({self.usual or self.unit})" if self.unit and not self.bare else self.name
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

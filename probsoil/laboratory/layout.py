@@ -25,7 +25,7 @@ _INCREMENT = Column(
 )
 
 
-def _pressure(name: str, meaning: str, typical: tuple[float, float], **more: bool | float) -> Column:
+def _pressure(name: str, meaning: str, typical: tuple[float, float], **more: bool | float | str) -> Column:
     return Column(name=name, meaning=meaning, kind="pressure", unit="kPa", typical=typical, **more)  # type: ignore[arg-type]
 
 
@@ -35,6 +35,7 @@ def _strain(name: str, meaning: str, *, required: bool) -> Column:
         meaning=meaning,
         kind="number",
         unit="-",
+        usual="%",
         required=required,
         low=-0.6,
         high=0.6,
@@ -293,7 +294,7 @@ _FIELD = (
             _HOLE,
             _PROFILE,
             _DEPTH,
-            _pressure("cone resistance", "as measured, q_c", (100.0, 1e5), low=0.0),
+            _pressure("cone resistance", "as measured, q_c", (100.0, 1e5), low=0.0, usual="MPa"),
             _pressure("sleeve friction", "f_s", (0.0, 1e4), required=False),
             _pressure("pore pressure", "behind the cone, u_2", (0.0, 1e4), required=False),
             Column(

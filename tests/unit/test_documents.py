@@ -53,7 +53,7 @@ def test_readme_commands_name_demos_that_exist() -> None:
     assert commands[1].endswith("pytest")
 
 
-@pytest.mark.parametrize("path", sorted((ROOT / "scenarios").glob("*.toml")), ids=lambda path: path.stem)
+@pytest.mark.parametrize("path", sorted((ROOT / "scenarios").rglob("*.toml")), ids=lambda path: path.stem)
 def test_every_scenario_of_the_repository_is_sound(path: Path) -> None:
     assert read_scenario(path).limits
 
