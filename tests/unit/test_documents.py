@@ -53,7 +53,7 @@ def test_readme_commands_name_demos_that_exist() -> None:
     assert "&& .venv/bin/pytest" in commands[1]
 
 
-@pytest.mark.parametrize("path", sorted((ROOT / "scenarios").glob("*.toml")), ids=lambda path: path.stem)
+@pytest.mark.parametrize("path", sorted((ROOT / "scenarios").rglob("*.toml")), ids=lambda path: path.stem)
 def test_every_scenario_of_the_repository_is_sound(path: Path) -> None:
     assert read_scenario(path).limits
 
@@ -65,13 +65,13 @@ def test_change_log_is_headed_by_what_is_not_released() -> None:
 
 def test_dependencies_the_program_imports_are_declared() -> None:
     declared = tomllib.loads(page("pyproject.toml"))["project"]["dependencies"]
-    names = {re.split(r"[<>=!~ ]", entry)[0] for entry in declared}
+    names = {re.split(r"[<>=!~ ]", entry)[0].replace("-", "_") for entry in declared}
     imported = {
         found
         for path in (ROOT / "probsoil").rglob("*.py")
         for found in re.findall(r"^\s*(?:from|import) (\w+)", path.read_text(encoding="utf-8"), re.MULTILINE)
     }
     others = {"numpy", "scipy", "pandas", "matplotlib", "numba", "pydantic", "pint", "typer", "rich"}
-    others |= {"jinja2"}
+    others |= {"jinja2", "python_calamine"}
     assert names == others
     assert others <= imported
