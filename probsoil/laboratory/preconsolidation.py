@@ -7,10 +7,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.laboratory.compression_curve import TwoBranchFit
-from probsoil.laboratory.regression import Estimate, mean_of_methods
-
-METHOD_SPREAD = 0.06
-"""Standard deviation between methods expected beforehand, as ln stress [-]; a judgement."""
+from probsoil.laboratory.regression import Estimate, widened
 
 _SHEET_SHAPE = 1.5  # width over height of the sheet of paper that the curve is drawn on
 _N_CURVE = 801
@@ -231,23 +228,63 @@ def _crossing(before: FloatArray, after: FloatArray) -> float | None:
     return float((after[0] - before[0]) / (before[1] - after[1]))
 
 
-def preconsolidation_stress(fit: TwoBranchFit, constructions: tuple[Construction, ...]) -> Estimate:
+def constructions(
+    stress: FloatArray, void_ratio: FloatArray, initial_void_ratio: float
+) -> tuple[Construction, ...]:
+    """Make every construction.
+
+    Parameters
+    ----------
+    stress : ndarray, shape (n,), [kPa]
+        Of first loading, rising.
+    void_ratio : ndarray, shape (n,), [-]
+        At the end of each increment.
+    initial_void_ratio : float, [-]
+        Before loading.
+
+    Returns
+    -------
+    constructions : tuple of Construction
+        Casagrande, work and log-log.
+    """
+    return (
+        casagrande(stress, void_ratio),
+        work(stress, void_ratio, initial_void_ratio),
+        log_log(stress, void_ratio),
+    )
+
+
+def preconsolidation_stress(
+    fit: TwoBranchFit, found: tuple[Construction, ...], stress: FloatArray, initial_void_ratio: float
+) -> Estimate:
     """Return one preconsolidation stress from the fit and the constructions.
 
     Parameters
     ----------
     fit : TwoBranchFit
         Two branches by least squares.
-    constructions : tuple of Construction
+    found : tuple of Construction
         Others; those without a value are left aside.
+    stress : ndarray, shape (n,), [kPa]
+        Of first loading, rising.
+    initial_void_ratio : float, [-]
+        Before loading.
 
     Returns
     -------
     estimate : Estimate, [kPa]
-        Geometric mean of all methods. The error joins that of the fit, which the readings give and all
-        methods share, with that of a mean of methods that differ by their nature.
+        Where the two branches meet: geometric mean of all methods, each first rid of what it is known to
+        miss by on the fitted curve with the same increments. The error joins that of the fit, which the
+        readings give and all methods share, with that of the mean of methods that still differ.
     """
-    found = [np.log(one.stress) for one in constructions if one.stress is not None]
-    middle, between = mean_of_methods(np.array([fit.ln_break.value, *found]), METHOD_SPREAD)
-    value = float(np.exp(middle))
+    smooth = constructions(stress, fit.void_ratio(stress), initial_void_ratio)
+    logs = [fit.ln_break.value] + [
+        np.log(one.stress) - np.log(known.stress) + fit.ln_break.value
+        for one, known in zip(found, smooth, strict=True)
+        if one.stress is not None and known.stress is not None
+    ]
+    between = 0.0
+    if len(logs) > 1:
+        between = widened(float(np.std(logs, ddof=1)) / len(logs) ** 0.5, len(logs) - 1.0)
+    value = float(np.exp(np.mean(logs)))
     return Estimate(value=value, standard_error=value * float(np.hypot(fit.ln_break.standard_error, between)))

@@ -171,20 +171,20 @@ def line(abscissa: FloatArray, reading: FloatArray, expected_scatter: float) -> 
     return regression(np.stack([np.ones_like(abscissa), abscissa], axis=1), reading, expected_scatter)
 
 
-def mean_of_methods(values: FloatArray, expected_spread: float) -> tuple[float, float]:
-    """Return the mean of what several methods make of the same readings, and the error of their nature.
+def pooled(values: FloatArray, expected_spread: float) -> tuple[float, float]:
+    """Return the mean of several results and its standard error by the spread between them.
 
     Parameters
     ----------
     values : ndarray, shape (n,), [any]
-        One per method.
+        Results.
     expected_spread : float, [unit of the values]
-        Standard deviation between methods expected beforehand; counts as `PRIOR_READINGS` methods.
+        Standard deviation between them expected beforehand; counts as `PRIOR_READINGS` results.
 
     Returns
     -------
     mean, error : float, [unit of the values]
-        The mean, and its standard error as one of n methods out of many.
+        The mean, and its standard error.
     """
     mean = float(values.mean())
     freedom = values.size - 1.0 + PRIOR_READINGS

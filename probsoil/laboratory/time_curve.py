@@ -6,14 +6,14 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import FloatArray
-from probsoil.laboratory.regression import PRIOR_READINGS, Estimate, mean_of_methods, widened
+from probsoil.laboratory.regression import PRIOR_READINGS, Estimate, widened
 from probsoil.laboratory.sheets import TimeReadings
 
 DIAL_SCATTER = 0.002
 """Standard deviation of a dial reading expected beforehand [mm]; a judgement."""
 
-METHOD_SPREAD = 0.15
-"""Standard deviation of ln cv between methods expected beforehand [-]; a judgement."""
+UNSTEADY = 0.15
+"""Error of ln cv where a construction hangs on one reading [-]; a judgement."""
 
 LOG_TIME_FACTOR, ROOT_TIME_FACTOR, ROOT_TIME_SLOPE = 0.197, 0.848, 1.155
 """Time factors at 50 and 90 % and the flatter line of the root-time method [-]."""
@@ -92,7 +92,7 @@ class TimeCurve:
     cv_log_time, cv_root_time : Estimate or None, [m2/year]
         Of each construction, by the scatter of the readings alone.
     cv : Estimate or None, [m2/year]
-        Geometric mean of both, the difference between them in its error.
+        Geometric mean of both; its error joins the scatter of the readings with half the difference.
     creep : Estimate or None, [mm]
         Compression per tenfold time in the tail.
     remarks : tuple of str
@@ -314,7 +314,7 @@ def _estimated(
     covariance = moved.T @ moved
     apart = [widened(float(np.sqrt(one)), freedom) for one in np.diag(covariance)]
     each = dict(zip((one[1] for one in methods), zip(middle, apart, strict=True), strict=True))
-    mean, nature = mean_of_methods(middle, METHOD_SPREAD)
+    mean, nature = float(middle.mean()), 0.5 * float(np.ptp(middle))
     common = widened(float(np.sqrt(covariance.mean())), freedom)
     return TimeCurve(
         path=path,
@@ -346,7 +346,7 @@ def _moved(
         try:
             moved.append(0.5 * (logs(compression + off) - logs(compression - off)))
         except _Unfit:  # the construction hangs on this reading alone
-            moved.append(np.full(logs(compression).shape, METHOD_SPREAD))
+            moved.append(np.full(logs(compression).shape, UNSTEADY))
     return np.array(moved)
 
 
