@@ -52,6 +52,24 @@ class GroundColumn:
         """
         return next((name for name, top, bottom in self.layers if top <= depth < bottom), "")
 
+    def stress_at(self, depth: float) -> float | None:
+        """Return the effective vertical stress in situ where it is known and above zero.
+
+        Parameters
+        ----------
+        depth : float, [m]
+            Below ground level.
+
+        Returns
+        -------
+        stress : float or None, [kPa]
+            None below the last layer, above ground, and where water carries all the weight.
+        """
+        if depth <= 0.0 or (self.layers and not self.layer_at(depth)):
+            return None
+        stress = self.effective_stress(depth)
+        return stress if stress > 0.0 else None
+
 
 def scenario_column(scenario: "Scenario") -> GroundColumn:
     """Return the ground of a scenario, everything at its mean.

@@ -151,7 +151,8 @@ def interpreted_oedometer(sheet: OedometerSheet, in_situ_stress: float | None = 
     result : OedometerResult
         What can be read off it; a remark for what cannot.
     """
-    found = branches(sheet.stress)
+    readable = np.isfinite(sheet.stress) & np.isfinite(sheet.void_ratio)
+    found = branches(np.where(readable, sheet.stress, 0.0))
     stress, void_ratio = sheet.stress[found.first], sheet.void_ratio[found.first]
     fitted = two_branch_fit(stress, void_ratio, expected_scatter(sheet))
     remarks = []
