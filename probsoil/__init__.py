@@ -26,6 +26,7 @@ if TYPE_CHECKING:
         StoppedEarly,
         UnfitFolderError,
     )
+    from probsoil.laboratory.interpretation import Interpretation, interpret
     from probsoil.scenario import Scenario
     from probsoil.scenario import read_scenario as read
 
@@ -35,6 +36,7 @@ __all__ = [
     "Assessment",
     "ConvergenceError",
     "DependenceError",
+    "Interpretation",
     "ParameterError",
     "ProbsoilError",
     "ResultsError",
@@ -46,6 +48,7 @@ __all__ = [
     "UnfitFolderError",
     "__version__",
     "assess",
+    "interpret",
     "read",
     "sheet",
 ]
@@ -53,7 +56,9 @@ __all__ = [
 _HOMES = {
     "Assessment": "assessment",
     "Sheet": "assessment",
+    "Interpretation": "laboratory.interpretation",
     "assess": "assessment",
+    "interpret": "laboratory.interpretation",
     "sheet": "assessment",
     "Scenario": "scenario",
     "read": "scenario",

@@ -17,6 +17,7 @@ from typer.main import get_command
 from probsoil.cli._output import answering
 from probsoil.cli.assess import assess
 from probsoil.cli.check import check
+from probsoil.cli.interpret import interpret
 from probsoil.cli.new import new
 from probsoil.cli.report import report
 from probsoil.cli.schema import schema
@@ -36,7 +37,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
     context_settings={"help_option_names": ["-h", "--help"]},
 )
-for command in (new, check, sheet, assess, report, schema, template):
+for command in (new, check, sheet, assess, interpret, report, schema, template):
     app.command()(command)
 
 

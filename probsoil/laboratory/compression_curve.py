@@ -4,7 +4,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import FloatArray, IntArray
 from probsoil.laboratory.regression import (
     PRIOR_READINGS,
     Estimate,
@@ -39,9 +39,9 @@ class Branches:
         Last unloading, its start included; empty where there is none.
     """
 
-    first: FloatArray
-    loops: tuple[FloatArray, ...]
-    rebound: FloatArray
+    first: IntArray
+    loops: tuple[IntArray, ...]
+    rebound: IntArray
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -135,7 +135,7 @@ def branches(stress: FloatArray) -> Branches:
     )
 
 
-def _legs(stress: FloatArray, run: FloatArray) -> tuple[FloatArray, FloatArray | None]:
+def _legs(stress: FloatArray, run: IntArray) -> tuple[IntArray, IntArray | None]:
     """Split a run that starts at its largest stress into unloading and, if it turns, reloading."""
     lowest = int(np.argmin(stress[run]))
     back = run[lowest + 1 :]
@@ -144,7 +144,7 @@ def _legs(stress: FloatArray, run: FloatArray) -> tuple[FloatArray, FloatArray |
     return run[: lowest + 1], back[stress[back] <= _RELOADED * stress[run[0]]]
 
 
-def legs_slope(sheet: OedometerSheet, legs: tuple[FloatArray, ...]) -> Regression:
+def legs_slope(sheet: OedometerSheet, legs: tuple[IntArray, ...]) -> Regression:
     """Return the slope that legs of unloading and reloading share, each at its own level.
 
     Parameters
@@ -244,8 +244,8 @@ def _refusal(x: FloatArray, void_ratio: FloatArray, white: FloatArray, variance:
     return (
         ""
         if gain > _LEAST_GAIN
-        else "one straight line fits as well as two branches: no virgin branch reached, no branch before yield, "
-        "or a specimen too disturbed to tell them"
+        else "one straight line fits as well as two branches: no virgin branch reached, no branch before "
+        "yield, or a specimen too disturbed to tell them"
     )
 
 

@@ -1,4 +1,4 @@
-"""Interpretation of cone soundings: net resistance, averaged by layer; strength and preconsolidation shown."""
+"""Interpretation of cone soundings: net resistance by layer; strength and preconsolidation stress shown."""
 
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
@@ -210,7 +210,9 @@ def interpreted_cone(sheet: ConeSheet, column: GroundColumn | None) -> ConeResul
         remarks.append(f"q_net: no layer with {_LEAST_READINGS} readings or more")
     negative = [one.layer or f"{one.top:g} m" for one in averages if one.net_resistance <= 0.0]
     if negative:
-        remarks.append(f"q_net: not above zero in {', '.join(negative)}; unit weight or zero reading is wrong")
+        remarks.append(
+            f"q_net: not above zero in {', '.join(negative)}; unit weight or zero reading is wrong"
+        )
         averages = [one for one in averages if one.net_resistance > 0.0]
     return ConeResult(
         sheet=sheet,
@@ -225,7 +227,9 @@ def _slices(depth: FloatArray, column: GroundColumn) -> list[tuple[str, float, f
     edge = 0.2
     if column.layers:
         return [
-            (name, top + edge, bottom - edge) for name, top, bottom in column.layers if bottom - top > 3.0 * edge
+            (name, top + edge, bottom - edge)
+            for name, top, bottom in column.layers
+            if bottom - top > 3.0 * edge
         ]
     first, last = np.floor(depth[0] / SLICE) * SLICE, depth[-1]
     return [("", float(top), float(top + SLICE)) for top in np.arange(first, last, SLICE)]

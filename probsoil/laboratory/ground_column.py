@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from probsoil.errors import ParameterError
+from probsoil.scenario.layers import GranularLayer
 from probsoil.scenario.mean_column import (
     WATER_UNIT_WEIGHT,
     mean_column,
@@ -30,12 +31,15 @@ class GroundColumn:
         Of a depth [m], the effective vertical stress [kPa].
     source : str
         Where both come from, in words.
+    granular : tuple of str
+        Names of the layers that are no clay.
     """
 
     layers: tuple[tuple[str, float, float], ...]
     total_stress: Callable[[float], float]
     effective_stress: Callable[[float], float]
     source: str
+    granular: tuple[str, ...] = ()
 
     def layer_at(self, depth: float) -> str:
         """Return the layer at a depth.
@@ -103,12 +107,11 @@ def scenario_column(scenario: "Scenario") -> GroundColumn:
         return mean_total_stress(scenario, column, *place(depth))
 
     return GroundColumn(
-        layers=tuple(
-            (layer.name, tops[k], tops[k + 1]) for k, layer in enumerate(scenario.layers)
-        ),
+        layers=tuple((layer.name, tops[k], tops[k + 1]) for k, layer in enumerate(scenario.layers)),
         total_stress=total,
         effective_stress=effective,
         source="the layers of the scenario, everything at its mean",
+        granular=tuple(layer.name for layer in scenario.layers if isinstance(layer, GranularLayer)),
     )
 
 
@@ -133,7 +136,9 @@ def assumed_column(unit_weight: float, water_table: float) -> GroundColumn:
         If the unit weight is no more than that of water or above 25, or the water table above ground level.
     """
     if not WATER_UNIT_WEIGHT < unit_weight <= 25.0:
-        raise ParameterError(f"unit weight of the ground must lie between 9.81 and 25 kN/m3, got {unit_weight:g}")
+        raise ParameterError(
+            f"unit weight of the ground must lie between 9.81 and 25 kN/m3, got {unit_weight:g}"
+        )
     if not 0.0 <= water_table <= 100.0:
         raise ParameterError(f"the water table must lie 0 to 100 m below ground level, got {water_table:g}")
     return GroundColumn(

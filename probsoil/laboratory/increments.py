@@ -6,7 +6,7 @@ import numpy as np
 
 from probsoil.laboratory.compression_curve import Branches
 from probsoil.laboratory.regression import Estimate, line, pooled
-from probsoil.laboratory.sheets import OedometerSheet
+from probsoil.laboratory.sheets import OedometerSheet, TimeReadings
 from probsoil.laboratory.time_curve import TimeCurve, time_curve
 from probsoil.scenario.mean_column import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 
@@ -100,18 +100,15 @@ def increments(sheet: OedometerSheet, found: Branches, virgin_from: float | None
         readings = sheet.time_readings[place] if sheet.time_readings else None
         if readings is None:
             continue
-        before = sheet.void_ratio[place - 1] if place else sheet.initial_void_ratio
-        known = sheet.stress[place - 1] if place else 0.0
-        made.append(_increment(sheet, place, (float(before), float(known)), virgin_from))
+        made.append(_increment(sheet, place, readings, virgin_from))
     return tuple(made)
 
 
 def _increment(
-    sheet: OedometerSheet, place: int, before: tuple[float, float], virgin_from: float | None
+    sheet: OedometerSheet, place: int, readings: TimeReadings, virgin_from: float | None
 ) -> Increment:
-    readings = sheet.time_readings[place]
-    assert readings is not None  # noqa: S101 - chosen by the caller
-    start, from_stress = before
+    start = float(sheet.void_ratio[place - 1] if place else sheet.initial_void_ratio)
+    from_stress = float(sheet.stress[place - 1] if place else 0.0)
     end, to_stress = float(sheet.void_ratio[place]), float(sheet.stress[place])
     middle = 0.5 * (start + end)
     solids = sheet.initial_height / (1.0 + sheet.initial_void_ratio)
@@ -136,9 +133,7 @@ def _increment(
     )
 
 
-def time_answers(
-    sheet: OedometerSheet, made: tuple[Increment, ...], lam: Estimate | None
-) -> TimeAnswers:
+def time_answers(sheet: OedometerSheet, made: tuple[Increment, ...], lam: Estimate | None) -> TimeAnswers:
     """Return what the virgin increments give together.
 
     Parameters
@@ -201,7 +196,10 @@ def _permeability(
 def _creep_ratio(virgin: list[Increment], lam: Estimate | None) -> tuple[Estimate | None, str]:
     crept = [one.creep_index for one in virgin if one.creep_index is not None]
     if not crept or lam is None:
-        return None, "C_alpha: no tail that goes on compressing" if not crept else "C_alpha/Cc: lambda not known"
+        return (
+            None,
+            "C_alpha: no tail that goes on compressing" if not crept else "C_alpha/Cc: lambda not known",
+        )
     cc = lam.value * float(np.log(10.0))
     mean, between = pooled(np.array([one.value for one in crept]) / cc, _RATIO_SPREAD)
     own = float(np.sqrt(np.mean([one.standard_error**2 for one in crept]) / len(crept))) / cc

@@ -32,7 +32,8 @@ if TYPE_CHECKING:
     from probsoil.scenario import Scenario
 
 Sheet = OedometerSheet | TriaxialSheet | VaneSheet | ConeSheet
-_FAILURES = ("stress ratio", "peak deviator")
+Result = OedometerResult | TriaxialResult | VaneResult | ConeResult
+_FAILURES: tuple[FailureBy, ...] = ("stress ratio", "peak deviator")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -211,12 +212,14 @@ def interpreted_site(
     cones = tuple(interpreted_cone(one, column) for one in sheets.cones)
     layers = _by_layer(oedometers, triaxials, column)
     ratios = tuple(_ratio(name, *tests, column) for name, tests in layers.items() if tests[1])
+    results: list[Result] = [*oedometers, *triaxials, *vanes, *cones]
     singles = [
         replace(row, layer=row.layer or layer_of(row.depth, one.sheet.place, column))
-        for one in (*oedometers, *triaxials, *vanes, *cones)
+        for one in results
         for row in one.observations()
     ]
     singles += [row for ratio in ratios for row in _ratio_rows(ratio, triaxials)]
+    of_clay, aside = _of_clay(singles, column)
     return Interpretation(
         column=column,
         choices=said,
@@ -226,8 +229,8 @@ def interpreted_site(
         cones=cones,
         friction=_friction(layers),
         strength_ratios=ratios,
-        observations=flagged(_told_where(singles, column)),
-        remarks=(*sheets.remarks, *_remarks((*oedometers, *triaxials, *vanes, *cones), ratios)),
+        observations=flagged(_told_where(of_clay, column)),
+        remarks=(*sheets.remarks, *_remarks(results, ratios), *aside),
     )
 
 
@@ -271,7 +274,8 @@ def _by_layer(
 ) -> dict[str, _Tests]:
     """Sort specimens by layer, or by the name their file gives the ground where layers are not known."""
     found: dict[str, _Tests] = {}
-    for one in (*oedometers, *triaxials):
+    specimens: list[OedometerResult | TriaxialResult] = [*oedometers, *triaxials]
+    for one in specimens:
         place = one.sheet.place
         name = place.stratum or "" if column is None else layer_of(place.depth, place, column)
         tests = found.setdefault(name, ([], []))
@@ -285,14 +289,14 @@ def _by_layer(
 def _friction(layers: dict[str, _Tests]) -> tuple[PooledFriction, ...]:
     pooled = []
     for name, (_, triaxials) in layers.items():
-        for failure in ("stress ratio", "peak deviator"):
-            found = pooled_slope(tuple(triaxials), failure)  # type: ignore[arg-type]
+        for failure in _FAILURES:
+            found = pooled_slope(tuple(triaxials), failure)
             if found is not None:
                 number = sum(one.slope(one.greatest_ratio) is not None for one in triaxials)
                 pooled.append(
                     PooledFriction(
                         layer=name,
-                        failure=failure,  # type: ignore[arg-type]
+                        failure=failure,
                         tests=number,
                         slope=found[0],
                         scatter=found[1],
@@ -341,6 +345,20 @@ def _ratio_rows(ratio: StrengthRatio, triaxials: Sequence[TriaxialResult]) -> li
     return rows
 
 
+def _of_clay(rows: list[Observation], column: GroundColumn | None) -> tuple[list[Observation], list[str]]:
+    """Leave out of the evidence what was observed in ground that the models have no such number for."""
+    granular = () if column is None else column.granular
+    counts: dict[tuple[str, str], int] = {}
+    for one in rows:
+        if one.layer in granular:
+            counts[one.test, one.layer] = counts.get((one.test, one.layer), 0) + 1
+    remarks = [
+        f"{test}: what it gave in {layer}, which is no clay, is shown but is no evidence (rows: {count})"
+        for (test, layer), count in counts.items()
+    ]
+    return [one for one in rows if one.layer not in granular], remarks
+
+
 def _told_where(rows: list[Observation], column: GroundColumn | None) -> list[Observation]:
     """Flag numbers from where the scenario has no layer."""
     if column is None or not column.layers:
@@ -353,13 +371,9 @@ def _told_where(rows: list[Observation], column: GroundColumn | None) -> list[Ob
 
 
 def _remarks(
-    results: Sequence[OedometerResult | TriaxialResult | VaneResult | ConeResult],
+    results: Sequence[Result],
     ratios: Sequence[StrengthRatio],
 ) -> list[str]:
-    told = [
-        f"{one.sheet.origin}: {one.sheet.test}: {words}" for one in results for words in one.remarks
-    ]
-    told += [
-        f"{ratio.layer or 'triaxial tests'}: {words}" for ratio in ratios for words in ratio.remarks
-    ]
+    told = [f"{one.sheet.origin}: {one.sheet.test}: {words}" for one in results for words in one.remarks]
+    told += [f"{ratio.layer or 'triaxial tests'}: {words}" for ratio in ratios for words in ratio.remarks]
     return told

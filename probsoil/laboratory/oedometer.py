@@ -5,8 +5,14 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from probsoil.laboratory.compression_curve import Branches, TwoBranchFit, branches, expected_scatter
-from probsoil.laboratory.compression_curve import legs_slope, two_branch_fit
+from probsoil.laboratory.compression_curve import (
+    Branches,
+    TwoBranchFit,
+    branches,
+    expected_scatter,
+    legs_slope,
+    two_branch_fit,
+)
 from probsoil.laboratory.disturbance import Disturbance, disturbance
 from probsoil.laboratory.increments import Increment, TimeAnswers, increments, time_answers
 from probsoil.laboratory.observations import Observation, observation
@@ -170,7 +176,9 @@ def interpreted_oedometer(sheet: OedometerSheet, in_situ_stress: float | None = 
     made = increments(sheet, found, None if yielding is None else yielding.value)
     time = time_answers(sheet, made, None if fit is None else fit.lam)
     remarks += [
-        f"{one.from_stress:g} to {one.to_stress:g} kPa, {words}" for one in made for words in one.curve.remarks
+        f"{one.from_stress:g} to {one.to_stress:g} kPa, {words}"
+        for one in made
+        for words in one.curve.remarks
     ]
     return OedometerResult(
         sheet=sheet,
@@ -198,7 +206,9 @@ def _unloading(sheet: OedometerSheet, found: Branches) -> tuple[Estimate | None,
             estimate = None
         estimates.append(estimate)
     if not found.loops and not found.rebound.size:
-        remarks.append("kappa: the test has no unloading; only the initial branch gives it, if it can be fitted")
+        remarks.append(
+            "kappa: the test has no unloading; only the initial branch gives it, if it can be fitted"
+        )
     return estimates[0], estimates[1], remarks
 
 

@@ -1,4 +1,4 @@
-"""Observed numbers that stand apart from the others of their layer: flagged with the reason, never left out."""
+"""Observed numbers that stand apart from the others of their layer: flagged with the reason, not left out."""
 
 from collections.abc import Sequence
 from dataclasses import replace
@@ -57,7 +57,8 @@ def flagged(observations: Sequence[Observation]) -> tuple[Observation, ...]:
             if abs(distance) > GREATEST_SCORE * scatter:
                 words = (
                     f"stands apart: {np.exp(distance):.2f} times what is usual "
-                    f"{f'in {layer}' if layer else 'among the tests'} (robust score {abs(distance) / scatter:.1f})"
+                    f"{f'in {layer}' if layer else 'among the tests'} "
+                    f"(robust score {abs(distance) / scatter:.1f})"
                 )
                 joined = "; ".join(part for part in (rows[place].flag, words) if part)
                 rows[place] = replace(rows[place], flag=joined)

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import BoolArray, FloatArray
 from probsoil.laboratory.compression_curve import TwoBranchFit
 from probsoil.laboratory.regression import Estimate, widened
 
@@ -83,9 +83,7 @@ def casagrande(stress: FloatArray, void_ratio: FloatArray) -> Construction:
     top = int(np.argmax(curvature))
 
     def on_paper(at: FloatArray, height: FloatArray) -> FloatArray:
-        return np.stack(
-            [10.0 ** (x[0] + at * wide / _SHEET_SHAPE), void_ratio.min() + height * high], axis=1
-        )
+        return np.stack([10.0 ** (x[0] + at * wide / _SHEET_SHAPE), void_ratio.min() + height * high], axis=1)
 
     def unfinished(reason: str) -> Construction:
         return Construction(method="Casagrande", stress=None, reason=reason, points=points, axes=axes)
@@ -180,11 +178,11 @@ def _two_lines(
     axes: tuple[str, str],
     to_stress: Callable[[float], float],
 ) -> Construction:
-    """Fit two lines to readings split where the sum of squares is least, the bend left out, and cross them."""
+    """Fit two lines to readings split where squares sum up to least, the bend left out; cross them."""
     x, y, _ = columns
     points = np.stack([x, y], axis=1)
     splits = [_split(columns, np.arange(x.size) < k, np.arange(x.size) >= k) for k in range(2, x.size - 1)]
-    left, before, after = min(splits, key=lambda one: one[0])
+    _, before, after = min(splits, key=lambda one: one[0])
     meeting = _crossing(before, after)
     stress = np.array([to_stress(float(one)) for one in x])
     if meeting is not None:
@@ -209,14 +207,14 @@ def _two_lines(
 
 
 def _split(
-    columns: tuple[FloatArray, FloatArray, FloatArray], low: FloatArray, high: FloatArray
+    columns: tuple[FloatArray, FloatArray, FloatArray], low: BoolArray, high: BoolArray
 ) -> tuple[float, FloatArray, FloatArray]:
     x, y, weight = columns
-    total, fits = 0.0, []
+    total, fits = 0.0, list[FloatArray]()
     for chosen in (low, high):
         design = np.stack([weight[chosen], weight[chosen] * x[chosen]], axis=1)
         target = weight[chosen] * y[chosen]
-        fit = np.linalg.lstsq(design, target, rcond=None)[0]
+        fit = np.asarray(np.linalg.lstsq(design, target, rcond=None)[0], dtype=np.float64)
         total += float(((target - design @ fit) ** 2).sum())
         fits.append(fit)
     return total, fits[0], fits[1]

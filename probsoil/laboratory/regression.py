@@ -8,7 +8,7 @@ from scipy.special import ndtri, stdtrit
 from probsoil._typing import FloatArray
 
 PRIOR_READINGS = 4.0
-"""How many readings the scatter expected beforehand counts for, against the scatter found [-]; a judgement."""
+"""How many readings the scatter expected beforehand counts for [-]; a judgement."""
 
 READING_CORRELATION = 0.3
 """Correlation of the errors of neighbouring readings of one specimen [-]; a judgement."""
@@ -115,7 +115,11 @@ def whitener(n: int, correlation: float = READING_CORRELATION) -> FloatArray:
 
 
 def regression(
-    design: FloatArray, reading: FloatArray, expected_scatter: float, *, correlation: float = READING_CORRELATION
+    design: FloatArray,
+    reading: FloatArray,
+    expected_scatter: float,
+    *,
+    correlation: float = READING_CORRELATION,
 ) -> Regression:
     """Fit a linear law to readings whose scatter is roughly known beforehand.
 

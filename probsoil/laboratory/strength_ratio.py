@@ -90,7 +90,9 @@ def strength_ratio(
     if used and preconsolidation is None:
         remarks.append("su/s'v: no preconsolidation stress known, so overconsolidation ratios are not either")
     if known and preconsolidation is not None:
-        ocr = tuple(max(preconsolidation(one.sheet.place.depth) / one.sheet.axial_stress, 1.0) for one in used)
+        ocr = tuple(
+            max(preconsolidation(one.sheet.place.depth) / one.sheet.axial_stress, 1.0) for one in used
+        )
         ratio, exponent, reason = _fitted(np.array(ocr), np.log(over))
         remarks += [reason] if reason else []
     return StrengthRatio(

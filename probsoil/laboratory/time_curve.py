@@ -131,7 +131,10 @@ def log_time(time: FloatArray, compression: FloatArray) -> LogTime:
     University, Soil Mechanics Series 8. Recalled; not opened.
     """
     log = np.log10(time)
-    threes = np.stack([log[:-2], log[1:-1], log[2:]]), np.stack([compression[k : k + log.size - 2] for k in range(3)])
+    threes = (
+        np.stack([log[:-2], log[1:-1], log[2:]]),
+        np.stack([compression[k : k + log.size - 2] for k in range(3)]),
+    )
     intercept, slope = _line(*threes)
     steepest = int(np.argmax(slope))
     tangent = float(intercept[steepest]), float(slope[steepest])
@@ -323,7 +326,7 @@ def _estimated(
         cv_log_time=_from_logs(each.get(LOG_TIME_FACTOR)),
         cv_root_time=_from_logs(each.get(ROOT_TIME_FACTOR)),
         cv=_from_logs((mean, float(np.hypot(common, nature)))),
-        creep=None if logarithmic is None else _creep(time, compression, logarithmic, scatter, freedom),
+        creep=None if logarithmic is None else _creep(time, logarithmic, scatter, freedom),
         remarks=remarks,
     )
 
@@ -335,9 +338,7 @@ def _from_logs(found: tuple[float, float] | None) -> Estimate | None:
     return Estimate(value=value, standard_error=value * found[1])
 
 
-def _moved(
-    logs: Callable[[FloatArray], FloatArray], compression: FloatArray, scatter: float
-) -> FloatArray:
+def _moved(logs: Callable[[FloatArray], FloatArray], compression: FloatArray, scatter: float) -> FloatArray:
     """Return how far each answer moves when one reading after another is off by the scatter."""
     moved = []
     for place in range(compression.size):
@@ -366,9 +367,7 @@ def _dial_scatter(
     return float(np.sqrt(squares / freedom)), freedom
 
 
-def _creep(
-    time: FloatArray, compression: FloatArray, logarithmic: LogTime, scatter: float, freedom: float
-) -> Estimate | None:
+def _creep(time: FloatArray, logarithmic: LogTime, scatter: float, freedom: float) -> Estimate | None:
     late = np.log10(time[time >= _TAIL * logarithmic.crossing])
     spread = float(((late - late.mean()) ** 2).sum())
     if logarithmic.tail[1] <= 0.0 or spread == 0.0:

@@ -127,9 +127,7 @@ class TriaxialResult:
         if self.peak is None or not self.undrained:
             return None
         value = 0.5 * abs(self.peak.deviator)
-        return Estimate(
-            value=value, standard_error=math.hypot(0.5 * PRESSURE_ERROR, STRENGTH_ERROR * value)
-        )
+        return Estimate(value=value, standard_error=math.hypot(0.5 * PRESSURE_ERROR, STRENGTH_ERROR * value))
 
     @property
     def strength_over_stress(self) -> float | None:
@@ -317,9 +315,7 @@ def pooled_slope(results: tuple[TriaxialResult, ...], failure: FailureBy) -> tup
         M and the coefficient of variation of a test about it; None without a test. The scatter of q is
         taken in proportion to p', so that every test counts the same.
     """
-    slopes = [
-        one.slope(one.greatest_ratio if failure == "stress ratio" else one.peak) for one in results
-    ]
+    slopes = [one.slope(one.greatest_ratio if failure == "stress ratio" else one.peak) for one in results]
     values = np.array([one.value for one in slopes if one is not None])
     if not values.size:
         return None

@@ -71,20 +71,20 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     for key in ("slip", "bearing"):
         if results.get(key):
             words = alttext.stability(results, key)
-            drawn[key] = _render(key, words, partial(plot_factors, failure=key), results[key])
+            drawn[key] = drawn_figure(key, words, partial(plot_factors, failure=key), results[key])
     shown_check = drawn_check(results)
     if shown_check is not None and (results.get("ground") or {}).get("layers"):
         words, data = section_words(shown_check), (shown_check, results["ground"])
-        drawn["section"] = _render("section", words, plot_section, data)
+        drawn["section"] = drawn_figure("section", words, plot_section, data)
     if (results.get("ground") or {}).get("layers"):
-        drawn["ground"] = _render("ground", alttext.ground(results), plot_ground, results["ground"])
+        drawn["ground"] = drawn_figure("ground", alttext.ground(results), plot_ground, results["ground"])
     for number, limit in enumerate(results["limits"], start=1):
         shown = shown_drivers(results, limit["name"])
         if shown:
             name = f"drivers-{number}"
             measure = ranked_by(results, limit["name"])
             draw = partial(plot_drivers, measure=measure)
-            drawn[name] = _render(name, alttext.drivers(limit, shown, measure), draw, shown)
+            drawn[name] = drawn_figure(name, alttext.drivers(limit, shown, measure), draw, shown)
     return drawn
 
 
@@ -92,9 +92,11 @@ def _settlement_figures(results: dict[str, Any]) -> dict[str, str]:
     """Draw settlement through time, and over the stations where there are several."""
     data, drawn = results.get("settlement") or {}, {}
     if data.get("times"):
-        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+        drawn["settlement"] = drawn_figure(
+            "settlement", alttext.settlement(results), plot_settlement, results
+        )
     if len(data.get("stations") or []) > 1:
-        drawn["stations"] = _render("stations", stations_words(results), plot_stations, data)
+        drawn["stations"] = drawn_figure("stations", stations_words(results), plot_stations, data)
     return drawn
 
 
@@ -151,7 +153,25 @@ def _quiet_glyphs() -> Iterator[None]:
         yield
 
 
-def _render(name: str, words: "Words", draw: "Callable[[Figure, Any], None]", data: object) -> str:
+def drawn_figure(name: str, words: "Words", draw: "Callable[[Figure, Any], None]", data: object) -> str:
+    """Draw one figure.
+
+    Parameters
+    ----------
+    name : str
+        Its name, unique on the page.
+    words : Words
+        Title and description for those who cannot see it.
+    draw : callable
+        Draws on an empty figure.
+    data : object
+        What it draws.
+
+    Returns
+    -------
+    svg : str
+        One ``svg`` element.
+    """
     from matplotlib import rc_context
     from matplotlib.figure import Figure
 

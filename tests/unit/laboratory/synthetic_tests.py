@@ -1,4 +1,4 @@
-"""Tests drawn from a known truth: real enough to be hard, and written before any interpretation of them was seen.
+"""Tests drawn from a known truth, fixed before any interpretation of them was seen.
 
 Clay with a rounded yield, a steeper first branch than its loop, hysteresis on reloading, specimen-to-specimen
 scatter that the sheet does not tell of, correlated from one increment to the next, and rounded dials.
@@ -12,7 +12,9 @@ from probsoil.laboratory.sheets import OedometerSheet, Origin, Place, TimeReadin
 
 PLACE = Place(hole="B1", depth=5.0)
 ORIGIN = Origin(file="made up", row=1)
-STRESSES = np.array([10, 20, 40, 80, 160, 320, 160, 80, 40, 80, 160, 320, 640, 1280, 320, 80, 20], dtype=float)
+STRESSES = np.array(
+    [10, 20, 40, 80, 160, 320, 160, 80, 40, 80, 160, 320, 640, 1280, 320, 80, 20], dtype=float
+)
 READING_SD, SCATTER_SD, SCATTER_CORRELATION = 0.002, 0.003, 0.3
 
 
