@@ -23,6 +23,10 @@ _RELOADED = 0.7  # of the largest stress known: nearer to it, reloading already 
 _WIDTHS = np.array([0.01, 0.04, 0.08, 0.12, 0.16, 0.20])  # of the bend, in ln stress
 _N_BREAK = 121
 _LEAST_GAIN = 8.0  # ratio of variances that a bend must explain
+_STRAIGHT = (
+    "one straight line fits as well as two branches: no virgin branch reached, no branch before yield, or a "
+    "specimen too disturbed to tell them"
+)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -222,7 +226,7 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     left = ((target - np.einsum("gik,gk->gi", factors, coefficient)) ** 2).sum(axis=1)
     allowed = (coefficient[:, 1] > 0.0) & (coefficient[:, 2] > 0.0)
     if not allowed.any():
-        return "the curve does not steepen: no virgin branch reached, or disturbed beyond telling"
+        return _STRAIGHT
     least = float(left[allowed].min())
     freedom = n - 4 + PRIOR_READINGS
     refused = _refusal(x, void_ratio, white, (least + PRIOR_READINGS * scatter**2) / freedom, least)
@@ -241,12 +245,7 @@ def _refusal(x: FloatArray, void_ratio: FloatArray, white: FloatArray, variance:
     factors, target = white @ np.stack([np.ones_like(x), x], axis=1), white @ void_ratio
     straight = target - factors @ np.linalg.lstsq(factors, target, rcond=None)[0]
     gain = (float(straight @ straight) - least) / (2.0 * variance)
-    return (
-        ""
-        if gain > _LEAST_GAIN
-        else "one straight line fits as well as two branches: no virgin branch reached, no branch before "
-        "yield, or a specimen too disturbed to tell them"
-    )
+    return "" if gain > _LEAST_GAIN else _STRAIGHT
 
 
 def _at_an_end(best: float, low: float, high: float) -> str:

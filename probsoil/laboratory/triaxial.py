@@ -8,7 +8,7 @@ import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.laboratory.observations import Observation, observation
-from probsoil.laboratory.regression import Estimate, regression
+from probsoil.laboratory.regression import Estimate, widened
 from probsoil.laboratory.sheets import TriaxialSheet
 
 if TYPE_CHECKING:
@@ -23,7 +23,7 @@ STRENGTH_ERROR = 0.03
 """Relative standard error of a strength for area and membrane correction [-]; a judgement."""
 
 FRICTION_SCATTER = 0.07
-"""Coefficient of variation of M between specimens of a layer expected beforehand [-]; a judgement."""
+"""Coefficient of variation of M between specimens of a layer, taken where there is one [-]; a judgement."""
 
 _LEAST_READINGS = 4
 _SMALL_STRESS = 2.0  # kPa: below it a stress ratio means nothing
@@ -259,7 +259,7 @@ def interpreted_triaxial(
             peak = None
         else:
             ratio = _greatest_ratio(sheet, path, pushed)
-            if peak.place == int(np.flatnonzero(readable)[-1]):
+            if _still_rises(pushed[readable]):
                 remarks.append("the deviator still rises at the last reading: strength is a lower bound")
     return TriaxialResult(
         sheet=sheet,
@@ -270,6 +270,10 @@ def interpreted_triaxial(
         in_situ_stress=in_situ_stress,
         remarks=tuple(remarks),
     )
+
+
+def _still_rises(deviator: FloatArray) -> bool:
+    return bool(deviator[-1] > (1.0 + STRENGTH_ERROR) * deviator[:-1].max())
 
 
 def _mean_stress(sheet: TriaxialSheet) -> tuple[FloatArray, list[str]]:
@@ -313,16 +317,19 @@ def pooled_slope(results: tuple[TriaxialResult, ...], failure: FailureBy) -> tup
     -------
     found : tuple of Estimate and float, or None, [-]
         M and the coefficient of variation of a test about it; None without a test. The scatter of q is
-        taken in proportion to p', so that every test counts the same.
+        taken in proportion to p', so that every test counts the same and M is the mean of q/p'. The error
+        is Student's by the scatter found, however few the tests; of one test alone by `FRICTION_SCATTER`.
     """
     slopes = [one.slope(one.greatest_ratio if failure == "stress ratio" else one.peak) for one in results]
     values = np.array([one.value for one in slopes if one is not None])
     if not values.size:
         return None
-    fit = regression(
-        np.ones((values.size, 1)), values, FRICTION_SCATTER * float(values.mean()), correlation=0.0
-    )
-    return fit.estimate(0), fit.scatter / float(values.mean())
+    mean = float(values.mean())
+    if values.size == 1:
+        return Estimate(value=mean, standard_error=FRICTION_SCATTER * mean), FRICTION_SCATTER
+    scatter = float(values.std(ddof=1))
+    error = widened(scatter / math.sqrt(values.size), values.size - 1.0)
+    return Estimate(value=mean, standard_error=error), scatter / mean
 
 
 def _row(result: TriaxialResult) -> dict[str, object]:

@@ -16,13 +16,14 @@ if TYPE_CHECKING:
 PAGE, EVIDENCE = "interpretation.html", "evidence.csv"
 
 _KINDS: tuple[tuple[str, str, tuple[str, ...]], ...] = (
-    ("oedometer", "Oedometer tests", ("oedometer", "disturbance", "increments")),
+    ("oedometer", "Oedometer tests", ("oedometer_summary", "disturbance", "increments")),
     ("triaxial", "Triaxial tests", ("triaxial", "friction", "strength_ratio")),
     ("vane", "Vane profiles", ("vane",)),
     ("cone", "Cone soundings", ("cone",)),
 )
+_LONG = 24  # rows; longer tables are shown when asked for
 _TITLES = {
-    "oedometer": "Every estimate of every test",
+    "oedometer_summary": "Test by test; every estimate with its error stands in tables/oedometer.csv",
     "disturbance": "Disturbance of the specimens",
     "increments": "Increments in time",
     "triaxial": "Test by test, failure by both definitions",
@@ -130,10 +131,14 @@ def _block(interpretation: Interpretation) -> list[tuple[str, str]]:
     return [
         ("Tests", ", ".join(counts) or "none"),
         ("Stresses in situ from", "not known" if column is None else column.source),
-        ("M at the greatest" if interpretation.choices.failure == "stress ratio" else "M at",
-         "stress ratio" if interpretation.choices.failure == "stress ratio" else "peak deviator"),
+        (
+            "M taken at",
+            "the greatest stress ratio"
+            if interpretation.choices.failure == "stress ratio"
+            else "the peak deviator",
+        ),
         ("Observed numbers", str(len(interpretation.observations))),
-    ]  # fmt: skip
+    ]
 
 
 def _kind(
@@ -168,6 +173,7 @@ def _view(frame: "pd.DataFrame", title: str) -> dict[str, Any]:
     numeric = [bool(kind.kind in "fi") for kind in frame.dtypes]
     return {
         "title": title,
+        "long": len(frame) > _LONG,
         "headings": list(zip([str(one) for one in frame.columns], numeric, strict=True)),
         "rows": [
             [(_text(cell), number) for cell, number in zip(row, numeric, strict=True)]
@@ -179,4 +185,6 @@ def _view(frame: "pd.DataFrame", title: str) -> dict[str, Any]:
 def _text(cell: object) -> str:
     if cell is None or cell != cell:
         return "-"
-    return number_text(float(cell)) if isinstance(cell, int | float) else str(cell)
+    if isinstance(cell, int):
+        return f"{cell:,d}"
+    return number_text(float(cell)) if isinstance(cell, float) else str(cell)

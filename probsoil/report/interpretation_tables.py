@@ -6,6 +6,7 @@ import numpy as np
 
 from probsoil.laboratory.interpretation import Interpretation
 from probsoil.laboratory.observations import Observation
+from probsoil.laboratory.oedometer import OedometerResult
 from probsoil.laboratory.triaxial import friction_angle
 from probsoil.report.text import trimmed_text
 
@@ -53,8 +54,8 @@ def interpretation_tables(interpretation: Interpretation) -> "dict[str, pd.DataF
     Returns
     -------
     frames : dict of str to DataFrame
-        ``evidence``, and where there are such tests ``oedometer``, ``increments``, ``triaxial``,
-        ``friction``, ``strength_ratio``, ``vane`` and ``cone``.
+        ``evidence``, and where there are such tests ``oedometer``, ``oedometer_summary``, ``increments``,
+        ``disturbance``, ``triaxial``, ``friction``, ``strength_ratio``, ``vane`` and ``cone``.
     """
     import pandas as pd
 
@@ -70,6 +71,7 @@ def interpretation_tables(interpretation: Interpretation) -> "dict[str, pd.DataF
         if parts:
             frames[name] = pd.concat(parts, ignore_index=True)
     for name, rows in (
+        ("oedometer_summary", [_summary_row(one) for one in interpretation.oedometers]),
         ("increments", _increment_rows(interpretation)),
         ("disturbance", _disturbance_rows(interpretation)),
         ("friction", _friction_rows(interpretation)),
@@ -78,6 +80,28 @@ def interpretation_tables(interpretation: Interpretation) -> "dict[str, pd.DataF
         if rows:
             frames[name] = pd.DataFrame(rows)
     return frames
+
+
+def _summary_row(result: OedometerResult) -> dict[str, object]:
+    by_method = {one.method: one.stress for one in result.constructions}
+    pressure = [("two branches", None if result.fit is None else float(np.exp(result.fit.ln_break.value)))]
+    pressure += list(by_method.items())
+    row: dict[str, object] = {"test": result.sheet.test, "depth [m]": result.sheet.place.depth}
+    for name, unit, found in (
+        ("lambda", "-", result.lam),
+        ("kappa", "-", result.kappa),
+        ("preconsolidation", "kPa", result.preconsolidation),
+        ("cv", "m2/year", result.time.cv),
+        ("k", "m/s", result.time.k),
+        ("C_alpha/Cc", "-", result.time.creep_ratio),
+    ):
+        row[f"{name} [{unit}]"] = None if found is None else found.value
+        row[f"{name} error [{unit}]"] = None if found is None else found.standard_error
+        if name == "kappa":
+            row["kappa from"] = result.kappa_from or None
+        if name == "preconsolidation":
+            row |= {f"{method} [kPa]": stress for method, stress in pressure}
+    return row
 
 
 def _increment_rows(interpretation: Interpretation) -> list[dict[str, object]]:

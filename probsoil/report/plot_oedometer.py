@@ -10,6 +10,7 @@ from probsoil.laboratory.oedometer import OedometerResult
 from probsoil.laboratory.sheets import TimeReadings
 from probsoil.laboratory.time_curve import ROOT_TIME_SLOPE, LogTime, RootTime
 from probsoil.report.palette import LIGHT
+from probsoil.report.plot_parts import logarithmic_across
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -47,7 +48,6 @@ def plot_oedometer(figure: "Figure", result: OedometerResult) -> None:
 def _curve(axis: "Axes", result: OedometerResult) -> None:
     sheet, first = result.sheet, result.branches.first
     loaded = sheet.stress > 0.0
-    axis.set_xscale("log")
     axis.plot(
         sheet.stress[loaded], sheet.void_ratio[loaded], color=LIGHT["muted"], lw=0.8, marker="o", ms=3.5
     )
@@ -74,10 +74,11 @@ def _curve(axis: "Axes", result: OedometerResult) -> None:
             result.in_situ_stress, color=LIGHT["ink"], lw=1.3, ls=_DOTTED,
             label=f"in situ, {result.in_situ_stress:.0f} kPa",
         )  # fmt: skip
+    logarithmic_across(axis)
     axis.grid(visible=True)
     axis.set_xlabel("effective vertical stress [kPa], logarithmic")
     axis.set_ylabel("void ratio [-]")
-    axis.legend(loc="lower left", frameon=False, fontsize=9)
+    axis.legend(loc="upper right", frameon=False, fontsize=9)
 
 
 def _two_lines(axis: "Axes", construction: "Construction") -> None:
@@ -85,6 +86,10 @@ def _two_lines(axis: "Axes", construction: "Construction") -> None:
     for line in construction.lines:
         axis.plot(*line.T, color=LIGHT["mark"], lw=1.2, ls=_DASHED)
     words = "not to be made" if construction.stress is None else f"{construction.stress:.0f} kPa"
+    if construction.method == "work" and construction.stress is not None:  # the bend lies near the origin
+        shown = min(5.0 * construction.stress, float(construction.points[-1, 0]))
+        axis.set_xlim(-0.03 * shown, shown)
+        axis.set_ylim(None, 1.1 * float(np.interp(shown, *construction.points.T)))
     axis.set_title(f"{construction.method}: {words}", fontsize=10, loc="left")
     axis.set_xlabel(construction.axes[0], fontsize=9)
     axis.set_ylabel(construction.axes[1], fontsize=9)
@@ -106,13 +111,13 @@ def plot_time_curve(figure: "Figure", data: tuple[TimeReadings, Increment]) -> N
     left, right = figure.subplots(1, 2, sharey=True)
     after = readings.time > 0.0
     left.plot(readings.time[after], readings.compression[after], "o", ms=4, color=LIGHT["ink"])
-    left.set_xscale("log")
     right.plot(np.sqrt(readings.time), readings.compression, "o", ms=4, color=LIGHT["ink"])
     top, bottom = float(readings.compression.min()), float(readings.compression.max())
     if increment.curve.log_time is not None:
         _log_time(left, increment.curve.log_time, readings.time[after])
     if increment.curve.root_time is not None:
         _root_time(right, increment.curve.root_time, readings.time[after])
+    logarithmic_across(left)
     room = 0.08 * (bottom - top)
     left.set_ylim(bottom + room, top - room)
     for axis in (left, right):

@@ -4,11 +4,20 @@ Clay with a rounded yield, a steeper first branch than its loop, hysteresis on r
 scatter that the sheet does not tell of, correlated from one increment to the next, and rounded dials.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from probsoil.laboratory.sheets import OedometerSheet, Origin, Place, TimeReadings, TriaxialSheet
+from probsoil.laboratory.sheets import (
+    ConeSheet,
+    OedometerSheet,
+    Origin,
+    Place,
+    SiteSheets,
+    TimeReadings,
+    TriaxialSheet,
+    VaneSheet,
+)
 
 PLACE = Place(hole="B1", depth=5.0)
 ORIGIN = Origin(file="made up", row=1)
@@ -120,3 +129,46 @@ def triaxials(rng: np.random.Generator, n: int) -> tuple[list[TriaxialSheet], fl
             )
         )
     return sheets, float(layer)
+
+
+def site() -> SiteSheets:
+    """Return the sheets of an invented site: five oedometers with readings in time, triaxials, vane, cone."""
+    oedometers = []
+    for k in range(5):
+        rng = np.random.default_rng(k)
+        sheet, _ = oedometer(rng)
+        rising = (0, 1, 2, 3, 4, 5, 12, 13)
+        readings = tuple(time_readings(rng)[0] if one in rising else None for one in range(STRESSES.size))
+        place = Place(hole=f"B{k + 1}", depth=2.5 + 1.2 * k, x=10.0 * k, y=0.0)
+        oedometers.append(replace(sheet, test=f"O{k + 1}", place=place, time_readings=readings))
+    specimens, _ = triaxials(np.random.default_rng(3), 6)
+    depth = np.arange(2.0, 9.0, 0.5)
+    vane = VaneSheet(
+        test="V1",
+        place=Place(hole="V1", depth=2.0),
+        origin=ORIGIN,
+        corrected=False,
+        depth=depth,
+        strength=15.0 + 2.0 * depth,
+        remoulded=3.0 + 0.5 * depth,
+        plasticity_index=np.full(depth.size, 45.0),
+    )
+    down = np.arange(0.5, 14.0, 0.05)
+    cone = ConeSheet(
+        test="C1",
+        place=Place(hole="C1", depth=0.5),
+        origin=ORIGIN,
+        area_ratio=0.8,
+        depth=down,
+        cone_resistance=200.0 + 60.0 * down + 10.0 * np.random.default_rng(5).standard_normal(down.size),
+        sleeve_friction=np.full(down.size, np.nan),
+        pore_pressure=10.0 + 25.0 * down,
+    )
+    return SiteSheets(
+        oedometers=tuple(oedometers),
+        triaxials=tuple(
+            replace(one, place=Place(hole="B1", depth=3.0 + 0.7 * k)) for k, one in enumerate(specimens)
+        ),
+        vanes=(vane,),
+        cones=(cone,),
+    )
