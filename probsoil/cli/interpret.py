@@ -57,6 +57,9 @@ def interpret(  # noqa: PLR0913 - one argument for each option of the command
         float | None,
         typer.Option(metavar="Z", help="Depth of the water table in m that goes with it.", show_default="0"),
     ] = None,
+    force: Annotated[
+        bool, typer.Option("--force", help="Replace files that are not an earlier interpretation's.")
+    ] = False,
     quiet: Annotated[bool, typer.Option("--quiet", "-q", help="Print nothing but errors.")] = False,
 ) -> None:
     """Interpret laboratory and field tests; write evidence, tables, figures and a page."""
@@ -71,8 +74,10 @@ def interpret(  # noqa: PLR0913 - one argument for each option of the command
     from probsoil.cli._log import logged_run
     from probsoil.cli._output import answering
     from probsoil.laboratory import interpretation as rooms
-    from probsoil.report.interpretation_page import write_interpretation
+    from probsoil.report.interpretation_page import require_own_folder, write_interpretation
 
+    if not force:
+        require_own_folder(out)
     choices = rooms.Choices(
         vane_corrected=vane_corrected,
         failure="stress ratio" if failure is FailureAt.stress_ratio else "peak deviator",

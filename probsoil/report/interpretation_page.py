@@ -3,7 +3,7 @@
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from probsoil.errors import ResultsError
+from probsoil.errors import ResultsError, UnfitFolderError
 from probsoil.laboratory.interpretation import Interpretation
 from probsoil.report.interpretation_figures import TestFigure, interpretation_figures
 from probsoil.report.interpretation_tables import interpretation_tables
@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
 PAGE, EVIDENCE = "interpretation.html", "evidence.csv"
+_MARK = '<p class="kind">From test sheets to evidence</p>'
 
 _KINDS: tuple[tuple[str, str, tuple[str, ...]], ...] = (
     ("oedometer", "Oedometer tests", ("oedometer_summary", "disturbance", "increments")),
@@ -32,6 +33,41 @@ _TITLES = {
     "vane": "Strength by depth",
     "cone": "Averages of net resistance; what factors make of it is shown, not evidence",
 }
+
+
+def require_own_folder(folder: Path) -> None:
+    """Refuse to write over an evidence table or a page that no interpretation wrote.
+
+    Parameters
+    ----------
+    folder : Path
+        Folder to write to; need not exist.
+
+    Raises
+    ------
+    UnfitFolderError
+        If it holds such a file.
+    """
+    page = Path(folder) / PAGE
+    try:
+        own = _MARK in page.read_text(encoding="utf-8")
+    except (OSError, ValueError):
+        own = False
+    strange = [path for path in (Path(folder) / EVIDENCE, page) if path.exists()]
+    if strange and not own:
+        raise UnfitFolderError(
+            f"'{folder}' holds no earlier interpretation, but '{strange[0].name}', which this one would "
+            "overwrite; name another folder, or let it be overwritten (--force)"
+        )
+
+
+def _clear_earlier(folder: Path) -> None:
+    """Take away figures and tables of an earlier interpretation, whose tests may have been others."""
+    for kind, _, names in _KINDS:
+        for path in (folder / "figures").glob(f"{kind}-*.svg"):
+            path.unlink()
+        for name in {kind, *names}:
+            (folder / "tables" / f"{name}.csv").unlink(missing_ok=True)
 
 
 def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
@@ -59,6 +95,7 @@ def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
     frames, drawn = interpretation_tables(interpretation), interpretation_figures(interpretation)
     page = render_interpretation(interpretation, frames, drawn)
     try:
+        _clear_earlier(folder)
         for name in ("tables", "figures"):
             (folder / name).mkdir(parents=True, exist_ok=True)
         for name, frame in frames.items():

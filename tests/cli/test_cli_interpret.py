@@ -59,7 +59,9 @@ def asked(desk: Path, monkeypatch: pytest.MonkeyPatch) -> dict[str, object]:
 def test_interpret_writes_evidence_tables_figures_page_and_log(
     asked: dict[str, object], capsys: pytest.CaptureFixture[str]
 ) -> None:
-    assert main(["interpret", "tests.csv", "--layers", "site.toml", "--out", "found", "--vane-as-measured"]) == 0
+    assert (
+        main(["interpret", "tests.csv", "--layers", "site.toml", "--out", "found", "--vane-as-measured"]) == 0
+    )
     folder = Path("found")
     lines = (folder / "evidence.csv").read_text(encoding="utf-8").splitlines()
     assert lines[0].startswith("kind,test,hole")

@@ -50,7 +50,18 @@ def test_evidence_has_the_header_and_reads_back(done: Interpretation) -> None:
 
 
 def test_every_kind_of_number_is_there(done: Interpretation) -> None:
-    wanted = "lambda kappa preconsolidation_stress cv k C_alpha_ratio M su void_ratio q_net".split()
+    wanted = [
+        "lambda",
+        "kappa",
+        "preconsolidation_stress",
+        "cv",
+        "k",
+        "C_alpha_ratio",
+        "M",
+        "su",
+        "void_ratio",
+        "q_net",
+    ]
     assert {one.parameter for one in done.observations} >= set(wanted)
 
 
@@ -190,6 +201,14 @@ def test_figures_of_alike_names_do_not_meet(done: Interpretation) -> None:
         ),
     )
     assert [found.name for found in interpretation_figures(twins)] == ["triaxial-a-1", "triaxial-a-1-2"]
+
+
+def test_figures_of_tests_that_are_gone_are_taken_away(done: Interpretation, tmp_path: Path) -> None:
+    only = replace(done, oedometers=(), triaxials=done.triaxials[:1], vanes=(), cones=())
+    write_interpretation(only, tmp_path)
+    (tmp_path / "figures" / "settlement.svg").write_text("of an assessment")
+    write_interpretation(replace(only, triaxials=(), vanes=done.vanes), tmp_path)
+    assert sorted(path.name for path in (tmp_path / "figures").iterdir()) == ["settlement.svg", "vane-v1.svg"]
 
 
 def test_folder_that_cannot_be_written(tmp_path: Path) -> None:
