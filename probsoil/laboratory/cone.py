@@ -55,6 +55,8 @@ class ConeAverage:
         Mean and its error, that of the total stress and of the area ratio included.
     scatter : float, [kPa]
         Standard deviation of a reading about the line with depth.
+    clay : bool
+        Whether the layer may be clay: nothing is derived in a granular one.
     """
 
     layer: str
@@ -65,16 +67,17 @@ class ConeAverage:
     net_resistance: float
     standard_error: float
     scatter: float
+    clay: bool = True
 
     @property
-    def strength(self) -> float:
+    def strength(self) -> float | None:
         """Undrained strength by the cone factor [kPa]; shown, not evidence."""
-        return self.net_resistance / CONE_FACTOR
+        return self.net_resistance / CONE_FACTOR if self.clay else None
 
     @property
-    def preconsolidation(self) -> float:
+    def preconsolidation(self) -> float | None:
         """Preconsolidation stress by its factor [kPa]; shown, not evidence."""
-        return YIELD_FACTOR * self.net_resistance
+        return YIELD_FACTOR * self.net_resistance if self.clay else None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -205,7 +208,8 @@ def interpreted_cone(sheet: ConeSheet, column: GroundColumn | None) -> ConeResul
         inside = (sheet.depth >= top) & (sheet.depth < bottom) & np.isfinite(net)
         if inside.sum() < _LEAST_READINGS:
             continue
-        averages.append(_average(layer, sheet.depth[inside], net[inside], float(doubt[inside].mean())))
+        found = _average(layer, sheet.depth[inside], net[inside], float(doubt[inside].mean()))
+        averages.append(replace(found, clay=layer not in column.granular))
     if not averages:
         remarks.append(f"q_net: no layer with {_LEAST_READINGS} readings or more")
     negative = [one.layer or f"{one.top:g} m" for one in averages if one.net_resistance <= 0.0]

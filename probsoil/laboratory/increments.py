@@ -13,6 +13,13 @@ from probsoil.scenario.mean_column import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
 INCREMENT_SPREAD = 0.15
 """Standard deviation of ln cv and ln k between increments expected beforehand [-]; a judgement."""
 
+CK_OVER_VOID_RATIO, CK_ERROR = 0.5, 0.2
+"""ck over the initial void ratio where too few increments give it, and its relative standard error [-].
+
+Tavenas, Jean, Leblond and Leroueil 1983, for void ratios below about 2.5; recalled, not opened; the error is
+a judgement.
+"""
+
 LEAST_FOR_PERMEABILITY = 3
 _RATIO_SPREAD = 0.005  # of C_alpha/Cc between increments, expected beforehand
 
@@ -174,11 +181,19 @@ def _permeability(
     void_ratio: float, virgin: list[Increment], own: float
 ) -> tuple[Estimate | None, Estimate | None, str]:
     """Extend ln k against void ratio to the void ratio before loading."""
-    known = [one for one in virgin if one.k is not None]
+    known = [(one.void_ratio, one.k) for one in virgin if one.k is not None]
+    at, logs = np.array([one for one, _ in known]), np.log([k for _, k in known])
+    if not known:
+        return None, None, "k: no increment that compresses"
     if len(known) < LEAST_FOR_PERMEABILITY:
-        return None, None, f"k: {len(known)} virgin increments; at least {LEAST_FOR_PERMEABILITY} are needed"
-    at = np.array([one.void_ratio for one in known])
-    fit = line(at, np.log([one.k for one in known if one.k is not None]), INCREMENT_SPREAD)
+        ck = CK_OVER_VOID_RATIO * void_ratio
+        mean, between = pooled(logs + np.log(10.0) * (void_ratio - at) / ck, INCREMENT_SPREAD)
+        carried = float(np.log(10.0) * (void_ratio - at.mean()) / ck * CK_ERROR)
+        value = float(np.exp(mean))
+        error = float(np.sqrt(own**2 + between**2 + carried**2))
+        reason = f"k: only {len(known)} virgin, so carried to the initial void ratio by ck = 0.5 e0"
+        return Estimate(value=value, standard_error=value * error), None, reason
+    fit = line(at, logs, INCREMENT_SPREAD)
     slope = float(fit.coefficient[1])
     if slope <= 0.0:
         return None, None, "k: permeability does not fall with void ratio"

@@ -214,12 +214,13 @@ def interpreted_site(
     ratios = tuple(_ratio(name, *tests, column) for name, tests in layers.items() if tests[1])
     results: list[Result] = [*oedometers, *triaxials, *vanes, *cones]
     singles = [
-        replace(row, layer=row.layer or layer_of(row.depth, one.sheet.place, column))
+        replace(row, layer=row.layer or ground_of(row.depth, one.sheet.place, column))
         for one in results
         for row in one.observations()
     ]
     singles += [row for ratio in ratios for row in _ratio_rows(ratio, triaxials)]
     of_clay, aside = _of_clay(singles, column)
+    grounds = [one.layer for one in of_clay]
     return Interpretation(
         column=column,
         choices=said,
@@ -229,7 +230,7 @@ def interpreted_site(
         cones=cones,
         friction=_friction(layers),
         strength_ratios=ratios,
-        observations=flagged(_told_where(of_clay, column)),
+        observations=flagged(_told_where(of_clay, column), grounds),
         remarks=(*sheets.remarks, *_remarks(results, ratios), *aside),
     )
 
@@ -242,8 +243,8 @@ def _column(scenario: "Scenario | None", choices: Choices) -> GroundColumn | Non
     return assumed_column(choices.unit_weight, choices.water_table)
 
 
-def layer_of(depth: float, place: Place, column: GroundColumn | None) -> str:
-    """Return the layer that a number belongs to.
+def ground_of(depth: float, place: Place, column: GroundColumn | None) -> str:
+    """Return the ground that a number belongs to.
 
     Parameters
     ----------
@@ -258,10 +259,10 @@ def layer_of(depth: float, place: Place, column: GroundColumn | None) -> str:
     -------
     layer : str
         Of a specimen the layer that bears the name its file gives, if there is one; else the one at the
-        depth; empty where not known.
+        depth; without layers the name the file gives; empty where not known.
     """
-    if column is None:
-        return ""
+    if column is None or not column.layers:
+        return place.stratum or "" if depth == place.depth else ""
     named = depth == place.depth and any(name == place.stratum for name, _, _ in column.layers)
     return place.stratum if named and place.stratum else column.layer_at(depth)
 
@@ -277,7 +278,7 @@ def _by_layer(
     specimens: list[OedometerResult | TriaxialResult] = [*oedometers, *triaxials]
     for one in specimens:
         place = one.sheet.place
-        name = place.stratum or "" if column is None else layer_of(place.depth, place, column)
+        name = ground_of(place.depth, place, column)
         tests = found.setdefault(name, ([], []))
         if isinstance(one, OedometerResult):
             tests[0].append(one)
@@ -340,7 +341,16 @@ def _ratio_rows(ratio: StrengthRatio, triaxials: Sequence[TriaxialResult]) -> li
     rows = []
     for parameter, found in (("su_ratio", ratio.ratio), ("Lambda", ratio.exponent)):
         if found is not None and found.value > 0.0:
-            row = observation("triaxial", (name, place), parameter, found.value, found.standard_error)
+            row = observation(
+                "triaxial",
+                (name, place),
+                parameter,
+                found.value,
+                found.standard_error,
+                flag="consolidated under equal stresses, which gives more than as in the ground"
+                if ratio.isotropic and parameter == "su_ratio"
+                else "",
+            )
             rows.append(replace(row, layer=ratio.layer))
     return rows
 

@@ -21,13 +21,17 @@ _LEAST_FOR_TREND = 8
 _WITH_DEPTH = {"su", "q_net", "preconsolidation_stress"}
 
 
-def flagged(observations: Sequence[Observation]) -> tuple[Observation, ...]:
+def flagged(
+    observations: Sequence[Observation], grounds: Sequence[str] | None = None
+) -> tuple[Observation, ...]:
     """Flag the numbers that stand apart within layer, kind of test and parameter.
 
     Parameters
     ----------
     observations : sequence of Observation
         Of the whole site.
+    grounds : sequence of str or None
+        Names of the ground each is compared within; None for their layers.
 
     Returns
     -------
@@ -41,9 +45,10 @@ def flagged(observations: Sequence[Observation]) -> tuple[Observation, ...]:
     compared with a line with depth through the median of the slopes between pairs.
     """
     groups: dict[tuple[str, str, str], list[int]] = {}
-    for place, one in enumerate(observations):
+    named = [one.layer for one in observations] if grounds is None else grounds
+    for place, (one, ground) in enumerate(zip(observations, named, strict=True)):
         if one.value > 0.0:
-            groups.setdefault((one.layer, one.kind, one.parameter), []).append(place)
+            groups.setdefault((ground, one.kind, one.parameter), []).append(place)
     rows = list(observations)
     for (layer, _, parameter), places in groups.items():
         if len(places) < LEAST_NUMBERS:

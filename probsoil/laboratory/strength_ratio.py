@@ -37,6 +37,8 @@ class StrengthRatio:
         Lambda, from tests at several overconsolidation ratios.
     exponent_from_slopes : Estimate or None, [-]
         1 - kappa/lambda, from oedometer tests.
+    isotropic : bool
+        Whether specimens consolidated under equal stresses are among the tests.
     remarks : tuple of str
         What could not be interpreted, and why.
     """
@@ -48,6 +50,7 @@ class StrengthRatio:
     ratio: Estimate | None
     exponent: Estimate | None
     exponent_from_slopes: Estimate | None
+    isotropic: bool
     remarks: tuple[str, ...] = ()
 
 
@@ -74,13 +77,24 @@ def strength_ratio(
     -------
     found : StrengthRatio
         ``su/s'v = S OCR^Lambda`` by regression in logarithms where overconsolidation ratios differ enough;
-        else S alone from tests that were normally consolidated.
+        else S alone from tests that were normally consolidated. Specimens consolidated under equal
+        stresses, which give more than those under stresses as in the ground, are used only where the
+        others alone give nothing.
     """
-    used = [
-        one
-        for one in triaxials
-        if one.sheet.kind in ("CIUC", "CAUC") and one.strength_over_stress is not None
-    ]
+    found = _of_kinds(layer, ("CAUC",), triaxials, oedometers, preconsolidation)
+    if found.ratio is None:
+        found = _of_kinds(layer, ("CAUC", "CIUC"), triaxials, oedometers, preconsolidation)
+    return found
+
+
+def _of_kinds(
+    layer: str,
+    kinds: tuple[str, ...],
+    triaxials: Sequence[TriaxialResult],
+    oedometers: Sequence[OedometerResult],
+    preconsolidation: Callable[[float], float] | None,
+) -> StrengthRatio:
+    used = [one for one in triaxials if one.sheet.kind in kinds and one.strength_over_stress is not None]
     slopes = slopes_exponent(oedometers)
     over = tuple(one.strength_over_stress for one in used if one.strength_over_stress is not None)
     known = preconsolidation is not None and bool(used)
@@ -103,6 +117,7 @@ def strength_ratio(
         ratio=ratio,
         exponent=exponent,
         exponent_from_slopes=slopes,
+        isotropic=any(one.sheet.kind == "CIUC" for one in used),
         remarks=tuple(remarks),
     )
 

@@ -202,8 +202,13 @@ def test_cv_k_and_creep_of_the_virgin_increments() -> None:
     assert result.time.cv.value == pytest.approx(0.8, rel=0.05)  # creep blurs the end of primary compression
     assert result.time.creep_ratio is not None
     assert result.time.creep_ratio.value == pytest.approx(0.02 / (LAM * np.log(10.0)), rel=0.15)
-    assert result.time.k is None
-    assert "k: 2 virgin increments" in " ".join(result.remarks)
+    assert result.time.ck is None
+    assert "by ck = 0.5 e0" in " ".join(result.remarks)
+    logs = [
+        np.log(one.k * 10.0 ** ((E0 - one.void_ratio) / (0.5 * E0))) for one in result.increments[1:] if one.k
+    ]
+    assert result.time.k is not None
+    assert result.time.k.value == pytest.approx(np.exp(np.mean(logs)))
     k = result.increments[1].k
     one = result.increments[1]
     assert k is not None

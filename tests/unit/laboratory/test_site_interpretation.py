@@ -13,7 +13,7 @@ import synthetic_tests as drawn
 
 from probsoil.errors import ParameterError, ResultsError
 from probsoil.laboratory.ground_column import assumed_column, scenario_column
-from probsoil.laboratory.interpretation import Choices, Interpretation, interpreted_site, layer_of
+from probsoil.laboratory.interpretation import Choices, Interpretation, ground_of, interpreted_site
 from probsoil.laboratory.observations import EVIDENCE_COLUMNS, UNITS, Observation, observation
 from probsoil.laboratory.outliers import flagged
 from probsoil.laboratory.sheets import Place, SiteSheets
@@ -107,10 +107,10 @@ def test_name_in_the_file_goes_before_depth(scenario: Scenario) -> None:
     column = scenario_column(scenario)
     names = [name for name, _, _ in column.layers]
     depth = 0.5 * (column.layers[0][1] + column.layers[0][2])
-    assert layer_of(depth, Place(hole="B", depth=depth, stratum=names[1]), column) == names[1]
-    assert layer_of(depth, Place(hole="B", depth=depth, stratum="another"), column) == names[0]
-    assert layer_of(depth, Place(hole="B", depth=1.0 + depth, stratum=names[1]), column) == names[0]
-    assert layer_of(depth, Place(hole="B", depth=depth), None) == ""
+    assert ground_of(depth, Place(hole="B", depth=depth, stratum=names[1]), column) == names[1]
+    assert ground_of(depth, Place(hole="B", depth=depth, stratum="another"), column) == names[0]
+    assert ground_of(depth, Place(hole="B", depth=1.0 + depth, stratum=names[1]), column) == names[0]
+    assert ground_of(depth, Place(hole="B", depth=depth), None) == ""
 
 
 def test_without_layers_everything_but_the_cone_has_a_value() -> None:
