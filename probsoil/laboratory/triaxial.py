@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
-from probsoil._typing import FloatArray
+from probsoil._typing import BoolArray, FloatArray
 from probsoil.laboratory.observations import Observation, observation
 from probsoil.laboratory.regression import Estimate, widened
 from probsoil.laboratory.sheets import TriaxialSheet
@@ -245,22 +245,18 @@ def interpreted_triaxial(
     """
     path, remarks = _mean_stress(sheet)
     readable = np.isfinite(sheet.deviator) & np.isfinite(sheet.axial_strain)
+    reason = _unreadable(sheet, readable)
     peak = ratio = None
-    if readable.sum() < _LEAST_READINGS:
-        remarks.append(f"{readable.sum()} readings during shear; at least {_LEAST_READINGS} are needed")
-    elif np.any(np.diff(np.abs(sheet.axial_strain[readable])) < 0.0):
-        remarks.append("axial strain does not go on in one direction")
+    if reason:
+        remarks.append(reason)
     else:
-        sense = -1.0 if sheet.kind.endswith("E") else 1.0
-        pushed = np.where(readable, sense * sheet.deviator, -np.inf)
+        pushed = np.where(readable, (-1.0 if sheet.kind.endswith("E") else 1.0) * sheet.deviator, -np.inf)
         peak = _failure(sheet, path, int(np.argmax(pushed)))
-        if sense * peak.deviator <= _SMALL_STRESS:
-            remarks.append("no deviator in the direction of the test")
-            peak = None
-        else:
-            ratio = _greatest_ratio(sheet, path, pushed)
-            if _still_rises(pushed[readable]):
-                remarks.append("the deviator still rises at the last reading: strength is a lower bound")
+        ratio = _greatest_ratio(sheet, path, pushed)
+        if readable.sum() == 1:
+            remarks.append("only the state at failure is given: both definitions of failure are that one")
+        elif _still_rises(pushed[readable]):
+            remarks.append("the deviator still rises at the last reading: strength is a lower bound")
     return TriaxialResult(
         sheet=sheet,
         mean_stress=path,
@@ -270,6 +266,16 @@ def interpreted_triaxial(
         in_situ_stress=in_situ_stress,
         remarks=tuple(remarks),
     )
+
+
+def _unreadable(sheet: TriaxialSheet, readable: BoolArray) -> str:
+    count = int(readable.sum())
+    if count != 1 and count < _LEAST_READINGS:
+        return f"{count} readings during shear; {_LEAST_READINGS} are needed, or the state at failure alone"
+    if np.any(np.diff(np.abs(sheet.axial_strain[readable])) < 0.0):
+        return "axial strain does not go on in one direction"
+    pushed = (-1.0 if sheet.kind.endswith("E") else 1.0) * sheet.deviator[readable]
+    return "no deviator in the direction of the test" if pushed.max() <= _SMALL_STRESS else ""
 
 
 def _still_rises(deviator: FloatArray) -> bool:

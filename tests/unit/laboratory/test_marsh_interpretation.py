@@ -57,7 +57,7 @@ def test_every_test_is_in_the_layer_it_was_taken_from(
 
 
 def test_the_open_standard_gives_the_same_evidence(done: Interpretation) -> None:
-    # it carries no readings in time and here no plasticity: cv, creep and corrected vane strengths are left aside
+    # left aside is what it has no readings for: cv, creep, correction of the vane; M is that at failure
     both = {"lambda", "kappa", "preconsolidation_stress", "void_ratio", "M", "q_net"}
     other = probsoil.interpret([FOLDER / "tern_marsh.ags"], layers=FOLDER / "site.toml")
     ours, theirs = (
@@ -70,4 +70,5 @@ def test_the_open_standard_gives_the_same_evidence(done: Interpretation) -> None
     )
     assert len(ours) == 4 * 12 + 6 + 6
     assert [one[:3] for one in ours] == [one[:3] for one in theirs]
-    assert [one[3] for one in ours] == pytest.approx([one[3] for one in theirs], rel=0.02)
+    off = [abs(mine[3] / other[3] - 1.0) for mine, other in zip(ours, theirs, strict=True)]
+    assert max(off) < 0.05  # failure of the file is at the largest deviator

@@ -107,7 +107,8 @@ def test_friction_angle_and_slope_undo_each_other() -> None:
 @pytest.mark.parametrize(
     ("more", "reason"),
     [
-        ({"axial_strain": np.array([0.0, NAN, NAN, NAN])}, "1 readings during shear"),
+        ({"axial_strain": np.array([0.0, 0.01, NAN, NAN])}, "2 readings during shear"),
+        ({"axial_strain": np.array([NAN, NAN, 0.04, NAN])}, "only the state at failure is given"),
         ({"axial_strain": np.array([0.0, 0.04, 0.01, 0.1])}, "does not go on in one direction"),
         ({"deviator": np.array([0.0, -10.0, -20.0, -30.0])}, "no deviator in the direction"),
         ({"deviator": np.array([40.0, 50.0, 60.0, 70.0])}, "still rises at the last reading"),
