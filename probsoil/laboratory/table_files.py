@@ -7,7 +7,7 @@ from probsoil.errors import Fault
 from probsoil.laboratory.cells import Cell, CellError, Heading, factor_to_sheet, parts_of_heading, shown
 from probsoil.laboratory.collection import Collection, RowReader
 from probsoil.laboratory.columns import TableLayout
-from probsoil.laboratory.tables import GREATEST_ROWS, Source, TooManyRowsError
+from probsoil.laboratory.tables import Source, TooManyRowsError
 
 COMMENT = "#"
 
@@ -72,7 +72,7 @@ def full_table(file: str, full: TooManyRowsError) -> Fault:
         file=file,
         line=full.row,
         message=f"the table {full.layout.name} has too many rows; what follows was not looked at",
-        allowed=f"up to {GREATEST_ROWS:,d} rows of a kind in one reading",
+        allowed=f"up to {full.row_limit:,d} rows of a kind in one reading",
         hint="give the files of one site only, or thin the readings",
     )
 

@@ -26,6 +26,8 @@ class TooManyRowsError(Exception):
     ----------
     row : int, [-]
         First row that found no place.
+    row_limit : int, [-]
+        How many rows a table holds.
     layout : TableLayout
         Of the table.
     """
@@ -33,6 +35,7 @@ class TooManyRowsError(Exception):
     def __init__(self, row: int, layout: TableLayout) -> None:
         super().__init__(f"{layout.name} is full at row {row}")
         self.row = row
+        self.row_limit = GREATEST_ROWS
         self.layout = layout
 
 

@@ -17,7 +17,7 @@ EXAMPLE = "# invented: "
 WORKBOOK = "laboratory_tables.xlsx"
 KINDS = ("all", *dict.fromkeys(layout.about for layout in LAYOUTS))
 _EXAMPLES: dict[str, tuple[tuple[str | float, ...], ...]] = {
-    "holes": (("BH1", 12.5, 40.0, 15.0),),
+    "holes": (("BH1", 12.5, 40.0, 15.0), ("CPT1", 30.0, 42.0, 14.0)),
     "strata": (("BH1", 0.0, 1.2, "crust"), ("BH1", 1.2, 9.4, "soft clay")),
     "plasticity": (("BH1", 4.0, 45),),
     "oedometer specimens": (
