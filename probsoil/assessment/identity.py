@@ -1,5 +1,6 @@
 """What the numbers of an assessment depend on, written out so that two runs can be compared in words."""
 
+import hashlib
 from collections.abc import Iterator
 from dataclasses import fields, is_dataclass
 from importlib import metadata
@@ -12,6 +13,7 @@ from probsoil.campaign import Identity, campaign_identity, source_digest
 from probsoil.scenario import Scenario
 
 _SINGULAR = {"layers": "layer", "stages": "stage", "stations": "station", "limits": "limit"}
+_LISTED = 12  # numbers of a list that a message shows; longer ones are told apart by a digest
 _PACKAGES = ("numpy", "scipy", "numba")
 
 
@@ -87,6 +89,9 @@ def _leaves(place: str, value: object) -> Iterator[tuple[str, object]]:
         yield f"{place}.dist", value.kind
         for one in fields(value):
             yield from _leaves(f"{place}.{one.name}", getattr(value, one.name))
+    elif isinstance(value, tuple) and len(value) > _LISTED:
+        digest = hashlib.sha256(repr(value).encode()).hexdigest()[:16]
+        yield place, f"{len(value)} values of digest {digest}"
     else:
         yield place, value
 
