@@ -7,6 +7,7 @@ from probsoil.assessment.description import Row
 from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study
 from probsoil.assessment.record import CampaignSample
+from probsoil.parameters.range_remarks import range_remarks
 from probsoil.scenario import remarks
 from probsoil.scenario.limits import Limit
 
@@ -40,6 +41,7 @@ def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationErro
         )
         rows.append(_row("nothing_uncertain", message))
     rows += [_row("remark", text) for text in remarks(study.scenario)]
+    rows += [_row("published_range", text) for text in range_remarks(study.scenario)]
     for summary in study.space.summary():
         if summary.cut_share > _NOTICEABLE:
             message = (
