@@ -101,6 +101,18 @@ def test_check_prints_what_was_understood(desk: Path, capsys: pytest.CaptureFixt
     assert "site.mode_factor fixed at 0.8" in squeezed(capsys.readouterr().out)
 
 
+def test_check_names_what_lies_outside_the_published_ranges(
+    desk: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["check", "site.toml"]) == 0
+    assert "published" not in capsys.readouterr().out
+    text = (desk / "site.toml").read_text(encoding="utf-8")
+    (desk / "odd.toml").write_text(text.replace('soil = "clay"', 'soil = "clay"\nkh_kv = 9', 1))
+    assert main(["check", "odd.toml"]) == 0
+    said = squeezed(capsys.readouterr().out)
+    assert "Look again: crust.kh_kv: a mean kh/kv of 9 lies above what is published, 1 to 5" in said
+
+
 AREA = """
 format = 1
 title = "Yard"
