@@ -37,7 +37,7 @@ class Branches:
     ----------
     first : ndarray of int, shape (n,), [-]
         First loading: each beyond every stress before it.
-    loops : tuple of ndarray of int, [-]
+    loops : tuple of ndarray of int, shape (n,) each, [-]
         Legs of unloading and of reloading inside loops, each in order.
     rebound : ndarray of int, shape (m,), [-]
         Last unloading, its start included; empty where there is none.
@@ -155,7 +155,7 @@ def legs_slope(sheet: OedometerSheet, legs: tuple[IntArray, ...]) -> Regression:
     ----------
     sheet : OedometerSheet
         The test.
-    legs : tuple of ndarray of int, [-]
+    legs : tuple of ndarray of int, shape (n,) each, [-]
         Places of each leg, at least two in one.
 
     Returns

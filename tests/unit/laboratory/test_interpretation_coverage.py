@@ -61,6 +61,7 @@ def test_estimates_of_an_oedometer_test_are_not_biased(
     assert abs(np.median(off)) < near
 
 
+@pytest.mark.slow
 def test_intervals_of_cv_hold_the_truth() -> None:
     hits = []
     for repeat in range(REPEATS):
