@@ -216,10 +216,10 @@ def range_text(column: Column) -> str:
     """
     if column.kind == "whole number":
         return "a whole number from 1 up"
-    low = "above 0" if column.positive else None if column.low is None else f"from {column.low:g}"
-    high = None if column.high is None else f"up to {column.high:g}"
-    unit = "" if column.unit in ("", "-") else f" {column.unit}"
-    return "a number " + " ".join(part for part in (low, high) if part) + unit
+    low = "above 0" if column.positive else "" if column.low is None else f"from {column.low:g}"
+    high = "" if column.high is None else f"up to {column.high:g}"
+    unit = "" if column.unit == "-" or not (low or high) else column.unit
+    return " ".join(part for part in ("a number", low, high, unit) if part)
 
 
 def likely_unit(column: Column, number: float) -> str | None:

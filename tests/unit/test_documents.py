@@ -19,12 +19,13 @@ def page(name: str) -> str:
     return (ROOT / name).read_text(encoding="utf-8")
 
 
-def test_scenario_reference_is_what_the_models_say() -> None:
-    text = page("docs/scenario_reference.md")
+@pytest.mark.parametrize("name", ["docs/scenario_reference.md", "docs/laboratory_tables.md"])
+def test_generated_tables_are_what_the_program_says(name: str) -> None:
+    text = page(name)
     generator = text.split("```python\n")[-1].split("```")[0]
     printed = io.StringIO()
     with contextlib.redirect_stdout(printed):
-        exec(compile(generator, "docs/scenario_reference.md", "exec"), {})  # our own page
+        exec(compile(generator, name, "exec"), {})  # our own page
     between = re.search(r"<!-- generated: begin -->\n(.*?)<!-- generated: end -->", text, re.DOTALL)
     assert between is not None
     assert between.group(1).strip() == printed.getvalue().strip()
