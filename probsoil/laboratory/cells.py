@@ -9,7 +9,7 @@ from typing import cast
 from probsoil.laboratory.columns import Column
 from probsoil.units import Kind, UnitError, to_base, usual_units
 
-_HEADING = re.compile(r"\s*(.*?)\s*(?:[(\[]\s*(.*?)\s*[)\]])?\s*", re.DOTALL)
+_UNIT = re.compile(r"[(\[]([^()\[\]]*)[)\]]\s*")
 _BARE = {"", "-", "1"}
 _DECIMAL_COMMA = re.compile(r"[+-]?\d*,\d+")
 Cell = str | float | bool | None
@@ -70,10 +70,14 @@ def parts_of_heading(text: str) -> tuple[str, str | None]:
     unit : str or None
         None where the heading has no brackets.
     """
-    match = _HEADING.fullmatch(text)
-    if match is None:  # cannot happen: the pattern takes any text
-        return text, None
-    return " ".join(match[1].replace("_", " ").casefold().split()), match[2]
+    *_, match = (None, *_UNIT.finditer(text))
+    if match is None or match.end() != len(text):
+        return _plain(text), None
+    return _plain(text[: match.start()]), match[1].strip()
+
+
+def _plain(name: str) -> str:
+    return " ".join(name.replace("_", " ").casefold().split())
 
 
 def factor_to_sheet(column: Column, unit: str | None) -> float:
@@ -216,10 +220,10 @@ def range_text(column: Column) -> str:
     """
     if column.kind == "whole number":
         return "a whole number from 1 up"
-    low = "above 0" if column.positive else None if column.low is None else f"from {column.low:g}"
-    high = None if column.high is None else f"up to {column.high:g}"
-    unit = "" if column.unit in ("", "-") else f" {column.unit}"
-    return "a number " + " ".join(part for part in (low, high) if part) + unit
+    low = "above 0" if column.positive else "" if column.low is None else f"from {column.low:g}"
+    high = "" if column.high is None else f"up to {column.high:g}"
+    unit = "" if column.unit == "-" or not (low or high) else column.unit
+    return " ".join(part for part in ("a number", low, high, unit) if part)
 
 
 def likely_unit(column: Column, number: float) -> str | None:
@@ -284,7 +288,7 @@ def _number_of_text(text: str) -> float:
         return number
     hint = None
     if _DECIMAL_COMMA.fullmatch(text):
-        hint = "use a decimal point"
+        hint = "use a decimal point and no comma"
     elif re.match(r"\d{4}-\d\d-\d\d", text):
         hint = "this is a date: the workbook may have made one of the number; format the cell as a number"
     elif text[:1] in "<>#~":
@@ -294,9 +298,10 @@ def _number_of_text(text: str) -> float:
 
 def _fits(number: float, column: Column) -> bool:
     if column.kind == "whole number":
-        return number >= 1 and number == math.floor(number)
+        return 1.0 <= number < 1e9 and number == math.floor(number)
     return (
-        (not column.positive or number > 0.0)
+        math.isfinite(number)
+        and (not column.positive or number > 0.0)
         and (column.low is None or number >= column.low)
         and (column.high is None or number <= column.high)
     )

@@ -134,7 +134,7 @@ _OEDOMETER = (
             ),
             Column(
                 name="drainage",
-                meaning="faces at which water leaves; both where left out",
+                meaning="faces at which water leaves, both where left out",
                 kind="text",
                 required=False,
                 choices=("both faces", "one face"),

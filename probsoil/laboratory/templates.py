@@ -77,7 +77,7 @@ def explanation(column: Column) -> str:
     text : str
         Meaning, choices, and whether it may be left out.
     """
-    choices = f"; one of {', '.join(column.choices)}" if column.choices else ""
+    choices = f": {', '.join(column.choices)}" if column.choices else ""
     return f"{column.meaning}{choices}{'' if column.required else ' (may be left out)'}"
 
 

@@ -19,7 +19,9 @@ def page(name: str) -> str:
     return (ROOT / name).read_text(encoding="utf-8")
 
 
-@pytest.mark.parametrize("name", ["docs/scenario_reference.md", "docs/published_ranges.md"])
+@pytest.mark.parametrize(
+    "name", ["docs/scenario_reference.md", "docs/published_ranges.md", "docs/laboratory_tables.md"]
+)
 def test_generated_tables_are_what_the_program_says(name: str) -> None:
     text = page(name)
     generator = text.split("```python\n")[-1].split("```")[0]
