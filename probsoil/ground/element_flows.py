@@ -213,10 +213,12 @@ class OneDimensionalFlow(AtYield):
         square = self.clay.slope(ratio) ** 2
         gap, bend = square - ratio**2, 2.0 * ratio / (square + ratio**2)
         above = (lam - kap) * bend * (3.0 * ratio - gap) + kap / (2.0 * stiffness) * gap
-        with np.errstate(divide="ignore", invalid="ignore"):
-            plain = above * left / rest_polynomial(self.clay, self.clay.slope(ratio), ratio)[0]
-            near = above / self._quotient(left)
-        return np.where(ratio * self.end[:, None] >= 0.0, near, plain)
+        near = above / self._quotient(left)
+        across = ratio * self.end[:, None] < 0.0
+        if not across.any():
+            return np.asarray(near)
+        # before q changes its sign M is another, and the polynomial too
+        return np.where(across, above * left / rest_polynomial(self.clay, np.sqrt(square), ratio), near)
 
     def driven(self, running: FloatArray, ratio: FloatArray) -> FloatArray:
         """See `Flow.driven`."""
@@ -232,20 +234,21 @@ class OneDimensionalFlow(AtYield):
         return np.asarray(self.mean_stress[:, None] * np.exp(running + 0.0 * ratio))
 
     def _quotient(self, left: FloatArray) -> FloatArray:
-        """Polynomial over the way left, expanded about the end."""
-        value, first, second, third = rest_polynomial(
-            self.clay, self.clay.slope(self.end), self.end, clipped=True
-        )
+        """Polynomial over the way left, expanded about the end: zero there unless the range ends."""
+        clay, end, slope = self.clay, self.end, self.clay.slope(self.end)
+        side = 0.5 * clay.kap / clay.shear_to_bulk
+        first = -2.0 * clay.lam * end - 3.0 * (clay.lam - clay.kap) - side * (slope * slope - 3.0 * end * end)
+        half_second, sixth_third = 3.0 * side * end - clay.lam, side
         behind = -left
-        series = first[:, None] + behind * (second[:, None] / 2.0 + behind * third[:, None] / 6.0)
-        with np.errstate(divide="ignore", invalid="ignore"):
-            cut = np.where(value[:, None] == 0.0, 0.0, value[:, None] / left)
-        return np.asarray(cut - series)
+        series = first[:, None] + behind * (half_second[:, None] + behind * sixth_third[:, None])
+        cut = ~((end > NO_AXIAL) & (end < NO_RADIAL))
+        if not cut.any():
+            return np.asarray(-series)
+        value = np.where(cut, rest_polynomial(clay, slope, end), 0.0)[:, None]
+        return np.where(cut[:, None], value / left, 0.0) - series
 
 
-def rest_polynomial(
-    clay: CamClay, slope: FloatArray, ratio: FloatArray, *, clipped: bool = False
-) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+def rest_polynomial(clay: CamClay, slope: FloatArray, ratio: FloatArray) -> FloatArray:
     r"""Return the polynomial whose roots are the stress ratios that one-dimensional yielding keeps.
 
     Parameters
@@ -256,14 +259,11 @@ def rest_polynomial(
         M on the side of the stress ratio.
     ratio : ndarray, shape of `slope`, [-]
         Stress ratio :math:`\eta`.
-    clipped : bool
-        Whether `ratio` is a root wherever it lies within the range of stress ratios: its value is then
-        exactly zero.
 
     Returns
     -------
-    value, first, second, third : ndarray, shape of `slope`, [-]
-        The polynomial and its derivatives.
+    value : ndarray, shape of `slope`, [-]
+        The polynomial.
 
     Notes
     -----
@@ -273,11 +273,7 @@ def rest_polynomial(
     if ratio.ndim > 1:
         lam, kap, side = lam[:, None], kap[:, None], side[:, None]
     gap = slope * slope - ratio * ratio
-    value = lam * gap - 3.0 * (lam - kap) * ratio - side * ratio * gap
-    if clipped:
-        value = np.where((ratio > NO_AXIAL) & (ratio < NO_RADIAL), 0.0, value)
-    first = -2.0 * lam * ratio - 3.0 * (lam - kap) - side * (slope * slope - 3.0 * ratio * ratio)
-    return value, first, -2.0 * lam + 6.0 * side * ratio, 6.0 * side + 0.0 * ratio
+    return np.asarray(lam * gap - 3.0 * (lam - kap) * ratio - side * ratio * gap)
 
 
 def stress_ratios_kept(clay: CamClay) -> tuple[FloatArray, FloatArray, FloatArray]:
@@ -303,12 +299,12 @@ def stress_ratios_kept(clay: CamClay) -> tuple[FloatArray, FloatArray, FloatArra
 def _root(clay: CamClay, slope: FloatArray, bracket: tuple[FloatArray, FloatArray]) -> FloatArray:
     """Root within the bracket by bisection, or its far end where there is none."""
     near, far = bracket
-    positive = rest_polynomial(clay, slope, near)[0] > 0.0
-    alike = (rest_polynomial(clay, slope, far)[0] > 0.0) == positive
+    positive = rest_polynomial(clay, slope, near) > 0.0
+    alike = (rest_polynomial(clay, slope, far) > 0.0) == positive
     end = far
     for _ in range(_BISECTIONS):
         middle = 0.5 * (near + far)
-        same = (rest_polynomial(clay, slope, middle)[0] > 0.0) == positive
+        same = (rest_polynomial(clay, slope, middle) > 0.0) == positive
         near, far = np.where(same, middle, near), np.where(same, far, middle)
     return np.where(alike, end, 0.5 * (near + far))
 

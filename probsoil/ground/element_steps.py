@@ -96,23 +96,37 @@ class Step:
         """
         with np.errstate(all="ignore"):  # realisations without an answer carry not-a-number along
             stress, deviator = self._yield_point()
-            needed = self._driven_to(stress, deviator)
+            past = target - self._driven_to(stress, deviator)[:, None]
+            mean, shear = self._elastic(target)
+            if not (past > 0.0).any():
+                return self._within(mean, shear)
             flow = self._flow(stress, deviator)
             table = passage(flow, n_panel)
-            past = target - needed[:, None]
             running, ratio = table.reached(np.maximum(past, 0.0))
-            elastic_stress, elastic_deviator = self._elastic(target)
             yields = past > 0.0
-            mean = np.where(yields, flow.mean_stress_at(running, ratio), elastic_stress)
+            mean = np.where(yields, flow.mean_stress_at(running, ratio), mean)
             size = np.where(yields, mean * self.clay.ellipse_ratio(ratio), self.state.yield_size[:, None])
             return Travelled(
                 mean_stress=mean,
-                deviator=np.where(yields, ratio * mean, elastic_deviator),
+                deviator=np.where(yields, ratio * mean, shear),
                 yield_size=size,
                 void_ratio=self._void_ratio(mean, size),
                 dry=(np.abs(flow.start) > self.clay.slope(flow.start)) & yields.any(axis=1),
                 jumps=table.falls_back(past),
             )
+
+    def _within(self, mean: FloatArray, shear: FloatArray) -> Travelled:
+        """Answer of a run in which no realisation yields."""
+        size = self.state.yield_size[:, None] + 0.0 * mean
+        never = np.zeros(self.clay.n_sample, dtype=bool)
+        return Travelled(
+            mean_stress=mean,
+            deviator=shear,
+            yield_size=size,
+            void_ratio=self._void_ratio(mean, size),
+            dry=never,
+            jumps=never,
+        )
 
     def _void_ratio(self, mean: FloatArray, size: FloatArray) -> FloatArray:
         """Void ratio on its elastic line, which moves with the size of the ellipse: exact."""
