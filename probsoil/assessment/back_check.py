@@ -16,7 +16,13 @@ from probsoil.assessment.measured_bands import BandCurve, band_curve
 from probsoil.assessment.specimen_parameters import SpecimenParameters
 from probsoil.errors import ParameterError
 from probsoil.ground.cam_clay import CamClay, consolidated_state
-from probsoil.ground.element_paths import ElementPath, oedometer_path, state_at_rest, triaxial_path
+from probsoil.ground.element_paths import (
+    ElementPath,
+    elastic_slope,
+    oedometer_path,
+    state_at_rest,
+    triaxial_path,
+)
 from probsoil.laboratory.sheets import OedometerSheet, TriaxialSheet
 
 if TYPE_CHECKING:
@@ -79,7 +85,7 @@ class BackCheck:
     realisations : int, [-]
         Number of draws.
     without_answer : int, [-]
-        Draws without an answer: kappa not below lambda, M beyond its range, or no radial stress left.
+        Draws without an answer: kappa too near lambda, M beyond its range, or no radial stress left.
     dry_share : float, [-]
         Share of the others that yield first dry of critical.
     """
@@ -157,7 +163,9 @@ def back_check(
 
     Notes
     -----
-    An oedometer starts at its first reading, from a history at rest up to the preconsolidation stress with
+    Kappa of the parameters is the slope of one-dimensional swelling, as interpretation and forecast have it;
+    the element is given the larger one against mean stress that belongs to it (`elastic_slope`). An
+    oedometer starts at its first reading, from a history at rest up to the preconsolidation stress with
     the earth pressure of the model. A triaxial test starts from its consolidation stresses and the ellipse
     through the preconsolidation stress with Jaky's earth pressure, as the forecast of strength has it.
     """
@@ -189,16 +197,20 @@ def back_check(
 def _drawn(parameters: SpecimenParameters, options: BackCheckOptions, number: int) -> _Drawn:
     generator = np.random.default_rng(np.random.SeedSequence(options.seed, spawn_key=(_STAGE, number)))
     values = parameters.values(generator.standard_normal((options.realisations, 4)))
-    lam, kap, m, stress = values.T
-    usable = (kap < lam) & (m < 3.0)
-    if not usable.any():
+    values = values[(values[:, 1] < values[:, 0]) & (values[:, 2] < 3.0)]
+    if not len(values):
         raise ParameterError("parameters: in no realisation is kappa below lambda and M below 3")
+    lam, swelling, m, stress = values.T
+    kap = elastic_slope(swelling, lam, m, poisson=options.poisson)
+    usable = np.isfinite(kap)
+    if not usable.any():
+        raise ParameterError("parameters: in no realisation does the element swell as stated by kappa")
     clay = CamClay(lam=lam[usable], kap=kap[usable], m=m[usable], poisson=options.poisson)
     return _Drawn(
         clay=clay,
         preconsolidation=stress[usable],
         generator=generator,
-        refused=int((~usable).sum()),
+        refused=options.realisations - clay.n_sample,
     )
 
 

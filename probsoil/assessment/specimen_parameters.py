@@ -8,7 +8,7 @@ from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import DependenceError, ParameterError, ShapeError
 
 PARAMETERS = ("lambda", "kappa", "M", "preconsolidation_stress")
-"""The parameters of an element, in the order of every array here."""
+"""The parameters, in the order of every array here; kappa is the slope of one-dimensional swelling."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

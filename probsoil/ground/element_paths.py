@@ -20,6 +20,8 @@ from probsoil.ground.element_steps import DrainedStep, OneDimensionalStep, Trave
 if TYPE_CHECKING:
     import pandas as pd
 
+_SLOPE_STEPS = 30  # of a contraction; a few are enough unless kappa is near lambda
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class ElementPath(Travelled):
@@ -238,6 +240,51 @@ def earth_pressure_at_rest(clay: CamClay) -> FloatArray:
     """
     ratio = stress_ratios_kept(clay)[1]
     return np.asarray((3.0 - ratio) / (3.0 + 2.0 * ratio))
+
+
+def elastic_slope(
+    swelling: ArrayLike, lam: ArrayLike, m: ArrayLike, *, poisson: ArrayLike = 0.3, unloading: float = 4.0
+) -> FloatArray:
+    r"""Return the kappa of the model that gives a measured slope of one-dimensional swelling.
+
+    Parameters
+    ----------
+    swelling : array_like, shape (n,), [-]
+        Rise of void ratio per unit of ln of the axial stress in an oedometer.
+    lam, m : array_like, shape (n,), [-]
+        Lambda and M.
+    poisson : array_like, shape (n,) or (), [-]
+        Poisson's ratio.
+    unloading : float, [-]
+        Axial stress before unloading over that after it, over which the slope was read.
+
+    Returns
+    -------
+    kap : ndarray, shape (n,), [-]
+        Slope against ln p'; not a number where none below `lam` gives the measured slope.
+
+    Raises
+    ------
+    ParameterError
+        If a number is out of its range.
+
+    Notes
+    -----
+    Unloaded without radial strain the radial stress falls less than the axial one, so ln p' falls less than
+    ln of the axial stress: kappa is larger than the slope, by about 1.7 for a fourfold unloading. Elastic
+    from the virgin line, with the earth pressure of the model, which itself depends on kappa; a clay that
+    yields in extension so soon (low M and Poisson's ratio) swells more.
+    """
+    slope, ones = checked("swelling", swelling, above=0.0), np.ones(np.shape(np.atleast_1d(swelling)))
+    largest, m_all, nu = (np.asarray(one) * ones for one in (checked("lam", lam, above=0.0), m, poisson))
+    kap = np.minimum(slope * ones, 0.99 * largest)
+    for _ in range(_SLOPE_STEPS):
+        clay = CamClay(lam=largest, kap=kap, m=m_all, poisson=nu)
+        axial = 1.0 + stress_ratios_kept(clay)[1] / 1.5  # over the mean stress, on the virgin line
+        fallen = (1.0 - 1.0 / unloading) * axial / (1.0 + clay.shear_to_bulk / 0.75)
+        wanted = slope * np.log(unloading) / -np.log1p(-np.minimum(fallen, 1.0))
+        kap = np.minimum(wanted, 0.99 * largest)
+    return np.where(wanted < 0.99 * largest, wanted, np.nan)
 
 
 def _log_strain(axial_strain: ArrayLike) -> tuple[FloatArray, float]:

@@ -4,7 +4,7 @@ import numpy as np
 
 from probsoil.assessment.specimen_parameters import specimen_parameters
 from probsoil.ground.cam_clay import CamClay, consolidated_state
-from probsoil.ground.element_paths import oedometer_path, state_at_rest, triaxial_path
+from probsoil.ground.element_paths import elastic_slope, oedometer_path, state_at_rest, triaxial_path
 from probsoil.laboratory.sheets import OedometerSheet, Origin, Place, TriaxialSheet
 
 MEAN = np.array([0.30, 0.045, 1.05, 60.0])
@@ -21,8 +21,8 @@ STRAINS = np.array([0.0005, 0.001, 0.002, 0.0035, 0.005, 0.0075, 0.01, 0.015, 0.
 
 
 def clay(values: np.ndarray) -> CamClay:
-    lam, kap, m, _ = np.atleast_2d(values).T
-    return CamClay(lam=lam, kap=kap, m=m)
+    lam, swelling, m, _ = np.atleast_2d(values).T
+    return CamClay(lam=lam, kap=elastic_slope(swelling, lam, m), m=m)
 
 
 def oedometer(void_ratio: np.ndarray, stress: np.ndarray = STRESSES, **more: float) -> OedometerSheet:

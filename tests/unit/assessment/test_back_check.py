@@ -219,6 +219,9 @@ def test_realisations_without_an_answer_are_counted() -> None:
     hopeless = specimen_parameters([0.05, 0.25, 1.05, 60.0], [0.001, 0.001, 0.06, 9.0])
     with pytest.raises(ParameterError, match="in no realisation is kappa below lambda"):
         back_check(oedometer(void_ratios(MEDIAN)), hopeless)
+    steep = specimen_parameters([0.25, 0.24, 1.05, 60.0], [0.0] * 4)
+    with pytest.raises(ParameterError, match="in no realisation does the element swell as stated"):
+        back_check(oedometer(void_ratios(MEDIAN)), steep)
 
 
 def test_no_answer_at_all_is_refused() -> None:

@@ -14,6 +14,7 @@ from probsoil.ground.cam_clay import (
 )
 from probsoil.ground.element_paths import (
     earth_pressure_at_rest,
+    elastic_slope,
     oedometer_path,
     state_at_rest,
     triaxial_path,
@@ -279,6 +280,19 @@ def test_where_the_radial_stress_would_vanish_there_is_no_answer_and_others_go_o
     path = oedometer_path(clay, state, [30.0, 600.0, 20.0])
     assert np.isnan(path.void_ratio[0]).all()
     assert np.isfinite(path.void_ratio[1]).all()
+
+
+def test_the_slope_of_one_dimensional_swelling_is_the_one_asked_for() -> None:
+    swelling, lam = np.array([0.03, 0.05, 0.1, 0.02]), np.array([0.25, 0.3, 0.3, 0.6])
+    kap = elastic_slope(swelling, lam, [0.9, 1.2, 1.0, 1.3])
+    assert (kap > swelling).all()
+    clay = CamClay(lam=lam, kap=kap, m=[0.9, 1.2, 1.0, 1.3])
+    path = oedometer_path(clay, state_at_rest(clay, 100.0, 100.0, 1.5), [25.0])
+    np.testing.assert_allclose((path.void_ratio[:, 0] - 1.5) / np.log(4.0), swelling, rtol=1e-9)
+
+
+def test_no_kappa_below_lambda_gives_too_steep_a_swelling() -> None:
+    assert np.isnan(elastic_slope([0.28], [0.3], [1.0])).all()
 
 
 def test_history_at_rest_gives_the_strength_of_the_forecast() -> None:
