@@ -157,6 +157,15 @@ def test_edge_is_told_from_a_curve():
     assert not second_order(state, first_order(state)).smooth[0]
 
 
+def test_no_curvature_where_the_limit_is_flat_or_has_no_number():
+    first = first_order(limit(lambda u: 3.0 - u[:, 0], 2))
+    flat = second_order(limit(lambda u: 1.0 + 0.0 * u[:, 0], 2), first)
+    broken = second_order(limit(lambda u: np.where(np.abs(u[:, 1]) > 0.01, np.nan, 3.0 - u[:, 0]), 2), first)
+    for found in (flat, broken):
+        assert np.isnan(found.breitung[0])
+        assert not found.smooth[0]
+
+
 def test_sphere_bends_too_sharply_for_the_formula():
     state = limit(lambda u: 25.0 - (u**2).sum(axis=1), 2)
     found = second_order(state, first_order(state))

@@ -190,6 +190,14 @@ def test_pursuit_passes_over_terms_that_say_the_same():
     np.testing.assert_allclose(coefficients, [0.0, 3.0, 0.0, 0.0], atol=1e-12)
 
 
+def test_pursuit_ends_where_the_terms_do():
+    values = np.random.default_rng(3).standard_normal(30)
+    only = matching_pursuit(np.ones((1, 30)), values)
+    assert only.coefficients[0] == pytest.approx(values.mean())
+    beside = np.stack([np.ones(30), np.ones(30), np.zeros(30)])  # nothing new after the first
+    assert matching_pursuit(beside, values).terms.tolist() == [0]
+
+
 def test_leave_one_out_error_is_that_of_leaving_one_out():
     """The leverages against fits with each point left out, for the terms that were chosen."""
     u = normals(40, 2)
