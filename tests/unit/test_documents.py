@@ -75,6 +75,6 @@ def test_dependencies_the_program_imports_are_declared() -> None:
         for found in re.findall(r"^\s*(?:from|import) (\w+)", path.read_text(encoding="utf-8"), re.MULTILINE)
     }
     others = {"numpy", "scipy", "pandas", "matplotlib", "numba", "pydantic", "pint", "typer", "rich"}
-    others |= {"jinja2", "python_calamine"}
+    others |= {"jinja2", "python_calamine", "chaospy"}
     assert names == others
     assert others <= imported
