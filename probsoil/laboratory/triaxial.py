@@ -110,10 +110,9 @@ class TriaxialResult:
         if failure is None or not np.isfinite(failure.mean_stress) or failure.mean_stress < _SMALL_STRESS:
             return None
         relative = math.hypot(PRESSURE_ERROR / abs(failure.deviator), PRESSURE_ERROR / failure.mean_stress)
-        try:
-            value = compression_slope(friction_angle(failure.ratio, extension=self.extension))
-        except ValueError:
+        if failure.ratio >= greatest_slope(extension=self.extension):
             return None
+        value = compression_slope(friction_angle(failure.ratio, extension=self.extension))
         return Estimate(value=value, standard_error=value * relative)
 
     @property
@@ -202,6 +201,22 @@ def friction_angle(slope: float, *, extension: bool = False) -> float:
     return math.asin(3.0 * slope / (6.0 - slope if extension else 6.0 + slope))
 
 
+def greatest_slope(*, extension: bool) -> float:
+    """Return the stress ratio that no ground without cohesion reaches: a friction angle of 90 degrees.
+
+    Parameters
+    ----------
+    extension : bool
+        Whether in extension.
+
+    Returns
+    -------
+    slope : float, [-]
+        3 in compression, 1.5 in extension.
+    """
+    return 1.5 if extension else 3.0
+
+
 def compression_slope(angle: float) -> float:
     """Return M in compression of a friction angle.
 
@@ -253,6 +268,8 @@ def interpreted_triaxial(
         pushed = np.where(readable, (-1.0 if sheet.kind.endswith("E") else 1.0) * sheet.deviator, -np.inf)
         peak = _failure(sheet, path, int(np.argmax(pushed)))
         ratio = _greatest_ratio(sheet, path, pushed)
+        if ratio is not None and ratio.ratio >= greatest_slope(extension=sheet.kind.endswith("E")):
+            remarks.append("M: a stress ratio no friction gives: pore pressures or stresses are wrong")
         if readable.sum() == 1:
             remarks.append("only the state at failure is given: both definitions of failure are that one")
         elif _still_rises(pushed[readable]):

@@ -9,7 +9,7 @@ import synthetic_tests as drawn
 from probsoil.laboratory.compression_curve import branches, two_branch_fit
 from probsoil.laboratory.disturbance import disturbance
 from probsoil.laboratory.oedometer import OedometerResult, interpreted_oedometer
-from probsoil.laboratory.preconsolidation import casagrande, log_log, work
+from probsoil.laboratory.preconsolidation import casagrande, log_log, preconsolidation_stress, work
 from probsoil.laboratory.sheets import OedometerSheet, TimeReadings
 
 LAM, KAPPA, YIELD, E0 = 0.30, 0.03, 100.0, 1.5
@@ -265,3 +265,45 @@ def test_increment_that_cannot_be_read_gives_the_reason(readings: TimeReadings, 
     result = interpreted_oedometer(sheet(LOADS, time_readings=(*empty, readings)))
     assert reason in " ".join(result.remarks)
     assert "320 to 640 kPa" in " ".join(result.remarks)
+
+
+def test_constructions_that_cannot_be_made_say_why() -> None:
+    stress = np.array(LOADS)
+    flattening = 1.4 - np.array([0.0, 0.3, 0.5, 0.62, 0.70, 0.75, 0.78])
+    drawn_by_hand = casagrande(stress, flattening)
+    assert drawn_by_hand.stress is None
+    assert "no point of greatest curvature" in drawn_by_hand.reason
+    straight = np.expm1(1.0 - 0.125 * np.arange(7.0))  # steps of one size, exact in binary
+    doubling = np.exp(np.arange(7.0))
+    parallel = log_log(doubling, straight)
+    assert parallel.stress is None
+    assert "do not meet" in parallel.reason
+    assert work(stress, flattening, 1.5).points.shape == (7, 2)
+
+
+def test_fit_stands_where_no_construction_does() -> None:
+    fit = two_branch_fit(np.array(LOADS), curve(np.array(LOADS)), 0.003)
+    assert not isinstance(fit, str)
+    nothing = casagrande(np.array(LOADS), 1.4 - np.array([0.0, 0.3, 0.5, 0.62, 0.70, 0.75, 0.78]))
+    found = preconsolidation_stress(fit, (nothing, nothing, nothing), np.array(LOADS), E0)
+    assert found.value == pytest.approx(np.exp(fit.ln_break.value))
+    assert found.relative_error == pytest.approx(fit.ln_break.standard_error)
+
+
+def test_one_virgin_increment_without_cv_gives_the_reason() -> None:
+    steady = TimeReadings(time=drawn.TIMES, compression=np.zeros(15))
+    empty: list[TimeReadings | None] = [None] * (len(LOADS) - 1)
+    result = interpreted_oedometer(sheet(LOADS, time_readings=(*empty, steady)))
+    assert result.time.cv is None
+    assert "no virgin increment whose compression against time can be read" in " ".join(result.remarks)
+
+
+def test_one_way_drainage_makes_the_path_twice_as_long() -> None:
+    whole, _ = drawn.oedometer(np.random.default_rng(4))
+    readings, _, _ = drawn.time_readings(np.random.default_rng(4))
+    timed = (*[None] * 13, readings, None, None, None)
+    both, one = (
+        interpreted_oedometer(replace(whole, time_readings=timed, two_way=way)).increments[0].curve.path
+        for way in (True, False)
+    )
+    assert one == pytest.approx(2.0 * both)

@@ -229,3 +229,9 @@ def test_a_test_that_gives_nothing_is_still_drawn() -> None:
     drained = replace(site.triaxials[0], kind="UU", axial_stress=np.nan, radial_stress=np.nan)
     done = interpreted_site(SiteSheets(oedometers=(short,), triaxials=(drained,), cones=site.cones))
     assert len(interpretation_figures(done)) == 3
+
+
+def test_numbers_at_one_depth_have_no_line_with_depth() -> None:
+    rows = [replace(one, depth=3.0) for one in rows_of([20.0] * 8 + [60.0], "su")]
+    assert [bool(one.flag) for one in flagged(rows)] == [False] * 8 + [True]
+    assert not any(one.flag for one in flagged([replace(one, value=0.0) for one in rows]))

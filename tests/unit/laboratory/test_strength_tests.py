@@ -112,6 +112,7 @@ def test_friction_angle_and_slope_undo_each_other() -> None:
         ({"axial_strain": np.array([0.0, 0.04, 0.01, 0.1])}, "does not go on in one direction"),
         ({"deviator": np.array([0.0, -10.0, -20.0, -30.0])}, "no deviator in the direction"),
         ({"deviator": np.array([40.0, 50.0, 60.0, 70.0])}, "still rises at the last reading"),
+        ({"pore_pressure_change": np.array([0.0, 10.0, 20.0, 75.0])}, "a stress ratio no friction gives"),
         ({"pore_pressure_change": np.full(4, NAN)}, "pore pressure or consolidation stress is missing"),
     ],
 )
