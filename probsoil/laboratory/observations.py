@@ -107,12 +107,13 @@ def observation(
         One row.
     """
     name, place = test
+    located = place.x is not None and place.y is not None  # half a position is none
     return Observation(
         kind=kind,
         test=name,
         hole=place.hole,
-        x=place.x,
-        y=place.y,
+        x=place.x if located else None,
+        y=place.y if located else None,
         layer="",
         depth=place.depth,
         parameter=parameter,

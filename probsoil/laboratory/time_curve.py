@@ -170,7 +170,9 @@ def _tail(
         if slope > 0.5 * tangent[1]:
             raise _Unfit("no tail: the readings end before the curve flattens")
         crossing = (intercept - tangent[0]) / (tangent[1] - slope)
-        first = min(int(np.searchsorted(log, crossing + np.log10(_TAIL))), log.size - 2)
+        used, first = first, min(int(np.searchsorted(log, crossing + np.log10(_TAIL))), log.size - 2)
+        if first == used:
+            break
     if log[-2] < crossing + np.log10(_TAIL) - 1e-9:
         raise _Unfit("no tail: fewer than two readings after primary consolidation")
     return crossing, (intercept, slope)
@@ -207,8 +209,11 @@ def root_time(time: FloatArray, compression: FloatArray) -> RootTime:
     """
     root = np.sqrt(time)
     start, end = float(compression[0]), float(compression[-1])
+    early = np.zeros(root.size, dtype=bool)
     for _ in range(6):
-        early = compression <= start + _STRAIGHT * (end - start)
+        used, early = early, compression <= start + _STRAIGHT * (end - start)
+        if np.array_equal(used, early):
+            break
         if early.sum() < 3:
             raise _Unfit("fewer than three readings on the straight part against the root of time")
         start, slope = (float(one) for one in _line(root[early], compression[early]))

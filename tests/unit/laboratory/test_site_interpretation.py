@@ -147,6 +147,11 @@ def test_a_number_that_stands_apart_is_flagged_and_kept() -> None:
     assert "1.97 times what is usual in clay" in found[4].flag
 
 
+def test_half_a_position_is_none() -> None:
+    row = observation("cone", ("C1", Place(hole="C1", depth=2.0, x=4.0)), "q_net", 200.0, None)
+    assert (row.x, row.y) == (None, None)
+
+
 def test_few_numbers_and_other_layers_flag_nothing() -> None:
     assert not any(one.flag for one in flagged(rows_of([0.3, 0.3, 0.3, 0.9])))
     mixed = [replace(one, layer="other") if one.value > 0.5 else one for one in rows_of([0.3] * 5 + [0.9])]
@@ -172,7 +177,9 @@ def test_tables_have_units_and_every_test(done: Interpretation) -> None:
 
 
 def test_page_stands_alone_and_figures_have_words(done: Interpretation, tmp_path: Path) -> None:
-    few = replace(done, oedometers=done.oedometers[:1], triaxials=done.triaxials[:1])
+    first = done.oedometers[0]
+    short = replace(first, increments=first.increments[-1:])
+    few = replace(done, oedometers=(short,), triaxials=done.triaxials[:1])
     page = write_interpretation(few, tmp_path / "new")
     text = page.read_text(encoding="utf-8")
     assert "<script" not in text
