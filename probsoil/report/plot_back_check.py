@@ -1,10 +1,10 @@
 """A measured curve on the band of its back-check."""
 
-from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
 
+from probsoil._typing import BoolArray
 from probsoil.assessment.back_check import BackCheck
 from probsoil.assessment.measured_bands import BandCurve
 from probsoil.report.alttext import Words
@@ -71,16 +71,21 @@ def _draw(axis: "Axes", curve: BandCurve) -> None:
     oedometer = curve.quantity == "void_ratio"
     across = curve.at if oedometer else 100.0 * curve.at
     up = 100.0 if curve.quantity == "volumetric_strain" else 1.0
-    for first, last in pairwise(_turns(across)):
-        part = slice(first, last + 1)
-        axis.fill_between(
-            across[part],
-            up * curve.low[part],
-            up * curve.high[part],
-            color=LIGHT["haze"],
-            lw=0,
-            label="5 to 95 %",
-        )
+    filled = _filled(curve)
+    axis.fill_between(
+        across[filled],
+        up * curve.low[filled],
+        up * curve.high[filled],
+        color=LIGHT["haze"],
+        lw=0,
+        label="5 to 95 %",
+    )
+    back = ~filled
+    if back.any():
+        axis.vlines(
+            across[back], up * curve.low[back], up * curve.high[back],
+            color=LIGHT["band"], lw=3.0, label="the same, unloaded or reloaded",
+        )  # fmt: skip
     axis.plot(across, up * curve.median, color=LIGHT["main"], lw=1.6, label="median")
     outside = curve.counted & ~curve.inside
     rest = ~outside
@@ -96,7 +101,9 @@ def _draw(axis: "Axes", curve: BandCurve) -> None:
     axis.grid(visible=True)
 
 
-def _turns(across: np.ndarray) -> list[int]:
-    """Places where the test turns, its ends among them: the band is filled between two of them."""
-    change = np.sign(np.diff(across))
-    return [0, *(np.flatnonzero(change[1:] != change[:-1]) + 1).tolist(), across.size - 1]
+def _filled(curve: BandCurve) -> BoolArray:
+    """Choose the readings between which the band is filled: of an oedometer those of first loading."""
+    if curve.quantity != "void_ratio":
+        return np.ones(curve.at.size, dtype=bool)
+    greatest = np.maximum.accumulate(curve.at)
+    return np.concatenate([[True], curve.at[1:] > greatest[:-1]])
