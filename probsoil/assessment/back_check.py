@@ -5,7 +5,7 @@ Modified Cam clay. Their band stands against the measured curve; where the curve
 the theory page say what that looks like.
 """
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -15,7 +15,7 @@ from probsoil.assessment.departures import departures
 from probsoil.assessment.measured_bands import BandCurve, band_curve
 from probsoil.assessment.specimen_parameters import SpecimenParameters
 from probsoil.errors import ParameterError
-from probsoil.ground.cam_clay import CamClay, consolidated_state
+from probsoil.ground.cam_clay import CamClay, ClayState, consolidated_state
 from probsoil.ground.element_paths import (
     ElementPath,
     elastic_slope,
@@ -116,12 +116,12 @@ class BackCheck:
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class _Drawn:
-    """Realisations of the clay and of the errors of reading."""
+    """Realisations of the clay, and the generator of the errors of reading."""
 
     clay: CamClay
     preconsolidation: FloatArray
-    generator: np.random.Generator = field(repr=False)
-    refused: int = 0
+    generator: np.random.Generator
+    options: BackCheckOptions
 
     def errors(self, count: int) -> FloatArray:
         return self.generator.standard_normal((self.clay.n_sample, count))
@@ -163,18 +163,20 @@ def back_check(
 
     Notes
     -----
-    Kappa of the parameters is the slope of one-dimensional swelling, as interpretation and forecast have it;
-    the element is given the larger one against mean stress that belongs to it (`elastic_slope`). An
-    oedometer starts at its first reading, from a history at rest up to the preconsolidation stress with
-    the earth pressure of the model. A triaxial test starts from its consolidation stresses and the ellipse
-    through the preconsolidation stress with Jaky's earth pressure, as the forecast of strength has it.
+    Every parameter enters as the forecast uses it. Kappa is the slope of one-dimensional swelling: an
+    oedometer is given the larger one against mean stress that swells so (`elastic_slope`), a triaxial test
+    the stated one, so that its strength is that of Lambda = 1 - kappa/lambda. An oedometer starts at its
+    first reading, with the ellipse of a history at rest up to the preconsolidation stress and a radial stress
+    anywhere between that history's and the axial one. A triaxial test starts from its consolidation stresses
+    and the ellipse through the preconsolidation stress with Jaky's earth pressure, as the forecast of
+    strength has it.
     """
     said = BackCheckOptions() if options is None else options
-    drawn = _drawn(parameters, said, number)
+    drawn = _drawn(parameters, said, number, one_dimensional=isinstance(sheet, OedometerSheet))
     if isinstance(sheet, OedometerSheet):
         path, curves = _oedometer(sheet, drawn)
     else:
-        path, curves = _triaxial(sheet, drawn, said, void_ratio)
+        path, curves = _triaxial(sheet, drawn, void_ratio)
     answered = np.isfinite(path.void_ratio).all(axis=1)
     if not answered.any():
         raise ParameterError(f"{sheet.test}: no realisation of the parameters has an answer along this test")
@@ -189,36 +191,33 @@ def back_check(
         words=departures(curves, parameters, dry_share=dry),
         parameters=parameters,
         realisations=said.realisations,
-        without_answer=int((~answered).sum()) + drawn.refused,
+        without_answer=said.realisations - int(answered.sum()),
         dry_share=dry,
     )
 
 
-def _drawn(parameters: SpecimenParameters, options: BackCheckOptions, number: int) -> _Drawn:
+def _drawn(
+    parameters: SpecimenParameters, options: BackCheckOptions, number: int, *, one_dimensional: bool
+) -> _Drawn:
     generator = np.random.default_rng(np.random.SeedSequence(options.seed, spawn_key=(_STAGE, number)))
     values = parameters.values(generator.standard_normal((options.realisations, 4)))
     values = values[(values[:, 1] < values[:, 0]) & (values[:, 2] < 3.0)]
     if not len(values):
         raise ParameterError("parameters: in no realisation is kappa below lambda and M below 3")
-    lam, swelling, m, stress = values.T
-    kap = elastic_slope(swelling, lam, m, poisson=options.poisson)
+    lam, kap, m, stress = values.T
+    if one_dimensional:
+        kap = elastic_slope(kap, lam, m, poisson=options.poisson)
     usable = np.isfinite(kap)
     if not usable.any():
         raise ParameterError("parameters: in no realisation does the element swell as stated by kappa")
     clay = CamClay(lam=lam[usable], kap=kap[usable], m=m[usable], poisson=options.poisson)
-    return _Drawn(
-        clay=clay,
-        preconsolidation=stress[usable],
-        generator=generator,
-        refused=options.realisations - clay.n_sample,
-    )
+    return _Drawn(clay=clay, preconsolidation=stress[usable], generator=generator, options=options)
 
 
 def _oedometer(sheet: OedometerSheet, drawn: _Drawn) -> tuple[ElementPath, tuple[BandCurve, ...]]:
     if sheet.stress.size < 3:
         raise ParameterError(f"{sheet.test}: at least 3 increments are needed; got {sheet.stress.size}")
-    start = state_at_rest(drawn.clay, sheet.stress[0], drawn.preconsolidation, sheet.void_ratio[0])
-    path = oedometer_path(drawn.clay, start, sheet.stress)
+    path = oedometer_path(drawn.clay, _in_the_ring(sheet, drawn), sheet.stress)
     errors = sheet.reading_sd * drawn.errors(sheet.stress.size)
     # the first reading sets where the element starts, its error with it
     predicted = path.void_ratio + errors - errors[:, :1]
@@ -226,8 +225,22 @@ def _oedometer(sheet: OedometerSheet, drawn: _Drawn) -> tuple[ElementPath, tuple
     return path, (band_curve("void_ratio", sheet.stress, sheet.void_ratio, predicted, counted=counted),)
 
 
+def _in_the_ring(sheet: OedometerSheet, drawn: _Drawn) -> ClayState:
+    """State at the first reading: nobody knows how much of the radial stress of its history was left."""
+    axial = float(sheet.stress[0])
+    history = state_at_rest(drawn.clay, axial, drawn.preconsolidation, sheet.void_ratio[0])
+    left = drawn.generator.uniform(size=drawn.clay.n_sample)
+    radial = axial + left * (history.radial_stress - axial)
+    return ClayState(
+        mean_stress=(axial + 2.0 * radial) / 3.0,
+        deviator=axial - radial,
+        void_ratio=history.void_ratio,
+        yield_size=history.yield_size,
+    )
+
+
 def _triaxial(
-    sheet: TriaxialSheet, drawn: _Drawn, options: BackCheckOptions, void_ratio: float | None
+    sheet: TriaxialSheet, drawn: _Drawn, void_ratio: float | None
 ) -> tuple[ElementPath, tuple[BandCurve, ...]]:
     start_void_ratio = sheet.initial_void_ratio
     if not np.isfinite(start_void_ratio):
@@ -235,7 +248,7 @@ def _triaxial(
     strain = _shear_strain(sheet, start_void_ratio)
     stresses = (sheet.axial_stress, sheet.radial_stress)
     state = consolidated_state(drawn.clay, stresses, drawn.preconsolidation, start_void_ratio)
-    drained = sheet.kind[2] == "D"
+    drained, options = sheet.kind[2] == "D", drawn.options
     path = triaxial_path(drawn.clay, state, strain, drained=drained)
     readings = [("deviator", sheet.deviator, path.deviator, options.stress_error)]
     if drained:

@@ -9,6 +9,7 @@ import typer
 from probsoil.cli._options import one_of, words_of
 
 if TYPE_CHECKING:
+    from probsoil.assessment.site_back_check import SiteBackChecks
     from probsoil.laboratory.interpretation import Interpretation
 
 
@@ -70,6 +71,7 @@ def interpret(  # noqa: PLR0913 - one argument for each option of the command
         )
     if water_table is not None and unit_weight is None:
         raise typer.BadParameter("give --unit-weight too", param_hint="--water-table")
+    from probsoil.assessment.site_back_check import site_back_checks
     from probsoil.campaign import locked_folder
     from probsoil.cli._log import logged_run
     from probsoil.cli._output import answering
@@ -86,23 +88,24 @@ def interpret(  # noqa: PLR0913 - one argument for each option of the command
     )
     with logged_run(out, context.obj["command"], quiet=quiet) as log:
         done = rooms.interpret(data, layers=layers, keep_good_rows=keep_good_rows, choices=choices)
+        checks = site_back_checks(done)
         with locked_folder(out):
             log.begin()
-            _log_remarks(done)
-            page = write_interpretation(done, out)
+            _log_remarks((*done.remarks, *checks.remarks))
+            page = write_interpretation(done, out, checks)
         with answering():
             if not quiet:
-                _print_gist(done, page)
+                _print_gist(done, checks, page)
 
 
-def _log_remarks(done: "Interpretation") -> None:
+def _log_remarks(remarks: tuple[str, ...]) -> None:
     import logging
 
-    for words in done.remarks:
+    for words in remarks:
         logging.getLogger("probsoil").info("%s", words)
 
 
-def _print_gist(done: "Interpretation", page: Path) -> None:
+def _print_gist(done: "Interpretation", checks: "SiteBackChecks", page: Path) -> None:
     from probsoil.cli._output import answer_console, counted, print_table
     from probsoil.report.interpretation_tables import gist_rows
 
@@ -112,7 +115,10 @@ def _print_gist(done: "Interpretation", page: Path) -> None:
     doubtful = [one for one in done.observations if one.flag]
     for one in doubtful:
         console.print(f"Doubtful: {one.test}, {one.parameter}, {one.depth:g} m: {one.flag}")
-    for words in done.remarks:
+    for check in checks.checks:
+        if check.words:
+            console.print(f"Back-check: {check.test}: {check.words[-1]}")
+    for words in (*done.remarks, *checks.remarks):
         console.print(f"Remark: {words}")
     console.print(f"Evidence: {page.with_name('evidence.csv')}", soft_wrap=True)
     console.print(f"Page: {page}", soft_wrap=True)

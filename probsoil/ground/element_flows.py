@@ -276,8 +276,8 @@ def rest_polynomial(clay: CamClay, slope: FloatArray, ratio: FloatArray) -> Floa
     return np.asarray(lam * gap - 3.0 * (lam - kap) * ratio - side * ratio * gap)
 
 
-def stress_ratios_kept(clay: CamClay) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return the stress ratios that one-dimensional yielding keeps.
+def stress_ratio_at_rest(clay: CamClay) -> FloatArray:
+    """Return the stress ratio to which one-dimensional loading tends.
 
     Parameters
     ----------
@@ -286,14 +286,43 @@ def stress_ratios_kept(clay: CamClay) -> tuple[FloatArray, FloatArray, FloatArra
 
     Returns
     -------
-    swelling, rest, upper : ndarray, shape (n,), [-]
-        To which unloading tends in extension, at least -1.5; to which loading tends, between 0 and M;
-        and that above M which parts the states that loading leads there from those it does not, at most 3.
+    ratio : ndarray, shape (n,), [-]
+        q/p' on the virgin line, between 0 and M.
     """
-    extension, zero = np.asarray(clay.m_extension), np.zeros(clay.n_sample)
-    rest = _root(clay, clay.m, (zero, clay.m))
-    upper = _root(clay, clay.m, (clay.m, zero + NO_RADIAL))
-    return _root(clay, extension, (-extension, zero + NO_AXIAL)), rest, upper
+    return _root(clay, clay.m, (np.zeros(clay.n_sample), clay.m))
+
+
+def swelling_stress_ratio(clay: CamClay) -> FloatArray:
+    """Return the stress ratio to which one-dimensional unloading tends in extension.
+
+    Parameters
+    ----------
+    clay : CamClay
+        The clay.
+
+    Returns
+    -------
+    ratio : ndarray, shape (n,), [-]
+        q/p', at least -1.5, where no axial stress is left.
+    """
+    extension = np.asarray(clay.m_extension)
+    return _root(clay, extension, (-extension, np.full(clay.n_sample, NO_AXIAL)))
+
+
+def parting_stress_ratio(clay: CamClay) -> FloatArray:
+    """Return the stress ratio above M that parts yielding states which loading leads to rest from others.
+
+    Parameters
+    ----------
+    clay : CamClay
+        The clay.
+
+    Returns
+    -------
+    ratio : ndarray, shape (n,), [-]
+        q/p', at most 3, where no radial stress is left.
+    """
+    return _root(clay, clay.m, (clay.m, np.full(clay.n_sample, NO_RADIAL)))
 
 
 def _root(clay: CamClay, slope: FloatArray, bracket: tuple[FloatArray, FloatArray]) -> FloatArray:

@@ -14,13 +14,13 @@ from probsoil.errors import ParameterError, ShapeError
 from probsoil.ground._checks import checked
 from probsoil.ground.cam_clay import CamClay, ClayState, check_compressed, check_within
 from probsoil.ground.cam_clay_flow import N_PANEL
-from probsoil.ground.element_flows import stress_ratios_kept
+from probsoil.ground.element_flows import stress_ratio_at_rest
 from probsoil.ground.element_steps import DrainedStep, OneDimensionalStep, Travelled, UndrainedStep
 
 if TYPE_CHECKING:
     import pandas as pd
 
-_SLOPE_STEPS = 30  # of a contraction; a few are enough unless kappa is near lambda
+_SLOPE_STEPS = 20  # of a contraction; a few are enough unless kappa is near lambda
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -199,7 +199,7 @@ def state_at_rest(
     one = np.ones(clay.n_sample)
     stress = checked("axial_stress", axial_stress, above=0.0) * one
     largest = np.maximum(stress, checked("preconsolidation_stress", preconsolidation_stress, above=0.0))
-    ratio = stress_ratios_kept(clay)[1]
+    ratio = stress_ratio_at_rest(clay)
     mean = largest / (1.0 + ratio / 1.5)
     volume = 1.0 + checked("void_ratio", void_ratio, above=0.0) * one
     virgin = ClayState(
@@ -238,7 +238,7 @@ def earth_pressure_at_rest(clay: CamClay) -> FloatArray:
     .. [1] D. M. Wood, Soil Behaviour and Critical State Soil Mechanics. Cambridge University Press, 1990
        (from memory, not opened).
     """
-    ratio = stress_ratios_kept(clay)[1]
+    ratio = stress_ratio_at_rest(clay)
     return np.asarray((3.0 - ratio) / (3.0 + 2.0 * ratio))
 
 
@@ -280,7 +280,7 @@ def elastic_slope(
     kap = np.minimum(slope * ones, 0.99 * largest)
     for _ in range(_SLOPE_STEPS):
         clay = CamClay(lam=largest, kap=kap, m=m_all, poisson=nu)
-        axial = 1.0 + stress_ratios_kept(clay)[1] / 1.5  # over the mean stress, on the virgin line
+        axial = 1.0 + stress_ratio_at_rest(clay) / 1.5  # over the mean stress, on the virgin line
         fallen = (1.0 - 1.0 / unloading) * axial / (1.0 + clay.shear_to_bulk / 0.75)
         wanted = slope * np.log(unloading) / -np.log1p(-np.minimum(fallen, 1.0))
         kap = np.minimum(wanted, 0.99 * largest)

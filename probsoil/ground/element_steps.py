@@ -13,7 +13,9 @@ from probsoil.ground.element_flows import (
     Flow,
     OneDimensionalFlow,
     UndrainedFlow,
-    stress_ratios_kept,
+    parting_stress_ratio,
+    stress_ratio_at_rest,
+    swelling_stress_ratio,
 )
 
 _ON_ELLIPSE = 1e-9
@@ -284,7 +286,8 @@ class OneDimensionalStep(Step):
 
     def _flow(self, stress: FloatArray, deviator: FloatArray) -> OneDimensionalFlow:
         ratio = deviator / stress
-        swelling, rest, upper = stress_ratios_kept(self.clay)
+        swelling, upper = swelling_stress_ratio(self.clay), parting_stress_ratio(self.clay)
+        rest = stress_ratio_at_rest(self.clay)
         loads = np.where((ratio > swelling) & (ratio < upper), rest, np.nan)
         end = np.where(self.direction > 0.0, loads, np.where(ratio < rest, swelling, upper))
         return OneDimensionalFlow(

@@ -1,19 +1,19 @@
 """Laws with one longer tail besides the lognormal: gamma and Gumbel."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
-from scipy.special import gammainc, gammaincc, gammainccinv, gammaincinv, log_ndtr, ndtr, ndtri_exp
+from scipy.special import gammainc, gammaincc, gammainccinv, gammaincinv, gammaln, log_ndtr, ndtr, ndtri_exp
 
 from probsoil._typing import FloatArray
-from probsoil.parameters.laws import nearer_tail_score
+from probsoil.parameters.laws import nearer_tail_score, read_table, table_nodes
 
 _REACH = 37.0  # beyond this |z| a probability underflows
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class GammaLaw:
-    """Gamma law.
+    """Gamma law, read from a table in z.
 
     Attributes
     ----------
@@ -21,10 +21,28 @@ class GammaLaw:
         Shape parameter, above zero.
     scale : float, [any]
         Mean over shape, above zero, in the parameter's unit.
+
+    Notes
+    -----
+    The table holds the logarithm of the quantile over `scale`, x, with its exact slope
+    phi(z)/(x f(x)), f being the density. The inverse itself would take twenty times as long.
     """
 
     shape: float
     scale: float
+    _log: FloatArray = field(init=False, repr=False)
+    _slope: FloatArray = field(init=False, repr=False)
+
+    def __post_init__(self) -> None:
+        z = table_nodes()
+        tail = ndtr(-np.abs(z))
+        x = np.where(z < 0.0, gammaincinv(self.shape, tail), gammainccinv(self.shape, tail))
+        log_x = np.log(x)
+        log_normal = -0.5 * z**2 - 0.5 * np.log(2.0 * np.pi)
+        object.__setattr__(self, "_log", log_x)
+        object.__setattr__(
+            self, "_slope", np.exp(log_normal - (self.shape * log_x - x - gammaln(self.shape)))
+        )
 
     @property
     def mean(self) -> float:
@@ -49,10 +67,7 @@ class GammaLaw:
         values : ndarray, shape (...,), [any]
             Values, in the parameter's unit.
         """
-        z = np.clip(z, -_REACH, _REACH)
-        tail = ndtr(-np.abs(z))
-        standard = np.where(z < 0.0, gammaincinv(self.shape, tail), gammainccinv(self.shape, tail))
-        return np.asarray(self.scale * standard)
+        return np.asarray(self.scale * np.exp(read_table(self._log, self._slope, z)))
 
     def score(self, value: float) -> float:
         """Latent standard normal at which a value lies.

@@ -65,7 +65,7 @@ def interpretation_figures(interpretation: Interpretation) -> tuple[TestFigure, 
     drawn: list[TestFigure] = []
     taken: set[str] = set()
     for kind, test, words, draw, data in _wanted(interpretation):
-        name = _free(f"{kind}-{test}", taken)
+        name = free_name(f"{kind}-{test}", taken)
         drawn.append(
             TestFigure(
                 kind=kind, test=test, name=name, words=words, svg=drawn_figure(name, words, draw, data)
@@ -131,8 +131,21 @@ def _joined(parts: Iterable[str]) -> str:
     return ", ".join(part for part in parts if part)
 
 
-def _free(wanted: str, taken: set[str]) -> str:
-    """Return a name fit for a file and not yet taken, whatever the alphabet and case of the test's own."""
+def free_name(wanted: str, taken: set[str]) -> str:
+    """Return a name fit for a file and not yet taken, whatever the alphabet and case of the test's own.
+
+    Parameters
+    ----------
+    wanted : str
+        Name to make fit.
+    taken : set of str
+        Names in use; the new one is put in.
+
+    Returns
+    -------
+    name : str
+        Lower case letters, digits and hyphens.
+    """
     plain = re.sub(r"[^a-z0-9]+", "-", wanted.lower()).strip("-")
     name, number = plain, 1
     while name in taken:

@@ -3,8 +3,10 @@
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from probsoil.assessment.site_back_check import SiteBackChecks
 from probsoil.errors import ResultsError, UnfitFolderError
 from probsoil.laboratory.interpretation import Interpretation
+from probsoil.report import back_check_section as back
 from probsoil.report.interpretation_figures import TestFigure, interpretation_figures
 from probsoil.report.interpretation_tables import interpretation_tables
 from probsoil.report.templating import content_hash, page_environment, page_style, replace_file
@@ -63,14 +65,16 @@ def require_own_folder(folder: Path) -> None:
 
 def _clear_earlier(folder: Path) -> None:
     """Take away figures and tables of an earlier interpretation, whose tests may have been others."""
-    for kind, _, names in _KINDS:
+    for kind, _, names in (*_KINDS, (back.KIND, "", back.TABLES)):
         for path in (folder / "figures").glob(f"{kind}-*.svg"):
             path.unlink()
         for name in {kind, *names}:
             (folder / "tables" / f"{name}.csv").unlink(missing_ok=True)
 
 
-def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
+def write_interpretation(
+    interpretation: Interpretation, folder: Path, checks: SiteBackChecks | None = None
+) -> Path:
     """Write evidence, tables, figures and the page of an interpretation.
 
     Parameters
@@ -79,6 +83,8 @@ def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
         The tests.
     folder : Path
         Folder to write to; made where missing.
+    checks : SiteBackChecks or None
+        Back-checks of its tests; None for none.
 
     Returns
     -------
@@ -93,7 +99,11 @@ def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
     """
     folder = Path(folder)
     frames, drawn = interpretation_tables(interpretation), interpretation_figures(interpretation)
-    page = render_interpretation(interpretation, frames, drawn)
+    checks = SiteBackChecks() if checks is None else checks
+    rechecked = back.back_check_figures(checks)
+    view = back.back_check_view(checks, rechecked)
+    page = render_interpretation(interpretation, frames, drawn, checks=view)
+    frames |= back.back_check_tables(checks)
     try:
         _clear_earlier(folder)
         for name in ("tables", "figures"):
@@ -102,7 +112,7 @@ def write_interpretation(interpretation: Interpretation, folder: Path) -> Path:
             if name != "evidence":
                 text = frame.to_csv(index=False, lineterminator="\n")
                 replace_file(folder / "tables" / f"{name}.csv", text)
-        for one in drawn:
+        for one in (*drawn, *rechecked):
             replace_file(folder / "figures" / f"{one.name}.svg", one.svg)
         replace_file(folder / EVIDENCE, interpretation.evidence())
         replace_file(folder / PAGE, page)
@@ -115,6 +125,8 @@ def render_interpretation(
     interpretation: Interpretation,
     frames: "dict[str, pd.DataFrame] | None" = None,
     drawn: tuple[TestFigure, ...] | None = None,
+    *,
+    checks: dict[str, Any] | None = None,
 ) -> str:
     """Render the page of an interpretation.
 
@@ -126,6 +138,8 @@ def render_interpretation(
         Its tables; None to arrange them.
     drawn : tuple of TestFigure or None
         Its figures; None to draw them.
+    checks : dict or None
+        Back-checks as `back_check_view` arranges them; None for none.
 
     Returns
     -------
@@ -147,7 +161,8 @@ def render_interpretation(
             kinds=[
                 _kind(one, interpretation, frames, drawn) for one in _KINDS if _count(one[0], interpretation)
             ],
-            remarks=interpretation.remarks,
+            remarks=(*interpretation.remarks, *(checks or {}).get("remarks", ())),
+            checks=checks,
             style=Markup(style),
             style_hash=content_hash(style),
         )

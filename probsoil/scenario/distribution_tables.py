@@ -25,7 +25,7 @@ from probsoil.scenario.value_files import read_values
 from probsoil.units import Kind
 
 LEAST_SHARE_KEPT = 1e-6  # of a normal distribution by its cuts
-LEAST_SHAPE, GREATEST_SHAPE = 0.01, 1e9  # of a gamma distribution
+LEAST_SHAPE, GREATEST_SHAPE = 0.1, 1e6  # of a gamma distribution
 
 _MUST_BE_POSITIVE = (
     "sd",

@@ -3,7 +3,7 @@
 import numpy as np
 
 from probsoil.assessment.specimen_parameters import specimen_parameters
-from probsoil.ground.cam_clay import CamClay, consolidated_state
+from probsoil.ground.cam_clay import CamClay, ClayState, consolidated_state
 from probsoil.ground.element_paths import elastic_slope, oedometer_path, state_at_rest, triaxial_path
 from probsoil.laboratory.sheets import OedometerSheet, Origin, Place, TriaxialSheet
 
@@ -20,9 +20,9 @@ STRESSES = np.array(
 STRAINS = np.array([0.0005, 0.001, 0.002, 0.0035, 0.005, 0.0075, 0.01, 0.015, 0.02, 0.03, 0.05, 0.08, 0.12])
 
 
-def clay(values: np.ndarray) -> CamClay:
-    lam, swelling, m, _ = np.atleast_2d(values).T
-    return CamClay(lam=lam, kap=elastic_slope(swelling, lam, m), m=m)
+def clay(values: np.ndarray, *, one_dimensional: bool = False) -> CamClay:
+    lam, kap, m, _ = np.atleast_2d(values).T
+    return CamClay(lam=lam, kap=elastic_slope(kap, lam, m) if one_dimensional else kap, m=m)
 
 
 def oedometer(void_ratio: np.ndarray, stress: np.ndarray = STRESSES, **more: float) -> OedometerSheet:
@@ -40,11 +40,18 @@ def oedometer(void_ratio: np.ndarray, stress: np.ndarray = STRESSES, **more: flo
     )
 
 
-def void_ratios(values: np.ndarray, stress: np.ndarray = STRESSES, start: float = 1.8) -> np.ndarray:
-    """Void ratios of the element, one row per specimen."""
-    one = clay(values)
-    state = state_at_rest(one, stress[0], np.atleast_2d(values)[:, 3], start)
-    found = oedometer_path(one, state, stress).void_ratio
+def void_ratios(values: np.ndarray, left: np.ndarray | float = 0.5) -> np.ndarray:
+    """Void ratios of the element, one row per specimen, of which a share of the radial stress was left."""
+    one = clay(values, one_dimensional=True)
+    history = state_at_rest(one, STRESSES[0], np.atleast_2d(values)[:, 3], 1.8)
+    radial = STRESSES[0] + left * (history.radial_stress - STRESSES[0])
+    start = ClayState(
+        mean_stress=(STRESSES[0] + 2.0 * radial) / 3.0,
+        deviator=STRESSES[0] - radial,
+        void_ratio=history.void_ratio,
+        yield_size=history.yield_size,
+    )
+    found = oedometer_path(one, start, STRESSES).void_ratio
     return found[0] if values.ndim == 1 else found
 
 

@@ -66,7 +66,7 @@ def _ground(made: Sheets, rng: np.random.Generator) -> None:
             names = [*(clay.name for clay in truth.CLAYS), "sand"]
             for name, top, base in zip(names, tops, [*tops[1:], end], strict=True):
                 made.strata.append((hole, top, base, name))
-            for depth in (1.0, 3.0, 5.0, 8.0, 10.0):
+            for depth in (1.0, 3.0, 5.0, 6.5, 8.0, 10.0, 11.3):
                 clay = truth.clay_at(depth)
                 assert clay is not None
                 made.plasticity.append((hole, depth, round(clay.plasticity + 3.0 * rng.standard_normal())))

@@ -49,6 +49,16 @@ def test_beta_table_keeps_its_digits_at_both_ends(alpha, beta):
     np.testing.assert_allclose(1.0 - law.quantile(z[z > 0.0]), exact, rtol=2e-8, atol=3e-16)
 
 
+@pytest.mark.parametrize("shape", [0.11, 0.45, 1.0, 6.25, 400.0, 9e5])
+def test_gamma_table_keeps_its_digits_at_both_ends(shape):
+    """The same bound as for the beta law."""
+    law = GammaLaw(shape, 2.0)
+    z = np.linspace(-7.0, 7.0, 1999)
+    exact = stats.gamma(shape, scale=2.0)
+    np.testing.assert_allclose(law.quantile(z[z < 0.0]), exact.ppf(ndtr(z[z < 0.0])), rtol=2e-8)
+    np.testing.assert_allclose(law.quantile(z[z > 0.0]), exact.isf(ndtr(-z[z > 0.0])), rtol=2e-8)
+
+
 def test_beta_of_tiny_shape_underflows_to_its_bound_and_not_to_nan():
     value = BetaLaw(0.02, 0.5, 0.0, 1.0).quantile(np.array([-8.0, -2.0, 0.0, 8.0]))
     assert np.isfinite(value).all()
