@@ -92,7 +92,9 @@ def _oedometer(
         made.increments.append((test, number, stress, void_ratio, _two_figures(cv) if first else ""))
         if number in timed:
             whole = (before - void_ratio) / (1.0 + initial) * 20.0
-            made.readings += [(test, number, *row) for row in truth.time_curve(rng, specimen, stress, whole)]
+            height = (1.0 + 0.5 * (before + void_ratio)) / (1.0 + initial) * 20.0
+            curve = truth.time_curve(rng, specimen, stress, whole, height)
+            made.readings += [(test, number, *row) for row in curve]
         before = void_ratio
 
 

@@ -216,11 +216,14 @@ def coefficient_of_consolidation(specimen: Specimen, stress: float) -> float:
 
 
 def time_curve(
-    rng: np.random.Generator, specimen: Specimen, stress: float, whole: float
+    rng: np.random.Generator, specimen: Specimen, stress: float, whole: float, height: float
 ) -> list[tuple[float, float]]:
-    """Return time [min] and compression [mm] of a 20 mm specimen that compresses by `whole` in a day."""
+    """Return time [min] and compression [mm] of a specimen that compresses by `whole` in a day.
+
+    It is `height` high half-way and drains at both faces.
+    """
     cv = coefficient_of_consolidation(specimen, stress) / YEAR * 1e6  # mm2/min
-    drainage_path = 10.0
+    drainage_path = 0.5 * height
     end = 1.13 * drainage_path**2 / cv  # 95 % of primary
     rate = specimen.clay.creep * specimen.lam * np.log(10.0) / (1.0 + specimen.void_ratio) * 20.0
     creep = rate * np.log10(max(TIMES[-1] / end, 1.0))

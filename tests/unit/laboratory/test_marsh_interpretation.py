@@ -70,5 +70,8 @@ def test_the_open_standard_gives_the_same_evidence(done: Interpretation) -> None
     )
     assert len(ours) == 4 * 12 + 6 + 6
     assert [one[:3] for one in ours] == [one[:3] for one in theirs]
-    off = [abs(mine[3] / other[3] - 1.0) for mine, other in zip(ours, theirs, strict=True)]
-    assert max(off) < 0.05  # failure of the file is at the largest deviator
+    off = {name: 0.0 for name in both}
+    for mine, other in zip(ours, theirs, strict=True):
+        off[mine[0]] = max(off[mine[0]], abs(mine[3] / other[3] - 1.0))
+    assert off.pop("M") < 0.05  # failure of the file is at the largest deviator
+    assert max(off.values()) < 0.02
