@@ -18,6 +18,8 @@ from probsoil.scenario.listed_distributions import Discrete, Empirical, Percenti
 from probsoil.scenario.skewed_distributions import EULER, Gamma, Gumbel
 from probsoil.scenario.slips import Slip
 
+LEAST_SHAPE, GREATEST_SHAPE = 0.1, 1e6  # of a gamma distribution
+
 Entries = Mapping[str, Any]
 """Numbers [base unit], lists of them and words, by key."""
 
@@ -95,11 +97,18 @@ def _beta(entries: Entries) -> Distribution | list[Slip]:
     return Beta(alpha=mean * size, beta=(1.0 - mean) * size, low=low, high=high)
 
 
-def _gamma(entries: Entries) -> Distribution:
+def _gamma(entries: Entries) -> Distribution | list[Slip]:
     if "shape" in entries:
-        return Gamma(shape=entries["shape"], scale=entries["scale"])
-    sd = _spread(entries)
-    return Gamma(shape=(entries["mean"] / sd) ** 2, scale=sd * (sd / entries["mean"]))
+        key, shape, scale = "shape", entries["shape"], entries["scale"]
+        allowed = f"{LEAST_SHAPE:g} to {GREATEST_SHAPE:g}"
+    else:
+        key, mean, sd = ("sd" if "sd" in entries else "cov"), entries["mean"], _spread(entries)
+        shape, scale = (mean / sd) ** 2, sd * (sd / mean)
+        allowed = f"sd from {GREATEST_SHAPE**-0.5:g} to {LEAST_SHAPE**-0.5:.3g} times the mean"
+    if LEAST_SHAPE <= shape <= GREATEST_SHAPE:
+        return Gamma(shape=shape, scale=scale)
+    message = f"{key} is {entries[key]:g}, out of what a gamma distribution is computed for"
+    return [Slip(path=(key,), message=message, allowed=allowed)]
 
 
 def _gumbel(entries: Entries) -> Distribution:

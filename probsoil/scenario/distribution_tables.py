@@ -19,13 +19,11 @@ from probsoil.scenario.distribution_keys import (
 from probsoil.scenario.distributions import Distribution, TruncatedNormal
 from probsoil.scenario.list_entries import list_slips, read_entry
 from probsoil.scenario.listed_distributions import Percentiles
-from probsoil.scenario.skewed_distributions import Gamma
 from probsoil.scenario.slips import Slip, did_you_mean, unknown_key
 from probsoil.scenario.value_files import read_values
 from probsoil.units import Kind
 
 LEAST_SHARE_KEPT = 1e-6  # of a normal distribution by its cuts
-LEAST_SHAPE, GREATEST_SHAPE = 0.1, 1e6  # of a gamma distribution
 
 _MUST_BE_POSITIVE = (
     "sd",
@@ -104,8 +102,6 @@ def _built(name: str, entries: dict[str, Any], kind: Kind) -> Distribution | lis
 def _is_usable(distribution: Distribution) -> bool:
     """Whether rounding has left a spread and a mean to calculate with."""
     if isinstance(distribution, TruncatedNormal) and distribution.share_kept < LEAST_SHARE_KEPT:
-        return False
-    if isinstance(distribution, Gamma) and not LEAST_SHAPE <= distribution.shape <= GREATEST_SHAPE:
         return False
     if isinstance(distribution, Percentiles) and not distribution.is_usable:
         return False

@@ -113,6 +113,8 @@ def test_lists_are_read_in_base_units_and_put_in_order():
     )
     table = {"dist": "gamma", "mean": 3, "cov": 0.2}
     assert read_distribution(table, "number", spatial=False).sd == pytest.approx(0.6, rel=1e-12)
+    table = {"dist": "gamma", "shape": 4, "scale": "50 cm"}
+    assert read_distribution(table, "length", spatial=False) == Gamma(shape=4.0, scale=0.5)
     table = {"dist": "gumbel", "mean": 3, "cov": 0.2}
     assert read_distribution(table, "number", spatial=False).sd == pytest.approx(0.6, rel=1e-12)
 
@@ -171,7 +173,9 @@ def test_other_forms():
         ({"dist": "normal", "mean": [1], "sd": 1}, ("mean",), "not a number"),
         ({"dist": "gamma", "mean": -1, "sd": 0.1}, ("mean",), "a gamma variable is never negative"),
         ({"dist": "gamma", "shape": 0, "scale": 1}, ("shape",), "shape is 0"),
-        ({"dist": "gamma", "mean": 1, "sd": 1000}, (), "too far apart"),
+        ({"dist": "gamma", "mean": 1, "sd": 1000}, ("sd",), "sd is 1000, out of what a gamma"),
+        ({"dist": "gamma", "mean": 1, "cov": 1e-5}, ("cov",), "cov is 1e-05, out of what a gamma"),
+        ({"dist": "gamma", "shape": 0.01, "scale": 1}, ("shape",), "shape is 0.01, out of what a gamma"),
         ({"dist": "gumbel", "mode": 1, "scale": -1}, ("scale",), "scale is -1"),
         ({"dist": "gumbel", "mean": -1, "cov": 0.1}, ("mean",), "needs a mean above 0"),
         ({"dist": "empirical", "low": 1, "values": [1, 2]}, ("low",), "does not belong to an empirical"),
