@@ -64,6 +64,7 @@ def _lognormal(entries: Entries) -> Distribution | list[Slip]:
         inherent_cov=inherent,
         vertical_scale=vertical,
         horizontal_scale=horizontal,
+        inherent_range=entries.get("inherent_range"),
     )
 
 

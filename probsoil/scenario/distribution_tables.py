@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Mapping
-from typing import Any
+from typing import Any, cast
 
 from probsoil.scenario.distribution_builders import BUILDERS
 from probsoil.scenario.distribution_keys import (
@@ -17,6 +17,7 @@ from probsoil.scenario.distribution_keys import (
     settling_keys,
 )
 from probsoil.scenario.distributions import Distribution, TruncatedNormal
+from probsoil.scenario.inherent_range import read_range, root_mean_square_cov
 from probsoil.scenario.list_entries import list_slips, read_entry
 from probsoil.scenario.listed_distributions import Percentiles
 from probsoil.scenario.slips import Slip, did_you_mean, unknown_key
@@ -65,15 +66,19 @@ def read_distribution(table: Mapping[str, object], kind: Kind, *, spatial: bool)
     entries: dict[str, Any] = {}
     for key in known:
         if key in table:
-            outcome = read_entry(table[key], key, kind)
+            value = table[key]
+            ranged = key == "inherent_cov" and isinstance(value, dict)
+            outcome = read_range(cast("dict[str, object]", value), name) if ranged else read_entry(value, key, kind)
             if isinstance(outcome, Slip):
                 slips.append(outcome)
             elif isinstance(outcome, list):
                 slips += outcome
+            elif ranged:
+                entries |= {key: root_mean_square_cov(*cast("tuple[float, float]", outcome)), "inherent_range": outcome}
             else:
                 entries[key] = outcome
     slips += _form_slips(name, table, slips)
-    slips += _value_slips(name, {key: entries[key] for key in entries if entry_shape(key) == "number"})
+    slips += _value_slips(name, {key: entries[key] for key in entries if isinstance(entries[key], float)})
     slips += _spatial_slips(table) if extra else []
     if slips:
         return slips

@@ -90,6 +90,9 @@ class Lognormal(Described):
         Scale of fluctuation with depth.
     horizontal_scale : float or None, [m]
         Scale of fluctuation in plan.
+    inherent_range : tuple of float or None, [-]
+        5 % and 95 % point of the variability from point to point where it is not known itself;
+        `inherent_cov` is then that of the root mean square.
     """
 
     kind: ClassVar[str] = "lognormal"
@@ -98,6 +101,7 @@ class Lognormal(Described):
     inherent_cov: float = 0.0
     vertical_scale: float | None = None
     horizontal_scale: float | None = None
+    inherent_range: tuple[float, float] | None = None
 
     @property
     def expectation(self) -> float:
@@ -117,7 +121,12 @@ class Lognormal(Described):
 
     def _words(self, unit: str) -> str:
         text = f"lognormal, mean {with_unit(self.expectation, unit)}, cov {self.cov:.3g}"
-        return text + _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
+        own = _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
+        if self.inherent_range is None:
+            return text + own
+        low, high = self.inherent_range
+        known = f"point-to-point cov {self.inherent_cov:.3g}"
+        return text + own.replace(known, f"point-to-point cov not known, {low:.3g} to {high:.3g} (90 %)")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -46,6 +46,13 @@ _NUMBER_BOUNDS: dict[str, dict[str, float]] = {
     "horizontal_scale": {"exclusiveMinimum": 0.0},
 }
 
+_INHERENT_RANGE: dict[str, Any] = {
+    "type": "object",
+    "properties": {key: {"type": "number", "exclusiveMinimum": 0.0} for key in ("low", "high")},
+    "required": ["low", "high"],
+    "additionalProperties": False,
+}
+
 
 class _Generator(GenerateJsonSchema):
     """Pydantic's generator, with defaults written as a user would write them."""
@@ -171,6 +178,8 @@ def _one_distribution(name: str, kind: Kind, *, spatial: bool) -> dict[str, Any]
     }
     if spatial and name in SPATIAL_DISTRIBUTIONS:
         table["properties"] |= {key: _number(key, kind) for key in SPATIAL_KEYS}
+        if name == "lognormal":
+            table["properties"]["inherent_cov"]["anyOf"].append(_INHERENT_RANGE)
         table["dependentRequired"] = {
             "inherent_cov": ["vertical_scale"],
             "vertical_scale": ["inherent_cov"],
