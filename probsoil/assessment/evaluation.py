@@ -7,6 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from probsoil._typing import FloatArray
+from probsoil.assessment.observed import observations_of
 from probsoil.assessment.other_loads import AssessedBeside, assessed_beside, own_columns, positions_of
 from probsoil.ground.limit_quantities import (
     bearing_with_model_error,
@@ -269,10 +270,13 @@ def space_of(scenario: Scenario) -> ParameterSpace:
     Returns
     -------
     space : ParameterSpace
-        Marginals, dependence and fixed numbers.
+        Marginals, dependence, fixed numbers, and what the tests in hand have made of them.
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
-    return parameter_space(scenario.quantities(), pairs, positions=positions_of(scenario))
+    used, _ = observations_of(scenario)
+    return parameter_space(
+        scenario.quantities(), pairs, positions=positions_of(scenario), observations=used
+    )
 
 
 def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
@@ -291,12 +295,16 @@ def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
     gathering : Gathering or None
         None where each parameter has one latent normal.
     """
-    space = study.space
-    if space.local is None:
+    space, last = study.space, study.space.dimension - 1
+    mixed = space.updated is not None and space.updated.mixed
+    if space.local is None and not mixed:
         return space.names, None
     member, shift = np.arange(space.dimension), np.ones(space.dimension)
     names = list(space.names)
-    for part in space.local.parts:
+    for part in () if space.local is None else space.local.parts:
         member[part.latent], shift[part.latent] = len(names), part.common_shift
         names.append(f"{space.names[part.parameter]} (local)")
+    if mixed:  # one more latent normal chooses how much the ground varies from point to point
+        member[last] = len(names)
+        names.append("variability from point to point")
     return tuple(names), Gathering(member=member, shift=shift)

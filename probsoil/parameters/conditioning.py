@@ -33,9 +33,7 @@ class Conditioned:
     distance: float
 
 
-def conditioned(
-    prior: FloatArray, cross: FloatArray, data: FloatArray, residual: FloatArray
-) -> Conditioned:
+def conditioned(prior: FloatArray, cross: FloatArray, data: FloatArray, residual: FloatArray) -> Conditioned:
     r"""Return a zero-mean Gaussian conditioned on observations.
 
     Parameters

@@ -164,7 +164,9 @@ class PointVariability:
         weight = point_weight(self.tests.depth, scale=field.vertical_scale, length=field.length)
         return np.where(own > 0.0, weight / field.ratio, 1.0)
 
-    def across_plan(self, parts: tuple[int, int], first: Sequence[Spot], second: Sequence[Spot]) -> FloatArray:
+    def across_plan(
+        self, parts: tuple[int, int], first: Sequence[Spot], second: Sequence[Spot]
+    ) -> FloatArray:
         """Correlation in plan between the averages of two local parts, (n_first, n_second), [-].
 
         Parts with different horizontal scales keep step at the first station only.
@@ -185,18 +187,23 @@ class PointVariability:
         plan = self.across_plan((first, second), self.tests.spot, self.tests.spot)
         averages = np.outer(self.slope(first), self.slope(second)) * plan
         one, other = self.fields[first], self.fields[second]
-        if (one.layer, one.vertical_scale, one.horizontal_scale) != (
-            other.layer,
-            other.vertical_scale,
-            other.horizontal_scale,
-        ) or one.length is None or one.vertical_scale is None:
+        if (
+            (one.layer, one.vertical_scale, one.horizontal_scale)
+            != (
+                other.layer,
+                other.vertical_scale,
+                other.horizontal_scale,
+            )
+            or one.length is None
+            or one.vertical_scale is None
+        ):
             return averages
         apart = np.abs(self.tests.depth[:, np.newaxis] - self.tests.depth)
         both = np.outer(self.own(first), self.own(second)) > 0.0
         return np.where(both, np.exp(-2.0 * apart / one.vertical_scale) / one.ratio * plan, averages)
 
     def at_one_test(self, first: int, second: int, number: int) -> float:
-        """Covariance of two local parts at the point of one test, but for the correlation of the parts, [-]."""
+        """Covariance of two local parts at the point of a test, but for the parts' correlation, [-]."""
         tests = self.tests
         alone = TestPlaces(
             layer=tests.layer[number : number + 1],

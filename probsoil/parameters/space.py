@@ -193,9 +193,7 @@ class ParameterSpace:
         """
         if self.updated is None:
             return tuple(_summary(law) for law in self.marginals)
-        return tuple(
-            _summary_after(law, self.updated, place) for place, law in enumerate(self.marginals)
-        )
+        return tuple(_summary_after(law, self.updated, place) for place, law in enumerate(self.marginals))
 
     def to_frame(self) -> "pd.DataFrame":
         """Return the summary as a table.
@@ -256,7 +254,9 @@ def parameter_space(
     correlation = at_station
     if local is not None:
         correlation = local.correlation
-    updated = tested(uncertain, marginals, at_station, local=local, positions=positions, observations=observations)
+    updated = tested(
+        uncertain, marginals, at_station, local=local, positions=positions, observations=observations
+    )
     if updated is not None:
         correlation = updated.standard_correlation
     triangle = np.asarray(np.linalg.cholesky(correlation), dtype=np.float64)

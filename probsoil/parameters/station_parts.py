@@ -16,7 +16,7 @@ from probsoil.scenario.spatial_averaging import local_share
 def parts_at_stations(
     uncertain: Sequence[UncertainQuantity], at_station: FloatArray, positions: Sequence[Position]
 ) -> LocalParts | None:
-    """What varies between stations, with its latent normals behind those of the parameters.
+    """Return what varies between stations, with its latent normals behind those of the parameters.
 
     Parameters
     ----------
@@ -61,12 +61,14 @@ def parts_at_stations(
     return local_parts(at_station, parts, rigid, names) if parts else None
 
 
-def _mixing(quantity: UncertainQuantity, law: Normal | Lognormal, positions: Sequence[Position]) -> FloatArray:
+def _mixing(
+    quantity: UncertainQuantity, law: Normal | Lognormal, positions: Sequence[Position]
+) -> FloatArray:
     if len(positions) == 1:
         return np.ones((1, 1))
     if law.horizontal_scale is None:
         raise ParameterError(
-            f"{quantity.address} varies from point to point and there are {len(positions)} stations: it needs "
-            "horizontal_scale, over which it varies in plan"
+            f"{quantity.address} varies from point to point and there are {len(positions)} stations: it "
+            "needs horizontal_scale, over which it varies in plan"
         )
     return mixing_matrix(positions, law.horizontal_scale)

@@ -19,7 +19,7 @@ from probsoil.scenario.spatial_averaging import inherent_variance, variance_func
 AT_CENTRE: Position = (0.0, 0.0)
 
 
-def tested(  # noqa: PLR0913 - what a parameter space knows, handed over once
+def tested(
     uncertain: Sequence[UncertainQuantity],
     marginals: Sequence[Marginal],
     at_station: FloatArray,
@@ -72,7 +72,9 @@ def tested(  # noqa: PLR0913 - what a parameter space knows, handed over once
     groups = {one.parameter: number for number, one in enumerate(unknown, start=1)}
     variability = PointVariability(
         split=split,
-        fields=tuple(_field(uncertain[part.parameter], groups.get(part.parameter, 0)) for part in split.parts),
+        fields=tuple(
+            _field(uncertain[part.parameter], groups.get(part.parameter, 0)) for part in split.parts
+        ),
         positions=places,
         tests=TestPlaces(
             layer=tuple(one.layer for one in observations),
@@ -127,14 +129,14 @@ def _point_law(quantity: UncertainQuantity, marginal: Marginal) -> PointLaw:
         return PointLaw(marginal=marginal, spread=spread, scale=scale)
     whole, point = law.log_sd**2 + extra, extra / ratio
     centre = np.log(law.median) - 0.5 * point
-    assert isinstance(marginal.law, LognormalLaw)  # noqa: S101 - what `representative_law` makes of it
+    assert isinstance(marginal.law, LognormalLaw)
     shift = float(centre - np.log(marginal.law.median)) / float(np.sqrt(whole))
     return PointLaw(marginal=marginal, spread=float(np.sqrt((law.log_sd**2 + point) / whole)), centre=shift)
 
 
 def _unknown(place: int, quantity: UncertainQuantity) -> UnknownVariability:
     law = quantity.distribution
-    assert isinstance(law, Lognormal)  # noqa: S101 - as the caller chose
+    assert isinstance(law, Lognormal)
     median, log_sd = log_sd_law(*(law.inherent_range or (law.inherent_cov, law.inherent_cov)))
     extra = inherent_variance(law, quantity.averaging_length)
     return UnknownVariability(

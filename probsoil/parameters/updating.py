@@ -189,7 +189,7 @@ class Updated:
         return found
 
     def scores(self, z: FloatArray, local: LocalParts | None, station: int) -> FloatArray:
-        """Normal scores of the parameters at one station.
+        """Return the normal scores of the parameters at one station.
 
         Parameters
         ----------
@@ -345,9 +345,7 @@ def update(
         scales[:, place + 1] = sizes[:, place] / one.reference
     moved = points @ _within_layer(model, unknown).T if len(rows) else np.zeros((len(sizes), 0))
     found = [
-        conditioned(
-            model.prior, _cross(model, scale), _data(model, scale), model.residual - shift
-        )
+        conditioned(model.prior, _cross(model, scale), _data(model, scale), model.residual - shift)
         for scale, shift in zip(scales, moved, strict=True)
     ]
     likelihood = np.array([one.log_likelihood for one in found])
@@ -386,9 +384,7 @@ def _at_test(variability: PointVariability, number: int, index: Sequence[int]) -
     return np.asarray(whole[np.ix_(index, index)], dtype=np.float64)
 
 
-def _model(
-    variability: PointVariability, rows: Sequence[Row], observations: Sequence[Observation]
-) -> _Model:
+def _model(variability: PointVariability, rows: Sequence[Row], observations: Sequence[Observation]) -> _Model:
     count = len(variability.split.shared_weight)
     weights = np.array([row.weights for row in rows]).reshape(len(rows), count)
     noise = np.array([max(row.noise_sd, _LEAST_NOISE) ** 2 for row in rows])
@@ -508,7 +504,11 @@ def _chance(found: Sequence[Conditioned], prior_weight: FloatArray) -> float:
     count = found[0].gain.shape[1]
     if count == 0:
         return 1.0
-    return float(sum(w * gammaincc(0.5 * count, 0.5 * one.distance) for w, one in zip(prior_weight, found, strict=True)))
+    return float(
+        sum(
+            w * gammaincc(0.5 * count, 0.5 * one.distance) for w, one in zip(prior_weight, found, strict=True)
+        )
+    )
 
 
 def _split(

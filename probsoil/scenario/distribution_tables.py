@@ -11,7 +11,6 @@ from probsoil.scenario.distribution_keys import (
     GREATEST_LOG_SD,
     SPATIAL_DISTRIBUTIONS,
     SPATIAL_KEYS,
-    entry_shape,
     form_text,
     own_keys,
     settling_keys,
@@ -68,13 +67,18 @@ def read_distribution(table: Mapping[str, object], kind: Kind, *, spatial: bool)
         if key in table:
             value = table[key]
             ranged = key == "inherent_cov" and isinstance(value, dict)
-            outcome = read_range(cast("dict[str, object]", value), name) if ranged else read_entry(value, key, kind)
+            outcome = (
+                read_range(cast("dict[str, object]", value), name) if ranged else read_entry(value, key, kind)
+            )
             if isinstance(outcome, Slip):
                 slips.append(outcome)
             elif isinstance(outcome, list):
                 slips += outcome
             elif ranged:
-                entries |= {key: root_mean_square_cov(*cast("tuple[float, float]", outcome)), "inherent_range": outcome}
+                entries |= {
+                    key: root_mean_square_cov(*cast("tuple[float, float]", outcome)),
+                    "inherent_range": outcome,
+                }
             else:
                 entries[key] = outcome
     slips += _form_slips(name, table, slips)

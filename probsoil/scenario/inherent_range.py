@@ -1,4 +1,4 @@
-"""Variability from point to point that is not known itself: its 5 % and 95 % points in place of one number."""
+"""Variability from point to point that is not known itself: two percentage points in place of one number."""
 
 import math
 
@@ -7,8 +7,8 @@ from probsoil.scenario.slips import Slip
 
 ENDS = ("low", "high")
 ALLOWED = (
-    "a number, or with a lognormal distribution { low = 0.10, high = 0.40 }, its 5 % and 95 % points, above 0 "
-    f"and at most {GREATEST_COV:g}"
+    "a number, or with a lognormal distribution { low = 0.10, high = 0.40 }, its 5 % and 95 % points, above "
+    f"0 and at most {GREATEST_COV:g}"
 )
 _POINT_95 = 1.6448536269514722  # 95 % point of the standard normal
 _KEY = "inherent_cov"

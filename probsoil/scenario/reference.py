@@ -115,8 +115,9 @@ def _row(table: str, key: str, info: FieldInfo) -> ReferenceRow:
 
 
 def _allowed(info: FieldInfo) -> str:
-    if any(isinstance(part, WithJsonSchema) for part in info.metadata):
-        return "table"
+    written = next((part for part in info.metadata if isinstance(part, WithJsonSchema)), None)
+    if written is not None:
+        return "text" if (written.json_schema or {}).get("type") == "string" else "table"
     parts = [part for part in _alternatives(info.annotation) if part is not NoneType]
     return " | ".join(dict.fromkeys(_kind(part) for part in parts))
 

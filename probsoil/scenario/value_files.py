@@ -54,12 +54,31 @@ def read_values(file: str, column: str | None, kind: Kind) -> tuple[float, ...] 
     values : tuple of float or Slip, [base unit]
         Values in the order of the file; a slip that names file, row and column where they cannot be read.
     """
+    rows = beside_scenario(file)
+    return rows if isinstance(rows, Slip) else _column_values(file, rows, column, kind)
+
+
+def beside_scenario(file: str, *, greatest_size: int = GREATEST_SIZE) -> list[list[str]] | Slip:
+    """Return the rows of a file of comma-separated values.
+
+    Parameters
+    ----------
+    file : str
+        Path, relative to the folder of the scenario.
+    greatest_size : int, [-]
+        Bytes beyond which it is refused.
+
+    Returns
+    -------
+    rows : list of list of str, or Slip
+        Cells as they stand; a slip where the file cannot be read.
+    """
     try:
         path = _FOLDER.get() / file
-        if path.stat().st_size > GREATEST_SIZE:
-            return _slip(f"{file} is larger than {GREATEST_SIZE} bytes", hint="is it a table of values?")
+        if path.stat().st_size > greatest_size:
+            return _slip(f"{file} is larger than {greatest_size} bytes", hint="is it a table of values?")
         with path.open(encoding="utf-8-sig", newline="") as stream:
-            rows = list(csv.reader(stream))
+            return list(csv.reader(stream))
     except FileNotFoundError:
         return _slip(f"there is no file {file}", allowed="a path relative to the folder of the scenario")
     except UnicodeDecodeError:
@@ -68,7 +87,6 @@ def read_values(file: str, column: str | None, kind: Kind) -> tuple[float, ...] 
         return _slip(f"{file} cannot be read ({error})")
     except (OSError, ValueError) as error:
         return _slip(f"{file} cannot be read ({getattr(error, 'strerror', None) or error})")
-    return _column_values(file, rows, column, kind)
 
 
 def _column_values(
