@@ -153,9 +153,9 @@ def _told_twice(
         same = {(one.hole, one.test) for one in beside if one.parameter == "q_net"}
         if (result.hole, result.test) in same:
             return "the net cone resistance it was made from is used"
-    if result.kind == "triaxial" and result.parameter in ("su_ratio", "Lambda"):
-        if any(one.parameter == "su" and _layer_index(scenario, column, one) == place for one in beside):
-            return "the strengths of single specimens in this layer, which it was made from, are used"
+    strengths = {_layer_index(scenario, column, one) for one in beside if one.parameter == "su"}
+    if result.kind == "triaxial" and result.parameter in ("su_ratio", "Lambda") and place in strengths:
+        return "the strengths of single specimens in this layer, which it was made from, are used"
     layer = scenario.layers[place]
     if result.kind == "oedometer" and result.parameter in ("cv", "k") and isinstance(layer, ClayLayer):
         wanted = "k" if layer.permeability.cv is None else "cv"

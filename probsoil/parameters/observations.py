@@ -14,11 +14,10 @@ from probsoil.parameters.marginals import Marginal
 
 Model = Callable[[Sequence[FloatArray]], FloatArray]
 
-GREATEST_SCORE = 3.0
-"""Score given to a result at or beyond the end of a bounded law, [-]."""
-
 _SAMPLE = 2048  # points of a statistical linearisation
-_NODES = np.linspace(-8.0, 8.0, 801)
+_NODES = np.linspace(-8.0, 8.0, 3201)
+_LARGEST_VARIANCE = 1.0 - 1e-8  # of a score after a test; the rest of it is what the test tells
+_LEAST_ERROR = 1e-3  # of what was measured; sums over the score resolve no smaller one
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -139,7 +138,12 @@ class Row:
 
 
 def row_of(
-    observation: Observation, laws: Sequence[PointLaw], covariance: FloatArray, places: dict[str, int]
+    observation: Observation,
+    laws: Sequence[PointLaw],
+    covariance: FloatArray,
+    places: dict[str, int],
+    *,
+    beside: Sequence[Observation],
 ) -> Row:
     """Row of one observation.
 
@@ -153,6 +157,8 @@ def row_of(
         Covariance of the scores at this point of the parameters in `addresses`.
     places : dict of str to int
         Place of each parameter by its address.
+    beside : sequence of Observation
+        All observations, this one among them.
 
     Returns
     -------
@@ -175,7 +181,8 @@ def row_of(
     if observation.model is None and one.is_plain:
         found = _plain_row(observation, one)
     elif observation.model is None and one.spread == 1.0 and one.centre == 0.0:
-        found = _score_row(observation, one)
+        alike = [other for other in beside if other.model is None and other.addresses == observation.addresses]
+        found = _score_row(observation, one, alike)
     else:
         found = _linearised(observation, [laws[place] for place in index], covariance)
     weights = np.zeros(len(laws))
@@ -230,24 +237,67 @@ def _plain_row(observation: Observation, point: PointLaw) -> Row:
     )
 
 
-def _score_row(observation: Observation, point: PointLaw) -> Row:
-    """Row of a parameter with another law: its normal score, errors by the regression slope."""
-    law = point.marginal
-    weight = np.exp(-0.5 * _NODES**2)
+def _score_row(observation: Observation, point: PointLaw, beside: Sequence[Observation]) -> Row:
+    """Row of a parameter with another law: the normal score and error that give its moments after the tests.
+
+    The moments are sums over the score for all tests of the parameter together, so that alone they are
+    answered rightly in mean and spread, also beyond an end of the law; each has its part of their precision.
+    """
+    values = point.marginal.quantile(_NODES)
+    exponent = np.zeros_like(_NODES)
+    precision = 0.0
+    for one in beside:
+        own = _plain_error(one)
+        exponent -= 0.5 * ((values - one.value / one.factor) / own) ** 2
+        precision += own**-2
+    weight = np.exp(exponent - exponent.max() - 0.5 * _NODES**2)
     weight /= weight.sum()
-    value = law.quantile(_NODES)
-    mean = float(weight @ value)
-    slope = float(weight @ (_NODES * (value - mean))) / float(weight @ (value - mean) ** 2)
-    observed = observation.value / observation.factor
-    own = np.hypot(observation.error * abs(observed), observation.standard_error / observation.factor)
+    mean, variance = _score_with_moments(point.marginal, weight, values)
+    own = _plain_error(observation)
+    noise = float(np.sqrt(variance / (1.0 - variance) * precision)) * own
+    size = abs(observation.value / observation.factor)
     return Row(
         weights=np.ones(1),
-        residual=float(np.clip(law.score(observed), -GREATEST_SCORE, GREATEST_SCORE)),
-        noise_sd=float(own) * slope,
-        bias_sd=observation.bias * abs(observed) * slope,
+        residual=mean / (1.0 - variance),
+        noise_sd=noise,
+        bias_sd=noise * observation.bias * size / own,
         straying=0.0,
         unit="score",
     )
+
+
+def _score_with_moments(law: Marginal, weight: FloatArray, values: FloatArray) -> tuple[float, float]:
+    """Mean and variance of the normal score whose values have the mean and spread of weighted values.
+
+    Where there is none such, those of the weighted scores themselves.
+    """
+    from scipy.optimize import root  # deferred: only bounded laws with tests need it
+
+    centre, middle = float(weight @ _NODES), float(weight @ values)
+    variance = min(float(weight @ (_NODES - centre) ** 2), _LARGEST_VARIANCE)
+    spread = float(np.sqrt(weight @ (values - middle) ** 2))
+    node = np.linspace(-8.0, 8.0, 161)
+    density = np.exp(-0.5 * node**2)
+    density /= density.sum()
+
+    def miss(unknown: FloatArray) -> FloatArray:
+        drawn = law.quantile(unknown[0] + np.exp(unknown[1]) * node)
+        mean = float(density @ drawn)
+        sd = float(np.sqrt(density @ (drawn - mean) ** 2))
+        return np.array([(mean - middle) / law.sd, (sd - spread) / law.sd])
+
+    found = root(miss, np.array([centre, 0.5 * np.log(variance)]), tol=1e-10)
+    mean, sd = float(found.x[0]), float(np.exp(found.x[1]))
+    if not found.success or sd**2 > _LARGEST_VARIANCE or abs(mean) > np.abs(_NODES).max():
+        return centre, variance
+    return mean, sd**2
+
+
+def _plain_error(observation: Observation) -> float:
+    """Standard deviation of the error of one result, in the parameter's unit."""
+    size = abs(observation.value / observation.factor)
+    own = np.hypot(observation.error * size, observation.standard_error / observation.factor)
+    return max(float(own), _LEAST_ERROR * size)
 
 
 def _linearised(observation: Observation, laws: Sequence[PointLaw], covariance: FloatArray) -> Row:

@@ -45,7 +45,7 @@ class Field:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class TestPlaces:
+class PlacesOfTests:
     """Where tests were made.
 
     Attributes
@@ -129,14 +129,14 @@ class PointVariability:
         How each local part varies, in the same order.
     positions : tuple of (float, float), [m]
         Plan positions of the stations, at least one.
-    tests : TestPlaces
+    tests : PlacesOfTests
         Where the tests were made.
     """
 
     split: LocalParts
     fields: tuple[Field, ...]
     positions: tuple[Position, ...]
-    tests: TestPlaces
+    tests: PlacesOfTests
 
     @property
     def dimension(self) -> int:
@@ -205,7 +205,7 @@ class PointVariability:
     def at_one_test(self, first: int, second: int, number: int) -> float:
         """Covariance of two local parts at the point of a test, but for the parts' correlation, [-]."""
         tests = self.tests
-        alone = TestPlaces(
+        alone = PlacesOfTests(
             layer=tests.layer[number : number + 1],
             depth=tests.depth[number : number + 1],
             spot=tests.spot[number : number + 1],

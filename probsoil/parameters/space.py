@@ -14,7 +14,7 @@ from probsoil.parameters.marginals import Marginal, UncertainQuantity, marginal
 from probsoil.parameters.observations import Observation
 from probsoil.parameters.station_parts import parts_at_stations
 from probsoil.parameters.tested import tested
-from probsoil.parameters.updating import Updated
+from probsoil.parameters.updated import Updated
 from probsoil.scenario.distributions import Constant
 
 if TYPE_CHECKING:

@@ -9,9 +9,10 @@ from probsoil.parameters.laws import LognormalLaw
 from probsoil.parameters.local_parts import LocalParts, Position
 from probsoil.parameters.marginals import Marginal, UncertainQuantity
 from probsoil.parameters.observations import Observation, PointLaw
-from probsoil.parameters.point_variability import Field, PointVariability, TestPlaces, spots
+from probsoil.parameters.point_variability import Field, PointVariability, PlacesOfTests, spots
 from probsoil.parameters.station_parts import parts_at_stations
-from probsoil.parameters.updating import UnknownVariability, Updated, update
+from probsoil.parameters.updated import Updated
+from probsoil.parameters.updating import UnknownVariability, update
 from probsoil.scenario.distributions import Distribution, Lognormal, Normal
 from probsoil.scenario.inherent_range import log_sd_law
 from probsoil.scenario.spatial_averaging import inherent_variance, variance_function
@@ -76,7 +77,7 @@ def tested(
             _field(uncertain[part.parameter], groups.get(part.parameter, 0)) for part in split.parts
         ),
         positions=places,
-        tests=TestPlaces(
+        tests=PlacesOfTests(
             layer=tuple(one.layer for one in observations),
             depth=np.array([one.below_top for one in observations], dtype=np.float64),
             spot=spots([one.place for one in observations], [one.hole for one in observations]),

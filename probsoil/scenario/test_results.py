@@ -67,13 +67,13 @@ PARAMETERS: dict[TestParameter, ResultKind] = {
         kind="pressure",
         low=0.0,
         high=2000.0,
-        meaning="undrained strength in situ, in triaxial compression; of a vane, corrected for a slip surface",
+        meaning="undrained strength in situ, in triaxial compression; of a vane, along a slip surface",
     ),
     "su_ratio": ResultKind(
         kind="number",
         low=0.0,
         high=3.0,
-        meaning="undrained strength / vertical effective stress, normally consolidated",
+        meaning="undrained strength / effective stress, normally consolidated",
     ),
     "Lambda": ResultKind(
         kind="number",

@@ -118,9 +118,8 @@ def _in_ground(scenario: Any, column: MeanColumn | None, one: Evidence) -> Itera
                     shown.add(text)
                     yield Slip(path=("file",), message=text, allowed=allowed, hint=hint)
         return
-    if UNREAD in (one.kind, one.layer, one.depth) or not all(
-        isinstance(n, Measured) for _, n in one.measured()
-    ):
+    parts: tuple[object, ...] = (one.kind, one.layer, one.depth)
+    if UNREAD in parts:
         return
     first = next(one.results(1), None)
     for message, allowed, hint in () if first is None else _place_faults(scenario, column, first):
