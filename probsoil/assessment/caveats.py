@@ -6,6 +6,7 @@ from probsoil._typing import FloatArray
 from probsoil.assessment.description import Row
 from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study
+from probsoil.assessment.evidence_record import conflicts
 from probsoil.assessment.record import CampaignSample
 from probsoil.parameters.range_remarks import range_remarks
 from probsoil.scenario import remarks
@@ -48,6 +49,7 @@ def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationErro
                 f"{summary.name}: part of the distribution lay outside the physical range and was cut off"
             )
             rows.append(_row("distribution_cut", message, summary.cut_share, "the distribution"))
+    rows += [_row(code, message) for code, message in conflicts(study.space)]
     return rows + _grid_rows(error)
 
 

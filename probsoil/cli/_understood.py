@@ -2,6 +2,7 @@
 
 from typing import TYPE_CHECKING
 
+from probsoil.cli._evidence import print_evidence
 from probsoil.cli._output import counted, print_table
 from probsoil.report.text import event_text, percent_text, plain_percent
 
@@ -40,6 +41,7 @@ def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSp
     _print_stations(console, scenario)
     _print_parameters(console, scenario, space)
     _print_dependence(console, scenario)
+    print_evidence(console, scenario, space)
     _print_limits(console, scenario)
 
 

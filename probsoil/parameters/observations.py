@@ -181,7 +181,9 @@ def row_of(
     if observation.model is None and one.is_plain:
         found = _plain_row(observation, one)
     elif observation.model is None and one.spread == 1.0 and one.centre == 0.0:
-        alike = [other for other in beside if other.model is None and other.addresses == observation.addresses]
+        alike = [
+            other for other in beside if other.model is None and other.addresses == observation.addresses
+        ]
         found = _score_row(observation, one, alike)
     else:
         found = _linearised(observation, [laws[place] for place in index], covariance)
@@ -294,7 +296,7 @@ def _score_with_moments(law: Marginal, weight: FloatArray, values: FloatArray) -
 
 
 def _plain_error(observation: Observation) -> float:
-    """Standard deviation of the error of one result, in the parameter's unit."""
+    """Return the standard deviation of the error of one result, in the parameter's unit."""
     size = abs(observation.value / observation.factor)
     own = np.hypot(observation.error * size, observation.standard_error / observation.factor)
     return max(float(own), _LEAST_ERROR * size)

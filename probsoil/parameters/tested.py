@@ -9,7 +9,7 @@ from probsoil.parameters.laws import LognormalLaw
 from probsoil.parameters.local_parts import LocalParts, Position
 from probsoil.parameters.marginals import Marginal, UncertainQuantity
 from probsoil.parameters.observations import Observation, PointLaw
-from probsoil.parameters.point_variability import Field, PointVariability, PlacesOfTests, spots
+from probsoil.parameters.point_variability import Field, PlacesOfTests, PointVariability, spots
 from probsoil.parameters.station_parts import parts_at_stations
 from probsoil.parameters.updated import Updated
 from probsoil.parameters.updating import UnknownVariability, update

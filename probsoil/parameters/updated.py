@@ -188,6 +188,28 @@ class Updated:
             low, high = (middle, high) if below else (low, middle)
         return 0.5 * (low + high)
 
+    def below(self, parameter: int, score: FloatArray, *, before: bool = False) -> FloatArray:
+        """Chance that a parameter at the first station lies below normal scores.
+
+        Parameters
+        ----------
+        parameter : int, [-]
+            Its place.
+        score : ndarray, shape (n, ...), [-]
+            Scores; may be infinite.
+        before : bool
+            Whether before the tests.
+
+        Returns
+        -------
+        chance : ndarray, shape (n, ...), [-]
+            From 0 to 1.
+        """
+        found = np.zeros(score.shape)
+        for weight, mean, sd in zip(*self._scores(parameter, before=before), strict=True):
+            found += weight * ndtr((score - mean) / sd)
+        return found
+
     def moments(self, parameter: int, law: Marginal, *, before: bool = False) -> tuple[float, float]:
         """Mean and standard deviation of a parameter at the first station.
 

@@ -8,8 +8,10 @@ from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from probsoil.report import alttext
+from probsoil.report.evidence import evidence_words
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_bars import plot_drivers, plot_factors
+from probsoil.report.plot_evidence import plot_evidence
 from probsoil.report.plot_ground import plot_ground
 from probsoil.report.plot_section import plot_section
 from probsoil.report.plot_settlement import plot_settlement
@@ -64,7 +66,8 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     -------
     drawings : dict of str to str
         Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``)
-        or ``bearing``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
+        or ``bearing``, ``ground``, ``evidence-1``, ``evidence-2``, ... for the parameters that tests changed,
+        and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
     drawn |= _settlement_figures(results)
@@ -78,6 +81,9 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
         drawn["section"] = drawn_figure("section", words, plot_section, data)
     if (results.get("ground") or {}).get("layers"):
         drawn["ground"] = drawn_figure("ground", alttext.ground(results), plot_ground, results["ground"])
+    for number, row in enumerate((results.get("evidence") or {}).get("parameters") or [], start=1):
+        name = f"evidence-{number}"
+        drawn[name] = drawn_figure(name, evidence_words(row), plot_evidence, row)
     for number, limit in enumerate(results["limits"], start=1):
         shown = shown_drivers(results, limit["name"])
         if shown:

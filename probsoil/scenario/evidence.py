@@ -5,7 +5,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cache
 from importlib import resources
-from typing import Annotated, Literal, cast, get_args
+from typing import Annotated, Literal, cast
 
 from pydantic import Field, PlainValidator, WithJsonSchema
 
@@ -13,7 +13,7 @@ from probsoil.scenario.base import Label, Name, Table
 from probsoil.scenario.evidence_file import EvidenceFile, read_evidence_file
 from probsoil.scenario.fields import Number, Range
 from probsoil.scenario.slips import Slip, refuse, unknown_key
-from probsoil.scenario.test_results import KINDS, PARAMETERS, Measured, TestKind, TestParameter, TestResult
+from probsoil.scenario.test_results import PARAMETERS, Measured, TestKind, TestParameter, TestResult
 
 _PLACE = 1e7  # m; national grids fit
 
@@ -306,5 +306,4 @@ def known_parameters(kind: str) -> tuple[str, ...]:
     parameters : tuple of str
         In the order of the table of errors.
     """
-    assert kind in get_args(TestKind) == KINDS
     return tuple(parameter for known, parameter in error_defaults() if known == kind)

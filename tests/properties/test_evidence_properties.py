@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "unit" / "parameters"))
 
-from evidence_cases import Parameter, cov, lognormal, rank, ranged, result, updated  # noqa: E402
+from evidence_cases import Parameter, cov, lognormal, ranged, rank, result, updated
 
 PARAMETERS = [
     Parameter("clay.lambda", lognormal(0.4, 0.15, 0.25, horizontal_scale=40.0)),
@@ -53,7 +53,7 @@ def _observations(drawn: list) -> list:
     ]
 
 
-def _covariance(space) -> np.ndarray:  # noqa: ANN001
+def _covariance(space) -> np.ndarray:
     one = space.updated
     return one.factor[0] @ one.correlation @ one.factor[0].T
 
@@ -71,7 +71,7 @@ def test_one_more_test_never_widens_anything(drawn: list, stations: bool) -> Non
 
 @settings(deadline=None, max_examples=40)
 @given(tests_in_hand, st.randoms(use_true_random=False), st.booleans())
-def test_order_of_tests_does_not_matter(drawn: list, random, stations: bool) -> None:  # noqa: ANN001
+def test_order_of_tests_does_not_matter(drawn: list, random, stations: bool) -> None:
     places = STATIONS if stations else STATIONS[:1]
     tests = _observations(drawn)
     shuffled = tests[:]
@@ -103,7 +103,10 @@ def test_test_of_huge_error_changes_nothing() -> None:
 
 
 def test_no_test_leaves_the_space_bit_for_bit() -> None:
-    bare, tested = updated(PARAMETERS, [], DEPENDENCE, STATIONS), updated(PARAMETERS, [], DEPENDENCE, STATIONS)
+    bare, tested = (
+        updated(PARAMETERS, [], DEPENDENCE, STATIONS),
+        updated(PARAMETERS, [], DEPENDENCE, STATIONS),
+    )
     assert tested.updated is None
     u = np.random.default_rng(1).standard_normal((50, bare.dimension))
     for name, values in bare.values(bare.correlated(u), 1).items():

@@ -1,10 +1,10 @@
-"""Updating against answers found by other means: dense fields, importance sampling, quadrature, Student's t."""
+"""Updating against answers by other means: dense fields, importance sampling, quadrature, Student's t."""
 
 import math
 
 import numpy as np
 import pytest
-from evidence_cases import Parameter, cov, lognormal, rank, ranged, result, updated
+from evidence_cases import Parameter, cov, lognormal, ranged, rank, result, updated
 from scipy import stats
 
 from probsoil.ground.undrained_strength import (
@@ -37,7 +37,7 @@ def _scores(space: ParameterSpace) -> tuple[np.ndarray, np.ndarray]:
 CELLS = 120
 
 
-def test_two_stations_and_two_holes_against_a_field_of_cells() -> None:
+def test_two_stations_and_two_holes_against_a_field_of_cells() -> None:  # noqa: PLR0915 - one case
     """The same Gaussian put together from 120 cells at every place and conditioned as a whole.
 
     The mean over cells misses the average over the layer by (h / delta)^2 / 3 of the variance or so, 2e-4.
@@ -49,7 +49,12 @@ def test_two_stations_and_two_holes_against_a_field_of_cells() -> None:
         Parameter("clay.lambda", lognormal(0.4, known[0], inherent[0], **scales)),
         Parameter("clay.kappa", lognormal(0.05, known[1], inherent[1], **scales)),
     ]
-    places = [(holes[0], 1.0, 0, 0.47), (holes[0], 3.5, 1, 0.06), (holes[1], 2.0, 0, 0.36), (holes[1], 2.0, 1, 0.045)]
+    places = [
+        (holes[0], 1.0, 0, 0.47),
+        (holes[0], 3.5, 1, 0.06),
+        (holes[1], 2.0, 0, 0.36),
+        (holes[1], 2.0, 1, 0.045),
+    ]
     names = ("lambda", "kappa")
     tests = [
         result(
@@ -148,7 +153,16 @@ def test_strength_against_importance_sampling() -> None:
     ]
     values = (17.0, 18.5, 16.0)
     tests = [
-        result(v, i, kind="vane", parameter="su", addresses=STRENGTH, model=_strength, error=cov(0.12), bias=cov(0.08))
+        result(
+            v,
+            i,
+            kind="vane",
+            parameter="su",
+            addresses=STRENGTH,
+            model=_strength,
+            error=cov(0.12),
+            bias=cov(0.08),
+        )
         for i, v in enumerate(values)
     ]
     space = updated(parameters, tests)
@@ -157,7 +171,9 @@ def test_strength_against_importance_sampling() -> None:
     n = 400_000
     law = space.marginals[3].law
     friction = 1.02 + 0.08 * generator.standard_normal(n)
-    virgin, reloading = (m * np.exp(s * generator.standard_normal(n)) for m, s in ((0.36, 0.15), (0.05, 0.25)))
+    virgin, reloading = (
+        m * np.exp(s * generator.standard_normal(n)) for m, s in ((0.36, 0.15), (0.05, 0.25))
+    )
     knowledge = 0.35 * generator.standard_normal(n)
     average = 0.25 * math.sqrt(float(variance_function(3.0))) * generator.standard_normal(n)
     representative = law.median * np.exp(knowledge + average)
@@ -172,7 +188,9 @@ def test_strength_against_importance_sampling() -> None:
     effective = 1.0 / (weight**2).sum()
     assert effective > 20_000
     drawn = [friction, virgin, reloading, representative]
-    for place, (row, sample, marginal) in enumerate(zip(space.summary(), drawn, space.marginals, strict=True)):
+    for place, (row, sample, marginal) in enumerate(
+        zip(space.summary(), drawn, space.marginals, strict=True)
+    ):
         mean = float(weight @ sample)
         sd = math.sqrt(float(weight @ (sample - mean) ** 2))
         assert row.mean == pytest.approx(mean, abs=0.1 * marginal.sd), place
@@ -204,7 +222,14 @@ VALUES = (0.47, 0.39, 0.52, 0.44, 0.41)
 
 @pytest.mark.parametrize(
     ("count", "variability", "spread"),
-    [(0, 0.218, 0.280), (1, 0.204, 0.203), (2, 0.193, 0.171), (3, 0.185, 0.152), (4, 0.168, 0.133), (5, 0.157, 0.120)],
+    [
+        (0, 0.218, 0.280),
+        (1, 0.204, 0.203),
+        (2, 0.193, 0.171),
+        (3, 0.185, 0.152),
+        (4, 0.168, 0.133),
+        (5, 0.157, 0.120),
+    ],
 )
 def test_unknown_variability_with_few_tests(count: int, variability: float, spread: float) -> None:
     """Mean of the variability and spread left, to the three digits worked out apart from the package.
@@ -213,7 +238,8 @@ def test_unknown_variability_with_few_tests(count: int, variability: float, spre
     spread of half the variance of the average, 0.004 at most: squares add, so by less than 0.001.
     """
     space = updated(
-        [Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40))], [result(VALUES[i], i) for i in range(count)]
+        [Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40))],
+        [result(VALUES[i], i) for i in range(count)],
     )
     found = space.updated
     assert found is not None
@@ -229,7 +255,8 @@ def test_unknown_variability_against_quadrature() -> None:
     """Chance below each of five values by a sum over the variability and the layer mean, 1e-3."""
     count = 3
     space = updated(
-        [Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40))], [result(VALUES[i], i) for i in range(count)]
+        [Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40))],
+        [result(VALUES[i], i) for i in range(count)],
     )
     ratio = float(variance_function(3.0))
     spread = math.log(4.0) / (2.0 * 1.6448536)
@@ -249,7 +276,7 @@ def test_unknown_variability_against_quadrature() -> None:
 
 
 def test_few_tests_and_no_prior_leave_a_student_t() -> None:
-    """Vague mean, variability over three decades: the average is a t of n - 1 degrees, sd s sqrt(1/n + ratio).
+    """Vague mean, variability over decades: the average is a t of n - 1 degrees, s sqrt(1/n + ratio).
 
     The range is no flat prior of the logarithm: a tenth is allowed on the width at 5 and 95 %.
     """
@@ -269,7 +296,10 @@ def test_conjugate_normal_updating_against_scipy() -> None:
     """One normal parameter, n independent tests: the textbook posterior, drawn percentiles by scipy."""
     space = updated(
         [Parameter("clay.M", Normal(mean=1.0, sd=0.10))],
-        [result(v, i, parameter="M", addresses=("clay.M",), error=0.05) for i, v in enumerate((1.1, 1.05, 1.12))],
+        [
+            result(v, i, parameter="M", addresses=("clay.M",), error=0.05)
+            for i, v in enumerate((1.1, 1.05, 1.12))
+        ],
     )
     precision = 1.0 / 0.10**2 + 3.0 / 0.05**2
     mean = (1.0 / 0.10**2 + (1.1 + 1.05 + 1.12) / 0.05**2) / precision
@@ -283,7 +313,10 @@ def test_conjugate_normal_updating_against_scipy() -> None:
 def test_drawn_values_follow_the_mixture() -> None:
     """100 000 draws; mean, sd and percentiles within four standard errors."""
     space = updated(
-        [Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40)), Parameter("clay.kappa", lognormal(0.05, 0.3))],
+        [
+            Parameter("clay.lambda", ranged(0.45, 0.25, 0.10, 0.40)),
+            Parameter("clay.kappa", lognormal(0.05, 0.3)),
+        ],
         [result(VALUES[i], i) for i in range(3)],
         [("clay.lambda", "clay.kappa", 0.6)],
     )

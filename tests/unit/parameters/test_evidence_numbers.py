@@ -5,26 +5,35 @@ Six digits are given, so 1e-6 is the tolerance.
 
 import numpy as np
 import pytest
+from evidence_cases import Parameter, lognormal, rank, result, updated
 
 from probsoil.parameters.conditioning import conditioned
 from probsoil.parameters.laws import LognormalLaw
 from probsoil.parameters.local_parts import LocalPart, LocalParts
 from probsoil.parameters.marginals import marginal
 from probsoil.parameters.observations import PointLaw
-from probsoil.parameters.point_variability import Field, PointVariability, PlacesOfTests
+from probsoil.parameters.point_variability import Field, PlacesOfTests, PointVariability
 from probsoil.parameters.tested import _point_law
 from probsoil.parameters.updating import update
 from probsoil.scenario.spatial_averaging import point_weight, variance_function
-from evidence_cases import Parameter, lognormal, rank, result, updated
 
 DIGITS = 1e-6
 
 
 @pytest.mark.parametrize(
     ("length", "scale", "expected"),
-    [(3, 1.5, 0.377289), (6, 2, 0.277915), (6, 2.5, 0.330575), (40, 40, 0.567668), (30, 40, 0.642782), (3, 2, 0.455508)],
+    [
+        (3, 1.5, 0.377289),
+        (6, 2, 0.277915),
+        (6, 2.5, 0.330575),
+        (40, 40, 0.567668),
+        (30, 40, 0.642782),
+        (3, 2, 0.455508),
+    ],
 )
-def test_variance_function_of_the_exponential_correlation(length: float, scale: float, expected: float) -> None:
+def test_variance_function_of_the_exponential_correlation(
+    length: float, scale: float, expected: float
+) -> None:
     assert float(variance_function(length / scale)) == pytest.approx(expected, abs=DIGITS)
 
 
@@ -63,7 +72,8 @@ def _two(tests: list, known: float = 0.6, local: float = 0.5) -> np.ndarray:
     spreads = np.sqrt([0.25**2 + ratio * 0.2**2, 0.35**2 + ratio * 0.3**2])
     share = ratio * np.array([0.2, 0.3]) ** 2 / spreads**2
     part = [
-        LocalPart(parameter=p, share=share[p], latent=np.array([2 + p]), mixing=np.ones((1, 1))) for p in range(2)
+        LocalPart(parameter=p, share=share[p], latent=np.array([2 + p]), mixing=np.ones((1, 1)))
+        for p in range(2)
     ]
     between = np.array([[1.0, known], [known, 1.0]])
     split = LocalParts(
@@ -153,7 +163,9 @@ def test_update_of_the_average_over_a_section() -> None:
     local = np.outer([0.2, 0.3], [0.2, 0.3]) * [[1.0, 0.5], [0.5, 1.0]]
     apart = np.exp(-2.0 * np.abs(np.subtract.outer([1.5, 4.5], [1.5, 4.5])) / 2.0)
     data = np.kron(np.ones((2, 2)), known) + np.kron(apart, local)
-    data += np.kron(np.ones((2, 2)), np.diag([0.06, 0.15]) ** 2) + np.kron(np.eye(2), np.diag([0.10, 0.22]) ** 2)
+    data += np.kron(np.ones((2, 2)), np.diag([0.06, 0.15]) ** 2) + np.kron(
+        np.eye(2), np.diag([0.10, 0.22]) ** 2
+    )
     cross = np.hstack([known + one * local for one in weight])
     prior = known + ratio * local
     np.testing.assert_allclose(np.sqrt(np.diag(prior)), [0.262318, 0.369728], atol=DIGITS)
