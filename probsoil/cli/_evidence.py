@@ -26,7 +26,8 @@ def print_evidence(console: "Console", scenario: "Scenario", space: "ParameterSp
     """
     from probsoil.assessment.evidence_record import conflicts, evidence_record
 
-    record: dict[str, Any] = evidence_record(space, scenario).get("evidence", {})
+    found: dict[str, Any] = evidence_record(space, scenario)
+    record = found.get("evidence")
     if not record:
         return
     headings = ("test", "measured", "layer", "value", "error, bias (cov)", "informs")

@@ -148,7 +148,7 @@ def _conflict(data: dict[str, Any]) -> str:
         return (
             f"The results contradict what was expected of them: data as far off or farther would turn up in "
             f"only {chance} of cases. Either the distributions of the scenario, the errors of the tests or "
-            "some test is wrong, and the parameters after the tests should not be trusted before that is settled."
+            "some test is wrong, and the parameters after the tests deserve no trust before that is settled."
         )
     return (
         f"The results agree with what was expected of them: data as far off or farther would turn up in "
