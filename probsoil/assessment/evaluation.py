@@ -274,9 +274,7 @@ def space_of(scenario: Scenario) -> ParameterSpace:
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
     used, _ = observations_of(scenario)
-    return parameter_space(
-        scenario.quantities(), pairs, positions=positions_of(scenario), observations=used
-    )
+    return parameter_space(scenario.quantities(), pairs, positions=positions_of(scenario), observations=used)
 
 
 def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
