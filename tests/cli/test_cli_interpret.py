@@ -2,12 +2,15 @@
 
 import sys
 import types
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
+from probsoil.assessment import site_back_check
 from probsoil.cli import main
+from probsoil.laboratory.interpretation import Interpretation
 from probsoil.laboratory.sheets import OedometerSheet, Origin, Place, SiteSheets, VaneSheet
 
 LOADS = np.array([10.0, 20.0, 40.0, 80.0, 160.0, 320.0, 640.0, 160.0, 40.0])
@@ -73,6 +76,8 @@ def test_interpret_writes_evidence_tables_figures_page_and_log(
     printed = capsys.readouterr().out
     assert "preconsolidation_stress" in printed
     assert "Remark: tests.csv, row 9: left out" in printed
+    # the one oedometer test is doubtful, so nothing is known to check it with
+    assert "no back-check: no oedometer test of soft clay" in printed
     assert str(folder / "interpretation.html") in printed
     assert asked["keep_good_rows"] is False
 
@@ -85,6 +90,26 @@ def test_vane_that_nobody_speaks_for_is_remarked(
     assert asked["keep_good_rows"] is True
     assert "--vane-as-measured" in capsys.readouterr().out
     assert Path("results", "interpretation", "evidence.csv").exists()
+
+
+def test_what_a_back_check_says_is_printed(
+    asked: dict[str, object], capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    assert asked
+    checked = site_back_check.site_back_checks
+
+    def told(done: Interpretation) -> site_back_check.SiteBackChecks:
+        found = checked(done)
+        first = replace(found.checks[0], words=("above the band", "looks structured"))
+        return replace(found, checks=(first,), remarks=("no back-check: T1",))
+
+    monkeypatch.setattr(site_back_check, "site_back_checks", told)
+    assert main(["interpret", "tests.csv", "--out", "found"]) == 0
+    assert Path("found", "tables", "back_check.csv").exists()
+    assert Path("found", "figures", "back-check-o1.svg").exists()
+    printed = capsys.readouterr().out
+    assert "Back-check: O1: looks structured" in printed
+    assert "Remark: no back-check: T1" in printed
 
 
 def test_quiet_says_nothing(asked: dict[str, object], capsys: pytest.CaptureFixture[str]) -> None:

@@ -168,6 +168,7 @@ def test_readings_the_element_starts_from_and_gaps_do_not_count() -> None:
     check = back_check(oedometer(void_ratios(MEDIAN)), KNOWN)
     assert not check.curves[0].counted[0]
     assert check.curves[0].counted[1:].all()
+    assert check.curves[0].low[0] == check.curves[0].high[0] == check.curves[0].measured[0]
     deviator = sheared(MEDIAN).deviator.copy()
     deviator[4] = np.nan
     strain = STRAINS.copy()
