@@ -7,7 +7,7 @@ jump to and fro between two faces, the second finds the edge. A step is taken on
 distance, with a penalty for limits still met.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -20,6 +20,7 @@ _STEPS = 0.5 ** np.arange(9)
 _REACH = 1.0  # linearised limits farther away than this are forgotten
 _KEPT = 12
 _NULL_STEPS = 6
+_SAME = 0.05  # distance over 1 + radius below which two design points are one
 _CLOSE = 1e-4  # a step or an aim no longer than this ends the search
 _PENALTY = 2.0  # over the multiplier of the constraint; above one the penalty is exact
 
@@ -44,7 +45,13 @@ class SearchEnd:
 
 
 def design_point_search(
-    margin: Margin, start: FloatArray, scale: float, *, step: float = 1e-3, iterations: int = 60
+    margin: Margin,
+    start: FloatArray,
+    scale: float,
+    *,
+    step: float = 1e-3,
+    known: Sequence[FloatArray] = (),
+    iterations: int = 60,
 ) -> SearchEnd | None:
     """Nearest point of a limit, searched from one start.
 
@@ -58,19 +65,23 @@ def design_point_search(
         Typical change of the margin over one unit, in its unit.
     step : float, [-]
         Half of the step of the central differences.
+    known : sequence of ndarray, shape (d,), [-]
+        Design points already found; the search ends where it comes upon one.
     iterations : int, [-]
         Greatest number of gradients.
 
     Returns
     -------
     end : SearchEnd or None
-        Point on the limit; None where the search did not reach the limit.
+        Point on the limit; None where the search did not reach the limit or came upon a known point.
     """
     search = _Search(lambda u: margin(u) / scale, step)
     search.move(start, float(search.margin(start[np.newaxis])[0]))
     settled = False
     while not settled and search.gradients < iterations and search.advance():
         settled = search.settled()
+        if any(alike(search.u, point) for point in known):
+            return None
     found = on_limit(search.margin, search.u)
     if found is None:
         return None
@@ -79,6 +90,22 @@ def design_point_search(
         converged=settled and bool(np.linalg.norm(found - search.u) < 10.0 * _CLOSE * (1.0 + search.radius)),
         iterations=search.gradients,
     )
+
+
+def alike(one: FloatArray, other: FloatArray) -> bool:
+    """Whether two design points are the same for every purpose.
+
+    Parameters
+    ----------
+    one, other : ndarray, shape (d,), [-]
+        Points.
+
+    Returns
+    -------
+    alike : bool
+        True where they are closer than 0.05 (1 + radius).
+    """
+    return bool(np.linalg.norm(one - other) < _SAME * (1.0 + np.linalg.norm(one)))
 
 
 @dataclass(slots=True)

@@ -8,7 +8,7 @@ from scipy.special import ndtr
 
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.errors import ConvergenceError, ParameterError
-from probsoil.probability.design_point_search import Margin, SearchEnd, design_point_search
+from probsoil.probability.design_point_search import Margin, SearchEnd, alike, design_point_search
 from probsoil.probability.limit_state import CountedMargin, LimitState, generator
 
 if TYPE_CHECKING:
@@ -22,7 +22,6 @@ ASSUMPTION = (
 
 _RADII = np.array([1.5, 3.0, 4.5])
 _APART = 0.5  # cosine above which two starts look the same way
-_SAME = 0.05  # distance over 1 + beta below which two design points are one
 _FARTHER = 2.0  # what lies beyond the nearest point by more than this adds a few hundredths at most
 
 
@@ -185,10 +184,15 @@ def _starts(
 def _searched(margin: Margin, begin: list[FloatArray], scale: float, step: float) -> list[SearchEnd]:
     """Different ends of the searches, the nearest first."""
     ends: list[SearchEnd] = []
+
+    def look_from(start: FloatArray) -> None:
+        known = [end.u for end in ends if end.converged]
+        _add(ends, design_point_search(margin, start, scale, step=step, known=known))
+
     for start in begin:
-        _add(ends, design_point_search(margin, start, scale, step=step))
+        look_from(start)
     for end in tuple(ends):  # a limit on both sides of the median has a twin opposite
-        _add(ends, design_point_search(margin, -end.u, scale, step=step))
+        look_from(-end.u)
     settled = [end for end in ends if end.converged] or ends
     settled.sort(key=lambda end: float(np.linalg.norm(end.u)))
     return [end for end in settled if np.linalg.norm(end.u) <= np.linalg.norm(settled[0].u) + _FARTHER]
@@ -197,9 +201,8 @@ def _searched(margin: Margin, begin: list[FloatArray], scale: float, step: float
 def _add(ends: list[SearchEnd], end: SearchEnd | None) -> None:
     if end is None:
         return
-    near = _SAME * (1.0 + float(np.linalg.norm(end.u)))
     for place, other in enumerate(ends):
-        if np.linalg.norm(other.u - end.u) < near:
+        if alike(end.u, other.u):
             nearer = np.linalg.norm(end.u) < np.linalg.norm(other.u)
             if (end.converged, nearer) > (other.converged, False):
                 ends[place] = end

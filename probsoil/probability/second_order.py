@@ -19,8 +19,8 @@ ASSUMPTION = (
     "the limit is a paraboloid at each design point, twice differentiable there, and no part of the "
     "exceeding region is as near to the origin as the points the search found; no interval goes with it"
 )
-_ALIKE = 0.1  # share by which curvatures at two steps may differ where the limit is smooth
-_FLAT = 0.01  # curvature below which a difference does not matter
+_ALIKE = 0.1  # change of ln P from step to step that a smooth limit may show
+_OTHER_STEPS = (0.5, 4.0)  # over the step: an edge beside the point shows at one of them
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -37,7 +37,8 @@ class SecondOrder:
         Probability of the paraboloid at each point by the two formulas; not a number where the limit bends
         towards the origin as sharply as a sphere, for which they do not hold.
     smooth : ndarray of bool, shape (n_point,), [-]
-        Whether the curvatures at two steps agree; at an edge they do not, and the numbers mean nothing.
+        Whether curvatures at half and at four times the step, along each tangent, change the probability by
+        less than a tenth; at or beside an edge they change it more, and the numbers mean nothing.
     probability : float, [-]
         Sum over the points by Hohenbichler and Rackwitz: an upper bound where there are several.
     model_runs : int, [-]
@@ -71,7 +72,7 @@ class SecondOrder:
         return pd.DataFrame(columns | bent)
 
 
-def second_order(limit: LimitState, first: FirstOrder, *, step: float = 0.05) -> SecondOrder:
+def second_order(limit: LimitState, first: FirstOrder, *, step: float = 0.1) -> SecondOrder:
     r"""Probability to second order (SORM) from the curvatures at the design points.
 
     Parameters
@@ -118,7 +119,8 @@ def second_order(limit: LimitState, first: FirstOrder, *, step: float = 0.05) ->
     def margin(u: FloatArray) -> FloatArray:
         return sign * counted(u)
 
-    found = [_curvatures(margin, point, step) for point in first.point]
+    with np.errstate(invalid="ignore"):  # a failed run beside a point leaves it without a number
+        found = [_curvatures(margin, point, step) for point in first.point]
     radius = np.abs(first.beta)
     plain = ndtr(-radius)
     steeper = np.exp(-0.5 * radius**2) / np.sqrt(2.0 * np.pi) / plain
@@ -147,7 +149,7 @@ def _bending(radius: FloatArray, curvature: FloatArray) -> FloatArray:
 
 
 def _curvatures(margin: Margin, point: FloatArray, step: float) -> tuple[FloatArray, bool]:
-    """Principal curvatures at a point, and whether two steps agree on them."""
+    """Principal curvatures at a point, and whether other steps agree on what they do."""
     slope = central_gradient(margin, point, min(step, 1e-3))
     size = float(np.linalg.norm(slope))
     if size == 0.0:
@@ -156,12 +158,11 @@ def _curvatures(margin: Margin, point: FloatArray, step: float) -> tuple[FloatAr
     bent, diagonal = _second_differences(margin, point, frame, step)
     if not np.isfinite(bent).all():
         return np.full(len(point) - 1, np.nan), False
-    half = _diagonal(margin, point, frame, 0.5 * step)
-    apart = np.abs(half - diagonal).max(initial=0.0) / size
-    largest = np.abs(diagonal).max(initial=0.0) / size
-    return np.asarray(np.linalg.eigvalsh(bent) / size, dtype=np.float64), bool(
-        apart <= _ALIKE * largest + _FLAT
-    )
+    radius = np.array([np.linalg.norm(point)])
+    others = [_diagonal(margin, point, frame, factor * step) for factor in _OTHER_STEPS]
+    effect = np.log([_bending(radius, one[np.newaxis] / size)[0] for one in (diagonal, *others)])
+    smooth = bool(np.ptp(effect) <= _ALIKE)  # false where one of them is not a number
+    return np.asarray(np.linalg.eigvalsh(bent) / size, dtype=np.float64), smooth
 
 
 def _tangents(normal: FloatArray) -> FloatArray:

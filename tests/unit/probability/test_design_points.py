@@ -166,6 +166,20 @@ def test_no_curvature_where_the_limit_is_flat_or_has_no_number():
         assert not found.smooth[0]
 
 
+def test_edge_beside_the_design_point_is_told_too():
+    """The face of the point is plane up to 0.3 from it, where another begins."""
+    state = limit(lambda u: 3.0 - u[:, 0] + 4.0 * np.maximum(u[:, 1] - 0.3, 0.0), 2)
+    found = second_order(state, first_order(state))
+    assert found.curvature[0, 0] == pytest.approx(0.0, abs=1e-6)
+    assert not found.smooth[0]
+
+
+def test_failed_runs_beside_a_design_point_leave_no_curvature():
+    state = limit(lambda u: np.where(np.abs(u[:, 1:]).max(axis=1) > 0.05, np.nan, 3.0 - u[:, 0]), 4)
+    found = second_order(state, first_order(limit(lambda u: 3.0 - u[:, 0], 4)))
+    assert np.isnan(found.curvature).all()
+
+
 def test_sphere_bends_too_sharply_for_the_formula():
     state = limit(lambda u: 25.0 - (u**2).sum(axis=1), 2)
     found = second_order(state, first_order(state))
