@@ -242,7 +242,8 @@ def test_range_of_variability_is_checked(given: str, said: str) -> None:
 
 def test_range_of_variability_is_of_lognormal_laws_only() -> None:
     old = 'M = { dist = "normal", mean = 1.02, cov = 0.06 }'
-    new = 'M = { dist = "normal", mean = 1.02, cov = 0.06, inherent_cov = { low = 0.1, high = 0.2 }, vertical_scale = 2 }'
+    more = "inherent_cov = { low = 0.1, high = 0.2 }, vertical_scale = 2"
+    new = old.replace(" }", f", {more} }}")
     with pytest.raises(ScenarioError) as caught:
         parse_scenario(GROUND.replace(old, new))
     assert "one number" in caught.value.faults[0].message
