@@ -54,7 +54,7 @@ class PlacesOfTests:
         Layer of each.
     depth : ndarray, shape (n_test,), [m]
         Depth below the top of its layer.
-    spot : tuple of (float, float) or str
+    spot : tuple of (float, float) or str, [m]
         Where in plan.
     """
 
@@ -75,7 +75,7 @@ def spots(places: Sequence[Position | None], holes: Sequence[str]) -> tuple[Spot
 
     Returns
     -------
-    spot : tuple of (float, float) or str
+    spot : tuple of (float, float) or str, [m]
         The position; without one that of another test in the same hole; else the hole, those without a name
         counting as one.
     """
@@ -149,14 +149,33 @@ class PointVariability:
         return max((one.group for one in self.fields), default=0)
 
     def own(self, part: int) -> FloatArray:
-        """Which tests lie in the layer of a local part, 0 or 1, shape (n_test,), [-]."""
+        """Tell which tests lie in the layer of a local part.
+
+        Parameters
+        ----------
+        part : int, [-]
+            Local part.
+
+        Returns
+        -------
+        own : ndarray, shape (n_test,), [-]
+            1 or 0.
+        """
         layer = self.fields[part].layer
         return np.array([float(one == layer) for one in self.tests.layer])
 
     def slope(self, part: int) -> FloatArray:
-        """Covariance of a local part at each test with its average there, shape (n_test,), [-].
+        """Covariance of a local part at each test with its average there.
 
-        The average has variance one. A test in another layer stands for the average.
+        Parameters
+        ----------
+        part : int, [-]
+            Local part.
+
+        Returns
+        -------
+        slope : ndarray, shape (n_test,), [-]
+            The average has variance one. A test in another layer stands for the average.
         """
         field, own = self.fields[part], self.own(part)
         if field.length is None or field.vertical_scale is None:
@@ -167,9 +186,19 @@ class PointVariability:
     def across_plan(
         self, parts: tuple[int, int], first: Sequence[Spot], second: Sequence[Spot]
     ) -> FloatArray:
-        """Correlation in plan between the averages of two local parts, (n_first, n_second), [-].
+        """Correlation in plan between the averages of two local parts.
 
-        Parts with different horizontal scales keep step at the first station only.
+        Parameters
+        ----------
+        parts : tuple of int, [-]
+            The two; with different horizontal scales they keep step at the first station only.
+        first, second : sequence of (float, float) or str, [m]
+            Plan positions or holes.
+
+        Returns
+        -------
+        correlation : ndarray, shape (n_first, n_second), [-]
+            But for the correlation of the parts.
         """
         scales = [self.fields[part].horizontal_scale for part in parts]
         if parts[0] == parts[1] or scales[0] == scales[1]:
@@ -179,10 +208,18 @@ class PointVariability:
         return before * plan_correlation(second, centre, scales[1]).T
 
     def between_tests(self, first: int, second: int) -> FloatArray:
-        """Correlation of two local parts between tests, but for that of the parts, (n_test, n_test), [-].
+        """Covariance of two local parts between tests.
 
-        In units of the variance of the averages. Within a layer and with the same scales it falls off with
-        depth and distance; otherwise only the averages of the parts keep step.
+        Parameters
+        ----------
+        first, second : int, [-]
+            Local parts. Within a layer and with the same scales it falls off with depth and distance;
+            otherwise only the averages of the parts keep step.
+
+        Returns
+        -------
+        covariance : ndarray, shape (n_test, n_test), [-]
+            In units of the variance of the averages, but for the correlation of the parts.
         """
         plan = self.across_plan((first, second), self.tests.spot, self.tests.spot)
         averages = np.outer(self.slope(first), self.slope(second)) * plan
@@ -203,7 +240,20 @@ class PointVariability:
         return np.where(both, np.exp(-2.0 * apart / one.vertical_scale) / one.ratio * plan, averages)
 
     def at_one_test(self, first: int, second: int, number: int) -> float:
-        """Covariance of two local parts at the point of a test, but for the parts' correlation, [-]."""
+        """Covariance of two local parts at the point of one test.
+
+        Parameters
+        ----------
+        first, second : int, [-]
+            Local parts.
+        number : int, [-]
+            Test.
+
+        Returns
+        -------
+        covariance : float, [-]
+            As `between_tests`.
+        """
         tests = self.tests
         alone = PlacesOfTests(
             layer=tests.layer[number : number + 1],
@@ -213,9 +263,19 @@ class PointVariability:
         return float(replace(self, tests=alone).between_tests(first, second)[0, 0])
 
     def with_station(self, part: int, other: int, station: int) -> FloatArray:
-        """Covariance of a local part at each test with the average of another at a station, (n_test,), [-].
+        """Covariance of a local part at each test with the average of another at a station.
 
-        But for the correlation of the parts.
+        Parameters
+        ----------
+        part, other : int, [-]
+            Local parts.
+        station : int, [-]
+            Place of the station.
+
+        Returns
+        -------
+        covariance : ndarray, shape (n_test,), [-]
+            But for the correlation of the parts.
         """
         place = self.positions[station : station + 1]
         return self.slope(part) * self.across_plan((part, other), self.tests.spot, place)[:, 0]

@@ -51,8 +51,10 @@ class Updated:
         Factor on the local parts.
     score_mean, score_sd : ndarray, shape (n_component, n_parameter), [-]
         Of the normal scores at the first station.
-    prior_weight, prior_mean, prior_sd : ndarray
-        The same before the tests.
+    prior_weight : ndarray, shape (n_grid,), [-]
+        Chance of each variability before the tests.
+    prior_mean, prior_sd : ndarray, shape (n_grid, n_parameter), [-]
+        Of the normal scores at the first station before the tests.
     observations : tuple of Observation
         The tests.
     rows : tuple of Row

@@ -135,7 +135,9 @@ def test_what_is_written_back_reads_the_same(tmp_path: Path) -> None:
         (GOOD.replace(",10,5,", ",10,,"), "x", "go together"),
     ],
 )
-def test_mistakes_in_a_file_are_told_with_row_and_column(tmp_path: Path, row: str, column: str, said: str) -> None:
+def test_mistakes_in_a_file_are_told_with_row_and_column(
+    tmp_path: Path, row: str, column: str, said: str
+) -> None:
     (fault,) = faults_of(with_file(tmp_path, GOOD, row), tmp_path)
     assert fault.line == GROUND.count("\n") + 3
     assert f'tests.csv, row 3, column "{column}"' in fault.message
@@ -240,7 +242,8 @@ def test_range_of_variability_is_checked(given: str, said: str) -> None:
 
 def test_range_of_variability_is_of_lognormal_laws_only() -> None:
     old = 'M = { dist = "normal", mean = 1.02, cov = 0.06 }'
-    new = 'M = { dist = "normal", mean = 1.02, cov = 0.06, inherent_cov = { low = 0.1, high = 0.2 }, vertical_scale = 2 }'
+    more = "inherent_cov = { low = 0.1, high = 0.2 }, vertical_scale = 2"
+    new = old.replace(" }", f", {more} }}")
     with pytest.raises(ScenarioError) as caught:
         parse_scenario(GROUND.replace(old, new))
     assert "one number" in caught.value.faults[0].message
