@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
+from probsoil.ground.amounts import Amount, beside_depths, greater, key_of
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.excavation import pressure_on_base
@@ -30,7 +31,7 @@ class AppliedLoad:
         Stress below the middle of the slope over that below the centreline, full height; for a
         foundation that below the edge (at the middle of a long side) over that below the reported
         point, at most 1; 1 for a wide area.
-    height : ndarray, shape (n_knot,), [m]
+    height : ndarray, shape (n_knot,) or (n_knot, n_sample), [m]
         Height of fill at the load knots, where it is highest on the site.
     water_depth : ndarray, shape (n_sample,), [m]
         Depth of the water table.
@@ -192,9 +193,10 @@ def applied_load(
     if site.embankment is not None:
         spread, share, berm = _embankment_spread(site.embankment, depth, site.offset)
         at_height = {
-            height: _influence(site.embankment, depth, height, site.offset) for height in set(heights)
+            key_of(height): _influence(site.embankment, depth, height, site.offset)
+            for height in {key_of(one): one for one in heights}.values()
         }
-        stress = [weight[:, None] * at_height[height] for height in heights]
+        stress = [weight[:, None] * at_height[key_of(height)] for height in heights]
     else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
@@ -207,7 +209,7 @@ def applied_load(
         stress=np.stack(stress),
         spread=spread,
         slope_share=share,
-        height=np.array([site.greatest_fill_height(float(time)) for time in site.knots]),
+        height=np.stack(np.broadcast_arrays(*(site.greatest_fill_height(float(time)) for time in site.knots))),
         water_depth=column(values, "site.water_table", n_sample),
         berm_share=berm,
     )
@@ -225,7 +227,8 @@ def _with_further_loads(load: AppliedLoad, site: SiteModel, values: Values, plac
         spread += by_pressure
         for knot, time in enumerate(site.knots.tolist()):
             by_fill = one.fill_influence(places, site.point, site.fill_height(time, one.name))
-            stresses[place, knot] = weight * by_fill + site.pressure(time, one.name) * by_pressure
+            pressure = beside_depths(site.pressure(time, one.name))
+            stresses[place, knot] = weight * by_fill + pressure * by_pressure
     # what submergence takes off is taken to be the same under every load
     total = load.stress + stresses.sum(axis=0)
     return replace(load, stress=total, further=stresses, further_spread=spread)
@@ -259,16 +262,17 @@ def _embankment_spread(
 
     Away from the centreline no strength is asked for, and the shares are ones.
     """
-    middle, full = 0.5 * shape.base_width, shape.section(shape.full_height)
+    shape = shape.beside_depths
+    middle = 0.5 * shape.base_width
     centre = _influence(shape, depth, shape.full_height, offset)
     if offset != 0.0:
         return centre / shape.full_height, np.ones_like(depth), None
 
-    def share(place: float) -> FloatArray:
+    def share(place: Amount) -> FloatArray:
         return np.clip(_influence(shape, depth, shape.full_height, middle - place) / centre, 0.0, 1.0)
 
-    slope = share(0.5 * (full.berm_zone + full.slope_zone))
-    berm = share(0.5 * full.berm_zone) if shape.berm_width > 0.0 else None
+    slope = share(0.5 * (shape.berm_zone + shape.slope_zone))
+    berm = share(0.5 * shape.berm_zone) if shape.berm_width > 0.0 else None
     return centre / shape.full_height, slope, berm
 
 
@@ -338,8 +342,9 @@ def relief_by_water(
     return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread_of_all, np.maximum(most, 0.0))
 
 
-def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:
+def _influence(shape: Embankment, depth: FloatArray, height: Amount, offset: Amount = 0.0) -> FloatArray:
     """Return the added stress at a height of fill over the unit weight of fill, [m]."""
-    influence = trapezia_influence(depth, offset, shape.trapezia(max(height, 0.0)))
+    trapezia = shape.beside_depths.trapezia(greater(beside_depths(height), 0.0))
+    influence = trapezia_influence(depth, offset, trapezia)
     # far beside the toe the two halves cancel but for rounding
-    return influence if offset == 0.0 else np.maximum(influence, 0.0)
+    return influence if isinstance(offset, float) and offset == 0.0 else np.maximum(influence, 0.0)

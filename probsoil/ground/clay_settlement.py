@@ -55,7 +55,8 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
     spread = chosen(load.spread_of_all, clay)
-    submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
+    height = np.broadcast_to(np.atleast_2d(load.height.T).T, (site.knots.size, len(spread)))
+    submergence = Submergence(spread=spread, height=height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
         stress=_added_total(ground),

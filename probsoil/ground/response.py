@@ -18,6 +18,7 @@ from probsoil.ground.site_model import SiteModel
 from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
 from probsoil.ground.top_up import added_fill
 from probsoil.ground.undrained_distortion import undrained_distortion
+from probsoil.ground.works import built
 
 COMPETING = 2e-3
 
@@ -156,6 +157,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     constrained modulus; so does clay that has an undrained modulus, by distortion at constant volume.
     """
     n_sample = sample_size(values)
+    site = built(site, values, n_sample)
     points = points_in_situ(site, values, n_sample)
     columns = clay_columns(site, values, n_sample)
     yield_stress, floored = yield_stresses(site, values, points)

@@ -2,10 +2,12 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import reduce
 
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import Amount, greater
 from probsoil.ground.cells import DEFAULT_CELLS, FOUNDATION_CELLS, Cells, graded_cells
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation, foundation_of
@@ -88,6 +90,11 @@ class SiteModel:
         Time until which fill is added so that its level stays; None where none is.
     further_loads : tuple of FurtherLoadForm
         Loads beside the one that is assessed.
+    works : Scenario or None
+        Says what is built, where anything of it is uncertain: then heights, widths and so on are here the
+        means, and `works.built` puts those of the realisations in their place. None where nothing is.
+    face : float, [m]
+        Depth of the base of a foundation for which the cells were laid out.
     """
 
     layers: tuple[LayerForm, ...]
@@ -111,6 +118,8 @@ class SiteModel:
     station_name: str | None = None
     hold_level_until: float | None = None
     further_loads: tuple[FurtherLoadForm, ...] = ()
+    works: Scenario | None = None
+    face: float = 0.0
 
     @property
     def seeps(self) -> bool:
@@ -133,7 +142,7 @@ class SiteModel:
         times = {0.0, self.horizon, *(t for stage in self.stages for t in (stage.start, stage.end))}
         return np.array(sorted(times))
 
-    def fill_height(self, time: float, load: str | None = None) -> float:
+    def fill_height(self, time: float, load: str | None = None) -> Amount:
         """Return the height of fill at a time.
 
         Parameters
@@ -145,12 +154,13 @@ class SiteModel:
 
         Returns
         -------
-        height : float, [m]
+        height : float or ndarray, shape (n_sample,), [m]
             Fill on the ground.
         """
-        return sum(stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load)
+        laid = [stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load]
+        return sum(laid, 0.0)
 
-    def greatest_fill_height(self, time: float) -> float:
+    def greatest_fill_height(self, time: float) -> Amount:
         """Return the height of fill at a time where it is highest on the site.
 
         Parameters
@@ -160,13 +170,13 @@ class SiteModel:
 
         Returns
         -------
-        height : float, [m]
+        height : float or ndarray, shape (n_sample,), [m]
             Of the load that is assessed where there is no other.
         """
         further = [self.fill_height(time, load.name) for load in self.further_loads]
-        return max([self.fill_height(time), *further])
+        return reduce(greater, further, self.fill_height(time))
 
-    def pressure(self, time: float, load: str | None = None) -> float:
+    def pressure(self, time: float, load: str | None = None) -> Amount:
         """Return the pressure that stages have added besides fill.
 
         Parameters
@@ -178,17 +188,18 @@ class SiteModel:
 
         Returns
         -------
-        pressure : float, [kPa]
+        pressure : float or ndarray, shape (n_sample,), [kPa]
             Pressure on the ground.
         """
-        return sum(stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load)
+        added = [stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load]
+        return sum(added, 0.0)
 
     @property
     def excavates(self) -> bool:
         """Whether soil is dug out for the foundation; then pressures count what is placed in full."""
         return any(stage.excavate for stage in self.stages)
 
-    def dug(self, time: float) -> float:
+    def dug(self, time: float) -> Amount:
         """Return the depth to which soil has been dug out.
 
         Parameters
@@ -198,10 +209,13 @@ class SiteModel:
 
         Returns
         -------
-        depth : float, [m]
-            Below ground level.
+        depth : float or ndarray, shape (n_sample,), [m]
+            Below ground level; where the depth of the base is uncertain, in proportion to it.
         """
-        return sum(stage.excavate * laid_share(stage, time) for stage in self.stages)
+        depth = sum(stage.excavate * laid_share(stage, time) for stage in self.stages)
+        if self.foundation is None or isinstance(self.foundation.depth, float):
+            return depth
+        return depth / self.face * self.foundation.depth
 
     @property
     def point(self) -> tuple[float, float]:
@@ -264,13 +278,14 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     stages = stage_forms(scenario)
     embankment = embankment_of(scenario, stages)
     foundation = foundation_of(scenario.load)
+    face = 0.0 if foundation is None else float(foundation.depth)
     record, slip_times = recorded_times(scenario, stages, embankment)
     horizon = float(scenario.horizon)
     cells = graded_cells(
         np.array([layer.mean_thickness for layer in layers]),
         np.array([layer.is_clay for layer in layers]),
         base_drained=scenario.site.base == "drained",
-        load_depth=0.0 if foundation is None else foundation.depth,
+        load_depth=face,
         target=_cell_target(layers, foundation) * refine,
     )
     # where stages of several loads begin or end together, the shortest says how fine the steps are
@@ -315,10 +330,12 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         base_head=scenario.site.base_head is not None,
         hold_level_until=hold,
         further_loads=further_load_forms(scenario, stages),
+        works=scenario if any(one.of_works for one in scenario.quantities()) else None,
+        face=face,
     )
 
 
 def _cell_target(layers: Sequence[LayerForm], foundation: Foundation | None) -> int:
     """Return how many cells there should be: more where the stress of a small foundation fades with depth."""
     depth = sum(layer.mean_thickness for layer in layers)
-    return DEFAULT_CELLS if foundation is None or foundation.width >= depth else FOUNDATION_CELLS
+    return DEFAULT_CELLS if foundation is None or float(foundation.width) >= depth else FOUNDATION_CELLS

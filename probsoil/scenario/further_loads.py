@@ -5,9 +5,9 @@ from typing import Annotated, Literal
 from pydantic import Field
 
 from probsoil.scenario.base import Name, Table
-from probsoil.scenario.distributions import Distribution
+from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number
-from probsoil.scenario.loads import FILL_WEIGHT, side, slope_run, width_of_top
+from probsoil.scenario.loads import FILL_WEIGHT, depth_of_base, side, slope_run, width_of_top
 
 _ACROSS = "across (along the width of [load])"
 
@@ -18,13 +18,8 @@ def _place(meaning: str) -> Number:
 
 _X = _place(f"distance of its centre from that of [load], {_ACROSS}")
 _Y = _place("distance of its centre from that of [load], along (the length of [load])")
-_DEPTH = Number(
-    kind="length",
-    low=0.0,
-    high=50.0,
-    source="common practice",
-    meaning="depth of its base below ground level; stress is added from there down",
-)
+_DEPTH = depth_of_base("depth of its base below ground level; stress is added from there down")
+_AT_GROUND_LEVEL = Constant(value=0.0)
 
 
 class _Further(Table):
@@ -49,15 +44,15 @@ class FurtherEmbankment(_Further):
     ----------
     shape : str
         ``embankment``.
-    crest_width, side_slope : float, [m], [-]
+    crest_width, side_slope : Distribution, [m], [-]
         Width of the top at the greatest height, run of the slope per unit of rise.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[float, width_of_top()]
-    side_slope: Annotated[float, slope_run()]
+    crest_width: Annotated[Distribution, width_of_top()]
+    side_slope: Annotated[Distribution, slope_run()]
     x: Annotated[float, _X]
 
 
@@ -80,15 +75,15 @@ class FurtherStrip(_Further):
     ----------
     shape : str
         ``strip``.
-    width, depth : float, [m]
+    width, depth : Distribution, [m]
         Width, and depth of the base.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the strip")]
-    depth: Annotated[float, _DEPTH] = 0.0
+    width: Annotated[Distribution, side("width of the strip")]
+    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
 
 
@@ -99,16 +94,16 @@ class FurtherRectangle(_Further):
     ----------
     shape : str
         ``rectangle``.
-    width, length, depth : float, [m]
+    width, length, depth : Distribution, [m]
         Sides across and along, and depth of the base.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, side("side of the rectangle across")]
-    length: Annotated[float, side("side of the rectangle along")]
-    depth: Annotated[float, _DEPTH] = 0.0
+    width: Annotated[Distribution, side("side of the rectangle across")]
+    length: Annotated[Distribution, side("side of the rectangle along")]
+    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 
@@ -120,15 +115,15 @@ class FurtherCircle(_Further):
     ----------
     shape : str
         ``circle``.
-    diameter, depth : float, [m]
+    diameter, depth : Distribution, [m]
         Diameter, and depth of the base.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, side("diameter of the circle")]
-    depth: Annotated[float, _DEPTH] = 0.0
+    diameter: Annotated[Distribution, side("diameter of the circle")]
+    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 

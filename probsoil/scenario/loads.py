@@ -32,42 +32,44 @@ HoldLevel = Annotated[
 ]
 
 
-def width_of_top() -> Number:
+def width_of_top() -> Uncertain:
     """Return the field of the width of an embankment's top.
 
     Returns
     -------
-    field : Number
+    field : Uncertain
         Above 0.
     """
-    return Number(
+    return Uncertain(
         kind="length",
         low=0.0,
         high=1000.0,
         open_low=True,
         source="by definition",
         meaning="width of the top of the embankment at its greatest height",
+        of_works=True,
     )
 
 
-def slope_run() -> Number:
+def slope_run() -> Uncertain:
     """Return the field of the run of a side slope.
 
     Returns
     -------
-    field : Number
+    field : Uncertain
         0 for a vertical side.
     """
-    return Number(
+    return Uncertain(
         kind="number",
         low=0.0,
         high=20.0,
         source="common practice",
         meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
+        of_works=True,
     )
 
 
-def side(meaning: str) -> Number:
+def side(meaning: str) -> Uncertain:
     """Return the field of a side or diameter.
 
     Parameters
@@ -77,10 +79,30 @@ def side(meaning: str) -> Number:
 
     Returns
     -------
-    field : Number
+    field : Uncertain
         From 0.1 m.
     """
-    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
+    return Uncertain(
+        kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning, of_works=True
+    )
+
+
+def depth_of_base(meaning: str) -> Uncertain:
+    """Return the field of the depth of a base below ground level.
+
+    Parameters
+    ----------
+    meaning : str
+        What goes with it.
+
+    Returns
+    -------
+    field : Uncertain
+        0 at ground level.
+    """
+    return Uncertain(
+        kind="length", low=0.0, high=50.0, source="common practice", meaning=meaning, of_works=True
+    )
 
 
 class EmbankmentLoad(Table):
@@ -90,9 +112,9 @@ class EmbankmentLoad(Table):
     ----------
     shape : str
         ``embankment``.
-    crest_width : float, [m]
+    crest_width : Distribution, [m]
         Width of the top at the greatest height reached.
-    side_slope : float, [-]
+    side_slope : Distribution, [-]
         Horizontal run per unit of rise; the base stays the same while the fill rises.
     fill_unit_weight : Distribution, [kN/m3]
         Bulk unit weight of the fill.
@@ -113,8 +135,8 @@ class EmbankmentLoad(Table):
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[float, width_of_top()]
-    side_slope: Annotated[float, slope_run()]
+    crest_width: Annotated[Distribution, width_of_top()]
+    side_slope: Annotated[Distribution, slope_run()]
     fill_unit_weight: Annotated[Distribution, FILL_WEIGHT]
     fill_phi: Annotated[
         Distribution,
@@ -217,7 +239,7 @@ class _Foundation(Table):
 
     Attributes
     ----------
-    depth : float, [m]
+    depth : Distribution, [m]
         Depth of the base below ground level.
     contact : str
         ``rough`` or ``smooth``: whether the base holds the soil under it against sliding outward.
@@ -228,16 +250,12 @@ class _Foundation(Table):
     """
 
     depth: Annotated[
-        float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=50.0,
-            source="common practice",
-            meaning="depth of the base below ground level; stress is added from there down, and the stages "
-            "give the net pressure, in excess of the weight of soil dug out",
+        Distribution,
+        depth_of_base(
+            "depth of the base below ground level; stress is added from there down, and the stages "
+            "give the net pressure, in excess of the weight of soil dug out"
         ),
-    ] = 0.0
+    ] = Constant(value=0.0)
     contact: Literal["rough", "smooth"] = Field(
         default="rough",
         description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
@@ -254,14 +272,14 @@ class StripLoad(_Foundation):
     ----------
     shape : str
         ``strip``.
-    width : float, [m]
+    width : Distribution, [m]
         Width of the strip.
     at : float, [m]
         Distance from the centreline at which settlement is reported.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the strip")]
+    width: Annotated[Distribution, side("width of the strip")]
     at: Annotated[float, _distance("distance from the centreline at which settlement is reported")] = 0.0
 
 
@@ -272,15 +290,15 @@ class RectangleLoad(_Foundation):
     ----------
     shape : str
         ``rectangle``.
-    width, length : float, [m]
+    width, length : Distribution, [m]
         Its sides; either may be the longer.
     at : tuple of float, [m]
         Point at which settlement is reported: distances from the centre along the width and the length.
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the rectangle")]
-    length: Annotated[float, side("length of the rectangle")]
+    width: Annotated[Distribution, side("width of the rectangle")]
+    length: Annotated[Distribution, side("length of the rectangle")]
     at: Annotated[
         tuple[Annotated[float, _PLAN_DISTANCE], Annotated[float, _PLAN_DISTANCE]], BeforeValidator(_point)
     ] = Field(
@@ -297,14 +315,14 @@ class CircleLoad(_Foundation):
     ----------
     shape : str
         ``circle``.
-    diameter : float, [m]
+    diameter : Distribution, [m]
         Its diameter.
     at : float, [m]
         Distance from the centre at which settlement is reported.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, side("diameter of the circle")]
+    diameter: Annotated[Distribution, side("diameter of the circle")]
     at: Annotated[float, _distance("distance from the centre at which settlement is reported")] = 0.0
 
 
@@ -323,10 +341,10 @@ class Stage(Table):
     ----------
     name : str
         Name, unique among the stages.
-    height : float or None, [m]
-        Height of fill.
-    pressure : float or None, [kPa]
-        Pressure; not with the load shape ``embankment``.
+    height : Distribution or None, [m]
+        Height of fill; of one sign.
+    pressure : Distribution or None, [kPa]
+        Pressure; of one sign; not with the load shape ``embankment``.
     start, end : float, [year]
         Times.
     load : str or None
@@ -346,22 +364,24 @@ class Stage(Table):
         default=None, description="which of the further loads the stage belongs to; if left out, [load]"
     )
     height: Annotated[
-        float | None,
-        Number(
+        Distribution | None,
+        Uncertain(
             kind="length",
             low=-100.0,
             high=100.0,
             source="common practice",
+            of_works=True,
             meaning="height of fill (or of what fills a tank) placed; negative is removal",
         ),
     ] = None
     pressure: Annotated[
-        float | None,
-        Number(
+        Distribution | None,
+        Uncertain(
             kind="pressure",
             low=-5000.0,
             high=5000.0,
             source="common practice",
+            of_works=True,
             meaning="pressure added, net of soil dug out unless a stage digs it out; not with "
             'shape = "embankment"; negative is removal',
         ),

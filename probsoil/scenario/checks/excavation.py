@@ -2,6 +2,7 @@
 
 from typing import Any
 
+from probsoil.scenario.amounts import known
 from probsoil.scenario.loads import FOUNDATIONS, Stage
 from probsoil.scenario.slips import Slip
 
@@ -57,9 +58,9 @@ def _order(own: list[tuple[int, Any]]) -> list[Slip]:
 
 
 def _depth(digging: list[Any], last: int, load: Any) -> list[Slip]:
-    total = sum(stage.excavate for stage in digging)
-    if not isinstance(load.depth, float) or abs(total - load.depth) < _ROUNDING:
+    total, base = sum(stage.excavate for stage in digging), known(load.depth)
+    if base is None or abs(total - base) < _ROUNDING:
         return []
-    message = f"{total:.4g} m are dug out in all, but the base lies {load.depth:.4g} m below ground level"
-    allowed = f"{load.depth:.4g} m in all, as depth in [load]"
+    message = f"{total:.4g} m are dug out in all, but the base lies {base:.4g} m below ground level"
+    allowed = f"{base:.4g} m in all, as depth in [load]"
     return [Slip(path=("stages", last, "excavate"), message=message, allowed=allowed)]
