@@ -11,8 +11,9 @@ from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario import Scenario
 from probsoil.scenario.checks.common import years_text
-from probsoil.scenario.distributions import Constant
-from probsoil.scenario.loads import EmbankmentLoad
+from probsoil.scenario.distributions import Constant, Distribution
+from probsoil.scenario.loads import EmbankmentLoad, Stage
+from probsoil.scenario.quantities import Quantity
 
 Row = dict[str, object]
 
@@ -40,11 +41,12 @@ def ground_record(study: Study, at_means: GroundState) -> Row:
         "base": scenario.site.base,
         "base_head": None if base_head is None else base_head.distribution.describe(base_head.unit),
         "layers": _layers(scenario),
-        "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
+        "load": {"shape": scenario.load.shape, "text": load_text(scenario, study.site)},
         "further_loads": [
-            {"name": one.name, "text": further_load_text(one)} for one in study.site.further_loads
+            {"name": one.name, "text": further_load_text(one) + uncertain_works(scenario, one.address)}
+            for one in study.site.further_loads
         ],
-        "stages": stage_rows(study.site),
+        "stages": stage_rows(scenario, study.site),
         "drains": None if scenario.drains is None else scenario.drains.describe(),
         "profile": _profile(study.site, at_means),
     }
@@ -72,7 +74,50 @@ def _layers(scenario: Scenario) -> list[Row]:
     return rows
 
 
-def _load_text(scenario: Scenario, site: SiteModel) -> str:
+def load_text(scenario: Scenario, site: SiteModel) -> str:
+    """Return the load in words.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    site : SiteModel
+        As laid out, at the means.
+
+    Returns
+    -------
+    text : str
+        Shape and sides; what of them is uncertain and how.
+    """
+    return _shape_text(scenario, site) + uncertain_works(scenario, "load")
+
+
+def uncertain_works(scenario: Scenario, address: str) -> str:
+    """Return in words which numbers of a load are uncertain, and how.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    address : str
+        First part of the load's addresses.
+
+    Returns
+    -------
+    text : str
+        Begins with a semicolon; empty where all are plain numbers.
+    """
+    found: list[Quantity] = [
+        one for one in scenario.quantities() if one.of_works and one.address.rpartition(".")[0] == address
+    ]
+    parts = [
+        f"{one.address.rpartition('.')[2].replace('_', ' ')} {one.distribution.describe(one.unit)}"
+        for one in found
+    ]
+    return f"; these are means, of {' and of '.join(parts)}" if parts else ""
+
+
+def _shape_text(scenario: Scenario, site: SiteModel) -> str:
     if isinstance(scenario.load, EmbankmentLoad) and site.embankment is not None:
         shape = site.embankment
         return (
@@ -129,13 +174,44 @@ def _beside(load: EmbankmentLoad) -> str:
     return text
 
 
-def stage_rows(site: SiteModel) -> list[Row]:
+def stage_change(stage: Stage) -> str:
+    """Return in words what a stage changes.
+
+    Parameters
+    ----------
+    stage : Stage
+        As read.
+
+    Returns
+    -------
+    text : str
+        Such as ``1.2 m of fill laid``; with its distribution where the amount is uncertain.
+    """
+    change = []
+    if stage.height is not None:
+        change.append(_amount(stage.height, "m", "of fill ", ("laid", "taken away")))
+    if stage.pressure is not None:
+        change.append(_amount(stage.pressure, "kPa", "", ("added", "removed")))
+    if stage.excavate is not None:
+        change.append(f"{stage.excavate:g} m of soil dug out")
+    return " and ".join(change) + ("" if stage.load is None else f" on {stage.load}")
+
+
+def _amount(amount: Distribution, unit: str, what: str, done: tuple[str, str]) -> str:
+    mean = amount.expectation
+    text = f"{abs(mean):g} {unit} {what}{done[0] if mean > 0.0 else done[1]}"
+    return text if isinstance(amount, Constant) else f"about {text} ({amount.describe(unit)})"
+
+
+def stage_rows(scenario: Scenario, site: SiteModel) -> list[Row]:
     """Return the stages of the load.
 
     Parameters
     ----------
+    scenario : Scenario
+        As read.
     site : SiteModel
-        Its stages.
+        Its stages, at the means.
 
     Returns
     -------
@@ -143,24 +219,16 @@ def stage_rows(site: SiteModel) -> list[Row]:
         Name, times, change in words, and fill and pressure of the load that is assessed after each stage.
     """
     rows: list[Row] = []
-    pressed = any(stage.pressure for stage in site.stages if stage.load is None)
-    for stage in site.stages:
-        change = []
-        if stage.height != 0.0:
-            change.append(f"{abs(stage.height):g} m of fill {'laid' if stage.height > 0.0 else 'taken away'}")
-        if stage.pressure != 0.0:
-            change.append(f"{abs(stage.pressure):g} kPa {'added' if stage.pressure > 0.0 else 'removed'}")
-        if stage.excavate != 0.0:
-            change.append(f"{stage.excavate:g} m of soil dug out")
-        on = "" if stage.load is None else f" on {stage.load}"
-        pressure = site.pressure(stage.end)
+    pressed = any(stage.pressure is not None for stage in scenario.stages if stage.load is None)
+    for stage in scenario.stages:
+        pressure = float(site.pressure(stage.end))
         rows.append(
             {
                 "name": stage.name,
                 "start": stage.start,
                 "end": stage.end,
-                "change_text": (" and ".join(change) or "no change") + on,
-                "height_after": round(site.fill_height(stage.end), 9),
+                "change_text": stage_change(stage),
+                "height_after": round(float(site.fill_height(stage.end)), 9),
                 "pressure_after": round(pressure, 9) if pressed else None,
             }
         )

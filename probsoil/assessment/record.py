@@ -302,7 +302,7 @@ def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
     site = study.site
     rows = _factor_rows(study, sample, site.bearing_times, sample.bearing)
     return [
-        row | {"pressure": round(site.pressure(float(time)), 9)}
+        row | {"pressure": round(float(site.pressure(float(time))), 9)}
         for row, time in zip(rows, site.bearing_times, strict=True)
     ]
 
@@ -320,7 +320,7 @@ def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factor
             {
                 "stage": ends.get(time, f"at {time:.3g} years"),
                 "time": time,
-                "fill_height": round(site.fill_height(time), 9),
+                "fill_height": round(float(site.fill_height(time)), 9),
                 "mean": _mean(factor),
                 "quantiles": quantiles(factor, worst=_WORST["not less than"]),
                 "probability_below_one": below.probability,

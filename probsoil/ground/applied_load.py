@@ -209,7 +209,9 @@ def applied_load(
         stress=np.stack(stress),
         spread=spread,
         slope_share=share,
-        height=np.stack(np.broadcast_arrays(*(site.greatest_fill_height(float(time)) for time in site.knots))),
+        height=np.stack(
+            np.broadcast_arrays(*(site.greatest_fill_height(float(time)) for time in site.knots))
+        ),
         water_depth=column(values, "site.water_table", n_sample),
         berm_share=berm,
     )

@@ -293,7 +293,12 @@ def limited_thickness_factor(width: ArrayLike, thickness: ArrayLike) -> FloatArr
 
 
 def squeezing_safety(
-    strength: ArrayLike, *, thickness: ArrayLike, height: ArrayLike, side_slope: ArrayLike, unit_weight: ArrayLike
+    strength: ArrayLike,
+    *,
+    thickness: ArrayLike,
+    height: ArrayLike,
+    side_slope: ArrayLike,
+    unit_weight: ArrayLike,
 ) -> FloatArray:
     r"""Return the factor of safety against squeezing of thin clay from under the side of an embankment.
 

@@ -1,6 +1,6 @@
 """A foundation: its plan, its depth and the stress that it adds to the ground."""
 
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np

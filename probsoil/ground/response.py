@@ -15,10 +15,15 @@ from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
-from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+from probsoil.ground.stability import (
+    competing_families,
+    moving_families,
+    slip_at_checks,
+    zone_strengths,
+)
 from probsoil.ground.top_up import added_fill
 from probsoil.ground.undrained_distortion import undrained_distortion
-from probsoil.ground.works import built
+from probsoil.ground.works import built, overdrawn
 
 COMPETING = 2e-3
 
@@ -66,6 +71,11 @@ class Response:
         Whether pore pressure in situ is no less than the weight of the ground somewhere.
     fill_added : ndarray, shape (n_sample, n_time), [m]
         Thickness of fill added on the centreline so that its level stays; no columns where none is.
+    circle : ndarray or None, shape (n_sample, n_check, 6), [m]
+        Where the critical circle lies, where the section of the fill is uncertain; otherwise None.
+    overdrawn : ndarray of bool or None, shape (n_sample,), [-]
+        Whether a stage was to take off more than is there, and took what was; None where nothing that is
+        built is uncertain.
     """
 
     times: FloatArray
@@ -85,6 +95,8 @@ class Response:
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    circle: FloatArray | None = None
+    overdrawn: BoolArray | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -174,7 +186,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         distortion = undrained_distortion(site, values, ground)
         settlement = settlement + distortion
     strength, before = zone_strengths(site, values, ground, result)
-    slip, critical = slip_at_checks(site, values, ground, strength)
+    slip, critical, circle = slip_at_checks(site, values, ground, strength)
     slip[~result.converged] = np.nan
     bearing = bearing_at_checks(site, values, ground, strength)
     bearing[~result.converged] = np.nan
@@ -190,6 +202,8 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip_times=site.slip_times,
         slip=slip,
         critical_circle=critical,
+        circle=circle,
+        overdrawn=overdrawn(site, values, n_sample),
         bearing=bearing,
         fill_added=_fill_added(ground, result),
         converged=result.converged,
@@ -254,5 +268,9 @@ def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> Si
     if not site.layouts:
         return site
     state = ground_state(replace(site, slip_times=site.slip_times[:0]), pilot)
-    families = competing_families(site, pilot, state.ground, state.strength, within=within)
+    here = built(site, pilot, sample_size(pilot))
+    if here.section_varies:
+        moving = moving_families(here, pilot, state.ground, state.strength, within=within)
+        return replace(site, moving=moving)
+    families = competing_families(here, pilot, state.ground, state.strength, within=within)
     return replace(site, families=families)

@@ -193,7 +193,7 @@ def _placed(scenario: Scenario, key: str, read: Reading) -> list[Amount]:
     return placed
 
 
-def overdrawn(scenario: Scenario, read: Reading, n_sample: int) -> BoolArray:
+def takes_too_much(scenario: Scenario, read: Reading, n_sample: int) -> BoolArray:
     """Return where a stage was to take off more than is there.
 
     Parameters
@@ -207,7 +207,7 @@ def overdrawn(scenario: Scenario, read: Reading, n_sample: int) -> BoolArray:
 
     Returns
     -------
-    overdrawn : ndarray of bool, shape (n_sample,), [-]
+    found : ndarray of bool, shape (n_sample,), [-]
         Whether any stage then took what was there.
     """
     found = np.zeros(n_sample, dtype=np.bool_)

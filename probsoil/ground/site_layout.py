@@ -73,10 +73,7 @@ def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> Amo
     height : float or ndarray, shape (n_sample,), [m]
         Greatest over the ends of its stages.
     """
-    heights = [stage.height for stage in stages if stage.load == load]
-    if all(isinstance(one, float) for one in heights):
-        return float(np.cumsum(heights).max())
-    return reduce(greater, accumulate(heights))
+    return reduce(greater, accumulate(stage.height for stage in stages if stage.load == load))
 
 
 def further_load_forms(
@@ -137,7 +134,7 @@ def traffic_start(load: Load, stages: Sequence[StageForm]) -> float:
     if load.traffic_from is not None:
         return load.traffic_from
     own = [stage for stage in stages if stage.load is None]
-    heights = np.cumsum([stage.height for stage in own])
+    heights = np.cumsum([float(stage.height) for stage in own])
     highest = int(np.argmax(heights > heights.max() - _ROUNDING))
     return own[highest].end
 
@@ -228,7 +225,7 @@ def bearing_check_times(scenario: Scenario, stages: Sequence[StageForm]) -> Floa
 def _pressed(stages: Sequence[StageForm], time: float) -> bool:
     own = [stage for stage in stages if stage.load is None]
     pressure = sum(stage.pressure * laid_share(stage, time) for stage in own)
-    return height_at(stages, time) > 0.0 or pressure > 1e-9
+    return bool(height_at(stages, time) > 0.0 or pressure > 1e-9)
 
 
 def circle_depth(embankment: Embankment, layers: Sequence[LayerForm]) -> float:

@@ -34,6 +34,7 @@ from probsoil.ground.site_layout import (
     traffic_start,
 )
 from probsoil.ground.slip_circles import CircleFamily, CircleLayout
+from probsoil.ground.slip_moving import MovingFamily
 from probsoil.ground.time_steps import time_axis
 from probsoil.scenario import Scenario
 
@@ -76,6 +77,8 @@ class SiteModel:
         Circles to look at, one layout for each of `slip_times`.
     families : tuple of CircleFamily
         Circles that compete, one family for each of `slip_times`; empty before they are screened.
+    moving : tuple of MovingFamily
+        The same where the section of the fill is uncertain: then there are no `families`.
     bearing_times : ndarray, shape (n_bearing,), [years]
         Times among `record` at which bearing is looked at (load on a foundation).
     traffic_from : float, [years]
@@ -110,6 +113,7 @@ class SiteModel:
     slip_times: FloatArray
     layouts: tuple[CircleLayout, ...]
     families: tuple[CircleFamily, ...] = ()
+    moving: tuple[MovingFamily, ...] = ()
     foundation: Foundation | None = None
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
@@ -193,6 +197,13 @@ class SiteModel:
         """
         added = [stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load]
         return sum(added, 0.0)
+
+    @property
+    def section_varies(self) -> bool:
+        """Whether the section of an embankment is that of each realisation."""
+        shape = self.embankment
+        sizes = () if shape is None else (shape.crest_width, shape.side_slope, shape.full_height)
+        return any(isinstance(size, np.ndarray) for size in sizes)
 
     @property
     def excavates(self) -> bool:

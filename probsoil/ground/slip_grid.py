@@ -128,6 +128,31 @@ def arcs_beside(
     return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
 
 
+def arcs_touching(
+    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, touch: FloatArray
+) -> Arcs:
+    """Return the circles through pairs of points that touch given depths.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    leave, enter : ndarray, shape (n_circle, 2), [m]
+        Where they leave and enter.
+    touch : ndarray, shape (n_circle,), [m]
+        Depths, above zero.
+
+    Returns
+    -------
+    arcs : Arcs
+        Those that there are: they enter higher and further in than they leave, and do not come out between.
+    """
+    rising = (leave < enter).all(axis=1)
+    leave, enter, touch = leave[rising], enter[rising], touch[rising]
+    centre, radius = _touching(leave, enter, touch)
+    return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
+
+
 def surface_point(section: EmbankmentSection, way: FloatArray) -> FloatArray:
     """Return points on the near surface, from the ground beyond the toe to the far shoulder.
 
@@ -198,10 +223,33 @@ def arcs_within_fill(section: EmbankmentSection, *, shallowest: float, density: 
     bend = np.linspace(0.0, 1.0, round(_BENDS * density) + 1)[1:]
     reach = _REACH_IN_FILL * section.height
     leave, enter, share = _mesh(_exits_on_fill(section, density), _entries(section, reach, density), bend)
+    return arcs_bent(section, leave, enter, share, shallowest=shallowest)
+
+
+def arcs_bent(
+    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, share: FloatArray, *, shallowest: float
+) -> Arcs:
+    """Return circles in the fill through pairs of points.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    leave, enter : ndarray, shape (n_circle, 2), [m]
+        Where they leave and enter, entries higher and further in.
+    share : ndarray, shape (n_circle,), [-]
+        Bend, as a share of the greatest there is: of a circle that touches ground level or enters vertically.
+    shallowest : float, [m]
+        How deep they pass below the shoulder behind which they enter, at least.
+
+    Returns
+    -------
+    arcs : Arcs
+        Those that there are.
+    """
+    half = share * _greatest_half_angle(leave, enter)
     run, rise = (enter - leave).T
     incline, chord = np.arctan2(rise, run), np.hypot(run, rise)
-    # half the angle of the arc: no more than where the circle touches ground level or enters vertically
-    half = share * np.minimum(_half_angle_on_ground(leave, enter, chord), 0.5 * np.pi - incline)
     radius = chord / (2.0 * np.sin(half))
     start = incline - half
     centre = leave + radius[:, None] * np.stack([-np.sin(start), np.cos(start)], axis=1)
@@ -209,6 +257,32 @@ def arcs_within_fill(section: EmbankmentSection, *, shallowest: float, density: 
     lowest = centre[:, 1] - np.sqrt(np.maximum(radius**2 - (shoulder - centre[:, 0]) ** 2, 0.0))
     deep = (enter[:, 1] - lowest >= shallowest) & (leave[:, 0] <= shoulder)
     return _valid(section, leave[deep], enter[deep], centre[deep], radius[deep])
+
+
+def bend_of(arcs: Arcs) -> FloatArray:
+    """Return the bend of circles in the fill.
+
+    Parameters
+    ----------
+    arcs : Arcs
+        Circles.
+
+    Returns
+    -------
+    share : ndarray, shape (n_circle,), [-]
+        As `arcs_bent` takes it.
+    """
+    leave = np.stack([arcs.exit_x, arcs.exit_y], axis=1)
+    enter = np.stack([arcs.entry_x, arcs.entry_y], axis=1)
+    chord = np.hypot(*(enter - leave).T)
+    return np.asarray(np.arcsin(chord / (2.0 * arcs.radius)) / _greatest_half_angle(leave, enter))
+
+
+def _greatest_half_angle(leave: FloatArray, enter: FloatArray) -> FloatArray:
+    """Return half the angle of the arc that touches ground level or enters vertically."""
+    run, rise = (enter - leave).T
+    on_ground = _half_angle_on_ground(leave, enter, np.hypot(run, rise))
+    return np.asarray(np.minimum(on_ground, 0.5 * np.pi - np.arctan2(rise, run)))
 
 
 def _half_angle_on_ground(leave: FloatArray, enter: FloatArray, chord: FloatArray) -> FloatArray:

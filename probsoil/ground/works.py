@@ -6,7 +6,7 @@ from probsoil._typing import BoolArray
 from probsoil.ground.amounts import Reading, drawn_from, single
 from probsoil.ground.foundation import foundation_of
 from probsoil.ground.profile import Values
-from probsoil.ground.site_forms import drain_form, height_at, overdrawn, stage_forms
+from probsoil.ground.site_forms import drain_form, height_at, stage_forms, takes_too_much
 from probsoil.ground.site_layout import circle_depth, embankment_of, further_load_forms
 from probsoil.ground.site_model import SiteModel
 
@@ -61,7 +61,7 @@ def built_once(site: SiteModel, values: Values) -> SiteModel:
     return replace(found, layouts=layouts)
 
 
-def taken_short(site: SiteModel, values: Values, n_sample: int) -> BoolArray | None:
+def overdrawn(site: SiteModel, values: Values, n_sample: int) -> BoolArray | None:
     """Return in which realisations a stage was to take off more than is there, and took what was.
 
     Parameters
@@ -75,10 +75,10 @@ def taken_short(site: SiteModel, values: Values, n_sample: int) -> BoolArray | N
 
     Returns
     -------
-    short : ndarray of bool or None, shape (n_sample,), [-]
+    overdrawn : ndarray of bool or None, shape (n_sample,), [-]
         None where nothing of the works is uncertain.
     """
-    return None if site.works is None else overdrawn(site.works, drawn_from(values, n_sample), n_sample)
+    return None if site.works is None else takes_too_much(site.works, drawn_from(values, n_sample), n_sample)
 
 
 def _built(site: SiteModel, read: Reading) -> SiteModel:

@@ -60,7 +60,10 @@ class _Addresses:
         tables += [] if scenario.drains is None else [("drains", scenario.drains)]
         tables += [
             (one.name if one.name is UNREAD else address(one.name), one)
-            for group, address in ((scenario.further_loads, further_address), (scenario.stages, stage_address))
+            for group, address in (
+                (scenario.further_loads, further_address),
+                (scenario.stages, stage_address),
+            )
             for one in group
             if one is not UNREAD
         ]
