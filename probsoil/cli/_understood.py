@@ -13,7 +13,12 @@ if TYPE_CHECKING:
     from probsoil.scenario.limits import Limit
 
 LEAST_CUT_SHOWN = 1e-6  # smaller shares are in the results, and only clutter here
-LIMIT_UNITS = {"settlement": "m", "differential_settlement": "m", "time_to_consolidation": "years"}
+LIMIT_UNITS = {
+    "settlement": "m",
+    "differential_settlement": "m",
+    "time_to_consolidation": "years",
+    "added_fill": "m3/m",
+}
 
 
 def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
@@ -63,7 +68,7 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
     load = scenario.load
     if load.shape == "embankment":
         console.print(
-            f"Load: embankment, crest {text_of(load.crest_width, 'm')} wide, side slopes 1 on "
+            f"Load: embankment, crest {text_of(load.crest_width, 'm', what='wide')}, side slopes 1 on "
             f"{text_of(load.side_slope)}\n"
         )
     else:
@@ -98,7 +103,7 @@ def _change(stage: "Stage") -> str:
     if stage.excavate is not None:
         return f"{stage.excavate:g} m of soil dug out"
     if stage.height is not None:
-        return f"{text_of(stage.height, 'm', signed=True)} of fill{on}"
+        return f"{text_of(stage.height, 'm', what='of fill', signed=True)}{on}"
     return "" if stage.pressure is None else f"{text_of(stage.pressure, 'kPa', signed=True)}{on}"
 
 

@@ -5,6 +5,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.ground.amounts import Amount
 from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
@@ -73,6 +74,8 @@ class Response:
         Thickness of fill added on the centreline so that its level stays; no columns where none is.
     circle : ndarray or None, shape (n_sample, n_check, 6), [m]
         Where the critical circle lies, where the section of the fill is uncertain; otherwise None.
+    mean_width : float or ndarray, shape (n_sample,), [m]
+        Of the section of an embankment, area over height; 1 for any other load.
     overdrawn : ndarray of bool or None, shape (n_sample,), [-]
         Whether a stage was to take off more than is there, and took what was; None where nothing that is
         built is uncertain.
@@ -97,6 +100,7 @@ class Response:
     fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     circle: FloatArray | None = None
     overdrawn: BoolArray | None = None
+    mean_width: Amount = 1.0
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -203,6 +207,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip=slip,
         critical_circle=critical,
         circle=circle,
+        mean_width=1.0 if site.embankment is None else site.embankment.mean_width,
         overdrawn=overdrawn(site, values, n_sample),
         bearing=bearing,
         fill_added=_fill_added(ground, result),

@@ -37,7 +37,7 @@ def known(amount: Any) -> float | None:
     return amount.expectation if isinstance(amount, Distribution) else None
 
 
-def text_of(amount: Distribution, unit: str = "", *, signed: bool = False) -> str:
+def text_of(amount: Distribution, unit: str = "", *, what: str = "", signed: bool = False) -> str:
     """Return an amount in words.
 
     Parameters
@@ -46,6 +46,8 @@ def text_of(amount: Distribution, unit: str = "", *, signed: bool = False) -> st
         As given.
     unit : str
         Unit; ``-`` or nothing for none.
+    what : str
+        What it is of, after the unit.
     signed : bool
         Whether the number shows its sign also where it is above zero.
 
@@ -55,7 +57,7 @@ def text_of(amount: Distribution, unit: str = "", *, signed: bool = False) -> st
         Such as ``1.3 m``, or ``about 1.3 m (normal, mean 1.3 m, standard deviation 0.1 m)``.
     """
     shown = f"{amount.expectation:+g}" if signed else f"{amount.expectation:g}"
-    shown += "" if unit in ("", "-") else f" {unit}"
+    shown += "".join(f" {one}" for one in (unit, what) if one not in ("", "-"))
     return shown if isinstance(amount, Constant) else f"about {shown} ({amount.describe(unit or '-')})"
 
 

@@ -121,12 +121,12 @@ class Drains(Table):
         """
         smear, flow = "", ""
         if self.smear_ratio != Constant(value=1.0):
-            wide, ratio = text_of(self.smear_ratio, "-"), self.smear_kh_ks.describe("-")
-            smear = f", smear zone {wide} diameters wide, kh/ks {ratio}"
+            wide, ratio = text_of(self.smear_ratio, what="diameters wide"), self.smear_kh_ks.describe("-")
+            smear = f", smear zone {wide}, kh/ks {ratio}"
         if self.discharge_capacity is not None:
             flow = f", discharge capacity {text_of(self.discharge_capacity, 'm3/year')}"
         return (
-            f"vertical drains in a {self.pattern} grid {text_of(self.spacing, 'm')} apart to "
-            f"{text_of(self.bottom, 'm')} depth, equivalent diameter "
+            f"vertical drains in a {self.pattern} grid {text_of(self.spacing, 'm', what='apart')} to "
+            f"{text_of(self.bottom, 'm', what='depth')}, equivalent diameter "
             f"{text_of(self.equivalent_diameter, 'm')}{smear}{flow}, at work from {self.installed:.3g} years"
         )
