@@ -230,8 +230,37 @@ def chosen_circles(
         near = factor <= (1.0 + worth) * factor.min(axis=0)
         circles = circles_beside(layout, circles[np.asarray(near.any(axis=1))], moves)
         factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles))
-    chosen = circles[_serving(factor <= (1.0 + within) * factor.min(axis=0))]
+    chosen = circles[circles_serving(factor <= (1.0 + within) * factor.min(axis=0))]
     return circles_beside(layout, chosen, _IN_DEPTH / 3.0)
+
+
+def chosen_in_fill(
+    ground: GroundStrength, fill: FillStrength, layout: CircleLayout, *, within: float
+) -> Circles:
+    """Return a few circles that are the worst, or nearly so, of those wholly in the fill.
+
+    Parameters
+    ----------
+    ground : GroundStrength
+        Strength of the layers, n_sample realisations.
+    fill : FillStrength
+        Fill of the same realisations.
+    layout : CircleLayout
+        Circles to choose from.
+    within : float, [-]
+        As for `competing_circles`.
+
+    Returns
+    -------
+    circles : Circles
+        Geometry; none where the layout has no circles in the fill.
+    """
+    circles = candidate_circles(layout)
+    circles = circles[circles.touch <= 0.0]
+    if not len(circles):
+        return circles
+    factor = _every_factor(ground, fill, layout, circles, layout.slice_edge)
+    return circles[circles_serving(factor <= (1.0 + within) * factor.min(axis=0))]
 
 
 def _promising(ground: GroundStrength, fill: FillStrength, layout: CircleLayout) -> Circles:
@@ -284,8 +313,19 @@ def circles_above_base(circles: Circles, bottom: FloatArray | float) -> BoolArra
     return above
 
 
-def _serving(near: BoolArray) -> IntArray:
-    """Choose circles until every realisation has one that is near its least factor, greedily."""
+def circles_serving(near: BoolArray) -> IntArray:
+    """Choose circles until every realisation has one that is near its least factor, greedily.
+
+    Parameters
+    ----------
+    near : ndarray of bool, shape (n_circle, n_sample), [-]
+        Whether a circle is near the least factor of a realisation; each has one.
+
+    Returns
+    -------
+    chosen : ndarray of int, shape (n_chosen,), [-]
+        Numbers of the circles, rising.
+    """
     chosen: list[int] = []
     left = np.ones(near.shape[1], dtype=bool)
     while left.any():

@@ -13,7 +13,8 @@ from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.embankment import EmbankmentSection
 from probsoil.ground.slip_grid import Arcs
 
-_LEAST_DRIVING = 1e-9
+LEAST_DRIVING = 1e-9
+"""Moment per unit weight of fill below which a circle turns over no fill, [m3]."""
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -56,12 +57,30 @@ def driven(section: EmbankmentSection, groups: Sequence[Arcs]) -> Circles:
     circles : Circles
         One group after the other; those that turn over no fill are left out.
     """
+    circles = with_moments(section, groups)
+    return circles[circles.driving > LEAST_DRIVING]
+
+
+def with_moments(section: EmbankmentSection, groups: Sequence[Arcs]) -> Circles:
+    """Join arcs and add what drives them, if anything.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    groups : sequence of Arcs
+        Circles through that section.
+
+    Returns
+    -------
+    circles : Circles
+        One group after the other.
+    """
     names = [one.name for one in fields(Arcs)]
     arcs = {name: np.concatenate([getattr(group, name) for group in groups]) for name in names}
     loaded, traffic = _traffic(section, Arcs(**arcs))
     driving = _fill_moment(section, Arcs(**arcs))
-    circles = Circles(**arcs, driving=driving, traffic=traffic, loaded_x=loaded)
-    return circles[driving > _LEAST_DRIVING]
+    return Circles(**arcs, driving=driving, traffic=traffic, loaded_x=loaded)
 
 
 def _fill_moment(section: EmbankmentSection, arcs: Arcs) -> FloatArray:

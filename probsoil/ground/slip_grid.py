@@ -8,7 +8,7 @@ from itertools import pairwise
 
 import numpy as np
 
-from probsoil._typing import BoolArray, FloatArray
+from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.embankment import EmbankmentSection
 
 _GROUND_EXITS, _FACE_EXITS, _BERM_POINTS = 24, 16, 10
@@ -130,7 +130,7 @@ def arcs_beside(
 
 def arcs_touching(
     section: EmbankmentSection, leave: FloatArray, enter: FloatArray, touch: FloatArray
-) -> Arcs:
+) -> tuple[Arcs, IntArray]:
     """Return the circles through pairs of points that touch given depths.
 
     Parameters
@@ -146,11 +146,15 @@ def arcs_touching(
     -------
     arcs : Arcs
         Those that there are: they enter higher and further in than they leave, and do not come out between.
+    number : ndarray of int, shape (n_arc,), [-]
+        Which of the given circles they are.
     """
-    rising = (leave < enter).all(axis=1)
-    leave, enter, touch = leave[rising], enter[rising], touch[rising]
-    centre, radius = _touching(leave, enter, touch)
-    return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
+    number = np.flatnonzero((leave < enter).all(axis=1))
+    leave, enter, touch = leave[number], enter[number], touch[number]
+    across, radius = _touching(leave, enter, touch)
+    centre = np.stack([across, radius - touch], axis=1)
+    good = _sound(section, leave, enter, centre, radius)
+    return _arcs(leave[good], enter[good], centre[good], radius[good]), number[good]
 
 
 def surface_point(section: EmbankmentSection, way: FloatArray) -> FloatArray:
@@ -223,12 +227,12 @@ def arcs_within_fill(section: EmbankmentSection, *, shallowest: float, density: 
     bend = np.linspace(0.0, 1.0, round(_BENDS * density) + 1)[1:]
     reach = _REACH_IN_FILL * section.height
     leave, enter, share = _mesh(_exits_on_fill(section, density), _entries(section, reach, density), bend)
-    return arcs_bent(section, leave, enter, share, shallowest=shallowest)
+    return arcs_bent(section, leave, enter, share, shallowest=shallowest)[0]
 
 
 def arcs_bent(
     section: EmbankmentSection, leave: FloatArray, enter: FloatArray, share: FloatArray, *, shallowest: float
-) -> Arcs:
+) -> tuple[Arcs, IntArray]:
     """Return circles in the fill through pairs of points.
 
     Parameters
@@ -246,6 +250,8 @@ def arcs_bent(
     -------
     arcs : Arcs
         Those that there are.
+    number : ndarray of int, shape (n_arc,), [-]
+        Which of the given circles they are.
     """
     half = share * _greatest_half_angle(leave, enter)
     run, rise = (enter - leave).T
@@ -256,7 +262,8 @@ def arcs_bent(
     shoulder = np.where(enter[:, 1] < section.height, section.corners[1, 0], section.shoulder)
     lowest = centre[:, 1] - np.sqrt(np.maximum(radius**2 - (shoulder - centre[:, 0]) ** 2, 0.0))
     deep = (enter[:, 1] - lowest >= shallowest) & (leave[:, 0] <= shoulder)
-    return _valid(section, leave[deep], enter[deep], centre[deep], radius[deep])
+    number = np.flatnonzero(deep & _sound(section, leave, enter, centre, radius))
+    return _arcs(leave[number], enter[number], centre[number], radius[number]), number
 
 
 def bend_of(arcs: Arcs) -> FloatArray:
@@ -362,18 +369,27 @@ def _valid(
     section: EmbankmentSection, leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray
 ) -> Arcs:
     """Keep circles whose upper end does not overhang and that do not come out on the way."""
+    good = _sound(section, leave, enter, centre, radius)
+    return _arcs(leave[good], enter[good], centre[good], radius[good])
+
+
+def _sound(
+    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray
+) -> BoolArray:
     with np.errstate(invalid="ignore"):
-        good = (
-            np.isfinite(radius) & (centre[:, 1] >= enter[:, 1]) & ~_comes_out(section, leave, enter, centre)
-        )
+        overhangs = ~(centre[:, 1] >= enter[:, 1])
+        return np.isfinite(radius) & ~overhangs & ~_comes_out(section, leave, enter, centre)
+
+
+def _arcs(leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray) -> Arcs:
     return Arcs(
-        centre_x=centre[good, 0],
-        centre_y=centre[good, 1],
-        radius=radius[good],
-        exit_x=leave[good, 0],
-        exit_y=leave[good, 1],
-        entry_x=enter[good, 0],
-        entry_y=enter[good, 1],
+        centre_x=centre[:, 0],
+        centre_y=centre[:, 1],
+        radius=radius,
+        exit_x=leave[:, 0],
+        exit_y=leave[:, 1],
+        entry_x=enter[:, 0],
+        entry_y=enter[:, 1],
     )
 
 

@@ -10,17 +10,23 @@ from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
-from probsoil._typing import BoolArray, FloatArray
+from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.embankment import EmbankmentSection
 from probsoil.ground.lanes import Lanes
-from probsoil.ground.slip import FillStrength, GroundStrength, circles_above_base, slice_strengths
+from probsoil.ground.slip import (
+    FillStrength,
+    GroundStrength,
+    circles_above_base,
+    circles_serving,
+    slice_strengths,
+)
 from probsoil.ground.slip_circles import (
     SHALLOWEST_IN_FILL,
     CircleLayout,
     candidate_circles,
     dense_weights,
 )
-from probsoil.ground.slip_driving import Circles, driven
+from probsoil.ground.slip_driving import LEAST_DRIVING, Circles, with_moments
 from probsoil.ground.slip_grid import arcs_bent, arcs_touching, bend_of, surface_point
 
 POSITION = ("centre_x", "centre_y", "radius", "touch", "exit_x", "entry_x")
@@ -50,32 +56,42 @@ class MovingFamily:
     above_berms: BoolArray
     slice_edge: FloatArray
 
-    def on(self, layout: CircleLayout) -> Circles:
+    def __getitem__(self, which: IntArray) -> "MovingFamily":
+        """Return some of the circles."""
+        return replace(
+            self,
+            leave=self.leave[which],
+            enter=self.enter[which],
+            third=self.third[which],
+            in_ground=self.in_ground[which],
+            above_berms=self.above_berms[which],
+        )
+
+    def on(self, section: EmbankmentSection) -> tuple[Circles, IntArray]:
         """Return the circles on a section.
 
         Parameters
         ----------
-        layout : CircleLayout
-            With the section.
+        section : EmbankmentSection
+            Fill.
 
         Returns
         -------
         circles : Circles
-            Those that exist there; all of the layout where none does.
+            Those that exist there.
+        number : ndarray of int, shape (n_circle,), [-]
+            Which of the family they are.
         """
-        section = layout.section
         fitting = self.above_berms == section.above_berms
-        ways = [way_at(section, place[fitting]) for place in (self.leave, self.enter)]
-        leave, enter = (surface_point(section, way) for way in ways)
-        third, ground = self.third[fitting], self.in_ground[fitting]
+        leave, enter = (surface_point(section, way_at(section, place)) for place in (self.leave, self.enter))
         thin = min(SHALLOWEST_IN_FILL, 0.5 * section.height)
-        within = ~ground & (leave < enter).all(axis=1)
-        groups = [
-            arcs_touching(section, leave[ground], enter[ground], third[ground]),
-            arcs_bent(section, leave[within], enter[within], third[within], shallowest=thin),
-        ]
-        found = driven(section, groups)
-        return found if len(found) else candidate_circles(layout)
+        through = np.flatnonzero(fitting & self.in_ground)
+        within = np.flatnonzero(fitting & ~self.in_ground & (leave < enter).all(axis=1))
+        touching, first = arcs_touching(section, leave[through], enter[through], self.third[through])
+        bent, second = arcs_bent(section, leave[within], enter[within], self.third[within], shallowest=thin)
+        circles = with_moments(section, [touching, bent])
+        number, driving = np.concatenate([through[first], within[second]]), circles.driving > LEAST_DRIVING
+        return circles[driving], number[driving]
 
 
 def place_on(section: EmbankmentSection, way: FloatArray) -> FloatArray:
@@ -193,50 +209,98 @@ def moving_safety(
     """
     n_sample = fill.unit_weight.size
     factor, position = np.full(n_sample, np.inf), np.full((n_sample, len(POSITION)), np.nan)
-    for place, (layout, circles, edge, strength) in enumerate(_cases(ground, family, layouts)):
-        if layout is None:
-            continue
-        found = _factors(fill, place, layout, (circles, edge, strength))
-        found[~circles_above_base(circles, ground.boundary[place, -1])] = np.inf
-        worst = int(np.argmin(found))
-        factor[place] = found[worst]
-        position[place] = [getattr(circles, name)[worst] for name in POSITION]
+    for place, case in enumerate(_cases(ground, family, layouts)):
+        if case is not None:
+            found = _factors(ground, fill, place, case)
+            worst = int(np.argmin(found))
+            factor[place] = found[worst]
+            position[place] = [getattr(case.circles, name)[worst] for name in POSITION]
     return factor, position
 
 
-_Case = tuple[CircleLayout | None, Circles, FloatArray, FloatArray]
+def serving(
+    ground: GroundStrength,
+    fill: FillStrength,
+    family: MovingFamily,
+    layouts: Sequence[CircleLayout | None],
+    *,
+    within: float,
+) -> MovingFamily:
+    """Return a few circles of a family that between them are nearly critical in every realisation.
+
+    Parameters
+    ----------
+    ground : GroundStrength
+        Strength of the layers, n_sample realisations.
+    fill : FillStrength
+        Fill of the same realisations.
+    family : MovingFamily
+        Circles to choose from.
+    layouts : sequence of CircleLayout or None
+        Section of every realisation; None where there is no fill.
+    within : float, [-]
+        How far above the least factor of a realisation the best circle chosen may be, as a share of it.
+
+    Returns
+    -------
+    family : MovingFamily
+        The circles chosen.
+    """
+    factor = np.full((family.leave.size, len(layouts)), np.inf)
+    for place, case in enumerate(_cases(ground, family, layouts)):
+        if case is not None and case.number is not None:
+            factor[case.number, place] = _factors(ground, fill, place, case)
+    looked_at = np.isfinite(factor).any(axis=0)
+    near = factor[:, looked_at] <= (1.0 + within) * factor[:, looked_at].min(axis=0)
+    return family[circles_serving(near)]
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class _Case:
+    """Circles of one realisation, with the slices and the strength on them; `number` where of a family."""
+
+    layout: CircleLayout
+    circles: Circles
+    edge: FloatArray
+    strength: FloatArray
+    number: IntArray | None = None
 
 
 def _cases(
     ground: GroundStrength, family: MovingFamily | None, layouts: Sequence[CircleLayout | None]
-) -> Iterator[_Case]:
-    """Yield layout, circles, slice edges and the strength on the slices of every realisation."""
-    nothing, n_sample = _NO_CIRCLES, len(layouts)
-    together = None
+) -> Iterator[_Case | None]:
+    """Yield the circles of every realisation; where none of a family exist, all of its layout."""
+    together = np.zeros((len(layouts), 0))
     if family is not None:
-        together = Lanes(n_sample).unpack(slice_strengths(ground, family.slice_edge, n_sample))
+        together = Lanes(len(layouts)).unpack(slice_strengths(ground, family.slice_edge, len(layouts)))
     for place, layout in enumerate(layouts):
         if layout is None:
-            yield None, nothing, np.zeros(0), np.zeros(0)
-        elif family is not None and together is not None:
-            yield layout, family.on(layout), family.slice_edge, together[place]
-        else:
-            circles, alone = candidate_circles(layout), ground[place : place + 1]
-            strength = Lanes(1).unpack(slice_strengths(alone, layout.slice_edge, 1))
-            yield layout, circles, layout.slice_edge, strength[0]
+            yield None
+            continue
+        if family is not None:
+            circles, number = family.on(layout.section)
+            if number.size:
+                edge = family.slice_edge
+                yield _Case(
+                    layout=layout, circles=circles, edge=edge, strength=together[place], number=number
+                )
+                continue
+        edge, alone = layout.slice_edge, ground[place : place + 1]
+        strength = Lanes(1).unpack(slice_strengths(alone, edge, 1))[0]
+        yield _Case(layout=layout, circles=candidate_circles(layout), edge=edge, strength=strength)
 
 
-def _factors(
-    fill: FillStrength, place: int, layout: CircleLayout, case: tuple[Circles, FloatArray, FloatArray]
-) -> FloatArray:
-    """Return the factor of safety of every circle in one realisation."""
-    circles, edge, strength = case
-    rows, terms = dense_weights(layout, circles, edge)
+def _factors(ground: GroundStrength, fill: FillStrength, place: int, case: _Case) -> FloatArray:
+    """Return the factor of safety of every circle in one realisation, infinite below the firm base."""
+    circles = case.circles
+    rows, terms = dense_weights(case.layout, circles, case.edge)
     weight, tangent = fill.unit_weight[place], np.tan(np.radians(fill.friction_angle[place]))
     pressed = fill.on_top[place]
     by_fill = tangent * (weight * terms[0] + pressed * terms[2]) + fill.cohesion[place] * terms[1]
-    resisting = np.einsum("ij,j->i", rows, strength) + by_fill
-    return np.asarray(resisting / (fill.driving_weight[place] * circles.driving + pressed * circles.traffic))
+    resisting = np.einsum("ij,j->i", rows, case.strength) + by_fill
+    factor = resisting / (fill.driving_weight[place] * circles.driving + pressed * circles.traffic)
+    factor[~circles_above_base(circles, ground.boundary[place, -1])] = np.inf
+    return np.asarray(factor)
 
 
 def with_section(layout: CircleLayout, section: EmbankmentSection, depth: float) -> CircleLayout:
@@ -257,6 +321,3 @@ def with_section(layout: CircleLayout, section: EmbankmentSection, depth: float)
         Otherwise the same.
     """
     return replace(layout, section=section, depth=depth)
-
-
-_NO_CIRCLES = Circles(**{one.name: np.zeros(0) for one in fields(Circles)})

@@ -8,13 +8,22 @@ from probsoil._typing import FloatArray
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.site_layout import circle_depth
 from probsoil.ground.site_model import SiteModel
-from probsoil.ground.slip import FillStrength, GroundStrength, chosen_circles
+from probsoil.ground.slip import FillStrength, GroundStrength, chosen_circles, chosen_in_fill
 from probsoil.ground.slip_circles import CircleLayout
-from probsoil.ground.slip_moving import MovingFamily, moving_family, moving_safety, with_section
+from probsoil.ground.slip_moving import (
+    MovingFamily,
+    moving_family,
+    moving_safety,
+    serving,
+    with_section,
+)
 
 Section = tuple[GroundStrength, FillStrength]
 
 _LOW = 1e-9  # m; what is lower is no fill
+_SIZES = ("height", "side_slope", "base_width")
+_ENDS = (0.05, 0.95)  # of each of these: sections besides the mean one on which circles are chosen
+_AT_ENDS = 128  # realisations looked at there
 
 
 def slip_on_sections(
@@ -102,36 +111,45 @@ def families_on_sections(
 
     Notes
     -----
-    Circles are chosen on the mean section, with the ground and the weights of all realisations, and move
-    with the section; where in some realisations the fill reaches above its berms and in others not, on a
-    section of either kind. What that loses is part of the discretisation error that a campaign reports.
+    Circles are chosen on the mean section, with the ground and the weights of all realisations, and on
+    those of realisations near either end of the heights, slopes and widths; where in some realisations the
+    fill reaches above its berms and in others not, on a section of either kind. Of all these, moved to the
+    section of each realisation, those are kept that serve. What that loses is part of the discretisation
+    error that a campaign reports.
     """
     families = []
     for check, (here, fill) in enumerate(sections):
         layouts = layouts_of(site, check, n_sample)
         if within > 0.0:
-            cases = [(layout, slice(None)) for layout in _typical(site, check, layouts)]
+            cases = list(_typical(site, check, layouts))
         else:
-            cases = [
-                (layout, slice(place, place + 1))
-                for place, layout in enumerate(layouts)
-                if layout is not None
-            ]
+            each = [(layout, slice(place, place + 1)) for place, layout in enumerate(layouts)]
+            cases = [(layout, place) for layout, place in each if layout is not None]
         chosen = [
             (layout, chosen_circles(here[some], fill[some], layout, within=within)) for layout, some in cases
         ]
-        families.append(moving_family(chosen))
+        if within > 0.0:  # on another section it may be the fill that slips
+            chosen += [
+                (layout, chosen_in_fill(here[some], fill[some], layout, within=within))
+                for layout, some in cases
+            ]
+        family = moving_family(chosen)
+        families.append(serving(here, fill, family, layouts, within=within) if within > 0.0 else family)
     return tuple(families)
 
 
-def _typical(site: SiteModel, check: int, layouts: Sequence[CircleLayout | None]) -> Iterator[CircleLayout]:
-    """Yield the mean section, and one in the middle of those that stand otherwise to their berms."""
+def _typical(
+    site: SiteModel, check: int, layouts: Sequence[CircleLayout | None]
+) -> Iterator[tuple[CircleLayout, slice]]:
+    """Yield sections to choose circles on, and the realisations to look at there."""
     mean = site.layouts[check]
-    yield mean
-    others = [
-        layout
-        for layout in layouts
-        if layout is not None and layout.section.above_berms != mean.section.above_berms
-    ]
+    yield mean, slice(None)
+    there = [layout for layout in layouts if layout is not None]
+    for name in _SIZES:
+        there.sort(key=lambda layout: getattr(layout.section, name))
+        low, high = (there[round(end * (len(there) - 1))] for end in _ENDS)
+        if getattr(high.section, name) - getattr(low.section, name) > _LOW:
+            yield from ((layout, slice(0, _AT_ENDS)) for layout in (low, high))
+    others = [one for one in there if one.section.above_berms != mean.section.above_berms]
     if others:
-        yield sorted(others, key=lambda layout: layout.section.height)[len(others) // 2]
+        yield others[len(others) // 2], slice(0, _AT_ENDS)
