@@ -21,6 +21,8 @@ def mean_of(_address: str, given: Distribution | None) -> float:
 
     Parameters
     ----------
+    _address : str
+        Which, for the sake of the others that read amounts.
     given : Distribution or None, [unit of the amount]
         As the scenario gives it; None for nothing.
 
@@ -118,7 +120,7 @@ def key_of(amount: Amount) -> float | bytes:
 
     Returns
     -------
-    key : float or bytes
+    key : float or bytes, [any]
         Hashable.
     """
     return np.asarray(amount).tobytes() if isinstance(amount, np.ndarray) else amount

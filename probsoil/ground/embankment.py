@@ -83,7 +83,7 @@ class EmbankmentSection:
         return np.concatenate([near, far])
 
 
-@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Embankment:
     """A long embankment with or without berms, whatever its height at the time.
 

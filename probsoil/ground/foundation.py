@@ -1,6 +1,6 @@
 """A foundation: its plan, its depth and the stress that it adds to the ground."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 import numpy as np
@@ -20,7 +20,7 @@ from probsoil.scenario.quantities import further_address
 Contact = Literal["rough", "smooth"]
 
 
-@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Foundation:
     """Plan and depth of a foundation of uniform net pressure.
 
@@ -48,7 +48,7 @@ class Foundation:
     depth: Amount
     contact: Contact
     at: tuple[Amount, Amount]
-    turned: bool | BoolArray = False
+    turned: bool | BoolArray = field(default=False, compare=False)
 
     @property
     def beside_depths(self) -> "Foundation":

@@ -200,7 +200,7 @@ def competing_circles(
     realisations, whose layers end elsewhere.
     """
     chosen = chosen_circles(ground, fill, layout, within=within)
-    return weighed(layout, chosen, layout.slice_edge_for(chosen))
+    return weighed(layout, chosen, layout.slice_edge_for(chosen.touch))
 
 
 def chosen_circles(
@@ -229,7 +229,7 @@ def chosen_circles(
     for moves, worth in _ROUNDS:
         near = factor <= (1.0 + worth) * factor.min(axis=0)
         circles = circles_beside(layout, circles[np.asarray(near.any(axis=1))], moves)
-        factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles))
+        factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles.touch))
     chosen = circles[circles_serving(factor <= (1.0 + within) * factor.min(axis=0))]
     return circles_beside(layout, chosen, _IN_DEPTH / 3.0)
 

@@ -121,20 +121,20 @@ class CircleLayout:
         """Depths between the slices in which strength is wanted, shape (n_slice + 1,), [m]."""
         return self._edges(1.0, self.inner_boundaries)
 
-    def slice_edge_for(self, circles: Circles) -> FloatArray:
+    def slice_edge_for(self, touch: FloatArray) -> FloatArray:
         """Return depths between slices that end where circles do.
 
         Parameters
         ----------
-        circles : Circles
-            Some of the layout.
+        touch : ndarray, shape (n_circle,), [m]
+            Depths of their lowest points.
 
         Returns
         -------
         edge : ndarray, shape (n_slice + 1,), [m]
             A circle runs along the bottom of the last slice it cuts, and takes nothing from below it.
         """
-        touch = np.round(circles.touch, 6)
+        touch = np.round(touch, 6)
         inner = touch[(touch > 0.0) & (touch < self.depth)]
         edge = self._edges(_FINER, sorted({*self.inner_boundaries, *inner.tolist()}))
         return edge[: max(int(np.searchsorted(edge, touch.max(initial=0.0))), 1) + 1]
@@ -154,6 +154,22 @@ class CircleLayout:
         shallow = min(_SHALLOWEST, 0.5 * self.depth)
         touch = ground_touches(self.depth, self.density, shallow)
         return _with(touch, [value for value in self.inner_boundaries if value > shallow])
+
+    def depth_step(self, touch: FloatArray) -> FloatArray:
+        """Return how far apart in depth candidates are near given depths.
+
+        Parameters
+        ----------
+        touch : ndarray, shape (n_circle,), [m]
+            Depths.
+
+        Returns
+        -------
+        step : ndarray, shape (n_circle,), [m]
+            Spacing.
+        """
+        depths = self.touch
+        return np.asarray(np.interp(touch, depths, np.gradient(depths)))
 
 
 def candidate_circles(layout: CircleLayout) -> Circles:
@@ -205,11 +221,10 @@ def circles_beside(layout: CircleLayout, circles: Circles, moves: FloatArray) ->
     """
     in_ground = circles.touch > 0.0
     through, within = circles[in_ground], circles[~in_ground]
-    depths = layout.touch
     step = np.stack(
         [
             *end_steps(layout.section, through, layout.reach) / layout.density,
-            np.interp(through.touch, depths, np.gradient(depths)),
+            layout.depth_step(through.touch),
         ]
     )
     return driven(layout.section, [arcs_beside(layout.section, through, moves, step, layout.depth), within])

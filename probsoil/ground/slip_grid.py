@@ -91,7 +91,7 @@ def arcs_through_ground(
     """
     leave, enter, depth = _mesh(_exits(section, reach, density), _entries(section, reach, density), touch)
     centre, radius = _touching(leave, enter, depth)
-    return _valid(section, leave, enter, np.stack([centre, radius - depth], axis=1), radius)
+    return _sound_arcs(section, leave, enter, np.stack([centre, radius - depth], axis=1), radius)[0]
 
 
 def arcs_beside(
@@ -125,7 +125,7 @@ def arcs_beside(
     kept &= enter[:, 1] == np.tile(arcs.entry_y, len(moves))
     leave, enter, touch = leave[kept], enter[kept], touch[kept]
     centre, radius = _touching(leave, enter, touch)
-    return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
+    return _sound_arcs(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)[0]
 
 
 def arcs_touching(
@@ -153,8 +153,8 @@ def arcs_touching(
     leave, enter, touch = leave[number], enter[number], touch[number]
     across, radius = _touching(leave, enter, touch)
     centre = np.stack([across, radius - touch], axis=1)
-    good = _sound(section, leave, enter, centre, radius)
-    return _arcs(leave[good], enter[good], centre[good], radius[good]), number[good]
+    arcs, sound = _sound_arcs(section, leave, enter, centre, radius)
+    return arcs, number[sound]
 
 
 def surface_point(section: EmbankmentSection, way: FloatArray) -> FloatArray:
@@ -262,8 +262,9 @@ def arcs_bent(
     shoulder = np.where(enter[:, 1] < section.height, section.corners[1, 0], section.shoulder)
     lowest = centre[:, 1] - np.sqrt(np.maximum(radius**2 - (shoulder - centre[:, 0]) ** 2, 0.0))
     deep = (enter[:, 1] - lowest >= shallowest) & (leave[:, 0] <= shoulder)
-    number = np.flatnonzero(deep & _sound(section, leave, enter, centre, radius))
-    return _arcs(leave[number], enter[number], centre[number], radius[number]), number
+    number = np.flatnonzero(deep)
+    arcs, sound = _sound_arcs(section, *(part[number] for part in (leave, enter, centre, radius)))
+    return arcs, number[sound]
 
 
 def bend_of(arcs: Arcs) -> FloatArray:
@@ -365,32 +366,24 @@ def _touching(leave: FloatArray, enter: FloatArray, touch: FloatArray) -> tuple[
     return centre, ((centre - out) ** 2 + a * a) / (2.0 * a)
 
 
-def _valid(
+def _sound_arcs(
     section: EmbankmentSection, leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray
-) -> Arcs:
-    """Keep circles whose upper end does not overhang and that do not come out on the way."""
-    good = _sound(section, leave, enter, centre, radius)
-    return _arcs(leave[good], enter[good], centre[good], radius[good])
-
-
-def _sound(
-    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray
-) -> BoolArray:
+) -> tuple[Arcs, IntArray]:
+    """Keep circles whose upper end does not overhang and that do not come out on the way; say which."""
     with np.errstate(invalid="ignore"):
-        overhangs = ~(centre[:, 1] >= enter[:, 1])
-        return np.isfinite(radius) & ~overhangs & ~_comes_out(section, leave, enter, centre)
-
-
-def _arcs(leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray) -> Arcs:
-    return Arcs(
-        centre_x=centre[:, 0],
-        centre_y=centre[:, 1],
-        radius=radius,
-        exit_x=leave[:, 0],
-        exit_y=leave[:, 1],
-        entry_x=enter[:, 0],
-        entry_y=enter[:, 1],
+        good = (
+            np.isfinite(radius) & (centre[:, 1] >= enter[:, 1]) & ~_comes_out(section, leave, enter, centre)
+        )
+    arcs = Arcs(
+        centre_x=centre[good, 0],
+        centre_y=centre[good, 1],
+        radius=radius[good],
+        exit_x=leave[good, 0],
+        exit_y=leave[good, 1],
+        entry_x=enter[good, 0],
+        entry_y=enter[good, 1],
     )
+    return arcs, np.flatnonzero(good)
 
 
 def _comes_out(

@@ -6,7 +6,7 @@ moments are worked out anew.
 """
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -154,14 +154,9 @@ def moving_family(chosen: Sequence[tuple[CircleLayout, Circles]]) -> MovingFamil
     parts = [_placed(layout.section, circles) for layout, circles in chosen]
     names = parts[0].keys()
     joined = {name: np.concatenate([part[name] for part in parts]) for name in names}
-    everything = Circles(
-        **{
-            one.name: np.concatenate([getattr(circles, one.name) for _, circles in chosen])
-            for one in fields(Circles)
-        }
-    )
+    touch = np.concatenate([circles.touch for _, circles in chosen])
     deepest = max((layout for layout, _ in chosen), key=lambda layout: layout.depth)
-    return MovingFamily(**joined, slice_edge=deepest.slice_edge_for(everything))
+    return MovingFamily(**joined, slice_edge=deepest.slice_edge_for(touch))
 
 
 def _placed(section: EmbankmentSection, circles: Circles) -> dict[str, FloatArray]:
@@ -223,6 +218,7 @@ def serving(
     fill: FillStrength,
     family: MovingFamily,
     layouts: Sequence[CircleLayout | None],
+    mean: CircleLayout,
     *,
     within: float,
 ) -> MovingFamily:
@@ -238,13 +234,15 @@ def serving(
         Circles to choose from.
     layouts : sequence of CircleLayout or None
         Section of every realisation; None where there is no fill.
+    mean : CircleLayout
+        With the mean section.
     within : float, [-]
         How far above the least factor of a realisation the best circle chosen may be, as a share of it.
 
     Returns
     -------
     family : MovingFamily
-        The circles chosen.
+        The circles chosen, and two beside each in depth.
     """
     factor = np.full((family.leave.size, len(layouts)), np.inf)
     for place, case in enumerate(_cases(ground, family, layouts)):
@@ -252,7 +250,19 @@ def serving(
             factor[case.number, place] = _factors(ground, fill, place, case)
     looked_at = np.isfinite(factor).any(axis=0)
     near = factor[:, looked_at] <= (1.0 + within) * factor[:, looked_at].min(axis=0)
-    return family[circles_serving(near)]
+    return _with_others_in_depth(family[circles_serving(near)], mean)
+
+
+def _with_others_in_depth(family: MovingFamily, layout: CircleLayout) -> MovingFamily:
+    """Return circles with two beside each in depth, for realisations whose layers end elsewhere."""
+    step = np.where(family.in_ground, layout.depth_step(family.third) / 3.0, 0.0)
+    some = np.flatnonzero(family.in_ground)
+    numbers = np.concatenate([np.arange(step.size), some, some])
+    moved = np.concatenate([family.third, (family.third - step)[some], (family.third + step)[some]])
+    found = replace(family[numbers], third=moved)
+    kept = np.flatnonzero(~found.in_ground | ((moved > 0.0) & (moved <= layout.depth)))
+    touch = np.where(found.in_ground, moved, 0.0)[kept]
+    return replace(found[kept], slice_edge=layout.slice_edge_for(touch))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)

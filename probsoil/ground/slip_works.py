@@ -134,7 +134,11 @@ def families_on_sections(
                 for layout, some in cases
             ]
         family = moving_family(chosen)
-        families.append(serving(here, fill, family, layouts, within=within) if within > 0.0 else family)
+        families.append(
+            serving(here, fill, family, layouts, site.layouts[check], within=within)
+            if within > 0.0
+            else family
+        )
     return tuple(families)
 
 
