@@ -124,9 +124,14 @@ def _shape_text(scenario: Scenario, site: SiteModel) -> str:
             f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
             f"side slopes {shape.side_slope:g} horizontal to 1 vertical, base {shape.base_width:g} m wide"
             + _beside(scenario.load)
+            + _replaced(site)
             + _held(site)
         )
-    return "load over a wide area" + _held(site) if site.foundation is None else site.foundation.title
+    return (
+        "load over a wide area" + _replaced(site) + _held(site)
+        if site.foundation is None
+        else site.foundation.title
+    )
 
 
 def further_load_text(load: FurtherLoadForm) -> str:
@@ -154,6 +159,13 @@ def further_load_text(load: FurtherLoadForm) -> str:
     if load.foundation.shape == "strip":
         return f"strip, {plan}; centreline {load.x:g} m across"
     return f"{load.foundation.shape}, {plan}; centre {load.x:g} m across and {load.y:g} m along"
+
+
+def _replaced(site: SiteModel) -> str:
+    """Return in words what ground is dug out below the load, where any is."""
+    if site.foundation is not None or site.face == 0.0:
+        return ""
+    return f"; the ground below it is dug out {site.face:g} m deep, and its fill stands on the bottom"
 
 
 def _held(site: SiteModel) -> str:

@@ -42,6 +42,8 @@ def influence_formulas(run: SheetRun, row: Record) -> list[Worked]:
     """
     if row["influence"] is None:
         return []
+    if run.site.embankment is not None and run.site.embankment.pit > 0.0:
+        return []  # of two loads on the bottom of the pit
     if run.site.embankment is not None:
         return _embankment(run, row)
     if run.site.foundation is not None:

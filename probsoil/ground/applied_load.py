@@ -10,8 +10,8 @@ from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
-from probsoil.ground.further_load import Places, foundation_influence, share_above
-from probsoil.ground.load_stress import trapezia_influence
+from probsoil.ground.further_load import Places, below_base, foundation_influence, share_above
+from probsoil.ground.load_stress import strip_influence, trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.top_up import AddedFill
@@ -181,7 +181,8 @@ def applied_load(
     -----
     Between knots the stress is taken as linear in time, also while an embankment rises and its
     top narrows; the base stays the same. A foundation adds nothing above its base; where the base
-    cuts through the thickness of a point, the part below it counts. Further loads add their stress at
+    cuts through the thickness of a point, the part below it counts; likewise the bottom of ground dug out
+    below an embankment or an area. Further loads add their stress at
     the reported point, each from its own place.
     """
     n_sample, berm = depth.shape[0], None
@@ -190,7 +191,9 @@ def applied_load(
     heights = [site.fill_height(float(time)) for time in site.knots]
     pressures = [site.pressure(float(time)) for time in site.knots]
     weight = fill_weight(values, n_sample)
-    if site.embankment is not None:
+    if site.embankment is not None and site.embankment.pit > 0.0:
+        spread, share, stress = _in_pit(site, site.embankment, values, places)
+    elif site.embankment is not None:
         spread, share, berm = _embankment_spread(site.embankment, depth, site.offset)
         at_height = {
             key_of(height): _influence(site.embankment, depth, height, site.offset)
@@ -201,6 +204,8 @@ def applied_load(
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
             spread, share = _foundation_spread(site.foundation, places)
+        elif site.face > 0.0:
+            spread = 1.0 - share_above(site.face, depth, half)
         stress = [
             pressure_on_base(site, values, weight * height + pressure, float(time))[:, None] * spread
             for height, pressure, time in zip(heights, pressures, site.knots, strict=True)
@@ -278,6 +283,30 @@ def _embankment_spread(
     return centre / shape.full_height, slope, berm
 
 
+def _in_pit(
+    site: SiteModel, shape: Embankment, values: Values, places: Places
+) -> tuple[FloatArray, FloatArray, list[FloatArray]]:
+    """Return spread, share and stress of an embankment on ground that is dug out and replaced by its fill.
+
+    What fills the pit, less the soil and the water that were there, acts on its bottom as a strip as wide as
+    the base, and the embankment above ground level on the same bottom; ones for the share below the slope,
+    since no slip is looked at.
+    """
+    loaded, below = below_base(places, shape.pit)
+    weight = fill_weight(values, len(below))
+    strip = strip_influence(below, site.offset, width=beside_depths(shape.base_width))
+    full = _influence(shape, below, shape.full_height, site.offset) + shape.pit * strip
+    spread = loaded * full / beside_depths(shape.full_height + shape.pit)
+    stress = []
+    for time in site.knots.tolist():
+        height = site.fill_height(time)
+        above = greater(height - shape.pit, 0.0)
+        in_pit = pressure_on_base(site, values, weight * height, time) - weight * above
+        by_fill = weight[:, None] * _influence(shape, below, above, site.offset)
+        stress.append(np.asarray(loaded * (by_fill + in_pit[:, None] * strip)))
+    return np.asarray(spread), np.ones_like(spread), stress
+
+
 def _foundation_spread(shape: Foundation, places: Places) -> tuple[FloatArray, FloatArray]:
     """Return the influence below the reported point, and that below the edge over it."""
     at_depth = replace(places, thick=None)
@@ -287,12 +316,12 @@ def _foundation_spread(shape: Foundation, places: Places) -> tuple[FloatArray, F
     return foundation_influence(shape, places, *shape.at), np.where(spread > 0.0, share, 1.0)
 
 
-def share_above_base(shape: Foundation, points: Points) -> FloatArray:
-    """Return the share of each point's thickness that lies above the base of a foundation.
+def share_above_base(base: Amount, points: Points) -> FloatArray:
+    """Return the share of each point's thickness that lies above the base of a load.
 
     Parameters
     ----------
-    shape : Foundation
+    base : float or ndarray, shape (n_sample,), [m]
         Its depth.
     points : Points
         Depths and thicknesses.
@@ -302,7 +331,7 @@ def share_above_base(shape: Foundation, points: Points) -> FloatArray:
     share : ndarray, shape (n_sample, n_point), [-]
         From 0 below the base to 1 above it.
     """
-    return share_above(shape.depth, points.depth, 0.5 * points.thickness)
+    return share_above(base, points.depth, 0.5 * points.thickness)
 
 
 def relief_by_water(

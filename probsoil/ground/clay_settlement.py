@@ -64,8 +64,8 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
         level_held=level_held(site, values, ground),
     )
     flow = _conductivity(site, values, state)
-    if site.foundation is not None:
-        above = chosen(share_above_base(site.foundation, ground.points), clay)
+    if site.foundation is not None or site.face > 0.0:
+        above = chosen(share_above_base(site.base, ground.points), clay)
         flow = replace(flow, log_value=flow.log_value + _OPEN_ABOVE_BASE * above)
     if site.drains is not None:
         flow = replace(flow, drains=radial_drainage(site, site.drains, values, ground))

@@ -99,6 +99,9 @@ class Embankment:
         Width of the flat top of the berm on each side; 0 for none.
     berm_height : float or ndarray, shape (n_sample,), [m]
         Height of the berms when complete; they rise with the fill and are never higher than it.
+    pit : float, [m]
+        Depth to which the ground below its whole base is dug out and replaced by fill; heights count
+        from ground level all the same.
     """
 
     crest_width: Amount
@@ -106,6 +109,7 @@ class Embankment:
     full_height: Amount
     berm_width: float = 0.0
     berm_height: Amount = 0.0
+    pit: float = 0.0
 
     @property
     def beside_depths(self) -> "Embankment":
@@ -125,10 +129,10 @@ class Embankment:
 
     @property
     def mean_width(self) -> Amount:
-        """Area of the section at its greatest height over that height, [m]."""
+        """Area of the section at its greatest height over that height, with what fills the pit, [m]."""
         parts = self.trapezia(self.full_height)
         area = sum((0.5 * (part.base_width + part.top_width) * part.height for part in parts), 0.0)
-        return area / self.full_height
+        return (area + self.base_width * self.pit) / (self.full_height + self.pit)
 
     def section(self, height: Amount) -> EmbankmentSection:
         """Return the cross-section at a fill height.

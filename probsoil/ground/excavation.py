@@ -1,4 +1,4 @@
-"""Soil dug out for a foundation: what the ground loses by it and what a structure then puts back."""
+"""Soil dug out for a load: what the ground loses by it and what is then put back."""
 
 import numpy as np
 
@@ -37,7 +37,7 @@ def stress_dug_out(
 
 
 def pressure_on_base(site: SiteModel, values: Values, placed: FloatArray, time: float) -> FloatArray:
-    """Return by how much the effective stress on the base of a foundation exceeds that in situ.
+    """Return by how much the effective stress on the base of a load exceeds that in situ.
 
     Parameters
     ----------

@@ -123,12 +123,33 @@ def foundation_influence(shape: Foundation, places: Places, x: Amount, y: Amount
     """
     depth, half, thick = places.depth, places.half, places.thick
     shape, x, y = shape.beside_depths, beside_depths(x), beside_depths(y)
-    loaded = 1.0 - share_above(shape.depth, depth, half)
-    top, bottom = np.maximum(depth - half, shape.depth), np.maximum(depth + half, shape.depth)
-    found = np.asarray(loaded * shape.influence(0.5 * (top + bottom) - shape.depth, x, y))
+    loaded, below = below_base(places, shape.depth)
+    found = np.asarray(loaded * shape.influence(below, x, y))
     if thick is not None and thick.any():
         found[:, thick] = _mean_influence(shape, depth[:, thick], half[:, thick], (x, y))
     return found
+
+
+def below_base(places: Places, base: Amount) -> tuple[FloatArray, FloatArray]:
+    """Return what lies below a base.
+
+    Parameters
+    ----------
+    places : Places
+        Depths.
+    base : float or ndarray, shape (n_sample,), [m]
+        Depth of the base.
+
+    Returns
+    -------
+    loaded : ndarray, shape (n_sample, n_point), [-]
+        Share of each thickness that lies below it.
+    below : ndarray, shape (n_sample, n_point), [m]
+        Depth of the middle of that share below the base.
+    """
+    depth, half, base = places.depth, places.half, beside_depths(base)
+    top, bottom = np.maximum(depth - half, base), np.maximum(depth + half, base)
+    return 1.0 - share_above(base, depth, half), np.asarray(0.5 * (top + bottom) - base)
 
 
 def _mean_influence(

@@ -163,8 +163,8 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     """
     thickness, boundary, weights = layers_by_weight(site, values, n_sample)
     layer, centre, share = _relative_points(site)
-    if site.foundation is not None:
-        base = np.broadcast_to(site.foundation.depth, (n_sample,))
+    if site.foundation is not None or site.face > 0.0:
+        base = np.broadcast_to(site.base, (n_sample,))
         centre, share = _with_face_at(base, site, boundary, centre, share)
     each = chosen(thickness, layer)
     depth = chosen(boundary, layer) + centre * each

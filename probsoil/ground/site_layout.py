@@ -48,14 +48,32 @@ def embankment_of(
     load = scenario.load
     if not isinstance(load, EmbankmentLoad):
         return None
-    full_height = greatest_height(stages)
+    pit = pit_depth(stages)
+    full_height = greatest_height(stages) - pit
     return Embankment(
+        pit=pit,
         crest_width=read("load.crest_width", load.crest_width),
         side_slope=read("load.side_slope", load.side_slope),
         full_height=full_height,
         berm_width=load.berm_width or 0.0,
         berm_height=lesser(load.berm_height or 0.0, full_height),
     )
+
+
+def pit_depth(stages: Sequence[StageForm]) -> float:
+    """Return to what depth stages dig soil out in all.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    depth : float, [m]
+        Below ground level.
+    """
+    return sum((stage.excavate for stage in stages), 0.0)
 
 
 def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> Amount:
@@ -190,7 +208,7 @@ def recorded_times(
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
-    if embankment is None:
+    if embankment is None or embankment.pit > 0.0:  # slip through replaced ground is not computed
         return record, np.zeros(0)
     check = [time for time in sorted(ends | slip) if time > 0.0 and height_at(stages, time) > 0.0]
     return record, np.array(check, dtype=np.float64)

@@ -30,6 +30,7 @@ from probsoil.ground.site_layout import (
     embankment_of,
     further_load_forms,
     limit_times,
+    pit_depth,
     recorded_times,
     traffic_start,
 )
@@ -97,7 +98,8 @@ class SiteModel:
         Says what is built, where anything of it is uncertain: then heights, widths and so on are here the
         means, and `works.built` puts those of the realisations in their place. None where nothing is.
     face : float, [m]
-        Depth of the base of a foundation for which the cells were laid out.
+        Depth of the base of a foundation, or of the ground dug out below an embankment or an area, for which
+        the cells were laid out.
     """
 
     layers: tuple[LayerForm, ...]
@@ -164,8 +166,13 @@ class SiteModel:
         laid = [stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load]
         return sum(laid, 0.0)
 
+    @property
+    def base(self) -> Amount:
+        """Depth below which the load adds stress, [m]."""
+        return self.face if self.foundation is None else self.foundation.depth
+
     def greatest_fill_height(self, time: float) -> Amount:
-        """Return the height of fill at a time where it is highest on the site.
+        """Return the height of fill above ground level at a time where it is highest on the site.
 
         Parameters
         ----------
@@ -178,7 +185,10 @@ class SiteModel:
             Of the load that is assessed where there is no other.
         """
         further = [self.fill_height(time, load.name) for load in self.further_loads]
-        return reduce(greater, further, self.fill_height(time))
+        own = self.fill_height(time)
+        if self.foundation is None and self.face > 0.0:
+            own = greater(own - self.face, 0.0)
+        return reduce(greater, further, own)
 
     def pressure(self, time: float, load: str | None = None) -> Amount:
         """Return the pressure that stages have added besides fill.
@@ -289,7 +299,7 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     stages = stage_forms(scenario)
     embankment = embankment_of(scenario, stages)
     foundation = foundation_of(scenario.load)
-    face = 0.0 if foundation is None else float(foundation.depth)
+    face = pit_depth(stages) if foundation is None else float(foundation.depth)
     record, slip_times = recorded_times(scenario, stages, embankment)
     horizon = float(scenario.horizon)
     cells = graded_cells(

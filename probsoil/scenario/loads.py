@@ -350,7 +350,7 @@ class Stage(Table):
     load : str or None
         Which of the further loads; None for the load that is assessed.
     excavate : float or None, [m]
-        Depth of soil dug out over the plan of a foundation.
+        Depth of soil dug out over the plan of the load.
     """
 
     model_config = ConfigDict(
@@ -394,8 +394,8 @@ class Stage(Table):
             high=50.0,
             open_low=True,
             source="common practice",
-            meaning="depth of soil dug out over the plan of a foundation; with it, pressures and heights "
-            "are those of all that is placed on the base",
+            meaning="depth of soil dug out over the plan of the load; with it, pressures and heights are "
+            "those of all that is placed on the bottom",
         ),
     ] = None
     start: Annotated[

@@ -40,7 +40,7 @@ def _berm_slips(load: Any, stages: Sequence[Any]) -> list[Slip]:
         message = f"a berm needs both its width and its height; {missing[0]} is missing"
         return [Slip(path=(), message=message, allowed="berm_width and berm_height", wanting=(missing[0],))]
     own = [stage for stage in stages if getattr(stage, "load", None) is None]
-    raised = [getattr(stage, "height", UNREAD) for stage in own]
+    raised = [getattr(stage, "height", UNREAD) for stage in own if getattr(stage, "excavate", None) is None]
     heights = [one for one in map(known, raised) if one is not None]
     if not isinstance(load.berm_height, float) or len(heights) < len(raised):
         return []

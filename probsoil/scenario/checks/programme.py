@@ -80,19 +80,19 @@ def _named(loads: Sequence[Any]) -> list[tuple[str, Any]]:
 
 
 def _amount_slips(stage: Any, load: Any) -> list[Slip]:
-    if getattr(stage, "excavate", None) is not None and not isinstance(load, FOUNDATIONS):
+    if getattr(stage, "excavate", None) is not None and stage.load is not None:
         return []  # refused where excavation is looked at
     slips = []
     if isinstance(load, _EMBANKMENTS) and stage.pressure is not None:
         message = "an embankment is raised by a height of fill, not by a pressure"
         slips.append(Slip(path=("pressure",), message=message, allowed="height", at_key=True))
-    elif isinstance(load, _EMBANKMENTS) and stage.height is None:
+    elif isinstance(load, _EMBANKMENTS) and stage.height is None and stage.excavate is None:
         slips.append(
             Slip(path=(), message="height is missing", allowed="height of fill", wanting=("height",))
         )
     else:
         keys = {"height": "height", "pressure": "pressure"}
-        keys |= {"excavate": "excavate"} if isinstance(load, FOUNDATIONS) else {}
+        keys |= {"excavate": "excavate"} if stage.load is None else {}
         slips += exactly_one(stage, keys, "what the stage adds")
     needs = isinstance(load, (*PRESSED, FurtherEmbankment)) and load.fill_unit_weight is None
     if needs and stage.height is not None:

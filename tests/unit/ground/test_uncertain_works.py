@@ -3,8 +3,8 @@
 Tolerances, fixed before the first run: a realisation equals the scenario that has its value as a plain number
 to 1e-12 (relative) in settlement, degree, bearing and distortion, since only the shape of arrays differs; to
 1e-10 in a factor of safety against slip, whose sums run in another order; settlement for another depth of the
-base than the mean to 1 %, the cells being laid out for the mean. Circles chosen on the mean section lose no more
-than the 1 % of the search.
+base than the mean to 1 %, the cells being laid out for the mean. Circles that move with the section lose no
+more than the 1 % of the search.
 """
 
 from dataclasses import replace
