@@ -260,7 +260,9 @@ def _with_others_in_depth(family: MovingFamily, layout: CircleLayout) -> MovingF
     numbers = np.concatenate([np.arange(step.size), some, some])
     moved = np.concatenate([family.third, (family.third - step)[some], (family.third + step)[some]])
     found = replace(family[numbers], third=moved)
-    kept = np.flatnonzero(~found.in_ground | ((moved > 0.0) & (moved <= layout.depth)))
+    shallowest = family.third.min(where=family.in_ground, initial=layout.depth)
+    deep = (moved >= shallowest) & (moved <= layout.depth)
+    kept = np.flatnonzero(~found.in_ground | deep)
     touch = np.where(found.in_ground, moved, 0.0)[kept]
     return replace(found[kept], slice_edge=layout.slice_edge_for(touch))
 

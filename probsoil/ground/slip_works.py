@@ -21,9 +21,9 @@ from probsoil.ground.slip_moving import (
 Section = tuple[GroundStrength, FillStrength]
 
 _LOW = 1e-9  # m; what is lower is no fill
-_SIZES = ("height", "side_slope", "base_width")
+_SIZES = ("height", "side_slope")
 _ENDS = (0.05, 0.95)  # of each of these: sections besides the mean one on which circles are chosen
-_AT_ENDS = 128  # realisations looked at there
+_AT_ENDS, _WEIGHED = 128, 256  # realisations looked at there, and on their own sections
 
 
 def slip_on_sections(
@@ -125,6 +125,7 @@ def families_on_sections(
         else:
             each = [(layout, slice(place, place + 1)) for place, layout in enumerate(layouts)]
             cases = [(layout, place) for layout, place in each if layout is not None]
+            cases = cases or [(site.layouts[check], slice(0, 1))]
         chosen = [
             (layout, chosen_circles(here[some], fill[some], layout, within=within)) for layout, some in cases
         ]
@@ -134,11 +135,11 @@ def families_on_sections(
                 for layout, some in cases
             ]
         family = moving_family(chosen)
-        families.append(
-            serving(here, fill, family, layouts, site.layouts[check], within=within)
-            if within > 0.0
-            else family
-        )
+        if within > 0.0:
+            some = slice(0, _WEIGHED)
+            parts = (here[some], fill[some], family, layouts[some], site.layouts[check])
+            family = serving(*parts, within=within)
+        families.append(family)
     return tuple(families)
 
 
@@ -149,6 +150,8 @@ def _typical(
     mean = site.layouts[check]
     yield mean, slice(None)
     there = [layout for layout in layouts if layout is not None]
+    if not there:
+        return
     for name in _SIZES:
         there.sort(key=lambda layout: getattr(layout.section, name))
         low, high = (there[round(end * (len(there) - 1))] for end in _ENDS)

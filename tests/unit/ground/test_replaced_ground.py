@@ -57,7 +57,7 @@ def test_a_very_wide_embankment_is_a_wide_area():
 @pytest.mark.parametrize("water_table", [0.2, 3.0])
 def test_with_vertical_sides_it_is_a_strip_at_the_bottom_of_the_pit(water_table):
     stages = [PIT.format(0.8), *fill(0.5, 1.4)]
-    # clay alone: in sand the stress of a foundation is averaged over a quarter of the layer, of fill it is not
+    # clay alone: in sand the stress of a foundation is averaged over a quarter of the layer, of fill not
     keys = {"water_table": water_table, "layers": LAYERS[:2]}
     bank = settled(case(EMBANKMENT.format(9.0, 0.0), stages, **keys))
     strip = settled(case(STRIP.format(9.0, 0.8), stages, **keys))
