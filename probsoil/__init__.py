@@ -14,7 +14,9 @@ from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from probsoil.assessment import Assessment, Sheet, assess
+    from probsoil.assessment.back_check import BackCheck, back_check
     from probsoil.assessment.sheet import sheet
+    from probsoil.assessment.specimen_parameters import specimen_parameters
     from probsoil.errors import (
         ConvergenceError,
         DependenceError,
@@ -26,6 +28,9 @@ if TYPE_CHECKING:
         StoppedEarly,
         UnfitFolderError,
     )
+    from probsoil.ground.cam_clay import CamClay, ClayState, isotropic_state
+    from probsoil.ground.element_paths import oedometer_path, triaxial_path
+    from probsoil.laboratory.interpretation import Interpretation, interpret
     from probsoil.scenario import Scenario
     from probsoil.scenario import read_scenario as read
 
@@ -33,8 +38,12 @@ if TYPE_CHECKING:
 
 __all__ = [
     "Assessment",
+    "BackCheck",
+    "CamClay",
+    "ClayState",
     "ConvergenceError",
     "DependenceError",
+    "Interpretation",
     "ParameterError",
     "ProbsoilError",
     "ResultsError",
@@ -46,15 +55,31 @@ __all__ = [
     "UnfitFolderError",
     "__version__",
     "assess",
+    "back_check",
+    "interpret",
+    "isotropic_state",
+    "oedometer_path",
     "read",
     "sheet",
+    "specimen_parameters",
+    "triaxial_path",
 ]
 
 _HOMES = {
     "Assessment": "assessment",
+    "BackCheck": "assessment.back_check",
+    "CamClay": "ground.cam_clay",
+    "ClayState": "ground.cam_clay",
     "Sheet": "assessment",
+    "Interpretation": "laboratory.interpretation",
     "assess": "assessment",
+    "back_check": "assessment.back_check",
+    "interpret": "laboratory.interpretation",
+    "isotropic_state": "ground.cam_clay",
+    "oedometer_path": "ground.element_paths",
     "sheet": "assessment",
+    "specimen_parameters": "assessment.specimen_parameters",
+    "triaxial_path": "ground.element_paths",
     "Scenario": "scenario",
     "read": "scenario",
 }

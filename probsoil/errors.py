@@ -117,8 +117,8 @@ class Fault:
         return "\n".join(lines)
 
 
-class ScenarioError(ProbsoilError):
-    """A scenario has one or more mistakes; all of them are in `faults`.
+class FaultyInputError(ProbsoilError):
+    """What a user wrote has one or more mistakes; all of them are in `faults`.
 
     Attributes
     ----------
@@ -126,8 +126,36 @@ class ScenarioError(ProbsoilError):
         Every mistake found, in the order of the file.
     """
 
+    _where = "the input"
+
     def __init__(self, faults: Sequence[Fault]) -> None:
         self.faults = tuple(faults)
         count = len(self.faults)
-        heading = f"{count} mistake{'' if count == 1 else 's'} in the scenario"
+        heading = f"{count} mistake{'' if count == 1 else 's'} in {self._where}"
         super().__init__("\n\n".join([heading, *(str(fault) for fault in self.faults)]))
+
+
+class ScenarioError(FaultyInputError):
+    """A scenario has one or more mistakes; all of them are in `faults`."""
+
+    _where = "the scenario"
+
+
+class SheetError(FaultyInputError):
+    """Test sheets have one or more mistakes; all of them are in `faults`."""
+
+    _where = "the test sheets"
+
+
+class MissingExtraError(ProbsoilError, ImportError):
+    """What was asked for needs a library that only an extra of probsoil installs.
+
+    Attributes
+    ----------
+    extra : str
+        Name of the extra.
+    """
+
+    def __init__(self, what: str, *, extra: str) -> None:
+        super().__init__(f"{what} needs the extra \"{extra}\": pip install 'probsoil[{extra}]'")
+        self.extra = extra

@@ -6,7 +6,9 @@ from probsoil._typing import FloatArray
 from probsoil.assessment.description import Row
 from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study
+from probsoil.assessment.evidence_record import conflicts
 from probsoil.assessment.record import CampaignSample
+from probsoil.parameters.range_remarks import range_remarks
 from probsoil.scenario import remarks
 from probsoil.scenario.limits import Limit
 
@@ -40,12 +42,14 @@ def warning_rows(study: Study, sample: CampaignSample, error: DiscretisationErro
         )
         rows.append(_row("nothing_uncertain", message))
     rows += [_row("remark", text) for text in remarks(study.scenario)]
+    rows += [_row("published_range", text) for text in range_remarks(study.scenario)]
     for summary in study.space.summary():
         if summary.cut_share > _NOTICEABLE:
             message = (
                 f"{summary.name}: part of the distribution lay outside the physical range and was cut off"
             )
             rows.append(_row("distribution_cut", message, summary.cut_share, "the distribution"))
+    rows += [_row(code, message) for code, message in conflicts(study.space)]
     return rows + _grid_rows(error)
 
 
@@ -114,7 +118,8 @@ def _failed_rows(study: Study, code: str, what: str, checks: tuple[FloatArray, F
     times, factor = checks
     concerned: dict[bytes, list[str]] = {}
     for limit in study.scenario.limits:
-        if len(times) and limit.quantity not in _SAFETY:
+        own = getattr(limit, "load", None) is None
+        if len(times) and own and limit.quantity not in _SAFETY:
             failed = (factor[:, times <= _judged_at(limit)] < 1.0).any(axis=1)
             concerned.setdefault(failed.tobytes(), []).append(limit.name)
     rows = []

@@ -280,9 +280,12 @@ def parameter_rows(study: Study) -> list[Row]:
     """
     rows = []
     local = _local_shares(study)
+    tested = study.space.updated is not None and len(study.space.updated.observations) > 0
     for summary in study.space.summary():
         row = {name: getattr(summary, name) for name in summary.__slots__}
         row |= local.get(summary.name, {})
+        if tested:
+            row["text"] += "; before the tests"
         rows.append({key: finite(value) if isinstance(value, float) else value for key, value in row.items()})
     return rows
 

@@ -1,12 +1,14 @@
 """How far the grid, the time steps and the choice of circles are from not mattering."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from probsoil._typing import FloatArray
 from probsoil.assessment.evaluation import Study
-from probsoil.ground.response import respond, screened
+from probsoil.assessment.other_loads import AssessedBeside
+from probsoil.ground.response import Response, respond, screened
 from probsoil.ground.site_model import site_model
 from probsoil.ground.stations import section_scenario, settling_site, station_site, station_times
 
@@ -71,16 +73,13 @@ def discretisation_error(study: Study) -> DiscretisationError:
     values = study.section_values(z)
     fine_site = screened(site_model(section_scenario(study.scenario), refine=2), values, within=0.0)
     coarse, fine = respond(study.site, values), respond(fine_site, values)
-    shared = np.intersect1d(coarse.times, fine.times)
-    difference = np.abs(
-        coarse.settlement[:, np.searchsorted(coarse.times, shared)]
-        - fine.settlement[:, np.searchsorted(fine.times, shared)]
-    )
-    final = np.maximum(fine.settlement[:, -1:], 1e-6)
-    stations = [_station_error(study, z, place, final) for place in range(len(study.stations))]
-    error = max([float(difference.max()), *(one[0] for one in stations)])
-    share = max([float((difference / final).max()), *(one[1] for one in stations)])
-    slip, bearing = _greatest(coarse.slip, fine.slip), _greatest(coarse.bearing, fine.bearing)
+    pairs = [(coarse, fine), *(_computed_twice(study, z, one) for one in study.beside)]
+    final = _final(fine)
+    errors = [_settlement_error(*pair, _final(pair[1])) for pair in pairs]
+    errors += [_station_error(study, z, place, final) for place in range(len(study.stations))]
+    error, share = (max(one[part] for one in errors) for part in range(2))
+    slip = _greatest([(one.slip, other.slip) for one, other in pairs])
+    bearing = _greatest([(one.bearing, other.bearing) for one, other in pairs])
     return DiscretisationError(
         realisations=len(coarse.settlement),  # one where nothing is uncertain
         cells=study.site.cells.n_cell,
@@ -90,6 +89,26 @@ def discretisation_error(study: Study) -> DiscretisationError:
         slip_error_share=slip,
         bearing_error_share=bearing,
     )
+
+
+def _computed_twice(study: Study, z: FloatArray, one: AssessedBeside) -> tuple[Response, Response]:
+    """Return the ground's answer below a further load, as in the campaign and more finely."""
+    values = one.values(study.space, z)
+    return respond(one.site, values), respond(one.finer(values), values)
+
+
+def _final(fine: Response) -> FloatArray:
+    return np.maximum(fine.settlement[:, -1:], 1e-6)
+
+
+def _settlement_error(coarse: Response, fine: Response, final: FloatArray) -> tuple[float, float]:
+    """Return the greatest difference at any time, [m], and as a share of the final settlement."""
+    shared = np.intersect1d(coarse.times, fine.times)
+    difference = np.abs(
+        coarse.settlement[:, np.searchsorted(coarse.times, shared)]
+        - fine.settlement[:, np.searchsorted(fine.times, shared)]
+    )
+    return float(difference.max()), float((difference / final).max())
 
 
 def _station_error(study: Study, z: FloatArray, place: int, final: FloatArray) -> tuple[float, float]:
@@ -110,7 +129,10 @@ def _station_error(study: Study, z: FloatArray, place: int, final: FloatArray) -
     return float(difference.max()), float((difference / final).max())
 
 
-def _greatest(coarse: FloatArray, fine: FloatArray) -> float | None:
+def _greatest(pairs: Sequence[tuple[FloatArray, FloatArray]]) -> float | None:
     """Return the greatest difference of factors of safety as a share, of those that exist."""
-    there = np.isfinite(coarse) & np.isfinite(fine)
-    return float(np.abs(coarse[there] / fine[there] - 1.0).max()) if there.any() else None
+    shares = []
+    for coarse, fine in pairs:
+        there = np.isfinite(coarse) & np.isfinite(fine)
+        shares += np.abs(coarse[there] / fine[there] - 1.0).tolist()
+    return max(shares, default=None)

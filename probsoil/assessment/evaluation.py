@@ -1,12 +1,14 @@
 """What is worked out for one chunk of realisations."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from probsoil._typing import FloatArray
+from probsoil.assessment.observed import observations_of
+from probsoil.assessment.other_loads import AssessedBeside, assessed_beside, own_columns, positions_of
 from probsoil.ground.limit_quantities import (
     added_thickness,
     added_volume,
@@ -58,6 +60,8 @@ class Study:
         of the first.
     stations : tuple of StationSite
         Where else settlement is computed; none where the scenario has no stations.
+    beside : tuple of AssessedBeside
+        Further loads that limits look at.
     """
 
     scenario: Scenario
@@ -65,6 +69,7 @@ class Study:
     points: Design
     site: SiteModel
     stations: tuple[StationSite, ...] = ()
+    beside: tuple[AssessedBeside, ...] = ()
 
     def latent(self, chunk: int) -> FloatArray:
         """Return the correlated latent normals of a chunk.
@@ -102,15 +107,18 @@ class Study:
         values = self.section_values(z)
         response = respond(self.site, values)
         stations = self.settled_stations(z, response)
-        converged, closed = response.converged, response.voids_closed
-        if stations is not None:
-            converged, closed = converged & stations.converged, closed | stations.voids_closed
+        beside = [self._of(one, z) for one in self.beside]
+        parts = [*self._own(response, values, stations), *beside]
+        answers: list[Response | StationSettlement] = [response, *(one.response for one in beside)]
+        answers += [] if stations is None else [stations]
+        converged = np.logical_and.reduce([one.converged for one in answers])
+        closed = np.logical_or.reduce([one.voids_closed for one in answers])
         error = column(values, "model_error.settlement", response.settlement.shape[0])
         settled = response.settlement if stations is None else stations.reference
         settlement = np.where(response.converged[:, None], error[:, None] * settled, np.nan)
         arrays: dict[str, NDArray[np.generic]] = {
-            "quantity": limit_quantities(self.site, self.scenario.limits, response, values, stations),
-            "secondary": secondary_in_limits(self.scenario.limits, response, values, stations),
+            "quantity": self._gathered(parts, lambda part: part.quantity),
+            "secondary": self._gathered(parts, lambda part: part.secondary),
             "slip": slip_with_model_error(response, values),
             "bearing": bearing_with_model_error(response, values),
             "final": settlement[:, -1],
@@ -144,6 +152,45 @@ class Study:
         if response.overdrawn is not None:
             arrays["overdrawn"] = response.overdrawn
         return arrays
+
+    def _own(
+        self, response: Response, values: Values, stations: StationSettlement | None
+    ) -> list["_InLimits"]:
+        """Return what the limits on the load itself and on stations watch, if there are any."""
+        columns = own_columns(self.scenario)
+        limits = [self.scenario.limits[column] for column in columns]
+        if not limits:
+            return []
+        return [
+            _InLimits(
+                columns=columns,
+                response=response,
+                quantity=limit_quantities(self.site, limits, response, values, stations),
+                secondary=secondary_in_limits(limits, response, values, stations),
+            )
+        ]
+
+    def _of(self, one: AssessedBeside, z: FloatArray) -> "_InLimits":
+        """Return what the limits on a further load watch."""
+        values = one.values(self.space, z)
+        response = respond(one.site, values)
+        return _InLimits(
+            columns=one.columns,
+            response=response,
+            quantity=limit_quantities(one.site, one.scenario.limits, response, values),
+            secondary=secondary_in_limits(one.scenario.limits, response, values),
+        )
+
+    def _gathered(
+        self, parts: Sequence["_InLimits"], chosen: Callable[["_InLimits"], FloatArray]
+    ) -> FloatArray:
+        """Return the columns of all limits in the order of the file."""
+        if len(parts) == 1:
+            return chosen(parts[0])
+        whole = np.empty((len(parts[0].response.converged), len(self.scenario.limits)))
+        for part in parts:
+            whole[:, part.columns] = chosen(part)
+        return whole
 
     def section_values(self, z: FloatArray) -> Values:
         """Return the values of all quantities where slip and bearing are computed.
@@ -186,6 +233,16 @@ class Study:
         return self.space.dimension == 0
 
 
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
+class _InLimits:
+    """What the limits on one load watch: their columns, and (n_i, n_column) of each."""
+
+    columns: tuple[int, ...]
+    response: Response
+    quantity: FloatArray
+    secondary: FloatArray
+
+
 def prepare(scenario: Scenario) -> Study:
     """Return a scenario ready to be evaluated.
 
@@ -203,9 +260,16 @@ def prepare(scenario: Scenario) -> Study:
     points = design(scenario.draws, seed=scenario.seed, n=scenario.realisations, dimension=space.dimension)
     generator = np.random.default_rng(np.random.SeedSequence(scenario.seed, spawn_key=(_PILOT_STAGE, 0)))
     pilot = generator.standard_normal((_PILOT_SIZE, space.dimension))
-    values = section_values(scenario, space.values(_PILOT_WIDTH * space.correlated(pilot)))
-    site = screened(site_model(section_scenario(scenario)), values)
-    return Study(scenario=scenario, space=space, points=points, site=site, stations=station_sites(scenario))
+    spread = _PILOT_WIDTH * space.correlated(pilot)
+    site = screened(site_model(section_scenario(scenario)), section_values(scenario, space.values(spread)))
+    return Study(
+        scenario=scenario,
+        space=space,
+        points=points,
+        site=site,
+        stations=station_sites(scenario),
+        beside=assessed_beside(scenario, space, spread),
+    )
 
 
 def space_of(scenario: Scenario) -> ParameterSpace:
@@ -219,11 +283,11 @@ def space_of(scenario: Scenario) -> ParameterSpace:
     Returns
     -------
     space : ParameterSpace
-        Marginals, dependence and fixed numbers.
+        Marginals, dependence, fixed numbers, and what the tests in hand have made of them.
     """
     pairs = [(*pair.between, pair.rank_correlation) for pair in scenario.dependence]
-    positions = [(station.x, station.y) for station in scenario.all_stations]
-    return parameter_space(scenario.quantities(), pairs, positions=positions)
+    used, _ = observations_of(scenario)
+    return parameter_space(scenario.quantities(), pairs, positions=positions_of(scenario), observations=used)
 
 
 def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
@@ -242,12 +306,16 @@ def drawn_parameters(study: Study) -> tuple[tuple[str, ...], Gathering | None]:
     gathering : Gathering or None
         None where each parameter has one latent normal.
     """
-    space = study.space
-    if space.local is None:
+    space, last = study.space, study.space.dimension - 1
+    mixed = space.updated is not None and space.updated.mixed
+    if space.local is None and not mixed:
         return space.names, None
     member, shift = np.arange(space.dimension), np.ones(space.dimension)
     names = list(space.names)
-    for part in space.local.parts:
+    for part in () if space.local is None else space.local.parts:
         member[part.latent], shift[part.latent] = len(names), part.common_shift
         names.append(f"{space.names[part.parameter]} (local)")
+    if mixed:  # one more latent normal chooses how much the ground varies from point to point
+        member[last] = len(names)
+        names.append("variability from point to point")
     return tuple(names), Gathering(member=member, shift=shift)

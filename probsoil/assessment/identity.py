@@ -1,5 +1,6 @@
 """What the numbers of an assessment depend on, written out so that two runs can be compared in words."""
 
+import hashlib
 from collections.abc import Iterator
 from dataclasses import fields, is_dataclass
 from importlib import metadata
@@ -10,8 +11,10 @@ from probsoil import __version__
 from probsoil.assessment.evaluation import Study
 from probsoil.campaign import Identity, campaign_identity, source_digest
 from probsoil.scenario import Scenario
+from probsoil.scenario.evidence_file import EvidenceFile
 
 _SINGULAR = {"layers": "layer", "stages": "stage", "stations": "station", "limits": "limit"}
+_LISTED = 12  # numbers of a list that a message shows; longer ones are told apart by a digest
 _PACKAGES = ("numpy", "scipy", "numba")
 
 
@@ -87,8 +90,18 @@ def _leaves(place: str, value: object) -> Iterator[tuple[str, object]]:
         yield f"{place}.dist", value.kind
         for one in fields(value):
             yield from _leaves(f"{place}.{one.name}", getattr(value, one.name))
+    elif isinstance(value, EvidenceFile | tuple):
+        yield place, _listing(value)
     else:
         yield place, value
+
+
+def _listing(value: "EvidenceFile | tuple[object, ...]") -> object:
+    """Return what tells a long list from others without showing all of it."""
+    rows, what = (value.rows, "results") if isinstance(value, EvidenceFile) else (value, "values")
+    if what == "values" and len(rows) <= _LISTED:
+        return value
+    return f"{len(rows)} {what} of digest {hashlib.sha256(repr(rows).encode()).hexdigest()[:16]}"
 
 
 def _entries(table: BaseModel) -> Iterator[tuple[str, object]]:

@@ -122,6 +122,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
         worst = _WORST[limit.sense]
         rows.append(
             _limit_row(limit, found)
+            | {"load": getattr(limit, "load", None)}
             | place_record(study, limit, sample.station)
             | _part("secondary", creeps, sample.secondary[:, index], values)
             | _part("distortion", distorts, sample.distortion[:, index] if distorts else values, values)

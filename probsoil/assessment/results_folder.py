@@ -14,9 +14,11 @@ RESULTS = "results.json"
 COPY = "scenario.toml"
 REALISATIONS_FILE = "realisations.npz"
 FIGURES = "figures"
+EVIDENCE_COPIES = "evidence_*.csv"
+"""Copies of the files of test results that the scenario names."""
 
 _TABLES = ("limits.csv", "drivers.csv", "settlement.csv", "parameters.csv")
-OCCASIONAL = ("stations.csv", "station_pairs.csv", "added_fill.csv")
+OCCASIONAL = ("stations.csv", "station_pairs.csv", "added_fill.csv", "tests.csv", "updated_parameters.csv")
 """Tables that only some scenarios have."""
 
 FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES, *OCCASIONAL)
@@ -81,6 +83,7 @@ def _require_ours(folder: Path, source: Path | None) -> None:
         return
     read = None if source is None else source.resolve()
     paths = [folder / name for name in FILES] + sorted((folder / FIGURES).glob("*.svg"))
+    paths += sorted(folder.glob(EVIDENCE_COPIES))
     strange = [path for path in paths if os.path.lexists(path) and path.resolve() != read]
     if strange:
         named = ", ".join(f"'{path}'" for path in strange[:4]) + (", ..." if len(strange) > 4 else "")

@@ -27,6 +27,7 @@ from probsoil.assessment.description import (
 )
 from probsoil.assessment.discretisation import discretisation_error
 from probsoil.assessment.evaluation import Study, drawn_parameters, prepare
+from probsoil.assessment.evidence_record import evidence_record
 from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
@@ -39,6 +40,7 @@ from probsoil.assessment.record import (
     slip_rows,
 )
 from probsoil.assessment.results_folder import CHUNKS, COPY, REALISATIONS_FILE, RESULTS, claimed_folder
+from probsoil.assessment.scenario_copy import copies, evidence_digests
 from probsoil.assessment.statements import CAUTIONS, assumptions
 from probsoil.campaign import (
     NOTICE,
@@ -203,6 +205,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
             {
                 "scenario_file": None if source is None else source.name,
                 "scenario_sha256": _digest(scenario, source),
+                **evidence_digests(scenario),
                 "chunks": study.points.n_chunks,
             },
             started=started,
@@ -211,7 +214,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
             command=command,
         )
         if folder is not None:
-            _write(folder, results, sample, source)
+            _write(folder, results, sample, scenario, source)
         return Assessment(results=results, sample=sample, folder=folder)
 
 
@@ -309,6 +312,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "ground": ground_record(study, at_means),
         "parameters": parameter_rows(study),
         "dependence": dependence_rows(study),
+        **evidence_record(study.space, scenario),
         "discretisation": error.to_dict(),
         "warnings": warning_rows(study, sample, error),
         "assumptions": list(assumptions(site, stations=len(study.stations))),
@@ -321,7 +325,9 @@ def _digest(scenario: Scenario, source: Path | None) -> str:
     return hashlib.sha256(content).hexdigest()
 
 
-def _write(folder: Path, results: dict[str, Any], sample: CampaignSample, source: Path | None) -> None:
+def _write(
+    folder: Path, results: dict[str, Any], sample: CampaignSample, scenario: Scenario, source: Path | None
+) -> None:
     """Write the results; the chunks go only when everything else is safely there."""
     buffer = io.BytesIO()
     names = np.array([row["name"] for row in results["limits"]])
@@ -336,7 +342,8 @@ def _write(folder: Path, results: dict[str, Any], sample: CampaignSample, source
     )
     write_durably(folder / REALISATIONS_FILE, buffer.getvalue())
     if source is not None and source.resolve() != (folder / COPY).resolve():
-        write_durably(folder / COPY, source.read_bytes())
+        for name, content in copies(source, scenario).items():
+            write_durably(folder / name, content)
     text = json.dumps(results, indent=1, allow_nan=False, ensure_ascii=False) + "\n"
     write_durably(folder / RESULTS, text.encode())
     discard_chunks(folder / CHUNKS)

@@ -22,11 +22,13 @@ from probsoil.assessment.sheet_sublayers import (
     sublayers,
 )
 from probsoil.assessment.statements import SHEET_CAUTIONS, assumptions
+from probsoil.errors import ParameterError
 from probsoil.ground.profile import Values
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.squeezing import squeezing_at
 from probsoil.scenario import Scenario
+from probsoil.scenario.other_load import other_load
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -157,7 +159,13 @@ class Sheet:
         return str(self.to_frame().to_html(index=False))
 
 
-def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: str | None = None) -> Sheet:
+def sheet(
+    scenario: Scenario,
+    at: Literal["mean", "median"] = "mean",
+    station: str | None = None,
+    *,
+    load: str | None = None,
+) -> Sheet:
     """Return one deterministic calculation.
 
     Parameters
@@ -169,6 +177,8 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: s
     station : str or None
         Name of the station that is calculated; None for the section below the centreline or centre, with
         the ground of the first station.
+    load : str or None
+        Name of the further load that is calculated, as if it were the load; None for the load.
 
     Returns
     -------
@@ -178,10 +188,14 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: s
     Raises
     ------
     ParameterError
-        If `at` is neither, or there is no such station.
+        If `at` is neither, there is no such station or further load, or both are named.
     ConvergenceError
         If the consolidation cannot be computed with these values.
     """
+    if load is not None:
+        if station is not None:
+            raise ParameterError("a sheet is that of a station or of a further load, not of both")
+        scenario = other_load(scenario, load).scenario
     run = sheet_run(scenario, at, station)
     stations, pairs = station_rows(scenario, at)
     site, state, response = run.site, run.state, run.state.response
@@ -197,7 +211,7 @@ def sheet(scenario: Scenario, at: Literal["mean", "median"] = "mean", station: s
         values=values,
         bearing_safety=_by_stage(site, site.bearing_times, response.bearing[0]),
         squeezing_safety=_squeezing(site, state, run.values),
-        station=site.station,
+        station=site.station if load is None else f"{site.station} of {load}",
         title=scenario.title,
         quantities=tuple(
             {"address": one.address, "value": values[one.address], "unit": one.unit, "meaning": one.meaning}

@@ -127,19 +127,29 @@ def creep_formulas(run: SheetRun, rows: list[Record], segments: list[Record]) ->
         return []
     row = max(creeping, key=lambda one: one["creep_per_decade"])
     layer = next(index for index, form in enumerate(run.site.layers) if form.name == row["layer"])
+    creep, index = _creep_index(run, layer)
     symbols: dict[str, Symbol] = {
         "Rm": (row["creep_reduction"], "mean of what is left of creep after unloading", "-"),
-        "r": (run.layer_value(layer, "C_alpha_ratio"), "C_alpha over Cc", "-"),
-        "λ": (float(run.state.ground.columns.lam[0, layer]), "slope in virgin compression", "-"),
+        **index,
         "e0": (row["void_ratio"], "void ratio in situ", "-"),
         "h": (row["bottom"] - row["top"], "thickness of the sub-layer", "m"),
     }
     place = f"sub-layer {row['number']}, {row['layer']}"
-    formula = "s10 = Rm · r · λ · ln(10) · h/(1 + e0)"
+    formula = f"s10 = Rm · {creep} · h/(1 + e0)"
     result = (row["creep_per_decade"], "m")
     lines = [worked(CREEP, "settlement in a tenfold of time", formula, result, symbols, row=place)]
     most = max(segments, key=lambda segment: segment["secondary"])
     return lines + [_spell_formula(most["segment"], spell) for spell in most["creep"]]
+
+
+def _creep_index(run: SheetRun, layer: int) -> tuple[str, dict[str, Symbol]]:
+    """Return the secondary compression index as written in a formula, and its symbols."""
+    if run.site.layers[layer].creep == "C_alpha":
+        return "Cα", {"Cα": (run.layer_value(layer, "C_alpha"), "secondary compression index", "-")}
+    return "r · λ · ln(10)", {
+        "r": (run.layer_value(layer, "C_alpha_ratio"), "C_alpha over Cc", "-"),
+        "λ": (float(run.state.ground.columns.lam[0, layer]), "slope in virgin compression", "-"),
+    }
 
 
 def _spell_formula(segment: int, spell: Record) -> Worked:

@@ -153,10 +153,11 @@ _LEVEL_HELD = (
 )
 
 _FURTHER = (
-    "Further loads add their stress at the reported point (Boussinesq, superposed) and are not assessed "
-    "themselves. The strength that the clay gains from them there counts in slip and bearing of the load; "
-    "under its slope or edge it is reduced as that from the load itself. No failure runs through two loads, "
-    "and a further load neither drives a slip nor holds one back.",
+    "Further loads add their stress at the reported point (Boussinesq, superposed). A limit that names one "
+    "is computed as if that were the load, on the same realisations and without drains.",
+    "The strength that the clay gains under further loads at the reported point counts in slip and bearing "
+    "of the load; under its slope or edge it is reduced as that from the load itself. No failure runs "
+    "through two loads, and a further load neither drives a slip nor holds one back.",
 )
 _FURTHER_SUNK = (
     "Below further loads the ground is taken to have sunk below the water table as at the reported point.",

@@ -104,15 +104,39 @@ def place_record(study: Study, limit: Limit, station: FloatArray) -> Row:
     Returns
     -------
     record : dict
-        ``place``, ``place_text`` and ``decided_by``; nothing to say without stations, or of other limits.
+        ``place``, ``place_text`` and ``decided_by``; nothing to say without stations, or of other limits,
+        save in words which further load a limit looks at.
     """
-    if not study.stations or not isinstance(limit, ON_SETTLEMENT):
-        return {"place": None, "place_text": "", "decided_by": []}
+    if not study.stations or not isinstance(limit, ON_SETTLEMENT) or getattr(limit, "load", None) is not None:
+        return {"place": None, "place_text": place_text(study.scenario, limit), "decided_by": []}
     layout = station_layout(study.scenario.all_stations)
     place, words = limit_place(study.scenario, limit)
     several = isinstance(next(iter(place.values())), str) and place.get("station", ANY) == ANY
     decided = _decided_by(study.scenario, limit, layout, station) if several else []
     return {"place": place, "place_text": words, "decided_by": decided}
+
+
+def place_text(scenario: Scenario, limit: Limit) -> str:
+    """Return where a limit looks, in words.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    limit : limit
+        One of its own.
+
+    Returns
+    -------
+    words : str
+        Such as ``at station pier`` or ``of tank B``; empty where there is only one place.
+    """
+    load = getattr(limit, "load", None)
+    if load is not None:
+        return f"of {load}"
+    if isinstance(limit, ON_SETTLEMENT) and scenario.all_stations:
+        return limit_place(scenario, limit)[1]
+    return ""
 
 
 def limit_place(scenario: Scenario, limit: OnSettlement) -> tuple[Row, str]:

@@ -2,6 +2,7 @@
 
 from typing import TYPE_CHECKING
 
+from probsoil.cli._evidence import print_evidence
 from probsoil.cli._output import counted, print_table
 from probsoil.report.text import event_text, percent_text, plain_percent
 
@@ -45,6 +46,7 @@ def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSp
     _print_stations(console, scenario)
     _print_parameters(console, scenario, space)
     _print_dependence(console, scenario)
+    print_evidence(console, scenario, space)
     _print_limits(console, scenario)
 
 
@@ -163,19 +165,15 @@ def _print_limits(console: "Console", scenario: "Scenario") -> None:
 
 def _event(scenario: "Scenario", limit: "Limit") -> str:
     """Return what exceeding a limit means, in the words the results use."""
-    from probsoil.assessment.stations import limit_place
-    from probsoil.scenario.limits import ON_SETTLEMENT
+    from probsoil.assessment.stations import place_text
 
-    where = ""
-    if scenario.all_stations and isinstance(limit, ON_SETTLEMENT):
-        where = limit_place(scenario, limit)[1]
     named = {key: getattr(limit, key, None) for key in ("at", "between", "degree")}
     time = {key: value for key, value in named.items() if value is not None}
     return event_text(
         {
             "quantity": limit.quantity,
             "time": time,
-            "place_text": where,
+            "place_text": place_text(scenario, limit),
             "sense": limit.sense,
             "threshold": limit.threshold,
             "unit": LIMIT_UNITS.get(limit.quantity, "-"),

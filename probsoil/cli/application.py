@@ -17,11 +17,13 @@ from typer.main import get_command
 from probsoil.cli._output import answering
 from probsoil.cli.assess import assess
 from probsoil.cli.check import check
+from probsoil.cli.interpret import interpret
 from probsoil.cli.new import new
 from probsoil.cli.report import report
 from probsoil.cli.schema import schema
 from probsoil.cli.sheet import sheet
-from probsoil.errors import ParameterError, ProbsoilError, ScenarioError, StoppedEarly, UnfitFolderError
+from probsoil.cli.template import template
+from probsoil.errors import FaultyInputError, ParameterError, ProbsoilError, StoppedEarly, UnfitFolderError
 
 DONE, FAILED, MISTAKE, STOPPED = 0, 1, 2, 3
 _HELP = {"-h", "--help", "--version"}
@@ -35,7 +37,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
     context_settings={"help_option_names": ["-h", "--help"]},
 )
-for command in (new, check, sheet, assess, report, schema):
+for command in (new, check, sheet, assess, interpret, report, schema, template):
     app.command()(command)
 
 
@@ -120,11 +122,11 @@ def _interrupted(fault: BaseException) -> bool:
 def _code(fault: ProbsoilError) -> int:
     if isinstance(fault, StoppedEarly):
         return STOPPED if fault.kept else FAILED
-    return MISTAKE if isinstance(fault, ScenarioError | ParameterError | UnfitFolderError) else FAILED
+    return MISTAKE if isinstance(fault, FaultyInputError | ParameterError | UnfitFolderError) else FAILED
 
 
 def _message(fault: ProbsoilError) -> str:
-    return str(fault) if isinstance(fault, ScenarioError | StoppedEarly) else f"Error: {fault}"
+    return str(fault) if isinstance(fault, FaultyInputError | StoppedEarly) else f"Error: {fault}"
 
 
 def _write_details(fault: BaseException) -> str:

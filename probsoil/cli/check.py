@@ -11,6 +11,7 @@ def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario fi
     from probsoil.assessment.evaluation import space_of
     from probsoil.cli._output import answer_console, answering
     from probsoil.cli._understood import print_scenario
+    from probsoil.parameters.range_remarks import range_remarks
     from probsoil.scenario import read_scenario, remarks
 
     scenario = read_scenario(file)
@@ -19,5 +20,5 @@ def check(file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario fi
         console = answer_console()
         console.print(f"{file}: no mistakes found", soft_wrap=True)
         print_scenario(console, scenario, space)
-        for remark in remarks(scenario):
+        for remark in (*remarks(scenario), *range_remarks(scenario)):
             console.print(f"Look again: {remark}")

@@ -20,7 +20,7 @@ class Values(StrEnum):
     median = "median"
 
 
-def sheet(
+def sheet(  # noqa: PLR0913 - one option each
     file: Annotated[Path, typer.Argument(metavar="FILE", help="Scenario file.")],
     at: Annotated[
         Values,
@@ -36,6 +36,10 @@ def sheet(
         typer.Option(
             "--station", metavar="NAME", help="Calculate at this station, not below the centreline or centre."
         ),
+    ] = None,
+    load: Annotated[
+        str | None,
+        typer.Option("--load", metavar="NAME", help="Calculate this further load, as if it were [load]."),
     ] = None,
     json: Annotated[bool, typer.Option("--json", help="Print the sheet as JSON.")] = False,
     csv: Annotated[bool, typer.Option("--csv", help="Print every table as CSV, one after another.")] = False,
@@ -55,7 +59,7 @@ def sheet(
     from probsoil.report.sheet_tables import tables_csv
     from probsoil.scenario import read_scenario
 
-    content = calculated(read_scenario(file), at=at.value, station=station).to_dict()
+    content = calculated(read_scenario(file), at=at.value, station=station, load=load).to_dict()
     if page is not None:
         from probsoil.report.sheet_page import write_sheet
 

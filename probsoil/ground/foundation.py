@@ -221,5 +221,5 @@ def further_foundation(load: object, read: Reading = mean_of) -> Foundation | No
     width, length = _sides(load, address, read)
     depth = read(f"{address}.depth", load.depth)
     return Foundation(
-        shape=load.shape, width=width, length=length, depth=depth, contact="rough", at=(0.0, 0.0)
+        shape=load.shape, width=width, length=length, depth=depth, contact=load.contact, at=(0.0, 0.0)
     )

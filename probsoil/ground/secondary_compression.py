@@ -131,10 +131,11 @@ def secondary_settlement(
     Notes
     -----
     Every drainage segment creeps while it has reached 95 % of its consolidation under the load of the
-    time, in that realisation. :math:`C_\alpha` is `C_alpha_ratio` times :math:`C_c = \lambda \ln 10`
-    times `creep_reduction` by the overconsolidation of the time. How the age carries over from stage to
-    stage see `creep_spells`. Creep before tp is part of the compression line as measured and is not
-    added; creep does not wait for pore pressure. What comes later changes nothing that went before.
+    time, in that realisation. :math:`C_\alpha` is `C_alpha` as given or `C_alpha_ratio` times
+    :math:`C_c = \lambda \ln 10`, times `creep_reduction` by the overconsolidation of the time. How the
+    age carries over from stage to stage see `creep_spells`. Creep before tp is part of the
+    compression line as measured and is not added; creep does not wait for pore pressure. What comes
+    later changes nothing that went before.
     """
     settled = np.zeros((ground.points.depth.shape[0], site.times.size))
     for spell in creep_spells(site, values, ground, result):
@@ -231,7 +232,9 @@ def _creep_ratios(site: SiteModel, values: Values, ground: LoadedGround) -> tupl
     ratio = np.zeros((n_sample, len(site.layers)))
     for index, form in enumerate(site.layers):
         if form.creeps:
-            ratio[:, index] = column(values, f"{form.name}.C_alpha_ratio", n_sample)
+            ratio[:, index] = column(values, f"{form.name}.{form.creep}", n_sample)
+        if form.creep == "C_alpha":
+            ratio[:, index] /= ground.columns.lam[:, index] * LN10
     return chosen(ratio, layer), chosen(ground.columns.kap, layer) / chosen(ground.columns.lam, layer)
 
 

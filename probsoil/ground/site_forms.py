@@ -41,8 +41,8 @@ class LayerForm:
         Whether S and m replace the strength that follows from M, lambda and kappa.
     weight_above : bool
         Whether the part above the water table has a unit weight of its own.
-    creeps : bool
-        Whether secondary compression is computed.
+    creep : str
+        Key that gives secondary compression, ``C_alpha_ratio`` or ``C_alpha``; nothing for none.
     has_head : bool
         Whether a granular layer has a piezometric level of its own.
     excess : str
@@ -62,10 +62,15 @@ class LayerForm:
     flow: str = "k"
     strength_given: bool = False
     weight_above: bool = False
-    creeps: bool = False
+    creep: str = ""
     has_head: bool = False
     excess: str = ""
     modulus: str = ""
+
+    @property
+    def creeps(self) -> bool:
+        """Whether secondary compression is computed."""
+        return bool(self.creep)
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -359,7 +364,7 @@ def layer_form(layer: ClayLayer | GranularLayer) -> LayerForm:
         flow="cv" if layer.permeability.cv is not None else "k",
         strength_given=layer.strength is not None,
         weight_above=layer.unit_weight_above is not None,
-        creeps=layer.C_alpha_ratio is not None,
+        creep=_creep_form(layer),
         excess=_excess_form(layer),
         modulus=_modulus_form(layer),
     )
@@ -370,6 +375,10 @@ def _excess_form(layer: ClayLayer) -> str:
     if given is None:
         return ""
     return "degree" if given.pressure is None else given.shape
+
+
+def _creep_form(layer: ClayLayer) -> str:
+    return next((key for key in ("C_alpha_ratio", "C_alpha") if getattr(layer, key) is not None), "")
 
 
 def _modulus_form(layer: ClayLayer) -> str:

@@ -121,6 +121,8 @@ def further_load_forms(
                 crest_width=read(f"{further_address(load.name)}.crest_width", load.crest_width),
                 side_slope=read(f"{further_address(load.name)}.side_slope", load.side_slope),
                 full_height=greatest_height(stages, load.name),
+                berm_width=load.berm_width or 0.0,
+                berm_height=lesser(load.berm_height or 0.0, greatest_height(stages, load.name)),
             )
             if isinstance(load, FurtherEmbankment)
             else None,
@@ -208,7 +210,8 @@ def recorded_times(
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
-    if embankment is None or embankment.pit > 0.0:  # slip through replaced ground is not computed
+    fill_phi = getattr(scenario.load, "fill_phi", None)
+    if embankment is None or embankment.pit > 0.0 or fill_phi is None:  # no slip through replaced ground
         return record, np.zeros(0)
     check = [time for time in sorted(ends | slip) if time > 0.0 and height_at(stages, time) > 0.0]
     return record, np.array(check, dtype=np.float64)

@@ -74,6 +74,44 @@ def nearer_tail_score(below: float, above: float) -> float:
     return float(ndtri(below)) if below < above else -float(ndtri(above))
 
 
+def table_nodes() -> FloatArray:
+    """Scores at which a law that is read from a table holds its values.
+
+    Returns
+    -------
+    z : ndarray, shape (n_node,), [-]
+        From -9 to 9, 64 to a unit.
+    """
+    return np.linspace(-_TABLE_REACH, _TABLE_REACH, round(2 * _TABLE_REACH * _TABLE_PER_UNIT) + 1)
+
+
+def read_table(value: FloatArray, slope: FloatArray, z: FloatArray) -> FloatArray:
+    """Values between the nodes of a table, by cubic Hermite pieces.
+
+    Parameters
+    ----------
+    value, slope : ndarray, shape (n_node,), [any]
+        Values at `table_nodes`, and their derivatives with z.
+    z : ndarray, shape (...,), [-]
+        Scores; beyond the table its end values stand.
+
+    Returns
+    -------
+    between : ndarray, shape (...,), [any]
+        Values.
+    """
+    place = (np.clip(z, -_TABLE_REACH, _TABLE_REACH) + _TABLE_REACH) * _TABLE_PER_UNIT
+    node = np.minimum(place.astype(np.int64), value.size - 2)
+    t = place - node
+    start, end = value[node], value[node + 1]
+    first, last = slope[node] / _TABLE_PER_UNIT, slope[node + 1] / _TABLE_PER_UNIT
+    rise = end - start
+    between: FloatArray = start + t * (
+        first + t * (3.0 * rise - 2.0 * first - last + t * (first + last - 2.0 * rise))
+    )
+    return between
+
+
 @dataclass(frozen=True, slots=True)
 class NormalLaw:
     """Normal law.
@@ -233,14 +271,14 @@ class BetaLaw:
     _slope: FloatArray = field(init=False, repr=False)
 
     def __post_init__(self) -> None:
-        z = np.linspace(-_TABLE_REACH, _TABLE_REACH, round(2 * _TABLE_REACH * _TABLE_PER_UNIT) + 1)
+        z = table_nodes()
         log_y, log_rest = _log_beta_quantile(self.alpha, self.beta, z)
         log_density = -0.5 * z**2 - 0.5 * np.log(2.0 * np.pi)
         slope = np.exp(
             log_density + betaln(self.alpha, self.beta) - self.alpha * log_y - self.beta * log_rest
         )
         object.__setattr__(self, "_logit", log_y - log_rest)
-        object.__setattr__(self, "_slope", slope / _TABLE_PER_UNIT)
+        object.__setattr__(self, "_slope", slope)
 
     @property
     def mean(self) -> float:
@@ -256,13 +294,7 @@ class BetaLaw:
 
     def quantile(self, z: FloatArray) -> FloatArray:
         """See `Law.quantile`."""
-        place = (np.clip(z, -_TABLE_REACH, _TABLE_REACH) + _TABLE_REACH) * _TABLE_PER_UNIT
-        node = np.minimum(place.astype(np.int64), self._logit.size - 2)
-        t = place - node
-        start, end = self._logit[node], self._logit[node + 1]
-        first, last = self._slope[node], self._slope[node + 1]
-        rise = end - start
-        logit = start + t * (first + t * (3.0 * rise - 2.0 * first - last + t * (first + last - 2.0 * rise)))
+        logit = read_table(self._logit, self._slope, z)
         nearer: FloatArray = np.exp(-np.abs(logit))
         part = (self.high - self.low) * (nearer / (1.0 + nearer))
         return np.where(logit < 0.0, self.low + part, self.high - part)

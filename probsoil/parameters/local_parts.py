@@ -87,7 +87,7 @@ class LocalParts:
     shared_correlation: FloatArray
     local_correlation: FloatArray
 
-    def scores(self, z: FloatArray, station: int) -> FloatArray:
+    def scores(self, z: FloatArray, station: int, *, scale: FloatArray | None = None) -> FloatArray:
         """Return the normal scores of the parameters at one station.
 
         Parameters
@@ -96,6 +96,8 @@ class LocalParts:
             Correlated latent normals: shared parts first, then those of the local parts.
         station : int, [-]
             Place of the station in the order given.
+        scale : ndarray or None, shape (n, n_part), [-]
+            Factor on each local part; None for one.
 
         Returns
         -------
@@ -106,7 +108,7 @@ class LocalParts:
         scores = np.array(z[:, :count], order="F")
         scores *= self.shared_weight
         for number, part in enumerate(self.parts):
-            local = part.at(z, station)
+            local = part.at(z, station) if scale is None else scale[:, number] * part.at(z, station)
             for place in np.flatnonzero(self.local_weight[:, number]):
                 scores[:, place] += self.local_weight[place, number] * local
         return scores

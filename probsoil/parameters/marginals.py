@@ -13,17 +13,11 @@ from scipy.special import ndtri
 
 from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import ParameterError
-from probsoil.parameters.laws import BetaLaw, Law, LognormalLaw, NormalLaw, TriangularLaw, UniformLaw
+from probsoil.parameters.laws import Law, LognormalLaw, NormalLaw
+from probsoil.parameters.listed_laws import InterpolatedLaw, StepLaw
+from probsoil.parameters.plain_laws import plain_law
 from probsoil.parameters.truncation import Truncation, interval_probability
-from probsoil.scenario.distributions import (
-    Beta,
-    Distribution,
-    Lognormal,
-    Normal,
-    Triangular,
-    TruncatedNormal,
-    Uniform,
-)
+from probsoil.scenario.distributions import Distribution, Lognormal, Normal, TruncatedNormal
 from probsoil.scenario.spatial_averaging import inherent_variance, remaining_variance
 
 NEGLIGIBLE_CUT = 1e-12
@@ -176,8 +170,8 @@ def marginal(quantity: UncertainQuantity) -> Marginal:
     """
     law = representative_law(quantity.distribution, quantity.averaging_length, in_series=quantity.in_series)
     own = _own_bounds(law, quantity.distribution)
-    start = max(own.start, law.score(quantity.low))
-    end = min(own.end, law.score(quantity.high))
+    start, end = _kept_scores(law, quantity.low, quantity.high)
+    start, end = max(own.start, start), min(own.end, end)
     cut = (
         1.0
         if start >= end
@@ -253,22 +247,21 @@ def representative_law(
             log_sd = float(np.sqrt(distribution.log_sd**2 + extra))
             factor = _harmonic_factor(distribution, averaging_length) if in_series else 1.0
             return LognormalLaw(factor * distribution.median * float(np.exp(-0.5 * extra)), log_sd)
-        case Uniform():
-            return UniformLaw(distribution.low, distribution.high)
-        case Triangular():
-            return TriangularLaw(distribution.low, distribution.mode, distribution.high)
-        case TruncatedNormal():
-            return NormalLaw(distribution.mean, distribution.sd)
-        case Beta():
-            return BetaLaw(distribution.alpha, distribution.beta, distribution.low, distribution.high)
         case _:
-            raise ParameterError(f"a distribution of kind {distribution.kind!r} has no uncertain value")
+            return plain_law(distribution)
 
 
 def _harmonic_factor(distribution: Normal | Lognormal, length: float | None) -> float:
     """Harmonic over arithmetic average of the field."""
     point = float(np.log1p((distribution.inherent_cov or 0.0) ** 2))
     return float(np.exp(remaining_variance(point, distribution.vertical_scale, length) - point))
+
+
+def _kept_scores(law: Law, low: float, high: float) -> tuple[float, float]:
+    """Scores whose values lie within bounds; a value with a probability of its own is kept whole."""
+    if isinstance(law, StepLaw | InterpolatedLaw):
+        return law.kept_scores(low, high)
+    return law.score(low), law.score(high)
 
 
 def _own_bounds(law: Law, distribution: Distribution) -> Truncation:

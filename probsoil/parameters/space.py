@@ -1,7 +1,7 @@
 """All uncertain parameters of a scenario in one latent standard-normal space."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -9,11 +9,13 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.errors import ParameterError, ShapeError
 from probsoil.parameters.dependence import Dependence, correlation_matrix
-from probsoil.parameters.local_parts import LocalPart, LocalParts, Position, local_parts, mixing_matrix
+from probsoil.parameters.local_parts import LocalParts, Position
 from probsoil.parameters.marginals import Marginal, UncertainQuantity, marginal
-from probsoil.scenario.base import RESERVED_NAMES
-from probsoil.scenario.distributions import Constant, Lognormal, Normal
-from probsoil.scenario.spatial_averaging import local_share
+from probsoil.parameters.observations import Observation
+from probsoil.parameters.station_parts import parts_at_stations
+from probsoil.parameters.tested import tested
+from probsoil.parameters.updated import Updated
+from probsoil.scenario.distributions import Constant
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -71,7 +73,10 @@ class ParameterSpace:
     local : LocalParts or None
         What varies between stations; None where nothing does.
     at_station : ndarray, shape (n_parameter, n_parameter), [-]
-        Correlation of the parameters' normal scores at any one station.
+        Correlation of the parameters' normal scores at any one station, before any tests.
+    updated : Updated or None
+        What tests have made of the latent normals, of which `correlation` then is that after the tests;
+        None without tests.
     """
 
     marginals: tuple[Marginal, ...]
@@ -81,6 +86,7 @@ class ParameterSpace:
     constants: dict[str, float]
     local: LocalParts | None = None
     at_station: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    updated: Updated | None = None
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -142,7 +148,10 @@ class ParameterSpace:
         """
         if z.ndim != 2 or z.shape[1] != self.dimension:
             raise ShapeError(f"z must have shape (n, {self.dimension}); got {z.shape}")
-        scores = z if self.local is None else self.local.scores(z, station)
+        if self.updated is not None:
+            scores = self.updated.scores(z, self.local, station)
+        else:
+            scores = z if self.local is None else self.local.scores(z, station)
         drawn = {law.name: law.quantile(scores[:, i]) for i, law in enumerate(self.marginals)}
         return {**self.constants, **drawn}
 
@@ -164,12 +173,14 @@ class ParameterSpace:
         ParameterError
             If `point` is neither.
         """
-        if point == "mean":
-            centre = {law.name: law.mean for law in self.marginals}
-        elif point == "median":
-            centre = {law.name: float(law.quantile(0.0)) for law in self.marginals}
-        else:
+        if point not in ("mean", "median"):
             raise ParameterError(f"point must be 'mean' or 'median'; got {point!r}")
+        if self.updated is not None:
+            centre = {row.name: row.mean if point == "mean" else row.p50 for row in self.summary()}
+        elif point == "mean":
+            centre = {law.name: law.mean for law in self.marginals}
+        else:
+            centre = {law.name: float(law.quantile(0.0)) for law in self.marginals}
         return {**self.constants, **centre}
 
     def summary(self) -> tuple[ParameterSummary, ...]:
@@ -180,7 +191,9 @@ class ParameterSpace:
         rows : tuple of ParameterSummary
             One row per uncertain parameter, in the order of the file.
         """
-        return tuple(_summary(law) for law in self.marginals)
+        if self.updated is None:
+            return tuple(_summary(law) for law in self.marginals)
+        return tuple(_summary_after(law, self.updated, place) for place, law in enumerate(self.marginals))
 
     def to_frame(self) -> "pd.DataFrame":
         """Return the summary as a table.
@@ -203,6 +216,7 @@ def parameter_space(
     dependence: Sequence[Dependence] = (),
     *,
     positions: Sequence[Position] = (),
+    observations: Sequence[Observation] = (),
 ) -> ParameterSpace:
     """Parameter space of a scenario.
 
@@ -214,6 +228,9 @@ def parameter_space(
         Pairs of addresses with their rank correlation, which holds at every station.
     positions : sequence of (float, float), [m]
         Plan positions of the stations; with fewer than two there is nothing that varies between them.
+    observations : sequence of Observation
+        Tests in hand. With none, and the variability from point to point known, the space is that of the laws
+        alone.
 
     Returns
     -------
@@ -233,9 +250,15 @@ def parameter_space(
     marginals = tuple(marginal(q) for q in uncertain)
     names = [law.name for law in marginals]
     at_station = correlation_matrix(names, dependence)
-    local, correlation = _local_parts(uncertain, at_station, positions), at_station
+    local = parts_at_stations(uncertain, at_station, positions) if len(positions) > 1 else None
+    correlation = at_station
     if local is not None:
         correlation = local.correlation
+    updated = tested(
+        uncertain, marginals, at_station, local=local, positions=positions, observations=observations
+    )
+    if updated is not None:
+        correlation = updated.standard_correlation
     triangle = np.asarray(np.linalg.cholesky(correlation), dtype=np.float64)
     inverse = np.linalg.inv(correlation)
     inverse = 0.5 * (inverse + inverse.T)
@@ -249,38 +272,17 @@ def parameter_space(
         constants=constants,
         local=local,
         at_station=at_station,
+        updated=updated,
     )
 
 
-def _local_parts(
-    uncertain: Sequence[UncertainQuantity], at_station: FloatArray, positions: Sequence[Position]
-) -> LocalParts | None:
-    """Return what varies between stations, with its latent normals behind those of the parameters."""
-    parts: list[LocalPart] = []
-    count = len(positions)
-    for place, quantity in enumerate(uncertain):
-        law = quantity.distribution
-        share = local_share(law, quantity.averaging_length)
-        if count < 2 or share == 0.0 or not isinstance(law, Normal | Lognormal):
-            continue
-        if law.horizontal_scale is None:
-            raise ParameterError(
-                f"{quantity.address} varies from point to point and there are {count} stations: it needs "
-                "horizontal_scale, over which it varies in plan"
-            )
-        first = len(uncertain) + count * len(parts)
-        parts.append(
-            LocalPart(
-                parameter=place,
-                share=share,
-                latent=np.arange(first, first + count),
-                mixing=mixing_matrix(positions, law.horizontal_scale),
-            )
-        )
-    tables = tuple(f"{name}." for name in RESERVED_NAMES)
-    rigid = [place for place, quantity in enumerate(uncertain) if quantity.address.startswith(tables)]
-    names = [quantity.address for quantity in uncertain]
-    return local_parts(at_station, parts, rigid, names) if parts else None
+def _summary_after(law: Marginal, updated: Updated, place: int) -> ParameterSummary:
+    """Return the summary of a parameter as the tests leave it."""
+    mean, sd = updated.moments(place, law)
+    p05, p50, p95 = (
+        float(law.quantile(updated.percentile(place, probability))) for probability in (0.05, 0.5, 0.95)
+    )
+    return replace(_summary(law), mean=mean, sd=sd, p05=p05, p50=p50, p95=p95)
 
 
 def _summary(law: Marginal) -> ParameterSummary:

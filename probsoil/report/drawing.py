@@ -8,8 +8,10 @@ from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from probsoil.report import alttext
+from probsoil.report.evidence import evidence_words
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_bars import plot_drivers, plot_factors
+from probsoil.report.plot_evidence import plot_evidence
 from probsoil.report.plot_ground import plot_ground
 from probsoil.report.plot_section import plot_section
 from probsoil.report.plot_settlement import plot_settlement
@@ -64,27 +66,31 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     -------
     drawings : dict of str to str
         Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``)
-        or ``bearing``, ``ground`` and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
+        or ``bearing``, ``ground``, ``evidence-1``, ``evidence-2``, ... for the parameters that tests changed,
+        and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
     drawn |= _settlement_figures(results)
     for key in ("slip", "bearing"):
         if results.get(key):
             words = alttext.stability(results, key)
-            drawn[key] = _render(key, words, partial(plot_factors, failure=key), results[key])
+            drawn[key] = drawn_figure(key, words, partial(plot_factors, failure=key), results[key])
     shown_check = drawn_check(results)
     if shown_check is not None and (results.get("ground") or {}).get("layers"):
         words, data = section_words(shown_check), (shown_check, results["ground"])
-        drawn["section"] = _render("section", words, plot_section, data)
+        drawn["section"] = drawn_figure("section", words, plot_section, data)
     if (results.get("ground") or {}).get("layers"):
-        drawn["ground"] = _render("ground", alttext.ground(results), plot_ground, results["ground"])
+        drawn["ground"] = drawn_figure("ground", alttext.ground(results), plot_ground, results["ground"])
+    for number, row in enumerate((results.get("evidence") or {}).get("parameters") or [], start=1):
+        name = f"evidence-{number}"
+        drawn[name] = drawn_figure(name, evidence_words(row), plot_evidence, row)
     for number, limit in enumerate(results["limits"], start=1):
         shown = shown_drivers(results, limit["name"])
         if shown:
             name = f"drivers-{number}"
             measure = ranked_by(results, limit["name"])
             draw = partial(plot_drivers, measure=measure)
-            drawn[name] = _render(name, alttext.drivers(limit, shown, measure), draw, shown)
+            drawn[name] = drawn_figure(name, alttext.drivers(limit, shown, measure), draw, shown)
     return drawn
 
 
@@ -92,9 +98,11 @@ def _settlement_figures(results: dict[str, Any]) -> dict[str, str]:
     """Draw settlement through time, and over the stations where there are several."""
     data, drawn = results.get("settlement") or {}, {}
     if data.get("times"):
-        drawn["settlement"] = _render("settlement", alttext.settlement(results), plot_settlement, results)
+        drawn["settlement"] = drawn_figure(
+            "settlement", alttext.settlement(results), plot_settlement, results
+        )
     if len(data.get("stations") or []) > 1:
-        drawn["stations"] = _render("stations", stations_words(results), plot_stations, data)
+        drawn["stations"] = drawn_figure("stations", stations_words(results), plot_stations, data)
     return drawn
 
 
@@ -151,7 +159,25 @@ def _quiet_glyphs() -> Iterator[None]:
         yield
 
 
-def _render(name: str, words: "Words", draw: "Callable[[Figure, Any], None]", data: object) -> str:
+def drawn_figure(name: str, words: "Words", draw: "Callable[[Figure, Any], None]", data: object) -> str:
+    """Draw one figure.
+
+    Parameters
+    ----------
+    name : str
+        Its name, unique on the page.
+    words : Words
+        Title and description for those who cannot see it.
+    draw : callable
+        Draws on an empty figure.
+    data : object
+        What it draws.
+
+    Returns
+    -------
+    svg : str
+        One ``svg`` element.
+    """
     from matplotlib import rc_context
     from matplotlib.figure import Figure
 

@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from probsoil.report.chance import realisations_of
+from probsoil.report.evidence import parameter_rows, test_rows
 from probsoil.report.ranking import ranked_by
 from probsoil.report.text import LEAST_FOR_TAILS, UNCOMPUTED, WITHHELD, uncomputed_text
 
@@ -18,7 +19,7 @@ def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
 
     The last only where fill is added to hold its level. With stations also ``stations.csv``
-    and ``station_pairs.csv``.
+    and ``station_pairs.csv``; with tests in hand ``tests.csv`` and ``updated_parameters.csv``.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
@@ -74,6 +75,9 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     if settlement.get("stations"):
         rows["stations"] = list(_station_rows(settlement, results))
         rows["station_pairs"] = list(_pair_rows(settlement, results))
+    if results.get("evidence"):
+        rows["tests"] = test_rows(results["evidence"])
+        rows["updated_parameters"] = parameter_rows(results["evidence"])
     if results.get("added_fill"):
         rows["added_fill"] = _added_fill_rows(results)
     frames = {name: pd.DataFrame(part) for name, part in rows.items()}

@@ -193,15 +193,19 @@ def quantity_text(limit: dict[str, Any]) -> str:
     """
     time = limit.get("time") or {}
     quantity = limit["quantity"]
+    where = limit.get("place_text") or ""
     if quantity == "time_to_consolidation":
         degree = time.get("degree")
         aim = "the stated degree of" if degree is None else plain_percent(degree)
-        return f"the time to {aim} consolidation"
+        return " ".join(part for part in (f"the time to {aim} consolidation", where) if part)
     name = f"the {_QUANTITY_NAMES.get(quantity, quantity.replace('_', ' '))}"
     if quantity in ("slip_safety", "bearing_safety") and "at" not in time:
-        return f"the least {_QUANTITY_NAMES[quantity]} over the stages"
-    where = limit.get("place_text") or ""
-    return " ".join(part for part in (name, limit.get("time_text") or _when(time), where) if part)
+        name, when = f"the least {_QUANTITY_NAMES[quantity]}", "over the stages"
+    else:
+        when = limit.get("time_text") or _when(time)
+    # a load belongs to the quantity, a station to where and when it is looked at
+    order = (name, where, when) if where.startswith("of ") else (name, when, where)
+    return " ".join(part for part in order if part)
 
 
 def uncomputed_text(quantity: str) -> str:

@@ -82,6 +82,7 @@ _LIMIT = {
     "expected_cost": _NUMBER,
     "expected_cost_interval?": ("pair", "null"),
     "summary": {"mean": _NUMBER, "sd": _NUMBER, "quantiles": _QUANTILES, "median_interval?": "pair"},
+    "load?": ("text", "null"),
     "place?": ("object", "null"),
     "place_text?": "text",
     "decided_by?": [{"stations": ["text"], "share": "share"}],
@@ -123,6 +124,37 @@ _CIRCLE = {
     "at_medians": ("object", "null"),
     "others": [{"centre": ["number"], **dict.fromkeys(("radius", "exit_x", "entry_x"), "number")}],
     "outline": [["number"]],
+}
+_SUMMARY = dict.fromkeys(("mean", "sd", "p05", "p50", "p95"), "number")
+_SOURCES = dict.fromkeys(("knowledge", "inherent", "measurement", "bias"), "number")
+_RESULT = {
+    **dict.fromkeys(("test", "kind", "parameter", "layer", "hole", "unit"), "text"),
+    "value": "number",
+}
+_EVIDENCE = {
+    "tests": [
+        {
+            **_RESULT,
+            **dict.fromkeys(("below_top", "standard_error", "error_cov", "bias_cov", "deviation"), "number"),
+            "informs": ["text"],
+        }
+    ],
+    "unused": [{**_RESULT, "reason": "text"}],
+    "parameters": [
+        {
+            **dict.fromkeys(("name", "unit", "meaning"), "text"),
+            "tests": "count",
+            "kinds": ["text"],
+            "before": _SUMMARY,
+            "after": _SUMMARY,
+            "sources_before": _SOURCES,
+            "sources_after": _SOURCES,
+            "data": [{"test": "text", "kind": "text", "value": "number"}],
+            "density": {key: ["number"] for key in ("value", "before", "after")},
+        }
+    ],
+    "conflict": {"chance": "share", "far": "flag"},
+    "curvature": "number",
 }
 _GROUND = {
     "water_table": "text",
@@ -201,6 +233,7 @@ RESULTS: dict[str, Any] = {
         | dict.fromkeys(("mean", "sd", "p05", "p50", "p95", "low", "high"), _NUMBER)
         | {"cut_share": "share", "local_share?": "share"}
     ],
+    "evidence?": _EVIDENCE,
     "dependence": [{"between": ["text"], "rank_correlation": "number", "latent_correlation": "number"}],
     "discretisation": {
         "realisations": "positive count",

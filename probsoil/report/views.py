@@ -6,6 +6,7 @@ from probsoil.report import chance, text
 from probsoil.report.added_fill import added_fill_sentences
 from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
+from probsoil.report.evidence import evidence_view
 from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
 from probsoil.report.section import section_view
 from probsoil.report.stations import is_marked, stations_view
@@ -69,6 +70,7 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
         "curves": [view for view in curves if view is not None],
         "drivers": [view for number, limit in numbered if (view := drivers_view(number, limit, results))],
         "stability": _stability(results),
+        "evidence": evidence_view(results),
     } | record_view(results)
 
 

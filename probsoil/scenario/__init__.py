@@ -21,6 +21,7 @@ from probsoil.scenario.limits import (
     SettlementLimit,
     SlipSafetyLimit,
 )
+from probsoil.scenario.listed_distributions import Discrete, Empirical, Percentiles
 from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, RectangleLoad, Stage, StripLoad
 from probsoil.scenario.models import Dependence, ModelError, Scenario, Site
 from probsoil.scenario.quantities import Quantity
@@ -28,6 +29,7 @@ from probsoil.scenario.reader import parse_scenario, read_scenario
 from probsoil.scenario.reference import reference_table
 from probsoil.scenario.remarks import remarks
 from probsoil.scenario.schema import scenario_schema
+from probsoil.scenario.skewed_distributions import Gamma, Gumbel
 from probsoil.scenario.starters import STARTERS, starter_text
 from probsoil.scenario.stations import Station, StationLine
 
@@ -45,12 +47,17 @@ __all__ = [
     "Constant",
     "Dependence",
     "DifferentialSettlementLimit",
+    "Discrete",
     "Distribution",
     "EmbankmentLoad",
+    "Empirical",
+    "Gamma",
     "GranularLayer",
+    "Gumbel",
     "Lognormal",
     "ModelError",
     "Normal",
+    "Percentiles",
     "Permeability",
     "Preconsolidation",
     "Quantity",

@@ -1,80 +1,42 @@
 """Reading of a distribution written as a table, every mistake of it at once."""
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
+from typing import Any, cast
 
-from probsoil.scenario.distributions import (
-    Beta,
-    Distribution,
-    Lognormal,
-    Normal,
-    Triangular,
-    TruncatedNormal,
-    Uniform,
+from probsoil.scenario.distribution_builders import BUILDERS
+from probsoil.scenario.distribution_keys import (
+    FORMS,
+    GREATEST_COV,
+    GREATEST_LOG_SD,
+    SPATIAL_DISTRIBUTIONS,
+    SPATIAL_KEYS,
+    form_text,
+    own_keys,
+    settling_keys,
 )
-from probsoil.scenario.later import LATER_DISTRIBUTIONS, NOT_YET
+from probsoil.scenario.distributions import Distribution, TruncatedNormal
+from probsoil.scenario.inherent_range import read_range, root_mean_square_cov
+from probsoil.scenario.list_entries import list_slips, read_entry
+from probsoil.scenario.listed_distributions import Percentiles
 from probsoil.scenario.slips import Slip, did_you_mean, unknown_key
-from probsoil.units import Kind, UnitError, to_base
+from probsoil.scenario.value_files import read_values
+from probsoil.units import Kind
 
-GREATEST_COV = 1.5
-GREATEST_LOG_SD = 3.0
 LEAST_SHARE_KEPT = 1e-6  # of a normal distribution by its cuts
 
-_SPREADS = (("mean", "cov"), ("mean", "sd"))
-# Keys that settle each distribution; any one of the sets will do.
-FORMS: dict[str, tuple[tuple[str, ...], ...]] = {
-    "normal": _SPREADS,
-    "lognormal": (*_SPREADS, ("median", "log_sd")),
-    "uniform": (("low", "high"),),
-    "triangular": (("low", "mode", "high"),),
-    "truncated_normal": tuple((*keys, "low", "high") for keys in _SPREADS),
-    "beta": (*((*keys, "low", "high") for keys in _SPREADS), ("alpha", "beta", "low", "high")),
-}
-SPATIAL_KEYS = ("inherent_cov", "vertical_scale", "horizontal_scale")
-SPATIAL_DISTRIBUTIONS = ("normal", "lognormal")
-# Kinds of the numbers that do not share the kind of the parameter itself.
-NUMBER_KEYS: dict[str, Kind] = {
-    "cov": "number",
-    "log_sd": "number",
-    "alpha": "number",
-    "beta": "number",
-    "inherent_cov": "number",
-    "vertical_scale": "length",
-    "horizontal_scale": "length",
-}
-_MUST_BE_POSITIVE = ("sd", "log_sd", "alpha", "beta", "vertical_scale", "horizontal_scale", "median")
-
-
-def own_keys(name: str) -> tuple[str, ...]:
-    """Return the keys that belong to one distribution, those of all its forms.
-
-    Parameters
-    ----------
-    name : str
-        Name of the distribution.
-
-    Returns
-    -------
-    keys : tuple of str
-        Without ``dist`` and the keys of spatial variability.
-    """
-    return tuple(dict.fromkeys(key for form in FORMS[name] for key in form))
-
-
-def form_text(name: str) -> str:
-    """Return in words the sets of keys that settle one distribution.
-
-    Parameters
-    ----------
-    name : str
-        Name of the distribution.
-
-    Returns
-    -------
-    text : str
-        Such as ``mean, cov or mean, sd``.
-    """
-    return " or ".join(", ".join(form) for form in FORMS[name])
+_MUST_BE_POSITIVE = (
+    "sd",
+    "log_sd",
+    "alpha",
+    "beta",
+    "shape",
+    "scale",
+    "vertical_scale",
+    "horizontal_scale",
+    "median",
+)
+_NEVER_NEGATIVE = ("lognormal", "gamma")
 
 
 def read_distribution(table: Mapping[str, object], kind: Kind, *, spatial: bool) -> Distribution | list[Slip]:
@@ -100,25 +62,45 @@ def read_distribution(table: Mapping[str, object], kind: Kind, *, spatial: bool)
     extra = SPATIAL_KEYS if spatial and name in SPATIAL_DISTRIBUTIONS else ()
     known = (*own_keys(name), *extra)
     slips = [_unknown_key(key, name, known, table) for key in table if key not in (*known, "dist")]
-    numbers: dict[str, float] = {}
+    entries: dict[str, Any] = {}
     for key in known:
         if key in table:
-            outcome = _read_number(table[key], key, kind)
+            value = table[key]
+            ranged = key == "inherent_cov" and isinstance(value, dict)
+            outcome = (
+                read_range(cast("dict[str, object]", value), name) if ranged else read_entry(value, key, kind)
+            )
             if isinstance(outcome, Slip):
                 slips.append(outcome)
+            elif isinstance(outcome, list):
+                slips += outcome
+            elif ranged:
+                entries |= {
+                    key: root_mean_square_cov(*cast("tuple[float, float]", outcome)),
+                    "inherent_range": outcome,
+                }
             else:
-                numbers[key] = outcome
-    slips += _form_slips(name, table, slips) + _value_slips(name, numbers)
+                entries[key] = outcome
+    slips += _form_slips(name, table, slips)
+    slips += _value_slips(name, {key: entries[key] for key in entries if isinstance(entries[key], float)})
     slips += _spatial_slips(table) if extra else []
     if slips:
         return slips
-    return _built(name, numbers)
+    return _built(name, entries, kind)
 
 
-def _built(name: str, numbers: Mapping[str, float]) -> Distribution | list[Slip]:
-    """Build a distribution whose numbers are each in order."""
+def _built(name: str, entries: dict[str, Any], kind: Kind) -> Distribution | list[Slip]:
+    """Build a distribution whose entries are each in order."""
+    if "file" in entries:
+        values = read_values(entries["file"], entries.get("column"), kind)
+        if isinstance(values, Slip):
+            return [values]
+        entries["values"] = values
+    slips = list_slips(name, entries)
+    if slips:
+        return slips
     try:
-        outcome = _BUILDERS[name](numbers)
+        outcome = BUILDERS[name](entries)
         if isinstance(outcome, list) or _is_usable(outcome):
             return outcome
     except (ArithmeticError, ValueError):
@@ -130,7 +112,11 @@ def _is_usable(distribution: Distribution) -> bool:
     """Whether rounding has left a spread and a mean to calculate with."""
     if isinstance(distribution, TruncatedNormal) and distribution.share_kept < LEAST_SHARE_KEPT:
         return False
-    spreads = [getattr(distribution, key, 1.0) for key in ("sd", "log_sd", "alpha", "beta", "median")]
+    if isinstance(distribution, Percentiles) and not distribution.is_usable:
+        return False
+    spreads = [
+        getattr(distribution, key, 1.0) for key in ("sd", "log_sd", "alpha", "beta", "scale", "median")
+    ]
     return min(spreads) > 0.0 and math.isfinite(distribution.expectation) and all(map(math.isfinite, spreads))
 
 
@@ -143,8 +129,6 @@ def _name_slip(name: object, *, present: bool) -> Slip:
             allowed=f"dist = {allowed}",
             at_key=True,
         )
-    if name in LATER_DISTRIBUTIONS:
-        return Slip(path=("dist",), message=f'distribution "{name}" is {NOT_YET}', allowed=allowed)
     hint = did_you_mean(name, tuple(FORMS)) if isinstance(name, str) else None
     return Slip(path=("dist",), message="unknown distribution", allowed=allowed, hint=hint)
 
@@ -155,26 +139,21 @@ def _unknown_key(key: str, name: str, known: tuple[str, ...], table: Mapping[str
         allowed = "variability from point to point: normal or lognormal soil properties of a layer only"
         return Slip(path=(key,), message=message, allowed=allowed, at_key=True)
     if any(key in own_keys(other) for other in FORMS):
-        message = f'"{key}" does not belong to a {name} distribution'
+        message = f'"{key}" does not belong to {_a(name)} distribution'
         return Slip(path=(key,), message=message, allowed=form_text(name), at_key=True)
     return unknown_key(key, ("dist", *known), table)
 
 
-def _read_number(value: object, key: str, kind: Kind) -> float | Slip:
-    if not isinstance(value, int | float | str):
-        return Slip(path=(key,), message="this is not a number", allowed="a number or a string with a unit")
-    try:
-        return to_base(value, NUMBER_KEYS.get(key, kind))
-    except UnitError as error:
-        return Slip(path=(key,), message=error.message, allowed=error.allowed, hint=error.hint)
+def _a(name: str) -> str:
+    return f"{'an' if name[0] in 'aeio' else 'a'} {name}"
 
 
 def _form_slips(name: str, table: Mapping[str, object], found: list[Slip]) -> list[Slip]:
     """Complain of missing or surplus keys, unless a mistyped key explains the gap."""
-    given = [key for key in own_keys(name) if key in table]
+    given = [key for key in settling_keys(name) if key in table]
     if set(given) in [set(form) for form in FORMS[name]] or _explained(name, set(given), found):
         return []
-    message = f"a {name} distribution needs {form_text(name)}; given: {', '.join(given) or 'none of them'}"
+    message = f"{_a(name)} distribution needs {form_text(name)}; given: {', '.join(given) or 'none of them'}"
     return [Slip(path=(), message=message, allowed=form_text(name))]
 
 
@@ -214,8 +193,8 @@ def _value_slips(name: str, numbers: Mapping[str, float]) -> list[Slip]:
     if numbers.get("log_sd", 0.0) > GREATEST_LOG_SD:
         message = f"log_sd is {numbers['log_sd']:g}"
         slips.append(Slip(path=("log_sd",), message=message, allowed=f"above 0, at most {GREATEST_LOG_SD:g}"))
-    if name == "lognormal" and numbers.get("mean", 1.0) <= 0.0:
-        message = f"mean is {numbers['mean']:g}, and a lognormal variable is never negative"
+    if name in _NEVER_NEGATIVE and numbers.get("mean", 1.0) <= 0.0:
+        message = f"mean is {numbers['mean']:g}, and a {name} variable is never negative"
         hint = "normal, uniform and triangular may be negative"
         slips.append(Slip(path=("mean",), message=message, allowed="above 0", hint=hint))
     elif "cov" in numbers and numbers.get("mean", 1.0) <= 0.0:
@@ -260,86 +239,3 @@ def _bound_slips(numbers: Mapping[str, float]) -> list[Slip]:
             )
         ]
     return []
-
-
-def _spread(numbers: Mapping[str, float]) -> float:
-    return numbers["sd"] if "sd" in numbers else numbers["cov"] * numbers["mean"]
-
-
-def _spatial(numbers: Mapping[str, float]) -> tuple[float, float | None, float | None]:
-    return numbers.get("inherent_cov", 0.0), numbers.get("vertical_scale"), numbers.get("horizontal_scale")
-
-
-def _normal(numbers: Mapping[str, float]) -> Distribution:
-    inherent, vertical, horizontal = _spatial(numbers)
-    return Normal(
-        mean=numbers["mean"],
-        sd=_spread(numbers),
-        inherent_cov=inherent,
-        vertical_scale=vertical,
-        horizontal_scale=horizontal,
-    )
-
-
-def _lognormal(numbers: Mapping[str, float]) -> Distribution | list[Slip]:
-    if "median" in numbers:
-        median, log_sd = numbers["median"], numbers["log_sd"]
-    else:
-        log_sd = math.sqrt(math.log1p((_spread(numbers) / numbers["mean"]) ** 2))
-        if log_sd > GREATEST_LOG_SD:
-            return [
-                Slip(
-                    path=("sd",),
-                    message="sd is too large for this mean",
-                    allowed="sd at most 90 times the mean",
-                )
-            ]
-        median = numbers["mean"] * math.exp(-0.5 * log_sd**2)
-    inherent, vertical, horizontal = _spatial(numbers)
-    return Lognormal(
-        median=median,
-        log_sd=log_sd,
-        inherent_cov=inherent,
-        vertical_scale=vertical,
-        horizontal_scale=horizontal,
-    )
-
-
-def _uniform(numbers: Mapping[str, float]) -> Distribution:
-    return Uniform(low=numbers["low"], high=numbers["high"])
-
-
-def _triangular(numbers: Mapping[str, float]) -> Distribution:
-    return Triangular(low=numbers["low"], mode=numbers["mode"], high=numbers["high"])
-
-
-def _truncated_normal(numbers: Mapping[str, float]) -> Distribution:
-    return TruncatedNormal(
-        mean=numbers["mean"], sd=_spread(numbers), low=numbers["low"], high=numbers["high"]
-    )
-
-
-def _beta(numbers: Mapping[str, float]) -> Distribution | list[Slip]:
-    low, high = numbers["low"], numbers["high"]
-    if "alpha" in numbers:
-        return Beta(alpha=numbers["alpha"], beta=numbers["beta"], low=low, high=high)
-    width = high - low
-    mean, variance = (numbers["mean"] - low) / width, (_spread(numbers) / width) ** 2
-    greatest = mean * (1.0 - mean)
-    if variance >= greatest:
-        key = "sd" if "sd" in numbers else "cov"
-        limit = math.sqrt(greatest) * width / (1.0 if key == "sd" else numbers["mean"])
-        message = f"{key} is {numbers[key]:g}, too large for these bounds and this mean"
-        return [Slip(path=(key,), message=message, allowed=f"below {limit:.4g}")]
-    size = greatest / variance - 1.0
-    return Beta(alpha=mean * size, beta=(1.0 - mean) * size, low=low, high=high)
-
-
-_BUILDERS: dict[str, Callable[[Mapping[str, float]], Distribution | list[Slip]]] = {
-    "normal": _normal,
-    "lognormal": _lognormal,
-    "uniform": _uniform,
-    "triangular": _triangular,
-    "truncated_normal": _truncated_normal,
-    "beta": _beta,
-}

@@ -5,76 +5,16 @@ say what they are, where their mean lies and how much of them lies beyond a phys
 """
 
 import math
-from abc import ABC, abstractmethod
 from dataclasses import dataclass
 from typing import ClassVar, TypeAlias
 
-
-def _normal_cdf(z: float) -> float:
-    return 0.5 * math.erfc(-z / math.sqrt(2.0))
-
-
-def _figure(value: float) -> str:
-    """Four figures; powers of ten only where a plain number would be long."""
-    return f"{value:,.0f}" if 1e4 <= abs(value) < 1e7 else f"{value:.4g}"
-
-
-def _with_unit(value: float, unit: str) -> str:
-    if unit in ("", "-"):
-        return _figure(value)
-    return f"{_figure(value)} {'degrees' if unit == 'degree' else unit}"
-
-
-class _Described(ABC):
-    """What every distribution can tell of itself."""
-
-    __slots__ = ()
-    kind: ClassVar[str]
-
-    @property
-    @abstractmethod
-    def expectation(self) -> float:
-        """Mean, [base unit]."""
-
-    def probability_outside(self, low: float, high: float) -> float:
-        """Return the probability beyond a range, point-to-point variability left out.
-
-        Parameters
-        ----------
-        low, high : float, [base unit]
-            Range.
-
-        Returns
-        -------
-        probability : float, [-]
-            From 0 to 1.
-        """
-        return min(1.0, max(0.0, self._outside(low, high)))
-
-    def describe(self, unit: str) -> str:
-        """Return the distribution in words.
-
-        Parameters
-        ----------
-        unit : str
-            Base unit, ``-`` for none.
-
-        Returns
-        -------
-        text : str
-            Short phrase.
-        """
-        return self._words(unit)
-
-    @abstractmethod
-    def _outside(self, low: float, high: float) -> float: ...
-
-    @abstractmethod
-    def _words(self, unit: str) -> str: ...
+from probsoil.scenario.describing import Described, figure, normal_cdf, with_unit
+from probsoil.scenario.listed_distributions import Discrete, Empirical, Percentiles
+from probsoil.scenario.skewed_distributions import Gamma, Gumbel
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Constant(_Described):
+class Constant(Described):
     """A number that is not uncertain.
 
     Attributes
@@ -95,11 +35,11 @@ class Constant(_Described):
         return float(not low <= self.value <= high)
 
     def _words(self, unit: str) -> str:
-        return f"fixed at {_with_unit(self.value, unit)}"
+        return f"fixed at {with_unit(self.value, unit)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Normal(_Described):
+class Normal(Described):
     """Normal distribution of the representative value of a parameter.
 
     Attributes
@@ -127,15 +67,15 @@ class Normal(_Described):
         return self.mean
 
     def _outside(self, low: float, high: float) -> float:
-        return _normal_cdf((low - self.mean) / self.sd) + _normal_cdf((self.mean - high) / self.sd)
+        return normal_cdf((low - self.mean) / self.sd) + normal_cdf((self.mean - high) / self.sd)
 
     def _words(self, unit: str) -> str:
-        text = f"normal, mean {_with_unit(self.mean, unit)}, standard deviation {_with_unit(self.sd, unit)}"
+        text = f"normal, mean {with_unit(self.mean, unit)}, standard deviation {with_unit(self.sd, unit)}"
         return text + _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Lognormal(_Described):
+class Lognormal(Described):
     """Lognormal distribution of the representative value of a parameter.
 
     Attributes
@@ -150,6 +90,9 @@ class Lognormal(_Described):
         Scale of fluctuation with depth.
     horizontal_scale : float or None, [m]
         Scale of fluctuation in plan.
+    inherent_range : tuple of float or None, [-]
+        5 % and 95 % point of the variability from point to point where it is not known itself;
+        `inherent_cov` is then that of the root mean square.
     """
 
     kind: ClassVar[str] = "lognormal"
@@ -158,6 +101,7 @@ class Lognormal(_Described):
     inherent_cov: float = 0.0
     vertical_scale: float | None = None
     horizontal_scale: float | None = None
+    inherent_range: tuple[float, float] | None = None
 
     @property
     def expectation(self) -> float:
@@ -171,17 +115,22 @@ class Lognormal(_Described):
 
     def _outside(self, low: float, high: float) -> float:
         centre = math.log(self.median)
-        above = _normal_cdf((centre - math.log(high)) / self.log_sd) if high > 0.0 else 1.0
-        below = _normal_cdf((math.log(low) - centre) / self.log_sd) if low > 0.0 else 0.0
+        above = normal_cdf((centre - math.log(high)) / self.log_sd) if high > 0.0 else 1.0
+        below = normal_cdf((math.log(low) - centre) / self.log_sd) if low > 0.0 else 0.0
         return below + above
 
     def _words(self, unit: str) -> str:
-        text = f"lognormal, mean {_with_unit(self.expectation, unit)}, cov {self.cov:.3g}"
-        return text + _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
+        text = f"lognormal, mean {with_unit(self.expectation, unit)}, cov {self.cov:.3g}"
+        own = _inherent_text(self.inherent_cov, self.vertical_scale, self.horizontal_scale)
+        if self.inherent_range is None:
+            return text + own
+        low, high = self.inherent_range
+        known = f"point-to-point cov {self.inherent_cov:.3g}"
+        return text + own.replace(known, f"point-to-point cov not known, {low:.3g} to {high:.3g} (90 %)")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Uniform(_Described):
+class Uniform(Described):
     """Uniform distribution.
 
     Attributes
@@ -204,11 +153,11 @@ class Uniform(_Described):
         return 1.0 - inside / (self.high - self.low)
 
     def _words(self, unit: str) -> str:
-        return f"uniform from {_figure(self.low)} to {_with_unit(self.high, unit)}"
+        return f"uniform from {figure(self.low)} to {with_unit(self.high, unit)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Triangular(_Described):
+class Triangular(Described):
     """Triangular distribution.
 
     Attributes
@@ -241,12 +190,12 @@ class Triangular(_Described):
         return 1.0 - (self.high - x) / width * ((self.high - x) / (self.high - self.mode))
 
     def _words(self, unit: str) -> str:
-        ends = f"{_figure(self.low)} to {_with_unit(self.high, unit)}"
-        return f"triangular from {ends}, most likely {_figure(self.mode)}"
+        ends = f"{figure(self.low)} to {with_unit(self.high, unit)}"
+        return f"triangular from {ends}, most likely {figure(self.mode)}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class TruncatedNormal(_Described):
+class TruncatedNormal(Described):
     """Normal distribution cut at two bounds.
 
     Attributes
@@ -275,7 +224,7 @@ class TruncatedNormal(_Described):
         """Probability of the uncut normal distribution between the bounds [-]."""
         a, b = (self.low - self.mean) / self.sd, (self.high - self.mean) / self.sd
         # The difference of the smaller tails keeps its digits far from the mean.
-        return _normal_cdf(-a) - _normal_cdf(-b) if a > 0.0 else _normal_cdf(b) - _normal_cdf(a)
+        return normal_cdf(-a) - normal_cdf(-b) if a > 0.0 else normal_cdf(b) - normal_cdf(a)
 
     def _outside(self, low: float, high: float) -> float:
         if low <= self.low and self.high <= high:
@@ -288,13 +237,13 @@ class TruncatedNormal(_Described):
 
     def _words(self, unit: str) -> str:
         return (
-            f"normal, mean {_with_unit(self.mean, unit)}, standard deviation {_with_unit(self.sd, unit)}, "
-            f"cut at {_figure(self.low)} and {_with_unit(self.high, unit)}"
+            f"normal, mean {with_unit(self.mean, unit)}, standard deviation {with_unit(self.sd, unit)}, "
+            f"cut at {figure(self.low)} and {with_unit(self.high, unit)}"
         )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Beta(_Described):
+class Beta(Described):
     """Beta distribution on a stated interval (four parameters).
 
     Attributes
@@ -328,13 +277,26 @@ class Beta(_Described):
 
     def _words(self, unit: str) -> str:
         return (
-            f"beta from {_figure(self.low)} to {_with_unit(self.high, unit)}, "
-            f"mean {_figure(self.expectation)}, shapes {self.alpha:.3g} and {self.beta:.3g}"
+            f"beta from {figure(self.low)} to {with_unit(self.high, unit)}, "
+            f"mean {figure(self.expectation)}, shapes {self.alpha:.3g} and {self.beta:.3g}"
         )
 
 
-Distribution: TypeAlias = Constant | Normal | Lognormal | Uniform | Triangular | TruncatedNormal | Beta
-BOUNDED = (Uniform, Triangular, TruncatedNormal, Beta)
+Distribution: TypeAlias = (
+    Constant
+    | Normal
+    | Lognormal
+    | Uniform
+    | Triangular
+    | TruncatedNormal
+    | Beta
+    | Gamma
+    | Gumbel
+    | Discrete
+    | Empirical
+    | Percentiles
+)
+BOUNDED = (Uniform, Triangular, TruncatedNormal, Beta, Discrete, Empirical)
 
 
 def _inherent_text(inherent_cov: float, vertical_scale: float | None, horizontal_scale: float | None) -> str:

@@ -1,4 +1,4 @@
-"""Further loads on the site, beside the one that is assessed: each adds stress below that one."""
+"""Further loads on the site, beside [load]: each adds stress below that one, and limits may look at it."""
 
 from typing import Annotated, Literal
 
@@ -7,7 +7,20 @@ from pydantic import Field
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number
-from probsoil.scenario.loads import FILL_WEIGHT, depth_of_base, side, slope_run, width_of_top
+from probsoil.scenario.loads import (
+    BERM_HEIGHT,
+    BERM_WIDTH,
+    FILL_COHESION,
+    FILL_PHI,
+    FILL_WEIGHT,
+    TRAFFIC,
+    TRAFFIC_FROM,
+    Contact,
+    depth_of_base,
+    side,
+    slope_run,
+    width_of_top,
+)
 
 _ACROSS = "across (along the width of [load])"
 
@@ -46,6 +59,12 @@ class FurtherEmbankment(_Further):
         ``embankment``.
     crest_width, side_slope : Distribution, [m], [-]
         Width of the top at the greatest height, run of the slope per unit of rise.
+    fill_phi : Distribution or None, [degree]
+        Friction angle of the fill; needed where a limit looks at its slip.
+    fill_cohesion : Distribution, [kPa]
+        Cohesion of the fill.
+    berm_width, berm_height, traffic, traffic_from
+        As of the load that is assessed.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
@@ -53,6 +72,12 @@ class FurtherEmbankment(_Further):
     shape: Literal["embankment"] = Field(description="kind of load")
     crest_width: Annotated[Distribution, width_of_top()]
     side_slope: Annotated[Distribution, slope_run()]
+    fill_phi: Annotated[Distribution | None, FILL_PHI] = None
+    fill_cohesion: Annotated[Distribution, FILL_COHESION] = Constant(value=0.0)
+    berm_width: Annotated[float | None, BERM_WIDTH] = None
+    berm_height: Annotated[float | None, BERM_HEIGHT] = None
+    traffic: Annotated[Distribution, TRAFFIC] = Constant(value=0.0)
+    traffic_from: Annotated[float | None, TRAFFIC_FROM] = None
     x: Annotated[float, _X]
 
 
@@ -68,34 +93,48 @@ class FurtherArea(_Further):
     shape: Literal["area"] = Field(description="kind of load")
 
 
-class FurtherStrip(_Further):
+class _FurtherFoundation(_Further):
+    """What every further foundation has.
+
+    Attributes
+    ----------
+    depth : Distribution, [m]
+        Depth of the base.
+    contact : str
+        ``rough`` or ``smooth``, for its own bearing.
+    """
+
+    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
+    contact: Contact = "rough"
+
+
+class FurtherStrip(_FurtherFoundation):
     """A long strip of uniform pressure, parallel to the length of the load.
 
     Attributes
     ----------
     shape : str
         ``strip``.
-    width, depth : Distribution, [m]
-        Width, and depth of the base.
+    width : Distribution, [m]
+        Width of the strip.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
     width: Annotated[Distribution, side("width of the strip")]
-    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
 
 
-class FurtherRectangle(_Further):
+class FurtherRectangle(_FurtherFoundation):
     """A rectangle of uniform pressure.
 
     Attributes
     ----------
     shape : str
         ``rectangle``.
-    width, length, depth : Distribution, [m]
-        Sides across and along, and depth of the base.
+    width, length : Distribution, [m]
+        Sides across and along.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
@@ -103,27 +142,25 @@ class FurtherRectangle(_Further):
     shape: Literal["rectangle"] = Field(description="kind of load")
     width: Annotated[Distribution, side("side of the rectangle across")]
     length: Annotated[Distribution, side("side of the rectangle along")]
-    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 
 
-class FurtherCircle(_Further):
+class FurtherCircle(_FurtherFoundation):
     """A circle of uniform pressure.
 
     Attributes
     ----------
     shape : str
         ``circle``.
-    diameter, depth : Distribution, [m]
-        Diameter, and depth of the base.
+    diameter : Distribution, [m]
+        Its diameter.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
     diameter: Annotated[Distribution, side("diameter of the circle")]
-    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 

@@ -2,9 +2,8 @@
 
 NOT_YET = "not computed in this version"
 
-LATER_DISTRIBUTIONS = ("gamma", "gumbel", "discrete", "empirical", "percentiles")
 # By the table the key stands in; "" is the top of the file.
 LATER_KEYS: dict[str, tuple[str, ...]] = {
-    "": ("evidence", "alternatives", "tests_on_offer", "investigation", "readings"),
-    "layers": ("C_alpha", "drained"),
+    "": ("alternatives", "tests_on_offer", "investigation", "readings"),
+    "layers": ("drained",),
 }

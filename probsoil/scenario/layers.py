@@ -254,7 +254,9 @@ class ClayLayer(Table):
     kh_kv : Distribution, [-]
         Horizontal over vertical permeability, for flow to vertical drains.
     C_alpha_ratio : Distribution or None, [-]
-        Secondary compression index over compression index; None for no creep.
+        Secondary compression index over compression index; None for no creep, or where given otherwise.
+    C_alpha : Distribution or None, [-]
+        Secondary compression index, drop of void ratio per tenfold time.
     strength : Strength or None
         Replaces the undrained strength that follows from M, lambda and kappa.
     initial_excess : InitialExcess or None
@@ -268,7 +270,8 @@ class ClayLayer(Table):
             "allOf": [
                 {"oneOf": [{"required": [key]} for key in keys]}
                 for keys in (("lambda", "Cc", "CR"), ("kappa", "Cs", "RR"), ("M", "phi"))
-            ]
+            ],
+            "not": {"required": ["C_alpha_ratio", "C_alpha"]},
         }
     )
 
@@ -324,6 +327,16 @@ class ClayLayer(Table):
             high=0.15,
             source="common practice",
             meaning="secondary compression index / compression index; no creep if left out",
+        ),
+    ] = None
+    C_alpha: Annotated[
+        Distribution | None,
+        Uncertain(
+            kind="number",
+            low=0.0,
+            high=2.0,
+            source="common practice",
+            meaning="secondary compression index, fall of void ratio per tenfold time; or C_alpha_ratio",
         ),
     ] = None
     strength: Strength | None = Field(

@@ -4,7 +4,7 @@ from typing import Annotated, ClassVar, Literal
 
 from pydantic import BeforeValidator, ConfigDict, Field
 
-from probsoil.scenario.base import Label, Table
+from probsoil.scenario.base import Label, Name, Table
 from probsoil.scenario.fields import Number, Ratio
 from probsoil.scenario.slips import Slip, refuse
 from probsoil.scenario.stations import pair_or_word
@@ -72,6 +72,21 @@ class _Limit(Table):
         return float(getattr(self, self.sense.replace(" ", "_")))
 
 
+class _OfLoad(_Limit):
+    """What every limit has that may look at a further load.
+
+    Attributes
+    ----------
+    load : str or None
+        Name of the further load that it looks at; None for the load that is assessed.
+    """
+
+    load: Name | None = Field(
+        default=None,
+        description="name of the further load whose own settlement or safety is limited; if left out, [load]",
+    )
+
+
 def _settled(meaning: str) -> Number:
     return Number(
         kind="length", low=0.0, high=100.0, open_low=True, source="common practice", meaning=meaning
@@ -85,7 +100,7 @@ def _safety(meaning: str) -> Number:
 ONE_TIME = ConfigDict(json_schema_extra={"oneOf": [{"required": ["at"]}, {"required": ["between"]}]})
 
 
-class SettlementLimit(_Limit):
+class SettlementLimit(_OfLoad):
     """Settlement at a time, or between two times, that should not be more than a threshold.
 
     Attributes
@@ -212,7 +227,7 @@ class AngularDistortionLimit(_Limit):
     ]
 
 
-class SlipSafetyLimit(_Limit):
+class SlipSafetyLimit(_OfLoad):
     """Factor of safety against a slip, at one time or the least over the stage ends.
 
     Attributes
@@ -234,7 +249,7 @@ class SlipSafetyLimit(_Limit):
     ]
 
 
-class BearingSafetyLimit(_Limit):
+class BearingSafetyLimit(_OfLoad):
     """Factor of safety against bearing failure, at one time or the least over the stage ends.
 
     Attributes
@@ -256,7 +271,7 @@ class BearingSafetyLimit(_Limit):
     ]
 
 
-class ConsolidationLimit(_Limit):
+class ConsolidationLimit(_OfLoad):
     """Degree of consolidation that should be reached by a time.
 
     Attributes
@@ -286,7 +301,7 @@ class ConsolidationLimit(_Limit):
     ]
 
 
-class ConsolidationTimeLimit(_Limit):
+class ConsolidationTimeLimit(_OfLoad):
     """Time by which a degree of consolidation should be reached.
 
     Attributes

@@ -13,6 +13,59 @@ FILL_WEIGHT = Uncertain(
     kind="unit weight", low=0.2, high=30.0, source="common practice", meaning="bulk unit weight of the fill"
 )
 """Field of the unit weight of fill."""
+FILL_PHI = Uncertain(
+    kind="angle", low=0.0, high=60.0, source="common practice", meaning="friction angle of the fill"
+)
+"""Field of the friction angle of fill."""
+FILL_COHESION = Uncertain(
+    kind="pressure", low=0.0, high=500.0, source="common practice", meaning="cohesion of the fill"
+)
+"""Field of the cohesion of fill."""
+BERM_WIDTH = Number(
+    kind="length",
+    low=0.0,
+    high=1000.0,
+    open_low=True,
+    source="common practice",
+    meaning="width of the flat top of a berm on each side, of the same fill and with the same side "
+    "slope; goes with berm_height",
+)
+"""Field of the width of berms."""
+BERM_HEIGHT = Number(
+    kind="length",
+    low=0.0,
+    high=100.0,
+    open_low=True,
+    source="common practice",
+    meaning="height of the berms, below the greatest height of fill; they rise with the fill until "
+    "they reach it, and sink with the fill where it is taken below it",
+)
+"""Field of the height of berms."""
+TRAFFIC = Uncertain(
+    kind="pressure",
+    low=0.0,
+    high=200.0,
+    source="common practice",
+    meaning="pressure of traffic or plant on the top; drives a slip, not the settlement",
+)
+"""Field of the pressure of traffic."""
+TRAFFIC_FROM = Number(
+    kind="time",
+    low=0.0,
+    high=1000.0,
+    open_low=True,
+    source="by definition",
+    meaning="time from which traffic counts; if left out, from the end of the stage that first "
+    "reaches the greatest height",
+)
+"""Field of the time from which traffic counts."""
+Contact = Annotated[
+    Literal["rough", "smooth"],
+    Field(
+        description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
+        "flexible tank floor); for bearing",
+    ),
+]
 Submergence = Annotated[
     bool,
     Field(description="whether ground and fill that sink below the water table lose the weight of water"),
@@ -138,64 +191,12 @@ class EmbankmentLoad(Table):
     crest_width: Annotated[Distribution, width_of_top()]
     side_slope: Annotated[Distribution, slope_run()]
     fill_unit_weight: Annotated[Distribution, FILL_WEIGHT]
-    fill_phi: Annotated[
-        Distribution,
-        Uncertain(
-            kind="angle", low=0.0, high=60.0, source="common practice", meaning="friction angle of the fill"
-        ),
-    ]
-    fill_cohesion: Annotated[
-        Distribution,
-        Uncertain(
-            kind="pressure", low=0.0, high=500.0, source="common practice", meaning="cohesion of the fill"
-        ),
-    ] = Constant(value=0.0)
-    berm_width: Annotated[
-        float | None,
-        Number(
-            kind="length",
-            low=0.0,
-            high=1000.0,
-            open_low=True,
-            source="common practice",
-            meaning="width of the flat top of a berm on each side, of the same fill and with the same side "
-            "slope; goes with berm_height",
-        ),
-    ] = None
-    berm_height: Annotated[
-        float | None,
-        Number(
-            kind="length",
-            low=0.0,
-            high=100.0,
-            open_low=True,
-            source="common practice",
-            meaning="height of the berms, below the greatest height of fill; they rise with the fill until "
-            "they reach it, and sink with the fill where it is taken below it",
-        ),
-    ] = None
-    traffic: Annotated[
-        Distribution,
-        Uncertain(
-            kind="pressure",
-            low=0.0,
-            high=200.0,
-            source="common practice",
-            meaning="pressure of traffic or plant on the top; drives a slip, not the settlement",
-        ),
-    ] = Constant(value=0.0)
-    traffic_from: Annotated[
-        float | None,
-        Number(
-            kind="time",
-            low=0.0,
-            high=1000.0,
-            open_low=True,
-            source="by definition",
-            meaning="time from which traffic counts; if left out, from the end of the stage that first "
-            "reaches the greatest height",
-        ),
-    ] = None
+    fill_phi: Annotated[Distribution, FILL_PHI]
+    fill_cohesion: Annotated[Distribution, FILL_COHESION] = Constant(value=0.0)
+    berm_width: Annotated[float | None, BERM_WIDTH] = None
+    berm_height: Annotated[float | None, BERM_HEIGHT] = None
+    traffic: Annotated[Distribution, TRAFFIC] = Constant(value=0.0)
+    traffic_from: Annotated[float | None, TRAFFIC_FROM] = None
     submergence: Submergence = True
     hold_level_until: HoldLevel = None
 
@@ -256,11 +257,7 @@ class _Foundation(Table):
             "give the net pressure, in excess of the weight of soil dug out"
         ),
     ] = Constant(value=0.0)
-    contact: Literal["rough", "smooth"] = Field(
-        default="rough",
-        description="whether the base holds the soil under it (cast concrete) or lets it slide outward (a "
-        "flexible tank floor); for bearing",
-    )
+    contact: Contact = "rough"
     fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
 

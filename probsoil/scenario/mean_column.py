@@ -62,15 +62,39 @@ def mean_stress(scenario: Any, column: MeanColumn, index: int, share: float = 0.
     excess : float, [kPa]
         Initial excess pore pressure.
     """
-    layer, water = scenario.layers[index], scenario.site.water_table.expectation
+    water = scenario.site.water_table.expectation
     top, bottom = column.depth[index : index + 2]
     depth = top + share * (bottom - top)
     wet_top = min(max(top, water), bottom)
     part = (depth - wet_top) / (bottom - wet_top) if bottom > wet_top else 0.0
     level = column.level[index] + max(part, 0.0) * (column.level[index + 1] - column.level[index])
     pore = WATER_UNIT_WEIGHT * max(depth - level, 0.0)
-    total = column.total[index] + _weight(layer, top, depth, water)
+    total = mean_total_stress(scenario, column, index, share)
     return total - pore, _excess(scenario, column, index, depth)
+
+
+def mean_total_stress(scenario: Any, column: MeanColumn, index: int, share: float) -> float:
+    """Return the total vertical stress at one depth.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As `mean_column` took it.
+    column : MeanColumn
+        Its column.
+    index : int, [-]
+        Layer.
+    share : float, [-]
+        Depth below the top of the layer as a share of its thickness.
+
+    Returns
+    -------
+    stress : float, [kPa]
+        Weight of the ground above.
+    """
+    top, bottom = column.depth[index : index + 2]
+    water = scenario.site.water_table.expectation
+    return column.total[index] + _weight(scenario.layers[index], top, top + share * (bottom - top), water)
 
 
 def _excess(scenario: Any, column: MeanColumn, index: int, depth: float) -> float:

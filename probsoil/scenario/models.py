@@ -8,6 +8,7 @@ from probsoil.scenario.base import Label, Table
 from probsoil.scenario.checks import cross_checks
 from probsoil.scenario.distributions import Constant, Distribution, Normal
 from probsoil.scenario.drains import Drains
+from probsoil.scenario.evidence import Evidence, TestErrors
 from probsoil.scenario.fields import Number, Uncertain
 from probsoil.scenario.further_loads import FurtherLoad
 from probsoil.scenario.groundwater import BaseHead
@@ -16,6 +17,7 @@ from probsoil.scenario.limits import Limit
 from probsoil.scenario.loads import Load, Stage
 from probsoil.scenario.slips import Slip, refuse
 from probsoil.scenario.stations import Station, StationLine
+from probsoil.scenario.test_results import TestResult
 
 if TYPE_CHECKING:
     from probsoil.scenario.quantities import Quantity
@@ -171,6 +173,10 @@ class Scenario(Table):
         More of them, evenly along the load.
     dependence : tuple of Dependence
         Rank correlations.
+    evidence : tuple of Evidence
+        Test results in hand.
+    test_errors : tuple of TestErrors
+        Errors of kinds of test, in place of the defaults.
     model_error : ModelError
         Error of the calculation itself.
     limits : tuple of limits
@@ -217,6 +223,12 @@ class Scenario(Table):
     dependence: Annotated[tuple[Dependence, ...], BeforeValidator(_list)] = Field(
         default=(), description="rank correlations"
     )
+    evidence: Annotated[tuple[Evidence, ...], BeforeValidator(_list)] = Field(
+        default=(), description="test results in hand, by which the parameters are updated"
+    )
+    test_errors: Annotated[tuple[TestErrors, ...], BeforeValidator(_list)] = Field(
+        default=(), description="errors of kinds of test, in place of the defaults"
+    )
     model_error: ModelError = Field(default=ModelError(), description="error of the calculation itself")
     limits: Annotated[tuple[Limit, ...], BeforeValidator(_some)] = Field(
         json_schema_extra={"minItems": 1}, description="what should not be exceeded"
@@ -233,6 +245,13 @@ class Scenario(Table):
     def all_stations(self) -> tuple[Station, ...]:
         """Stations listed, then those of the line; the first is the one of reference."""
         return self.stations + (() if self.station_line is None else self.station_line.stations())
+
+    @property
+    def test_results(self) -> tuple[TestResult, ...]:
+        """Every result of a test that is to be used, in the order of the file."""
+        return tuple(
+            result for number, one in enumerate(self.evidence, start=1) for result in one.results(number)
+        )
 
     def quantities(self) -> "tuple[Quantity, ...]":
         """Return every number that may be uncertain, fixed or not.

@@ -15,6 +15,7 @@ from probsoil.scenario.partial import partial_scenario
 from probsoil.scenario.slips import Slip
 from probsoil.scenario.syntax import syntax_fault
 from probsoil.scenario.translation import is_absolute, slips_of
+from probsoil.scenario.value_files import files_relative_to
 
 GREATEST_SIZE = 2_000_000  # bytes; a scenario is a few kilobytes
 
@@ -48,7 +49,7 @@ def parse_scenario(text: str, *, file: str = "scenario") -> Scenario:
     text : str
         Text of a scenario file.
     file : str
-        Name used in error messages.
+        Name used in error messages; files the scenario refers to are looked for beside it.
 
     Returns
     -------
@@ -64,10 +65,11 @@ def parse_scenario(text: str, *, file: str = "scenario") -> Scenario:
     data = _parsed(source, file)
     mended = mend(data)
     slips = list(mended.slips)
-    try:
-        scenario = Scenario.model_validate(mended.data)
-    except ValidationError as error:
-        slips += mended.as_written(_all_slips(error, mended.data))
+    with files_relative_to(FilePath(file).parent):
+        try:
+            scenario = Scenario.model_validate(mended.data)
+        except ValidationError as error:
+            slips += mended.as_written(_all_slips(error, mended.data))
     if slips:
         raise ScenarioError(faults_of(slips, data, source, file))
     return scenario

@@ -9,9 +9,10 @@ from pydantic import BaseModel, WithJsonSchema
 from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
-from probsoil.scenario.distribution_tables import (
+from probsoil.scenario.distribution_keys import (
     FORMS,
     GREATEST_COV,
+    OPTIONS,
     SPATIAL_DISTRIBUTIONS,
     SPATIAL_KEYS,
     form_text,
@@ -114,8 +115,9 @@ def _row(table: str, key: str, info: FieldInfo) -> ReferenceRow:
 
 
 def _allowed(info: FieldInfo) -> str:
-    if any(isinstance(part, WithJsonSchema) for part in info.metadata):
-        return "table"
+    written = next((part for part in info.metadata if isinstance(part, WithJsonSchema)), None)
+    if written is not None:
+        return "text" if (written.json_schema or {}).get("type") == "string" else "table"
     parts = [part for part in _alternatives(info.annotation) if part is not NoneType]
     return " | ".join(dict.fromkeys(_kind(part) for part in parts))
 
@@ -147,11 +149,27 @@ def _default(info: FieldInfo, unit: str = "") -> str:
     return str(info.default).lower() if isinstance(info.default, bool) else str(info.default)
 
 
+_MEANINGS = {
+    "gumbel": "of largest values; cov is sd / mean, a fraction, at most {cov:g}; mode and scale in the unit",
+    "gamma": "cov is sd / mean, a fraction, at most {cov:g}; shape is 1/cov squared, scale is mean / shape",
+    "discrete": "each value with its probability; these add up to 1",
+    "empirical": "values as found, in a list or a column of a CSV file beside the scenario, each as likely "
+    'as another; smoothing "none" (default) draws them as they are, "linear" anything between neighbours; '
+    "nothing beyond the least and the greatest",
+    "percentiles": "value not exceeded with each percentage, rising; a smooth fit of the value (default) or "
+    "its logarithm to the normal score passes through all of them; tails go on as the normal (or "
+    "lognormal) law through the two outermost, or bend towards low and high where given",
+}
+
+
 def _distribution_rows() -> Iterator[ReferenceRow]:
     for name in FORMS:
         extra = (
             f"; also {', '.join(SPATIAL_KEYS)} for soil properties" if name in SPATIAL_DISTRIBUTIONS else ""
         )
+        if name in OPTIONS:
+            extra = f"; also {', '.join(OPTIONS[name])}"
+        usual = "cov is sd / mean, a fraction, at most {cov:g}" if "cov" in form_text(name) else "bounds"
         yield ReferenceRow(
             table="distribution",
             key=f'dist = "{name}"',
@@ -160,7 +178,5 @@ def _distribution_rows() -> Iterator[ReferenceRow]:
             source="",
             uncertain=False,
             default="",
-            meaning=f"cov is sd / mean, a fraction, at most {GREATEST_COV:g}"
-            if "cov" in form_text(name)
-            else "bounds",
+            meaning=_MEANINGS.get(name, usual).format(cov=GREATEST_COV),
         )

@@ -11,17 +11,21 @@ from pydantic import BaseModel
 from pydantic.json_schema import GenerateJsonSchema, JsonSchemaValue
 from pydantic_core import core_schema
 
-from probsoil.scenario.distribution_tables import (
+from probsoil.scenario.distribution_keys import (
+    CHOICE_KEYS,
     FORMS,
     GREATEST_COV,
     GREATEST_LOG_SD,
     NUMBER_KEYS,
     SPATIAL_DISTRIBUTIONS,
     SPATIAL_KEYS,
+    entry_shape,
     own_keys,
+    settling_keys,
 )
 from probsoil.scenario.distributions import Constant, Normal
 from probsoil.scenario.fields import FIELD_MARK, RATIO_PATTERN, Range, Ratio, Uncertain
+from probsoil.scenario.list_entries import LEAST_PERCENT
 from probsoil.scenario.models import Scenario
 from probsoil.units import KINDS, NUMBER_PATTERN, Kind, has_other_units, tabulated_units
 
@@ -33,9 +37,20 @@ _NUMBER_BOUNDS: dict[str, dict[str, float]] = {
     "sd": {"exclusiveMinimum": 0.0},
     "median": {"exclusiveMinimum": 0.0},
     "alpha": {"exclusiveMinimum": 0.0},
+    "shape": {"exclusiveMinimum": 0.0},
+    "scale": {"exclusiveMinimum": 0.0},
+    "probabilities": {"exclusiveMinimum": 0.0, "maximum": 1.0},
+    "percent": {"minimum": LEAST_PERCENT, "maximum": 100.0 - LEAST_PERCENT},
     "beta": {"exclusiveMinimum": 0.0},
     "vertical_scale": {"exclusiveMinimum": 0.0},
     "horizontal_scale": {"exclusiveMinimum": 0.0},
+}
+
+_INHERENT_RANGE: dict[str, Any] = {
+    "type": "object",
+    "properties": {key: {"type": "number", "exclusiveMinimum": 0.0} for key in ("low", "high")},
+    "required": ["low", "high"],
+    "additionalProperties": False,
 }
 
 
@@ -156,13 +171,15 @@ def _one_distribution(name: str, kind: Kind, *, spatial: bool) -> dict[str, Any]
     keys = own_keys(name)
     table: dict[str, Any] = {
         "type": "object",
-        "properties": {"dist": {"const": name}, **{key: _number(key, kind) for key in keys}},
+        "properties": {"dist": {"const": name}, **{key: _entry(key, kind) for key in keys}},
         "required": ["dist"],
         "additionalProperties": False,
-        "oneOf": [_form(form, keys) for form in FORMS[name]],
+        "oneOf": [_form(form, settling_keys(name)) for form in FORMS[name]],
     }
     if spatial and name in SPATIAL_DISTRIBUTIONS:
         table["properties"] |= {key: _number(key, kind) for key in SPATIAL_KEYS}
+        if name == "lognormal":
+            table["properties"]["inherent_cov"]["anyOf"].append(_INHERENT_RANGE)
         table["dependentRequired"] = {
             "inherent_cov": ["vertical_scale"],
             "vertical_scale": ["inherent_cov"],
@@ -177,6 +194,15 @@ def _form(form: tuple[str, ...], keys: tuple[str, ...]) -> dict[str, Any]:
     if others:
         rule["not"] = {"anyOf": [{"required": [key]} for key in others]}
     return rule
+
+
+def _entry(key: str, kind: Kind) -> dict[str, Any]:
+    shape = entry_shape(key)
+    if shape == "number":
+        return _number(key, kind)
+    if shape == "list":
+        return {"type": "array", "minItems": 2, "items": _number(key, kind)}
+    return {"enum": list(CHOICE_KEYS[key])} if shape == "choice" else {"type": "string", "minLength": 1}
 
 
 def _number(key: str, kind: Kind) -> dict[str, Any]:

@@ -151,3 +151,41 @@ def local_share(distribution: Distribution, length: float | None) -> float:
     known = distribution.sd if isinstance(distribution, Normal) else distribution.log_sd
     local = inherent_variance(distribution, length)
     return local / (known**2 + local)
+
+
+def point_weight(depth: ArrayLike, *, scale: float, length: float) -> FloatArray:
+    r"""Covariance of a point with the average over the layer, over the variance at a point.
+
+    Parameters
+    ----------
+    depth : array_like, shape (n,), [m]
+        Depth of the points below the top of the layer, taken to the nearer boundary if outside.
+    scale : float, [m]
+        Vertical scale of fluctuation, above zero.
+    length : float, [m]
+        Thickness of the layer, zero or more.
+
+    Returns
+    -------
+    weight : ndarray, shape (n,), [-]
+        :math:`\gamma(z)`; its mean over the layer is the variance function.
+
+    Raises
+    ------
+    ParameterError
+        If `scale` is not above zero.
+
+    Notes
+    -----
+    The exponential correlation of `variance_function`, integrated over the layer,
+
+    .. math:: \gamma(z) = \frac{\delta}{2 H}
+              \left[2 - e^{-2 z / \delta} - e^{-2 (H - z) / \delta}\right].
+    """
+    if not scale > 0.0:
+        raise ParameterError(f"the scale of fluctuation must be above zero; got {scale:g} m")
+    z = np.clip(np.asarray(depth, dtype=np.float64), 0.0, length)
+    if length < 1e-9 * scale:
+        return np.ones_like(z)
+    ends = np.expm1(-2.0 * z / scale) + np.expm1(-2.0 * (length - z) / scale)
+    return np.asarray(-0.5 * scale / length * ends, dtype=np.float64)

@@ -4,6 +4,7 @@ from typing import get_args
 
 from pydantic import BaseModel
 
+from probsoil.scenario.evidence import Evidence, TestErrors
 from probsoil.scenario.further_loads import (
     FurtherArea,
     FurtherCircle,
@@ -26,7 +27,16 @@ from probsoil.scenario.loads import AreaLoad, CircleLoad, EmbankmentLoad, Rectan
 from probsoil.scenario.models import Dependence
 from probsoil.scenario.stations import Station
 
-LISTS = ("layers", "further_loads", "stages", "stations", "dependence", "limits")
+LISTS = (
+    "layers",
+    "further_loads",
+    "stages",
+    "stations",
+    "dependence",
+    "evidence",
+    "test_errors",
+    "limits",
+)
 # Tables of more than one class: the key that tells the classes apart, and the classes.
 CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
     "layers": ("soil", {"clay": ClayLayer, "granular": GranularLayer}),
@@ -64,7 +74,13 @@ CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
         },
     ),
 }
-_PLAIN: dict[str, type[BaseModel]] = {"stages": Stage, "stations": Station, "dependence": Dependence}
+_PLAIN: dict[str, type[BaseModel]] = {
+    "stages": Stage,
+    "stations": Station,
+    "dependence": Dependence,
+    "evidence": Evidence,
+    "test_errors": TestErrors,
+}
 
 
 def keys_of(model: type[BaseModel]) -> dict[str, str]:

@@ -176,8 +176,11 @@ class Calculation(types.ModuleType):
         (out / "results.json").write_text(json.dumps(results()))
         return types.SimpleNamespace(results=results(), folder=out)
 
-    def sheet(self, scenario: Any, at: str = "mean", station: str | None = None) -> Sheet:
+    def sheet(
+        self, scenario: Any, at: str = "mean", station: str | None = None, *, load: str | None = None
+    ) -> Sheet:
         there = {} if station is None else {"station": station}
+        there |= {} if load is None else {"load": load}
         self.calls.append({"title": scenario.title, "at": at} | there)
         self._end()
         return Sheet()

@@ -101,6 +101,18 @@ def test_check_prints_what_was_understood(desk: Path, capsys: pytest.CaptureFixt
     assert "site.mode_factor fixed at 0.8" in squeezed(capsys.readouterr().out)
 
 
+def test_check_names_what_lies_outside_the_published_ranges(
+    desk: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["check", "site.toml"]) == 0
+    assert "published" not in capsys.readouterr().out
+    text = (desk / "site.toml").read_text(encoding="utf-8")
+    (desk / "odd.toml").write_text(text.replace('soil = "clay"', 'soil = "clay"\nkh_kv = 9', 1))
+    assert main(["check", "odd.toml"]) == 0
+    said = squeezed(capsys.readouterr().out)
+    assert "Look again: crust.kh_kv: a mean kh/kv of 9 lies above what is published, 1 to 5" in said
+
+
 AREA = """
 format = 1
 title = "Yard"
@@ -319,6 +331,21 @@ def test_check_prints_stations_and_what_limits_compare(
     assert "Stations; limits look at the first unless they say otherwise" in said
     assert "east 0 12 -" in said
     assert "between the two stations for which it is greatest is more than 0.003333 (1/300)" in said
+
+
+def test_sheet_of_a_further_load(desk: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text = AREA.replace(
+        "[[stages]]",
+        '[[further_loads]]\nname = "pad"\nshape = "area"\n\n'
+        '[[stages]]\nname = "stock"\nload = "pad"\npressure = 20\nstart = 0\nend = 0.1\n\n[[stages]]',
+        1,
+    )
+    (desk / "two.toml").write_text(text)
+    assert main(["sheet", "two.toml", "--load", "pad"]) == 0
+    assert "of pad" in squeezed(capsys.readouterr().out)
+    assert main(["sheet", "two.toml", "--load", "yard"]) == 2
+    assert 'there is no further load "yard": there are pad' in squeezed(capsys.readouterr().err)
+    assert main(["sheet", "two.toml", "--load", "pad", "--station", "east"]) == 2
 
 
 def test_sheet_of_a_station(desk: Path, capsys: pytest.CaptureFixture[str]) -> None:

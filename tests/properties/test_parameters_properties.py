@@ -3,10 +3,13 @@
 import numpy as np
 from hypothesis import assume, given, settings
 from hypothesis import strategies as st
+from scipy.special import ndtr, ndtri
 
 from probsoil.errors import DependenceError, ParameterError
 from probsoil.parameters import marginal, parameter_space, variance_function
 from probsoil.scenario.distributions import Beta, Lognormal, Normal, Triangular, TruncatedNormal, Uniform
+from probsoil.scenario.listed_distributions import Discrete, Empirical, Percentiles
+from probsoil.scenario.skewed_distributions import Gamma, Gumbel
 
 REPEATABLE = settings(derandomize=True, deadline=None, max_examples=60)
 
@@ -23,6 +26,36 @@ class Given:
 
 
 @st.composite
+def percentiles(draw):
+    """Two to six percentiles, with open and closed tails."""
+    rank = sorted(draw(st.lists(st.integers(1, 99), min_size=2, max_size=6, unique=True)))
+    steps = draw(st.lists(st.floats(0.01, 1.0), min_size=len(rank), max_size=len(rank)))
+    values = tuple(float(value) for value in np.cumsum(steps))
+    low = draw(st.one_of(st.none(), st.floats(0.1, 0.9).map(lambda part: part * values[0])))
+    high = draw(st.one_of(st.none(), st.floats(1.1, 3.0).map(lambda part: part * values[-1])))
+    # a wide logarithmic tail leaves so few digits of a score that nothing could be said of it
+    narrow = np.diff(np.log(values)) / np.diff(ndtri(np.array(rank) / 100.0)) < 2.0
+    fit = draw(st.sampled_from(["value", "logarithm"])) if narrow.all() else "value"
+    return Percentiles(percent=tuple(map(float, rank)), values=values, low=low, high=high, fit=fit)
+
+
+@st.composite
+def values_with_probabilities(draw):
+    """Discrete and empirical distributions, with values that stand several times."""
+    values = sorted(draw(st.lists(st.integers(-20, 20), min_size=2, max_size=12)))
+    assume(values[0] < values[-1])
+    if draw(st.booleans()):
+        return Empirical(
+            values=tuple(map(float, values)), smoothing=draw(st.sampled_from(["none", "linear"]))
+        )
+    different = sorted(set(values))
+    weight = np.array(draw(st.lists(st.floats(0.01, 1.0), min_size=len(different), max_size=len(different))))
+    return Discrete(
+        values=tuple(map(float, different)), probabilities=tuple(float(w) for w in weight / weight.sum())
+    )
+
+
+@st.composite
 def distributions(draw):
     low = draw(st.floats(-10.0, 10.0))
     high = low + draw(positive)
@@ -35,6 +68,9 @@ def distributions(draw):
                 Uniform(low=low, high=high),
                 Triangular(low=low, mode=low + draw(share) * (high - low), high=high),
                 TruncatedNormal(mean=low + draw(share) * (high - low), sd=draw(positive), low=low, high=high),
+                Gamma(shape=draw(st.floats(0.3, 400.0)), scale=draw(positive)),
+                Gumbel(mode=low, scale=draw(positive)),
+                draw(percentiles()),
                 Beta(alpha=draw(positive), beta=draw(positive), low=low, high=high),
             ]
         )
@@ -96,3 +132,42 @@ def test_averaging_over_more_never_leaves_more_variance(first, second):
     short, long = sorted((first, second))
     left = variance_function([short, long])
     assert 0.0 < left[1] <= left[0] * (1.0 + 1e-14) <= 1.0 + 1e-14
+
+
+@REPEATABLE
+@given(percentiles(), st.floats(-4.0, 4.0), st.floats(0.0, 0.5))
+def test_a_fit_passes_through_its_percentiles_and_rises(distribution, z, step):
+    law = marginal(Given(distribution))
+    found = law.percentile(np.array(distribution.percent) / 100.0)
+    # exact, save for the rounding of a logarithm
+    np.testing.assert_allclose(
+        found, distribution.values, rtol=1e-15 if distribution.fit == "value" else 1e-14
+    )
+    before, after = (float(value) for value in law.quantile(np.array([z, z + step])))
+    assert before <= after * (1.0 + 1e-12)
+    for end, reached in ((distribution.low, before), (distribution.high, -after)):
+        assert end is None or reached >= (end if end == distribution.low else -end) * (1.0 - 1e-12) - 1e-12
+
+
+@REPEATABLE
+@given(values_with_probabilities(), st.floats(-5.0, 5.0), st.floats(0.0, 2.0))
+def test_a_value_stands_for_the_middle_of_its_ranks(distribution, z, step):
+    law = marginal(Given(distribution))
+    drawn = law.quantile(np.linspace(-8.0, 8.0, 999))
+    assert (np.diff(drawn) >= 0.0).all()
+    for value in set(distribution.values):
+        below, above = (distribution.probability_outside(*ends) for ends in ((value, 1e9), (-1e9, value)))
+        assert abs(ndtr(law.score(value)) - (below + 0.5 * (1.0 - below - above))) < 1e-12
+        if np.isfinite(law.score(value)):
+            assert abs(float(law.quantile(law.score(value))) - value) < 1e-12 * 20.0
+    if isinstance(distribution, Discrete) or distribution.smoothing == "none":
+        assert set(drawn) <= set(distribution.values)
+    assert float(law.quantile(z)) <= float(law.quantile(z + step))
+
+
+@REPEATABLE
+@given(st.one_of(distributions(), values_with_probabilities()))
+def test_mean_of_the_two_rooms_is_one(distribution):
+    """The scenario says it before, the law after averaging over a layer, which keeps it."""
+    law = marginal(Given(distribution))
+    assert abs(law.mean - distribution.expectation) <= 1e-9 * max(abs(law.mean), law.sd)

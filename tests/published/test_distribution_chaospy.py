@@ -1,4 +1,4 @@
-"""Marginals of all six kinds against chaospy, an independent library of distributions."""
+"""Marginals of all smooth kinds that it has against chaospy, an independent library of distributions."""
 
 from dataclasses import dataclass
 
@@ -9,6 +9,7 @@ from scipy.special import ndtr
 
 from probsoil.parameters import marginal
 from probsoil.scenario.distributions import Beta, Lognormal, Normal, Triangular, TruncatedNormal, Uniform
+from probsoil.scenario.skewed_distributions import Gamma, Gumbel
 
 
 @dataclass(frozen=True)
@@ -29,6 +30,8 @@ PAIRS = [
     (Uniform(low=2.0, high=5.0), chaospy.Uniform(2.0, 5.0)),
     (Triangular(low=1.0, mode=1.2, high=2.0), chaospy.Triangle(1.0, 1.2, 2.0)),
     (TruncatedNormal(mean=0.8, sd=0.3, low=0.5, high=1.2), chaospy.TruncNormal(0.5, 1.2, 0.8, 0.3)),
+    (Gamma(shape=6.25, scale=0.5), chaospy.Gamma(6.25, 0.5)),
+    (Gumbel(mode=3.0, scale=0.8), chaospy.LogWeibull(0.8, 3.0)),
     (Beta(alpha=2.0, beta=3.5, low=1.0, high=4.0), chaospy.Beta(2.0, 3.5, 1.0, 4.0)),
 ]
 

@@ -10,6 +10,7 @@ from probsoil.scenario.checks.combinations import combination_slips
 from probsoil.scenario.checks.dependence import dependence_slips
 from probsoil.scenario.checks.drains import drain_slips
 from probsoil.scenario.checks.embankment import embankment_slips
+from probsoil.scenario.checks.evidence import evidence_slips
 from probsoil.scenario.checks.excavation import excavation_slips
 from probsoil.scenario.checks.further_loads import further_load_slips
 from probsoil.scenario.checks.ground import ground_slips
@@ -47,6 +48,7 @@ def cross_checks(scenario: Any) -> list[Slip]:
         drain_slips,
         limit_slips,
         dependence_slips,
+        evidence_slips,
         station_slips,
         combination_slips,
     )

@@ -22,7 +22,12 @@ def combination_slips(scenario: Any) -> list[Slip]:
     slips : list of Slip
         Paths start at the top of the scenario.
     """
-    return [*_distortion_slips(scenario), *_pit_slips(scenario), *_level_slips(scenario)]
+    return [
+        *_distortion_slips(scenario),
+        *_pit_slips(scenario),
+        *_level_slips(scenario),
+        *_other_load_slips(scenario),
+    ]
 
 
 def _distortion_slips(scenario: Any) -> list[Slip]:
@@ -74,6 +79,36 @@ def _level_slips(scenario: Any) -> list[Slip]:
     if isinstance(line, StationLine) and line.x not in (0.0, UNREAD):
         found.append(_together(("station_line", "x"), "a station off the centreline", "hold_level_until"))
     return found
+
+
+def _other_load_slips(scenario: Any) -> list[Slip]:
+    """Refuse limits on a further load beside what is known of [load] alone, and at two places at once."""
+    named = [
+        (place, limit)
+        for place, limit in enumerate(scenario.limits)
+        if isinstance(getattr(limit, "load", None), str)
+    ]
+    others = {
+        "hold_level_until": isinstance(getattr(scenario.load, "hold_level_until", None), float),
+        "a stage that excavates": bool(_pits(scenario)),
+    }
+    found = [
+        _together(("limits", place, "load"), "a limit on a further load", other)
+        for place, _ in named
+        for other, given in others.items()
+        if given
+    ]
+    return found + [
+        Slip(
+            path=("limits", place, "station"),
+            at_key=True,
+            message="a limit looks at a further load or at a station, not at both",
+            allowed="one of the two",
+            hint="a station may stand anywhere, also under a further load",
+        )
+        for place, limit in named
+        if getattr(limit, "station", None) is not None
+    ]
 
 
 def _pits(scenario: Any) -> list[Stage]:

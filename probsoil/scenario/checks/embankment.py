@@ -7,6 +7,7 @@ from probsoil.scenario.amounts import known
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import years_text
 from probsoil.scenario.distributions import Constant
+from probsoil.scenario.further_loads import FurtherEmbankment
 from probsoil.scenario.loads import EmbankmentLoad
 from probsoil.scenario.slips import Slip
 
@@ -26,20 +27,27 @@ def embankment_slips(scenario: Any) -> list[Slip]:
     slips : list of Slip
         Paths start at the top of the scenario.
     """
-    load = scenario.load
-    if not isinstance(load, EmbankmentLoad):
-        return []
-    found = _berm_slips(load, scenario.stages) + _traffic_slips(load, scenario.horizon)
-    return [slip.below(("load",)) for slip in found]
+    slips = []
+    if isinstance(scenario.load, EmbankmentLoad):
+        slips += [slip.below(("load",)) for slip in _of_one(scenario.load, scenario, None)]
+    for position, load in enumerate(scenario.further_loads):
+        if isinstance(load, FurtherEmbankment):
+            found = _of_one(load, scenario, load.name)
+            slips += [slip.below(("further_loads", position)) for slip in found]
+    return slips
 
 
-def _berm_slips(load: Any, stages: Sequence[Any]) -> list[Slip]:
+def _of_one(load: Any, scenario: Any, name: Any) -> list[Slip]:
+    own = [stage for stage in scenario.stages if getattr(stage, "load", None) == name]
+    return _berm_slips(load, own) + _traffic_slips(load, scenario.horizon)
+
+
+def _berm_slips(load: Any, own: Sequence[Any]) -> list[Slip]:
     given = {key: getattr(load, key) for key in ("berm_width", "berm_height")}
     missing = [key for key, value in given.items() if value is None]
     if len(missing) == 1:
         message = f"a berm needs both its width and its height; {missing[0]} is missing"
         return [Slip(path=(), message=message, allowed="berm_width and berm_height", wanting=(missing[0],))]
-    own = [stage for stage in stages if getattr(stage, "load", None) is None]
     raised = [getattr(stage, "height", UNREAD) for stage in own if getattr(stage, "excavate", None) is None]
     heights = [one for one in map(known, raised) if one is not None]
     if not isinstance(load.berm_height, float) or len(heights) < len(raised):

@@ -10,6 +10,8 @@ from probsoil.scenario.mean_column import RELOADING, VIRGIN, mean_slope
 from probsoil.scenario.slips import Slip
 from probsoil.scenario.undrained_modulus import UndrainedModulus
 
+CREEP = {"C_alpha_ratio": "C_alpha_ratio", "C_alpha": "C_alpha"}
+
 
 def ground_slips(scenario: Any) -> list[Slip]:
     """Return what is wrong with the layers seen together and each in itself.
@@ -40,6 +42,8 @@ def _clay_slips(layer: Any) -> list[Slip]:
     slips = exactly_one(layer, VIRGIN, "virgin compression")
     slips += exactly_one(layer, RELOADING, "unloading and reloading")
     slips += exactly_one(layer, {"M": "M", "phi": "phi"}, "critical-state friction")
+    if layer.C_alpha_ratio is not None and layer.C_alpha is not None:
+        slips += exactly_one(layer, CREEP, "secondary compression")
     if isinstance(layer.preconsolidation, Preconsolidation):
         slips += _preconsolidation_slips(layer.preconsolidation)
     if isinstance(layer.permeability, Permeability):

@@ -4,6 +4,13 @@ from typing import Any
 
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, years_text
+from probsoil.scenario.further_loads import (
+    FurtherArea,
+    FurtherCircle,
+    FurtherEmbankment,
+    FurtherRectangle,
+    FurtherStrip,
+)
 from probsoil.scenario.limits import (
     ON_SETTLEMENT,
     AddedFillLimit,
@@ -14,6 +21,9 @@ from probsoil.scenario.limits import (
 )
 from probsoil.scenario.loads import FOUNDATIONS, AreaLoad, EmbankmentLoad
 from probsoil.scenario.slips import Slip
+
+_AREAS = (AreaLoad, FurtherArea)
+_FOUNDATIONS = (*FOUNDATIONS, FurtherStrip, FurtherRectangle, FurtherCircle)
 
 
 def limit_slips(scenario: Any) -> list[Slip]:
@@ -35,23 +45,33 @@ def limit_slips(scenario: Any) -> list[Slip]:
         if isinstance(limit, ON_SETTLEMENT):
             found += exactly_one(limit, {"at": "at", "between": "between"}, "the time of the settlement")
             found += _reversed(limit)
-        found += _out_of_place(limit, scenario.load)
+        found += _out_of_place(limit, _load_of(limit, scenario))
         found += _before_loading(limit, scenario.stages)
         found += _beyond_horizon(limit, scenario.horizon)
         slips += [slip.below(("limits", position)) for slip in found]
     return slips
 
 
+def _load_of(limit: Any, scenario: Any) -> Any:
+    """Return the load that a limit looks at; None where there is none of that name."""
+    name = getattr(limit, "load", None)
+    if name is None:
+        return scenario.load
+    return next((load for load in scenario.further_loads if getattr(load, "name", UNREAD) == name), None)
+
+
 def _out_of_place(limit: Any, load: Any) -> list[Slip]:
     """Refuse a way of failing, or a volume of fill, that the load does not have."""
     if isinstance(limit, AddedFillLimit):
         return _no_added_fill(load)
-    if isinstance(limit, SlipSafetyLimit) and isinstance(load, AreaLoad):
+    if isinstance(limit, SlipSafetyLimit) and isinstance(load, _AREAS):
         message, shapes = "a slip needs the edge of an embankment; an area load has none", '"embankment"'
-    elif isinstance(limit, SlipSafetyLimit) and isinstance(load, FOUNDATIONS):
+    elif isinstance(limit, SlipSafetyLimit) and isinstance(load, _FOUNDATIONS):
         message = "slip circles are for an embankment; a foundation fails in bearing"
         return [Slip(path=("quantity",), message=message, allowed='quantity = "bearing_safety"')]
-    elif isinstance(limit, BearingSafetyLimit) and isinstance(load, AreaLoad | EmbankmentLoad):
+    elif isinstance(limit, BearingSafetyLimit) and isinstance(
+        load, (*_AREAS, EmbankmentLoad, FurtherEmbankment)
+    ):
         message = f"bearing failure is for a foundation; the load is of shape {load.shape}"
         shapes = '"strip", "rectangle" or "circle"'
     else:

@@ -109,3 +109,18 @@ def test_rounding_up_is_told_before_the_work_begins(
     with pytest.raises(UnfitFolderError, match="no finished chunks to go on from"):
         assess(scenario, out=tmp_path, realisations=20_000, resume=True)
     assert "drawn" not in caplog.text
+
+
+def test_long_lists_of_values_are_told_apart_by_a_digest() -> None:
+    text = starter_text("embankment")
+    old = 'kappa = { dist = "lognormal", mean = 0.05, cov = 0.20 }'
+    assert old in text
+
+    def stated(values: list[float]) -> object:
+        new = f'kappa = {{ dist = "empirical", values = {values} }}'
+        return stated_values(parse_scenario(text.replace(old, new)))['layer "soft clay": kappa.values']
+
+    assert stated([0.04, 0.05]) == (0.04, 0.05)
+    many = [0.04 + 0.001 * i for i in range(20)]
+    assert str(stated(many)).startswith("20 values of digest ")
+    assert stated(many) != stated([*many[:-1], 0.0591])

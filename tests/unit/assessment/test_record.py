@@ -1,6 +1,6 @@
 """Summaries where some realisations have no finite value: never better than the truth."""
 
-from dataclasses import fields
+from dataclasses import fields, replace
 
 import numpy as np
 import pytest
@@ -11,7 +11,7 @@ from probsoil.assessment.discretisation import DiscretisationError
 from probsoil.assessment.evaluation import Study, prepare
 from probsoil.assessment.record import CampaignSample, driver_rows, limit_rows, settlement_record, slip_rows
 from probsoil.probability import exceedance
-from probsoil.scenario import Scenario
+from probsoil.scenario import Constant, Scenario
 from probsoil.sensitivity import driver_sums, drivers
 
 N = 1000
@@ -191,6 +191,15 @@ def warned(study: Study, **arrays: np.ndarray) -> dict[str, list[dict[str, objec
     for row in warning_rows(study, sample_of(study, **arrays), error):
         found.setdefault(str(row["code"]), []).append(row)
     return found
+
+
+def test_what_lies_outside_the_published_ranges_is_warned_of(study: Study) -> None:
+    assert "published_range" not in warned(study)
+    clay = study.scenario.layers[0].model_copy(update={"kh_kv": Constant(value=9.0)})
+    odd = study.scenario.model_copy(update={"layers": (clay, *study.scenario.layers[1:])})
+    (row,) = warned(replace(study, scenario=odd))["published_range"]
+    assert "kh_kv: a mean kh/kv of 9 lies above what is published" in str(row["message"])
+    assert row["share"] is None
 
 
 def test_settlement_judged_after_a_slip_is_warned_of(study: Study) -> None:

@@ -155,6 +155,7 @@ def scenarios() -> dict[str, Scenario]:
         "distorting footing": distorting("footing"),
         "distorting tank": distorting("tank"),
     }
+    texts["creep index given"] = varied(RATIOS).replace("C_alpha_ratio = 0.05", "C_alpha = 0.03")
     held = 'shape = "embankment"\nhold_level_until = 1.5'
     texts["level held"] = varied(RATIOS).replace('shape = "embankment"', held)
     texts["excavation"] = (

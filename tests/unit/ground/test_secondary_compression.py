@@ -175,3 +175,13 @@ def test_reduction_by_hand(overconsolidation, expected):
 def test_arguments_out_of_range_are_refused(arguments, message):
     with pytest.raises(ParameterError, match=message):
         creep_reduction(*arguments)
+
+
+def test_an_index_given_outright_is_the_ratio_times_the_compression_index():
+    """To rounding: the ratio is made from it and made into it again."""
+    index = RATIO * LAMBDA * np.log(10.0)
+    stages = [stage("fill", 0, 0.2, pressure=50), stage("more", 5, 5.2, pressure=5)]
+    _, _, by_ratio = response(case(stages=stages))
+    _, _, outright = response(case(ratio=None, stages=stages, C_alpha=index))
+    assert by_ratio[-1] > 0.0
+    np.testing.assert_allclose(outright, by_ratio, rtol=1e-12)

@@ -54,6 +54,18 @@ ACCEPTED = [
     ("M = 1.1", 'M = { dist = "beta", alpha = 2, beta = 2, low = 1, high = 1.2 }'),
     ("M = 1.1", 'M = { dist = "triangular", low = 1, mode = 1.1, high = 1.2 }'),
     ("M = 1.1", 'M = { dist = "truncated_normal", mean = 1.1, sd = 0.1, low = 1, high = 1.2 }'),
+    ("M = 1.1", 'M = { dist = "gamma", mean = 1.1, cov = 0.05 }'),
+    ("M = 1.1", 'M = { dist = "gumbel", mode = 1.1, scale = 0.05 }'),
+    (
+        "thickness = 1.5",
+        'thickness = { dist = "discrete", values = ["5 ft", 2], probabilities = [0.3, 0.7] }',
+    ),
+    ("M = 1.1", 'M = { dist = "empirical", values = [1.0, 1.2, 1.1], smoothing = "linear" }'),
+    (
+        "M = 1.1",
+        'M = { dist = "percentiles", percent = [10, 90], values = [1, 1.2], low = 0.9, fit = "value" }',
+    ),
+    ("kappa = 0.02", "kappa = 0.02\nC_alpha = 0.01"),
     ("seed = 3", "seed = 0\nrealisations = 50\ndraws = 'sobol'\ncurrency = 'NOK'"),
 ]
 
@@ -92,7 +104,12 @@ FLAGGED = [
     ("mean = 0.12, cov = 0.20", "mean = 0.12, cov = 0.2, sd = 0.1"),
     ("mean = 0.12, cov = 0.20", "mean = 0.12, cov = 0.2, inherent_cov = 0.1"),
     ("mean = 7.0, sd = 0.6", "mean = 7.0, sd = 0.6, inherent_cov = 0.1, vertical_scale = 1"),
-    ('dist = "lognormal", mean = 0.12', 'dist = "gamma", mean = 0.12'),
+    ('dist = "lognormal", mean = 0.12', 'dist = "weibull", mean = 0.12'),
+    ("M = 1.1", 'M = { dist = "discrete", values = [1, 1.2], probabilities = [0, 1] }'),
+    ("M = 1.1", 'M = { dist = "empirical", values = [1.1] }'),
+    ("M = 1.1", 'M = { dist = "empirical", values = [1, 1.2], smoothing = "kernel" }'),
+    ("M = 1.1", 'M = { dist = "percentiles", percent = [5, 100], values = [1, 1.2] }'),
+    ("kappa = 0.02", "kappa = 0.02\nC_alpha = 0.01\nC_alpha_ratio = 0.04"),
     ("M = 1.1", "M = 1.1\nphi = 27"),
     ("M = 1.1\n", ""),
     ("{ stress = 90 }", "{ stress = 90, ocr = 2 }"),

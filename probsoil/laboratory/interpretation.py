@@ -1,0 +1,389 @@
+"""Interpretation of all tests of a site: each by itself, then what only several together can give."""
+
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import dataclass, field, replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from probsoil.errors import ParameterError
+from probsoil.laboratory.cone import ConeResult, interpreted_cone
+from probsoil.laboratory.ground_column import GroundColumn, assumed_column, scenario_column
+from probsoil.laboratory.observations import Observation, evidence_text, observation
+from probsoil.laboratory.oedometer import OedometerResult, interpreted_oedometer
+from probsoil.laboratory.outliers import flagged
+from probsoil.laboratory.regression import Estimate
+from probsoil.laboratory.sheets import (
+    ConeSheet,
+    OedometerSheet,
+    Place,
+    SiteSheets,
+    TriaxialSheet,
+    VaneSheet,
+)
+from probsoil.laboratory.strength_ratio import StrengthRatio, strength_ratio
+from probsoil.laboratory.triaxial import FailureBy, TriaxialResult, interpreted_triaxial, pooled_slope
+from probsoil.laboratory.vane import VaneResult, interpreted_vane
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from probsoil.scenario import Scenario
+
+Sheet = OedometerSheet | TriaxialSheet | VaneSheet | ConeSheet
+Result = OedometerResult | TriaxialResult | VaneResult | ConeResult
+_FAILURES: tuple[FailureBy, ...] = ("stress ratio", "peak deviator")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Choices:
+    """What the user says of the tests and the ground.
+
+    Attributes
+    ----------
+    vane_corrected : bool or None
+        Whether vane strengths already carry a correction; None to take each sheet's word.
+    failure : str
+        Definition of failure at which M is taken: ``stress ratio`` (the greatest) or ``peak deviator``.
+    unit_weight : float or None, [kN/m3]
+        Bulk unit weight of the ground where no layers are given.
+    water_table : float, [m]
+        Depth of the water table that goes with it.
+    """
+
+    vane_corrected: bool | None = None
+    failure: FailureBy = "stress ratio"
+    unit_weight: float | None = None
+    water_table: float = 0.0
+
+    def __post_init__(self) -> None:
+        if self.failure not in _FAILURES:
+            raise ParameterError(f"failure is one of {', '.join(_FAILURES)}; got '{self.failure}'")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PooledFriction:
+    """M of the triaxial tests of one layer together.
+
+    Attributes
+    ----------
+    layer : str
+        Layer; empty where not known.
+    failure : str
+        Definition of failure.
+    tests : int, [-]
+        Number of tests.
+    slope : Estimate, [-]
+        M by regression of q on p' through the origin.
+    scatter : float, [-]
+        Coefficient of variation of a test about it.
+    """
+
+    layer: str
+    failure: FailureBy
+    tests: int
+    slope: Estimate
+    scatter: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Interpretation:
+    """All tests of a site, interpreted.
+
+    Attributes
+    ----------
+    column : GroundColumn or None
+        Layers and stresses in situ; None where not known.
+    choices : Choices
+        What the user said.
+    oedometers, triaxials, vanes, cones : tuple of results
+        Test by test, in the order read.
+    friction : tuple of PooledFriction
+        By layer and definition of failure.
+    strength_ratios : tuple of StrengthRatio
+        By layer.
+    observations : tuple of Observation
+        The evidence, flagged.
+    remarks : tuple of str
+        What the reader and the interpretation have to say, test by test.
+    """
+
+    column: GroundColumn | None
+    choices: Choices
+    oedometers: tuple[OedometerResult, ...] = ()
+    triaxials: tuple[TriaxialResult, ...] = ()
+    vanes: tuple[VaneResult, ...] = ()
+    cones: tuple[ConeResult, ...] = ()
+    friction: tuple[PooledFriction, ...] = ()
+    strength_ratios: tuple[StrengthRatio, ...] = ()
+    observations: tuple[Observation, ...] = ()
+    remarks: tuple[str, ...] = field(default=())
+
+    def to_frame(self) -> "pd.DataFrame":
+        """Return the evidence.
+
+        Returns
+        -------
+        frame : DataFrame
+            One row per observed number, columns as in the evidence table.
+        """
+        import pandas as pd
+
+        from probsoil.laboratory.observations import EVIDENCE_COLUMNS
+
+        rows = [{name: getattr(one, name) for name in EVIDENCE_COLUMNS} for one in self.observations]
+        return pd.DataFrame(rows, columns=list(EVIDENCE_COLUMNS))
+
+    def evidence(self) -> str:
+        """Return the evidence as the table that a scenario may name.
+
+        Returns
+        -------
+        text : str
+            Comma-separated values.
+        """
+        return evidence_text(self.observations)
+
+
+def interpret(
+    paths: Iterable[str | Path],
+    *,
+    layers: "Scenario | str | Path | None" = None,
+    keep_good_rows: bool = False,
+    choices: Choices | None = None,
+) -> Interpretation:
+    """Read test sheets and interpret them.
+
+    Parameters
+    ----------
+    paths : iterable of str or Path
+        Files of test sheets.
+    layers : Scenario, str, Path or None
+        Scenario, or its file, whose layers the tests are put into.
+    keep_good_rows : bool
+        Whether to go on with the good rows of a file with mistakes.
+    choices : Choices or None
+        What the user says of tests and ground; None for the usual.
+
+    Returns
+    -------
+    interpretation : Interpretation
+        Every result with its standard error; a remark for what could not be interpreted.
+    """
+    from probsoil.laboratory.reading import read_sheets
+    from probsoil.scenario import read_scenario
+
+    scenario = read_scenario(layers) if isinstance(layers, str | Path) else layers
+    sheets = read_sheets([Path(one) for one in paths], keep_good_rows=keep_good_rows)
+    return interpreted_site(sheets, scenario, choices)
+
+
+def interpreted_site(
+    sheets: SiteSheets, scenario: "Scenario | None" = None, choices: Choices | None = None
+) -> Interpretation:
+    """Interpret the sheets of a site.
+
+    Parameters
+    ----------
+    sheets : SiteSheets
+        As read.
+    scenario : Scenario or None
+        Whose layers the tests are put into.
+    choices : Choices or None
+        What the user says of tests and ground; None for the usual.
+
+    Returns
+    -------
+    interpretation : Interpretation
+        All tests.
+    """
+    said = Choices() if choices is None else choices
+    column = _column(scenario, said)
+
+    def stress(sheet: Sheet) -> float | None:
+        return None if column is None else column.stress_at(sheet.place.depth)
+
+    oedometers = tuple(interpreted_oedometer(one, stress(one)) for one in sheets.oedometers)
+    triaxials = tuple(
+        interpreted_triaxial(one, stress(one), failure=said.failure) for one in sheets.triaxials
+    )
+    vanes = tuple(interpreted_vane(one, corrected=said.vane_corrected) for one in sheets.vanes)
+    cones = tuple(interpreted_cone(one, column) for one in sheets.cones)
+    layers = _by_layer(oedometers, triaxials, column)
+    ratios = tuple(_ratio(name, *tests, column) for name, tests in layers.items() if tests[1])
+    results: list[Result] = [*oedometers, *triaxials, *vanes, *cones]
+    singles = [
+        replace(row, layer=row.layer or ground_of(row.depth, one.sheet.place, column))
+        for one in results
+        for row in one.observations()
+    ]
+    singles += [row for ratio in ratios for row in _ratio_rows(ratio, triaxials)]
+    of_clay, aside = _of_clay(singles, column)
+    grounds = [one.layer for one in of_clay]
+    return Interpretation(
+        column=column,
+        choices=said,
+        oedometers=oedometers,
+        triaxials=triaxials,
+        vanes=vanes,
+        cones=cones,
+        friction=_friction(layers),
+        strength_ratios=ratios,
+        observations=flagged(_told_where(of_clay, column), grounds),
+        remarks=(*sheets.remarks, *_remarks(results, ratios), *aside),
+    )
+
+
+def _column(scenario: "Scenario | None", choices: Choices) -> GroundColumn | None:
+    if scenario is not None:
+        return scenario_column(scenario)
+    if choices.unit_weight is None:
+        return None
+    return assumed_column(choices.unit_weight, choices.water_table)
+
+
+def ground_of(depth: float, place: Place, column: GroundColumn | None) -> str:
+    """Return the ground that a number belongs to.
+
+    Parameters
+    ----------
+    depth : float, [m]
+        Of the number.
+    place : Place
+        Of the sheet.
+    column : GroundColumn or None
+        Layers of the scenario.
+
+    Returns
+    -------
+    layer : str
+        Of a specimen the layer that bears the name its file gives, if there is one; else the one at the
+        depth; without layers the name the file gives; empty where not known.
+    """
+    if column is None or not column.layers:
+        return place.stratum or "" if depth == place.depth else ""
+    named = depth == place.depth and any(name == place.stratum for name, _, _ in column.layers)
+    return place.stratum if named and place.stratum else column.layer_at(depth)
+
+
+_Tests = tuple[list[OedometerResult], list[TriaxialResult]]
+
+
+def _by_layer(
+    oedometers: Sequence[OedometerResult], triaxials: Sequence[TriaxialResult], column: GroundColumn | None
+) -> dict[str, _Tests]:
+    """Sort specimens by layer, or by the name their file gives the ground where layers are not known."""
+    found: dict[str, _Tests] = {}
+    specimens: list[OedometerResult | TriaxialResult] = [*oedometers, *triaxials]
+    for one in specimens:
+        place = one.sheet.place
+        name = ground_of(place.depth, place, column)
+        tests = found.setdefault(name, ([], []))
+        if isinstance(one, OedometerResult):
+            tests[0].append(one)
+        else:
+            tests[1].append(one)
+    return found
+
+
+def _friction(layers: dict[str, _Tests]) -> tuple[PooledFriction, ...]:
+    pooled = []
+    for name, (_, triaxials) in layers.items():
+        for failure in _FAILURES:
+            found = pooled_slope(tuple(triaxials), failure)
+            if found is not None:
+                number = sum(one.slope(one.greatest_ratio) is not None for one in triaxials)
+                pooled.append(
+                    PooledFriction(
+                        layer=name,
+                        failure=failure,
+                        tests=number,
+                        slope=found[0],
+                        scatter=found[1],
+                    )
+                )
+    return tuple(pooled)
+
+
+def _ratio(
+    name: str,
+    oedometers: list[OedometerResult],
+    triaxials: list[TriaxialResult],
+    column: GroundColumn | None,
+) -> StrengthRatio:
+    return strength_ratio(name, triaxials, oedometers, _preconsolidation(oedometers, column))
+
+
+def _preconsolidation(
+    oedometers: list[OedometerResult], column: GroundColumn | None
+) -> Callable[[float], float] | None:
+    """Return preconsolidation stress with depth: one overconsolidation ratio, or one stress, for a layer."""
+    known = [one for one in oedometers if one.preconsolidation is not None]
+    if not known:
+        return None
+    stresses = np.log([one.preconsolidation.value for one in known if one.preconsolidation is not None])
+    in_situ = [one.in_situ_stress for one in known]
+    if column is not None and all(one is not None for one in in_situ):
+        ocr = float(np.exp(np.mean(stresses - np.log([one for one in in_situ if one is not None]))))
+        return lambda depth: ocr * column.effective_stress(depth)
+    level = float(np.exp(np.mean(stresses)))
+    return lambda depth: level  # noqa: ARG005 - the same at every depth
+
+
+def _ratio_rows(ratio: StrengthRatio, triaxials: Sequence[TriaxialResult]) -> list[Observation]:
+    """Return what the tests of a layer give together as rows at their mean depth."""
+    depths = [one.sheet.place.depth for one in triaxials if one.sheet.test in ratio.tests]
+    if not depths:
+        return []
+    place = Place(hole="", depth=float(np.mean(depths)))
+    name = f"{len(depths)} tests together"
+    rows = []
+    for parameter, found in (("su_ratio", ratio.ratio), ("Lambda", ratio.exponent)):
+        if found is not None and found.value > 0.0:
+            row = observation(
+                "triaxial",
+                (name, place),
+                parameter,
+                found.value,
+                found.standard_error,
+                flag="consolidated under equal stresses, which gives more than as in the ground"
+                if ratio.isotropic and parameter == "su_ratio"
+                else "",
+            )
+            rows.append(replace(row, layer=ratio.layer))
+    return rows
+
+
+def _of_clay(rows: list[Observation], column: GroundColumn | None) -> tuple[list[Observation], list[str]]:
+    """Leave out of the evidence what was observed in ground that the models have no such number for."""
+    granular = () if column is None else column.granular
+    counts: dict[tuple[str, str], int] = {}
+    for one in rows:
+        if one.layer in granular:
+            counts[one.test, one.layer] = counts.get((one.test, one.layer), 0) + 1
+    remarks = [
+        f"{test}: what it gave in {layer}, which is no clay, is shown but is no evidence (rows: {count})"
+        for (test, layer), count in counts.items()
+    ]
+    return [one for one in rows if one.layer not in granular], remarks
+
+
+def _told_where(rows: list[Observation], column: GroundColumn | None) -> list[Observation]:
+    """Flag numbers from where the scenario has no layer."""
+    if column is None or not column.layers:
+        return [replace(one, layer="") for one in rows]
+    lost = "no layer of the scenario at this depth"
+    return [
+        one if one.layer else replace(one, flag="; ".join(part for part in (one.flag, lost) if part))
+        for one in rows
+    ]
+
+
+def _remarks(
+    results: Sequence[Result],
+    ratios: Sequence[StrengthRatio],
+) -> list[str]:
+    told = [f"{one.sheet.origin}: {one.sheet.test}: {words}" for one in results for words in one.remarks]
+    told += [f"{ratio.layer or 'triaxial tests'}: {words}" for ratio in ratios for words in ratio.remarks]
+    return told
