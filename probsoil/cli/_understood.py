@@ -63,7 +63,7 @@ def _print_layers(console: "Console", scenario: "Scenario", space: "ParameterSpa
 
 
 def _print_stages(console: "Console", scenario: "Scenario") -> None:
-    from probsoil.assessment.description import uncertain_works
+    from probsoil.assessment.works_text import uncertain_works
     from probsoil.ground.foundation import foundation_of
     from probsoil.scenario.amounts import text_of
 
@@ -89,7 +89,7 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
 
 
 def _print_further_loads(console: "Console", scenario: "Scenario") -> None:
-    from probsoil.assessment.description import further_load_text, uncertain_works
+    from probsoil.assessment.works_text import further_load_text, uncertain_works
     from probsoil.ground.site_forms import stage_forms
     from probsoil.ground.site_layout import further_load_forms
 

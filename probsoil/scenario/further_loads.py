@@ -7,6 +7,7 @@ from pydantic import Field
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number
+from probsoil.scenario.load_fields import depth_of_base, side, slope_run, width_of_top
 from probsoil.scenario.loads import (
     BERM_HEIGHT,
     BERM_WIDTH,
@@ -16,10 +17,6 @@ from probsoil.scenario.loads import (
     TRAFFIC,
     TRAFFIC_FROM,
     Contact,
-    depth_of_base,
-    side,
-    slope_run,
-    width_of_top,
 )
 
 _ACROSS = "across (along the width of [load])"
