@@ -11,6 +11,7 @@ Kind = Literal[
     "permeability",
     "coefficient of consolidation",
     "discharge capacity",
+    "volume per metre",
     "angle",
     "number",
 ]
@@ -24,6 +25,7 @@ BASE_UNITS: dict[Kind, str] = {
     "permeability": "m/s",
     "coefficient of consolidation": "m2/year",
     "discharge capacity": "m3/year",
+    "volume per metre": "m3/m",
     "angle": "degree",
     "number": "-",
 }
@@ -112,6 +114,12 @@ TABLE: dict[Kind, dict[str, float]] = {
     "permeability": _rates(("m", "mm", "cm", "um", "ft", "in"), 1, "s"),
     "coefficient of consolidation": _rates(("m", "mm", "cm", "ft", "in"), 2, "year"),
     "discharge capacity": _rates(("m", "mm", "cm", "ft"), 3, "year"),
+    "volume per metre": {
+        "m3/m": 1.0,
+        "yd3/yd": (3.0 * _FOOT) ** 2,
+        "ft3/ft": _FOOT**2,
+        "yd3/ft": 27.0 * _FOOT**2,
+    },
     "angle": {
         "degree": 1.0,
         "degrees": 1.0,
@@ -132,6 +140,7 @@ USUAL: dict[Kind, tuple[str, ...]] = {
     "permeability": ("m/s", "cm/s", "mm/s", "m/day", "m/year", "ft/day"),
     "coefficient of consolidation": ("m2/year", "m2/s", "cm2/s", "mm2/s", "m2/day", "ft2/day"),
     "discharge capacity": ("m3/year", "m3/s", "cm3/s", "m3/day", "ft3/year"),
+    "volume per metre": ("m3/m", "yd3/ft", "ft3/ft"),
     "angle": ("degrees", "rad"),
     "number": ("%",),
 }
@@ -151,4 +160,5 @@ PINT_BASES: dict[Kind, str] = {
     "permeability": "meter / second",
     "coefficient of consolidation": "meter ** 2 / julian_year",
     "discharge capacity": "meter ** 3 / julian_year",
+    "volume per metre": "meter ** 2",
 }

@@ -3,7 +3,7 @@
 Usual engineering units are in a table of exact factors; anything else of the right
 dimension is left to `pint`, which is imported only then because it is slow to load.
 Base units: m, kPa, kN/m3, year of 365.25 days, m/s (permeability), m2/year
-(coefficient of consolidation), m3/year (discharge capacity), degree.
+(coefficient of consolidation), m3/year (discharge capacity), m3/m (volume per metre run), degree.
 """
 
 import math

@@ -87,6 +87,12 @@ def _flag_rows(sample: CampaignSample) -> list[Row]:
             "ground at some depth: it would be lifted or quick; the effective stress is taken as 1 kPa there",
             sample.uplifted,
         ),
+        (
+            "overdrawn",
+            "realisations in which a stage was to take off more than the uncertain amounts before it had "
+            "placed; it took off what was there",
+            sample.overdrawn,
+        ),
     ]
     return [
         _row(code, message, float(flag.mean()), REALISATIONS) for code, message, flag in flags if flag.any()

@@ -54,18 +54,29 @@ def _one(study: Study, state: GroundState, position: FloatArray, check: int) -> 
     """Return the circle of one realisation; none where it did not converge."""
     if not state.response.converged[0]:
         return None
-    circle = study.site.families[check].circles
-    chosen = int(state.response.critical_circle[0, check])
     error = study.space.at("median").get("model_error.stability", 1.0)
     row = dict(zip(POSITION, position[0, check].tolist(), strict=True))
+    if not np.isfinite(row["radius"]):  # no fill is left
+        return None
+    exit_y, entry_y = _ends(study, state, row, check)
     return {
         "factor": finite(error * state.response.slip[0, check]),
         "centre": [row["centre_x"], row["centre_y"]],
         "radius": row["radius"],
         "touch_depth": row["touch"],
-        "exit": [row["exit_x"], float(circle.exit_y[chosen])],
-        "entry": [row["entry_x"], float(circle.entry_y[chosen])],
+        "exit": [row["exit_x"], exit_y],
+        "entry": [row["entry_x"], entry_y],
     }
+
+
+def _ends(study: Study, state: GroundState, row: dict[str, float], check: int) -> tuple[float, float]:
+    """Return how high above ground level the circle of one realisation leaves and enters, [m]."""
+    if study.site.families:
+        circle, chosen = study.site.families[check].circles, int(state.response.critical_circle[0, check])
+        return float(circle.exit_y[chosen]), float(circle.entry_y[chosen])
+    aside = np.array([row["exit_x"], row["entry_x"]]) - row["centre_x"]
+    level = row["centre_y"] - np.sqrt(np.maximum(row["radius"] ** 2 - aside**2, 0.0))
+    return float(level[0]), float(level[1])
 
 
 def _others(found: FloatArray) -> list[Row]:

@@ -5,14 +5,11 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 
 from probsoil.assessment.evaluation import Study
+from probsoil.assessment.works_text import further_load_text, load_text, stage_rows, uncertain_works
 from probsoil.ground.applied_load import stress_at
-from probsoil.ground.further_load import FurtherLoadForm
 from probsoil.ground.response import GroundState
 from probsoil.ground.site_model import SiteModel
 from probsoil.scenario import Scenario
-from probsoil.scenario.checks.common import years_text
-from probsoil.scenario.distributions import Constant
-from probsoil.scenario.loads import EmbankmentLoad
 
 Row = dict[str, object]
 
@@ -40,11 +37,12 @@ def ground_record(study: Study, at_means: GroundState) -> Row:
         "base": scenario.site.base,
         "base_head": None if base_head is None else base_head.distribution.describe(base_head.unit),
         "layers": _layers(scenario),
-        "load": {"shape": scenario.load.shape, "text": _load_text(scenario, study.site)},
+        "load": {"shape": scenario.load.shape, "text": load_text(scenario, study.site)},
         "further_loads": [
-            {"name": one.name, "text": further_load_text(one)} for one in study.site.further_loads
+            {"name": one.name, "text": further_load_text(one) + uncertain_works(scenario, one.address)}
+            for one in study.site.further_loads
         ],
-        "stages": stage_rows(study.site),
+        "stages": stage_rows(scenario, study.site),
         "drains": None if scenario.drains is None else scenario.drains.describe(),
         "profile": _profile(study.site, at_means),
     }
@@ -69,101 +67,6 @@ def _layers(scenario: Scenario) -> list[Row]:
             {"name": layer.name, "soil": layer.soil, "top": top, "bottom": bottom, "properties": properties}
         )
         top = bottom
-    return rows
-
-
-def _load_text(scenario: Scenario, site: SiteModel) -> str:
-    if isinstance(scenario.load, EmbankmentLoad) and site.embankment is not None:
-        shape = site.embankment
-        return (
-            f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
-            f"side slopes {shape.side_slope:g} horizontal to 1 vertical, base {shape.base_width:g} m wide"
-            + _beside(scenario.load)
-            + _held(site)
-        )
-    return "load over a wide area" + _held(site) if site.foundation is None else site.foundation.title
-
-
-def further_load_text(load: FurtherLoadForm) -> str:
-    """Return a further load in words.
-
-    Parameters
-    ----------
-    load : FurtherLoadForm
-        Shape and place.
-
-    Returns
-    -------
-    text : str
-        Shape, sides and where its centre is.
-    """
-    if load.embankment is not None:
-        shape, across = load.embankment, f"centreline {load.x:g} m across"
-        return (
-            f"embankment, top {shape.crest_width:g} m wide at its greatest height, {shape.full_height:g} m, "
-            f"side slopes {shape.side_slope:g} horizontal to 1 vertical; {across}"
-        )
-    if load.foundation is None:
-        return "load over a wide area"
-    plan = load.foundation.title.partition(", rough")[0]
-    if load.foundation.shape == "strip":
-        return f"strip, {plan}; centreline {load.x:g} m across"
-    return f"{load.foundation.shape}, {plan}; centre {load.x:g} m across and {load.y:g} m along"
-
-
-def _held(site: SiteModel) -> str:
-    """Return in words until when the level is held, where it is."""
-    if site.hold_level_until is None:
-        return ""
-    until = years_text(site.hold_level_until)
-    return f"; fill is added as the ground settles, to hold its level until {until}"
-
-
-def _beside(load: EmbankmentLoad) -> str:
-    """Return berms and traffic in words, where there are any."""
-    text = ""
-    if load.berm_width is not None:
-        text += f", with a berm {load.berm_width:g} m wide and {load.berm_height:g} m high on each side"
-    if load.traffic != Constant(value=0.0):
-        text += f"; traffic on the top {load.traffic.describe('kPa')}"
-    return text
-
-
-def stage_rows(site: SiteModel) -> list[Row]:
-    """Return the stages of the load.
-
-    Parameters
-    ----------
-    site : SiteModel
-        Its stages.
-
-    Returns
-    -------
-    rows : list of dict
-        Name, times, change in words, and fill and pressure of the load that is assessed after each stage.
-    """
-    rows: list[Row] = []
-    pressed = any(stage.pressure for stage in site.stages if stage.load is None)
-    for stage in site.stages:
-        change = []
-        if stage.height != 0.0:
-            change.append(f"{abs(stage.height):g} m of fill {'laid' if stage.height > 0.0 else 'taken away'}")
-        if stage.pressure != 0.0:
-            change.append(f"{abs(stage.pressure):g} kPa {'added' if stage.pressure > 0.0 else 'removed'}")
-        if stage.excavate != 0.0:
-            change.append(f"{stage.excavate:g} m of soil dug out")
-        on = "" if stage.load is None else f" on {stage.load}"
-        pressure = site.pressure(stage.end)
-        rows.append(
-            {
-                "name": stage.name,
-                "start": stage.start,
-                "end": stage.end,
-                "change_text": (" and ".join(change) or "no change") + on,
-                "height_after": round(site.fill_height(stage.end), 9),
-                "pressure_after": round(pressure, 9) if pressed else None,
-            }
-        )
     return rows
 
 

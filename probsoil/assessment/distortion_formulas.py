@@ -66,7 +66,7 @@ def distortion_rows(run: SheetRun, rows: list[Sublayer]) -> list[Record]:
     by_point = distortion_at_horizon(run)
     modulus = undrained_modulus(run.site, run.values, run.state.ground)[0]
     top, bottom = (edge[0] for edge in below_base(run.site, run.state.ground))
-    height, pressure = run.site.fill_height(run.site.horizon), run.surface_pressure(run.site.horizon)
+    height, pressure = float(run.site.fill_height(run.site.horizon)), run.surface_pressure(run.site.horizon)
     curve, per_pressure = displacement_of(run.site, height), 1.0
     if run.site.embankment is not None:
         per_pressure = 1.0 / height if height > 0.0 else 0.0
@@ -177,7 +177,7 @@ def _displacement(run: SheetRun, depth: Symbol) -> tuple[str, dict[str, Symbol]]
     parts = () if shape is None else shape.trapezia(run.site.fill_height(run.site.horizon))
     if len(parts) != 1 or depth[0] <= 0.0:
         return "", {}
-    base, top = parts[0].base_width / 2.0, parts[0].top_width / 2.0
+    base, top = float(parts[0].base_width) / 2.0, float(parts[0].top_width) / 2.0
     symbols: dict[str, Symbol] = {"a": (base, "half of the base's width", "m"), "z": depth}
     if base - top < 1e-9:
         return _STRIP, symbols | {"b": (base, "half of the width on the other side", "m")}
@@ -185,10 +185,11 @@ def _displacement(run: SheetRun, depth: Symbol) -> tuple[str, dict[str, Symbol]]
 
 
 def _of_foundation(shape: Foundation, depth: Symbol) -> tuple[str, dict[str, Symbol]]:
+    width, length, (x, y) = float(shape.width), float(shape.length), map(float, shape.at)
     if shape.shape == "circle":
-        radius: Symbol = (shape.width / 2.0, "radius", "m")
-        return ("", {}) if shape.at[0] else (_CENTRE, {"R": radius, "z": depth})
-    across = (shape.width / 2.0 + shape.at[0], shape.width / 2.0 - shape.at[0])
+        radius: Symbol = (width / 2.0, "radius", "m")
+        return ("", {}) if x else (_CENTRE, {"R": radius, "z": depth})
+    across = (width / 2.0 + x, width / 2.0 - x)
     if shape.shape == "strip":
         if not all(across) and depth[0] <= 0.0:
             return "", {}
@@ -198,7 +199,7 @@ def _of_foundation(shape: Foundation, depth: Symbol) -> tuple[str, dict[str, Sym
             "z": depth,
         }
         return _STRIP, symbols
-    along = (shape.length / 2.0 + shape.at[1], shape.length / 2.0 - shape.at[1])
+    along = (length / 2.0 + y, length / 2.0 - y)
     if min(*across, *along) <= 0.0:
         return "", {}
     return _rectangle(across, along, depth)

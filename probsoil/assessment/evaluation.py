@@ -10,6 +10,8 @@ from probsoil._typing import FloatArray
 from probsoil.assessment.observed import observations_of
 from probsoil.assessment.other_loads import AssessedBeside, assessed_beside, own_columns, positions_of
 from probsoil.ground.limit_quantities import (
+    added_thickness,
+    added_volume,
     bearing_with_model_error,
     distortion_in_limits,
     limit_quantities,
@@ -97,9 +99,9 @@ class Study:
         arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
             ``quantity`` of every limit and what of it is ``secondary`` compression and, where any is
             computed, undrained ``distortion``, ``slip`` and ``bearing`` at every check, ``final``
-            settlement, thickness of ``fill_added`` where a level is held, flags, and in the first chunks
-            ``settlement`` through time, that of every ``station`` at the times they are kept (model error
-            included in all these) and where the critical ``circle`` lies.
+            settlement, thickness of ``fill_added`` and ``volume_added`` where a level is held, flags, and in
+            the first chunks ``settlement`` through time, that of every ``station`` at the times they are kept
+            (model error included in all these) and where the critical ``circle`` lies.
         """
         z = self.latent(chunk)
         values = self.section_values(z)
@@ -125,12 +127,7 @@ class Study:
             "converged": converged,
             "voids_closed": closed,
         }
-        if self.site.distorts:
-            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values, stations)
-        if self.site.seeps or self.site.excess_layers:
-            arrays["uplifted"] = response.uplifted if stations is None else stations.uplifted
-        if self.site.hold_level_until is not None:
-            arrays["fill_added"] = error * response.fill_added[:, -1]
+        arrays |= self._of_some_sites(response, values, stations)
         if chunk < BAND_CHUNKS:
             arrays["settlement"] = settlement.astype(np.float32)
             if stations is not None:
@@ -138,6 +135,22 @@ class Study:
             arrays["circle"] = critical_positions(self.site, response).astype(np.float32)
         if self.certain:  # one calculation stands for every realisation
             return {key: np.repeat(array, len(z), axis=0) for key, array in arrays.items()}
+        return arrays
+
+    def _of_some_sites(
+        self, response: Response, values: Values, stations: StationSettlement | None
+    ) -> dict[str, NDArray[np.generic]]:
+        """Return what is kept of sites that have it."""
+        arrays: dict[str, NDArray[np.generic]] = {}
+        if self.site.distorts:
+            arrays["distortion"] = distortion_in_limits(self.scenario.limits, response, values, stations)
+        if self.site.seeps or self.site.excess_layers:
+            arrays["uplifted"] = response.uplifted if stations is None else stations.uplifted
+        if self.site.hold_level_until is not None:
+            arrays["fill_added"] = added_thickness(response, values)
+            arrays["volume_added"] = added_volume(response, values)
+        if response.overdrawn is not None:
+            arrays["overdrawn"] = response.overdrawn
         return arrays
 
     def _own(

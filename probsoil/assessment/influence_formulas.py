@@ -42,6 +42,8 @@ def influence_formulas(run: SheetRun, row: Record) -> list[Worked]:
     """
     if row["influence"] is None:
         return []
+    if run.site.embankment is not None and run.site.embankment.pit > 0.0:
+        return []  # of two loads on the bottom of the pit
     if run.site.embankment is not None:
         return _embankment(run, row)
     if run.site.foundation is not None:
@@ -56,7 +58,7 @@ def _line(formula: str, row: Record, symbols: dict[str, Symbol]) -> Worked:
 
 def _embankment(run: SheetRun, row: Record) -> list[Worked]:
     shape = run.site.embankment
-    height = run.site.fill_height(run.site.horizon)
+    height = float(run.site.fill_height(run.site.horizon))
     parts = () if shape is None else shape.trapezia(height)
     if len(parts) == 1:
         return [_trapezium(parts[0], row, "influence", row["influence"], run.site.offset)]
@@ -64,7 +66,7 @@ def _embankment(run: SheetRun, row: Record) -> list[Worked]:
     terms: dict[str, Symbol] = {}
     for number, (part, share) in enumerate(zip(parts, shares, strict=True), start=1):
         terms[f"I{number}"] = (share, f"influence of part {number}, from the ground up", "-")
-        terms[f"h{number}"] = (part.height, f"height of part {number}", "m")
+        terms[f"h{number}"] = (float(part.height), f"height of part {number}", "m")
     terms["h"] = (height, "height of fill", "m")
     name = "influence of part 1, berms and what lies between"
     first = _trapezium(parts[0], row, name, shares[0], run.site.offset)
@@ -80,8 +82,8 @@ def _trapezium(part: Trapezium, row: Record, name: str, share: float, offset: fl
     if offset != 0.0:
         return _beside(part, row, name, share, abs(offset))
     symbols: dict[str, Symbol] = {
-        "a": (part.base_width / 2.0, "half of the base's width", "m"),
-        "b": (part.top_width / 2.0, "half of the top's width", "m"),
+        "a": (float(part.base_width) / 2.0, "half of the base's width", "m"),
+        "b": (float(part.top_width) / 2.0, "half of the top's width", "m"),
         "z": (row["depth"], "depth", "m"),
     }
     formula = _TRAPEZIUM
@@ -95,10 +97,10 @@ def _trapezium(part: Trapezium, row: Record, name: str, share: float, offset: fl
 def _beside(part: Trapezium, row: Record, name: str, share: float, offset: float) -> Worked:
     """Return the influence of a trapezium away from its centreline."""
     place = f"{place_of(row)}, at {row['depth']:.3f} m"
-    base, top = part.base_width / 2.0, part.top_width / 2.0
+    base, top = float(part.base_width) / 2.0, float(part.top_width) / 2.0
     depth: Symbol = (row["depth"], "depth", "m")
     if base - top < 0.5 * _NEAR:
-        sides = _sides(part.base_width, offset)
+        sides = _sides(float(part.base_width), offset)
         return worked(LOAD, name, _STRIP, (share, "-"), {**sides, "z": depth}, row=place)
     symbols: dict[str, Symbol] = {
         "a": (base + offset, "distance from the point to the farther toe", "m"),
@@ -115,9 +117,9 @@ def _foundation(shape: Foundation, row: Record) -> list[Worked]:
     depth: Symbol = (below, "depth below the base", "m")
     lines: list[Worked] = []
     if shape.shape == "strip":
-        lines = [_line(_STRIP, row, {**_sides(shape.width, shape.at[0]), "z": depth})]
+        lines = [_line(_STRIP, row, {**_sides(float(shape.width), float(shape.at[0])), "z": depth})]
     elif shape.shape == "circle" and not shape.at[0]:
-        radius: Symbol = (shape.width / 2.0, "radius", "m")
+        radius: Symbol = (float(shape.width) / 2.0, "radius", "m")
         lines = [_line(_CIRCLE, row, {"R": radius, "z": depth})]
     elif shape.shape == "rectangle" and below > 0.0:
         lines = _rectangle(shape, row, depth)
@@ -135,8 +137,9 @@ def _sides(width: float, offset: float) -> dict[str, Symbol]:
 
 
 def _rectangle(shape: Foundation, row: Record, depth: Symbol) -> list[Worked]:
-    across = [shape.width / 2.0 + shape.at[0], shape.width / 2.0 - shape.at[0]]
-    along = [shape.length / 2.0 + shape.at[1], shape.length / 2.0 - shape.at[1]]
+    width, length, (x, y) = float(shape.width), float(shape.length), map(float, shape.at)
+    across = [width / 2.0 + x, width / 2.0 - x]
+    along = [length / 2.0 + y, length / 2.0 - y]
     corners = [(a, b) for a in across for b in along]
     parts = [_corner(depth[0], a, b) for a, b in corners]
     symbols: dict[str, Symbol] = {

@@ -61,8 +61,8 @@ def _increase(run: SheetRun, row: Record, place: str) -> Worked:
     symbols: dict[str, Symbol] = {
         "I": (row["influence"], "influence of the load", "-"),
         "γf": (run.fill_weight, "unit weight of the fill", "kN/m3"),
-        "h": (run.site.fill_height(time), "height of fill", "m"),
-        "p": (run.site.pressure(time), "pressure besides the fill", "kPa"),
+        "h": (float(run.site.fill_height(time)), "height of fill", "m"),
+        "p": (float(run.site.pressure(time)), "pressure besides the fill", "kPa"),
     }
     if run.site.excavates:
         formula, symbols = "Δσ = I · (γf · h + p − w − r)", symbols | _dug_out(run, time)
@@ -82,7 +82,7 @@ def _submerged(run: SheetRun, row: Record, place: str) -> Worked:
         "γw": GAMMA_W,
         "sc": (max(clay, 0.0), "settlement of the clay", "m"),
         "zw": (run.at["site.water_table"], "depth of the water table", "m"),
-        "h": (run.site.greatest_fill_height(time), "height of fill", "m"),
+        "h": (float(run.site.greatest_fill_height(time)), "height of fill", "m"),
         "I0": (float(run.state.ground.load.spread_of_all[0, _point(run, row)]), FULL, "-"),
         "Δσ": (row["stress_increase"], "stress increase", "kPa"),
     }
@@ -98,7 +98,7 @@ def _submerged(run: SheetRun, row: Record, place: str) -> Worked:
 def _dug_out(run: SheetRun, time: float) -> dict[str, Symbol]:
     """Return the water under the base, as far as it carries, and the effective weight of the soil dug out."""
     total, pore = stress_dug_out(run.site, run.values, 1, run.site.dug(time))
-    placed = run.fill_weight * run.site.fill_height(time) + run.site.pressure(time)
+    placed = float(run.fill_weight * run.site.fill_height(time) + run.site.pressure(time))
     return {
         "w": (min(placed, float(pore[0])), "water under the base", "kPa"),
         "r": (float(total[0] - pore[0]), "effective weight of the soil dug out", "kPa"),
@@ -112,7 +112,8 @@ def _further(run: SheetRun, row: Record, place: str) -> list[Worked]:
     lines, parts = [], {}
     for number, (one, stress) in enumerate(zip(run.site.further_loads, stresses, strict=True), start=1):
         weight = float(run.at.get(f"{one.address}.fill_unit_weight", 0.0))
-        height, pressure = run.site.fill_height(time, one.name), run.site.pressure(time, one.name)
+        height = float(run.site.fill_height(time, one.name))
+        pressure = float(run.site.pressure(time, one.name))
         surface = weight * height + pressure
         parts[f"Δσ{number}"] = (stress, f"stress of {one.name}", "kPa")
         symbols: dict[str, Symbol] = {

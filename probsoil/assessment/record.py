@@ -15,7 +15,12 @@ from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
 CONFIDENCE = 0.95
-_UNITS = {"settlement": "m", "differential_settlement": "m", "time_to_consolidation": "years"}
+_UNITS = {
+    "settlement": "m",
+    "differential_settlement": "m",
+    "time_to_consolidation": "years",
+    "added_fill": "m3/m",
+}
 _DRAWS = {"monte carlo": "Monte Carlo", "latin hypercube": "Latin hypercube", "sobol": "scrambled Sobol'"}
 _WORST = {"not more than": np.inf, "not less than": -np.inf}  # what is not a number counts as exceeding
 
@@ -46,6 +51,10 @@ class CampaignSample:
         Settlement of the first realisations at every station.
     fill_added : ndarray, shape (n_sample,), [m]
         Thickness of fill added to hold its level; empty where none is.
+    volume_added : ndarray, shape (n_sample,), [m3/m]
+        Its volume, over a wide area per square metre [m]; empty where none is.
+    overdrawn : ndarray of bool, shape (n_sample,), [-]
+        Whether a stage took off less than it was to; empty where nothing that is built is uncertain.
     converged, voids_closed, floored, kappa_clipped, uplifted : ndarray of bool, shape (n_sample,), [-]
         Flags of the ground model; the last one empty where the water is at rest.
     replicate : ndarray of int, shape (n_sample,), [-]
@@ -68,6 +77,8 @@ class CampaignSample:
     circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
     station: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 0)))
     fill_added: FloatArray = field(default_factory=lambda: np.zeros(0))
+    volume_added: FloatArray = field(default_factory=lambda: np.zeros(0))
+    overdrawn: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
 
 
 def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
@@ -182,6 +193,8 @@ def _time(limit: Limit) -> tuple[Row, str]:
     if limit.quantity == "time_to_consolidation":
         reached = f"to {100.0 * limit.degree:g} %"
         return {"degree": limit.degree}, f"{reached}, from the start, after the last stage"
+    if limit.quantity == "added_fill":
+        return {}, "in all"
     between = getattr(limit, "between", None)
     if between is not None:
         return {"between": list(between)}, f"between {between[0]:.3g} and {between[1]:.3g} years"
@@ -254,15 +267,16 @@ def added_fill_rows(site: SiteModel, sample: CampaignSample) -> list[Row]:
     """
     if site.hold_level_until is None:
         return []
-    width, unit = (1.0, "m3/m2") if site.embankment is None else (site.embankment.mean_width, "m3/m")
+    unit = "m3/m2" if site.embankment is None else "m3/m"
     worst = _WORST["not more than"]
     return [
         {
             "until": site.hold_level_until,
             "unit": unit,
-            "mean_width": None if site.embankment is None else width,
+            "mean_width": None if site.embankment is None else float(site.embankment.mean_width),
+            "width_varies": site.works is not None,
             "thickness": _summary(sample.fill_added, worst=worst),
-            "volume": _summary(width * sample.fill_added, worst=worst),
+            "volume": _summary(sample.volume_added, worst=worst),
         }
     ]
 
@@ -303,7 +317,7 @@ def bearing_rows(study: Study, sample: CampaignSample) -> list[Row]:
     site = study.site
     rows = _factor_rows(study, sample, site.bearing_times, sample.bearing)
     return [
-        row | {"pressure": round(site.pressure(float(time)), 9)}
+        row | {"pressure": round(float(site.pressure(float(time))), 9)}
         for row, time in zip(rows, site.bearing_times, strict=True)
     ]
 
@@ -321,7 +335,7 @@ def _factor_rows(study: Study, sample: CampaignSample, times: FloatArray, factor
             {
                 "stage": ends.get(time, f"at {time:.3g} years"),
                 "time": time,
-                "fill_height": round(site.fill_height(time), 9),
+                "fill_height": round(float(site.fill_height(time)), 9),
                 "mean": _mean(factor),
                 "quantiles": quantiles(factor, worst=_WORST["not less than"]),
                 "probability_below_one": below.probability,

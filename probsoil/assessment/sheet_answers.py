@@ -194,7 +194,7 @@ def drain_record(run: SheetRun, rows: list[Sublayer]) -> dict[str, Any] | None:
             )
     return {
         "pattern": given.pattern,
-        "spacing": given.spacing,
+        "spacing": float(run.at.get("drains.spacing", given.spacing.expectation)),
         "influence_diameter": form.influence_diameter,
         "diameter": form.diameter,
         "spacing_ratio": form.influence_diameter / form.diameter,

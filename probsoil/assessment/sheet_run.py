@@ -22,6 +22,7 @@ from probsoil.ground.stations import (
     station_site,
     station_sites,
 )
+from probsoil.ground.works import built_once
 from probsoil.scenario import Scenario
 
 
@@ -189,7 +190,7 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"], station: str | 
         If the consolidation cannot be computed with these values.
     """
     site, one, beside = _computed(scenario, fixed_values(space_of(scenario).at(at)), station)
-    site = replace(screened(site, one, within=0.0), record=site.times[1:])
+    site = replace(screened(built_once(site, one), one, within=0.0), record=site.times[1:])
     state = ground_state(site, one)
     if not state.response.converged[0]:
         reason = (

@@ -100,6 +100,17 @@ _EXCAVATED = (
     "Bearing is looked at with the pressure beyond the soil dug out and the water; failure of the bottom or "
     "the sides of the excavation is not looked at.",
 )
+_REPLACED = (
+    "The ground below the whole base of the load is dug out in the stages that say so and replaced by its "
+    "fill: below the bottom the effective stress falls by what that ground weighs, less the water in it, and "
+    "the clay swells; what is placed first takes the place of the water, then reloads. Water stands in the "
+    "pit as high as the water table. Settlement is that of the bottom of the pit.",
+)
+_NO_SLIP = ("Slip is not looked at, neither through the replaced ground nor of the sides of the pit.",)
+_WORKS = (
+    "What is uncertain of the works (heights, pressures, widths, depths, drains) has one value in each "
+    "realisation, the same along the whole load. When things are looked at follows from the means.",
+)
 _FOUNDATION = (
     "Stress from the foundation is that of a uniform pressure on a homogeneous elastic half-space "
     "(Boussinesq), from its base down; the clay above the base gets none. The foundation is flexible; "
@@ -169,6 +180,8 @@ def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
         One sentence or two each.
     """
     load: tuple[str, ...] = _AREA if site.embankment is None else _EMBANKMENT
+    if site.excavates and site.foundation is None:
+        load = (*_AREA, *_REPLACED) if site.embankment is None else (_EMBANKMENT[0], *_REPLACED, *_NO_SLIP)
     if site.embankment is not None and site.embankment.berm_width > 0.0:
         load += _BERMS
     if np.isfinite(site.traffic_from):
@@ -192,7 +205,8 @@ def assumptions(site: SiteModel, *, stations: int = 0) -> tuple[str, ...]:
     )
     submergence = _SUBMERGENCE if site.submergence else ()
     held = () if site.hold_level_until is None else _LEVEL_HELD
-    return (*ground, *creep, *flow, *load, *_further(site), *held, *submergence, *base)
+    works = () if site.works is None else _WORKS
+    return (*ground, *creep, *flow, *load, *_further(site), *works, *held, *submergence, *base)
 
 
 def _further(site: SiteModel) -> tuple[str, ...]:

@@ -14,7 +14,12 @@ if TYPE_CHECKING:
     from probsoil.scenario.limits import Limit
 
 LEAST_CUT_SHOWN = 1e-6  # smaller shares are in the results, and only clutter here
-LIMIT_UNITS = {"settlement": "m", "differential_settlement": "m", "time_to_consolidation": "years"}
+LIMIT_UNITS = {
+    "settlement": "m",
+    "differential_settlement": "m",
+    "time_to_consolidation": "years",
+    "added_fill": "m3/m",
+}
 
 
 def print_scenario(console: "Console", scenario: "Scenario", space: "ParameterSpace") -> None:
@@ -58,17 +63,20 @@ def _print_layers(console: "Console", scenario: "Scenario", space: "ParameterSpa
 
 
 def _print_stages(console: "Console", scenario: "Scenario") -> None:
+    from probsoil.assessment.works_text import uncertain_works
     from probsoil.ground.foundation import foundation_of
+    from probsoil.scenario.amounts import text_of
 
     load = scenario.load
     if load.shape == "embankment":
         console.print(
-            f"Load: embankment, crest {load.crest_width:g} m wide, side slopes 1 on {load.side_slope:g}\n"
+            f"Load: embankment, crest {text_of(load.crest_width, 'm', what='wide')}, side slopes 1 on "
+            f"{text_of(load.side_slope)}\n"
         )
     else:
         foundation = foundation_of(load)
         text = "over a wide area" if foundation is None else f"{load.shape}, {foundation.title}"
-        console.print(f"Load: {text}\n")
+        console.print(f"Load: {text}{uncertain_works(scenario, 'load')}\n")
         if foundation is not None and not scenario.all_stations:
             console.print(f"Settlement is that of the {foundation.station}\n")
     _print_further_loads(console, scenario)
@@ -81,21 +89,24 @@ def _print_stages(console: "Console", scenario: "Scenario") -> None:
 
 
 def _print_further_loads(console: "Console", scenario: "Scenario") -> None:
-    from probsoil.assessment.description import further_load_text
+    from probsoil.assessment.works_text import further_load_text, uncertain_works
     from probsoil.ground.site_forms import stage_forms
     from probsoil.ground.site_layout import further_load_forms
 
     for one in further_load_forms(scenario, stage_forms(scenario)):
-        console.print(f"Further load {one.name}: {further_load_text(one)}\n")
+        text = further_load_text(one) + uncertain_works(scenario, one.address)
+        console.print(f"Further load {one.name}: {text}\n")
 
 
 def _change(stage: "Stage") -> str:
+    from probsoil.scenario.amounts import text_of
+
     on = "" if stage.load is None else f" on {stage.load}"
     if stage.excavate is not None:
         return f"{stage.excavate:g} m of soil dug out"
     if stage.height is not None:
-        return f"{stage.height:+g} m of fill{on}"
-    return f"{stage.pressure:+g} kPa{on}"
+        return f"{text_of(stage.height, 'm', what='of fill', signed=True)}{on}"
+    return "" if stage.pressure is None else f"{text_of(stage.pressure, 'kPa', signed=True)}{on}"
 
 
 def _print_stations(console: "Console", scenario: "Scenario") -> None:

@@ -42,7 +42,7 @@ class Loading(NamedTuple):
     stress: FloatArray
     spread: FloatArray  # (block, cell, lane), of what submergence takes off
     fill_spread: FloatArray  # the same, of fill that holds the level
-    height: FloatArray  # (knot,), of fill
+    height: FloatArray  # (block, knot, lane), of fill
     water_depth: FloatArray  # (block, lane)
     water_weight: float  # zero where submergence does not count
     fill_weight: FloatArray  # (block, lane), of fill that holds the level; zero where none does

@@ -99,8 +99,8 @@ def _add_load(b: int, j: int, share: float, soil: Soil, loading: Loading, trial:
     """
     arrays_are_separate()
     n_cell, n_lane = trial.s.shape
-    height = (1.0 - share) * loading.height[j] + share * loading.height[j + 1]
     for lane in range(n_lane):
+        height = (1.0 - share) * loading.height[b, j, lane] + share * loading.height[b, j + 1, lane]
         above_base = height + work.fill[lane]
         submerged = min(max(work.sunk[lane], 0.0), loading.water_depth[b, lane] + above_base)
         work.sunk[lane] = loading.water_weight * submerged

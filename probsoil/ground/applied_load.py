@@ -5,12 +5,13 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
+from probsoil.ground.amounts import Amount, beside_depths, greater, key_of
 from probsoil.ground.constants import WATER_UNIT_WEIGHT
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.excavation import pressure_on_base
 from probsoil.ground.foundation import Foundation
-from probsoil.ground.further_load import Places, foundation_influence, share_above
-from probsoil.ground.load_stress import trapezia_influence
+from probsoil.ground.further_load import Places, below_base, foundation_influence, share_above
+from probsoil.ground.load_stress import strip_influence, trapezia_influence
 from probsoil.ground.profile import ClayColumns, Points, Values, column
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.top_up import AddedFill
@@ -30,7 +31,7 @@ class AppliedLoad:
         Stress below the middle of the slope over that below the centreline, full height; for a
         foundation that below the edge (at the middle of a long side) over that below the reported
         point, at most 1; 1 for a wide area.
-    height : ndarray, shape (n_knot,), [m]
+    height : ndarray, shape (n_knot,) or (n_knot, n_sample), [m]
         Height of fill at the load knots, where it is highest on the site.
     water_depth : ndarray, shape (n_sample,), [m]
         Depth of the water table.
@@ -180,7 +181,8 @@ def applied_load(
     -----
     Between knots the stress is taken as linear in time, also while an embankment rises and its
     top narrows; the base stays the same. A foundation adds nothing above its base; where the base
-    cuts through the thickness of a point, the part below it counts. Further loads add their stress at
+    cuts through the thickness of a point, the part below it counts; likewise the bottom of ground dug out
+    below an embankment or an area. Further loads add their stress at
     the reported point, each from its own place.
     """
     n_sample, berm = depth.shape[0], None
@@ -189,16 +191,21 @@ def applied_load(
     heights = [site.fill_height(float(time)) for time in site.knots]
     pressures = [site.pressure(float(time)) for time in site.knots]
     weight = fill_weight(values, n_sample)
-    if site.embankment is not None:
+    if site.embankment is not None and site.embankment.pit > 0.0:
+        spread, share, stress = _in_pit(site, site.embankment, values, places)
+    elif site.embankment is not None:
         spread, share, berm = _embankment_spread(site.embankment, depth, site.offset)
         at_height = {
-            height: _influence(site.embankment, depth, height, site.offset) for height in set(heights)
+            key_of(height): _influence(site.embankment, depth, height, site.offset)
+            for height in {key_of(one): one for one in heights}.values()
         }
-        stress = [weight[:, None] * at_height[height] for height in heights]
+        stress = [weight[:, None] * at_height[key_of(height)] for height in heights]
     else:
         spread, share = np.ones_like(depth), np.ones_like(depth)
         if site.foundation is not None:
             spread, share = _foundation_spread(site.foundation, places)
+        elif site.face > 0.0:
+            spread = 1.0 - share_above(site.face, depth, half)
         stress = [
             pressure_on_base(site, values, weight * height + pressure, float(time))[:, None] * spread
             for height, pressure, time in zip(heights, pressures, site.knots, strict=True)
@@ -207,7 +214,9 @@ def applied_load(
         stress=np.stack(stress),
         spread=spread,
         slope_share=share,
-        height=np.array([site.greatest_fill_height(float(time)) for time in site.knots]),
+        height=np.stack(
+            np.broadcast_arrays(*(site.greatest_fill_height(float(time)) for time in site.knots))
+        ),
         water_depth=column(values, "site.water_table", n_sample),
         berm_share=berm,
     )
@@ -225,7 +234,8 @@ def _with_further_loads(load: AppliedLoad, site: SiteModel, values: Values, plac
         spread += by_pressure
         for knot, time in enumerate(site.knots.tolist()):
             by_fill = one.fill_influence(places, site.point, site.fill_height(time, one.name))
-            stresses[place, knot] = weight * by_fill + site.pressure(time, one.name) * by_pressure
+            pressure = beside_depths(site.pressure(time, one.name))
+            stresses[place, knot] = weight * by_fill + pressure * by_pressure
     # what submergence takes off is taken to be the same under every load
     total = load.stress + stresses.sum(axis=0)
     return replace(load, stress=total, further=stresses, further_spread=spread)
@@ -259,17 +269,42 @@ def _embankment_spread(
 
     Away from the centreline no strength is asked for, and the shares are ones.
     """
-    middle, full = 0.5 * shape.base_width, shape.section(shape.full_height)
+    shape = shape.beside_depths
+    middle = 0.5 * shape.base_width
     centre = _influence(shape, depth, shape.full_height, offset)
     if offset != 0.0:
         return centre / shape.full_height, np.ones_like(depth), None
 
-    def share(place: float) -> FloatArray:
+    def share(place: Amount) -> FloatArray:
         return np.clip(_influence(shape, depth, shape.full_height, middle - place) / centre, 0.0, 1.0)
 
-    slope = share(0.5 * (full.berm_zone + full.slope_zone))
-    berm = share(0.5 * full.berm_zone) if shape.berm_width > 0.0 else None
+    slope = share(0.5 * (shape.berm_zone + shape.slope_zone))
+    berm = share(0.5 * shape.berm_zone) if shape.berm_width > 0.0 else None
     return centre / shape.full_height, slope, berm
+
+
+def _in_pit(
+    site: SiteModel, shape: Embankment, values: Values, places: Places
+) -> tuple[FloatArray, FloatArray, list[FloatArray]]:
+    """Return spread, share and stress of an embankment on ground that is dug out and replaced by its fill.
+
+    What fills the pit, less the soil and the water that were there, acts on its bottom as a strip as wide as
+    the base, and the embankment above ground level on the same bottom; ones for the share below the slope,
+    since no slip is looked at.
+    """
+    loaded, below = below_base(places, shape.pit)
+    weight = fill_weight(values, len(below))
+    strip = strip_influence(below, site.offset, width=beside_depths(shape.base_width))
+    full = _influence(shape, below, shape.full_height, site.offset) + shape.pit * strip
+    spread = loaded * full / beside_depths(shape.full_height + shape.pit)
+    stress = []
+    for time in site.knots.tolist():
+        height = site.fill_height(time)
+        above = greater(height - shape.pit, 0.0)
+        in_pit = pressure_on_base(site, values, weight * height, time) - weight * above
+        by_fill = weight[:, None] * _influence(shape, below, above, site.offset)
+        stress.append(np.asarray(loaded * (by_fill + in_pit[:, None] * strip)))
+    return np.asarray(spread), np.ones_like(spread), stress
 
 
 def _foundation_spread(shape: Foundation, places: Places) -> tuple[FloatArray, FloatArray]:
@@ -281,12 +316,12 @@ def _foundation_spread(shape: Foundation, places: Places) -> tuple[FloatArray, F
     return foundation_influence(shape, places, *shape.at), np.where(spread > 0.0, share, 1.0)
 
 
-def share_above_base(shape: Foundation, points: Points) -> FloatArray:
-    """Return the share of each point's thickness that lies above the base of a foundation.
+def share_above_base(base: Amount, points: Points) -> FloatArray:
+    """Return the share of each point's thickness that lies above the base of a load.
 
     Parameters
     ----------
-    shape : Foundation
+    base : float or ndarray, shape (n_sample,), [m]
         Its depth.
     points : Points
         Depths and thicknesses.
@@ -296,7 +331,7 @@ def share_above_base(shape: Foundation, points: Points) -> FloatArray:
     share : ndarray, shape (n_sample, n_point), [-]
         From 0 below the base to 1 above it.
     """
-    return share_above(shape.depth, points.depth, 0.5 * points.thickness)
+    return share_above(base, points.depth, 0.5 * points.thickness)
 
 
 def relief_by_water(
@@ -338,8 +373,9 @@ def relief_by_water(
     return np.minimum(WATER_UNIT_WEIGHT * submerged[:, None] * load.spread_of_all, np.maximum(most, 0.0))
 
 
-def _influence(shape: Embankment, depth: FloatArray, height: float, offset: float = 0.0) -> FloatArray:
+def _influence(shape: Embankment, depth: FloatArray, height: Amount, offset: Amount = 0.0) -> FloatArray:
     """Return the added stress at a height of fill over the unit weight of fill, [m]."""
-    influence = trapezia_influence(depth, offset, shape.trapezia(max(height, 0.0)))
+    trapezia = shape.beside_depths.trapezia(greater(beside_depths(height), 0.0))
+    influence = trapezia_influence(depth, offset, trapezia)
     # far beside the toe the two halves cancel but for rounding
-    return influence if offset == 0.0 else np.maximum(influence, 0.0)
+    return influence if isinstance(offset, float) and offset == 0.0 else np.maximum(influence, 0.0)

@@ -293,7 +293,12 @@ def limited_thickness_factor(width: ArrayLike, thickness: ArrayLike) -> FloatArr
 
 
 def squeezing_safety(
-    strength: ArrayLike, *, thickness: ArrayLike, height: float, side_slope: float, unit_weight: ArrayLike
+    strength: ArrayLike,
+    *,
+    thickness: ArrayLike,
+    height: ArrayLike,
+    side_slope: ArrayLike,
+    unit_weight: ArrayLike,
 ) -> FloatArray:
     r"""Return the factor of safety against squeezing of thin clay from under the side of an embankment.
 
@@ -303,9 +308,9 @@ def squeezing_safety(
         Undrained strength of the clay.
     thickness : array_like, shape (...,), [m]
         Its thickness D, from ground level down.
-    height : float, [m]
+    height : array_like, shape (...,), [m]
         Height H of the fill.
-    side_slope : float, [-]
+    side_slope : array_like, shape (...,), [-]
         Horizontal run n of the side per unit of rise.
     unit_weight : array_like, shape (...,), [kN/m3]
         Unit weight of the fill.

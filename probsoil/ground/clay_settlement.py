@@ -55,7 +55,8 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
     cells, clay, load = site.cells, ground.clay, ground.load
     state = _clay_state(site, ground)
     spread = chosen(load.spread_of_all, clay)
-    submergence = Submergence(spread=spread, height=load.height, water_depth=load.water_depth)
+    height = np.broadcast_to(np.atleast_2d(load.height.T).T, (site.knots.size, len(spread)))
+    submergence = Submergence(spread=spread, height=height, water_depth=load.water_depth)
     history = LoadHistory(
         time=site.knots,
         stress=_added_total(ground),
@@ -63,8 +64,8 @@ def consolidate_clay(site: SiteModel, values: Values, ground: LoadedGround) -> C
         level_held=level_held(site, values, ground),
     )
     flow = _conductivity(site, values, state)
-    if site.foundation is not None:
-        above = chosen(share_above_base(site.foundation, ground.points), clay)
+    if site.foundation is not None or site.face > 0.0:
+        above = chosen(share_above_base(site.base, ground.points), clay)
         flow = replace(flow, log_value=flow.log_value + _OPEN_ABOVE_BASE * above)
     if site.drains is not None:
         flow = replace(flow, drains=radial_drainage(site, site.drains, values, ground))

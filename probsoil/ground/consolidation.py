@@ -48,7 +48,7 @@ class Submergence:
     ----------
     spread : ndarray, shape (n_sample, n_cell), [-]
         Share of a change of weight at the surface that reaches the cell.
-    height : ndarray, shape (n_knot,), [m]
+    height : ndarray, shape (n_knot, n_sample), [m]
         Height of fill at each knot of the load.
     water_depth : ndarray, shape (n_sample,), [m]
         Depth of the water table.
@@ -248,7 +248,7 @@ def _loading(lanes: Lanes, load: LoadHistory) -> Loading:
         stress=np.stack([lanes.pack(one) for one in load.stress], axis=1),
         spread=dry if wet is None else lanes.pack(wet.spread),
         fill_spread=dry if held is None else lanes.pack(held.spread),
-        height=np.zeros(load.time.size) if wet is None else wet.height,
+        height=np.zeros((lanes.n_block, load.time.size, LANES)) if wet is None else lanes.pack(wet.height.T),
         water_depth=nothing if wet is None else per_lane(wet.water_depth),
         water_weight=0.0 if wet is None else WATER_UNIT_WEIGHT,
         fill_weight=nothing if held is None else per_lane(held.unit_weight),

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import beside_depths
 from probsoil.ground.applied_load import LoadedGround
 from probsoil.ground.conductivity import RadialDrainage
 from probsoil.ground.constants import SECONDS_PER_YEAR, WATER_UNIT_WEIGHT
@@ -38,7 +39,7 @@ def radial_drainage(
     found = drain_terms(site, drains, values, ground)
     factor = found.factor + found.resistance
     return RadialDrainage(
-        rate=found.reached * 8.0 * found.ratio / (factor * drains.influence_diameter**2),
+        rate=found.reached * 8.0 * found.ratio / (factor * beside_depths(drains.influence_diameter) ** 2),
         start=drains.installed,
     )
 
@@ -97,15 +98,17 @@ def drain_terms(site: SiteModel, drains: DrainForm, values: Values, ground: Load
     ratio = chosen(np.stack(ratios, axis=1), layer)
     smear = column(values, "drains.smear_kh_ks", n_sample)[:, None]
     permeability = ratio * _initial_permeability(site, values, ground)
-    resistance = np.zeros_like(depth)
+    resistance, bottom = np.zeros_like(depth), beside_depths(drains.bottom)
+    spacing_ratio = beside_depths(drains.influence_diameter / drains.diameter)
     if drains.discharge_capacity is not None:
-        resistance = well_resistance(depth, drains.bottom, permeability, drains.discharge_capacity)
+        capacity = beside_depths(drains.discharge_capacity)
+        resistance = well_resistance(depth, bottom, permeability, capacity)
     return DrainTerms(
         ratio=ratio,
-        factor=drain_factor(drains.influence_diameter / drains.diameter, drains.smear_ratio, smear),
+        factor=drain_factor(spacing_ratio, beside_depths(drains.smear_ratio), smear),
         resistance=resistance,
         permeability=permeability,
-        reached=np.clip((drains.bottom - depth) / thickness + 0.5, 0.0, 1.0),
+        reached=np.clip((bottom - depth) / thickness + 0.5, 0.0, 1.0),
     )
 
 

@@ -1,15 +1,16 @@
-"""Soil dug out for a foundation: what the ground loses by it and what a structure then puts back."""
+"""Soil dug out for a load: what the ground loses by it and what is then put back."""
 
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import Amount
 from probsoil.ground.in_situ_stress import hydrostatic_pressure, total_vertical_stress
 from probsoil.ground.profile import LEAST_STRESS, Values, layers_by_weight
 from probsoil.ground.site_model import SiteModel
 
 
 def stress_dug_out(
-    site: SiteModel, values: Values, n_sample: int, level: float
+    site: SiteModel, values: Values, n_sample: int, level: Amount
 ) -> tuple[FloatArray, FloatArray]:
     """Return total stress and pore pressure in situ at a level.
 
@@ -21,7 +22,7 @@ def stress_dug_out(
         Value of every quantity by its address.
     n_sample : int, [-]
         Number of realisations.
-    level : float, [m]
+    level : float or ndarray, shape (n_sample,), [m]
         Depth below ground level.
 
     Returns
@@ -30,13 +31,13 @@ def stress_dug_out(
         Weight of the soil above the level, and pressure of the water there.
     """
     _, boundary, weights = layers_by_weight(site, values, n_sample)
-    depth = np.full((n_sample, 1), level)
+    depth = np.array(np.broadcast_to(level, (n_sample,)))[:, None]
     total = total_vertical_stress(depth, boundary, **weights)
     return total[:, 0], hydrostatic_pressure(depth, weights["water_table"])[:, 0]
 
 
 def pressure_on_base(site: SiteModel, values: Values, placed: FloatArray, time: float) -> FloatArray:
-    """Return by how much the effective stress on the base of a foundation exceeds that in situ.
+    """Return by how much the effective stress on the base of a load exceeds that in situ.
 
     Parameters
     ----------

@@ -15,6 +15,7 @@ from probsoil.ground.station_quantities import station_part, station_quantity
 from probsoil.ground.stations import Part, StationSettlement
 from probsoil.scenario.limits import (
     ON_SETTLEMENT,
+    AddedFillLimit,
     AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
@@ -76,6 +77,8 @@ def _quantity(site: SiteModel, limit: Limit, response: Response, values: Values)
         return _settlement(limit, response, values)
     if isinstance(limit, SlipSafetyLimit):
         return _least(slip_with_model_error(response, values), site, limit, site.slip_times)
+    if isinstance(limit, AddedFillLimit):
+        return added_volume(response, values)
     if isinstance(limit, BearingSafetyLimit):
         return _least(bearing_with_model_error(response, values), site, limit, site.bearing_times)
     if isinstance(limit, DifferentialSettlementLimit | AngularDistortionLimit):
@@ -184,6 +187,43 @@ def slip_with_model_error(response: Response, values: Values) -> FloatArray:
     """
     error = column(values, "model_error.stability", response.settlement.shape[0])
     return np.asarray(error[:, None] * response.slip)
+
+
+def added_thickness(response: Response, values: Values) -> FloatArray:
+    """Return the thickness of the fill that holds the level, in all, model error included.
+
+    Parameters
+    ----------
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    thickness : ndarray, shape (n_sample,), [m]
+        On the centreline, times measured over computed settlement.
+    """
+    error = column(values, "model_error.settlement", response.settlement.shape[0])
+    return np.asarray(error * response.fill_added[:, -1])
+
+
+def added_volume(response: Response, values: Values) -> FloatArray:
+    """Return the volume of the fill that holds the level, in all, model error included.
+
+    Parameters
+    ----------
+    response : Response
+        The ground's answer.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+
+    Returns
+    -------
+    volume : ndarray, shape (n_sample,), [m3/m]
+        Per metre run of an embankment; over a wide area per square metre, [m].
+    """
+    return np.asarray(response.mean_width * added_thickness(response, values))
 
 
 def bearing_with_model_error(response: Response, values: Values) -> FloatArray:

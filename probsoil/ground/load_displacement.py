@@ -15,13 +15,14 @@ made for this program; tests hold it to the double integral of point loads.
 import numpy as np
 
 from probsoil._typing import ArrayLike, FloatArray
-from probsoil.errors import ParameterError
 from probsoil.ground._checks import checked
+from probsoil.ground.amounts import Amount
+from probsoil.ground.load_stress import check_widths
 
 _FACTOR = 3.0 / (4.0 * np.pi)
 
 
-def strip_displacement(depth: ArrayLike, offset: ArrayLike, *, width: float) -> FloatArray:
+def strip_displacement(depth: ArrayLike, offset: ArrayLike, *, width: Amount) -> FloatArray:
     r"""Return the displacement below a long strip of uniform pressure, times modulus over pressure.
 
     Parameters
@@ -30,8 +31,8 @@ def strip_displacement(depth: ArrayLike, offset: ArrayLike, *, width: float) -> 
         Depth below the strip, zero or more.
     offset : array_like, shape (...,), [m]
         Horizontal distance from the centreline; broadcast against `depth`.
-    width : float, [m]
-        Width of the strip, above zero.
+    width : float or ndarray, shape (...,), [m]
+        Width of the strip, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -43,7 +44,7 @@ def strip_displacement(depth: ArrayLike, offset: ArrayLike, *, width: float) -> 
     ParameterError
         If the width is not above zero or a depth is negative.
     """
-    half = float(checked("width", width, above=0.0)) / 2.0
+    half = checked("width", width, above=0.0) / 2.0
     z, x = np.broadcast_arrays(checked("depth", depth, at_least=0.0), checked("offset", offset))
     return -_FACTOR * (_edge(z, half + x) + _edge(z, half - x))
 
@@ -54,7 +55,7 @@ def _edge(z: FloatArray, a: FloatArray) -> FloatArray:
 
 
 def embankment_displacement(
-    depth: ArrayLike, offset: ArrayLike, *, base_width: float, top_width: float
+    depth: ArrayLike, offset: ArrayLike, *, base_width: Amount, top_width: Amount
 ) -> FloatArray:
     r"""Return the displacement below a long trapezoidal load, times modulus over its full pressure.
 
@@ -64,8 +65,8 @@ def embankment_displacement(
         Depth below the base, zero or more.
     offset : array_like, shape (...,), [m]
         Horizontal distance from the centreline; broadcast against `depth`.
-    base_width, top_width : float, [m]
-        Widths of the trapezium, ``base_width >= top_width >= 0``, base above zero.
+    base_width, top_width : float or ndarray, shape (...,), [m]
+        Widths of the trapezium, ``base_width >= top_width >= 0``, base above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -80,16 +81,17 @@ def embankment_displacement(
         If the widths are not ``base_width >= top_width >= 0`` with a base above zero, or a depth is
         negative.
     """
-    if not base_width >= top_width >= 0.0 or base_width <= 0.0:
-        raise ParameterError(
-            f"widths must be base >= top >= 0 with base > 0; got base {base_width:g} m, top {top_width:g} m"
-        )
+    check_widths(base_width, top_width)
     z, x = np.broadcast_arrays(checked("depth", depth, at_least=0.0), checked("offset", offset))
     toe, shoulder = base_width / 2.0, top_width / 2.0
-    if toe - shoulder < 1e-9 * (1.0 + toe):
+    steep = np.asarray(toe - shoulder < 1e-9 * (1.0 + toe))
+    if steep.all():
         return strip_displacement(z, x, width=base_width)
     sides = [_bowl(z, toe + side * x) - _bowl(z, shoulder + side * x) for side in (1.0, -1.0)]
-    return np.asarray(-_FACTOR * (sides[0] + sides[1]) / (2.0 * (toe - shoulder)))
+    sloping = -_FACTOR * (sides[0] + sides[1]) / (2.0 * np.where(steep, 1.0, toe - shoulder))
+    if not steep.any():
+        return np.asarray(sloping)
+    return np.asarray(np.where(steep, strip_displacement(z, x, width=base_width), sloping))
 
 
 def _bowl(z: FloatArray, x: FloatArray) -> FloatArray:
@@ -98,7 +100,7 @@ def _bowl(z: FloatArray, x: FloatArray) -> FloatArray:
 
 
 def rectangle_displacement(
-    depth: ArrayLike, x: ArrayLike, y: ArrayLike, *, width: float, length: float
+    depth: ArrayLike, x: ArrayLike, y: ArrayLike, *, width: Amount, length: Amount
 ) -> FloatArray:
     r"""Return the displacement below a rectangle of uniform pressure, times modulus over pressure.
 
@@ -108,8 +110,8 @@ def rectangle_displacement(
         Depth below the rectangle, zero or more.
     x, y : array_like, shape (...,), [m]
         Distances from the centre along the width and along the length; anywhere, also outside.
-    width, length : float, [m]
-        Sides of the rectangle, above zero.
+    width, length : float or ndarray, shape (...,), [m]
+        Sides of the rectangle, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -123,8 +125,8 @@ def rectangle_displacement(
     ParameterError
         If a side is not above zero or a depth is negative.
     """
-    half_width = float(checked("width", width, above=0.0)) / 2.0
-    half_length = float(checked("length", length, above=0.0)) / 2.0
+    half_width = checked("width", width, above=0.0) / 2.0
+    half_length = checked("length", length, above=0.0) / 2.0
     z, x, y = np.broadcast_arrays(checked("depth", depth, at_least=0.0), checked("x", x), checked("y", y))
     total = np.zeros(z.shape)
     for side in (half_width + x, half_width - x):
@@ -138,7 +140,7 @@ def _reach(z: FloatArray, a: FloatArray, b: FloatArray) -> FloatArray:
     return np.asarray(a * np.arcsinh(b / np.where(away > 0.0, away, 1.0)), dtype=np.float64)
 
 
-def circle_displacement(depth: ArrayLike, radius: ArrayLike, *, diameter: float) -> FloatArray:
+def circle_displacement(depth: ArrayLike, radius: ArrayLike, *, diameter: Amount) -> FloatArray:
     r"""Return the displacement below a circle of uniform pressure, times modulus over pressure.
 
     Parameters
@@ -147,8 +149,8 @@ def circle_displacement(depth: ArrayLike, radius: ArrayLike, *, diameter: float)
         Depth below the circle, zero or more.
     radius : array_like, shape (...,), [m]
         Distance from the centre, zero or more; anywhere, also outside.
-    diameter : float, [m]
-        Diameter of the circle, above zero.
+    diameter : float or ndarray, shape (...,), [m]
+        Diameter of the circle, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -162,7 +164,7 @@ def circle_displacement(depth: ArrayLike, radius: ArrayLike, *, diameter: float)
     ParameterError
         If the diameter is not above zero, or a depth or radius is negative.
     """
-    rim = float(checked("diameter", diameter, above=0.0)) / 2.0
+    rim = checked("diameter", diameter, above=0.0) / 2.0
     z, r = np.broadcast_arrays(checked("depth", depth, at_least=0.0), checked("radius", radius, at_least=0.0))
     if not r.any():
         return np.asarray(1.5 * rim * rim / np.hypot(rim, z), dtype=np.float64)

@@ -8,10 +8,11 @@ import numpy as np
 from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import ParameterError
 from probsoil.ground._checks import checked
+from probsoil.ground.amounts import Amount
 
 
 def embankment_influence(
-    depth: ArrayLike, offset: ArrayLike, *, base_width: float, top_width: float
+    depth: ArrayLike, offset: ArrayLike, *, base_width: Amount, top_width: Amount
 ) -> FloatArray:
     r"""Return the vertical stress under a long trapezoidal load, as a share of its full pressure.
 
@@ -21,8 +22,8 @@ def embankment_influence(
         Depth below the base, zero or more.
     offset : array_like, shape (...,), [m]
         Horizontal distance from the centreline; broadcast against `depth`.
-    base_width, top_width : float, [m]
-        Widths of the trapezium, ``base_width >= top_width >= 0``, base above zero.
+    base_width, top_width : float or ndarray, shape (...,), [m]
+        Widths of the trapezium, ``base_width >= top_width >= 0``, base above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -48,10 +49,7 @@ def embankment_influence(
        an embankment loading, Proc. 4th Int. Conf. Soil Mech. Found. Eng., London, vol. 1, 1957
        (formula from memory; tested against the integral of the line load).
     """
-    if not base_width >= top_width >= 0.0 or base_width <= 0.0:
-        raise ParameterError(
-            f"widths must be base >= top >= 0 with base > 0; got base {base_width:g} m, top {top_width:g} m"
-        )
+    check_widths(base_width, top_width)
     z, x = np.broadcast_arrays(checked("depth", depth, at_least=0.0), np.abs(checked("offset", offset)))
     toe, shoulder = base_width / 2.0, top_width / 2.0
     left = _ramp(z, x + toe, x + shoulder)
@@ -59,21 +57,43 @@ def embankment_influence(
     return np.asarray(left + right, dtype=np.float64)
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+def check_widths(base_width: Amount, top_width: Amount) -> None:
+    """Refuse widths that are those of no trapezium.
+
+    Parameters
+    ----------
+    base_width, top_width : float or ndarray, shape (...,), [m]
+        Its widths.
+
+    Raises
+    ------
+    ParameterError
+        If they are not ``base_width >= top_width >= 0`` with a base above zero.
+    """
+    base, top = np.broadcast_arrays(base_width, top_width)
+    good = (base >= top) & (top >= 0.0) & (base > 0.0)
+    if not good.all():
+        raise ParameterError(
+            f"widths must be base >= top >= 0 with base > 0; got base {base[~good][0]:g} m, "
+            f"top {top[~good][0]:g} m"
+        )
+
+
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class Trapezium:
     """One trapezium of a section of fill.
 
     Attributes
     ----------
-    base_width, top_width : float, [m]
+    base_width, top_width : float or ndarray, shape (n_sample,) or (n_sample, 1), [m]
         Its widths.
-    height : float, [m]
+    height : float or ndarray, shape (n_sample,) or (n_sample, 1), [m]
         Its height.
     """
 
-    base_width: float
-    top_width: float
-    height: float
+    base_width: Amount
+    top_width: Amount
+    height: Amount
 
 
 def trapezia_influence(depth: ArrayLike, offset: ArrayLike, trapezia: Sequence[Trapezium]) -> FloatArray:
@@ -125,7 +145,7 @@ def _strip_side(z: FloatArray, edge: FloatArray) -> FloatArray:
     return np.asarray(inner / np.pi, dtype=np.float64)
 
 
-def strip_influence(depth: ArrayLike, offset: ArrayLike, *, width: float) -> FloatArray:
+def strip_influence(depth: ArrayLike, offset: ArrayLike, *, width: Amount) -> FloatArray:
     r"""Return the vertical stress under a long strip of uniform pressure, as a share of it.
 
     Parameters
@@ -134,8 +154,8 @@ def strip_influence(depth: ArrayLike, offset: ArrayLike, *, width: float) -> Flo
         Depth below the strip, zero or more.
     offset : array_like, shape (...,), [m]
         Horizontal distance from the centreline; broadcast against `depth`.
-    width : float, [m]
-        Width of the strip, above zero.
+    width : float or ndarray, shape (...,), [m]
+        Width of the strip, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -163,7 +183,7 @@ def strip_influence(depth: ArrayLike, offset: ArrayLike, *, width: float) -> Flo
 
 
 def rectangle_influence(
-    depth: ArrayLike, x: ArrayLike, y: ArrayLike, *, width: float, length: float
+    depth: ArrayLike, x: ArrayLike, y: ArrayLike, *, width: Amount, length: Amount
 ) -> FloatArray:
     r"""Return the vertical stress under a rectangle of uniform pressure, as a share of it.
 
@@ -173,8 +193,8 @@ def rectangle_influence(
         Depth below the rectangle, zero or more.
     x, y : array_like, shape (...,), [m]
         Distances from the centre along the width and along the length; anywhere, also outside.
-    width, length : float, [m]
-        Sides of the rectangle, above zero.
+    width, length : float or ndarray, shape (...,), [m]
+        Sides of the rectangle, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -220,7 +240,7 @@ def _corner(z: FloatArray, a: FloatArray, b: FloatArray) -> FloatArray:
     return np.asarray((np.arctan2(a * b, z * radius) + sides * inverse) / (2.0 * np.pi), dtype=np.float64)
 
 
-def circle_influence(depth: ArrayLike, radius: ArrayLike, *, diameter: float) -> FloatArray:
+def circle_influence(depth: ArrayLike, radius: ArrayLike, *, diameter: Amount) -> FloatArray:
     r"""Return the vertical stress under a circle of uniform pressure, as a share of it.
 
     Parameters
@@ -229,8 +249,8 @@ def circle_influence(depth: ArrayLike, radius: ArrayLike, *, diameter: float) ->
         Depth below the circle, zero or more.
     radius : array_like, shape (...,), [m]
         Distance from the centre, zero or more; anywhere, also outside.
-    diameter : float, [m]
-        Diameter of the circle, above zero.
+    diameter : float or ndarray, shape (...,), [m]
+        Diameter of the circle, above zero; broadcast against `depth`.
 
     Returns
     -------
@@ -256,7 +276,7 @@ def circle_influence(depth: ArrayLike, radius: ArrayLike, *, diameter: float) ->
     .. [1] J. Boussinesq, Application des potentiels, Gauthier-Villars, Paris, 1885 (point load, from
        memory).
     """
-    rim = float(checked("diameter", diameter, above=0.0)) / 2.0
+    rim = checked("diameter", diameter, above=0.0) / 2.0
     z, r = np.broadcast_arrays(checked("depth", depth, at_least=0.0), checked("radius", radius, at_least=0.0))
     if not r.any():
         return np.asarray(1.0 - (z / np.hypot(z, rim)) ** 3, dtype=np.float64)

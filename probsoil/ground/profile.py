@@ -163,8 +163,9 @@ def points_in_situ(site: SiteModel, values: Values, n_sample: int) -> Points:
     """
     thickness, boundary, weights = layers_by_weight(site, values, n_sample)
     layer, centre, share = _relative_points(site)
-    if site.foundation is not None:
-        centre, share = _with_face_at(site.foundation.depth, site, boundary, centre, share)
+    if site.foundation is not None or site.face > 0.0:
+        base = np.broadcast_to(site.base, (n_sample,))
+        centre, share = _with_face_at(base, site, boundary, centre, share)
     each = chosen(thickness, layer)
     depth = chosen(boundary, layer) + centre * each
     total = total_vertical_stress(depth, boundary, **weights)
@@ -211,7 +212,7 @@ def _relative_points(site: SiteModel) -> tuple[IntArray, FloatArray, FloatArray]
 
 
 def _with_face_at(
-    base: float, site: SiteModel, boundary: FloatArray, centre: FloatArray, share: FloatArray
+    base: FloatArray, site: SiteModel, boundary: FloatArray, centre: FloatArray, share: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
     """Return points of which, in each realisation, none reaches across the base of a foundation.
 
@@ -219,11 +220,11 @@ def _with_face_at(
     the layer above and below the base are stretched so that the face stays there.
     """
     bottom = np.cumsum([form.mean_thickness for form in site.layers])
-    index = int(np.searchsorted(bottom, base, side="right"))
+    index = int(np.searchsorted(bottom, site.face, side="right"))
     if index >= bottom.size or not site.layers[index].is_clay:
         return centre, share
     thickness = boundary[:, index + 1] - boundary[:, index]
-    at_mean = 1.0 - (bottom[index] - base) / site.layers[index].mean_thickness
+    at_mean = 1.0 - (bottom[index] - site.face) / site.layers[index].mean_thickness
     here = (base - boundary[:, index]) / thickness
     if at_mean <= 0.0:
         return centre, share

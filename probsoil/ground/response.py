@@ -5,6 +5,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.ground.amounts import Amount
 from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
@@ -15,9 +16,15 @@ from probsoil.ground.level_held import level_held
 from probsoil.ground.profile import Values, clay_columns, points_in_situ, sample_size, yield_stresses
 from probsoil.ground.secondary_compression import secondary_settlement
 from probsoil.ground.site_model import SiteModel
-from probsoil.ground.stability import competing_families, slip_at_checks, zone_strengths
+from probsoil.ground.stability import (
+    competing_families,
+    moving_families,
+    slip_at_checks,
+    zone_strengths,
+)
 from probsoil.ground.top_up import added_fill
 from probsoil.ground.undrained_distortion import undrained_distortion
+from probsoil.ground.works import built, overdrawn
 
 COMPETING = 2e-3
 
@@ -65,6 +72,13 @@ class Response:
         Whether pore pressure in situ is no less than the weight of the ground somewhere.
     fill_added : ndarray, shape (n_sample, n_time), [m]
         Thickness of fill added on the centreline so that its level stays; no columns where none is.
+    circle : ndarray or None, shape (n_sample, n_check, 6), [m]
+        Where the critical circle lies, where the section of the fill is uncertain; otherwise None.
+    mean_width : float or ndarray, shape (n_sample,), [m]
+        Of the section of an embankment, area over height; 1 for any other load.
+    overdrawn : ndarray of bool or None, shape (n_sample,), [-]
+        Whether a stage was to take off more than is there, and took what was; None where nothing that is
+        built is uncertain.
     """
 
     times: FloatArray
@@ -84,6 +98,9 @@ class Response:
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
+    circle: FloatArray | None = None
+    overdrawn: BoolArray | None = None
+    mean_width: Amount = 1.0
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -156,6 +173,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
     constrained modulus; so does clay that has an undrained modulus, by distortion at constant volume.
     """
     n_sample = sample_size(values)
+    site = built(site, values, n_sample)
     points = points_in_situ(site, values, n_sample)
     columns = clay_columns(site, values, n_sample)
     yield_stress, floored = yield_stresses(site, values, points)
@@ -172,7 +190,7 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         distortion = undrained_distortion(site, values, ground)
         settlement = settlement + distortion
     strength, before = zone_strengths(site, values, ground, result)
-    slip, critical = slip_at_checks(site, values, ground, strength)
+    slip, critical, circle = slip_at_checks(site, values, ground, strength)
     slip[~result.converged] = np.nan
     bearing = bearing_at_checks(site, values, ground, strength)
     bearing[~result.converged] = np.nan
@@ -188,6 +206,9 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip_times=site.slip_times,
         slip=slip,
         critical_circle=critical,
+        circle=circle,
+        mean_width=1.0 if site.embankment is None else site.embankment.mean_width,
+        overdrawn=overdrawn(site, values, n_sample),
         bearing=bearing,
         fill_added=_fill_added(ground, result),
         converged=result.converged,
@@ -252,5 +273,9 @@ def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> Si
     if not site.layouts:
         return site
     state = ground_state(replace(site, slip_times=site.slip_times[:0]), pilot)
-    families = competing_families(site, pilot, state.ground, state.strength, within=within)
+    here = built(site, pilot, sample_size(pilot))
+    if here.section_varies:
+        moving = moving_families(here, pilot, state.ground, state.strength, within=within)
+        return replace(site, moving=moving)
+    families = competing_families(here, pilot, state.ground, state.strength, within=within)
     return replace(site, families=families)

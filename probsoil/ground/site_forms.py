@@ -3,11 +3,18 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
+from probsoil._typing import BoolArray
+from probsoil.ground.amounts import Amount, Reading, greater, lesser, mean_of
 from probsoil.ground.vertical_drains import influence_diameter
 from probsoil.scenario import Scenario
+from probsoil.scenario.amounts import varies
 from probsoil.scenario.layers import ClayLayer, GranularLayer
+from probsoil.scenario.quantities import stage_address
 
 _ROUNDING = 1e-9  # m; sums of heights carry rounding
+_LEAST_SERVED = 1.01  # diameters of a drain that it serves at least, where both are uncertain
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -66,7 +73,7 @@ class LayerForm:
         return bool(self.creep)
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class StageForm:
     """One change of load, spread evenly between two times.
 
@@ -76,9 +83,9 @@ class StageForm:
         Name of the stage.
     start, end : float, [years]
         When it begins and ends.
-    height : float, [m]
+    height : float or ndarray, shape (n_sample,), [m]
         Fill laid (negative: taken away).
-    pressure : float, [kPa]
+    pressure : float or ndarray, shape (n_sample,), [kPa]
         Pressure added besides the fill.
     load : str or None
         Further load that it belongs to; None for the load that is assessed.
@@ -89,8 +96,8 @@ class StageForm:
     name: str
     start: float
     end: float
-    height: float = 0.0
-    pressure: float = 0.0
+    height: Amount = 0.0
+    pressure: Amount = 0.0
     load: str | None = None
     excavate: float = 0.0
 
@@ -115,59 +122,105 @@ class LoadChange:
     digs: bool
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
 class DrainForm:
     """Vertical drains, apart from how much they smear.
 
     Attributes
     ----------
-    influence_diameter : float, [m]
+    influence_diameter : float or ndarray, shape (n_sample,), [m]
         Diameter of the cylinder of soil that one drain serves.
-    diameter : float, [m]
+    diameter : float or ndarray, shape (n_sample,), [m]
         Equivalent diameter of a drain.
-    smear_ratio : float, [-]
+    smear_ratio : float or ndarray, shape (n_sample,), [-]
         Diameter of the smear zone over that of the drain.
     installed : float, [years]
         Time from which the drains work.
-    bottom : float, [m]
+    bottom : float or ndarray, shape (n_sample,), [m]
         Depth that they reach.
-    discharge_capacity : float or None, [m3/year]
+    discharge_capacity : float, ndarray of shape (n_sample,), or None, [m3/year]
         Flow at a hydraulic gradient of one; None for no resistance.
     """
 
-    influence_diameter: float
-    diameter: float
-    smear_ratio: float
+    influence_diameter: Amount
+    diameter: Amount
+    smear_ratio: Amount
     installed: float
-    bottom: float
-    discharge_capacity: float | None
+    bottom: Amount
+    discharge_capacity: Amount | None
 
 
-def stage_forms(scenario: Scenario) -> tuple[StageForm, ...]:
+def stage_forms(scenario: Scenario, read: Reading = mean_of) -> tuple[StageForm, ...]:
     """Return the stages of a scenario.
 
     Parameters
     ----------
     scenario : Scenario
         As read.
+    read : callable
+        Gives their heights and pressures; the means if left out.
 
     Returns
     -------
     stages : tuple of StageForm
-        In order of time.
+        In order of time. Where heights or pressures are uncertain, a stage that takes off takes no more
+        than is there.
     """
+    heights, pressures = _placed(scenario, "height", read), _placed(scenario, "pressure", read)
     return tuple(
         StageForm(
             name=stage.name,
             start=stage.start,
             end=stage.end,
-            height=stage.height or 0.0,
-            pressure=stage.pressure or 0.0,
+            height=height,
+            pressure=pressure,
             load=stage.load,
             excavate=stage.excavate or 0.0,
         )
-        for stage in scenario.stages
+        for stage, height, pressure in zip(scenario.stages, heights, pressures, strict=True)
     )
+
+
+def _placed(scenario: Scenario, key: str, read: Reading) -> list[Amount]:
+    """Return the height or pressure of every stage."""
+    given = [getattr(stage, key) for stage in scenario.stages]
+    loads = [stage.load for stage in scenario.stages]
+    uncertain = {load for load, amount in zip(loads, given, strict=True) if varies(amount)}
+    there: dict[str | None, Amount] = {}
+    placed: list[Amount] = []
+    for stage, amount in zip(scenario.stages, given, strict=True):
+        change = read(f"{stage_address(stage.name)}.{key}", amount)
+        if stage.load in uncertain and read is not mean_of:
+            before = there.get(stage.load, 0.0)
+            change = greater(change, -before)
+            there[stage.load] = before + change
+        placed.append(change)
+    return placed
+
+
+def takes_too_much(scenario: Scenario, read: Reading, n_sample: int) -> BoolArray:
+    """Return where a stage was to take off more than is there.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+    read : callable
+        Gives heights and pressures of the realisations.
+    n_sample : int, [-]
+        Number of realisations.
+
+    Returns
+    -------
+    found : ndarray of bool, shape (n_sample,), [-]
+        Whether any stage then took what was there.
+    """
+    found = np.zeros(n_sample, dtype=np.bool_)
+    for key in ("height", "pressure"):
+        for stage, placed in zip(scenario.stages, _placed(scenario, key, read), strict=True):
+            wanted = read(f"{stage_address(stage.name)}.{key}", getattr(stage, key))
+            found |= np.asarray(placed > wanted + _ROUNDING)
+    return found
 
 
 def load_changes(stages: Sequence[StageForm]) -> tuple[LoadChange, ...]:
@@ -213,7 +266,7 @@ def laid_share(stage: StageForm, time: float) -> float:
     return min(max((time - stage.start) / (stage.end - stage.start), 0.0), 1.0)
 
 
-def height_at(stages: Sequence[StageForm], time: float, load: str | None = None) -> float:
+def height_at(stages: Sequence[StageForm], time: float, load: str | None = None) -> Amount:
     """Return the height of fill that stages have laid by a time.
 
     Parameters
@@ -227,36 +280,52 @@ def height_at(stages: Sequence[StageForm], time: float, load: str | None = None)
 
     Returns
     -------
-    height : float, [m]
+    height : float or ndarray, shape (n_sample,), [m]
         Exactly zero where all of it has been taken away.
     """
     height = sum(stage.height * laid_share(stage, time) for stage in stages if stage.load == load)
+    if isinstance(height, np.ndarray):
+        return np.where(height > _ROUNDING, height, 0.0)
     return height if height > _ROUNDING else 0.0  # a removal may leave a rounding error behind
 
 
-def drain_form(scenario: Scenario) -> DrainForm | None:
+def drain_form(scenario: Scenario, read: Reading = mean_of) -> DrainForm | None:
     """Return the vertical drains of a scenario.
 
     Parameters
     ----------
     scenario : Scenario
         As read.
+    read : callable
+        Gives their spacing and the like; the means if left out.
 
     Returns
     -------
     drains : DrainForm or None
-        None without drains.
+        None without drains. Smear zones never reach further than the soil that a drain serves.
     """
     given = scenario.drains
     if given is None:
         return None
+
+    def number(key: str) -> Amount:
+        return read(f"drains.{key}", getattr(given, key))
+
+    served, diameter, smear_ratio = (
+        influence_diameter(number("spacing"), given.pattern),
+        number("equivalent_diameter"),
+        number("smear_ratio"),
+    )
+    if read is not mean_of:
+        served = greater(served, _LEAST_SERVED * diameter)
+        smear_ratio = lesser(smear_ratio, served / diameter * (1.0 - _ROUNDING))
     return DrainForm(
-        influence_diameter=influence_diameter(given.spacing, given.pattern),
-        diameter=given.equivalent_diameter,
-        smear_ratio=given.smear_ratio,
+        influence_diameter=served,
+        diameter=diameter,
+        smear_ratio=smear_ratio,
         installed=given.installed,
-        bottom=given.bottom,
-        discharge_capacity=given.discharge_capacity,
+        bottom=number("bottom"),
+        discharge_capacity=None if given.discharge_capacity is None else number("discharge_capacity"),
     )
 
 

@@ -1,10 +1,13 @@
 """What is laid out once for all realisations: the embankment, when things are looked at, slip circles."""
 
 from collections.abc import Sequence
+from functools import reduce
+from itertools import accumulate
 
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import Amount, Reading, greater, lesser, mean_of
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import further_foundation
 from probsoil.ground.further_load import FurtherLoadForm
@@ -23,7 +26,9 @@ NONE = Constant(value=0.0)
 """What is given for nothing."""
 
 
-def embankment_of(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment | None:
+def embankment_of(
+    scenario: Scenario, stages: Sequence[StageForm], read: Reading = mean_of
+) -> Embankment | None:
     """Return the embankment that a load is.
 
     Parameters
@@ -32,25 +37,46 @@ def embankment_of(scenario: Scenario, stages: Sequence[StageForm]) -> Embankment
         As read.
     stages : sequence of StageForm
         In order of time.
+    read : callable
+        Gives width and slope; the means if left out.
 
     Returns
     -------
     embankment : Embankment or None
         None for any other load.
     """
-    if not isinstance(scenario.load, EmbankmentLoad):
+    load = scenario.load
+    if not isinstance(load, EmbankmentLoad):
         return None
-    full_height = greatest_height(stages)
+    pit = pit_depth(stages)
+    full_height = greatest_height(stages) - pit
     return Embankment(
-        crest_width=scenario.load.crest_width,
-        side_slope=scenario.load.side_slope,
+        pit=pit,
+        crest_width=read("load.crest_width", load.crest_width),
+        side_slope=read("load.side_slope", load.side_slope),
         full_height=full_height,
-        berm_width=scenario.load.berm_width or 0.0,
-        berm_height=scenario.load.berm_height or 0.0,
+        berm_width=load.berm_width or 0.0,
+        berm_height=lesser(load.berm_height or 0.0, full_height),
     )
 
 
-def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> float:
+def pit_depth(stages: Sequence[StageForm]) -> float:
+    """Return to what depth stages dig soil out in all.
+
+    Parameters
+    ----------
+    stages : sequence of StageForm
+        In order of time.
+
+    Returns
+    -------
+    depth : float, [m]
+        Below ground level.
+    """
+    return sum((stage.excavate for stage in stages), 0.0)
+
+
+def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> Amount:
     """Return the greatest height of fill that a load ever has.
 
     Parameters
@@ -62,13 +88,15 @@ def greatest_height(stages: Sequence[StageForm], load: str | None = None) -> flo
 
     Returns
     -------
-    height : float, [m]
+    height : float or ndarray, shape (n_sample,), [m]
         Greatest over the ends of its stages.
     """
-    return float(np.cumsum([stage.height for stage in stages if stage.load == load]).max())
+    return reduce(greater, accumulate(stage.height for stage in stages if stage.load == load))
 
 
-def further_load_forms(scenario: Scenario, stages: Sequence[StageForm]) -> tuple[FurtherLoadForm, ...]:
+def further_load_forms(
+    scenario: Scenario, stages: Sequence[StageForm], read: Reading = mean_of
+) -> tuple[FurtherLoadForm, ...]:
     """Return the further loads of a scenario.
 
     Parameters
@@ -77,6 +105,8 @@ def further_load_forms(scenario: Scenario, stages: Sequence[StageForm]) -> tuple
         As read.
     stages : sequence of StageForm
         In order of time.
+    read : callable
+        Gives widths, slopes and depths; the means if left out.
 
     Returns
     -------
@@ -88,15 +118,15 @@ def further_load_forms(scenario: Scenario, stages: Sequence[StageForm]) -> tuple
             name=load.name,
             address=further_address(load.name),
             embankment=Embankment(
-                crest_width=load.crest_width,
-                side_slope=load.side_slope,
+                crest_width=read(f"{further_address(load.name)}.crest_width", load.crest_width),
+                side_slope=read(f"{further_address(load.name)}.side_slope", load.side_slope),
                 full_height=greatest_height(stages, load.name),
                 berm_width=load.berm_width or 0.0,
-                berm_height=load.berm_height or 0.0,
+                berm_height=lesser(load.berm_height or 0.0, greatest_height(stages, load.name)),
             )
             if isinstance(load, FurtherEmbankment)
             else None,
-            foundation=further_foundation(load),
+            foundation=further_foundation(load, read),
             x=getattr(load, "x", 0.0),
             y=getattr(load, "y", 0.0),
         )
@@ -124,7 +154,7 @@ def traffic_start(load: Load, stages: Sequence[StageForm]) -> float:
     if load.traffic_from is not None:
         return load.traffic_from
     own = [stage for stage in stages if stage.load is None]
-    heights = np.cumsum([stage.height for stage in own])
+    heights = np.cumsum([float(stage.height) for stage in own])
     highest = int(np.argmax(heights > heights.max() - _ROUNDING))
     return own[highest].end
 
@@ -180,7 +210,8 @@ def recorded_times(
     kept = ends | degree | slip | _times_of(scenario, "bearing_safety") | {float(scenario.horizon)}
     kept |= set() if hold is None else {hold}
     record = np.array(sorted(time for time in kept if time > 0.0), dtype=np.float64)
-    if embankment is None or getattr(scenario.load, "fill_phi", None) is None:
+    fill_phi = getattr(scenario.load, "fill_phi", None)
+    if embankment is None or embankment.pit > 0.0 or fill_phi is None:  # no slip through replaced ground
         return record, np.zeros(0)
     check = [time for time in sorted(ends | slip) if time > 0.0 and height_at(stages, time) > 0.0]
     return record, np.array(check, dtype=np.float64)
@@ -215,7 +246,26 @@ def bearing_check_times(scenario: Scenario, stages: Sequence[StageForm]) -> Floa
 def _pressed(stages: Sequence[StageForm], time: float) -> bool:
     own = [stage for stage in stages if stage.load is None]
     pressure = sum(stage.pressure * laid_share(stage, time) for stage in own)
-    return height_at(stages, time) > 0.0 or pressure > 1e-9
+    return bool(height_at(stages, time) > 0.0 or pressure > 1e-9)
+
+
+def circle_depth(embankment: Embankment, layers: Sequence[LayerForm]) -> float:
+    """Return the depth below which no slip circle goes.
+
+    Parameters
+    ----------
+    embankment : Embankment
+        In plain numbers.
+    layers : sequence of LayerForm
+        From ground level down.
+
+    Returns
+    -------
+    depth : float, [m]
+        Somewhat below the mean bottom of the profile, at most a share of the width of the embankment.
+    """
+    bottom = np.cumsum([layer.mean_thickness for layer in layers]).tolist()[-1]
+    return float(min(_DEEPER * bottom, _WIDTHS * embankment.base_width))
 
 
 def circle_layouts(
@@ -252,7 +302,7 @@ def circle_layouts(
     if embankment is None:
         return ()
     boundaries = np.cumsum([layer.mean_thickness for layer in layers]).tolist()
-    depth = min(_DEEPER * boundaries[-1], _WIDTHS * embankment.base_width)
+    depth = circle_depth(embankment, layers)
     frictional = any(not layer.is_clay for layer in layers)
     return tuple(
         CircleLayout(

@@ -2,10 +2,12 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import reduce
 
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import Amount, greater
 from probsoil.ground.cells import DEFAULT_CELLS, FOUNDATION_CELLS, Cells, graded_cells
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.foundation import Foundation, foundation_of
@@ -28,10 +30,12 @@ from probsoil.ground.site_layout import (
     embankment_of,
     further_load_forms,
     limit_times,
+    pit_depth,
     recorded_times,
     traffic_start,
 )
 from probsoil.ground.slip_circles import CircleFamily, CircleLayout
+from probsoil.ground.slip_moving import MovingFamily
 from probsoil.ground.time_steps import time_axis
 from probsoil.scenario import Scenario
 
@@ -74,6 +78,8 @@ class SiteModel:
         Circles to look at, one layout for each of `slip_times`.
     families : tuple of CircleFamily
         Circles that compete, one family for each of `slip_times`; empty before they are screened.
+    moving : tuple of MovingFamily
+        The same where the section of the fill is uncertain: then there are no `families`.
     bearing_times : ndarray, shape (n_bearing,), [years]
         Times among `record` at which bearing is looked at (load on a foundation).
     traffic_from : float, [years]
@@ -88,6 +94,12 @@ class SiteModel:
         Time until which fill is added so that its level stays; None where none is.
     further_loads : tuple of FurtherLoadForm
         Loads beside the one that is assessed.
+    works : Scenario or None
+        Says what is built, where anything of it is uncertain: then heights, widths and so on are here the
+        means, and `works.built` puts those of the realisations in their place. None where nothing is.
+    face : float, [m]
+        Depth of the base of a foundation, or of the ground dug out below an embankment or an area, for which
+        the cells were laid out.
     """
 
     layers: tuple[LayerForm, ...]
@@ -103,6 +115,7 @@ class SiteModel:
     slip_times: FloatArray
     layouts: tuple[CircleLayout, ...]
     families: tuple[CircleFamily, ...] = ()
+    moving: tuple[MovingFamily, ...] = ()
     foundation: Foundation | None = None
     bearing_times: FloatArray = field(default_factory=lambda: np.zeros(0))
     traffic_from: float = np.inf
@@ -111,6 +124,8 @@ class SiteModel:
     station_name: str | None = None
     hold_level_until: float | None = None
     further_loads: tuple[FurtherLoadForm, ...] = ()
+    works: Scenario | None = None
+    face: float = 0.0
 
     @property
     def seeps(self) -> bool:
@@ -133,7 +148,7 @@ class SiteModel:
         times = {0.0, self.horizon, *(t for stage in self.stages for t in (stage.start, stage.end))}
         return np.array(sorted(times))
 
-    def fill_height(self, time: float, load: str | None = None) -> float:
+    def fill_height(self, time: float, load: str | None = None) -> Amount:
         """Return the height of fill at a time.
 
         Parameters
@@ -145,13 +160,19 @@ class SiteModel:
 
         Returns
         -------
-        height : float, [m]
+        height : float or ndarray, shape (n_sample,), [m]
             Fill on the ground.
         """
-        return sum(stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load)
+        laid = [stage.height * laid_share(stage, time) for stage in self.stages if stage.load == load]
+        return sum(laid, 0.0)
 
-    def greatest_fill_height(self, time: float) -> float:
-        """Return the height of fill at a time where it is highest on the site.
+    @property
+    def base(self) -> Amount:
+        """Depth below which the load adds stress, [m]."""
+        return self.face if self.foundation is None else self.foundation.depth
+
+    def greatest_fill_height(self, time: float) -> Amount:
+        """Return the height of fill above ground level at a time where it is highest on the site.
 
         Parameters
         ----------
@@ -160,13 +181,16 @@ class SiteModel:
 
         Returns
         -------
-        height : float, [m]
+        height : float or ndarray, shape (n_sample,), [m]
             Of the load that is assessed where there is no other.
         """
         further = [self.fill_height(time, load.name) for load in self.further_loads]
-        return max([self.fill_height(time), *further])
+        own = self.fill_height(time)
+        if self.foundation is None and self.face > 0.0:
+            own = greater(own - self.face, 0.0)
+        return reduce(greater, further, own)
 
-    def pressure(self, time: float, load: str | None = None) -> float:
+    def pressure(self, time: float, load: str | None = None) -> Amount:
         """Return the pressure that stages have added besides fill.
 
         Parameters
@@ -178,17 +202,25 @@ class SiteModel:
 
         Returns
         -------
-        pressure : float, [kPa]
+        pressure : float or ndarray, shape (n_sample,), [kPa]
             Pressure on the ground.
         """
-        return sum(stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load)
+        added = [stage.pressure * laid_share(stage, time) for stage in self.stages if stage.load == load]
+        return sum(added, 0.0)
+
+    @property
+    def section_varies(self) -> bool:
+        """Whether the section of an embankment is that of each realisation."""
+        shape = self.embankment
+        sizes = () if shape is None else (shape.crest_width, shape.side_slope, shape.full_height)
+        return any(isinstance(size, np.ndarray) for size in sizes)
 
     @property
     def excavates(self) -> bool:
         """Whether soil is dug out for the foundation; then pressures count what is placed in full."""
         return any(stage.excavate for stage in self.stages)
 
-    def dug(self, time: float) -> float:
+    def dug(self, time: float) -> Amount:
         """Return the depth to which soil has been dug out.
 
         Parameters
@@ -198,10 +230,13 @@ class SiteModel:
 
         Returns
         -------
-        depth : float, [m]
-            Below ground level.
+        depth : float or ndarray, shape (n_sample,), [m]
+            Below ground level; where the depth of the base is uncertain, in proportion to it.
         """
-        return sum(stage.excavate * laid_share(stage, time) for stage in self.stages)
+        depth = sum(stage.excavate * laid_share(stage, time) for stage in self.stages)
+        if self.foundation is None or isinstance(self.foundation.depth, float):
+            return depth
+        return depth / self.face * self.foundation.depth
 
     @property
     def point(self) -> tuple[float, float]:
@@ -264,13 +299,14 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
     stages = stage_forms(scenario)
     embankment = embankment_of(scenario, stages)
     foundation = foundation_of(scenario.load)
+    face = pit_depth(stages) if foundation is None else float(foundation.depth)
     record, slip_times = recorded_times(scenario, stages, embankment)
     horizon = float(scenario.horizon)
     cells = graded_cells(
         np.array([layer.mean_thickness for layer in layers]),
         np.array([layer.is_clay for layer in layers]),
         base_drained=scenario.site.base == "drained",
-        load_depth=0.0 if foundation is None else foundation.depth,
+        load_depth=face,
         target=_cell_target(layers, foundation) * refine,
     )
     # where stages of several loads begin or end together, the shortest says how fine the steps are
@@ -315,10 +351,12 @@ def site_model(scenario: Scenario, *, refine: int = 1) -> SiteModel:
         base_head=scenario.site.base_head is not None,
         hold_level_until=hold,
         further_loads=further_load_forms(scenario, stages),
+        works=scenario if any(one.of_works for one in scenario.quantities()) else None,
+        face=face,
     )
 
 
 def _cell_target(layers: Sequence[LayerForm], foundation: Foundation | None) -> int:
     """Return how many cells there should be: more where the stress of a small foundation fades with depth."""
     depth = sum(layer.mean_thickness for layer in layers)
-    return DEFAULT_CELLS if foundation is None or foundation.width >= depth else FOUNDATION_CELLS
+    return DEFAULT_CELLS if foundation is None or float(foundation.width) >= depth else FOUNDATION_CELLS

@@ -10,12 +10,12 @@ from probsoil.ground.lanes import LANES, Lanes
 from probsoil.ground.slip_circles import (
     CircleFamily,
     CircleLayout,
-    Circles,
     candidate_circles,
     circles_beside,
     dense_weights,
     weighed,
 )
+from probsoil.ground.slip_driving import Circles
 
 _BLOCK = 2000  # circles weighed at a time while screening
 _IN_DEPTH = np.array([[0.0, 0.0, step] for step in (-1.0, 0.0, 1.0)])
@@ -199,15 +199,68 @@ def competing_circles(
     serves most of the realisations not yet served; to each come two beside it in depth, for other
     realisations, whose layers end elsewhere.
     """
+    chosen = chosen_circles(ground, fill, layout, within=within)
+    return weighed(layout, chosen, layout.slice_edge_for(chosen.touch))
+
+
+def chosen_circles(
+    ground: GroundStrength, fill: FillStrength, layout: CircleLayout, *, within: float
+) -> Circles:
+    """Return the circles of `competing_circles` without their weights.
+
+    Parameters
+    ----------
+    ground : GroundStrength
+        Strength of the layers, n_sample realisations.
+    fill : FillStrength
+        Fill of the same realisations.
+    layout : CircleLayout
+        Circles to choose from.
+    within : float, [-]
+        As there.
+
+    Returns
+    -------
+    circles : Circles
+        Geometry.
+    """
     circles = _promising(ground, fill, layout)
     factor = _every_factor(ground, fill, layout, circles, layout.slice_edge)
     for moves, worth in _ROUNDS:
         near = factor <= (1.0 + worth) * factor.min(axis=0)
         circles = circles_beside(layout, circles[np.asarray(near.any(axis=1))], moves)
-        factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles))
-    chosen = circles[_serving(factor <= (1.0 + within) * factor.min(axis=0))]
-    chosen = circles_beside(layout, chosen, _IN_DEPTH / 3.0)
-    return weighed(layout, chosen, layout.slice_edge_for(chosen))
+        factor = _every_factor(ground, fill, layout, circles, layout.slice_edge_for(circles.touch))
+    chosen = circles[circles_serving(factor <= (1.0 + within) * factor.min(axis=0))]
+    return circles_beside(layout, chosen, _IN_DEPTH / 3.0)
+
+
+def chosen_in_fill(
+    ground: GroundStrength, fill: FillStrength, layout: CircleLayout, *, within: float
+) -> Circles:
+    """Return a few circles that are the worst, or nearly so, of those wholly in the fill.
+
+    Parameters
+    ----------
+    ground : GroundStrength
+        Strength of the layers, n_sample realisations.
+    fill : FillStrength
+        Fill of the same realisations.
+    layout : CircleLayout
+        Circles to choose from.
+    within : float, [-]
+        As for `competing_circles`.
+
+    Returns
+    -------
+    circles : Circles
+        Geometry; none where the layout has no circles in the fill.
+    """
+    circles = candidate_circles(layout)
+    circles = circles[circles.touch <= 0.0]
+    if not len(circles):
+        return circles
+    factor = _every_factor(ground, fill, layout, circles, layout.slice_edge)
+    return circles[circles_serving(factor <= (1.0 + within) * factor.min(axis=0))]
 
 
 def _promising(ground: GroundStrength, fill: FillStrength, layout: CircleLayout) -> Circles:
@@ -235,14 +288,44 @@ def _every_factor(
         driving = np.outer(circles.driving[part], fill.driving_weight)
         driving += np.outer(circles.traffic[part], fill.on_top)
         factor[part] = (rows @ strength + by_fill) / driving
-    below = circles.touch[:, None] > ground.boundary[None, :, -1] + _LEVEL
-    below[np.argmin(circles.touch)] = False
-    factor[below] = np.inf
+    factor[~circles_above_base(circles, ground.boundary[None, :, -1])] = np.inf
     return factor
 
 
-def _serving(near: BoolArray) -> IntArray:
-    """Choose circles until every realisation has one that is near its least factor, greedily."""
+def circles_above_base(circles: Circles, bottom: FloatArray | float) -> BoolArray:
+    """Return which circles stay above the firm base.
+
+    Parameters
+    ----------
+    circles : Circles
+        Geometry.
+    bottom : ndarray, shape (1, n_sample), or float, [m]
+        Depth of the base.
+
+    Returns
+    -------
+    above : ndarray of bool, shape (n_circle, n_sample) or (n_circle,), [-]
+        The shallowest circle counts as one of them wherever the base is.
+    """
+    touch = circles.touch if np.ndim(bottom) == 0 else circles.touch[:, None]
+    above = np.asarray(touch <= bottom + _LEVEL)
+    above[np.argmin(circles.touch)] = True
+    return above
+
+
+def circles_serving(near: BoolArray) -> IntArray:
+    """Choose circles until every realisation has one that is near its least factor, greedily.
+
+    Parameters
+    ----------
+    near : ndarray of bool, shape (n_circle, n_sample), [-]
+        Whether a circle is near the least factor of a realisation; each has one.
+
+    Returns
+    -------
+    chosen : ndarray of int, shape (n_chosen,), [-]
+        Numbers of the circles, rising.
+    """
     chosen: list[int] = []
     left = np.ones(near.shape[1], dtype=bool)
     while left.any():

@@ -6,15 +6,15 @@ resisting moment. Coordinates: x from the outer toe towards the embankment, y up
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, fields
-from itertools import pairwise
+from dataclasses import dataclass
 
 import numpy as np
 
-from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil._typing import FloatArray, IntArray
 from probsoil.errors import ParameterError
 from probsoil.ground import _circle_kernel as kernel
 from probsoil.ground.embankment import EmbankmentSection
+from probsoil.ground.slip_driving import Circles, driven
 from probsoil.ground.slip_grid import (
     Arcs,
     arcs_beside,
@@ -28,33 +28,8 @@ _SLICES, _FINER = 72, 1.5  # slices, and how many times finer they are once circ
 _DENSER_IN_FILL = 1.5  # a slip of the shoulder under traffic is small
 _CROWDED = 0.3  # of the spacing
 _SHALLOWEST = 0.2  # m; a circle that goes less deep into the ground slips in the fill
-_SHALLOWEST_IN_FILL = 0.5  # m below the shoulder; what is smaller is ravelling
-_LEAST_DRIVING = 1e-9
-
-
-@dataclass(frozen=True, slots=True, eq=False, kw_only=True)
-class Circles(Arcs):
-    """Circles and what drives them.
-
-    Attributes
-    ----------
-    driving : ndarray, shape (n_circle,), [m3]
-        Overturning moment per metre run and unit weight of fill.
-    traffic : ndarray, shape (n_circle,), [m2]
-        Overturning moment per metre run and kPa of pressure on the top.
-    loaded_x : ndarray, shape (n_circle,), [m]
-        Where traffic on the top that drives begins; where the circle enters if none does.
-    """
-
-    driving: FloatArray
-    traffic: FloatArray
-    loaded_x: FloatArray
-
-    def __len__(self) -> int:
-        return int(self.radius.size)
-
-    def __getitem__(self, which: slice | BoolArray | IntArray) -> "Circles":
-        return Circles(**{one.name: getattr(self, one.name)[which] for one in fields(Circles)})
+SHALLOWEST_IN_FILL = 0.5
+"""Depth below the shoulder of the shallowest circle in the fill, [m]; what is smaller is ravelling."""
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -146,20 +121,20 @@ class CircleLayout:
         """Depths between the slices in which strength is wanted, shape (n_slice + 1,), [m]."""
         return self._edges(1.0, self.inner_boundaries)
 
-    def slice_edge_for(self, circles: Circles) -> FloatArray:
+    def slice_edge_for(self, touch: FloatArray) -> FloatArray:
         """Return depths between slices that end where circles do.
 
         Parameters
         ----------
-        circles : Circles
-            Some of the layout.
+        touch : ndarray, shape (n_circle,), [m]
+            Depths of their lowest points.
 
         Returns
         -------
         edge : ndarray, shape (n_slice + 1,), [m]
             A circle runs along the bottom of the last slice it cuts, and takes nothing from below it.
         """
-        touch = np.round(circles.touch, 6)
+        touch = np.round(touch, 6)
         inner = touch[(touch > 0.0) & (touch < self.depth)]
         edge = self._edges(_FINER, sorted({*self.inner_boundaries, *inner.tolist()}))
         return edge[: max(int(np.searchsorted(edge, touch.max(initial=0.0))), 1) + 1]
@@ -179,6 +154,22 @@ class CircleLayout:
         shallow = min(_SHALLOWEST, 0.5 * self.depth)
         touch = ground_touches(self.depth, self.density, shallow)
         return _with(touch, [value for value in self.inner_boundaries if value > shallow])
+
+    def depth_step(self, touch: FloatArray) -> FloatArray:
+        """Return how far apart in depth candidates are near given depths.
+
+        Parameters
+        ----------
+        touch : ndarray, shape (n_circle,), [m]
+            Depths.
+
+        Returns
+        -------
+        step : ndarray, shape (n_circle,), [m]
+            Spacing.
+        """
+        depths = self.touch
+        return np.asarray(np.interp(touch, depths, np.gradient(depths)))
 
 
 def candidate_circles(layout: CircleLayout) -> Circles:
@@ -205,9 +196,9 @@ def candidate_circles(layout: CircleLayout) -> Circles:
     section, density = layout.section, layout.density
     groups: list[Arcs] = [arcs_through_ground(section, layout.touch, reach=layout.reach, density=density)]
     if layout.within_fill:
-        thin = min(_SHALLOWEST_IN_FILL, 0.5 * section.height)
+        thin = min(SHALLOWEST_IN_FILL, 0.5 * section.height)
         groups.append(arcs_within_fill(section, shallowest=thin, density=_DENSER_IN_FILL * density))
-    return _driven(section, groups)
+    return driven(section, groups)
 
 
 def circles_beside(layout: CircleLayout, circles: Circles, moves: FloatArray) -> Circles:
@@ -230,24 +221,13 @@ def circles_beside(layout: CircleLayout, circles: Circles, moves: FloatArray) ->
     """
     in_ground = circles.touch > 0.0
     through, within = circles[in_ground], circles[~in_ground]
-    depths = layout.touch
     step = np.stack(
         [
             *end_steps(layout.section, through, layout.reach) / layout.density,
-            np.interp(through.touch, depths, np.gradient(depths)),
+            layout.depth_step(through.touch),
         ]
     )
-    return _driven(layout.section, [arcs_beside(layout.section, through, moves, step, layout.depth), within])
-
-
-def _driven(section: EmbankmentSection, groups: Sequence[Arcs]) -> Circles:
-    """Join arcs and add what drives them; those that turn over no fill are left out."""
-    names = [one.name for one in fields(Arcs)]
-    arcs = {name: np.concatenate([getattr(group, name) for group in groups]) for name in names}
-    loaded, traffic = _traffic(section, Arcs(**arcs))
-    driving = _fill_moment(section, Arcs(**arcs))
-    circles = Circles(**arcs, driving=driving, traffic=traffic, loaded_x=loaded)
-    return circles[driving > _LEAST_DRIVING]
+    return driven(layout.section, [arcs_beside(layout.section, through, moves, step, layout.depth), within])
 
 
 def weighed(layout: CircleLayout, circles: Circles, edge: FloatArray | None = None) -> CircleFamily:
@@ -352,41 +332,6 @@ def _form(section: EmbankmentSection) -> kernel.Form:
         slope_zone=section.slope_zone,
         n_zone=section.n_zone,
     )
-
-
-def _fill_moment(section: EmbankmentSection, arcs: Arcs) -> FloatArray:
-    """Return the moment of the fill inside each circle about its centre per unit weight, [m3]."""
-    first, last = np.maximum(arcs.exit_x, 0.0) - arcs.centre_x, arcs.entry_x - arcs.centre_x
-    moment = np.zeros(first.size)
-    for (x, y), (next_x, next_y) in pairwise(section.outline.tolist()):
-        if next_x > x:
-            rise = (next_y - y) / (next_x - x)
-            a, b = (np.clip(end, x - arcs.centre_x, next_x - arcs.centre_x) for end in (first, last))
-            level = y + rise * (arcs.centre_x - x)  # of this side of the surface, continued to the centre
-            moment += level * (b * b - a * a) / 2.0 + rise * (b**3 - a**3) / 3.0
-    ground = np.sqrt(np.maximum(arcs.radius**2 - arcs.centre_y**2, 0.0))  # the arc lies in the ground between
-    left, right = np.maximum(np.minimum(-ground, last), first), np.minimum(np.maximum(ground, first), last)
-    below = (
-        _arc_moment(arcs, last)
-        - _arc_moment(arcs, right)
-        + _arc_moment(arcs, left)
-        - _arc_moment(arcs, first)
-    )
-    return np.asarray(moment - below)
-
-
-def _arc_moment(arcs: Arcs, u: FloatArray) -> FloatArray:
-    """Return the integral of the arc's level times the distance u from the centre, up to u."""
-    return np.asarray(arcs.centre_y * u * u / 2.0 + np.maximum(arcs.radius**2 - u * u, 0.0) ** 1.5 / 3.0)
-
-
-def _traffic(section: EmbankmentSection, arcs: Arcs) -> tuple[FloatArray, FloatArray]:
-    """Return where traffic on the top begins to drive, and its moment per kPa."""
-    on_top = arcs.entry_y >= section.height
-    first = np.minimum(np.maximum(section.shoulder, arcs.centre_x), arcs.entry_x)
-    first = np.where(on_top, first, arcs.entry_x)
-    arms = (arcs.entry_x - arcs.centre_x) ** 2 - (first - arcs.centre_x) ** 2
-    return first, np.asarray(0.5 * arms)
 
 
 def _with(depths: FloatArray, fixed: Sequence[float]) -> FloatArray:

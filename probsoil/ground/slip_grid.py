@@ -8,7 +8,7 @@ from itertools import pairwise
 
 import numpy as np
 
-from probsoil._typing import BoolArray, FloatArray
+from probsoil._typing import BoolArray, FloatArray, IntArray
 from probsoil.ground.embankment import EmbankmentSection
 
 _GROUND_EXITS, _FACE_EXITS, _BERM_POINTS = 24, 16, 10
@@ -91,7 +91,7 @@ def arcs_through_ground(
     """
     leave, enter, depth = _mesh(_exits(section, reach, density), _entries(section, reach, density), touch)
     centre, radius = _touching(leave, enter, depth)
-    return _valid(section, leave, enter, np.stack([centre, radius - depth], axis=1), radius)
+    return _sound_arcs(section, leave, enter, np.stack([centre, radius - depth], axis=1), radius)[0]
 
 
 def arcs_beside(
@@ -125,7 +125,36 @@ def arcs_beside(
     kept &= enter[:, 1] == np.tile(arcs.entry_y, len(moves))
     leave, enter, touch = leave[kept], enter[kept], touch[kept]
     centre, radius = _touching(leave, enter, touch)
-    return _valid(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)
+    return _sound_arcs(section, leave, enter, np.stack([centre, radius - touch], axis=1), radius)[0]
+
+
+def arcs_touching(
+    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, touch: FloatArray
+) -> tuple[Arcs, IntArray]:
+    """Return the circles through pairs of points that touch given depths.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    leave, enter : ndarray, shape (n_circle, 2), [m]
+        Where they leave and enter.
+    touch : ndarray, shape (n_circle,), [m]
+        Depths, above zero.
+
+    Returns
+    -------
+    arcs : Arcs
+        Those that there are: they enter higher and further in than they leave, and do not come out between.
+    number : ndarray of int, shape (n_arc,), [-]
+        Which of the given circles they are.
+    """
+    number = np.flatnonzero((leave < enter).all(axis=1))
+    leave, enter, touch = leave[number], enter[number], touch[number]
+    across, radius = _touching(leave, enter, touch)
+    centre = np.stack([across, radius - touch], axis=1)
+    arcs, sound = _sound_arcs(section, leave, enter, centre, radius)
+    return arcs, number[sound]
 
 
 def surface_point(section: EmbankmentSection, way: FloatArray) -> FloatArray:
@@ -198,17 +227,70 @@ def arcs_within_fill(section: EmbankmentSection, *, shallowest: float, density: 
     bend = np.linspace(0.0, 1.0, round(_BENDS * density) + 1)[1:]
     reach = _REACH_IN_FILL * section.height
     leave, enter, share = _mesh(_exits_on_fill(section, density), _entries(section, reach, density), bend)
+    return arcs_bent(section, leave, enter, share, shallowest=shallowest)[0]
+
+
+def arcs_bent(
+    section: EmbankmentSection, leave: FloatArray, enter: FloatArray, share: FloatArray, *, shallowest: float
+) -> tuple[Arcs, IntArray]:
+    """Return circles in the fill through pairs of points.
+
+    Parameters
+    ----------
+    section : EmbankmentSection
+        Fill.
+    leave, enter : ndarray, shape (n_circle, 2), [m]
+        Where they leave and enter, entries higher and further in.
+    share : ndarray, shape (n_circle,), [-]
+        Bend, as a share of the greatest there is: of a circle that touches ground level or enters vertically.
+    shallowest : float, [m]
+        How deep they pass below the shoulder behind which they enter, at least.
+
+    Returns
+    -------
+    arcs : Arcs
+        Those that there are.
+    number : ndarray of int, shape (n_arc,), [-]
+        Which of the given circles they are.
+    """
+    half = share * _greatest_half_angle(leave, enter)
     run, rise = (enter - leave).T
     incline, chord = np.arctan2(rise, run), np.hypot(run, rise)
-    # half the angle of the arc: no more than where the circle touches ground level or enters vertically
-    half = share * np.minimum(_half_angle_on_ground(leave, enter, chord), 0.5 * np.pi - incline)
     radius = chord / (2.0 * np.sin(half))
     start = incline - half
     centre = leave + radius[:, None] * np.stack([-np.sin(start), np.cos(start)], axis=1)
     shoulder = np.where(enter[:, 1] < section.height, section.corners[1, 0], section.shoulder)
     lowest = centre[:, 1] - np.sqrt(np.maximum(radius**2 - (shoulder - centre[:, 0]) ** 2, 0.0))
     deep = (enter[:, 1] - lowest >= shallowest) & (leave[:, 0] <= shoulder)
-    return _valid(section, leave[deep], enter[deep], centre[deep], radius[deep])
+    number = np.flatnonzero(deep)
+    arcs, sound = _sound_arcs(section, *(part[number] for part in (leave, enter, centre, radius)))
+    return arcs, number[sound]
+
+
+def bend_of(arcs: Arcs) -> FloatArray:
+    """Return the bend of circles in the fill.
+
+    Parameters
+    ----------
+    arcs : Arcs
+        Circles.
+
+    Returns
+    -------
+    share : ndarray, shape (n_circle,), [-]
+        As `arcs_bent` takes it.
+    """
+    leave = np.stack([arcs.exit_x, arcs.exit_y], axis=1)
+    enter = np.stack([arcs.entry_x, arcs.entry_y], axis=1)
+    chord = np.hypot(*(enter - leave).T)
+    return np.asarray(np.arcsin(chord / (2.0 * arcs.radius)) / _greatest_half_angle(leave, enter))
+
+
+def _greatest_half_angle(leave: FloatArray, enter: FloatArray) -> FloatArray:
+    """Return half the angle of the arc that touches ground level or enters vertically."""
+    run, rise = (enter - leave).T
+    on_ground = _half_angle_on_ground(leave, enter, np.hypot(run, rise))
+    return np.asarray(np.minimum(on_ground, 0.5 * np.pi - np.arctan2(rise, run)))
 
 
 def _half_angle_on_ground(leave: FloatArray, enter: FloatArray, chord: FloatArray) -> FloatArray:
@@ -284,15 +366,15 @@ def _touching(leave: FloatArray, enter: FloatArray, touch: FloatArray) -> tuple[
     return centre, ((centre - out) ** 2 + a * a) / (2.0 * a)
 
 
-def _valid(
+def _sound_arcs(
     section: EmbankmentSection, leave: FloatArray, enter: FloatArray, centre: FloatArray, radius: FloatArray
-) -> Arcs:
-    """Keep circles whose upper end does not overhang and that do not come out on the way."""
+) -> tuple[Arcs, IntArray]:
+    """Keep circles whose upper end does not overhang and that do not come out on the way; say which."""
     with np.errstate(invalid="ignore"):
         good = (
             np.isfinite(radius) & (centre[:, 1] >= enter[:, 1]) & ~_comes_out(section, leave, enter, centre)
         )
-    return Arcs(
+    arcs = Arcs(
         centre_x=centre[good, 0],
         centre_y=centre[good, 1],
         radius=radius[good],
@@ -301,6 +383,7 @@ def _valid(
         entry_x=enter[good, 0],
         entry_y=enter[good, 1],
     )
+    return arcs, np.flatnonzero(good)
 
 
 def _comes_out(

@@ -5,9 +5,9 @@ import numpy as np
 from probsoil._typing import FloatArray
 from probsoil.ground.response import Response
 from probsoil.ground.site_model import SiteModel
+from probsoil.ground.slip_moving import POSITION
 
-POSITION = ("centre_x", "centre_y", "radius", "touch", "exit_x", "entry_x")
-"""What `critical_positions` gives of a circle, in this order."""
+__all__ = ["POSITION", "critical_positions"]
 
 
 def critical_positions(site: SiteModel, response: Response) -> FloatArray:
@@ -28,7 +28,7 @@ def critical_positions(site: SiteModel, response: Response) -> FloatArray:
         level. Not a number where the realisation did not converge.
     """
     chosen = response.critical_circle
-    position = np.empty((*chosen.shape, len(POSITION)))
+    position = np.empty((*chosen.shape, len(POSITION))) if response.circle is None else response.circle.copy()
     for check, family in enumerate(site.families):
         table = np.stack([getattr(family.circles, name) for name in POSITION], axis=1)
         position[:, check] = table[np.maximum(chosen[:, check], 0)]

@@ -126,13 +126,16 @@ def _factor(
         safety = np.where(pressed, capacity / np.where(pressed, pressure, 1.0), np.inf)
         return safety, width > _THIN * thickness
     height, shape = site.fill_height(time), site.embankment
-    if shape is None or height <= 0.0 or shape.side_slope <= 0.0:
+    if shape is None:
         return np.full(mean.size, np.inf), np.zeros(mean.size, dtype=np.bool_)
+    slope, height = (np.broadcast_to(one, mean.shape) for one in (shape.side_slope, height))
+    loaded = (height > 0.0) & (slope > 0.0)
+    slope, height = np.where(loaded, slope, 1.0), np.where(loaded, height, 1.0)
     factor = squeezing_safety(
         su,
         thickness=there,
         height=height,
-        side_slope=shape.side_slope,
+        side_slope=slope,
         unit_weight=fill_weight(values, mean.size) * (1.0 + ground.load.fill_added(time) / height),
     )
-    return factor, thickness < shape.side_slope * height
+    return factor, loaded & (thickness < slope * height)

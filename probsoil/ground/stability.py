@@ -12,6 +12,8 @@ from probsoil.ground.rows import chosen
 from probsoil.ground.site_model import SiteModel
 from probsoil.ground.slip import FillStrength, GroundStrength, competing_circles, slip_safety
 from probsoil.ground.slip_circles import CircleFamily, circle_family
+from probsoil.ground.slip_moving import MovingFamily
+from probsoil.ground.slip_works import families_on_sections, slip_on_sections
 from probsoil.ground.undrained_strength import undrained_shear_strength
 
 _BEYOND_TOE = 0  # the zone in which no load changes the stress
@@ -126,7 +128,7 @@ def zone_gains(site: SiteModel, ground: LoadedGround, time: float) -> list[tuple
 
 def slip_at_checks(
     site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray
-) -> tuple[FloatArray, IntArray]:
+) -> tuple[FloatArray, IntArray, FloatArray | None]:
     """Return the least factor of safety at every time at which slip is looked at.
 
     Parameters
@@ -146,13 +148,19 @@ def slip_at_checks(
         Least factor of safety.
     critical : ndarray of int, shape (n_sample, n_check), [-]
         Index of the circle in the family of that time.
+    position : ndarray or None, shape (n_sample, n_check, 6), [m]
+        Where the critical circle lies, where the section is that of each realisation.
     """
     n_sample, n_check = ground.points.depth.shape[0], site.slip_times.size
-    factor, critical = np.empty((n_sample, n_check)), np.empty((n_sample, n_check), dtype=np.int64)
+    factor, critical = np.empty((n_sample, n_check)), np.zeros((n_sample, n_check), dtype=np.int64)
+    if site.section_varies:
+        sections = slip_sections(site, values, ground, strength)
+        factor, position = slip_on_sections(site, sections, n_sample)
+        return factor, critical, position
     for check, (here, fill) in enumerate(slip_sections(site, values, ground, strength)):
         family = site.families[check] if site.families else circle_family(site.layouts[check])
         factor[:, check], critical[:, check] = slip_safety(here, fill, family)
-    return factor, critical
+    return factor, critical, None
 
 
 def competing_families(
@@ -183,6 +191,33 @@ def competing_families(
         competing_circles(here, fill, layout, within=within)
         for (here, fill), layout in zip(sections, site.layouts, strict=True)
     )
+
+
+def moving_families(
+    site: SiteModel, values: Values, ground: LoadedGround, strength: FloatArray, *, within: float
+) -> tuple[MovingFamily, ...]:
+    """Return the same where the section of the fill is that of each realisation.
+
+    Parameters
+    ----------
+    site : SiteModel
+        With what is built in every realisation.
+    values : mapping of str to ndarray, shape (n_sample,), or float
+        Value of every quantity by its address.
+    ground : LoadedGround
+        Points and added stress.
+    strength : ndarray, shape (n_record, n_sample, n_zone, n_point), [kPa]
+        Undrained strength at the recorded times.
+    within : float, [-]
+        How far above the least factor a circle may be, as a share of it.
+
+    Returns
+    -------
+    families : tuple of MovingFamily
+        One for each time at which slip is looked at.
+    """
+    sections = slip_sections(site, values, ground, strength)
+    return families_on_sections(site, sections, len(ground.points.depth), within=within)
 
 
 def slip_sections(
@@ -254,7 +289,10 @@ def heavier_by_added_fill(site: SiteModel, load: AppliedLoad, time: float) -> Fl
     """
     if load.added_fill is None:
         return None
-    return np.asarray(1.0 + load.fill_added(time) / site.fill_height(time))
+    height = site.fill_height(time)
+    if isinstance(height, np.ndarray):  # where no fill is left there is nothing to slip
+        height = np.where(height > 0.0, height, 1.0)
+    return np.asarray(1.0 + load.fill_added(time) / height)
 
 
 def _tangents(site: SiteModel, values: Values, ground: LoadedGround) -> FloatArray:

@@ -5,6 +5,7 @@ from collections.abc import Callable
 import numpy as np
 
 from probsoil._typing import FloatArray
+from probsoil.ground.amounts import Amount, beside_depths, greater, key_of
 from probsoil.ground.applied_load import LoadedGround, fill_weight
 from probsoil.ground.embankment import Embankment
 from probsoil.ground.granular_settlement import between_knots
@@ -65,17 +66,18 @@ def distortion_by_point(site: SiteModel, values: Values, ground: LoadedGround) -
     top, bottom = below_base(site, ground)
     compliance = np.where(np.isfinite(modulus), 1.0 / modulus, 0.0)
     weight = fill_weight(values, top.shape[0])[:, None]
-    known: dict[float, FloatArray] = {}
+    known: dict[float | bytes, FloatArray] = {}
     settlement = []
     for time in site.knots:
         height = site.fill_height(float(time))
-        if height not in known:
+        if (key := key_of(height)) not in known:
             curve = displacement_of(site, height)
-            known[height] = (curve(top) - curve(bottom)) * compliance
+            known[key] = (curve(top) - curve(bottom)) * compliance
         if site.embankment is None:
-            settlement.append((weight * height + site.pressure(float(time))) * known[height])
+            pressure = weight * beside_depths(height) + beside_depths(site.pressure(float(time)))
+            settlement.append(pressure * known[key])
         else:
-            settlement.append(weight * known[height])
+            settlement.append(weight * known[key])
     return np.stack(settlement)
 
 
@@ -129,20 +131,20 @@ def below_base(site: SiteModel, ground: LoadedGround) -> tuple[FloatArray, Float
     top, bottom : ndarray, shape (n_sample, n_point), [m]
         Zero for what lies above the base of a foundation.
     """
-    base = 0.0 if site.foundation is None else site.foundation.depth
+    base = 0.0 if site.foundation is None else beside_depths(site.foundation.depth)
     half = 0.5 * ground.points.thickness
     depth = ground.points.depth - base
     return np.maximum(depth - half, 0.0), np.maximum(depth + half, 0.0)
 
 
-def displacement_of(site: SiteModel, height: float) -> _Curve:
+def displacement_of(site: SiteModel, height: Amount) -> _Curve:
     """Return the displacement below the reported point as a function of the depth below the load.
 
     Parameters
     ----------
     site : SiteModel
         Its load, not one over a wide area, below which clay of constant volume does not move.
-    height : float, [m]
+    height : float or ndarray, shape (n_sample,), [m]
         Height of fill; only an embankment changes its form with it.
 
     Returns
@@ -151,17 +153,18 @@ def displacement_of(site: SiteModel, height: float) -> _Curve:
         Modulus times displacement over the pressure of a foundation [m], or over the unit weight of the fill
         of an embankment [m2].
     """
-    foundation, shape = site.foundation, site.embankment
-    if foundation is not None:
+    shape = site.embankment
+    if site.foundation is not None:
+        foundation = site.foundation.beside_depths
         return lambda depth: foundation.displacement(depth, *foundation.at)
     if shape is None:
         return np.zeros_like
     return lambda depth: _fill_displacement(shape, height, depth, site.offset)
 
 
-def _fill_displacement(shape: Embankment, height: float, depth: FloatArray, offset: float) -> FloatArray:
+def _fill_displacement(shape: Embankment, height: Amount, depth: FloatArray, offset: float) -> FloatArray:
     total = np.zeros_like(depth)
-    for part in shape.trapezia(max(height, 0.0)):
+    for part in shape.beside_depths.trapezia(greater(beside_depths(height), 0.0)):
         widths = {"base_width": part.base_width, "top_width": part.top_width}
         total += part.height * embankment_displacement(depth, offset, **widths)
     return total

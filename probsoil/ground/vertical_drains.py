@@ -7,24 +7,25 @@ import numpy as np
 from probsoil._typing import ArrayLike, FloatArray
 from probsoil.errors import ParameterError
 from probsoil.ground._checks import checked
+from probsoil.ground.amounts import Amount
 
 Pattern = Literal["triangular", "square"]
 _EQUIVALENT = {"triangular": 1.05, "square": 1.13}
 
 
-def influence_diameter(spacing: float, pattern: Pattern) -> float:
+def influence_diameter(spacing: Amount, pattern: Pattern) -> Amount:
     """Return the diameter of the cylinder of soil that one drain serves.
 
     Parameters
     ----------
-    spacing : float, [m]
+    spacing : float or ndarray, shape (n_sample,), [m]
         Distance between drains, above zero.
     pattern : {"triangular", "square"}
         Grid of the drains.
 
     Returns
     -------
-    diameter : float, [m]
+    diameter : float or ndarray, shape (n_sample,), [m]
         1.05 times the spacing in a triangular grid, 1.13 times in a square one.
 
     Raises
@@ -38,7 +39,8 @@ def influence_diameter(spacing: float, pattern: Pattern) -> float:
     """
     if pattern not in _EQUIVALENT:
         raise ParameterError(f"pattern must be one of {', '.join(_EQUIVALENT)}; got {pattern!r}")
-    return _EQUIVALENT[pattern] * float(checked("spacing", spacing, above=0.0))
+    served = _EQUIVALENT[pattern] * checked("spacing", spacing, above=0.0)
+    return served if isinstance(spacing, np.ndarray) else float(served)
 
 
 def drain_factor(
@@ -90,7 +92,7 @@ def drain_factor(
 
 
 def well_resistance(
-    depth: ArrayLike, length: float, permeability: ArrayLike, discharge_capacity: float
+    depth: ArrayLike, length: ArrayLike, permeability: ArrayLike, discharge_capacity: ArrayLike
 ) -> FloatArray:
     r"""Return what the drain's own resistance adds to the factor mu.
 
@@ -98,11 +100,11 @@ def well_resistance(
     ----------
     depth : array_like, shape (...,), [m]
         Distance along the drain from the end at which it discharges.
-    length : float, [m]
+    length : array_like, shape (...,), [m]
         Length of the drain, closed at the other end.
     permeability : array_like, shape (...,), [m/year]
         Horizontal permeability of the soil.
-    discharge_capacity : float, [m3/year]
+    discharge_capacity : array_like, shape (...,), [m3/year]
         Flow through the drain at a hydraulic gradient of one, above zero.
 
     Returns
@@ -120,9 +122,10 @@ def well_resistance(
     .. [1] S. Hansbo, Proc. 10th Int. Conf. Soil Mech. Found. Eng., Stockholm, 1981 (from memory,
        not opened).
     """
+    length = checked("length", length, at_least=0.0)
     z = np.minimum(checked("depth", depth, at_least=0.0), length)
     kh = checked("permeability", permeability, above=0.0)
-    capacity = float(checked("discharge_capacity", discharge_capacity, above=0.0))
+    capacity = checked("discharge_capacity", discharge_capacity, above=0.0)
     return np.asarray(np.pi * z * (2.0 * length - z) * kh / capacity)
 
 

@@ -33,9 +33,12 @@ def _sentence(row: dict[str, Any], n: int) -> str:
     if row["mean_width"] is None:
         return said
     width = text.value_text(row["mean_width"], "m")
+    own = (
+        " (in each realisation its own; this is that of the mean section)" if row.get("width_varies") else ""
+    )
     return (
-        f"{said} The volume is the thickness times {width}, the mean width of the section: the fill added is "
-        "taken to be everywhere in the same proportion to the fill above it."
+        f"{said} The volume is the thickness times {width}, the mean width of the section{own}: the fill "
+        "added is taken to be everywhere in the same proportion to the fill above it."
     )
 
 

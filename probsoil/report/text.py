@@ -33,6 +33,7 @@ _QUANTITY_NAMES = {
     "bearing_safety": "factor of safety against bearing failure",
     "degree_of_consolidation": "degree of consolidation",
     "time_to_consolidation": "time to consolidation",
+    "added_fill": "volume of added fill",
 }
 UNCOMPUTED = "beyond the computation"  # of a quantile that falls on realisations without a finite value
 _UNREACHED = "not reached"  # the same of a time

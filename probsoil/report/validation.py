@@ -192,6 +192,7 @@ _ADDED_FILL = {
     "until": "number",
     "unit": "text",
     "mean_width": _NUMBER,
+    "width_varies?": "flag",
     "thickness": _MEAN_AND_QUANTILES,
     "volume": _MEAN_AND_QUANTILES,
 }

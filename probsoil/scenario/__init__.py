@@ -12,6 +12,7 @@ from probsoil.scenario.distributions import (
 )
 from probsoil.scenario.layers import ClayLayer, GranularLayer, Permeability, Preconsolidation, Strength
 from probsoil.scenario.limits import (
+    AddedFillLimit,
     AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
@@ -34,6 +35,7 @@ from probsoil.scenario.stations import Station, StationLine
 
 __all__ = [
     "STARTERS",
+    "AddedFillLimit",
     "AngularDistortionLimit",
     "AreaLoad",
     "BearingSafetyLimit",

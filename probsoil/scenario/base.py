@@ -7,7 +7,7 @@ from pydantic import BaseModel, ConfigDict, StringConstraints
 
 # No dot, because a parameter's address is "name.symbol"; no blank at either end.
 NAME_PATTERN = r"^[^\s.](?:[^.\x00-\x1f\x7f]*[^\s.])?$"
-RESERVED_NAMES = ("site", "load", "further_loads", "drains", "model_error")
+RESERVED_NAMES = ("site", "load", "further_loads", "stages", "drains", "model_error")
 
 Name = Annotated[str, StringConstraints(min_length=1, max_length=60, pattern=NAME_PATTERN)]
 Label = Annotated[

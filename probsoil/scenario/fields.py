@@ -181,11 +181,15 @@ class Uncertain(Range):
     in_series : bool
         Whether the parts of a layer act one after another, as those that water passes through in
         turn: their average is then harmonic.
+    of_works : bool
+        Whether it says what is built rather than what the ground is like: where it is a plain number, load
+        and stages tell it, and it is no parameter.
     """
 
     symbol: str = ""
     spatial: bool = False
     in_series: bool = False
+    of_works: bool = False
 
     def read(self, raw: object) -> Distribution:
         """Return the distribution as written, in the base unit.

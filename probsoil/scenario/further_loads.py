@@ -7,6 +7,7 @@ from pydantic import Field
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number
+from probsoil.scenario.load_fields import depth_of_base, side, slope_run, width_of_top
 from probsoil.scenario.loads import (
     BERM_HEIGHT,
     BERM_WIDTH,
@@ -16,9 +17,6 @@ from probsoil.scenario.loads import (
     TRAFFIC,
     TRAFFIC_FROM,
     Contact,
-    side,
-    slope_run,
-    width_of_top,
 )
 
 _ACROSS = "across (along the width of [load])"
@@ -30,13 +28,8 @@ def _place(meaning: str) -> Number:
 
 _X = _place(f"distance of its centre from that of [load], {_ACROSS}")
 _Y = _place("distance of its centre from that of [load], along (the length of [load])")
-_DEPTH = Number(
-    kind="length",
-    low=0.0,
-    high=50.0,
-    source="common practice",
-    meaning="depth of its base below ground level; stress is added from there down",
-)
+_DEPTH = depth_of_base("depth of its base below ground level; stress is added from there down")
+_AT_GROUND_LEVEL = Constant(value=0.0)
 
 
 class _Further(Table):
@@ -61,7 +54,7 @@ class FurtherEmbankment(_Further):
     ----------
     shape : str
         ``embankment``.
-    crest_width, side_slope : float, [m], [-]
+    crest_width, side_slope : Distribution, [m], [-]
         Width of the top at the greatest height, run of the slope per unit of rise.
     fill_phi : Distribution or None, [degree]
         Friction angle of the fill; needed where a limit looks at its slip.
@@ -74,8 +67,8 @@ class FurtherEmbankment(_Further):
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[float, width_of_top()]
-    side_slope: Annotated[float, slope_run()]
+    crest_width: Annotated[Distribution, width_of_top()]
+    side_slope: Annotated[Distribution, slope_run()]
     fill_phi: Annotated[Distribution | None, FILL_PHI] = None
     fill_cohesion: Annotated[Distribution, FILL_COHESION] = Constant(value=0.0)
     berm_width: Annotated[float | None, BERM_WIDTH] = None
@@ -102,13 +95,13 @@ class _FurtherFoundation(_Further):
 
     Attributes
     ----------
-    depth : float, [m]
+    depth : Distribution, [m]
         Depth of the base.
     contact : str
         ``rough`` or ``smooth``, for its own bearing.
     """
 
-    depth: Annotated[float, _DEPTH] = 0.0
+    depth: Annotated[Distribution, _DEPTH] = _AT_GROUND_LEVEL
     contact: Contact = "rough"
 
 
@@ -119,14 +112,14 @@ class FurtherStrip(_FurtherFoundation):
     ----------
     shape : str
         ``strip``.
-    width : float, [m]
+    width : Distribution, [m]
         Width of the strip.
     x : float, [m]
         Distance of its centreline from the centre of the load.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the strip")]
+    width: Annotated[Distribution, side("width of the strip")]
     x: Annotated[float, _X]
 
 
@@ -137,15 +130,15 @@ class FurtherRectangle(_FurtherFoundation):
     ----------
     shape : str
         ``rectangle``.
-    width, length : float, [m]
+    width, length : Distribution, [m]
         Sides across and along.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, side("side of the rectangle across")]
-    length: Annotated[float, side("side of the rectangle along")]
+    width: Annotated[Distribution, side("side of the rectangle across")]
+    length: Annotated[Distribution, side("side of the rectangle along")]
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 
@@ -157,14 +150,14 @@ class FurtherCircle(_FurtherFoundation):
     ----------
     shape : str
         ``circle``.
-    diameter : float, [m]
+    diameter : Distribution, [m]
         Its diameter.
     x, y : float, [m]
         Distances of its centre from that of the load.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, side("diameter of the circle")]
+    diameter: Annotated[Distribution, side("diameter of the circle")]
     x: Annotated[float, _X]
     y: Annotated[float, _Y] = 0.0
 

@@ -341,6 +341,33 @@ class ConsolidationTimeLimit(_OfLoad):
     ]
 
 
+class AddedFillLimit(_Limit):
+    """Volume of the fill that holds the level of an embankment.
+
+    Attributes
+    ----------
+    quantity : str
+        ``added_fill``.
+    not_more_than : float, [m3/m]
+        Threshold, per metre run.
+    """
+
+    sense: ClassVar[Sense] = "not more than"
+    quantity: Literal["added_fill"] = Field(description="what is limited")
+    not_more_than: Annotated[
+        float,
+        Number(
+            kind="volume per metre",
+            low=0.0,
+            high=1e5,
+            open_low=True,
+            source="common practice",
+            meaning="volume of fill per metre run of the embankment, in all, that should not be exceeded in "
+            "holding its level",
+        ),
+    ]
+
+
 OnSettlement = SettlementLimit | DifferentialSettlementLimit | AngularDistortionLimit
 ON_SETTLEMENT = (SettlementLimit, DifferentialSettlementLimit, AngularDistortionLimit)
 """Classes of limits on what settles by a time or between two."""
@@ -352,6 +379,7 @@ Limit = Annotated[
     | SlipSafetyLimit
     | BearingSafetyLimit
     | ConsolidationLimit
-    | ConsolidationTimeLimit,
+    | ConsolidationTimeLimit
+    | AddedFillLimit,
     Field(discriminator="quantity"),
 ]

@@ -7,6 +7,7 @@ from pydantic import BeforeValidator, ConfigDict, Field
 from probsoil.scenario.base import Name, Table
 from probsoil.scenario.distributions import Constant, Distribution
 from probsoil.scenario.fields import Number, Uncertain
+from probsoil.scenario.load_fields import depth_of_base, side, slope_run, width_of_top
 from probsoil.scenario.slips import Slip, refuse
 
 FILL_WEIGHT = Uncertain(
@@ -85,57 +86,6 @@ HoldLevel = Annotated[
 ]
 
 
-def width_of_top() -> Number:
-    """Return the field of the width of an embankment's top.
-
-    Returns
-    -------
-    field : Number
-        Above 0.
-    """
-    return Number(
-        kind="length",
-        low=0.0,
-        high=1000.0,
-        open_low=True,
-        source="by definition",
-        meaning="width of the top of the embankment at its greatest height",
-    )
-
-
-def slope_run() -> Number:
-    """Return the field of the run of a side slope.
-
-    Returns
-    -------
-    field : Number
-        0 for a vertical side.
-    """
-    return Number(
-        kind="number",
-        low=0.0,
-        high=20.0,
-        source="common practice",
-        meaning="horizontal run of the side slope per unit of rise; 0 is a vertical side",
-    )
-
-
-def side(meaning: str) -> Number:
-    """Return the field of a side or diameter.
-
-    Parameters
-    ----------
-    meaning : str
-        What it is.
-
-    Returns
-    -------
-    field : Number
-        From 0.1 m.
-    """
-    return Number(kind="length", low=0.1, high=1000.0, source="common practice", meaning=meaning)
-
-
 class EmbankmentLoad(Table):
     """A long embankment, a trapezoid in section, symmetrical about its centre line, with or without berms.
 
@@ -143,9 +93,9 @@ class EmbankmentLoad(Table):
     ----------
     shape : str
         ``embankment``.
-    crest_width : float, [m]
+    crest_width : Distribution, [m]
         Width of the top at the greatest height reached.
-    side_slope : float, [-]
+    side_slope : Distribution, [-]
         Horizontal run per unit of rise; the base stays the same while the fill rises.
     fill_unit_weight : Distribution, [kN/m3]
         Bulk unit weight of the fill.
@@ -166,8 +116,8 @@ class EmbankmentLoad(Table):
     """
 
     shape: Literal["embankment"] = Field(description="kind of load")
-    crest_width: Annotated[float, width_of_top()]
-    side_slope: Annotated[float, slope_run()]
+    crest_width: Annotated[Distribution, width_of_top()]
+    side_slope: Annotated[Distribution, slope_run()]
     fill_unit_weight: Annotated[Distribution, FILL_WEIGHT]
     fill_phi: Annotated[Distribution, FILL_PHI]
     fill_cohesion: Annotated[Distribution, FILL_COHESION] = Constant(value=0.0)
@@ -218,7 +168,7 @@ class _Foundation(Table):
 
     Attributes
     ----------
-    depth : float, [m]
+    depth : Distribution, [m]
         Depth of the base below ground level.
     contact : str
         ``rough`` or ``smooth``: whether the base holds the soil under it against sliding outward.
@@ -229,16 +179,12 @@ class _Foundation(Table):
     """
 
     depth: Annotated[
-        float,
-        Number(
-            kind="length",
-            low=0.0,
-            high=50.0,
-            source="common practice",
-            meaning="depth of the base below ground level; stress is added from there down, and the stages "
-            "give the net pressure, in excess of the weight of soil dug out",
+        Distribution,
+        depth_of_base(
+            "depth of the base below ground level; stress is added from there down, and the stages "
+            "give the net pressure, in excess of the weight of soil dug out"
         ),
-    ] = 0.0
+    ] = Constant(value=0.0)
     contact: Contact = "rough"
     fill_unit_weight: Annotated[Distribution | None, FILL_WEIGHT] = None
     submergence: Submergence = True
@@ -251,14 +197,14 @@ class StripLoad(_Foundation):
     ----------
     shape : str
         ``strip``.
-    width : float, [m]
+    width : Distribution, [m]
         Width of the strip.
     at : float, [m]
         Distance from the centreline at which settlement is reported.
     """
 
     shape: Literal["strip"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the strip")]
+    width: Annotated[Distribution, side("width of the strip")]
     at: Annotated[float, _distance("distance from the centreline at which settlement is reported")] = 0.0
 
 
@@ -269,15 +215,15 @@ class RectangleLoad(_Foundation):
     ----------
     shape : str
         ``rectangle``.
-    width, length : float, [m]
+    width, length : Distribution, [m]
         Its sides; either may be the longer.
     at : tuple of float, [m]
         Point at which settlement is reported: distances from the centre along the width and the length.
     """
 
     shape: Literal["rectangle"] = Field(description="kind of load")
-    width: Annotated[float, side("width of the rectangle")]
-    length: Annotated[float, side("length of the rectangle")]
+    width: Annotated[Distribution, side("width of the rectangle")]
+    length: Annotated[Distribution, side("length of the rectangle")]
     at: Annotated[
         tuple[Annotated[float, _PLAN_DISTANCE], Annotated[float, _PLAN_DISTANCE]], BeforeValidator(_point)
     ] = Field(
@@ -294,14 +240,14 @@ class CircleLoad(_Foundation):
     ----------
     shape : str
         ``circle``.
-    diameter : float, [m]
+    diameter : Distribution, [m]
         Its diameter.
     at : float, [m]
         Distance from the centre at which settlement is reported.
     """
 
     shape: Literal["circle"] = Field(description="kind of load")
-    diameter: Annotated[float, side("diameter of the circle")]
+    diameter: Annotated[Distribution, side("diameter of the circle")]
     at: Annotated[float, _distance("distance from the centre at which settlement is reported")] = 0.0
 
 
@@ -320,16 +266,16 @@ class Stage(Table):
     ----------
     name : str
         Name, unique among the stages.
-    height : float or None, [m]
-        Height of fill.
-    pressure : float or None, [kPa]
-        Pressure; not with the load shape ``embankment``.
+    height : Distribution or None, [m]
+        Height of fill; of one sign.
+    pressure : Distribution or None, [kPa]
+        Pressure; of one sign; not with the load shape ``embankment``.
     start, end : float, [year]
         Times.
     load : str or None
         Which of the further loads; None for the load that is assessed.
     excavate : float or None, [m]
-        Depth of soil dug out over the plan of a foundation.
+        Depth of soil dug out over the plan of the load.
     """
 
     model_config = ConfigDict(
@@ -343,22 +289,24 @@ class Stage(Table):
         default=None, description="which of the further loads the stage belongs to; if left out, [load]"
     )
     height: Annotated[
-        float | None,
-        Number(
+        Distribution | None,
+        Uncertain(
             kind="length",
             low=-100.0,
             high=100.0,
             source="common practice",
+            of_works=True,
             meaning="height of fill (or of what fills a tank) placed; negative is removal",
         ),
     ] = None
     pressure: Annotated[
-        float | None,
-        Number(
+        Distribution | None,
+        Uncertain(
             kind="pressure",
             low=-5000.0,
             high=5000.0,
             source="common practice",
+            of_works=True,
             meaning="pressure added, net of soil dug out unless a stage digs it out; not with "
             'shape = "embankment"; negative is removal',
         ),
@@ -371,8 +319,8 @@ class Stage(Table):
             high=50.0,
             open_low=True,
             source="common practice",
-            meaning="depth of soil dug out over the plan of a foundation; with it, pressures and heights "
-            "are those of all that is placed on the base",
+            meaning="depth of soil dug out over the plan of the load; with it, pressures and heights are "
+            "those of all that is placed on the bottom",
         ),
     ] = None
     start: Annotated[

@@ -1,7 +1,7 @@
 """The numbers of a scenario that may be uncertain, each under its address."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, get_args
 
 from pydantic import BaseModel
@@ -34,6 +34,8 @@ class Quantity:
         Mean thickness of the layer over which point-to-point variability averages out.
     in_series : bool
         Whether that average is harmonic (water passes through the parts of a layer in turn).
+    of_works : bool
+        Whether it says what is built rather than what the ground is like.
     """
 
     address: str
@@ -44,6 +46,7 @@ class Quantity:
     meaning: str
     averaging_length: float | None = None
     in_series: bool = False
+    of_works: bool = False
 
     @property
     def is_uncertain(self) -> bool:
@@ -75,7 +78,7 @@ def uncertain_fields(model: type[BaseModel]) -> Iterator[tuple[str, str, Uncerta
 
 
 def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
-    """Return every number of a scenario that may be uncertain.
+    """Return the numbers of a scenario that are, or may be, uncertain.
 
     Parameters
     ----------
@@ -85,7 +88,24 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
     Returns
     -------
     quantities : tuple of Quantity
-        In the order site, layers from the top, load, further loads, drains, model error.
+        In the order site, layers from the top, load, further loads, stages, drains, model error; of those
+        that say what is built only the uncertain ones.
+    """
+    return tuple(one for one in all_quantities(scenario) if one.is_uncertain or not one.of_works)
+
+
+def all_quantities(scenario: "Scenario") -> tuple[Quantity, ...]:
+    """Return every number of a scenario that may be uncertain, and plain ones that say what is built.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Scenario, read in full or in part.
+
+    Returns
+    -------
+    quantities : tuple of Quantity
+        In the same order.
     """
     found = list(_of_table("site", scenario.site, None))
     for layer in scenario.layers:
@@ -96,6 +116,9 @@ def quantities_of(scenario: "Scenario") -> tuple[Quantity, ...]:
     for load in scenario.further_loads:
         if isinstance(load, BaseModel) and isinstance(load.name, str):
             found += _of_table(further_address(load.name), load, None)
+    for stage in scenario.stages:
+        if isinstance(stage, BaseModel) and isinstance(stage.name, str):
+            found += [_of_one_sign(one) for one in _of_table(stage_address(stage.name), stage, None)]
     found += _of_table("drains", scenario.drains, None)
     found += _of_table("model_error", scenario.model_error, None)
     return tuple(found)
@@ -115,6 +138,28 @@ def further_address(name: str) -> str:
         Such as ``further_loads.tank B``.
     """
     return f"further_loads.{name}"
+
+
+def stage_address(name: str) -> str:
+    """Return the first part of the addresses of a stage.
+
+    Parameters
+    ----------
+    name : str
+        Of the stage.
+
+    Returns
+    -------
+    start : str
+        Such as ``stages.first lift``.
+    """
+    return f"stages.{name}"
+
+
+def _of_one_sign(amount: Quantity) -> Quantity:
+    """Return what a stage adds or takes off with only those values that do so."""
+    adds = amount.distribution.expectation > 0.0
+    return replace(amount, low=0.0) if adds else replace(amount, high=0.0)
 
 
 def possible_addresses(name: str, model: type[BaseModel]) -> tuple[str, ...]:
@@ -197,4 +242,5 @@ def _of_table(name: str, table: object, averaging_length: float | None) -> Itera
                 meaning=field.meaning,
                 averaging_length=averaging_length,
                 in_series=field.in_series,
+                of_works=field.of_works,
             )

@@ -14,6 +14,7 @@ from probsoil.scenario.further_loads import (
 )
 from probsoil.scenario.layers import ClayLayer, GranularLayer
 from probsoil.scenario.limits import (
+    AddedFillLimit,
     AngularDistortionLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
@@ -69,6 +70,7 @@ CHOICES: dict[str, tuple[str, dict[str, type[BaseModel]]]] = {
             "bearing_safety": BearingSafetyLimit,
             "degree_of_consolidation": ConsolidationLimit,
             "time_to_consolidation": ConsolidationTimeLimit,
+            "added_fill": AddedFillLimit,
         },
     ),
 }

@@ -47,10 +47,10 @@ typedef struct {
     const uint8_t *joined;
     const double *drained;
     const int64_t *segment;
-    /* loading: stress (block, knot, cell, lane), spreads (block, cell, lane), height (knot,), depth (block, lane),
+    /* loading: stress (block, knot, cell, lane), spreads (block, cell, lane), height (block, knot, lane), depth (block, lane),
        weight of fill that holds the level and gain (block, lane), granular (block, knot, lane) */
     const row *load, *spread, *fill_spread;
-    const double *height;
+    const row *height;
     const row *water_depth;
     double water_weight;
     const row *fill_weight, *granular, *gain;
@@ -239,13 +239,13 @@ static void fill_up(const Problem *p, int64_t b, int64_t j, double share, const 
 
 static void add_load(const Problem *p, int64_t b, int64_t j, double share, Block *k)
 {
-    double height = (1.0 - share) * p->height[j] + share * p->height[j + 1];
+    const row *height = p->height + b * p->n_knot + j;
     const row *before = p->load + (b * p->n_knot + j) * p->n_cell, *after = before + p->n_cell;
     const row *spread = p->spread + b * p->n_cell, *fill_spread = p->fill_spread + b * p->n_cell;
     row off, fill;
     EACH_LANE
     {
-        double above_base = height + k->filling[l];
+        double above_base = (1.0 - share) * height[0][l] + share * height[1][l] + k->filling[l];
         off[l] = p->water_weight * smaller(larger(k->foreseen[l], 0.0), p->water_depth[b][l] + above_base);
         fill[l] = k->filling[l] * p->fill_weight[b][l];
     }

@@ -56,7 +56,7 @@ def problem(soil, faces, loading, schedule, answers):
     sizes = (
         soil.thickness.shape[0],
         soil.thickness.shape[1],
-        loading.height.size,
+        loading.height.shape[1],
         schedule.step.size,
         recorded.shape[1],
         settlement.shape[1],

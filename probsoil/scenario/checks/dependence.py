@@ -4,9 +4,10 @@ from typing import Any
 
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.quantities import (
+    all_quantities,
     further_address,
     possible_addresses,
-    quantities_of,
+    stage_address,
     unread_addresses,
 )
 from probsoil.scenario.slips import Slip, did_you_mean
@@ -44,15 +45,11 @@ def dependence_slips(scenario: Any) -> list[Slip]:
     return slips + _joint_slips(sound)
 
 
-def _further(name: Any) -> Any:
-    return name if name is UNREAD else further_address(name)
-
-
 class _Addresses:
     """What each address of a scenario may be used for."""
 
     def __init__(self, scenario: Any) -> None:
-        found = quantities_of(scenario)
+        found = all_quantities(scenario)
         self.uncertain = [quantity.address for quantity in found if quantity.is_uncertain]
         self.fixed = {quantity.address for quantity in found if not quantity.is_uncertain}
         tables: list[tuple[Any, Any]] = [
@@ -61,8 +58,15 @@ class _Addresses:
             ("model_error", scenario.model_error),
         ]
         tables += [] if scenario.drains is None else [("drains", scenario.drains)]
-        further = [load for load in scenario.further_loads if load is not UNREAD]
-        tables += [(_further(load.name), load) for load in further]
+        tables += [
+            (one.name if one.name is UNREAD else address(one.name), one)
+            for group, address in (
+                (scenario.further_loads, further_address),
+                (scenario.stages, stage_address),
+            )
+            for one in group
+            if one is not UNREAD
+        ]
         tables += [(layer.name, layer) for layer in scenario.layers if layer is not UNREAD]
         named = [(name, table) for name, table in tables if name is not UNREAD and table is not UNREAD]
         self.possible = {
@@ -70,7 +74,7 @@ class _Addresses:
         }
         self.unread = {address for name, table in named for address in unread_addresses(name, table)}
         self.names = [name for name, _ in named]
-        unread = UNREAD in scenario.layers or UNREAD in scenario.further_loads
+        unread = any(UNREAD in group for group in (scenario.layers, scenario.further_loads, scenario.stages))
         self.some_unnamed = len(named) < len(tables) or unread
 
     def complaint(self, address: str) -> tuple[str, str | None] | None:

@@ -2,6 +2,7 @@
 
 from typing import Any
 
+from probsoil.scenario.amounts import known
 from probsoil.scenario.drains import Drains
 from probsoil.scenario.slips import Slip
 
@@ -22,14 +23,15 @@ def drain_slips(scenario: Any) -> list[Slip]:
         Paths start at the top of the scenario.
     """
     drains = scenario.drains
-    if not isinstance(drains, Drains) or not all(
-        isinstance(getattr(drains, key), float | int | str)
-        for key in ("pattern", "spacing", "equivalent_diameter", "smear_ratio", "installed")
-    ):
+    if not isinstance(drains, Drains) or not isinstance(drains.pattern, str):
+        return []
+    spacing, diameter, smear = (
+        known(getattr(drains, key)) for key in ("spacing", "equivalent_diameter", "smear_ratio")
+    )
+    if spacing is None or diameter is None or smear is None or not isinstance(drains.installed, float | int):
         return []
     slips = []
-    served = _EQUIVALENT[drains.pattern] * drains.spacing
-    smeared = drains.smear_ratio * drains.equivalent_diameter
+    served, smeared = _EQUIVALENT[drains.pattern] * spacing, smear * diameter
     if smeared >= served:
         message = f"the smear zones, {smeared:.3g} m wide, fill the {served:.3g} m that each drain serves"
         slips.append(

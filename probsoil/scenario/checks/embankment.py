@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from typing import Any
 
+from probsoil.scenario.amounts import known
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import years_text
 from probsoil.scenario.distributions import Constant
@@ -47,8 +48,8 @@ def _berm_slips(load: Any, own: Sequence[Any]) -> list[Slip]:
     if len(missing) == 1:
         message = f"a berm needs both its width and its height; {missing[0]} is missing"
         return [Slip(path=(), message=message, allowed="berm_width and berm_height", wanting=(missing[0],))]
-    raised = [getattr(stage, "height", UNREAD) for stage in own]
-    heights: list[float] = [one for one in raised if isinstance(one, float)]
+    raised = [getattr(stage, "height", UNREAD) for stage in own if getattr(stage, "excavate", None) is None]
+    heights = [one for one in map(known, raised) if one is not None]
     if not isinstance(load.berm_height, float) or len(heights) < len(raised):
         return []
     greatest = max((sum(heights[: place + 1]) for place in range(len(heights))), default=0.0)

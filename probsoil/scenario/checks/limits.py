@@ -13,6 +13,7 @@ from probsoil.scenario.further_loads import (
 )
 from probsoil.scenario.limits import (
     ON_SETTLEMENT,
+    AddedFillLimit,
     BearingSafetyLimit,
     ConsolidationLimit,
     ConsolidationTimeLimit,
@@ -60,7 +61,9 @@ def _load_of(limit: Any, scenario: Any) -> Any:
 
 
 def _out_of_place(limit: Any, load: Any) -> list[Slip]:
-    """Refuse a way of failing that the load does not have."""
+    """Refuse a way of failing, or a volume of fill, that the load does not have."""
+    if isinstance(limit, AddedFillLimit):
+        return _no_added_fill(load)
     if isinstance(limit, SlipSafetyLimit) and isinstance(load, _AREAS):
         message, shapes = "a slip needs the edge of an embankment; an area load has none", '"embankment"'
     elif isinstance(limit, SlipSafetyLimit) and isinstance(load, _FOUNDATIONS):
@@ -74,6 +77,18 @@ def _out_of_place(limit: Any, load: Any) -> list[Slip]:
     else:
         return []
     return [Slip(path=("quantity",), message=message, allowed=f"[load] with shape = {shapes}")]
+
+
+def _no_added_fill(load: Any) -> list[Slip]:
+    message, allowed, hint = "", '[load] with shape = "embankment" and hold_level_until', None
+    if isinstance(load, AreaLoad):
+        message = "the volume of fill added is that per metre run of an embankment"
+        hint = "over a wide area what is added is as thick as the settlement: limit that at hold_level_until"
+    elif isinstance(load, FOUNDATIONS):
+        message = "no fill is added to hold the level of a foundation"
+    elif isinstance(load, EmbankmentLoad) and load.hold_level_until is None:
+        message, allowed = "no fill is added: the level is not held", "hold_level_until in [load]"
+    return [Slip(path=("quantity",), message=message, allowed=allowed, hint=hint)] if message else []
 
 
 def _reversed(limit: Any) -> list[Slip]:

@@ -3,8 +3,11 @@
 from collections.abc import Sequence
 from typing import Any
 
+from probsoil.scenario.amounts import known, varies
 from probsoil.scenario.base import UNREAD
 from probsoil.scenario.checks.common import exactly_one, repeated_names, reserved_names, years_text
+from probsoil.scenario.distributions import BOUNDED, Constant, Distribution
+from probsoil.scenario.fields import GREATEST_SHARE_OUTSIDE
 from probsoil.scenario.further_loads import (
     FurtherArea,
     FurtherCircle,
@@ -21,6 +24,7 @@ _EMBANKMENTS = (EmbankmentLoad, FurtherEmbankment)
 
 # Heights are given to the millimetre at best; sums of them carry rounding.
 _ROUNDING = 1e-9
+_BEYOND = 1e6  # m or kPa; more than any range allows
 
 
 def programme_slips(scenario: Any) -> list[Slip]:
@@ -76,19 +80,19 @@ def _named(loads: Sequence[Any]) -> list[tuple[str, Any]]:
 
 
 def _amount_slips(stage: Any, load: Any) -> list[Slip]:
-    if getattr(stage, "excavate", None) is not None and not isinstance(load, FOUNDATIONS):
+    if getattr(stage, "excavate", None) is not None and stage.load is not None:
         return []  # refused where excavation is looked at
     slips = []
     if isinstance(load, _EMBANKMENTS) and stage.pressure is not None:
         message = "an embankment is raised by a height of fill, not by a pressure"
         slips.append(Slip(path=("pressure",), message=message, allowed="height", at_key=True))
-    elif isinstance(load, _EMBANKMENTS) and stage.height is None:
+    elif isinstance(load, _EMBANKMENTS) and stage.height is None and stage.excavate is None:
         slips.append(
             Slip(path=(), message="height is missing", allowed="height of fill", wanting=("height",))
         )
     else:
         keys = {"height": "height", "pressure": "pressure"}
-        keys |= {"excavate": "excavate"} if isinstance(load, FOUNDATIONS) else {}
+        keys |= {"excavate": "excavate"} if stage.load is None else {}
         slips += exactly_one(stage, keys, "what the stage adds")
     needs = isinstance(load, (*PRESSED, FurtherEmbankment)) and load.fill_unit_weight is None
     if needs and stage.height is not None:
@@ -97,9 +101,24 @@ def _amount_slips(stage: Any, load: Any) -> list[Slip]:
         message = "a height of fill needs the unit weight of the fill"
         slips.append(Slip(path=("height",), message=message, allowed=f"fill_unit_weight in {where}{instead}"))
     for key in ("height", "pressure"):
-        if getattr(stage, key) == 0.0:
+        if getattr(stage, key) == Constant(value=0.0):
             slips.append(Slip(path=(key,), message="the stage changes nothing", allowed="above or below 0"))
+        elif isinstance(amount := getattr(stage, key), Distribution) and varies(amount):
+            slips += [slip.below((key,)) for slip in _sign_slips(amount)]
     return slips
+
+
+def _sign_slips(amount: Distribution) -> list[Slip]:
+    """Refuse an amount of which it is not clear whether the stage adds it or takes it off."""
+    adds = amount.expectation > 0.0
+    share = amount.probability_outside(*((0.0, _BEYOND) if adds else (-_BEYOND, 0.0)))
+    if share <= (0.0 if isinstance(amount, BOUNDED) else GREATEST_SHARE_OUTSIDE):
+        return []
+    what, side = ("adds", "above") if adds else ("removes", "below")
+    message = f"on average the stage {what}, but with a chance of {100.0 * share:.2g} % it does not"
+    most = f"{100.0 * GREATEST_SHARE_OUTSIDE:g} %"
+    allowed = f"a distribution {side} 0; where it has no bounds at most {most} beyond, which is cut"
+    return [Slip(path=(), message=message, allowed=allowed)]
 
 
 def _time_slips(stage: Any, horizon: Any) -> list[Slip]:
@@ -160,10 +179,10 @@ def _overlap_slips(stages: Sequence[tuple[int, Any]]) -> list[Slip]:
 def _removal_slips(stages: Sequence[tuple[int, Any]], key: str, unit: str) -> list[Slip]:
     placed = 0.0
     for position, stage in stages:
-        change = getattr(stage, key, UNREAD)
-        if change is UNREAD:
+        given = getattr(stage, key, UNREAD)
+        if given is UNREAD:
             return []
-        if change is None:
+        if (change := known(given)) is None:
             continue
         if placed + change < -_ROUNDING:
             message = f"{-change:.4g} {unit} is removed but only {placed:.4g} {unit} is there"

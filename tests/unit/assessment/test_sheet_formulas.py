@@ -75,6 +75,7 @@ INDICES = (
     "Cc = 0.6\nCs = 0.08\npreconsolidation = { stress = 40 }\nM = 1.05\nstrength = { S = 0.24, m = 0.8 }"
 )
 
+SPREAD = '{{ dist = "normal", mean = {}, sd = {} }}'
 DUG = '[[stages]]\nname = "dug out"\nexcavate = 1.2\nstart = 0\nend = "2 weeks"\n\n'
 FURTHER = """
 [[further_loads]]
@@ -167,6 +168,20 @@ def scenarios() -> dict[str, Scenario]:
         texts["level held"]
         .replace("[drains]", FURTHER + "[drains]")
         .replace('name = "fill"\n', FURTHER_STAGES)
+    )
+    pit = '[[stages]]\nname = "pit"\nexcavate = 1.0\nstart = 0\nend = 0.05\n\n'
+    texts["replaced ground"] = (
+        varied(RATIOS)
+        .replace("[[stages]]", f"{pit}[[stages]]", 1)
+        .replace("height = 2\nstart = 0\n", "height = 3\nstart = 0.1\n")
+    )
+    texts["uncertain works"] = (
+        varied(RATIOS)
+        .replace("height = 2\n", f"height = {SPREAD.format(2, 0.1)}\n")
+        .replace("height = -0.5\n", f"height = {SPREAD.format(-0.5, 0.05)}\n")
+        .replace("crest_width = 8\n", f"crest_width = {SPREAD.format(8, 0.5)}\n")
+        .replace("spacing = 1.5\n", f"spacing = {SPREAD.format(1.5, 0.1)}\n")
+        .replace("bottom = 4\n", f"bottom = {SPREAD.format(4, 0.2)}\n")
     )
     found = {name: parse_scenario(text) for name, text in texts.items()}
     files = sorted((ROOT / "scenarios").glob("*.toml"))

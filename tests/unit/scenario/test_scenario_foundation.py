@@ -59,8 +59,13 @@ def faults_of(text):
 def test_defaults_and_units_are_read():
     load = parse_scenario(text_of('shape = "rectangle"\nwidth = "10 ft"\nlength = 6')).load
     assert isinstance(load, RectangleLoad)
-    assert load.width == pytest.approx(3.048)
-    assert (load.depth, load.contact, load.at, load.submergence) == (0.0, "rough", (0.0, 0.0), True)
+    assert load.width.expectation == pytest.approx(3.048)
+    assert (load.depth.expectation, load.contact, load.at, load.submergence) == (
+        0.0,
+        "rough",
+        (0.0, 0.0),
+        True,
+    )
     at = parse_scenario(text_of(f'{RECTANGLE}\nat = ["50 cm", -1]')).load.at
     assert at == pytest.approx((0.5, -1.0))
     assert isinstance(parse_scenario(text_of(f'{STRIP}\ncontact = "smooth"')).load, StripLoad)

@@ -21,7 +21,7 @@ def test_a_further_load_is_read_with_its_stages(base_text):
     text = with_tank(base_text)
     scenario = parse_scenario(text)
     (tank,) = scenario.further_loads
-    assert (tank.name, tank.shape, tank.diameter, tank.x, tank.y, tank.depth) == (
+    assert (tank.name, tank.shape, tank.diameter.expectation, tank.x, tank.y, tank.depth.expectation) == (
         "tank B",
         "circle",
         12,

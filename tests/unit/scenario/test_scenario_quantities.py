@@ -78,7 +78,8 @@ def test_reference_table_has_every_key_once_with_unit_and_meaning():
     assert (thickness.unit, thickness.allowed, thickness.source) == ("m", "0.05 to 200 m", "common practice")
     assert thickness.uncertain
     assert thickness.default == "required"
-    assert not keyed["[load] embankment", "crest_width"].uncertain
+    assert keyed["[load] embankment", "crest_width"].uncertain
+    assert not keyed["[load] embankment", "berm_width"].uncertain
     assert keyed["", "realisations"].default == "20000"
     assert keyed["[[layers]] clay preconsolidation", "pop"].unit == "kPa"
     assert {row.unit for row in rows} <= {*BASE_UNITS.values(), "", "of the parameter"}
