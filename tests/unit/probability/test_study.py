@@ -84,6 +84,13 @@ def test_no_limits_are_refused():
         exceedance_study(TrueRuns(two_quantities, dimension=2, seed=9), [], Allowance(runs=3000))
 
 
+def test_too_few_runs_for_the_pilot_are_refused():
+    runs = TrueRuns(two_quantities, dimension=2, seed=9)
+    with pytest.raises(ParameterError, match="at least 256 runs are needed for the pilot; got 100"):
+        exceedance_study(runs, LIMITS[:1], Allowance(runs=100))
+    assert runs.n_runs == 0
+
+
 def test_too_few_runs_for_what_was_asked_are_refused():
     runs = TrueRuns(two_quantities, dimension=2, seed=9)
     with pytest.raises(ParameterError, match="do not cover a pilot"):
