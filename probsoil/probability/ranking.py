@@ -8,7 +8,7 @@ from probsoil._typing import FloatArray, IntArray
 from probsoil.errors import ParameterError
 from probsoil.parameters.designs import CHUNK_SIZE
 from probsoil.probability.scores import (
-    TO_THE_QUANTITY,
+    SECOND_DEGREE,
     Score,
     ScoreChoice,
     chosen_score,
@@ -81,8 +81,8 @@ def score_of(
     Points for fitting and comparing are drawn 1.3 times as wide as the parameters, so that a fit need not
     be carried beyond its points where the limit lies. Candidates are compared on the 100 of 20,480 such
     points that one or another thinks worst, none of which they were fitted to: over the whole range every
-    fit looks good, and the order of the tail is what counts. If the fit of second degree to the quantity
-    wins, it is made again with the tail runs added; the rank correlation reported is that of before.
+    fit looks good, and the order of the tail is what counts. If the fit of second degree wins, it is made
+    again with the tail runs added; the rank correlation reported is that of before.
     """
     candidates = dict(given or {})
     if not fit and len(candidates) == 1:
@@ -99,7 +99,7 @@ def score_of(
     place = worst_predicted(candidates, SPREAD * runs.points(TAIL_STAGE, pool), TAIL_RUNS)
     tail, tail_worse = _run(runs, limit, TAIL_STAGE, place)
     choice = chosen_score(candidates, tail, tail_worse, training_runs=size)
-    if choice.name != TO_THE_QUANTITY:
+    if choice.name != SECOND_DEGREE:
         return choice
     refitted = quantity_score(np.concatenate([u, tail]), np.concatenate([worse, tail_worse]))
     return ScoreChoice(

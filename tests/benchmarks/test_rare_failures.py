@@ -191,7 +191,8 @@ def test_runs_of_plain_monte_carlo(case: Case, level: int) -> None:
     needed = monte_carlo_runs(case.exact[level], plan.within)
     print(
         f"\n{case.name} | p {LEVELS[level]:g} | plain Monte Carlo {found.model_runs:,} runs"
-        f", foreseen {needed:,} | {found.probability:.3g} within {found.reached:.3f} | CPU {time.process_time() - start:.2f} s"
+        f", foreseen {needed:,} | {found.probability:.3g} within {found.reached:.3f}"
+        f" | CPU {time.process_time() - start:.2f} s"
     )
     assert found.stopped
 
