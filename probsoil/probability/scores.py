@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 Score: TypeAlias = Callable[[FloatArray], FloatArray]
 
 SECOND_DEGREE = "quadratic"
+WEAK_CORRELATION = 0.5
 _PENALTIES = np.logspace(-5.0, 3.0, 25)  # of the mean eigenvalue
 _LINEAR_EASE = 0.02  # penalty on a linear term over that on a quadratic one
 _MOST_LEVERAGE = 0.9999
@@ -84,6 +85,11 @@ class ScoreChoice:
     correlation: dict[str, float]
     tail_runs: int
     training_runs: int
+
+    @property
+    def weak(self) -> bool:
+        """Whether the chosen score ranks the tail so poorly that ways of failing may lie far from its top."""
+        return self.correlation.get(self.name, 1.0) < WEAK_CORRELATION
 
     def to_frame(self) -> "pd.DataFrame":
         """Return the comparison as a table.
