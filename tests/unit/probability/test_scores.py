@@ -118,7 +118,7 @@ def test_given_and_fitted_scores_compete_on_runs_that_nothing_was_fitted_to():
     assert runs.n_runs == training_runs(4) + TAIL_RUNS == 300
     assert set(choice.correlation) == {"exact", "useless", "linear", "quadratic"}
     score_of(runs, limit)
-    assert runs.n_runs <= 400  # the fitted ones may pick other tail points, the training runs are kept
+    assert runs.n_runs <= 500  # the fitted ones may pick other tail points, the training runs are kept
 
 
 def test_several_given_scores_need_tail_runs_only():

@@ -37,7 +37,7 @@ def test_each_limit_has_its_estimator(study):
     ]
     assert study.scores[0] is None
     assert study.scores[1].name == "known"
-    assert study.scores[2].training_runs == 200
+    assert study.scores[2].training_runs == 100
 
 
 def test_each_estimate_is_right_within_four_standard_errors(study):
