@@ -8,7 +8,7 @@ from probsoil._typing import FloatArray, IntArray
 from probsoil.errors import ParameterError
 from probsoil.parameters.designs import CHUNK_SIZE
 from probsoil.probability.scores import (
-    TO_THE_QUANTITY,
+    SECOND_DEGREE,
     Score,
     ScoreChoice,
     chosen_score,
@@ -21,7 +21,7 @@ from probsoil.probability.true_runs import TAIL_STAGE, TRAINING_STAGE, QuantityL
 
 SPREAD = 1.3  # of the points that scores are fitted to and compared on, over that of the parameters
 TAIL_CHUNKS = 20
-TAIL_RUNS = 100
+TAIL_RUNS = 200
 
 
 def training_runs(dimension: int) -> int:
@@ -35,9 +35,9 @@ def training_runs(dimension: int) -> int:
     Returns
     -------
     n : int, [-]
-        15 for each parameter, at least 200.
+        12 for each parameter, at least 100.
     """
-    return max(200, 15 * dimension)
+    return max(100, 12 * dimension)
 
 
 def score_of(
@@ -62,7 +62,7 @@ def score_of(
     fit : bool
         Whether to fit candidates as well.
     n : int, [-], optional
-        Runs to fit to; 15 for each parameter, at least 200, if not given.
+        Runs to fit to; 12 for each parameter, at least 100, if not given.
 
     Returns
     -------
@@ -79,10 +79,10 @@ def score_of(
     Notes
     -----
     Points for fitting and comparing are drawn 1.3 times as wide as the parameters, so that a fit need not
-    be carried beyond its points where the limit lies. Candidates are compared on the 100 of 20,480 such
+    be carried beyond its points where the limit lies. Candidates are compared on the 200 of 20,480 such
     points that one or another thinks worst, none of which they were fitted to: over the whole range every
-    fit looks good, and the order of the tail is what counts. If the fit of second degree to the quantity
-    wins, it is made again with the tail runs added; the rank correlation reported is that of before.
+    fit looks good, and the order of the tail is what counts. If the fit of second degree wins, it is made
+    again with the tail runs added; the rank correlation reported is that of before.
     """
     candidates = dict(given or {})
     if not fit and len(candidates) == 1:
@@ -99,7 +99,7 @@ def score_of(
     place = worst_predicted(candidates, SPREAD * runs.points(TAIL_STAGE, pool), TAIL_RUNS)
     tail, tail_worse = _run(runs, limit, TAIL_STAGE, place)
     choice = chosen_score(candidates, tail, tail_worse, training_runs=size)
-    if choice.name != TO_THE_QUANTITY:
+    if choice.name != SECOND_DEGREE:
         return choice
     refitted = quantity_score(np.concatenate([u, tail]), np.concatenate([worse, tail_worse]))
     return ScoreChoice(

@@ -20,7 +20,8 @@ if TYPE_CHECKING:
 
 Score: TypeAlias = Callable[[FloatArray], FloatArray]
 
-TO_THE_QUANTITY = "quadratic"
+SECOND_DEGREE = "quadratic"
+WEAK_CORRELATION = 0.5
 _PENALTIES = np.logspace(-5.0, 3.0, 25)  # of the mean eigenvalue
 _LINEAR_EASE = 0.02  # penalty on a linear term over that on a quadratic one
 _MOST_LEVERAGE = 0.9999
@@ -85,6 +86,11 @@ class ScoreChoice:
     tail_runs: int
     training_runs: int
 
+    @property
+    def weak(self) -> bool:
+        """Whether the chosen score ranks the tail so poorly that ways of failing may lie far from its top."""
+        return self.correlation.get(self.name, 1.0) < WEAK_CORRELATION
+
     def to_frame(self) -> "pd.DataFrame":
         """Return the comparison as a table.
 
@@ -137,8 +143,7 @@ def fitted_scores(u: FloatArray, worse: FloatArray) -> dict[str, Score]:
     Returns
     -------
     scores : dict of str to callable
-        A linear fit to normal scores of the ranks, and fits of second degree to the quantity and to
-        normal scores of its ranks.
+        A linear fit to normal scores of the ranks, and a fit of second degree to the quantity.
 
     Raises
     ------
@@ -148,8 +153,8 @@ def fitted_scores(u: FloatArray, worse: FloatArray) -> dict[str, Score]:
     Notes
     -----
     Ridge regression about the mean; the penalty on terms of second degree is 50 times that on linear
-    ones, its size is chosen by leave-one-out. Fits to ranks do not change with the unit or with any rising
-    function of the quantity: the linear one ranks a product of lognormals exactly in the limit. Infinite
+    ones, its size is chosen by leave-one-out. The linear fit does not change with the unit or with any
+    rising function of the quantity, and ranks a product of lognormals exactly in the limit. Infinite
     values count as the greatest finite ones in the fit to the quantity.
     """
     if u.ndim != 2 or worse.shape != (len(u),) or len(u) < 8:
@@ -157,8 +162,7 @@ def fitted_scores(u: FloatArray, worse: FloatArray) -> dict[str, Score]:
     normal = ndtri((_rank(worse) + 0.5) / len(u))
     return {
         "linear": _ridge(u, normal, quadratic=False),
-        TO_THE_QUANTITY: quantity_score(u, worse),
-        "quadratic of ranks": _ridge(u, normal, quadratic=True),
+        SECOND_DEGREE: quantity_score(u, worse),
     }
 
 

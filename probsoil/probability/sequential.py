@@ -9,6 +9,7 @@ from scipy.special import gammaln
 
 from probsoil._typing import FloatArray, IntArray
 from probsoil.errors import ParameterError
+from probsoil.parameters.designs import CHUNK_SIZE
 from probsoil.probability.binomial import clopper_pearson, unseen_bound
 from probsoil.probability.plans import MonteCarloPlan
 from probsoil.probability.true_runs import QuantityLimit, TrueRuns, monte_carlo_outcomes
@@ -16,7 +17,7 @@ from probsoil.probability.true_runs import QuantityLimit, TrueRuns, monte_carlo_
 if TYPE_CHECKING:
     import pandas as pd
 
-FIRST_LOOK = 1024
+LOOK_GROWTH = 0.25  # doubling left the interval up to 1.4 times as wide as aimed at, and took more runs
 _LOGITS = (-41.0, 34.0)  # between which limits are sought: 1e-18 from zero, 2e-15 from one
 _COLUMNS = ("runs", "exceeding", "probability", "low", "high", "stops_at")
 
@@ -118,11 +119,11 @@ def monte_carlo_exceedance(
 
     Notes
     -----
-    Looks are at 1024 realisations and at each doubling, the last at all that are allowed. A limit is done
-    at the first look with so many exceedances that the exact binomial interval is within the
-    precision; further realisations are made only for limits that are not done, and do not change
-    those that are. So each limit has a stopping rule on its own counts alone, which
-    `sequential_limits` allows for exactly.
+    Looks are at 1024 realisations and then each a quarter further, the last at all that are allowed. A
+    limit is done at the first look with so many exceedances that the exact binomial interval is within
+    the precision. The interval given, which allows for the looks, may be somewhat wider than that. Further
+    realisations are made only for limits that are not done, and do not change those that are. So each limit
+    has a stopping rule on its own counts alone, which `sequential_limits` allows for exactly.
     """
     plan = plan or MonteCarloPlan()
     looks = look_schedule(plan.most_runs)
@@ -152,11 +153,11 @@ def look_schedule(most_runs: int) -> IntArray:
     Returns
     -------
     looks : ndarray of int, shape (n_look,), [-]
-        1024 times powers of two, and `most_runs` at the end.
+        Multiples of 1024, each a quarter or 1024 more than the last, and `most_runs` at the end.
     """
-    looks = [FIRST_LOOK]
+    looks = [CHUNK_SIZE]
     while looks[-1] < most_runs:
-        looks.append(2 * looks[-1])
+        looks.append(looks[-1] + CHUNK_SIZE * max(1, round(LOOK_GROWTH * looks[-1] / CHUNK_SIZE)))
     return np.array([*(n for n in looks[:-1] if n < most_runs), most_runs], dtype=np.int64)
 
 

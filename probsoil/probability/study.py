@@ -101,7 +101,7 @@ def exceedance_study(
     Raises
     ------
     ParameterError
-        If there are no limits, or the runs left do not cover what strata need.
+        If there are no limits, or the runs allowed do not cover the pilot or what strata need.
     ShapeError
         If the performance function or a score does not give the shape it must.
 
@@ -114,6 +114,8 @@ def exceedance_study(
     """
     if not limits:
         raise ParameterError("at least one limit is needed; got none")
+    if allowance.runs is not None and allowance.runs < PILOT_RUNS:
+        raise ParameterError(f"at least {PILOT_RUNS} runs are needed for the pilot; got {allowance.runs}")
     before = runs.n_runs
     choices = _choices(runs, limits, allowance, given or {})
     if method is not None:

@@ -20,6 +20,8 @@ POOL_STAGE = 4  # first spawn key of the points that are ranked by a score
 TRAINING_STAGE = 5  # of the points that scores are fitted to
 TAIL_STAGE = 6  # of the points among which scores are compared
 
+_ROWS_AT_ONCE = 1 << 14  # points made and run together, so that a long design fits the memory
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class QuantityLimit:
@@ -183,7 +185,8 @@ class TrueRuns:
         kept = self._kept.get(stage)
         new = np.unique(index) if kept is None else np.setdiff1d(index, kept.index)
         if new.size:
-            made = self._run(spread * self.points(stage, new))
+            parts = np.array_split(new, -(-new.size // _ROWS_AT_ONCE))
+            made = np.concatenate([self._run(spread * self.points(stage, part)) for part in parts])
             kept = self._kept[stage] = _Kept(new, made) if kept is None else _merged(kept, new, made)
         if kept is None:
             return np.empty((0, 1))

@@ -17,7 +17,15 @@ import numpy as np
 import pytest
 from scipy.special import ndtr, ndtri
 
-from probsoil.probability import QuantityLimit, StratifiedPlan, TrueRuns, stratified_exceedance
+from probsoil.probability import (
+    MonteCarloPlan,
+    QuantityLimit,
+    StratifiedPlan,
+    TrueRuns,
+    monte_carlo_exceedance,
+    stratified_exceedance,
+)
+from probsoil.probability.chooser import monte_carlo_runs
 from probsoil.probability.ranking import score_of
 from probsoil.probability.strata import pool_size, strata_by_score
 
@@ -171,6 +179,22 @@ def test_thresholds_have_the_probabilities_stated(case: Case) -> None:
     print(f"\n{case.name}: {mean} with standard errors {error}")
     # the stated values have standard errors of their own, a fifth of these
     assert (np.abs(mean - case.exact) < 4.0 * 1.02 * error).all()
+
+
+@pytest.mark.parametrize("level", range(4))
+@pytest.mark.parametrize("case", CASES, ids=lambda case: case.name)
+def test_runs_of_plain_monte_carlo(case: Case, level: int) -> None:
+    start = time.process_time()
+    runs = TrueRuns(case.function, dimension=case.dimension, seed=500)
+    plan = MonteCarloPlan(most_runs=1 << 21)
+    (found,) = monte_carlo_exceedance(runs, [QuantityLimit(threshold=case.threshold[level])], plan)
+    needed = monte_carlo_runs(case.exact[level], plan.within)
+    print(
+        f"\n{case.name} | p {LEVELS[level]:g} | plain Monte Carlo {found.model_runs:,} runs"
+        f", foreseen {needed:,} | {found.probability:.3g} within {found.reached:.3f}"
+        f" | CPU {time.process_time() - start:.2f} s"
+    )
+    assert found.stopped
 
 
 @pytest.mark.parametrize("block", range(20))

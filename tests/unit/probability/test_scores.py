@@ -74,6 +74,7 @@ def test_the_candidate_that_ranks_the_tail_wins():
     assert choice.correlation["first"] == pytest.approx(expected, abs=1e-12)
     frame = choice.to_frame()
     assert frame["chosen"].tolist() == [False, True, False]
+    assert not choice.weak
     assert (choice.tail_runs, choice.training_runs) == (len(POINTS), 7)
 
 
@@ -86,6 +87,7 @@ def test_rank_correlation_with_ties_is_that_of_scipy():
 def test_a_constant_score_correlates_with_nothing():
     choice = chosen_score({"flat": lambda u: np.zeros(len(u))}, POINTS, POINTS[:, 0], training_runs=0)
     assert choice.correlation["flat"] == 0.0
+    assert choice.weak
 
 
 def test_no_candidate_is_refused():
@@ -114,9 +116,9 @@ def test_given_and_fitted_scores_compete_on_runs_that_nothing_was_fitted_to():
     choice = score_of(runs, limit, {"exact": lambda u: u @ WEIGHT, "useless": lambda u: u[:, 3]})
     assert choice.name == "exact"
     assert runs.n_runs == training_runs(4) + TAIL_RUNS == 300
-    assert set(choice.correlation) == {"exact", "useless", "linear", "quadratic", "quadratic of ranks"}
+    assert set(choice.correlation) == {"exact", "useless", "linear", "quadratic"}
     score_of(runs, limit)
-    assert runs.n_runs <= 400  # the fitted ones may pick other tail points, the training runs are kept
+    assert runs.n_runs <= 500  # the fitted ones may pick other tail points, the training runs are kept
 
 
 def test_several_given_scores_need_tail_runs_only():

@@ -73,8 +73,11 @@ def test_one_look_gives_the_binomial_limits(exceeding):
     assert found == pytest.approx((float(low), float(high)), rel=1e-9)
 
 
-def test_looks_double_up_to_what_is_allowed():
-    assert look_schedule(5000).tolist() == [1024, 2048, 4096, 5000]
+def test_looks_grow_by_a_quarter_up_to_what_is_allowed():
+    assert (look_schedule(7200) / 1024).tolist() == [1, 2, 3, 4, 5, 6, 7200 / 1024]
+    looks = look_schedule(1 << 20)
+    assert (looks[:-1] % 1024 == 0).all()
+    assert (looks[10:-1] / looks[9:-2]).tolist() == pytest.approx([1.25] * (len(looks) - 11), abs=0.06)
     assert look_schedule(2048).tolist() == [1024, 2048]
     assert look_schedule(300).tolist() == [300]
 

@@ -37,7 +37,7 @@ def test_each_limit_has_its_estimator(study):
     ]
     assert study.scores[0] is None
     assert study.scores[1].name == "known"
-    assert study.scores[2].training_runs == 200
+    assert study.scores[2].training_runs == 100
 
 
 def test_each_estimate_is_right_within_four_standard_errors(study):
@@ -82,6 +82,13 @@ def test_the_estimator_may_be_asked_for():
 def test_no_limits_are_refused():
     with pytest.raises(ParameterError, match="at least one limit is needed; got none"):
         exceedance_study(TrueRuns(two_quantities, dimension=2, seed=9), [], Allowance(runs=3000))
+
+
+def test_too_few_runs_for_the_pilot_are_refused():
+    runs = TrueRuns(two_quantities, dimension=2, seed=9)
+    with pytest.raises(ParameterError, match="at least 256 runs are needed for the pilot; got 100"):
+        exceedance_study(runs, LIMITS[:1], Allowance(runs=100))
+    assert runs.n_runs == 0
 
 
 def test_too_few_runs_for_what_was_asked_are_refused():

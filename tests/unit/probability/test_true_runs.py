@@ -52,6 +52,13 @@ def test_a_run_is_made_once_in_any_order_and_repeated_for_free():
     assert runs.seconds > 0.0
 
 
+def test_a_long_design_is_run_in_parts():
+    performance = Counting()
+    outcome = monte_carlo_outcomes(TrueRuns(performance, dimension=2, seed=1), 40_000)
+    assert max(len(u) for u in performance.seen) <= 1 << 14
+    assert (outcome[:, 0] == np.concatenate(performance.seen).sum(axis=1)).all()
+
+
 def test_stages_have_points_of_their_own():
     runs = TrueRuns(lambda u: u[:, 0], dimension=2, seed=1)
     index = np.arange(3)
