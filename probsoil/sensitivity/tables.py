@@ -105,7 +105,7 @@ class FunctionDrivers:
         Shapley shares of the quantity from a polynomial chaos; not a number where refused, see the notes.
     halved : pandas.DataFrame
         Probability with half of what is unknown about each leading parameter.
-    values : pandas.DataFrame
+    at_values : pandas.DataFrame
         Probability with each leading parameter at its 10 % and 90 % values.
     notes : tuple of str
         What to beware of.
@@ -114,7 +114,7 @@ class FunctionDrivers:
     sample: SampleDrivers
     shapley: "pd.DataFrame"
     halved: "pd.DataFrame"
-    values: "pd.DataFrame"
+    at_values: "pd.DataFrame"
     notes: tuple[str, ...]
 
 
@@ -200,8 +200,7 @@ def function_drivers(
     correlation : pandas.DataFrame, optional
         Correlation of the latent normals; independent by default.
     draws : tuple of int, [-]
-        Number of realisations and seed. What-if tables of the three leading parameters run all of them nine
-        times more.
+        Number of realisations and seed. The three leading parameters take three runs of all of them each.
     others : {"keep", "follow"}
         What the others do when one parameter is changed; see `probsoil.sensitivity.changes.Trials`.
 
@@ -262,7 +261,7 @@ def function_drivers(
         sample=sample,
         shapley=parts.to_frame(),
         halved=what_if_frame(halved_knowledge(run, leading)),
-        values=what_if_frame(probability_at_values(run, leading)),
+        at_values=what_if_frame(probability_at_values(run, leading)),
         notes=sample.notes + (() if parts.note is None else (parts.note,)),
     )
 

@@ -83,10 +83,12 @@ def test_group_elasticity_against_central_differences_of_a_million():
         difference = (share[0] - share[1]) / 0.1 / flag.mean()
         noise = np.sqrt((share[0] + share[1]) * 0.1 / len(z)) / 0.1 / flag.mean()
         # third derivative: a cubic in the step of 0.05, 3 % is generous
-        assert abs(found.value[i] - difference) < 4.0 * np.hypot(found.error[i], noise) + 0.03 * abs(difference)
+        assert abs(found.value[i] - difference) < 4.0 * np.hypot(found.error[i], noise) + 0.03 * abs(
+            difference
+        )
 
 
-def test_chunks_add_up_bit_for_bit_in_their_order():
+def test_chunks_add_up():
     z, flag = sampled(3000, 0.1)
     parts = [case_sums(z[i : i + 1000], INVERSE, flag[i : i + 1000], GROUPS) for i in (0, 1000, 2000)]
     found = merged_cases(merged_cases(parts[0], parts[1]), parts[2])

@@ -9,7 +9,7 @@ import pytest
 import probsoil.sensitivity.players as module
 from probsoil.errors import ParameterError, ShapeError
 from probsoil.probability import chaos_shares, hermite_basis, polynomial_chaos, quantile_basis
-from probsoil.sensitivity import driver_sums, linear_shapley, shapley_shares, shares
+from probsoil.sensitivity import Gathering, driver_sums, linear_shapley, shapley_shares, shares
 from probsoil.sensitivity.players import membership, permanent, player_effects
 
 CORRELATION = np.array([[1.0, 0.6, 0.3], [0.6, 1.0, -0.2], [0.3, -0.2, 1.0]])
@@ -192,10 +192,8 @@ def test_shares_of_groups_of_the_linear_fit():
     found = shares(sums, correlation, players=players)
     exact = enumerated(linear_worth(b, correlation), list(players.values()))
     np.testing.assert_allclose(found.share, exact / exact.sum(), rtol=1e-9)
+    one = Gathering(member=np.zeros(4, dtype=np.int64), shift=np.ones(4))
     with pytest.raises(ParameterError, match="either gathering or players"):
-        from probsoil.sensitivity import Gathering
-
-        one = Gathering(member=np.zeros(4, dtype=np.int64), shift=np.ones(4))
         shares(sums, correlation, gathering=one, players=players)
 
 

@@ -28,9 +28,7 @@ def exceeded(z):
 
 
 def linear_trials(others="keep", *, n=40_000, seed=1, confidence=SURE):
-    return trials(
-        exceeded, CORRELATION, PARAMETERS, draws=(n, seed), others=others, confidence=confidence
-    )
+    return trials(exceeded, CORRELATION, PARAMETERS, draws=(n, seed), others=others, confidence=confidence)
 
 
 def moved_law(own, factor, shift, others):
@@ -109,9 +107,7 @@ def test_weights_without_a_finite_variance_are_refused():
     row = reweighted_halving(run, ["a"])[0]
     assert np.isnan(row.probability)
     assert "not finite" in row.note
-    following = trials(
-        lambda z: z.sum(axis=1) > 3.0, tied, ["a", "b"], draws=(2000, 1), others="follow"
-    )
+    following = trials(lambda z: z.sum(axis=1) > 3.0, tied, ["a", "b"], draws=(2000, 1), others="follow")
     assert np.isfinite(reweighted_halving(following, ["a"])[0].probability)
 
 
