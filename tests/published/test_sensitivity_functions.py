@@ -45,7 +45,7 @@ def test_ishigami_on_the_model():
     pair = 0.01 * np.pi**8 * (1.0 / 18.0 - 1.0 / 50.0) / variance
     np.testing.assert_allclose(first, [0.3139, 0.4424, 0.0], atol=5e-5)
     assert within(found.first, found.first_reach, first).all()
-    assert within(found.total, found.total_reach, first + [pair, 0.0, pair]).all()
+    assert within(found.total, found.total_reach, first + np.array([pair, 0.0, pair])).all()
     expected = np.zeros((3, 3))
     expected[0, 2] = expected[2, 0] = pair
     assert within(found.pair, found.pair_reach, expected).all()
@@ -115,7 +115,7 @@ def test_two_and_three_linear_inputs_from_the_chaos(r):
 
 
 def test_direction_factors_of_a_linear_limit():
-    """Independent inputs: mean elasticities lie along the direction factors, spread ones along their squares."""
+    """Independent inputs: mean elasticities lie along direction factors, spread ones along squares."""
     weight = np.array([1.0, -2.0, 0.5, 0.0])
     limit = LimitState(performance=lambda u: u @ weight, dimension=4, threshold=4.0, sense="not more than")
     factors = weight / np.linalg.norm(weight)
