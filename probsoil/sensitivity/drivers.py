@@ -166,14 +166,70 @@ def drivers(
             f"sums over {sums.mean_score.shape[1]} parameters match neither {len(names)} names "
             f"nor correlation {correlation.shape}"
         )
-    spread, mean = elasticities(sums)
     part = shares(sums, correlation, confidence, gathering=gathering)
     met, exceeding = (int(number) for number in sums.count)
-    ranked_by = _measure(met, exceeding)
-    rows = _rows(names, (spread, mean), part, confidence)
-    if min(met, exceeding) >= LEAST_CASES:
+    cases = Cases(
+        realisations=met + exceeding,
+        exceeding=exceeding,
+        rarer=min(met, exceeding),
+        probability=exceeding / max(met + exceeding, 1),
+    )
+    return ranked_drivers(names, elasticities(sums), part, cases, confidence)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Cases:
+    """Realisations on the sides of a limit.
+
+    Attributes
+    ----------
+    realisations, exceeding : int, [-]
+        Realisations in all, and those that exceed.
+    rarer : int, [-]
+        Realisations on the rarer side; of weighted ones, how many equal ones they are worth.
+    probability : float, [-]
+        Probability of exceedance.
+    """
+
+    realisations: int
+    exceeding: int
+    rarer: int
+    probability: float
+
+
+def ranked_drivers(
+    names: Sequence[str],
+    measures: tuple[Elasticity, Elasticity],
+    part: Shares,
+    cases: Cases,
+    confidence: float,
+) -> Drivers:
+    """Rank what can be told apart.
+
+    Parameters
+    ----------
+    names : sequence of str
+        Addresses of the parameters.
+    measures : tuple of Elasticity
+        To spread and to mean.
+    part : Shares
+        Shares of the quantity's variance.
+    cases : Cases
+        Realisations on the sides of the limit.
+    confidence : float, [-]
+        Confidence of the limits.
+
+    Returns
+    -------
+    drivers : Drivers
+        Rows by the rule of `drivers`.
+    """
+    spread, mean = measures
+    ranked_by = _measure(cases)
+    rows = _rows(names, measures, part, confidence)
+    if cases.rarer >= LEAST_CASES:
         signs = _sign(spread, confidence), _sign(mean, confidence)
-        rarer = 1 if exceeding <= met else -1  # more spread lowers P where exceeding is the rule
+        rarer = 1 if cases.probability <= 0.5 else -1  # more spread lowers P where exceeding is the rule
         by_spread, by_mean = _ranks(spread, signs[0] == rarer), _ranks(mean, signs[1] != 0)
         ranks = by_mean if ranked_by == "mean" else by_spread
         rows = [
@@ -183,18 +239,18 @@ def drivers(
     return Drivers(
         rows=tuple(sorted(rows, key=_order)),
         ranked_by=ranked_by,
-        realisations=met + exceeding,
-        exceeding=exceeding,
+        realisations=cases.realisations,
+        exceeding=cases.exceeding,
         fitted=part.fitted,
         r_squared=part.r_squared,
         confidence=confidence,
-        note=_note(met, exceeding, part) if dimension else "no parameter is uncertain",
+        note=_note(cases, part) if len(names) else "no parameter is uncertain",
     )
 
 
-def _measure(met: int, exceeding: int) -> Measure:
+def _measure(cases: Cases) -> Measure:
     low, high = MIDDLING
-    return "mean" if exceeding and low <= exceeding / (met + exceeding) <= high else "spread"
+    return "mean" if low <= cases.probability <= high else "spread"
 
 
 def _sign(measure: Elasticity, confidence: float) -> IntArray:
@@ -247,20 +303,40 @@ def _order(row: Driver) -> tuple[float, float]:
     return (np.inf if row.rank is None else row.rank, -row.share if np.isfinite(row.share) else 0.0)
 
 
-def _note(met: int, exceeding: int, part: Shares) -> str | None:
-    remarks = []
-    n = met + exceeding
-    fewer = min(met, exceeding)
-    if fewer == 0:
+def few_cases_note(cases: Cases) -> str | None:
+    """Say that too few realisations lie on one side of a limit, and how many would do.
+
+    Parameters
+    ----------
+    cases : Cases
+        Realisations on the sides of the limit.
+
+    Returns
+    -------
+    note : str or None
+        None where there are enough.
+    """
+    n, exceeding, fewer = cases.realisations, cases.exceeding, cases.rarer
+    if exceeding in (0, n):
         which = "no realisation exceeds" if exceeding == 0 else "every realisation exceeds"
-        remarks.append(f"{which} the limit, so nothing can be said of what decides it")
-    elif fewer < LEAST_CASES:
-        which = ("exceed" if exceeding < met else "meet") + ("s" if fewer == 1 else "")
-        enough = float(f"{GOOD_CASES * n / fewer:.2g}")
-        remarks.append(
-            f"only {fewer} of {n:,} realisations {which} the limit, too few to rank parameters "
-            f"(at least {LEAST_CASES} are needed); about {enough:,.0f} realisations would do"
-        )
+        return f"{which} the limit, so nothing can be said of what decides it"
+    if fewer >= LEAST_CASES:
+        return None
+    rare = cases.probability < 0.5
+    count = exceeding if rare else n - exceeding
+    which = ("exceed" if rare else "meet") + ("s" if count == 1 else "")
+    worth = "" if fewer == count else f", unequal in weight and worth {fewer} equal ones"
+    enough = float(f"{GOOD_CASES * n / max(fewer, 1):.2g}")
+    return (
+        f"only {count} of {n:,} realisations {which} the limit{worth}, too few to rank parameters "
+        f"(at least {LEAST_CASES} are needed); about {enough:,.0f} realisations would do"
+    )
+
+
+def _note(cases: Cases, part: Shares) -> str | None:
+    few = few_cases_note(cases)
+    remarks = [] if few is None else [few]
+    n = cases.realisations
     if np.isnan(part.r_squared):
         remarks.append(_no_shares(part))
     elif part.r_squared < GOOD_FIT:

@@ -84,12 +84,26 @@ def elasticities(sums: DriverSums) -> tuple[Elasticity, Elasticity]:
     .. [1] R. Y. Rubinstein, "The score function approach for sensitivity analysis of computer simulation
        models", Mathematics and Computers in Simulation, 28, 1986 (recalled; not opened).
     """
-    spread = _elasticity(sums.count, sums.spread_score, sums.spread_square)
-    mean = _elasticity(sums.count, sums.mean_score, sums.mean_square)
+    spread = score_mean(sums.count, sums.spread_score, sums.spread_square)
+    mean = score_mean(sums.count, sums.mean_score, sums.mean_square)
     return spread, mean
 
 
-def _elasticity(count: IntArray, score: FloatArray, square: FloatArray) -> Elasticity:
+def score_mean(count: IntArray, score: FloatArray, square: FloatArray) -> Elasticity:
+    """Mean over the exceeding realisations of what has mean zero over all, by the formula of `elasticities`.
+
+    Parameters
+    ----------
+    count : ndarray of int, shape (2,), [-]
+        Realisations that meet the limit and that exceed it.
+    score, square : ndarray, shape (2, m), [-]
+        Sums and sums of squares over each.
+
+    Returns
+    -------
+    mean : Elasticity
+        Mean and its standard error.
+    """
     met, exceeded = (int(number) for number in count)
     unknown = np.full(score.shape[1], np.nan)
     if met == 0 or exceeded == 0:

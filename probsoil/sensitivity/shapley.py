@@ -72,17 +72,33 @@ def _over_subsets(coefficients: FloatArray, correlation: FloatArray) -> FloatArr
     size, functions = coefficients.shape
     worth = np.zeros((1 << size, functions))
     covariance = correlation @ coefficients
-    members = np.zeros(1 << size, dtype=np.int64)
     for count in range(1, size + 1):
         subsets = np.array(list(combinations(range(size), count)))
         masks = (1 << subsets).sum(axis=1)
         inner = correlation[subsets[:, :, np.newaxis], subsets[:, np.newaxis, :]]
         outer = covariance[subsets]
         worth[masks] = (outer * np.linalg.solve(inner, outer)).sum(axis=1)
-        members[masks] = count
-    weight = np.array([factorial(s) * factorial(size - s - 1) / factorial(size) for s in range(size)])
+    return effects_of_worth(worth)
+
+
+def effects_of_worth(worth: FloatArray) -> FloatArray:
+    """Shapley effects from the worth of every subset.
+
+    Parameters
+    ----------
+    worth : ndarray, shape (2^size, n_function), [any]
+        Worth of each subset; the bits of its number say who belongs to it.
+
+    Returns
+    -------
+    effects : ndarray, shape (size, n_function), [any]
+        Rise of the worth when each joins, averaged over all orders of joining.
+    """
+    size = len(worth).bit_length() - 1
     every = np.arange(1 << size)
-    effects = np.empty_like(coefficients)
+    members = np.array([int(mask).bit_count() for mask in every])
+    weight = np.array([factorial(s) * factorial(size - s - 1) / factorial(size) for s in range(size)])
+    effects = np.empty((size, worth.shape[1]))
     for variable in range(size):
         without = every[(every >> variable) & 1 == 0]
         rise = worth[without | (1 << variable)] - worth[without]

@@ -1,12 +1,15 @@
 """Shares of a quantity's variance, by the best linear fit in the latent normals."""
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from scipy.special import stdtrit
 
 from probsoil._typing import FloatArray
+from probsoil.errors import ParameterError
 from probsoil.sensitivity.accumulate import GROUPS, DriverSums, Gathering
+from probsoil.sensitivity.players import membership, player_effects
 from probsoil.sensitivity.shapley import linear_shapley
 
 _CONSTANT = 1e-13  # variance over mean square below which a quantity does not vary
@@ -45,6 +48,7 @@ def shares(
     confidence: float = 0.95,
     *,
     gathering: Gathering | None = None,
+    players: Mapping[str, Sequence[int]] | None = None,
 ) -> Shares:
     """Shapley shares of the best linear fit of a quantity in the latent normals.
 
@@ -59,11 +63,20 @@ def shares(
     gathering : Gathering or None
         Latent normals whose shares are added up. That is the Shapley effect of the lot only where no two of
         them lie in one group of correlated ones.
+    players : mapping of str to sequence of int, optional
+        Groups of latent normals, each of which joins as a whole: exact also where correlation ties members of
+        one group to each other or to another group. Each latent normal belongs to exactly one.
 
     Returns
     -------
     shares : Shares
-        Shares that add up to one, limits, and the quality of the fit.
+        Shares that add up to one, limits, and the quality of the fit; one per latent normal, parameter of
+        `gathering` or group of `players`.
+
+    Raises
+    ------
+    ParameterError
+        If a latent normal belongs to no group or to several, or both groupings are given.
 
     Notes
     -----
@@ -74,7 +87,11 @@ def shares(
     shares.
     """
     dimension = sums.dimension
-    unknown = np.full(dimension if gathering is None else gathering.size, np.nan)
+    if gathering is not None and players is not None:
+        raise ParameterError("give either gathering or players, not both")
+    member = None if players is None else membership(players, dimension)
+    size = dimension if gathering is None else gathering.size
+    unknown = np.full(size if member is None else len(member), np.nan)
     used = np.flatnonzero(sums.fitted)
     total = sums.products.sum(axis=0)
     fitted = int(sums.fitted.sum())
@@ -92,24 +109,51 @@ def shares(
             enough=enough,
         )
     fits = np.stack([_slopes(total), *(_slopes(total - sums.products[g]) for g in used)], axis=1)
-    effects, error = linear_shapley(fits, correlation)
+    if member is not None:  # b'z = (C'b)'u, a chaos of degree one
+        turned = np.asarray(np.linalg.cholesky(correlation).T @ fits, dtype=np.float64)
+        effects, error = player_effects(np.eye(dimension, dtype=np.int64), turned, correlation, member)
+    else:
+        effects, error = linear_shapley(fits, correlation)
     if gathering is not None:  # the errors stem from the same random orders, so they add up themselves
         effects, error = gathering.added_up(effects), gathering.added_up(error)
-    parts = effects / effects.sum(axis=0)
-    share, left_out = parts[:, 0], parts[:, 1:]
-    groups = len(used)
-    jackknife = (groups - 1) / groups * ((left_out - left_out.mean(axis=1, keepdims=True)) ** 2).sum(axis=1)
-    variance = jackknife + (error[:, 0] / effects[:, 0].sum()) ** 2
-    reach = float(stdtrit(groups - 1, 0.5 * (1.0 + confidence))) * np.sqrt(variance)
+    share, low, high = jackknife_limits(effects, error[:, 0], confidence)
     return Shares(
         share=share,
-        low=np.maximum(share - reach, 0.0),
-        high=np.minimum(share + reach, 1.0),
+        low=low,
+        high=high,
         r_squared=_r_squared(total),
         fitted=fitted,
         needed=needed,
         enough=enough,
     )
+
+
+def jackknife_limits(
+    effects: FloatArray, error: FloatArray, confidence: float
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Shares from effects, with limits from the same effects without each group of realisations in turn.
+
+    Parameters
+    ----------
+    effects : ndarray, shape (n, n_group + 1), [any]
+        Effects from all realisations, then without each group.
+    error : ndarray, shape (n,), [any]
+        Standard error of the effects from random orders.
+    confidence : float, [-]
+        Confidence of the limits.
+
+    Returns
+    -------
+    share, low, high : ndarray, shape (n,), [-]
+        Effects over their sum and the t limits of the jackknife, clipped to 0 and 1.
+    """
+    parts = effects / effects.sum(axis=0)
+    share, left_out = parts[:, 0], parts[:, 1:]
+    groups = left_out.shape[1]
+    jackknife = (groups - 1) / groups * ((left_out - left_out.mean(axis=1, keepdims=True)) ** 2).sum(axis=1)
+    variance = jackknife + (error / effects[:, 0].sum()) ** 2
+    reach = float(stdtrit(groups - 1, 0.5 * (1.0 + confidence))) * np.sqrt(variance)
+    return share, np.maximum(share - reach, 0.0), np.minimum(share + reach, 1.0)
 
 
 def _slopes(products: FloatArray) -> FloatArray:
