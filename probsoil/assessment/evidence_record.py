@@ -95,6 +95,32 @@ def conflicts(space: ParameterSpace) -> list[tuple[str, str]]:
     return told
 
 
+def tested_words(scenario: Scenario) -> tuple[str, ...]:
+    """Return what the parameters stand on besides the distributions of the scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        As read.
+
+    Returns
+    -------
+    words : tuple of str
+        One sentence where tests are in hand, none otherwise.
+    """
+    used, _ = observations_of(scenario)
+    if not used:
+        return ()
+    kinds = sorted({one.kind for one in used})
+    named = " and ".join([", ".join(kinds[:-1]), kinds[-1]] if len(kinds) > 1 else kinds)
+    return (
+        f"The distributions of the scenario have been updated with {len(used)} "
+        f"{'result' if len(used) == 1 else 'results'} of {named} tests; means, medians and percentiles of "
+        "parameters are those after the tests, at the first station where there are several. The stress in "
+        "situ at the depth of a test is taken at its mean.",
+    )
+
+
 def _is_touched(found: Updated, place: int) -> bool:
     before, after = found.split.before[place].sum(), found.split.after[place].sum()
     moved = abs(found.weight @ found.score_mean[:, place] - found.prior_weight @ found.prior_mean[:, place])

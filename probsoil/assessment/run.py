@@ -27,7 +27,7 @@ from probsoil.assessment.description import (
 )
 from probsoil.assessment.discretisation import discretisation_error
 from probsoil.assessment.evaluation import Study, drawn_parameters, prepare
-from probsoil.assessment.evidence_record import evidence_record
+from probsoil.assessment.evidence_record import evidence_record, tested_words
 from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
@@ -315,7 +315,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         **evidence_record(study.space, scenario),
         "discretisation": error.to_dict(),
         "warnings": warning_rows(study, sample, error),
-        "assumptions": list(assumptions(site, stations=len(study.stations))),
+        "assumptions": list(assumptions(site, stations=len(study.stations)) + tested_words(scenario)),
         "cautions": list(CAUTIONS),
     }
 

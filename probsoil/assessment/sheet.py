@@ -9,6 +9,8 @@ from probsoil._typing import FloatArray
 from probsoil.assessment import sheet_answers as answers
 from probsoil.assessment.bearing_answers import bearing_detail, bearing_rows
 from probsoil.assessment.distortion_formulas import distortion_at_horizon, distortion_rows
+from probsoil.assessment.evidence_record import tested_words
+from probsoil.assessment.observed import observations_of
 from probsoil.assessment.pore_pressure_formulas import seepage_rows
 from probsoil.assessment.sheet_formulas import example_of
 from probsoil.assessment.sheet_lines import worked_lines
@@ -97,6 +99,8 @@ class Sheet:
         How the loss of head is shared by the layers, [m], [years], [kPa]; empty where water is at rest.
     stations, station_pairs : tuple of dict
         Settlement of every station and the differences between them, [m], [-].
+    tests : int, [-]
+        Results of tests that the values stand on, besides the distributions of the scenario.
     assumptions, cautions : tuple of str
         What the calculation rests on, and what its reader must bear in mind.
     """
@@ -128,6 +132,7 @@ class Sheet:
     distortion: tuple[dict[str, Any], ...] = ()
     stations: tuple[dict[str, Any], ...] = ()
     station_pairs: tuple[dict[str, Any], ...] = ()
+    tests: int = 0
     assumptions: tuple[str, ...] = ()
     cautions: tuple[str, ...] = ()
 
@@ -219,7 +224,8 @@ def sheet(
         ),
         stations=tuple(stations),
         station_pairs=tuple(pairs),
-        assumptions=assumptions(site, stations=len(stations)),
+        tests=len(observations_of(scenario)[0]),
+        assumptions=assumptions(site, stations=len(stations)) + tested_words(scenario),
         cautions=SHEET_CAUTIONS,
         **_in_detail(run, rows, points),
     )

@@ -79,7 +79,8 @@ def _print_sheet(console: "Console", content: Mapping[str, Any]) -> None:
     from probsoil.cli._output import counted, number, print_table
     from probsoil.report.sheet_columns import sheet_tables
 
-    console.print(f"All parameters at their {content['at']}.")
+    tests = counted(content["tests"], "test result")
+    console.print(f"All parameters at their {content['at']}{f', after {tests}' if content['tests'] else ''}.")
     horizon = counted(content["times"][-1], "year")
     place = content.get("station", "centreline")
     console.print(f"Settlement at {horizon} {number(content['final_settlement'], '.3f')} m, at the {place}\n")

@@ -174,7 +174,7 @@ def interpret(
     from probsoil.laboratory.reading import read_sheets
     from probsoil.scenario import read_scenario
 
-    scenario = read_scenario(layers) if isinstance(layers, str | Path) else layers
+    scenario = read_scenario(layers, evidence=False) if isinstance(layers, str | Path) else layers
     sheets = read_sheets([Path(one) for one in paths], keep_good_rows=keep_good_rows)
     return interpreted_site(sheets, scenario, choices)
 

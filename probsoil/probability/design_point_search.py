@@ -19,9 +19,12 @@ Margin = Callable[[FloatArray], FloatArray]
 _STEPS = 0.5 ** np.arange(9)
 _REACH = 1.0  # linearised limits farther away than this are forgotten
 _KEPT = 12
-_NULL_STEPS = 6
+_NULL_STEPS = 8
 _SAME = 0.05  # distance over 1 + radius below which two design points are one
-_CLOSE = 1e-4  # a step or an aim no longer than this ends the search
+_BESIDE = 4  # points tried for a slope that no edge spoils
+_BENT = 0.02  # share of the slope by which the sides of a difference may differ; a curve bends by the step
+_CLOSE = 1e-4  # an aim no farther than this ends the search
+_SETTLED = 2e-3  # aim and limit no farther than this over 1 + radius: the point counts as found
 _PENALTY = 2.0  # over the multiplier of the constraint; above one the penalty is exact
 
 
@@ -51,7 +54,7 @@ def design_point_search(
     *,
     step: float = 1e-3,
     known: Sequence[FloatArray] = (),
-    iterations: int = 60,
+    iterations: int = 100,
 ) -> SearchEnd | None:
     """Nearest point of a limit, searched from one start.
 
@@ -77,9 +80,7 @@ def design_point_search(
     """
     search = _Search(lambda u: margin(u) / scale, step)
     search.move(start, float(search.margin(start[np.newaxis])[0]))
-    settled = False
-    while not settled and search.gradients < iterations and search.advance():
-        settled = search.settled()
+    while search.gradients < iterations and search.advance():
         if any(alike(search.u, point) for point in known):
             return None
     found = on_limit(search.margin, search.u)
@@ -87,7 +88,7 @@ def design_point_search(
         return None
     return SearchEnd(
         u=found,
-        converged=settled and bool(np.linalg.norm(found - search.u) < 10.0 * _CLOSE * (1.0 + search.radius)),
+        converged=bool(search.apart + np.linalg.norm(found - search.u) < _SETTLED * (1.0 + search.radius)),
         iterations=search.gradients,
     )
 
@@ -115,6 +116,7 @@ class _Plane:
     at: FloatArray
     slope: FloatArray
     level: float
+    size: float  # of the gradient; slope is of unit length
 
 
 @dataclass(slots=True)
@@ -126,26 +128,25 @@ class _Search:
     penalty: float = 0.0
     gradients: int = 0
     planes: list[_Plane] = field(default_factory=list)
-    moved: float = np.inf
+    apart: float = np.inf  # of the nearest aim
 
     @property
     def radius(self) -> float:
         return float(np.linalg.norm(self.u))
 
     def move(self, u: FloatArray, value: float) -> None:
-        self.moved = float(np.linalg.norm(u - self.u)) if self.u.size else np.inf
         self.u, self.value = u, value
 
     def advance(self) -> bool:
-        """Take one step that betters the merit; False where none does."""
+        """Take one step that betters the merit; False where the point is the aim or none does."""
         self.planes = [plane for plane in self.planes if np.linalg.norm(plane.at - self.u) <= _REACH]
         if not self._linearise(self.u, self.value):
             return False
         for _ in range(_NULL_STEPS):
             aims = self._aims()
-            if any(np.linalg.norm(aim - self.u) < _CLOSE for aim in aims) and abs(self.value) < _CLOSE:
-                self.moved = 0.0
-                return True
+            self.apart = min(float(np.linalg.norm(aim - self.u)) for aim in aims)
+            if self.apart < _CLOSE and abs(self.value) < _CLOSE:
+                return False
             trial = np.concatenate([self.u + _STEPS[:, np.newaxis] * (aim - self.u) for aim in aims])
             value = self.margin(trial)
             merit = self._merit(trial, value)
@@ -157,25 +158,43 @@ class _Search:
             # no better point: look at the limit across the edge that stands in the way
             if not self._linearise(trial[best], float(value[best])):
                 return False
-        return False
-
-    def settled(self) -> bool:
-        return self.moved < _CLOSE and abs(self.value) < 10.0 * _CLOSE
+        self.penalty *= 4.0  # several faces together can ask for more than any of them alone
+        return self.value > _CLOSE
 
     def _merit(self, u: FloatArray, value: FloatArray) -> FloatArray:
         squares = np.einsum("ij,ij->i", u, u)
         return np.asarray(0.5 * squares + self.penalty * np.maximum(value, 0.0))
 
     def _linearise(self, u: FloatArray, value: float) -> bool:
-        self.gradients += 1
-        slope = central_gradient(self.margin, u, self.step)
+        u, value, slope = self._differentiated(u, value)
         size = float(np.linalg.norm(slope))
         if size == 0.0 or not np.isfinite(value):
             return False
-        self.planes = [*self.planes[-_KEPT + 1 :], _Plane(u, slope / size, float(slope @ u - value) / size)]
+        self.planes = [
+            *self.planes[-_KEPT + 1 :],
+            _Plane(u, slope / size, float(slope @ u - value) / size, size),
+        ]
         aim = abs(self.planes[-1].level)
         self.penalty = max(self.penalty, _PENALTY * max(self.radius, aim, 1.0) / size)
         return True
+
+    def _differentiated(self, u: FloatArray, value: float) -> tuple[FloatArray, float, FloatArray]:
+        """Gradient at a point, or beside it where differences reach across an edge.
+
+        Across an edge each coordinate would take its own mix of the faces, which is no slope of the limit.
+        """
+        at = u
+        for attempt in range(_BESIDE):
+            self.gradients += 1
+            slope, bend = differences(self.margin, at, value, self.step)
+            if np.abs(bend).max() <= _BENT * np.abs(slope).max():
+                break
+            if attempt + 1 < _BESIDE:
+                # any direction will do, the same every time
+                way = np.random.default_rng(np.random.SeedSequence(self.gradients)).standard_normal(len(u))
+                at = u + 2.0 ** (attempt + 2) * self.step * way
+                value = float(self.margin(at[np.newaxis])[0])
+        return at, value, slope
 
     def _aims(self) -> list[FloatArray]:
         last = self.planes[-1]
@@ -184,12 +203,14 @@ class _Search:
             slopes = np.array([plane.slope for plane in self.planes])
             together = nearest_within(slopes, np.array([plane.level for plane in self.planes]))
             if together is not None:
-                aims.append(together)
+                aims.append(together[0])
+                size = np.array([plane.size for plane in self.planes])
+                self.penalty = max(self.penalty, _PENALTY * float((together[1] / size).sum()))
         return aims
 
 
-def central_gradient(margin: Margin, u: FloatArray, step: float) -> FloatArray:
-    """Gradient by central differences.
+def differences(margin: Margin, u: FloatArray, value: float, step: float) -> tuple[FloatArray, FloatArray]:
+    """Gradient by central differences, and how far the two sides of each differ.
 
     Parameters
     ----------
@@ -197,23 +218,27 @@ def central_gradient(margin: Margin, u: FloatArray, step: float) -> FloatArray:
         Margins (n,) at rows (n, d).
     u : ndarray, shape (d,), [-]
         Point.
+    value : float, [any]
+        Margin there.
     step : float, [-]
         Half of the step.
 
     Returns
     -------
-    gradient : ndarray, shape (d,), [any]
-        Change per unit; zero where a difference is not finite.
+    gradient, bend : ndarray, shape (d,), [any]
+        Change per unit, and half the difference of the changes on the two sides; zero where not finite.
     """
     d = len(u)
     offsets = step * np.eye(d)
     values = margin(np.concatenate([u + offsets, u - offsets]))
     with np.errstate(invalid="ignore"):
         slope = (values[:d] - values[d:]) / (2.0 * step)
-    return np.where(np.isfinite(slope), slope, 0.0)
+        bend = (values[:d] + values[d:] - 2.0 * value) / (2.0 * step)
+    finite = np.isfinite(slope) & np.isfinite(bend)
+    return np.where(finite, slope, 0.0), np.where(finite, bend, 0.0)
 
 
-def nearest_within(slopes: FloatArray, levels: FloatArray) -> FloatArray | None:
+def nearest_within(slopes: FloatArray, levels: FloatArray) -> tuple[FloatArray, FloatArray] | None:
     """Point nearest to the origin within half-spaces.
 
     Parameters
@@ -225,8 +250,9 @@ def nearest_within(slopes: FloatArray, levels: FloatArray) -> FloatArray | None:
 
     Returns
     -------
-    nearest : ndarray, shape (d,), [-], or None
-        Nearest point; None where the half-spaces have no point in common or the origin is in all.
+    nearest, multipliers : ndarray, shape (d,) and (k,), [-], or None
+        Nearest point, and the weights of the normals that make it up; None where the half-spaces have no
+        point in common or the origin is in all.
 
     Notes
     -----
@@ -248,7 +274,7 @@ def nearest_within(slopes: FloatArray, levels: FloatArray) -> FloatArray | None:
     left = system @ weights - wanted
     if abs(left[-1]) < 1e-9:
         return None
-    return np.asarray(-left[:-1] / left[-1], dtype=np.float64)
+    return np.asarray(-left[:-1] / left[-1], dtype=np.float64), np.asarray(weights / abs(left[-1]))
 
 
 def on_limit(margin: Margin, u: FloatArray) -> FloatArray | None:

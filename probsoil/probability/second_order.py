@@ -8,7 +8,7 @@ from scipy.special import ndtr
 
 from probsoil._typing import BoolArray, FloatArray
 from probsoil.errors import ParameterError
-from probsoil.probability.design_point_search import Margin, central_gradient
+from probsoil.probability.design_point_search import Margin, differences
 from probsoil.probability.first_order import FirstOrder
 from probsoil.probability.limit_state import CountedMargin, LimitState
 
@@ -150,7 +150,7 @@ def _bending(radius: FloatArray, curvature: FloatArray) -> FloatArray:
 
 def _curvatures(margin: Margin, point: FloatArray, step: float) -> tuple[FloatArray, bool]:
     """Principal curvatures at a point, and whether other steps agree on what they do."""
-    slope = central_gradient(margin, point, min(step, 1e-3))
+    slope, _ = differences(margin, point, 0.0, min(step, 1e-3))
     size = float(np.linalg.norm(slope))
     if size == 0.0:
         return np.full(len(point) - 1, np.nan), False

@@ -2,7 +2,7 @@
 
 import csv
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 from importlib import resources
 from typing import Annotated, Literal, cast
@@ -164,6 +164,26 @@ class Evidence(Table):
             number = getattr(self, "lambda_" if parameter == "lambda" else parameter)
             if isinstance(number, Measured):
                 yield parameter, number
+
+    def moved(self, origin: tuple[float, float]) -> "Evidence":
+        """Return the same results with plan positions from another centre.
+
+        Parameters
+        ----------
+        origin : tuple of float, [m]
+            The other centre, from the present one.
+
+        Returns
+        -------
+        evidence : Evidence
+            Results without a position are left as they are.
+        """
+        changes: dict[str, object] = {}
+        if self.x is not None and self.y is not None:
+            changes = {"x": self.x - origin[0], "y": self.y - origin[1]}
+        if isinstance(self.file, EvidenceFile):
+            changes["file"] = replace(self.file, rows=tuple(row.moved(origin) for row in self.file.rows))
+        return self.model_copy(update=changes)
 
     def results(self, number: int) -> Iterator[TestResult]:
         """Yield every result, flagged rows only where they are used.

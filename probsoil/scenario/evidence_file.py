@@ -96,7 +96,7 @@ def read_evidence_file(name: str) -> EvidenceFile | list[Slip]:
     """
     rows = beside_scenario(name, greatest_size=GREATEST_SIZE)
     if isinstance(rows, Slip):
-        return [replace(rows, path=())]
+        return [replace(rows, path=(), hint=rows.hint or "probsoil interpret writes one from test sheets")]
     header = tuple(cell.strip() for cell in rows[0]) if rows else ()
     if header != COLUMNS:
         return [

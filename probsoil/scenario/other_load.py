@@ -132,6 +132,7 @@ def other_load(scenario: "Scenario", name: str) -> OtherLoad:
             if dist((station.x, station.y), place) < LEAST_APART
         ),
         "station_line": None,
+        "evidence": tuple(one.moved(place) for one in scenario.evidence),
         "limits": tuple(
             limit.model_copy(update={"load": None})
             for limit in scenario.limits

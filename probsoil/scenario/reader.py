@@ -20,13 +20,15 @@ from probsoil.scenario.value_files import files_relative_to
 GREATEST_SIZE = 2_000_000  # bytes; a scenario is a few kilobytes
 
 
-def read_scenario(path: str | FilePath) -> Scenario:
+def read_scenario(path: str | FilePath, *, evidence: bool = True) -> Scenario:
     """Return the scenario written in a file.
 
     Parameters
     ----------
     path : str or Path
         A TOML file in UTF-8.
+    evidence : bool
+        Whether its test results are read too; without them where they are still to be interpreted.
 
     Returns
     -------
@@ -38,10 +40,10 @@ def read_scenario(path: str | FilePath) -> Scenario:
     ScenarioError
         If the file cannot be read or has mistakes; all of them are listed.
     """
-    return parse_scenario(_text_of(FilePath(path), str(path)), file=str(path))
+    return parse_scenario(_text_of(FilePath(path), str(path)), file=str(path), evidence=evidence)
 
 
-def parse_scenario(text: str, *, file: str = "scenario") -> Scenario:
+def parse_scenario(text: str, *, file: str = "scenario", evidence: bool = True) -> Scenario:
     """Return the scenario written in a TOML text.
 
     Parameters
@@ -50,6 +52,8 @@ def parse_scenario(text: str, *, file: str = "scenario") -> Scenario:
         Text of a scenario file.
     file : str
         Name used in error messages; files the scenario refers to are looked for beside it.
+    evidence : bool
+        As for `read_scenario`.
 
     Returns
     -------
@@ -63,6 +67,8 @@ def parse_scenario(text: str, *, file: str = "scenario") -> Scenario:
     """
     source = text.removeprefix("\ufeff").replace("\r\n", "\n")
     data = _parsed(source, file)
+    if not evidence:
+        data.pop("evidence", None)
     mended = mend(data)
     slips = list(mended.slips)
     with files_relative_to(FilePath(file).parent):

@@ -1,6 +1,6 @@
 """One result of one test, and what results there may be."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal, get_args
 
 from probsoil.units import Kind
@@ -138,3 +138,20 @@ class TestResult:
     value: float
     standard_error: float
     flag: str
+
+    def moved(self, origin: tuple[float, float]) -> "TestResult":
+        """Return the same result with its plan position from another centre.
+
+        Parameters
+        ----------
+        origin : tuple of float, [m]
+            The other centre, from the present one.
+
+        Returns
+        -------
+        result : TestResult
+            Without a position as it is.
+        """
+        if self.x is None or self.y is None:
+            return self
+        return replace(self, x=self.x - origin[0], y=self.y - origin[1])

@@ -17,7 +17,7 @@ FOLDER = Path(__file__).parents[3] / "scenarios" / "tern_marsh"
 
 @pytest.fixture(scope="module")
 def done() -> Interpretation:
-    return probsoil.interpret([FOLDER / "sheets"], layers=FOLDER / "site.toml")
+    return probsoil.interpret([FOLDER / "sheets"], layers=FOLDER / "tern_marsh.toml")
 
 
 @pytest.fixture(scope="module")
@@ -59,7 +59,7 @@ def test_every_test_is_in_the_layer_it_was_taken_from(
 def test_the_open_standard_gives_the_same_evidence(done: Interpretation) -> None:
     # left aside is what it has no readings for: cv, creep, correction of the vane; M is that at failure
     both = {"lambda", "kappa", "preconsolidation_stress", "void_ratio", "M", "q_net"}
-    other = probsoil.interpret([FOLDER / "tern_marsh.ags"], layers=FOLDER / "site.toml")
+    other = probsoil.interpret([FOLDER / "tern_marsh.ags"], layers=FOLDER / "tern_marsh.toml")
     ours, theirs = (
         sorted(
             (row.parameter, row.layer, round(row.depth, 2), row.value)

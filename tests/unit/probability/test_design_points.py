@@ -1,5 +1,7 @@
 """Design points of limits with and without edges, and the methods that start from them."""
 
+from itertools import combinations
+
 import numpy as np
 import pytest
 from scipy.special import ndtr, ndtri
@@ -46,6 +48,32 @@ def test_edge_of_three_planes_among_35_variables():
     np.testing.assert_allclose(found.point[0], exact, atol=3e-3)
 
 
+def nearest_common_point(slopes, levels):
+    """Distance of the point on some of the planes whose multipliers are none below zero, and within all."""
+    for size in range(1, len(slopes) + 1):
+        for chosen in combinations(range(len(slopes)), size):
+            some = slopes[list(chosen)]
+            multipliers = np.linalg.solve(some @ some.T, levels[list(chosen)])
+            point = some.T @ multipliers
+            if (multipliers >= 0.0).all() and (slopes @ point >= levels - 1e-10).all():
+                return np.linalg.norm(point)
+    raise AssertionError("no common point")
+
+
+@pytest.mark.parametrize("seed", range(24))
+def test_edges_of_several_planes_that_must_all_be_passed(seed):
+    """Random planes that lean one way; any of them may carry the nearest point."""
+    random = np.random.default_rng(seed)
+    d = int(random.integers(2, 9))
+    count = 2 if d == 2 else int(random.integers(2, d + 1))
+    slopes = random.standard_normal((count, d)) + 1.5 * np.eye(d)[0]
+    slopes /= np.linalg.norm(slopes, axis=1, keepdims=True)
+    levels = random.uniform(1.5, 3.0, count)
+    found = first_order(limit(lambda u: (levels - u @ slopes.T).max(axis=1), d))
+    assert found.converged[0]
+    assert found.beta[0] == pytest.approx(nearest_common_point(slopes, levels), abs=INDEX)
+
+
 @pytest.mark.parametrize("sharpness", [0.5, 5.0, 50.0])
 def test_edge_at_which_the_slope_jumps_across_the_shortest_way(sharpness):
     found = first_order(limit(lambda u: 3.0 - u[:, 0] + sharpness * np.abs(u[:, 1]), 2))
@@ -73,6 +101,12 @@ def test_two_ways_to_exceed_are_both_found():
     assert sorted(found.point[:, 0].round(3).tolist()) == [-2.5, 2.5]
     assert found.any_bound == pytest.approx(2.0 * ndtr(-2.5), rel=1e-6)
     assert found.probability == pytest.approx(ndtr(-2.5), rel=1e-6)
+
+
+def test_twin_opposite_a_design_point_is_found_from_one_start():
+    state = limit(lambda u: np.abs(u[:, 0] + 0.2), 3, threshold=2.5, sense="not more than")
+    found = first_order(state, starts=0)
+    np.testing.assert_allclose(found.point[:, 0], [2.3, -2.7], atol=INDEX)
 
 
 def test_index_is_negative_where_the_median_exceeds():
@@ -260,7 +294,9 @@ def test_help_of_the_search():
     assert nearest_within(np.array([[1.0, 0.0]]), np.array([0.5])) is None  # the origin is in it
     both = nearest_within(np.array([[1.0, 0.0], [-1.0, 0.0]]), np.array([-1.0, -1.0]))
     assert both is None  # nothing is left of both
-    np.testing.assert_allclose(nearest_within(np.array([[-1.0, 0.0]]), np.array([-2.0])), [2.0, 0.0])
+    point, multipliers = nearest_within(np.array([[-1.0, 0.0], [0.0, -1.0]]), np.array([-2.0, 1.0]))
+    np.testing.assert_allclose(point, [2.0, 0.0], atol=1e-12)
+    np.testing.assert_allclose(multipliers, [2.0, 0.0], atol=1e-12)
     assert on_limit(lambda u: 3.0 - u[:, 0], np.array([1.0, 0.0])) is None
     assert on_limit(lambda u: 3.0 - u[:, 0], np.zeros(2)) is None
     np.testing.assert_allclose(on_limit(lambda u: 3.0 - u[:, 0], np.array([2.9, 0.1]))[0], 3.0, rtol=1e-8)
