@@ -191,7 +191,7 @@ def test_soil_is_dug_out_to_the_base():
     [
         (dug(depth="1.0"), r"1 m are dug out in all, but the base lies 1\.5 m below ground level"),
         (dug(depth="0"), "too small"),
-        (dug(load='shape = "area"'), "soil is dug out for a foundation with a depth"),
+        (dug(load='shape = "area"'), "bearing failure is for a foundation; the load is of shape area"),
         (dug(first=False), 'soil is dug out after stage 1 "built" has loaded it'),
         (dug(stage="start = 1\nend = 2\npressure = 60\nexcavate = 1"), "given more than once, as"),
         (
