@@ -78,9 +78,9 @@ def observations_of(scenario: Scenario) -> tuple[tuple[Observation, ...], tuple[
     column = mean_column(scenario) if results else None
     if column is None:
         return (), ()
-    fixed = {
-        one.address: one.distribution.expectation for one in scenario.quantities() if not one.is_uncertain
-    }
+    quantities = scenario.quantities()
+    given = {one.address for one in quantities}
+    fixed = {one.address: one.distribution.expectation for one in quantities if not one.is_uncertain}
     errors = {(one.kind, one.parameter): one for one in scenario.test_errors}
     used: list[Observation] = []
     unused: list[Unused] = []
@@ -98,9 +98,9 @@ def observations_of(scenario: Scenario) -> tuple[tuple[Observation, ...], tuple[
         factor = default.factor if own is None or own.factor is None else own.factor
         formula = _Ground(scenario, column, place, layer, result.depth).formula(result, factor)
         addresses = tuple(one for one in formula.addresses if one not in fixed)
-        if not addresses:
-            what = ", ".join(formula.addresses)
-            unused.append(Unused(result=result, reason=f"it tells of {what}, fixed in the scenario"))
+        if not given.issuperset(addresses) or not addresses:
+            what, left = ", ".join(formula.addresses), "fixed in" if not addresses else "left out of"
+            unused.append(Unused(result=result, reason=f"it tells of {what}, {left} the scenario"))
             continue
         plain = formula.factor is not None
         used.append(

@@ -102,6 +102,7 @@ def driver(name: str, share: float, rank: int | None) -> dict[str, Any]:
 
 SHEET = {
     "at": "mean",
+    "tests": 0,
     "times": [0.0, 1.0, 30.0],
     "settlement": [0.0, 0.1234, 0.4567],
     "final_settlement": 0.5012,

@@ -356,3 +356,34 @@ def test_sheet_of_a_station(desk: Path, capsys: pytest.CaptureFixture[str]) -> N
     assert "Differences between stations at the horizon" in said
     assert main(["sheet", "yard.toml", "--station", "north"]) == 2
     assert 'there is no station "north": there are west, east' in squeezed(capsys.readouterr().err)
+
+
+@pytest.mark.usefixtures("desk", "calculation")
+def test_sheet_says_how_many_tests_it_stands_on(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setitem(cli_fakes.SHEET, "tests", 3)
+    assert main(["sheet", "site.toml"]) == 0
+    assert "All parameters at their mean, after 3 test results." in capsys.readouterr().out
+
+
+@pytest.mark.usefixtures("desk")
+def test_check_prints_what_tests_were_understood_and_what_they_change(
+    desk: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    text = (desk / "site.toml").read_text(encoding="utf-8")
+    layer = next(one for one in tomllib.loads(text)["layers"] if one["soil"] == "clay")
+    test = f"""
+[[evidence]]
+kind = "oedometer"
+layer = "{layer["name"]}"
+depth = 1.0
+test = "BH1-3"
+lambda = 0.60
+C_alpha_ratio = 0.05
+"""
+    (desk / "tested.toml").write_text(text + test, encoding="utf-8")
+    assert main(["check", "tested.toml"]) == 0
+    words = squeezed(capsys.readouterr().out)
+    assert "Tests in hand" in words
+    assert "BH1-3 oedometer lambda" in words
