@@ -10,7 +10,14 @@ from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.evaluation import Study
 from probsoil.assessment.stations import place_record, station_record
 from probsoil.ground.site_model import SiteModel
-from probsoil.probability import Exceedance, exceedance, exceedance_curve, median_interval
+from probsoil.probability import (
+    Exceedance,
+    ExceedanceCurve,
+    exceedance,
+    exceedance_curve,
+    median_interval,
+    simultaneous_limits,
+)
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
@@ -95,7 +102,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
             limit.threshold,
             limit.sense,
             replicate=replicate,
-            method=_draws(study),
+            method=draws_words(study),
             confidence=CONFIDENCE,
             target=limit.target_probability,
             certain=study.certain,
@@ -125,10 +132,19 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
                     "probability": curve.probability.tolist(),
                     "low": curve.low.tolist(),
                     "high": curve.high.tolist(),
-                },
+                }
+                | _band(study, curve),
             }
         )
     return rows
+
+
+def _band(study: Study, curve: ExceedanceCurve) -> Row:
+    """Return limits that hold for the whole curve at once; there are none for replicated designs."""
+    if study.points.replicates > 1 or study.certain:
+        return {}
+    low, high = simultaneous_limits(curve.exceeding, curve.model_runs, CONFIDENCE)
+    return {"band_low": low.tolist(), "band_high": high.tolist()}
 
 
 def _part(name: str, there: bool, part: FloatArray, quantity: FloatArray) -> Row:
@@ -142,8 +158,19 @@ def _part(name: str, there: bool, part: FloatArray, quantity: FloatArray) -> Row
     return {f"{name}_mean": mean, f"{name}_share": share if 0.0 <= share <= 1.0 else None}
 
 
-def _draws(study: Study) -> str:
-    """Name the way the points were drawn, and how often it was repeated."""
+def draws_words(study: Study) -> str:
+    """Name the way the points were drawn, and how often it was repeated.
+
+    Parameters
+    ----------
+    study : Study
+        Design.
+
+    Returns
+    -------
+    words : str
+        Such as ``Monte Carlo``.
+    """
     name, replicates = _DRAWS[study.points.name], study.points.replicates
     return name if replicates == 1 else f"{name} in {replicates} replicates"
 

@@ -42,6 +42,7 @@ from probsoil.assessment.record import (
 from probsoil.assessment.results_folder import CHUNKS, COPY, REALISATIONS_FILE, RESULTS, claimed_folder
 from probsoil.assessment.scenario_copy import copies, evidence_digests
 from probsoil.assessment.statements import CAUTIONS, assumptions
+from probsoil.assessment.together import together_record
 from probsoil.campaign import (
     NOTICE,
     deferred_interrupt,
@@ -301,6 +302,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "confidence": CONFIDENCE,
         "currency": scenario.currency,
         "limits": limit_rows(study, sample),
+        **together_record(study, sample),
         "settlement": settlement_record(study, sample),
         "slip": [
             row | {"circle": circle} for row, circle in zip(slip_rows(study, sample), circles, strict=True)

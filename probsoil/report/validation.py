@@ -93,7 +93,31 @@ _LIMIT = {
         "probability": ["share"],
         "low": ["share"],
         "high": ["share"],
+        "band_low?": ["share"],
+        "band_high?": ["share"],
     },
+}
+_CHANCE = {
+    "probability": "share",
+    "interval": "share pair",
+    "exceeding": "count",
+    "model_runs": "positive count",
+    "unseen_bound": ("share", "null"),
+    "method": "text",
+}
+_TOGETHER = {
+    "any": _CHANCE,
+    "all": _CHANCE,
+    "number": ["count"],
+    "pairs": [
+        {
+            **dict.fromkeys(("where", "also"), "text"),
+            **dict.fromkeys(("where_exceeded", "both_exceeded"), "count"),
+            "if_unrelated": "number",
+            "conditional": ("share", "null"),
+            "interval": "share pair",
+        }
+    ],
 }
 _DRIVER = {
     "limit": "text",
@@ -203,6 +227,7 @@ RESULTS: dict[str, Any] = {
     "confidence": "share",
     "currency": "text",
     "limits": [_LIMIT],
+    "together?": _TOGETHER,
     "settlement": {
         "station": "text",
         "times": ["number"],

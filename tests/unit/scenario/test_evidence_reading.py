@@ -135,7 +135,9 @@ def test_what_is_written_back_reads_the_same(tmp_path: Path) -> None:
         (GOOD.replace(",10,5,", ",10,,"), "x", "go together"),
     ],
 )
-def test_mistakes_in_a_file_are_told_with_row_and_column(tmp_path: Path, row: str, column: str, said: str) -> None:
+def test_mistakes_in_a_file_are_told_with_row_and_column(
+    tmp_path: Path, row: str, column: str, said: str
+) -> None:
     (fault,) = faults_of(with_file(tmp_path, GOOD, row), tmp_path)
     assert fault.line == GROUND.count("\n") + 3
     assert f'tests.csv, row 3, column "{column}"' in fault.message
