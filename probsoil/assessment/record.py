@@ -6,17 +6,16 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.assessment.curves import whole_curve
 from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.evaluation import Study
 from probsoil.assessment.stations import place_record, station_record
 from probsoil.ground.site_model import SiteModel
 from probsoil.probability import (
     Exceedance,
-    ExceedanceCurve,
     exceedance,
     exceedance_curve,
     median_interval,
-    simultaneous_limits,
 )
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
@@ -133,18 +132,10 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
                     "low": curve.low.tolist(),
                     "high": curve.high.tolist(),
                 }
-                | _band(study, curve),
+                | whole_curve(study, curve, CONFIDENCE),
             }
         )
     return rows
-
-
-def _band(study: Study, curve: ExceedanceCurve) -> Row:
-    """Return limits that hold for the whole curve at once; there are none for replicated designs."""
-    if study.points.replicates > 1 or study.certain:
-        return {}
-    low, high = simultaneous_limits(curve.exceeding, curve.model_runs, CONFIDENCE)
-    return {"band_low": low.tolist(), "band_high": high.tolist()}
 
 
 def _part(name: str, there: bool, part: FloatArray, quantity: FloatArray) -> Row:

@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from probsoil.errors import ResultsError
+from probsoil.report.probability_rules import PRECISION, TOGETHER
 
 FORMAT = 1
 
@@ -96,28 +97,6 @@ _LIMIT = {
         "band_low?": ["share"],
         "band_high?": ["share"],
     },
-}
-_CHANCE = {
-    "probability": "share",
-    "interval": "share pair",
-    "exceeding": "count",
-    "model_runs": "positive count",
-    "unseen_bound": ("share", "null"),
-    "method": "text",
-}
-_TOGETHER = {
-    "any": _CHANCE,
-    "all": _CHANCE,
-    "number": ["count"],
-    "pairs": [
-        {
-            **dict.fromkeys(("where", "also"), "text"),
-            **dict.fromkeys(("where_exceeded", "both_exceeded"), "count"),
-            "if_unrelated": "number",
-            "conditional": ("share", "null"),
-            "interval": "share pair",
-        }
-    ],
 }
 _DRIVER = {
     "limit": "text",
@@ -227,7 +206,8 @@ RESULTS: dict[str, Any] = {
     "confidence": "share",
     "currency": "text",
     "limits": [_LIMIT],
-    "together?": _TOGETHER,
+    "together?": TOGETHER,
+    "precision?": PRECISION,
     "settlement": {
         "station": "text",
         "times": ["number"],
@@ -362,8 +342,10 @@ def _contradictions(results: dict[str, Any]) -> Iterator[str]:
     yield from _station_lengths(settlement)
     yield from _lengths(results["ground"]["profile"], "depth", "ground.profile")
     names = {limit["name"] for limit in results["limits"]}
-    for part in ("drivers", "driver_quality"):
-        for place, row in enumerate(results[part]):
+    named = {part: results[part] for part in ("drivers", "driver_quality")}
+    named["precision.limits"] = (results.get("precision") or {"limits": []})["limits"]
+    for part, rows in named.items():
+        for place, row in enumerate(rows):
             if row["limit"] not in names:
                 yield f"{part}[{place}].limit must be the name of a limit; got {_shown(row['limit'])}"
 
