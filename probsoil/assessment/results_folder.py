@@ -20,6 +20,7 @@ EVIDENCE_COPIES = "evidence_*.csv"
 _TABLES = ("limits.csv", "curves.csv", "drivers.csv", "settlement.csv", "parameters.csv")
 OCCASIONAL = (
     "together.csv",
+    "precision.csv",
     "stations.csv",
     "station_pairs.csv",
     "added_fill.csv",

@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 from probsoil.report.chance import realisations_of
 from probsoil.report.evidence import parameter_rows, test_rows
+from probsoil.report.further import precision_rows
 from probsoil.report.ranking import ranked_by
 from probsoil.report.text import LEAST_FOR_TAILS, UNCOMPUTED, WITHHELD, uncomputed_text
 from probsoil.report.together import together_rows
@@ -19,9 +20,9 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
     """Write ``limits.csv``, ``curves.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
 
-    With several limits also ``together.csv``; with stations ``stations.csv`` and ``station_pairs.csv``; with
-    tests in hand ``tests.csv`` and ``updated_parameters.csv``; ``added_fill.csv`` where fill is added to hold
-    its level.
+    With several limits also ``together.csv``; with a precision asked ``precision.csv``; with stations
+    ``stations.csv`` and ``station_pairs.csv``; with tests in hand ``tests.csv`` and
+    ``updated_parameters.csv``; ``added_fill.csv`` where fill is added to hold its level.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
@@ -75,6 +76,8 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     }
     if results.get("together"):
         rows["together"] = together_rows(results["together"])
+    if results.get("precision"):
+        rows["precision"] = precision_rows(results["precision"])
     settlement = results.get("settlement") or {}
     if settlement.get("stations"):
         rows["stations"] = list(_station_rows(settlement, results))

@@ -58,8 +58,8 @@ def together_view(results: dict[str, Any]) -> dict[str, Any] | None:
     independent = results["draws"] == "monte carlo"
     return {
         "sentences": [
-            f"The chance that {which} is exceeded is {_chance_text(together['any'], results)}; "
-            f"that {every}, {_chance_text(together['all'], results)}.",
+            f"Chance that {which} is exceeded: {_chance_text(together['any'], results)}. "
+            f"Chance that {every}: {_chance_text(together['all'], results)}.",
             f"Of {realisations_text(results['realisations'])} "
             + ", ".join([*numbers[:-1], f"{'and ' if len(numbers) > 1 else ''}{numbers[-1]}"])
             + ".",

@@ -58,8 +58,8 @@ def test_band_holds_the_interval_of_no_threshold_narrower(run: Assessment) -> No
 def test_results_pass_and_the_page_and_tables_tell_them(run: Assessment) -> None:
     check_results(run.results, "the results")
     page = render_report(run.results)
-    assert "The chance that any of the 5 limits is exceeded is" in page
-    assert "with 95 % confidence it leaves them at no threshold" in page
+    assert "Chance that any of the 5 limits is exceeded: " in page
+    assert "confidence it leaves them at no threshold" in page
     assert page.count('class="whole"') == 10  # two scales of five limits
     found = tables(run.results)
     assert len(found["together"]) == 22
