@@ -103,7 +103,23 @@ class Study:
             the first chunks ``settlement`` through time, that of every ``station`` at the times they are kept
             (model error included in all these) and where the critical ``circle`` lies.
         """
-        z = self.latent(chunk)
+        return self.at(self.latent(chunk), whole=chunk < BAND_CHUNKS)
+
+    def at(self, z: FloatArray, *, whole: bool = False) -> Mapping[str, NDArray[np.generic]]:
+        """Evaluate given points.
+
+        Parameters
+        ----------
+        z : ndarray, shape (n_i, d), [-]
+            Correlated latent normals.
+        whole : bool
+            Whether settlement through time and circles are kept.
+
+        Returns
+        -------
+        arrays : mapping of str to ndarray, shape (n_i, ...), [m], [-] or [years]
+            As of a chunk; a row has the same bits whatever the others.
+        """
         values = self.section_values(z)
         response = respond(self.site, values)
         stations = self.settled_stations(z, response)
@@ -128,7 +144,7 @@ class Study:
             "voids_closed": closed,
         }
         arrays |= self._of_some_sites(response, values, stations)
-        if chunk < BAND_CHUNKS:
+        if whole:
             arrays["settlement"] = settlement.astype(np.float32)
             if stations is not None:
                 arrays["station"] = (error[:, None, None] * stations.settlement).astype(np.float32)

@@ -6,11 +6,17 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
+from probsoil.assessment.curves import whole_curve
 from probsoil.assessment.description import Row, finite, numbers, quantiles
 from probsoil.assessment.evaluation import Study
 from probsoil.assessment.stations import place_record, station_record
 from probsoil.ground.site_model import SiteModel
-from probsoil.probability import Exceedance, exceedance, exceedance_curve, median_interval
+from probsoil.probability import (
+    Exceedance,
+    exceedance,
+    exceedance_curve,
+    median_interval,
+)
 from probsoil.scenario.limits import Limit
 from probsoil.sensitivity import Driver, Drivers
 
@@ -106,7 +112,7 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
             limit.threshold,
             limit.sense,
             replicate=replicate,
-            method=_draws(study),
+            method=draws_words(study),
             confidence=CONFIDENCE,
             target=limit.target_probability,
             certain=study.certain,
@@ -136,7 +142,8 @@ def limit_rows(study: Study, sample: CampaignSample) -> list[Row]:
                     "probability": curve.probability.tolist(),
                     "low": curve.low.tolist(),
                     "high": curve.high.tolist(),
-                },
+                }
+                | whole_curve(study, curve, CONFIDENCE),
             }
         )
     return rows
@@ -153,8 +160,19 @@ def _part(name: str, there: bool, part: FloatArray, quantity: FloatArray) -> Row
     return {f"{name}_mean": mean, f"{name}_share": share if 0.0 <= share <= 1.0 else None}
 
 
-def _draws(study: Study) -> str:
-    """Name the way the points were drawn, and how often it was repeated."""
+def draws_words(study: Study) -> str:
+    """Name the way the points were drawn, and how often it was repeated.
+
+    Parameters
+    ----------
+    study : Study
+        Design.
+
+    Returns
+    -------
+    words : str
+        Such as ``Monte Carlo``.
+    """
     name, replicates = _DRAWS[study.points.name], study.points.replicates
     return name if replicates == 1 else f"{name} in {replicates} replicates"
 

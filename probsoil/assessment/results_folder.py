@@ -17,8 +17,16 @@ FIGURES = "figures"
 EVIDENCE_COPIES = "evidence_*.csv"
 """Copies of the files of test results that the scenario names."""
 
-_TABLES = ("limits.csv", "drivers.csv", "settlement.csv", "parameters.csv")
-OCCASIONAL = ("stations.csv", "station_pairs.csv", "added_fill.csv", "tests.csv", "updated_parameters.csv")
+_TABLES = ("limits.csv", "curves.csv", "drivers.csv", "settlement.csv", "parameters.csv")
+OCCASIONAL = (
+    "together.csv",
+    "precision.csv",
+    "stations.csv",
+    "station_pairs.csv",
+    "added_fill.csv",
+    "tests.csv",
+    "updated_parameters.csv",
+)
 """Tables that only some scenarios have."""
 
 FILES = (RESULTS, REALISATIONS_FILE, COPY, "report.html", *_TABLES, *OCCASIONAL)

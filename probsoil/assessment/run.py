@@ -28,6 +28,7 @@ from probsoil.assessment.description import (
 from probsoil.assessment.discretisation import discretisation_error
 from probsoil.assessment.evaluation import Study, drawn_parameters, prepare
 from probsoil.assessment.evidence_record import evidence_record, tested_words
+from probsoil.assessment.further import FURTHER, GroundRuns, precision_of, precision_record
 from probsoil.assessment.identity import identity_of
 from probsoil.assessment.record import (
     CONFIDENCE,
@@ -42,12 +43,14 @@ from probsoil.assessment.record import (
 from probsoil.assessment.results_folder import CHUNKS, COPY, REALISATIONS_FILE, RESULTS, claimed_folder
 from probsoil.assessment.scenario_copy import copies, evidence_digests
 from probsoil.assessment.statements import CAUTIONS, assumptions
+from probsoil.assessment.together import together_record
 from probsoil.campaign import (
     NOTICE,
     deferred_interrupt,
     discard_chunks,
     provenance,
     run_campaign,
+    thread_pool,
     worker_count,
     write_durably,
 )
@@ -121,6 +124,8 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     draws: str | None = None,
     seed: int | None = None,
     workers: int | None = None,
+    within: float | None = None,
+    time_limit: float | None = None,
     resume: bool = False,
     force: bool = False,
     progress: Progress | None = None,
@@ -145,6 +150,11 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
         Seed, instead of the scenario's.
     workers : int or None, [-]
         Number of workers; None for every core. The numbers do not depend on it.
+    within : float or None, [-]
+        Longer arm of the interval over the chance at which each limit is done; further runs are made where
+        the realisations do not reach it.
+    time_limit : float or None, [s]
+        Time after which no further runs are begun, instead of as many as there are realisations.
     resume : bool
         Whether to insist that `out` holds chunks to go on from.
     force : bool
@@ -167,7 +177,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
     Raises
     ------
     ParameterError
-        If an override is out of range.
+        If an override is out of range, or a precision is asked of points that are not independent.
     ResultsError
         If `out` cannot be written, or another run is at work in it.
     UnfitFolderError
@@ -182,6 +192,7 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
         folder = None if out is None else held.enter_context(claimed_folder(out, source=source, force=force))
         with deferred_interrupt():
             study = prepare(scenario)
+        precision = precision_of(study, within, time_limit)
         _announce_rounding(study)
         seconds = {"preparation": time.perf_counter() - clock}
         heard = None if progress is None else lambda done, total: progress(REALISATIONS, done, total)
@@ -200,6 +211,12 @@ def assess(  # noqa: PLR0913 - one call with named options, each with a default
         seconds[REALISATIONS] = time.perf_counter() - clock - seconds["preparation"]
         with deferred_interrupt():
             results = _results(study, sample, sums)
+        if precision is not None:
+            begun = time.perf_counter()
+            with (executor_factory or thread_pool(workers))() as executor:
+                ground = GroundRuns(study, executor, progress)
+                results |= precision_record(study, sample, ground, precision, begun - clock)
+            seconds[FURTHER] = time.perf_counter() - begun
         seconds["total"] = time.perf_counter() - clock
         results["provenance"] = provenance(
             {
@@ -301,6 +318,7 @@ def _results(study: Study, sample: CampaignSample, sums: list[DriverSums]) -> di
         "confidence": CONFIDENCE,
         "currency": scenario.currency,
         "limits": limit_rows(study, sample),
+        **together_record(study, sample),
         "settlement": settlement_record(study, sample),
         "slip": [
             row | {"circle": circle} for row, circle in zip(slip_rows(study, sample), circles, strict=True)

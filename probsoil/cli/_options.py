@@ -1,5 +1,6 @@
 """Readers of option values, so that a mistake is answered in the words of this program."""
 
+import re
 from collections.abc import Callable
 from enum import StrEnum
 from typing import TypeVar
@@ -82,3 +83,66 @@ def words_of(choices: type[StrEnum]) -> Callable[[], list[str]]:
         Returns the words.
     """
     return lambda: [choice.value for choice in choices]
+
+
+def share(text: str) -> float:
+    """Read a share between 0 and 100 %.
+
+    Parameters
+    ----------
+    text : str
+        Such as ``20%`` or ``0.2``.
+
+    Returns
+    -------
+    share : float, [-]
+        Above 0 and below 1.
+
+    Raises
+    ------
+    typer.BadParameter
+        Where it is no such share.
+    """
+    number = text.strip()
+    try:
+        value = float(number.removesuffix("%")) / (100.0 if number.endswith("%") else 1.0)
+    except ValueError:
+        raise typer.BadParameter(f"'{text}' is not a share; allowed: such as 20% or 0.2") from None
+    if not 0.0 < value < 1.0:
+        raise typer.BadParameter(f"{text} is out of range; allowed: above 0 and below 100 %, such as 20%")
+    return value
+
+
+_SECONDS = {"s": 1.0, "second": 1.0, "min": 60.0, "minute": 60.0, "h": 3600.0, "hour": 3600.0}
+
+
+def duration(text: str) -> float:
+    """Read a time with its unit.
+
+    Parameters
+    ----------
+    text : str
+        Such as ``5 minutes``.
+
+    Returns
+    -------
+    seconds : float, [s]
+        Above 0.
+
+    Raises
+    ------
+    typer.BadParameter
+        Where it is no such time.
+    """
+    found = re.fullmatch(r"\s*([0-9.]+)\s*([a-z]+)\s*", text)
+    unit = None if found is None else found[2] if found[2] in _SECONDS else found[2].removesuffix("s")
+    try:
+        value = 0.0 if found is None or unit is None else float(found[1]) * _SECONDS[unit]
+    except (KeyError, ValueError):
+        value = 0.0
+    if not 0.0 < value < float("inf"):
+        raise typer.BadParameter(
+            f"'{text}' is not a time; allowed: a number above 0 with seconds, minutes or hours, such as"
+            ' "5 minutes"'
+        )
+    return value

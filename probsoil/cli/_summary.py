@@ -6,9 +6,11 @@ from typing import TYPE_CHECKING, Any
 
 from probsoil.cli._output import answer_console, counted, print_table
 from probsoil.report.chance import chance_text, verdict_label
+from probsoil.report.further import precision_lines
 from probsoil.report.percentages import percent_text, plain_percent
 from probsoil.report.ranking import basis_text, none_ranked_text, ranked_by
 from probsoil.report.text import event_text, is_number, pair_text, rounded, warning_share
+from probsoil.report.together import any_text
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -39,6 +41,9 @@ def print_summary(results: dict[str, Any], folder: Path) -> None:
     count = counted(results["realisations"], "realisation")
     console.print(f"{results['title']}: {count} ({results['draws']}), seed {results['seed']}\n")
     _print_limits(console, results)
+    if results.get("together"):
+        console.print(f"Any of the {len(results['limits'])} limits exceeded: {any_text(results)}\n")
+    _print_precision(console, results)
     _print_drivers(console, results)
     for warning in results["warnings"]:
         console.print(f"Warning: {warning['message']}{warning_share(warning)}")
@@ -68,6 +73,17 @@ def _print_limits(console: "Console", results: dict[str, Any]) -> None:
             for limit in results["limits"]
         ),
     )
+
+
+def _print_precision(console: "Console", results: dict[str, Any]) -> None:
+    rows = precision_lines(results)
+    if rows:
+        print_table(
+            console,
+            f"Chances within {plain_percent(results['precision']['within'])}, where runs allowed it",
+            ("limit", "chance (interval)", "within", "method", "runs"),
+            rows,
+        )
 
 
 def _print_drivers(console: "Console", results: dict[str, Any]) -> None:

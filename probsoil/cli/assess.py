@@ -6,7 +6,7 @@ from typing import Annotated
 
 import typer
 
-from probsoil.cli._options import one_of, whole_number, words_of
+from probsoil.cli._options import duration, one_of, share, whole_number, words_of
 
 GREATEST_REALISATIONS = 100_000_000  # these two as in the scenario file
 GREATEST_SEED = 2**63 - 1
@@ -60,6 +60,24 @@ def assess(  # noqa: PLR0913 - one argument for each option of the command
             parser=whole_number(1), metavar="N", help="Number of workers.", show_default="every core"
         ),
     ] = None,
+    within: Annotated[
+        float | None,
+        typer.Option(
+            parser=share,
+            metavar="SHARE",
+            help="Go on until the interval of each chance is within this share of it, such as 20%.",
+            show_default="no further runs",
+        ),
+    ] = None,
+    time_limit: Annotated[
+        float | None,
+        typer.Option(
+            parser=duration,
+            metavar="TIME",
+            help='Begin no further runs after this time, such as "5 minutes".',
+            show_default="as many as realisations",
+        ),
+    ] = None,
     resume: Annotated[
         bool, typer.Option("--resume", help="Insist that there is an interrupted run to go on from.")
     ] = False,
@@ -105,6 +123,8 @@ def assess(  # noqa: PLR0913 - one argument for each option of the command
                 draws=None if draws is None else draws.value.replace("-", " "),
                 seed=seed,
                 workers=workers,
+                within=within,
+                time_limit=time_limit,
                 resume=resume,
                 force=force,
                 progress=progress,

@@ -46,16 +46,19 @@ class MonteCarloPlan:
         Confidence of the limits.
     most_runs : int, [-]
         Realisations at most.
+    first_look : int, [-]
+        Realisations at the first look; the next are at each doubling.
     """
 
     within: float = 0.2
     confidence: float = 0.95
     most_runs: int = 100_000
+    first_look: int = 1024
 
     def __post_init__(self) -> None:
         _check(self.within, self.confidence)
-        if self.most_runs < 1:
-            raise ParameterError(f"at least 1 run is needed; got {self.most_runs}")
+        if self.most_runs < 1 or self.first_look < 1:
+            raise ParameterError(f"at least 1 run is needed; got {min(self.most_runs, self.first_look)}")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

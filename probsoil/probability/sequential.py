@@ -119,14 +119,14 @@ def monte_carlo_exceedance(
 
     Notes
     -----
-    Looks are at 1024 realisations and then each a quarter further, the last at all that are allowed. A
-    limit is done at the first look with so many exceedances that the exact binomial interval is within
-    the precision. The interval given, which allows for the looks, may be somewhat wider than that. Further
-    realisations are made only for limits that are not done, and do not change those that are. So each limit
-    has a stopping rule on its own counts alone, which `sequential_limits` allows for exactly.
+    Looks are at 1024 realisations, or as planned, and then each a quarter further, the last at all that are
+    allowed. A limit is done at the first look with so many exceedances that the exact binomial interval is
+    within the precision. The interval given, which allows for the looks, may be somewhat wider than that.
+    Further realisations are made only for limits that are not done, and do not change those that are. So each
+    limit has a stopping rule on its own counts alone, which `sequential_limits` allows for exactly.
     """
     plan = plan or MonteCarloPlan()
-    looks = look_schedule(plan.most_runs)
+    looks = look_schedule(plan.most_runs, plan.first_look)
     stops = stopping_counts(looks, plan.within, plan.confidence)
     counts: list[list[int]] = [[] for _ in limits]
     for n in looks.tolist():
@@ -142,20 +142,22 @@ def monte_carlo_exceedance(
     )
 
 
-def look_schedule(most_runs: int) -> IntArray:
+def look_schedule(most_runs: int, first_look: int = FIRST_LOOK) -> IntArray:
     """Numbers of realisations at which a run may stop.
 
     Parameters
     ----------
     most_runs : int, [-]
         Realisations at most.
+    first_look : int, [-]
+        Realisations at the first look.
 
     Returns
     -------
     looks : ndarray of int, shape (n_look,), [-]
-        Multiples of 1024, each a quarter or 1024 more than the last, and `most_runs` at the end.
+        `first_look`, each a quarter or 1024 more than the last, and `most_runs` at the end.
     """
-    looks = [CHUNK_SIZE]
+    looks = [first_look]
     while looks[-1] < most_runs:
         looks.append(looks[-1] + CHUNK_SIZE * max(1, round(LOOK_GROWTH * looks[-1] / CHUNK_SIZE)))
     return np.array([*(n for n in looks[:-1] if n < most_runs), most_runs], dtype=np.int64)

@@ -1,6 +1,6 @@
 """Small probabilities from few runs: a pool ranked by a score, true runs in every stratum."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Literal, TypeAlias
 
 import numpy as np
@@ -72,6 +72,8 @@ class StratifiedExceedance:
         Whether a stratum lies far from the limit.
     surprises : ndarray, shape (n_surprise, d), [-]
         Points that exceed although the score put them far from the limit.
+    path : ndarray, shape (n_look, 4), [-]
+        Runs, estimate and its two limits after the pilot and after every batch.
     warnings : tuple of str
         What a reader must know.
     """
@@ -93,10 +95,11 @@ class StratifiedExceedance:
     hits: IntArray
     far: BoolArray
     surprises: FloatArray
+    path: FloatArray
     warnings: tuple[str, ...]
 
     def __post_init__(self) -> None:
-        for name in ("size", "runs", "hits", "far", "surprises"):  # own, read-only arrays
+        for name in ("size", "runs", "hits", "far", "surprises", "path"):  # own, read-only arrays
             array = getattr(self, name).copy()
             array.setflags(write=False)
             object.__setattr__(self, name, array)
@@ -127,6 +130,7 @@ class _Sample:
     n: IntArray
     hits: IntArray
     runs_before: int
+    path: list[tuple[float, float, float, float]] = field(default_factory=list)
 
     @property
     def may_run(self) -> IntArray:
@@ -252,7 +256,9 @@ def _far_lack(sample: _Sample, plan: StratifiedPlan) -> IntArray:
 
 
 def _enough(sample: _Sample, plan: StratifiedPlan) -> bool:
+    """Note how far the estimate has come, and say whether that will do."""
     found = _look(sample, plan.confidence)
+    sample.path.append((float(sample.n.sum()), found.probability, found.low, found.high))
     precise = 0.0 < found.half_width <= plan.within * found.probability
     return precise and not _far_lack(sample, plan).any()
 
@@ -304,6 +310,7 @@ def _result(sample: _Sample, plan: StratifiedPlan) -> StratifiedExceedance:
         hits=sample.hits,
         far=far,
         surprises=surprises,
+        path=np.array(sample.path),
         warnings=_warnings(sample, found, plan, unseen, len(surprises)),
     )
 

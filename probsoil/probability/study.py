@@ -10,9 +10,9 @@ from probsoil.errors import ParameterError
 from probsoil.probability.chooser import MethodChoice, MethodName, Pilot, chosen_method
 from probsoil.probability.counts import Sense
 from probsoil.probability.plans import Allowance, MonteCarloPlan, StratifiedPlan
-from probsoil.probability.ranking import score_of
+from probsoil.probability.ranking import TAIL_RUNS, score_of, training_runs
 from probsoil.probability.scores import Score, ScoreChoice
-from probsoil.probability.sequential import SequentialExceedance, monte_carlo_exceedance
+from probsoil.probability.sequential import FIRST_LOOK, SequentialExceedance, monte_carlo_exceedance
 from probsoil.probability.strata import Strata, pool_size, strata_by_score
 from probsoil.probability.stratified import StratifiedExceedance, stratified_exceedance
 from probsoil.probability.together import JointExceedance, joint_exceedance
@@ -24,6 +24,8 @@ if TYPE_CHECKING:
 Estimate: TypeAlias = SequentialExceedance | StratifiedExceedance
 
 PILOT_RUNS = 256
+RARER = 0.1
+LEAST_RANKED = 700  # runs in strata with which an estimate may begin: a pilot in each, and the far strata
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -76,6 +78,7 @@ def exceedance_study(
     *,
     given: Mapping[int, Mapping[str, Score]] | None = None,
     method: MethodName | None = None,
+    finished: int = 0,
 ) -> ExceedanceStudy:
     """Probabilities that limits are exceeded, for any performance function.
 
@@ -92,6 +95,9 @@ def exceedance_study(
         Cheap scores known beforehand, by the column of the quantity they rank; higher is worse.
     method : {"monte carlo", "stratified by score"}, optional
         Estimator of every limit; chosen for each by `chosen_method` if not given.
+    finished : int, [-]
+        First realisations of plain Monte Carlo that `runs` holds already. They are the pilot and the first
+        look, and come on top of what is allowed.
 
     Returns
     -------
@@ -110,36 +116,43 @@ def exceedance_study(
     A pilot of 256 realisations of plain Monte Carlo comes first; its realisations count in what follows.
     Where some limits need strata, plain Monte Carlo for the others may use half of what is allowed, and
     the limits that need strata share the rest evenly. Limits of one sense on one quantity share their
-    score and strata, so that runs made for one serve the other.
+    score and strata, so that runs made for one serve the other. Where what is allowed does not cover strata
+    for all limits that need them, the later ones are left to plain Monte Carlo.
     """
     if not limits:
         raise ParameterError("at least one limit is needed; got none")
     if allowance.runs is not None and allowance.runs < PILOT_RUNS:
         raise ParameterError(f"at least {PILOT_RUNS} runs are needed for the pilot; got {allowance.runs}")
     before = runs.n_runs
-    choices = _choices(runs, limits, allowance, given or {})
-    if method is not None:
+    choices = _choices(runs, limits, allowance, given or {}, finished)
+    allowed = choices[0].most_runs - finished
+    if method is None:
+        choices = _afforded(choices, allowed, runs.dimension)
+    else:
         choices = [replace(one, method=method, reason="As asked.") for one in choices]
     rare = [i for i, one in enumerate(choices) if one.method == "stratified by score"]
     common = [i for i in range(len(limits)) if i not in rare]
-    allowed = choices[0].most_runs
     plan = MonteCarloPlan(
         within=allowance.within,
         confidence=allowance.confidence,
-        most_runs=max(1, allowed // 2 if rare else allowed),
+        most_runs=finished + max(1, allowed // 2 if rare else allowed),
+        first_look=finished or FIRST_LOOK,
     )
     counted = monte_carlo_exceedance(runs, [limits[i] for i in common], plan)
+    seen = max([finished or PILOT_RUNS, *(one.model_runs for one in counted)])
     found: dict[int, Estimate] = dict(zip(common, counted, strict=True))
     ranked = _Ranked(runs, given or {})
     for place, i in enumerate(rare):
         share = (allowed - (runs.n_runs - before)) // (len(rare) - place)
         rarest = min(choices[j].probability for j in rare if _kind(limits[j]) == _kind(limits[i]))
+        if finished:  # what so many realisations hardly saw may be much rarer than it was taken for
+            rarest *= RARER
         found[i] = ranked.estimate(limits[i], rarest, allowance, share)
     return ExceedanceStudy(
         estimates=tuple(found[i] for i in range(len(limits))),
         choices=tuple(choices),
         scores=tuple(ranked.scores[_kind(limits[i])] if i in rare else None for i in range(len(limits))),
-        together=_together(runs, limits, max([PILOT_RUNS, *(one.model_runs for one in counted)]), allowance),
+        together=_together(runs, limits, seen, allowance),
         model_runs=runs.n_runs,
         seconds=runs.seconds,
     )
@@ -178,23 +191,50 @@ def _kind(limit: QuantityLimit) -> tuple[int, Sense]:
 
 
 def _choices(
-    runs: TrueRuns, limits: Sequence[QuantityLimit], allowance: Allowance, given: Mapping[int, object]
+    runs: TrueRuns,
+    limits: Sequence[QuantityLimit],
+    allowance: Allowance,
+    given: Mapping[int, object],
+    finished: int,
 ) -> list[MethodChoice]:
-    outcome = monte_carlo_outcomes(runs, PILOT_RUNS)
+    n = finished or PILOT_RUNS
+    outcome = monte_carlo_outcomes(runs, n)
+    each = runs.seconds / max(1, runs.n_runs)
+    whole = replace(
+        allowance,
+        runs=None if allowance.runs is None else allowance.runs + finished,
+        seconds=None if allowance.seconds is None else allowance.seconds + finished * each,
+    )
     return [
         chosen_method(
-            Pilot(
-                runs=PILOT_RUNS,
-                exceeding=int(limit.exceeded(outcome).sum()),
-                seconds_per_run=runs.seconds / runs.n_runs,
-            ),
-            allowance,
+            Pilot(runs=n, exceeding=int(limit.exceeded(outcome).sum()), seconds_per_run=each),
+            whole,
             dimension=runs.dimension,
             target=limit.target,
             has_score=limit.quantity in given,
         )
         for limit in limits
     ]
+
+
+def _afforded(choices: list[MethodChoice], allowed: int, dimension: int) -> list[MethodChoice]:
+    """Leave to plain Monte Carlo the limits for which there would be too few runs in strata."""
+    least = training_runs(dimension) + TAIL_RUNS + LEAST_RANKED
+    found: list[MethodChoice] = []
+    rare = [place for place, one in enumerate(choices) if one.method == "stratified by score"]
+    budget = allowed if len(rare) == len(choices) else allowed // 2
+    if len(rare) * least > budget:
+        rare = rare[: (allowed // 2) // least]
+    for place, one in enumerate(choices):
+        if one.method == "stratified by score" and place not in rare:
+            reason = (
+                f"Plain Monte Carlo, for what it gives: {allowed:,} runs besides those at hand do not cover"
+                f" strata by a score for this limit, some {least:,} at least."
+            )
+            found.append(replace(one, method="monte carlo", reason=reason))
+        else:
+            found.append(one)
+    return found
 
 
 def _together(

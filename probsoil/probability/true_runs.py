@@ -192,6 +192,25 @@ class TrueRuns:
             return np.empty((0, 1))
         return kept.outcome[np.searchsorted(kept.index, index)]
 
+    def keep(self, stage: int, outcome: FloatArray) -> None:
+        """Take over the first runs of a stage, made elsewhere; they do not count as made here.
+
+        Parameters
+        ----------
+        stage : int, [-]
+            Stage of the random numbers, of which nothing has been run here.
+        outcome : ndarray, shape (n, n_quantity), [any]
+            Quantities at its points 0 to n - 1.
+
+        Raises
+        ------
+        ParameterError
+            If points of the stage have been run already.
+        """
+        if stage in self._kept:
+            raise ParameterError(f"points of stage {stage} have been run already")
+        self._kept[stage] = _Kept(first_points(len(outcome)), outcome.copy())
+
     def is_kept(self, stage: int, index: IntArray) -> BoolArray:
         """Whether each point has been run.
 

@@ -3,7 +3,7 @@
 import json
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from probsoil.errors import ResultsError
@@ -46,6 +46,10 @@ class Step:
         exceed.
     interval : str
         The two ends of the interval in words, for the table.
+    band : tuple of float or None, [-]
+        Limits that hold for the whole curve at once; None where the results have none.
+    whole : str
+        The same in words, for the table.
     """
 
     threshold: float
@@ -57,6 +61,8 @@ class Step:
     margin: str
     count: str
     interval: str
+    band: tuple[float, float] | None = None
+    whole: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -71,6 +77,8 @@ class Axis:
         Height in per cent of the plot from its top, and label.
     line, band : str
         Path data of the curve and its interval, in thousandths of the plot.
+    whole : str
+        Path data of the limits of the whole curve; empty where there are none.
     heights : tuple of float, [%]
         Height of each step in per cent from the top.
     target : float or None, [%]
@@ -82,6 +90,7 @@ class Axis:
     ticks: tuple[tuple[float, str], ...]
     line: str
     band: str
+    whole: str
     heights: tuple[float, ...]
     target: float | None
 
@@ -123,7 +132,14 @@ def curve_steps(limit: dict[str, Any], results: dict[str, Any]) -> list[Step]:
             )
     base = (realisations_of(limit, results), confidence_of(limit, results))
     decimals, unit = step_decimals(limit), limit.get("unit", "-")
-    return [_step(row, base, decimals, unit) for row in sorted([*others, own])]
+    steps = [_step(row, base, decimals, unit) for row in sorted([*others, own])]
+    low, high = (curve.get(key) or [] for key in ("band_low", "band_high"))
+    if not len(low) == len(high) == len(steps):
+        return steps
+    return [
+        replace(step, band=ends, whole=interval_text(step.probability, *ends))
+        for step, ends in zip(steps, zip(low, high, strict=True), strict=True)
+    ]
 
 
 def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any] | None:
@@ -174,6 +190,7 @@ def curve_view(number: int, limit: dict[str, Any], results: dict[str, Any]) -> d
         "across": across[start],
         "axes": axes,
         "x_ticks": _x_ticks(first, last),
+        "whole": plain_percent(confidence_of(limit, results)) if steps[0].band else "",
         "rare": limit["probability"] < 0.02,
         "target": None if target is None else plain_percent(target),
         "total": count_text(n),
@@ -223,7 +240,7 @@ def _table_rows(size: int, start: int) -> list[int]:
 
 
 def _even_axis(steps: list[Step], across: list[float], target: float | None) -> Axis:
-    top = max(max(step.high for step in steps), 1e-9)
+    top = max(max(max(step.high, (step.band or (0.0, 0.0))[1]) for step in steps), 1e-9)
     size = _round_size(top)
     count = math.ceil(top / size - 1e-9)
     peak = min(1.0, size * count)
@@ -252,8 +269,7 @@ def _axis(
     across: list[float],
     target: float | None,
 ) -> Axis:
-    upper = _points(across, [height(step.high) for step in steps])
-    lower = _points(across, [height(step.low) for step in steps])
+    ends = [[(step.low, step.high) for step in steps], [step.band for step in steps if step.band]]
     # On the logarithmic axis a chance of none has no height; the line stops and only the band goes on.
     seen = [i for i, step in enumerate(steps) if kind == "even" or step.probability > 0]
     heights = tuple(round(height(step.probability), 2) for step in steps)
@@ -263,10 +279,19 @@ def _axis(
         kind=kind,
         ticks=tuple((round(height(share), 2), plain_percent(share)) for share in ticks),
         line=f"M{'L'.join(line)}" if line else "",
-        band=f"M{'L'.join([*upper, *reversed(lower)])}Z",
+        band=_between(across, ends[0], height),
+        whole=_between(across, ends[1], height),
         heights=heights,
         target=level if level is not None and 0.0 <= level <= 100.0 else None,
     )
+
+
+def _between(across: list[float], ends: list[tuple[float, float]], height: Callable[[float], float]) -> str:
+    """Give the outline of what lies between two lines; nothing where there are none."""
+    if not ends:
+        return ""
+    lower, upper = (_points(across, [height(end[side]) for end in ends]) for side in (0, 1))
+    return f"M{'L'.join([*upper, *reversed(lower)])}Z"
 
 
 def _points(across: list[float], down: list[float]) -> list[str]:

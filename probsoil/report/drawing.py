@@ -11,6 +11,7 @@ from probsoil.report import alttext
 from probsoil.report.evidence import evidence_words
 from probsoil.report.palette import LIGHT
 from probsoil.report.plot_bars import plot_drivers, plot_factors
+from probsoil.report.plot_convergence import convergence_words, plot_convergence
 from probsoil.report.plot_evidence import plot_evidence
 from probsoil.report.plot_ground import plot_ground
 from probsoil.report.plot_section import plot_section
@@ -67,6 +68,7 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
     drawings : dict of str to str
         Vector graphic by name: ``settlement``, ``stations`` (with two or more), ``slip`` (with ``section``)
         or ``bearing``, ``ground``, ``evidence-1``, ``evidence-2``, ... for the parameters that tests changed,
+        ``convergence-1``, ... for the limits that further runs were made for,
         and ``drivers-1``, ``drivers-2``, ... for the limits in their order.
     """
     drawn: dict[str, str] = {}
@@ -81,9 +83,8 @@ def figures(results: dict[str, Any]) -> dict[str, str]:
         drawn["section"] = drawn_figure("section", words, plot_section, data)
     if (results.get("ground") or {}).get("layers"):
         drawn["ground"] = drawn_figure("ground", alttext.ground(results), plot_ground, results["ground"])
-    for number, row in enumerate((results.get("evidence") or {}).get("parameters") or [], start=1):
-        name = f"evidence-{number}"
-        drawn[name] = drawn_figure(name, evidence_words(row), plot_evidence, row)
+    drawn |= _convergence_figures(results)
+    drawn |= _evidence_figures(results)
     for number, limit in enumerate(results["limits"], start=1):
         shown = shown_drivers(results, limit["name"])
         if shown:
@@ -103,6 +104,25 @@ def _settlement_figures(results: dict[str, Any]) -> dict[str, str]:
         )
     if len(data.get("stations") or []) > 1:
         drawn["stations"] = drawn_figure("stations", stations_words(results), plot_stations, data)
+    return drawn
+
+
+def _convergence_figures(results: dict[str, Any]) -> dict[str, str]:
+    """Draw the way to every estimate that further runs were made for."""
+    drawn: dict[str, str] = {}
+    for number, row in enumerate((results.get("precision") or {}).get("limits") or [], start=1):
+        if len(row["path"]) > 1:
+            name = f"convergence-{number}"
+            drawn[name] = drawn_figure(name, convergence_words(row), plot_convergence, row)
+    return drawn
+
+
+def _evidence_figures(results: dict[str, Any]) -> dict[str, str]:
+    """Draw every parameter that tests changed."""
+    drawn: dict[str, str] = {}
+    for number, row in enumerate((results.get("evidence") or {}).get("parameters") or [], start=1):
+        name = f"evidence-{number}"
+        drawn[name] = drawn_figure(name, evidence_words(row), plot_evidence, row)
     return drawn
 
 

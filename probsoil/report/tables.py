@@ -6,8 +6,10 @@ from typing import TYPE_CHECKING, Any
 
 from probsoil.report.chance import realisations_of
 from probsoil.report.evidence import parameter_rows, test_rows
+from probsoil.report.further import precision_rows
 from probsoil.report.ranking import ranked_by
 from probsoil.report.text import LEAST_FOR_TAILS, UNCOMPUTED, WITHHELD, uncomputed_text
+from probsoil.report.together import together_rows
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -16,10 +18,11 @@ _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
 
 
 def write_tables(results: dict[str, Any], folder: Path) -> list[Path]:
-    """Write ``limits.csv``, ``drivers.csv``, ``settlement.csv``, ``parameters.csv``, and ``added_fill.csv``.
+    """Write ``limits.csv``, ``curves.csv``, ``drivers.csv``, ``settlement.csv`` and ``parameters.csv``.
 
-    The last only where fill is added to hold its level. With stations also ``stations.csv``
-    and ``station_pairs.csv``; with tests in hand ``tests.csv`` and ``updated_parameters.csv``.
+    With several limits also ``together.csv``; with a precision asked ``precision.csv``; with stations
+    ``stations.csv`` and ``station_pairs.csv``; with tests in hand ``tests.csv`` and
+    ``updated_parameters.csv``; ``added_fill.csv`` where fill is added to hold its level.
 
     Where the rows of a column differ in unit its name says ``[unit]`` and the column ``unit`` gives it. A
     mean or quantile without a number reads ``not reached`` (a time), ``beyond the computation``, or
@@ -57,20 +60,24 @@ def tables(results: dict[str, Any]) -> "dict[str, pd.DataFrame]":
     Returns
     -------
     frames : dict of str to DataFrame
-        ``limits``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give tables
-        without rows. With fill added to hold its level also ``added_fill``, with stations ``stations`` and
-        ``station_pairs``.
+        ``limits``, ``curves``, ``drivers``, ``settlement`` and ``parameters``; parts the results lack give
+        tables without rows. The others as by `write_tables`.
     """
     import pandas as pd
 
     rows = {
         "limits": [_limit_row(limit, results) for limit in results["limits"]],
+        "curves": [row for limit in results["limits"] for row in _curve_rows(limit)],
         "drivers": [
             _driver_row(row, ranked_by(results, row["limit"])) for row in results.get("drivers") or []
         ],
         "settlement": _settlement_rows(results.get("settlement") or {}, results),
         "parameters": [_parameter_row(row) for row in results.get("parameters") or []],
     }
+    if results.get("together"):
+        rows["together"] = together_rows(results["together"])
+    if results.get("precision"):
+        rows["precision"] = precision_rows(results["precision"])
     settlement = results.get("settlement") or {}
     if settlement.get("stations"):
         rows["stations"] = list(_station_rows(settlement, results))
@@ -126,6 +133,22 @@ def _limit_row(limit: dict[str, Any], results: dict[str, Any]) -> dict[str, Any]
         **_median_columns(summary.get("median_interval"), beyond),
         "method": limit.get("method"),
     }
+
+
+def _curve_rows(limit: dict[str, Any]) -> Iterator[dict[str, Any]]:
+    curve = limit.get("curve") or {}
+    columns = {
+        "threshold [unit]": "threshold",
+        "exceeding [realisations]": "exceeding",
+        "probability [-]": "probability",
+        "probability low [-]": "low",
+        "probability high [-]": "high",
+        "whole curve low [-]": "band_low",
+        "whole curve high [-]": "band_high",
+    }
+    for place in range(len(curve.get("threshold") or [])):
+        numbers = {name: curve[key][place] for name, key in columns.items() if key in curve}
+        yield {"limit": limit["name"], "unit": limit.get("unit")} | numbers
 
 
 def _driver_row(row: dict[str, Any], measure: str) -> dict[str, Any]:

@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from probsoil.errors import ResultsError
+from probsoil.report.probability_rules import PRECISION, TOGETHER
 
 FORMAT = 1
 
@@ -93,6 +94,8 @@ _LIMIT = {
         "probability": ["share"],
         "low": ["share"],
         "high": ["share"],
+        "band_low?": ["share"],
+        "band_high?": ["share"],
     },
 }
 _DRIVER = {
@@ -204,6 +207,8 @@ RESULTS: dict[str, Any] = {
     "confidence": "share",
     "currency": "text",
     "limits": [_LIMIT],
+    "together?": TOGETHER,
+    "precision?": PRECISION,
     "settlement": {
         "station": "text",
         "times": ["number"],
@@ -338,8 +343,10 @@ def _contradictions(results: dict[str, Any]) -> Iterator[str]:
     yield from _station_lengths(settlement)
     yield from _lengths(results["ground"]["profile"], "depth", "ground.profile")
     names = {limit["name"] for limit in results["limits"]}
-    for part in ("drivers", "driver_quality"):
-        for place, row in enumerate(results[part]):
+    named = {part: results[part] for part in ("drivers", "driver_quality")}
+    named["precision.limits"] = (results.get("precision") or {"limits": []})["limits"]
+    for part, rows in named.items():
+        for place, row in enumerate(rows):
             if row["limit"] not in names:
                 yield f"{part}[{place}].limit must be the name of a limit; got {_shown(row['limit'])}"
 

@@ -7,9 +7,11 @@ from probsoil.report.added_fill import added_fill_sentences
 from probsoil.report.curve import curve_view
 from probsoil.report.drivers import drivers_view
 from probsoil.report.evidence import evidence_view
+from probsoil.report.further import precision_text, precision_view
 from probsoil.report.record import draws_text, metres_text, record_view, slip_share, stage_view
 from probsoil.report.section import section_view
 from probsoil.report.stations import is_marked, stations_view
+from probsoil.report.together import together_view
 
 _MARKS = {"within target": "within", "beyond target": "beyond", "not conclusive": "open"}
 _LEVELS = ("0.05", "0.25", "0.5", "0.75", "0.95")
@@ -64,6 +66,8 @@ def page_view(results: dict[str, Any]) -> dict[str, Any]:
         "total": text.realisations_text(results["realisations"]),
         "tails": results["realisations"] >= text.LEAST_FOR_TAILS,
         "limits": [_limit(number, limit, results) for number, limit in numbered],
+        "together": together_view(results),
+        "precision": precision_view(results),
         "settlement": _settlement(results.get("settlement") or {}, results),
         "stations": stations_view(results),
         "added_fill": added_fill_sentences(results),
@@ -124,6 +128,7 @@ def _reliability(limit: dict[str, Any]) -> str:
 def _evidence(limit: dict[str, Any], results: dict[str, Any]) -> list[tuple[str, str]]:
     rows = [
         ("Counted", chance.counted_text(limit, results)),
+        ("To the precision asked", precision_text(limit["name"], results)),
         ("The quantity itself", _spread(limit, results)),
         ("Creep in it", _part(limit, "secondary")),
         ("Undrained distortion in it", _part(limit, "distortion")),

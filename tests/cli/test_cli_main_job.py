@@ -59,7 +59,9 @@ def test_run_leaves_everything_it_promises(run: tuple[Path, subprocess.Completed
     names = {path.name for path in out.iterdir()}
     tables = {"limits.csv", "drivers.csv", "settlement.csv", "parameters.csv"}
     assert tables | {"results.json", "realisations.npz", "report.html", "scenario.toml", "log.txt"} <= names
-    written = {*FILES} - {*OCCASIONAL}  # the scenario has none of those
+    written = ({*FILES} - {*OCCASIONAL}) | {
+        "together.csv"
+    }  # it has several limits and nothing else occasional
     assert names == {*written, "figures", "log.txt"}  # what a run may overwrite is all that it writes
     assert list((out / "figures").glob("*.svg"))
     assert (out / "scenario.toml").read_bytes() == (folder / "site.toml").read_bytes()

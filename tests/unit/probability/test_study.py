@@ -95,3 +95,44 @@ def test_too_few_runs_for_what_was_asked_are_refused():
     runs = TrueRuns(two_quantities, dimension=2, seed=9)
     with pytest.raises(ParameterError, match="do not cover a pilot"):
         exceedance_study(runs, LIMITS[1:2], Allowance(runs=400), method="stratified by score")
+
+
+def linear(u):
+    return u.sum(axis=1) / np.sqrt(u.shape[1])
+
+
+def finished_study(threshold, n, allowed, **keys):
+    runs = TrueRuns(linear, dimension=4, seed=3)
+    runs.keep(0, linear(runs.points(0, np.arange(n)))[:, np.newaxis])
+    limits = [QuantityLimit(threshold=threshold)] * keys.pop("limits", 1)
+    return exceedance_study(runs, limits, Allowance(runs=allowed), finished=n, **keys)
+
+
+def test_finished_realisations_are_the_first_look_and_cost_nothing():
+    found = finished_study(2.0, 3000, 9000)
+    one = found.estimates[0]
+    assert one.look_runs.tolist() == [3000, 6000]
+    assert found.model_runs == 3000
+    assert one.interval[0] < ndtr(-2.0) < one.interval[1]
+
+
+def test_finished_realisations_choose_strata_where_they_saw_nothing():
+    found = finished_study(4.0, 3000, 3000)
+    assert found.choices[0].method == "stratified by score"
+    assert found.estimates[0].interval[0] < ndtr(-4.0) < found.estimates[0].interval[1]
+    assert found.estimates[0].path[-1, 0] == found.estimates[0].pool_runs
+    assert found.model_runs <= 3000
+
+
+def test_too_few_runs_for_strata_are_left_to_plain_monte_carlo():
+    found = finished_study(4.0, 3000, 600)
+    assert found.choices[0].method == "monte carlo"
+    assert "600 runs besides those at hand do not cover strata" in found.choices[0].reason
+    assert found.model_runs == 600
+
+
+def test_runs_are_taken_over_once():
+    runs = TrueRuns(linear, dimension=4, seed=3)
+    runs.outcomes(0, np.arange(5))
+    with pytest.raises(ParameterError, match="points of stage 0 have been run already"):
+        runs.keep(0, np.zeros((3, 1)))

@@ -14,10 +14,11 @@ def results():
     return sample(n=2000)
 
 
-def test_four_files_and_no_leftovers(results, tmp_path):
+def test_five_files_and_no_leftovers(results, tmp_path):
     paths = write_tables(results, tmp_path)
     assert sorted(path.name for path in tmp_path.iterdir()) == sorted(path.name for path in paths)
-    assert [path.name for path in paths] == ["limits.csv", "drivers.csv", "settlement.csv", "parameters.csv"]
+    names = ["limits.csv", "curves.csv", "drivers.csv", "settlement.csv", "parameters.csv"]
+    assert [path.name for path in paths] == names
 
 
 def test_numbers_survive_the_round_trip(results, tmp_path):
