@@ -301,3 +301,28 @@ def test_mistakes_on_the_command_line_end_with_two_and_a_hint(
     assert "Input should" not in words
     assert "Value error" not in words
     assert calculation.calls == []
+
+
+@pytest.mark.parametrize(("text", "seconds"), [("5 minutes", 300.0), ("90s", 90.0), ("1.5 h", 5400.0)])
+def test_precision_and_time_are_read(text: str, seconds: float) -> None:
+    assert duration(text) == seconds
+    assert share("20%") == share("0.2") == share(" 20 % ") == 0.2
+
+
+@pytest.mark.parametrize(
+    ("read", "text", "message"),
+    [
+        (duration, "5", "'5' is not a time; allowed: a number above 0 with seconds, minutes or hours"),
+        (duration, "5 weeks", "'5 weeks' is not a time"),
+        (duration, "0 s", "'0 s' is not a time"),
+        (duration, "1.2.3 s", "'1.2.3 s' is not a time"),
+        (share, "often", "'often' is not a share; allowed: such as 20% or 0.2"),
+        (share, "120%", "120% is out of range; allowed: above 0 and below 100 %, such as 20%"),
+        (share, "nan", "nan is out of range"),
+    ],
+)
+def test_precision_and_time_out_of_range_are_refused(
+    read: Callable[[str], float], text: str, message: str
+) -> None:
+    with pytest.raises(typer.BadParameter, match=re.escape(message)):
+        read(text)
