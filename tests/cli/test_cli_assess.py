@@ -4,12 +4,15 @@ import json
 import logging
 import re
 import warnings
+from collections.abc import Callable
 from pathlib import Path
 
 import cli_fakes
 import pytest
+import typer
 
 from probsoil.cli import main
+from probsoil.cli._options import duration, share
 from probsoil.errors import (
     ConvergenceError,
     DependenceError,
@@ -110,6 +113,9 @@ def test_options_reach_the_calculation_and_absent_ones_leave_the_scenario_alone(
     assert given["command"] == f"probsoil {line}"
     assert (absent["realisations"], absent["draws"], absent["seed"], absent["workers"]) == (None,) * 4
     assert absent["resume"] is False
+    assert (absent["within"], absent["time_limit"]) == (None, None)
+    assert main(["assess", "site.toml", "--within", "10%", "--time-limit", "2 minutes"]) == 0
+    assert (calculation.calls[-1]["within"], calculation.calls[-1]["time_limit"]) == (0.1, 120.0)
     assert main(["assess", "site.toml", "--force"]) == 0
     assert calculation.calls[-1]["force"] is True
 
