@@ -47,7 +47,7 @@ class MonteCarloPlan:
     most_runs : int, [-]
         Realisations at most.
     first_look : int, [-]
-        Realisations at the first look; the next are at each doubling.
+        Realisations at the first look; each of the next is a quarter more.
     """
 
     within: float = 0.2

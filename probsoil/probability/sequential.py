@@ -142,7 +142,7 @@ def monte_carlo_exceedance(
     )
 
 
-def look_schedule(most_runs: int, first_look: int = FIRST_LOOK) -> IntArray:
+def look_schedule(most_runs: int, first_look: int = CHUNK_SIZE) -> IntArray:
     """Numbers of realisations at which a run may stop.
 
     Parameters

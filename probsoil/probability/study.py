@@ -7,12 +7,13 @@ from typing import TYPE_CHECKING, TypeAlias
 import numpy as np
 
 from probsoil.errors import ParameterError
+from probsoil.parameters.designs import CHUNK_SIZE
 from probsoil.probability.chooser import MethodChoice, MethodName, Pilot, chosen_method
 from probsoil.probability.counts import Sense
 from probsoil.probability.plans import Allowance, MonteCarloPlan, StratifiedPlan
 from probsoil.probability.ranking import TAIL_RUNS, score_of, training_runs
 from probsoil.probability.scores import Score, ScoreChoice
-from probsoil.probability.sequential import FIRST_LOOK, SequentialExceedance, monte_carlo_exceedance
+from probsoil.probability.sequential import SequentialExceedance, monte_carlo_exceedance
 from probsoil.probability.strata import Strata, pool_size, strata_by_score
 from probsoil.probability.stratified import StratifiedExceedance, stratified_exceedance
 from probsoil.probability.together import JointExceedance, joint_exceedance
@@ -136,7 +137,7 @@ def exceedance_study(
         within=allowance.within,
         confidence=allowance.confidence,
         most_runs=finished + max(1, allowed // 2 if rare else allowed),
-        first_look=finished or FIRST_LOOK,
+        first_look=finished or CHUNK_SIZE,
     )
     counted = monte_carlo_exceedance(runs, [limits[i] for i in common], plan)
     seen = max([finished or PILOT_RUNS, *(one.model_runs for one in counted)])
