@@ -1,7 +1,7 @@
 """Runs beyond the campaign, until the chance of each limit is as precise as was asked."""
 
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from concurrent.futures import Executor
 from dataclasses import dataclass
 
@@ -195,8 +195,7 @@ def precision_record(
         for place, one, choice, score in zip(
             missing, found.estimates, found.choices, found.scores, strict=True
         ):
-            rows[place] = _row(study, one, choice.reason, score)
-            rows[place]["warnings"] += _contradiction(one, counted[place])
+            rows[place] = _row(study, one, choice.reason, score, _contradiction(one, counted[place]))
     return {
         "precision": {
             "within": precision.within,
@@ -226,6 +225,7 @@ def _row(
     found: SequentialExceedance | StratifiedExceedance,
     reason: str,
     score: ScoreChoice | None,
+    contradiction: Sequence[str] = (),
 ) -> Row:
     ranked = isinstance(found, StratifiedExceedance)
     guaranteed = found.guaranteed if isinstance(found, StratifiedExceedance) else found.interval
@@ -246,7 +246,7 @@ def _row(
         "score_runs": 0 if score is None else score.training_runs + score.tail_runs,
         "verdict": _verdict(found),
         "path": _path(found),
-    } | _doubts(study, found)
+    } | _doubts(study, found, contradiction)
 
 
 def _path(found: SequentialExceedance | StratifiedExceedance) -> list[Row]:
@@ -261,13 +261,15 @@ def _path(found: SequentialExceedance | StratifiedExceedance) -> list[Row]:
     ]
 
 
-def _doubts(study: Study, found: SequentialExceedance | StratifiedExceedance) -> Row:
+def _doubts(
+    study: Study, found: SequentialExceedance | StratifiedExceedance, contradiction: Sequence[str]
+) -> Row:
     """Return what the reader must know, and parameters of runs that the score did not foresee."""
     if not isinstance(found, StratifiedExceedance):
-        return {"warnings": [], "surprises": []}
+        return {"warnings": list(contradiction), "surprises": []}
     values = study.space.values(study.space.correlated(found.surprises))
     return {
-        "warnings": list(found.warnings),
+        "warnings": [*found.warnings, *contradiction],
         "surprises": [
             {name: float(np.asarray(values[name])[place]) for name in study.space.names}
             for place in range(min(MOST_SURPRISES, len(found.surprises)))

@@ -172,7 +172,7 @@ def _chance(row: dict[str, Any]) -> str:
 
 
 def _is_conditional(row: dict[str, Any]) -> bool:
-    return row["method"] == "stratified by score" and row["unseen_bound"] > 0.0
+    return bool(row["method"] == "stratified by score" and row["unseen_bound"] > 0.0)
 
 
 def _sentences(row: dict[str, Any], results: dict[str, Any]) -> list[str]:
