@@ -4,7 +4,7 @@ import re
 
 import numpy as np
 import pytest
-from conftest import TEXT
+from small_site import TEXT
 
 from probsoil.assessment import Assessment, assess
 from probsoil.assessment.evaluation import prepare
