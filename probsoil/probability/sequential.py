@@ -9,7 +9,7 @@ from scipy.special import gammaln
 
 from probsoil._typing import FloatArray, IntArray
 from probsoil.errors import ParameterError
-from probsoil.parameters.designs import CHUNK_SIZE
+from probsoil.parameters.designs import CHUNK_SIZE, POINT_STAGE
 from probsoil.probability.binomial import clopper_pearson, unseen_bound
 from probsoil.probability.plans import MonteCarloPlan
 from probsoil.probability.true_runs import QuantityLimit, TrueRuns, monte_carlo_outcomes
@@ -129,13 +129,15 @@ def monte_carlo_exceedance(
     looks = look_schedule(plan.most_runs, plan.first_look)
     stops = stopping_counts(looks, plan.within, plan.confidence)
     counts: list[list[int]] = [[] for _ in limits]
+    before = 0
     for n in looks.tolist():
         pending = [i for i, seen in enumerate(counts) if not _is_done(seen, stops)]
         if not pending:
             break
-        outcome = monte_carlo_outcomes(runs, n)
+        outcome = runs.outcomes(POINT_STAGE, np.arange(before, n, dtype=np.int64))
         for i in pending:
-            counts[i].append(int(limits[i].exceeded(outcome).sum()))
+            counts[i].append(sum(counts[i][-1:]) + int(limits[i].exceeded(outcome).sum()))
+        before = n
     return tuple(
         _result(runs, limit, np.array(seen, dtype=np.int64), (looks, stops), plan)
         for limit, seen in zip(limits, counts, strict=True)

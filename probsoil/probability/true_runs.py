@@ -183,7 +183,7 @@ class TrueRuns:
             If the performance function does not give one row per point.
         """
         kept = self._kept.get(stage)
-        new = np.unique(index) if kept is None else np.setdiff1d(index, kept.index)
+        new = np.unique(index[~self.is_kept(stage, index)])
         if new.size:
             parts = np.array_split(new, -(-new.size // _ROWS_AT_ONCE))
             made = np.concatenate([self._run(spread * self.points(stage, part)) for part in parts])
@@ -227,7 +227,10 @@ class TrueRuns:
             True where a run costs nothing.
         """
         kept = self._kept.get(stage)
-        return np.zeros(len(index), dtype=np.bool_) if kept is None else np.isin(index, kept.index)
+        if kept is None:
+            return np.zeros(len(index), dtype=np.bool_)
+        place = np.minimum(np.searchsorted(kept.index, index), len(kept.index) - 1)
+        return np.asarray(kept.index[place] == index)
 
     def _run(self, u: FloatArray) -> FloatArray:
         start = time.perf_counter()
