@@ -1,6 +1,6 @@
 """Interpretation of all tests of a site: each by itself, then what only several together can give."""
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -10,10 +10,10 @@ import numpy as np
 from probsoil.errors import ParameterError
 from probsoil.laboratory.cone import ConeResult, interpreted_cone
 from probsoil.laboratory.ground_column import GroundColumn, assumed_column, scenario_column
-from probsoil.laboratory.observations import Observation, evidence_text, observation
+from probsoil.laboratory.observations import TOGETHER, Observation, evidence_text, observation
 from probsoil.laboratory.oedometer import OedometerResult, interpreted_oedometer
 from probsoil.laboratory.outliers import flagged
-from probsoil.laboratory.regression import Estimate
+from probsoil.laboratory.pooled_friction import PooledFriction, pooled_friction
 from probsoil.laboratory.sheets import (
     ConeSheet,
     OedometerSheet,
@@ -23,8 +23,9 @@ from probsoil.laboratory.sheets import (
     VaneSheet,
 )
 from probsoil.laboratory.strength_ratio import StrengthRatio, strength_ratio
-from probsoil.laboratory.triaxial import FailureBy, TriaxialResult, interpreted_triaxial, pooled_slope
+from probsoil.laboratory.triaxial import FailureBy, TriaxialResult, interpreted_triaxial
 from probsoil.laboratory.vane import VaneResult, interpreted_vane
+from probsoil.laboratory.yield_profile import YieldProfile, yield_profile
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -60,31 +61,6 @@ class Choices:
     def __post_init__(self) -> None:
         if self.failure not in _FAILURES:
             raise ParameterError(f"failure is one of {', '.join(_FAILURES)}; got '{self.failure}'")
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class PooledFriction:
-    """M of the triaxial tests of one layer together.
-
-    Attributes
-    ----------
-    layer : str
-        Layer; empty where not known.
-    failure : str
-        Definition of failure.
-    tests : int, [-]
-        Number of tests.
-    slope : Estimate, [-]
-        M by regression of q on p' through the origin.
-    scatter : float, [-]
-        Coefficient of variation of a test about it.
-    """
-
-    layer: str
-    failure: FailureBy
-    tests: int
-    slope: Estimate
-    scatter: float
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -205,13 +181,15 @@ def interpreted_site(
         return None if column is None else column.stress_at(sheet.place.depth)
 
     oedometers = tuple(interpreted_oedometer(one, stress(one)) for one in sheets.oedometers)
+    yields = _yields(oedometers, column)
     triaxials = tuple(
-        interpreted_triaxial(one, stress(one), failure=said.failure) for one in sheets.triaxials
+        interpreted_triaxial(one, stress(one), failure=said.failure, ocr=_ocr(one, yields, column))
+        for one in sheets.triaxials
     )
     vanes = tuple(interpreted_vane(one, corrected=said.vane_corrected) for one in sheets.vanes)
     cones = tuple(interpreted_cone(one, column) for one in sheets.cones)
     layers = _by_layer(oedometers, triaxials, column)
-    ratios = tuple(_ratio(name, *tests, column) for name, tests in layers.items() if tests[1])
+    ratios = tuple(_ratio(name, *tests, yields.get(name)) for name, tests in layers.items() if tests[1])
     results: list[Result] = [*oedometers, *triaxials, *vanes, *cones]
     singles = [
         replace(row, layer=row.layer or ground_of(row.depth, one.sheet.place, column))
@@ -287,70 +265,54 @@ def _by_layer(
     return found
 
 
+def _yields(oedometers: Sequence[OedometerResult], column: GroundColumn | None) -> dict[str, YieldProfile]:
+    """Return preconsolidation stress with depth for each ground whose oedometer tests give it."""
+    profiles = {
+        name: yield_profile(tests, column) for name, (tests, _) in _by_layer(oedometers, (), column).items()
+    }
+    return {name: one for name, one in profiles.items() if one is not None}
+
+
+def _ocr(sheet: TriaxialSheet, yields: dict[str, YieldProfile], column: GroundColumn | None) -> float | None:
+    profile = yields.get(ground_of(sheet.place.depth, sheet.place, column))
+    if profile is None or not np.isfinite(sheet.axial_stress):
+        return None
+    return max(profile.stress(sheet.place.depth) / sheet.axial_stress, 1.0)
+
+
 def _friction(layers: dict[str, _Tests]) -> tuple[PooledFriction, ...]:
-    pooled = []
-    for name, (_, triaxials) in layers.items():
-        for failure in _FAILURES:
-            found = pooled_slope(tuple(triaxials), failure)
-            if found is not None:
-                number = sum(one.slope(one.greatest_ratio) is not None for one in triaxials)
-                pooled.append(
-                    PooledFriction(
-                        layer=name,
-                        failure=failure,
-                        tests=number,
-                        slope=found[0],
-                        scatter=found[1],
-                    )
-                )
-    return tuple(pooled)
+    found = [pooled_friction(name, tests[1], by) for name, tests in layers.items() for by in _FAILURES]
+    return tuple(one for one in found if one is not None)
 
 
 def _ratio(
     name: str,
     oedometers: list[OedometerResult],
     triaxials: list[TriaxialResult],
-    column: GroundColumn | None,
+    profile: YieldProfile | None,
 ) -> StrengthRatio:
-    return strength_ratio(name, triaxials, oedometers, _preconsolidation(oedometers, column))
-
-
-def _preconsolidation(
-    oedometers: list[OedometerResult], column: GroundColumn | None
-) -> Callable[[float], float] | None:
-    """Return preconsolidation stress with depth: one overconsolidation ratio, or one stress, for a layer."""
-    known = [one for one in oedometers if one.preconsolidation is not None]
-    if not known:
-        return None
-    stresses = np.log([one.preconsolidation.value for one in known if one.preconsolidation is not None])
-    in_situ = [one.in_situ_stress for one in known]
-    if column is not None and all(one is not None for one in in_situ):
-        ocr = float(np.exp(np.mean(stresses - np.log([one for one in in_situ if one is not None]))))
-        return lambda depth: ocr * column.effective_stress(depth)
-    level = float(np.exp(np.mean(stresses)))
-    return lambda depth: level  # noqa: ARG005 - the same at every depth
+    if profile is None:
+        return strength_ratio(name, triaxials, oedometers, None)
+    error = profile.relative_error
+    return strength_ratio(name, triaxials, oedometers, profile.stress, stress_error=error)
 
 
 def _ratio_rows(ratio: StrengthRatio, triaxials: Sequence[TriaxialResult]) -> list[Observation]:
-    """Return what the tests of a layer give together as rows at their mean depth."""
-    depths = [one.sheet.place.depth for one in triaxials if one.sheet.test in ratio.tests]
-    if not depths:
+    """Return what tests of a layer give together: of one alone under its name, else at their mean depth."""
+    places = [one.sheet.place for one in triaxials if one.sheet.test in ratio.tests]
+    if not places:
         return []
-    place = Place(hole="", depth=float(np.mean(depths)))
-    name = f"{len(depths)} tests together"
+    mean = Place(hole="", depth=float(np.mean([one.depth for one in places])))
+    test = (TOGETHER.join(ratio.tests), places[0] if len(places) == 1 else mean)
+    words = {
+        "su_ratio": "consolidated under equal stresses, which gives more than as in the ground",
+        "Lambda": "from specimens consolidated under equal stresses",
+    }
     rows = []
     for parameter, found in (("su_ratio", ratio.ratio), ("Lambda", ratio.exponent)):
         if found is not None and found.value > 0.0:
-            row = observation(
-                "triaxial",
-                (name, place),
-                parameter,
-                found.value,
-                found.standard_error,
-                flag="consolidated under equal stresses, which gives more than as in the ground"
-                if ratio.isotropic and parameter == "su_ratio"
-                else "",
-            )
+            flag = words[parameter] if ratio.isotropic else ""
+            row = observation("triaxial", test, parameter, found.value, found.standard_error, flag=flag)
             rows.append(replace(row, layer=ratio.layer))
     return rows
 

@@ -71,6 +71,9 @@ class Observation:
     flag: str = ""
 
 
+TOGETHER = " + "
+"""Between the names of tests that gave a number together."""
+
 EVIDENCE_COLUMNS = tuple(one.name for one in fields(Observation))
 """Header of the evidence table."""
 

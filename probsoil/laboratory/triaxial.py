@@ -7,8 +7,10 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
+from probsoil.laboratory.friction import carried_to_compression, friction_angle, greatest_slope
 from probsoil.laboratory.observations import Observation, observation
-from probsoil.laboratory.regression import Estimate, widened
+from probsoil.laboratory.regression import Estimate
+from probsoil.laboratory.shear_curve import SmoothRatio, late_change, smooth_ratio
 from probsoil.laboratory.sheets import TriaxialSheet
 
 if TYPE_CHECKING:
@@ -22,11 +24,20 @@ PRESSURE_ERROR = 1.0
 STRENGTH_ERROR = 0.03
 """Relative standard error of a strength for area and membrane correction [-]; a judgement."""
 
-FRICTION_SCATTER = 0.07
-"""Coefficient of variation of M between specimens of a layer, taken where there is one [-]; a judgement."""
+UNCONSOLIDATED_ERROR = 0.20
+"""The same of a UU test, whose effective stress nobody knows [-]; Phoon and Kulhawy 1999 give 8 to 38 % for strengths
+of the laboratory; recalled, not opened."""
 
 _LEAST_READINGS = 4
 _SMALL_STRESS = 2.0  # kPa: below it a stress ratio means nothing
+_CRITICAL_OCR = 2.0  # above it a clay dilates: its greatest stress ratio is a peak
+_RISE, _PORE_CHANGE, _VOLUME_CHANGE = (
+    0.03,
+    0.05,
+    0.05,
+)  # of q, of p' and of strain, over the last quarter of it
+_FALL = 0.05  # of the stress ratio after its greatest
+_TOLD = 2.0 * PRESSURE_ERROR  # a smaller change may be error of reading
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -41,17 +52,20 @@ class Failure:
         Axial.
     deviator, mean_stress : float, [kPa]
         q and p'; p' not a number of a UU test.
+    ratio : Estimate or None, [-]
+        Stress ratio q/p', extension positive too: by the curve through the readings about failure where
+        they are enough (`smooth_ratio`), else of this reading alone; None where p' is not known or next to
+        nothing.
+    excess : float, [-]
+        What was taken off it, as the greatest of a curve that errs lies too high.
     """
 
     place: int
     strain: float
     deviator: float
     mean_stress: float
-
-    @property
-    def ratio(self) -> float:
-        """Stress ratio q/p', extension positive too [-]."""
-        return abs(self.deviator) / self.mean_stress
+    ratio: Estimate | None
+    excess: float
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -72,6 +86,10 @@ class TriaxialResult:
         Which of the two M is taken at.
     in_situ_stress : float or None, [kPa]
         Effective vertical stress in situ.
+    ocr : float or None, [-]
+        Overconsolidation ratio at which it was sheared; None where not known.
+    doubts : tuple of str
+        Why M may be no critical state.
     remarks : tuple of str
         What could not be interpreted, and why.
     """
@@ -82,6 +100,8 @@ class TriaxialResult:
     greatest_ratio: Failure | None
     failure: FailureBy
     in_situ_stress: float | None
+    ocr: float | None
+    doubts: tuple[str, ...]
     remarks: tuple[str, ...]
 
     @property
@@ -107,13 +127,10 @@ class TriaxialResult:
         slope : Estimate or None, [-]
             M with the error of the readings.
         """
-        if failure is None or not np.isfinite(failure.mean_stress) or failure.mean_stress < _SMALL_STRESS:
+        found = None if failure is None else failure.ratio
+        if found is None or not 0.0 < found.value < greatest_slope(extension=self.extension):
             return None
-        relative = math.hypot(PRESSURE_ERROR / abs(failure.deviator), PRESSURE_ERROR / failure.mean_stress)
-        if failure.ratio >= greatest_slope(extension=self.extension):
-            return None
-        value = compression_slope(friction_angle(failure.ratio, extension=self.extension))
-        return Estimate(value=value, standard_error=value * relative)
+        return carried_to_compression(found, extension=self.extension)
 
     @property
     def slope_at_failure(self) -> Estimate | None:
@@ -126,7 +143,8 @@ class TriaxialResult:
         if self.peak is None or not self.undrained:
             return None
         value = 0.5 * abs(self.peak.deviator)
-        return Estimate(value=value, standard_error=math.hypot(0.5 * PRESSURE_ERROR, STRENGTH_ERROR * value))
+        relative = UNCONSOLIDATED_ERROR if self.sheet.kind == "UU" else STRENGTH_ERROR
+        return Estimate(value=value, standard_error=math.hypot(0.5 * PRESSURE_ERROR, relative * value))
 
     @property
     def strength_over_stress(self) -> float | None:
@@ -145,7 +163,7 @@ class TriaxialResult:
         test, rows = (self.sheet.test, self.sheet.place), []
         slope, strength = self.slope_at_failure, self.strength
         if slope is not None:
-            flag = "from extension, carried over by the friction angle" if self.extension else ""
+            flag = "; ".join(self._slope_doubts)
             rows.append(observation("triaxial", test, "M", slope.value, slope.standard_error, flag=flag))
         if strength is not None and self.as_in_situ is not False:
             rows.append(
@@ -165,7 +183,16 @@ class TriaxialResult:
         return abs(self.sheet.axial_stress / self.in_situ_stress - 1.0) <= 0.25
 
     @property
+    def _slope_doubts(self) -> list[str]:
+        words = ["from extension, carried over by the friction angle"] if self.extension else []
+        if self.ocr is not None and self.ocr > _CRITICAL_OCR:
+            words.append(f"overconsolidated {self.ocr:.1f} times: a peak rather than critical state")
+        return words + list(self.doubts)
+
+    @property
     def _strength_flag(self) -> str:
+        if self.sheet.kind == "UU":
+            return "unconsolidated: disturbance and effective stress not known"
         if self.extension:
             return "in extension"
         return "" if self.as_in_situ else "stress in situ not known: may not stand for the strength in situ"
@@ -183,58 +210,12 @@ class TriaxialResult:
         return pd.DataFrame([_row(self)])
 
 
-def friction_angle(slope: float, *, extension: bool = False) -> float:
-    """Return the friction angle of a stress ratio at failure.
-
-    Parameters
-    ----------
-    slope : float, [-]
-        q/p' at failure, positive.
-    extension : bool
-        Whether in extension.
-
-    Returns
-    -------
-    angle : float, [rad]
-        From sin phi' = 3M/(6 + M) in compression and 3M/(6 - M) in extension.
-    """
-    return math.asin(3.0 * slope / (6.0 - slope if extension else 6.0 + slope))
-
-
-def greatest_slope(*, extension: bool) -> float:
-    """Return the stress ratio that no ground without cohesion reaches: a friction angle of 90 degrees.
-
-    Parameters
-    ----------
-    extension : bool
-        Whether in extension.
-
-    Returns
-    -------
-    slope : float, [-]
-        3 in compression, 1.5 in extension.
-    """
-    return 1.5 if extension else 3.0
-
-
-def compression_slope(angle: float) -> float:
-    """Return M in compression of a friction angle.
-
-    Parameters
-    ----------
-    angle : float, [rad]
-        Friction angle.
-
-    Returns
-    -------
-    slope : float, [-]
-        6 sin phi'/(3 - sin phi').
-    """
-    return 6.0 * math.sin(angle) / (3.0 - math.sin(angle))
-
-
 def interpreted_triaxial(
-    sheet: TriaxialSheet, in_situ_stress: float | None = None, *, failure: FailureBy = "stress ratio"
+    sheet: TriaxialSheet,
+    in_situ_stress: float | None = None,
+    *,
+    failure: FailureBy = "stress ratio",
+    ocr: float | None = None,
 ) -> TriaxialResult:
     """Interpret one triaxial test.
 
@@ -246,6 +227,8 @@ def interpreted_triaxial(
         Effective vertical stress in situ; None where not known.
     failure : str
         Definition of failure at which M is taken: ``stress ratio`` (the greatest) or ``peak deviator``.
+    ocr : float or None, [-]
+        Overconsolidation ratio at which it was sheared; None where not known.
 
     Returns
     -------
@@ -262,18 +245,22 @@ def interpreted_triaxial(
     readable = np.isfinite(sheet.deviator) & np.isfinite(sheet.axial_strain)
     reason = _unreadable(sheet, readable)
     peak = ratio = None
+    doubts: list[str] = []
     if reason:
         remarks.append(reason)
     else:
-        pushed = np.where(readable, (-1.0 if sheet.kind.endswith("E") else 1.0) * sheet.deviator, -np.inf)
-        peak = _failure(sheet, path, int(np.argmax(pushed)))
-        ratio = _greatest_ratio(sheet, path, pushed)
-        if ratio is not None and ratio.ratio >= greatest_slope(extension=sheet.kind.endswith("E")):
+        extension = sheet.kind.endswith("E")
+        pushed = np.where(readable, (-1.0 if extension else 1.0) * sheet.deviator, -np.inf)
+        peak, ratio = _failures(sheet, path, pushed)
+        if ratio and ratio.ratio and ratio.ratio.value >= greatest_slope(extension=extension):
             remarks.append("M: a stress ratio no friction gives: pore pressures or stresses are wrong")
         if readable.sum() == 1:
             remarks.append("only the state at failure is given: both definitions of failure are that one")
-        elif _still_rises(pushed[readable]):
-            remarks.append("the deviator still rises at the last reading: strength is a lower bound")
+        else:
+            remarks += _rising(sheet, pushed)
+            doubts = (
+                _rising(sheet, pushed) + _not_at_rest(sheet, path, readable) + _beyond(ratio, path, pushed)
+            )
     return TriaxialResult(
         sheet=sheet,
         mean_stress=path,
@@ -281,6 +268,8 @@ def interpreted_triaxial(
         greatest_ratio=ratio,
         failure=failure,
         in_situ_stress=in_situ_stress,
+        ocr=ocr,
+        doubts=tuple(doubts),
         remarks=tuple(remarks),
     )
 
@@ -295,8 +284,42 @@ def _unreadable(sheet: TriaxialSheet, readable: BoolArray) -> str:
     return "no deviator in the direction of the test" if pushed.max() <= _SMALL_STRESS else ""
 
 
-def _still_rises(deviator: FloatArray) -> bool:
-    return bool(deviator[-1] > (1.0 + STRENGTH_ERROR) * deviator[:-1].max())
+def _rising(sheet: TriaxialSheet, pushed: FloatArray) -> list[str]:
+    known = np.isfinite(pushed)
+    rise = late_change(np.abs(sheet.axial_strain[known]), pushed[known])
+    fell = pushed[known][-1] < pushed.max() - _TOLD
+    if fell or rise <= max(_RISE * pushed.max(), _TOLD):
+        return []
+    bound = "strength" if "U" in sheet.kind else "M"
+    return [f"the deviator still rises at the last reading: {bound} is a lower bound"]
+
+
+def _not_at_rest(sheet: TriaxialSheet, path: FloatArray, readable: BoolArray) -> list[str]:
+    """Say whether the volume, or the pore pressure in its place, still changes at the end."""
+    undrained = "U" in sheet.kind
+    reading = sheet.pore_pressure_change if undrained else sheet.volumetric_strain
+    known = readable & np.isfinite(reading) & np.isfinite(path)
+    if not known.any():
+        return []
+    strain = np.abs(sheet.axial_strain[known])
+    change = abs(late_change(strain, reading[known]))
+    if undrained:
+        moves = change > max(_PORE_CHANGE * path[known][-1], _TOLD)
+        return ["pore pressure still changes at the last reading"] if moves else []
+    # the strain of the last quarter: a rate of volume over axial strain
+    moves = change > _VOLUME_CHANGE * 0.25 * strain[-1]
+    return ["volume still changes at the last reading"] if moves else []
+
+
+def _beyond(greatest: Failure | None, path: FloatArray, pushed: FloatArray) -> list[str]:
+    """Say whether the stress ratio falls again after its greatest, by the mean of the last three readings."""
+    sound = _sound(path, pushed)
+    if greatest is None or greatest.ratio is None or sound.sum() < _LEAST_READINGS:
+        return []
+    last = float(np.mean(pushed[sound][-3:] / path[sound][-3:]))
+    fall = greatest.ratio.value - last
+    peak = fall > max(_FALL * greatest.ratio.value, 2.0 * greatest.ratio.standard_error)
+    return ["the stress ratio falls after its greatest: a peak rather than critical state"] if peak else []
 
 
 def _mean_stress(sheet: TriaxialSheet) -> tuple[FloatArray, list[str]]:
@@ -309,50 +332,43 @@ def _mean_stress(sheet: TriaxialSheet) -> tuple[FloatArray, list[str]]:
     return path, ["M: pore pressure or consolidation stress is missing"] if missing else []
 
 
-def _failure(sheet: TriaxialSheet, path: FloatArray, place: int) -> Failure:
+def _sound(path: FloatArray, pushed: FloatArray) -> BoolArray:
+    return np.isfinite(path) & np.isfinite(pushed) & (path > _SMALL_STRESS)
+
+
+def _failures(sheet: TriaxialSheet, path: FloatArray, pushed: FloatArray) -> tuple[Failure, Failure | None]:
+    """Return failure at the largest deviator and at the greatest stress ratio."""
+    sound, largest = _sound(path, pushed), int(np.argmax(pushed))
+    if not sound.any():
+        return _failure(sheet, path, largest, None), None
+    ratio = np.where(sound, pushed, -np.inf) / np.where(sound, path, 1.0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        error = np.abs(ratio) * np.hypot(PRESSURE_ERROR / pushed, PRESSURE_ERROR / path)
+    curve = smooth_ratio(np.abs(sheet.axial_strain), ratio, error, sound)
+    place = int(np.argmax(ratio)) if curve is None else int(curve.place[np.argmax(curve.ratio)])
+    return _failure(sheet, path, largest, curve), _failure(sheet, path, place, curve)
+
+
+def _failure(sheet: TriaxialSheet, path: FloatArray, place: int, curve: SmoothRatio | None) -> Failure:
+    deviator, mean_stress = float(sheet.deviator[place]), float(path[place])
+    ratio, excess = None, 0.0
+    if np.isfinite(mean_stress) and mean_stress >= _SMALL_STRESS:
+        value = abs(deviator) / mean_stress
+        relative = math.hypot(PRESSURE_ERROR / abs(deviator), PRESSURE_ERROR / mean_stress)
+        ratio = Estimate(value=value, standard_error=value * relative)
+    if curve is not None and place in curve.place:
+        at = int(np.searchsorted(curve.place, place))
+        excess = curve.excess
+        value = float(curve.ratio[at]) - excess
+        ratio = Estimate(value=value, standard_error=float(curve.standard_error[at]))
     return Failure(
         place=place,
         strain=float(sheet.axial_strain[place]),
-        deviator=float(sheet.deviator[place]),
-        mean_stress=float(path[place]),
+        deviator=deviator,
+        mean_stress=mean_stress,
+        ratio=ratio,
+        excess=excess,
     )
-
-
-def _greatest_ratio(sheet: TriaxialSheet, path: FloatArray, pushed: FloatArray) -> Failure | None:
-    sound = np.isfinite(path) & np.isfinite(pushed) & (path > _SMALL_STRESS)
-    if not sound.any():
-        return None
-    ratio = np.where(sound, pushed, -np.inf) / np.where(sound, path, 1.0)
-    return _failure(sheet, path, int(np.argmax(ratio)))
-
-
-def pooled_slope(results: tuple[TriaxialResult, ...], failure: FailureBy) -> tuple[Estimate, float] | None:
-    """Return M of several tests by regression of q on p' through the origin.
-
-    Parameters
-    ----------
-    results : tuple of TriaxialResult
-        Tests of one layer.
-    failure : str
-        Definition of failure.
-
-    Returns
-    -------
-    found : tuple of Estimate and float, or None, [-]
-        M and the coefficient of variation of a test about it; None without a test. The scatter of q is
-        taken in proportion to p', so that every test counts the same and M is the mean of q/p'. The error
-        is Student's by the scatter found, however few the tests; of one test alone by `FRICTION_SCATTER`.
-    """
-    slopes = [one.slope(one.greatest_ratio if failure == "stress ratio" else one.peak) for one in results]
-    values = np.array([one.value for one in slopes if one is not None])
-    if not values.size:
-        return None
-    mean = float(values.mean())
-    if values.size == 1:
-        return Estimate(value=mean, standard_error=FRICTION_SCATTER * mean), FRICTION_SCATTER
-    scatter = float(values.std(ddof=1))
-    error = widened(scatter / math.sqrt(values.size), values.size - 1.0)
-    return Estimate(value=mean, standard_error=error), scatter / mean
 
 
 def _row(result: TriaxialResult) -> dict[str, object]:

@@ -4,10 +4,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from probsoil.laboratory.friction import friction_angle
 from probsoil.laboratory.interpretation import Interpretation
 from probsoil.laboratory.observations import Observation
 from probsoil.laboratory.oedometer import OedometerResult
-from probsoil.laboratory.triaxial import friction_angle
 from probsoil.report.text import trimmed_text
 
 if TYPE_CHECKING:

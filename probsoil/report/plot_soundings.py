@@ -45,15 +45,16 @@ def plot_triaxial(figure: "Figure", result: TriaxialResult) -> None:
         axes[0].plot(
             [100.0 * failure.strain], [failure.deviator], marker, ms=7, color=colour, ls="", label=label
         )
-        if path and np.isfinite(failure.mean_stress):
+        if path and failure.ratio is not None:
+            ratio = np.copysign(failure.ratio.value, failure.deviator)
             reach = np.array([0.0, 1.1 * failure.mean_stress])
             axes[1].plot(
                 reach,
-                reach * failure.deviator / failure.mean_stress,
+                reach * ratio,
                 color=colour,
                 lw=1.2,
                 ls=_DASHED if marker == "s" else _DOTTED,
-                label=f"q/p' = {failure.deviator / failure.mean_stress:.3f}",
+                label=f"q/p' = {ratio:.3f}",
             )
             axes[1].plot([failure.mean_stress], [failure.deviator], marker, ms=7, color=colour, ls="")
     for axis in axes:

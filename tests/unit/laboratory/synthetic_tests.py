@@ -100,17 +100,26 @@ def time_readings(rng: np.random.Generator) -> tuple[TimeReadings, float, float]
     return TimeReadings(time=TIMES, compression=read), path, float(cv)
 
 
-def triaxials(rng: np.random.Generator, n: int) -> tuple[list[TriaxialSheet], float]:
-    """Return undrained tests on specimens of one layer and its M: specimens differ, readings err."""
+def triaxials(
+    rng: np.random.Generator, n: int, stresses: tuple[float, float] = (60.0, 200.0), shape: str = "hyperbola"
+) -> tuple[list[TriaxialSheet], float]:
+    """Return undrained tests on specimens of one layer and its M: specimens differ, readings err.
+
+    The stress ratio grows as a hyperbola, or as an exponential that is level after a third of the test.
+    """
+    grown = {
+        "hyperbola": lambda at: at / (at + 0.003) * 1.003 / 1.0 / (0.12 / (0.12 + 0.003)),
+        "exponential": lambda at: -np.expm1(-at / 0.008),
+    }[shape]
     layer = 1.0 * np.exp(0.1 * rng.standard_normal())
     strain = np.array([0, 0.25, 0.5, 1, 2, 3, 4, 6, 8, 10, 12]) / 100.0
     sheets = []
     for k in range(n):
         own = layer * np.exp(0.05 * rng.standard_normal())
-        p0 = rng.uniform(60.0, 200.0)
+        p0 = rng.uniform(*stresses)
         mobilised = strain / (strain + 0.006)
         q = 0.5 * own * p0 * 1.05 * mobilised * (1.0 - 0.5 * strain)
-        ratio = own * strain / (strain + 0.003) * (1.003 / 1.0) / ((0.12) / (0.12 + 0.003))
+        ratio = own * grown(strain)
         p = np.where(strain > 0.0, q / np.maximum(ratio, 1e-9), p0)
         u = p0 + q / 3.0 - p
         sheets.append(

@@ -8,16 +8,13 @@ import pytest
 import synthetic_tests as drawn
 
 from probsoil.laboratory.cone import CONE_FACTOR, YIELD_FACTOR, interpreted_cone
+from probsoil.laboratory.friction import compression_slope, friction_angle
 from probsoil.laboratory.ground_column import assumed_column, scenario_column
 from probsoil.laboratory.oedometer import interpreted_oedometer
+from probsoil.laboratory.pooled_friction import pooled_friction
 from probsoil.laboratory.sheets import ConeSheet, Place, TriaxialSheet, VaneSheet
 from probsoil.laboratory.strength_ratio import slopes_exponent, strength_ratio
-from probsoil.laboratory.triaxial import (
-    compression_slope,
-    friction_angle,
-    interpreted_triaxial,
-    pooled_slope,
-)
+from probsoil.laboratory.triaxial import interpreted_triaxial
 from probsoil.laboratory.vane import interpreted_vane, vane_correction
 from probsoil.scenario import parse_scenario, starter_text
 
@@ -134,13 +131,13 @@ def test_pooled_slope_is_the_mean_ratio_with_students_error() -> None:
         for q in (80.0, 90.0, 100.0)
     )
     ratios = np.array([q / ((220.0 + q - 40.0) / 3.0) for q in (80.0, 90.0, 100.0)])
-    found = pooled_slope(results, "peak deviator")
+    found = pooled_friction("clay", results, "peak deviator")
     assert found is not None
-    assert found[0].value == pytest.approx(ratios.mean())
+    assert found.slope.value == pytest.approx(ratios.mean())
     student = 2.919986  # 95 % of Student's t with two degrees of freedom
     half = student * ratios.std(ddof=1) / math.sqrt(3.0)
-    assert 1.644854 * found[0].standard_error == pytest.approx(half, rel=1e-5)
-    assert pooled_slope((), "stress ratio") is None
+    assert 1.644854 * found.slope.standard_error == pytest.approx(half, rel=1e-5)
+    assert pooled_friction("clay", (), "stress ratio") is None
 
 
 def shansep(ratio: float, exponent: float, yielding: float, consolidated: float) -> TriaxialSheet:
@@ -173,6 +170,7 @@ def test_ratio_alone_where_overconsolidation_ratios_do_not_differ() -> None:
     assert found.ratio is not None
     assert found.ratio.value == pytest.approx(0.24)
     assert "differ by a factor of 2" in found.remarks[0]
+    assert found.correlation is None
     over = [interpreted_triaxial(shansep(0.24, 0.8, 120.0, 60.0))]
     assert "no test was normally consolidated" in strength_ratio("clay", over, [], lambda _: 120.0).remarks[0]
     assert "no preconsolidation stress known" in strength_ratio("clay", over, [], None).remarks[0]
