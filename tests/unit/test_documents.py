@@ -76,6 +76,6 @@ def test_dependencies_the_program_imports_are_declared() -> None:
         for found in re.findall(r"^\s*(?:from|import) (\w+)", path.read_text(encoding="utf-8"), re.MULTILINE)
     }
     others = {"numpy", "scipy", "pandas", "matplotlib", "numba", "pydantic", "pint", "typer", "rich"}
-    others |= {"jinja2", "python_calamine", "chaospy"}
+    others |= {"jinja2", "python_calamine", "chaospy", "SALib"}
     assert names == others
     assert others <= imported

@@ -1,6 +1,7 @@
 """Drivers of any sample and any function, tables in and tables out."""
 
 import doctest
+from pathlib import Path
 
 import numpy as np
 import pandas as pd
@@ -35,6 +36,14 @@ def test_examples_of_the_documentation():
     found = doctest.testmod(module)
     assert found.attempted >= 8
     assert found.failed == 0
+
+
+def test_example_of_the_theory_page(capsys):
+    page = Path(__file__).parents[3] / "docs" / "theory" / "drivers.md"
+    exec(page.read_text(encoding="utf-8").split("```python\n")[1].split("```")[0], {})
+    printed = capsys.readouterr().out
+    assert "modulus" in printed.splitlines()[1]
+    assert "difference_low" in printed
 
 
 def test_sample_with_known_laws_is_what_the_arrays_give():

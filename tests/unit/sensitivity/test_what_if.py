@@ -13,6 +13,7 @@ from probsoil.sensitivity import (
     turning_value,
     what_if_frame,
 )
+from probsoil.sensitivity.changes import paired_difference
 
 CORRELATION = np.array(
     [[1.0, 0.6, 0.0, 0.3], [0.6, 1.0, 0.0, 0.0], [0.0, 0.0, 1.0, -0.4], [0.3, 0.0, -0.4, 1.0]]
@@ -220,3 +221,13 @@ def test_wrong_arguments():
         trials(lambda z: z[:, 0] > 0.0, CORRELATION, PARAMETERS, draws=np.zeros((5, 3)))
     with pytest.raises(ShapeError, match="correlation must have shape"):
         trials(lambda z: z[:, 0] > 0.0, np.zeros((2, 3)), ["a"], draws=np.zeros((5, 2)))
+
+
+def test_limits_of_a_difference_by_hand():
+    """Of 100, three join and one leaves: 4/102 and 2/102 with one added to each and two to all."""
+    before, after = np.zeros(100, dtype=bool), np.zeros(100, dtype=bool)
+    before[:3], after[1:6] = True, True
+    difference, (low, high) = paired_difference(before, after, 0.95)
+    assert difference == pytest.approx(0.02)
+    reach = 1.959964 * np.sqrt((6.0 / 102.0 - (2.0 / 102.0) ** 2) / 102.0)
+    assert (low, high) == pytest.approx((2.0 / 102.0 - reach, 2.0 / 102.0 + reach), rel=1e-6)
