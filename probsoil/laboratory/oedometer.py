@@ -7,11 +7,10 @@ import numpy as np
 
 from probsoil.laboratory.compression_curve import (
     Branches,
-    TwoBranchFit,
     branches,
+    evened,
     expected_scatter,
     legs_slope,
-    two_branch_fit,
 )
 from probsoil.laboratory.disturbance import Disturbance, disturbance
 from probsoil.laboratory.increments import Increment, TimeAnswers, increments, time_answers
@@ -23,6 +22,7 @@ from probsoil.laboratory.preconsolidation import (
 )
 from probsoil.laboratory.regression import Estimate
 from probsoil.laboratory.sheets import OedometerSheet
+from probsoil.laboratory.two_branches import TwoBranchFit, two_branch_fit
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -159,7 +159,7 @@ def interpreted_oedometer(sheet: OedometerSheet, in_situ_stress: float | None = 
     """
     readable = np.isfinite(sheet.stress) & np.isfinite(sheet.void_ratio)
     found = branches(np.where(readable, sheet.stress, 0.0))
-    stress, void_ratio = sheet.stress[found.first], sheet.void_ratio[found.first]
+    stress, void_ratio = evened(sheet.stress[found.first], sheet.void_ratio[found.first])
     fitted = two_branch_fit(stress, void_ratio, expected_scatter(sheet))
     remarks = []
     fit, yielding = None, None

@@ -6,8 +6,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
-from probsoil.laboratory.compression_curve import TwoBranchFit
 from probsoil.laboratory.regression import Estimate, widened
+from probsoil.laboratory.two_branches import TwoBranchFit
 
 _SHEET_SHAPE = 1.5  # width over height of the sheet of paper that the curve is drawn on
 _N_CURVE = 801
@@ -277,7 +277,7 @@ def preconsolidation_stress(
     """
     smooth = constructions(stress, fit.void_ratio(stress), initial_void_ratio)
     logs = [fit.ln_break.value] + [
-        np.log(one.stress) - np.log(known.stress) + fit.ln_break.value
+        np.log(one.stress) - np.log(known.stress) + float(fit.likeliest.at[0])
         for one, known in zip(found, smooth, strict=True)
         if one.stress is not None and known.stress is not None
     ]

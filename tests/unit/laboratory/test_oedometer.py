@@ -6,11 +6,12 @@ import numpy as np
 import pytest
 import synthetic_tests as drawn
 
-from probsoil.laboratory.compression_curve import branches, two_branch_fit
+from probsoil.laboratory.compression_curve import branches
 from probsoil.laboratory.disturbance import disturbance
 from probsoil.laboratory.oedometer import OedometerResult, interpreted_oedometer
 from probsoil.laboratory.preconsolidation import casagrande, log_log, preconsolidation_stress, work
 from probsoil.laboratory.sheets import OedometerSheet, TimeReadings
+from probsoil.laboratory.two_branches import two_branch_fit
 
 LAM, KAPPA, YIELD, E0 = 0.30, 0.03, 100.0, 1.5
 
