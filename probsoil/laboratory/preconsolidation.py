@@ -283,6 +283,6 @@ def preconsolidation_stress(
     ]
     between = 0.0
     if len(logs) > 1:
-        between = widened(float(np.std(logs, ddof=1)) / len(logs) ** 0.5, len(logs) - 1.0)
+        between = float(np.std(logs, ddof=1))
     value = float(np.exp(np.mean(logs)))
     return Estimate(value=value, standard_error=value * float(np.hypot(fit.ln_break.standard_error, between)))

@@ -9,11 +9,14 @@ from probsoil.laboratory.compression_curve import reading_place
 from probsoil.laboratory.regression import PRIOR_READINGS, Estimate, whitener, widened
 
 LEAST_INCREMENTS = 5
-FLATTENING = 0.3
+FLATTENING = 0.5
 """Standard deviation expected of the part of the virgin slope that dies out, over the slope [-]; a judgement."""
 
+BEND_SHAPE = 0.03
+"""Error of ln of the meeting stress by what the form of the bend hides [-]; a judgement."""
+
 _WIDTHS = np.array([0.01, 0.04, 0.08, 0.12, 0.16, 0.20])  # of the bend, in ln stress
-_REACHES = np.array([1.0, 2.5])  # over which the steeper part of the virgin slope dies out, in ln stress
+_REACHES = np.array([0.5, 1.0, 2.5])  # over which the steeper part of the virgin slope dies out, in ln stress
 _N_BREAK = 121
 _LEAST_GAIN = 8.0  # ratio of variances that a bend must explain
 _STRAIGHT = (
@@ -212,15 +215,16 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     steepest = float(np.max(-np.diff(void_ratio) / np.diff(x)))
     if steepest <= 0.0:
         return _STRAIGHT
-    rows = np.einsum("ij,gjk->gik", white, bends.design(x))
+    rows = white @ bends.design(x)
     known = np.zeros((rows.shape[0], 1, 4))  # what is expected of c counts as a reading of it
     known[:, :, 3] = scatter / (FLATTENING * steepest)
     factors, target = np.concatenate([rows, known], axis=1), np.append(white @ void_ratio, 0.0)
-    normal = np.linalg.inv(np.einsum("gik,gil->gkl", factors, factors))
-    coefficient = np.einsum("gkl,gil,i->gk", normal, factors, target)
-    left = ((target - np.einsum("gik,gk->gi", factors, coefficient)) ** 2).sum(axis=1)
+    turned = factors.transpose(0, 2, 1)
+    normal = np.linalg.inv(turned @ factors)
+    coefficient = (normal @ (turned @ target)[:, :, None])[:, :, 0]
+    left = ((target - (factors @ coefficient[:, :, None])[:, :, 0]) ** 2).sum(axis=1)
     turn = bends.slopes(float(x[-1]))
-    slopes = np.einsum("gkl,gl->gk", turn, coefficient)
+    slopes = (turn @ coefficient[:, :, None])[:, :, 0]
     allowed = (slopes[:, 0] > 0.0) & (slopes[:, 1:] > slopes[:, :1]).all(axis=1)
     if not allowed.any():
         return _STRAIGHT
@@ -234,14 +238,14 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     weight = np.where(allowed, (total / total[best]) ** (-0.5 * (n + PRIOR_READINGS)), 0.0)
     weight /= weight.sum()
     covariance = normal * (total / freedom)[:, None, None]
-    within = np.einsum("gkl,glm,gkm->gk", turn, covariance, turn)
+    within = ((turn @ covariance) * turn).sum(axis=2)
     found = [_averaged(weight, slopes[:, k], within[:, k], freedom) for k in range(4)]
     return TwoBranchFit(
         initial_slope=found[0],
         lam=found[1],
         first_lam=found[2],
         last_lam=found[3],
-        ln_break=_averaged(weight, bends.at, np.zeros_like(bends.at), freedom),
+        ln_break=_averaged(weight, bends.at, np.full_like(bends.at, BEND_SHAPE**2), freedom),
         likeliest=bends.chosen(best),
         coefficient=coefficient[best],
     )
