@@ -12,10 +12,7 @@ LEAST_INCREMENTS = 5
 FLATTENING = 0.5
 """Standard deviation expected of the part of the virgin slope that dies out, over the slope [-]; a judgement."""
 
-BEND_SHAPE = 0.03
-"""Error of ln of the meeting stress by what the form of the bend hides [-]; a judgement."""
-
-_WIDTHS = np.array([0.01, 0.04, 0.08, 0.12, 0.16, 0.20])  # of the bend, in ln stress
+_WIDTHS = np.array([0.01, 0.05, 0.09, 0.14, 0.20, 0.28, 0.40])  # of the bend, in ln stress
 _REACHES = np.array([0.5, 1.0, 2.5])  # over which the steeper part of the virgin slope dies out, in ln stress
 _N_BREAK = 121
 _LEAST_GAIN = 8.0  # ratio of variances that a bend must explain
@@ -219,10 +216,7 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     known = np.zeros((rows.shape[0], 1, 4))  # what is expected of c counts as a reading of it
     known[:, :, 3] = scatter / (FLATTENING * steepest)
     factors, target = np.concatenate([rows, known], axis=1), np.append(white @ void_ratio, 0.0)
-    turned = factors.transpose(0, 2, 1)
-    normal = np.linalg.inv(turned @ factors)
-    coefficient = (normal @ (turned @ target)[:, :, None])[:, :, 0]
-    left = ((target - (factors @ coefficient[:, :, None])[:, :, 0]) ** 2).sum(axis=1)
+    coefficient, normal, left = _flattening_fits(factors, target)
     turn = bends.slopes(float(x[-1]))
     slopes = (turn @ coefficient[:, :, None])[:, :, 0]
     allowed = (slopes[:, 0] > 0.0) & (slopes[:, 1:] > slopes[:, :1]).all(axis=1)
@@ -245,10 +239,25 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
         lam=found[1],
         first_lam=found[2],
         last_lam=found[3],
-        ln_break=_averaged(weight, bends.at, np.full_like(bends.at, BEND_SHAPE**2), freedom),
+        ln_break=_averaged(weight, bends.at, np.zeros_like(bends.at), freedom),
         likeliest=bends.chosen(best),
         coefficient=coefficient[best],
     )
+
+
+def _flattening_fits(factors: FloatArray, target: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Return coefficients, their covariance per variance and the squares left, the last coefficient not below 0."""
+    turned = factors.transpose(0, 2, 1)
+    normal = np.linalg.inv(turned @ factors)
+    coefficient = (normal @ (turned @ target)[:, :, None])[:, :, 0]
+    # held at nothing where it came out below: the least squares under that condition
+    excess = np.minimum(coefficient[:, 3], 0.0)
+    along = normal[:, :, 3] / normal[:, 3, 3][:, None]
+    held = (excess < 0.0)[:, None, None]
+    coefficient = coefficient - excess[:, None] * along
+    normal = normal - np.where(held, along[:, :, None] * normal[:, None, :, 3], 0.0)
+    left = ((target - (factors @ coefficient[:, :, None])[:, :, 0]) ** 2).sum(axis=1)
+    return coefficient, normal, left
 
 
 def _tried(low: float, high: float) -> Bends:
