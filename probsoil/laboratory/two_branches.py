@@ -12,6 +12,9 @@ LEAST_INCREMENTS = 5
 FLATTENING = 0.5
 """Standard deviation expected of the part of the virgin slope that dies out, over the slope [-]; a judgement."""
 
+FLATTENS = 0.5
+"""Probability expected beforehand that a virgin branch flattens [-]; a judgement."""
+
 _WIDTHS = np.array([0.01, 0.05, 0.09, 0.14, 0.20, 0.28, 0.40])  # of the bend, in ln stress
 _STRAIGHT_VIRGIN = 1e-9  # a reach of nothing: no part of the slope dies out
 _REACHES = np.array([_STRAIGHT_VIRGIN, 0.5, 1.0, 2.5])  # over which a part of the slope dies out, in ln stress
@@ -231,7 +234,7 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     if refused:
         return refused
     weight = np.where(allowed, (total / total[best]) ** (-0.5 * (n + PRIOR_READINGS)), 0.0)
-    weight *= np.where(bends.reach > _STRAIGHT_VIRGIN, 1.0 / (_REACHES.size - 1), 1.0)
+    weight *= np.where(bends.reach > _STRAIGHT_VIRGIN, FLATTENS / (_REACHES.size - 1), 1.0 - FLATTENS)
     weight *= np.sqrt(normal[:, 3, 3]) * known[:, 0, 3]  # of what was expected of c, the share that is left
     weight /= weight.sum()
     covariance = normal * (total / freedom)[:, None, None]
