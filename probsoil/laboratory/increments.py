@@ -39,7 +39,8 @@ class Increment:
     mv : float, [m2/kN]
         Coefficient of volume compressibility.
     virgin : bool
-        Whether it lies wholly on the virgin branch.
+        Whether it lies wholly on the virgin branch: from the preconsolidation stress on, and from the
+        greatest stress so far.
     curve : TimeCurve
         Its compression against time, interpreted.
     k : float or None, [m/s]
@@ -118,6 +119,8 @@ def _increment(
     from_stress = float(sheet.stress[place - 1] if place else 0.0)
     end, to_stress = float(sheet.void_ratio[place]), float(sheet.stress[place])
     middle = 0.5 * (start + end)
+    loaded = sheet.stress[:place]
+    greatest = float(np.max(loaded[np.isfinite(loaded)], initial=0.0))
     solids = sheet.initial_height / (1.0 + sheet.initial_void_ratio)
     curve = time_curve(readings, solids * (1.0 + middle) / (2.0 if sheet.two_way else 1.0))
     mv = (start - end) / ((1.0 + start) * (to_stress - from_stress))
@@ -131,7 +134,7 @@ def _increment(
         to_stress=to_stress,
         void_ratio=middle,
         mv=mv,
-        virgin=virgin_from is not None and from_stress >= virgin_from,
+        virgin=virgin_from is not None and from_stress >= max(virgin_from, greatest),
         curve=curve,
         k=k,
         creep_index=None
@@ -191,7 +194,10 @@ def _permeability(
         carried = float(np.log(10.0) * (void_ratio - at.mean()) / ck * CK_ERROR)
         value = float(np.exp(mean))
         error = float(np.sqrt(own**2 + between**2 + carried**2))
-        reason = f"k: only {len(known)} virgin, so carried to the initial void ratio by ck = 0.5 e0"
+        reason = (
+            f"k: only {len(known)} virgin {'increment' if len(known) == 1 else 'increments'}, so carried to the "
+            "initial void ratio by ck = 0.5 e0"
+        )
         return Estimate(value=value, standard_error=value * error), None, reason
     fit = line(at, logs, INCREMENT_SPREAD)
     slope = float(fit.coefficient[1])

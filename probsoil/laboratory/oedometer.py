@@ -7,28 +7,32 @@ import numpy as np
 
 from probsoil.laboratory.compression_curve import (
     Branches,
-    TwoBranchFit,
     branches,
+    evened,
     expected_scatter,
     legs_slope,
-    two_branch_fit,
 )
 from probsoil.laboratory.disturbance import Disturbance, disturbance
 from probsoil.laboratory.increments import Increment, TimeAnswers, increments, time_answers
 from probsoil.laboratory.observations import Observation, observation
 from probsoil.laboratory.preconsolidation import (
     Construction,
+    carried_to_meeting,
     constructions,
     preconsolidation_stress,
 )
 from probsoil.laboratory.regression import Estimate
 from probsoil.laboratory.sheets import OedometerSheet
+from probsoil.laboratory.two_branches import TwoBranchFit, two_branch_fit
 
 if TYPE_CHECKING:
     import pandas as pd
 
 VOID_RATIO_ERROR = 0.01
 """Standard error of the initial specific volume over itself [-]: weighing and trimming; a judgement."""
+
+ANSWER = "meeting of the branches, constructions carried to it"
+"""What the preconsolidation stress given is."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -50,7 +54,9 @@ class OedometerResult:
     constructions : tuple of Construction
         Of the preconsolidation stress.
     preconsolidation : Estimate or None, [kPa]
-        One answer from all methods.
+        Where the branches meet, constructions carried to it.
+    carried : dict of str to float, [kPa]
+        Each construction carried to where the branches meet.
     in_situ_stress : float or None, [kPa]
         Effective vertical stress in situ.
     disturbance : Disturbance or None
@@ -71,6 +77,7 @@ class OedometerResult:
     kappa_from: str
     constructions: tuple[Construction, ...]
     preconsolidation: Estimate | None
+    carried: dict[str, float]
     in_situ_stress: float | None
     disturbance: Disturbance | None
     increments: tuple[Increment, ...]
@@ -159,18 +166,20 @@ def interpreted_oedometer(sheet: OedometerSheet, in_situ_stress: float | None = 
     """
     readable = np.isfinite(sheet.stress) & np.isfinite(sheet.void_ratio)
     found = branches(np.where(readable, sheet.stress, 0.0))
-    stress, void_ratio = sheet.stress[found.first], sheet.void_ratio[found.first]
+    stress, void_ratio = evened(sheet.stress[found.first], sheet.void_ratio[found.first])
     fitted = two_branch_fit(stress, void_ratio, expected_scatter(sheet))
     remarks = []
     fit, yielding = None, None
     drawn: tuple[Construction, ...] = ()
+    carried: dict[str, float] = {}
     if isinstance(fitted, str):
         remarks.append(f"lambda and preconsolidation stress: {fitted}")
     else:
         fit = fitted
         drawn = constructions(stress, void_ratio, sheet.initial_void_ratio)
         remarks += [f"{one.method}: {one.reason}" for one in drawn if one.stress is None]
-        yielding = preconsolidation_stress(fit, drawn, stress, sheet.initial_void_ratio)
+        carried = carried_to_meeting(fit, drawn, stress, sheet.initial_void_ratio)
+        yielding = preconsolidation_stress(fit, carried)
     loop, rebound, why = _unloading(sheet, found)
     remarks += why
     made = increments(sheet, found, None if yielding is None else yielding.value)
@@ -189,6 +198,7 @@ def interpreted_oedometer(sheet: OedometerSheet, in_situ_stress: float | None = 
         kappa_from=_chosen(loop, rebound, fit),
         constructions=drawn,
         preconsolidation=yielding,
+        carried=carried,
         in_situ_stress=in_situ_stress,
         disturbance=_disturbance(sheet, found, in_situ_stress, yielding),
         increments=made,
@@ -229,17 +239,28 @@ def _disturbance(
 
 def _rows(result: OedometerResult) -> list[dict[str, object]]:
     estimates: list[tuple[str, str, Estimate | None, str]] = [
-        ("lambda", "two branches", result.lam, "-"),
+        ("lambda", "two branches, mean of the virgin branch", result.lam, "-"),
+        ("lambda", "two branches, just beyond yield", None if result.fit is None else result.fit.first_lam, "-"),
+        ("lambda", "two branches, at the last load", None if result.fit is None else result.fit.last_lam, "-"),
         ("kappa", "loop", result.kappa_loop, "-"),
         ("kappa", "rebound", result.kappa_rebound, "-"),
         ("kappa", "initial branch", result.kappa_initial, "-"),
-        ("preconsolidation stress", "all methods", result.preconsolidation, "kPa"),
+        ("preconsolidation stress", ANSWER, result.preconsolidation, "kPa"),
         ("preconsolidation stress", "two branches", _break(result.fit), "kPa"),
     ]
     estimates += [
         ("preconsolidation stress", one.method, Estimate(value=one.stress, standard_error=np.nan), "kPa")
         for one in result.constructions
         if one.stress is not None
+    ]
+    estimates += [
+        (
+            "preconsolidation stress",
+            f"{method}, carried to where the branches meet",
+            Estimate(value=stress, standard_error=np.nan),
+            "kPa",
+        )
+        for method, stress in result.carried.items()
     ]
     time = result.time
     estimates += [

@@ -6,8 +6,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray
-from probsoil.laboratory.compression_curve import TwoBranchFit
-from probsoil.laboratory.regression import Estimate, widened
+from probsoil.laboratory.regression import Estimate
+from probsoil.laboratory.two_branches import TwoBranchFit
 
 _SHEET_SHAPE = 1.5  # width over height of the sheet of paper that the curve is drawn on
 _N_CURVE = 801
@@ -252,17 +252,17 @@ def constructions(
     )
 
 
-def preconsolidation_stress(
+def carried_to_meeting(
     fit: TwoBranchFit, found: tuple[Construction, ...], stress: FloatArray, initial_void_ratio: float
-) -> Estimate:
-    """Return one preconsolidation stress from the fit and the constructions.
+) -> dict[str, float]:
+    """Return each construction rid of what it is known to miss the meeting of the branches by.
 
     Parameters
     ----------
     fit : TwoBranchFit
         Two branches by least squares.
     found : tuple of Construction
-        Others; those without a value are left aside.
+        Those without a value are left aside.
     stress : ndarray, shape (n,), [kPa]
         Of first loading, rising.
     initial_void_ratio : float, [-]
@@ -270,19 +270,36 @@ def preconsolidation_stress(
 
     Returns
     -------
-    estimate : Estimate, [kPa]
-        Where the two branches meet: geometric mean of all methods, each first rid of what it is known to
-        miss by on the fitted curve with the same increments. The error joins that of the fit, which the
-        readings give and all methods share, with that of the mean of methods that still differ.
+    carried : dict of str to float, [kPa]
+        By method: as drawn, times the meeting over what the same construction gives on the fitted curve.
     """
     smooth = constructions(stress, fit.void_ratio(stress), initial_void_ratio)
-    logs = [fit.ln_break.value] + [
-        np.log(one.stress) - np.log(known.stress) + fit.ln_break.value
+    meeting = float(np.exp(fit.ln_break.value))
+    return {
+        one.method: one.stress / known.stress * meeting
         for one, known in zip(found, smooth, strict=True)
         if one.stress is not None and known.stress is not None
-    ]
-    between = 0.0
-    if len(logs) > 1:
-        between = widened(float(np.std(logs, ddof=1)) / len(logs) ** 0.5, len(logs) - 1.0)
+    }
+
+
+def preconsolidation_stress(fit: TwoBranchFit, carried: dict[str, float]) -> Estimate:
+    """Return one preconsolidation stress from the fit and the constructions.
+
+    Parameters
+    ----------
+    fit : TwoBranchFit
+        Two branches by least squares.
+    carried : dict of str to float, [kPa]
+        Constructions carried to the meeting of the branches.
+
+    Returns
+    -------
+    estimate : Estimate, [kPa]
+        Where the two branches meet: geometric mean of all methods. The error joins that of the fit, which
+        the readings give and all methods share, with the standard deviation between methods; not that of
+        their mean, since all are made from the same readings.
+    """
+    logs = [fit.ln_break.value, *np.log(list(carried.values()))]
+    between = float(np.std(logs, ddof=1)) if carried else 0.0
     value = float(np.exp(np.mean(logs)))
     return Estimate(value=value, standard_error=value * float(np.hypot(fit.ln_break.standard_error, between)))

@@ -94,22 +94,21 @@ def widened(standard_deviation: float, freedom: float) -> float:
     return float(standard_deviation * stdtrit(freedom, _CONFIDENCE) / ndtri(_CONFIDENCE))
 
 
-def whitener(n: int, correlation: float = READING_CORRELATION) -> FloatArray:
+def whitener(place: FloatArray, correlation: float = READING_CORRELATION) -> FloatArray:
     """Return what turns readings with correlated errors into independent ones.
 
     Parameters
     ----------
-    n : int, [-]
-        Number of readings in order.
+    place : ndarray, shape (n,), [-]
+        Of the readings, rising; neighbours lie one apart.
     correlation : float, [-]
-        Between neighbours; it falls off geometrically.
+        Between neighbours; it falls off geometrically with distance.
 
     Returns
     -------
     matrix : ndarray, shape (n, n), [-]
         To multiply readings and design with.
     """
-    place = np.arange(n)
     matrix = correlation ** np.abs(place[:, None] - place[None, :])
     return np.asarray(np.linalg.inv(np.linalg.cholesky(matrix)), dtype=np.float64)
 
@@ -120,6 +119,7 @@ def regression(
     expected_scatter: float,
     *,
     correlation: float = READING_CORRELATION,
+    place: FloatArray | None = None,
 ) -> Regression:
     """Fit a linear law to readings whose scatter is roughly known beforehand.
 
@@ -133,6 +133,8 @@ def regression(
         Standard deviation expected beforehand.
     correlation : float, [-]
         Of the errors of neighbours.
+    place : ndarray, shape (n,), or None, [-]
+        Of the readings, neighbours one apart; None for 0, 1, 2 and so on.
 
     Returns
     -------
@@ -141,7 +143,7 @@ def regression(
         as `PRIOR_READINGS`, and the one found.
     """
     n, n_coefficient = design.shape
-    white = whitener(n, correlation)
+    white = whitener(np.arange(float(n)) if place is None else place, correlation)
     factors, target = white @ design, white @ reading
     normal = np.linalg.inv(factors.T @ factors)
     coefficient = normal @ (factors.T @ target)

@@ -86,6 +86,7 @@ def _summary_row(result: OedometerResult) -> dict[str, object]:
     by_method = {one.method: one.stress for one in result.constructions}
     pressure = [("two branches", None if result.fit is None else float(np.exp(result.fit.ln_break.value)))]
     pressure += list(by_method.items())
+    pressure += [(f"{name}, carried", stress) for name, stress in result.carried.items()]
     row: dict[str, object] = {"test": result.sheet.test, "depth [m]": result.sheet.place.depth}
     for name, unit, found in (
         ("lambda", "-", result.lam),

@@ -68,7 +68,7 @@ def _curve(axis: "Axes", result: OedometerResult) -> None:
     if result.preconsolidation is not None:
         stress, error = result.preconsolidation.value, 1.645 * result.preconsolidation.standard_error
         axis.axvspan(stress - error, stress + error, color=LIGHT["haze"], lw=0, zorder=0)
-        axis.axvline(stress, color=LIGHT["main"], lw=1.3, label=f"all methods, {stress:.0f} kPa")
+        axis.axvline(stress, color=LIGHT["main"], lw=1.3, label=f"where the branches meet, {stress:.0f} kPa")
     if result.in_situ_stress is not None:
         axis.axvline(
             result.in_situ_stress, color=LIGHT["ink"], lw=1.3, ls=_DOTTED,

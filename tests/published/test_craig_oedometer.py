@@ -7,10 +7,10 @@ reads its answers off drawings, so they are held to a tenth; what it computes, t
 import numpy as np
 import pytest
 
-from probsoil.laboratory.compression_curve import TwoBranchFit, two_branch_fit
 from probsoil.laboratory.preconsolidation import casagrande, log_log, work
 from probsoil.laboratory.sheets import TimeReadings
 from probsoil.laboratory.time_curve import LOG_TIME_FACTOR, MM2_PER_MINUTE, ROOT_TIME_FACTOR, time_curve
+from probsoil.laboratory.two_branches import TwoBranchFit, two_branch_fit
 
 STRESS = np.array([54.0, 107.0, 214.0, 429.0, 858.0, 1716.0, 3432.0])
 GAUGE = np.array([4.747, 4.493, 4.108, 3.449, 2.608, 1.676, 0.737])  # mm, 5.000 before, 1.480 after

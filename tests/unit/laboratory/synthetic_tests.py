@@ -7,6 +7,7 @@ scatter that the sheet does not tell of, correlated from one increment to the ne
 from dataclasses import dataclass, replace
 
 import numpy as np
+from compression_laws import Branches, first_loading, mean_slope
 
 from probsoil.laboratory.sheets import (
     ConeSheet,
@@ -36,27 +37,29 @@ class Clay:
     yield_stress: float
 
 
-def oedometer(rng: np.random.Generator) -> tuple[OedometerSheet, Clay]:
+SHORT = np.array([12.5, 25, 50, 100, 200, 400, 800], dtype=float)
+SMALL_STEPS = np.array([10, 20, 30, 45, 65, 90, 130, 190, 280, 400, 600, 900, 300, 75], dtype=float)
+
+
+def oedometer(
+    rng: np.random.Generator, law: str = "straight", stresses: np.ndarray = STRESSES
+) -> tuple[OedometerSheet, Clay]:
     e0 = rng.normal(1.4, 0.15)
     lam = 0.30 * np.exp(0.2 * rng.standard_normal())
     kappa = lam * rng.uniform(0.08, 0.20)
     initial = kappa * rng.uniform(1.0, 1.6)
     yielding = 80.0 * np.exp(0.3 * rng.standard_normal())
     width = rng.uniform(0.05, 0.15)
-    x = np.log(STRESSES)
-
-    def first(at: np.ndarray) -> np.ndarray:
-        return -initial * at - (lam - initial) * width * np.logaddexp(0.0, (at - np.log(yielding)) / width)
-
-    void_ratio = first(x)
-    for start, inside in ((5, slice(6, 12)), (13, slice(14, 17))):
-        top, legs = x[start], x[inside]
-        rounded = (lam - kappa) * width * np.logaddexp(0.0, (legs - top) / width)
-        unloading = np.arange(inside.start, inside.stop) <= 8
-        if start == 13:
-            unloading = np.ones(3, dtype=bool)
-        void_ratio[inside] = first(top) - kappa * (legs - top) - np.where(unloading, 0.0, rounded)
-    void_ratio = e0 + void_ratio - first(np.log(1.0))
+    x = np.log(stresses)
+    made = Branches(initial=initial, lam=lam, meeting=np.log(yielding), void_ratio=e0)
+    shape = np.random.default_rng(int(1e9 * width))  # leaves the stream of the straight law as it was
+    first, branches = first_loading(law, made, shape, width)
+    greatest = np.maximum.accumulate(x)
+    void_ratio = first(greatest) - kappa * (x - greatest)
+    before = np.concatenate([[-np.inf], greatest[:-1]])
+    reloading = (x <= before) & (np.diff(x, prepend=np.inf) > 0.0)
+    rounded = (lam - kappa) * width * np.logaddexp(0.0, (x - greatest) / width)
+    void_ratio = e0 + void_ratio - np.where(reloading, rounded, 0.0) - first(np.array(0.0))
     noise = rng.standard_normal(x.size)
     for k in range(1, x.size):
         noise[k] = SCATTER_CORRELATION * noise[k - 1] + np.sqrt(1.0 - SCATTER_CORRELATION**2) * noise[k]
@@ -67,12 +70,13 @@ def oedometer(rng: np.random.Generator) -> tuple[OedometerSheet, Clay]:
         origin=ORIGIN,
         initial_void_ratio=e0,
         initial_height=20.0,
-        stress=STRESSES,
+        stress=stresses,
         void_ratio=read,
         reading_sd=READING_SD,
         reported_cv=np.full(x.size, np.nan),
     )
-    return sheet, Clay(lam=lam, kappa=kappa, yield_stress=yielding)
+    mean = mean_slope(branches, made.meeting, float(x.max()))
+    return sheet, Clay(lam=mean, kappa=kappa, yield_stress=yielding)
 
 
 TIMES = np.array([0.0, 0.1, 0.25, 0.5, 1, 2, 4, 8, 15, 30, 60, 120, 240, 480, 1440])

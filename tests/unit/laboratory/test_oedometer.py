@@ -6,11 +6,18 @@ import numpy as np
 import pytest
 import synthetic_tests as drawn
 
-from probsoil.laboratory.compression_curve import branches, two_branch_fit
+from probsoil.laboratory.compression_curve import branches
 from probsoil.laboratory.disturbance import disturbance
 from probsoil.laboratory.oedometer import OedometerResult, interpreted_oedometer
-from probsoil.laboratory.preconsolidation import casagrande, log_log, preconsolidation_stress, work
+from probsoil.laboratory.preconsolidation import (
+    carried_to_meeting,
+    casagrande,
+    log_log,
+    preconsolidation_stress,
+    work,
+)
 from probsoil.laboratory.sheets import OedometerSheet, TimeReadings
+from probsoil.laboratory.two_branches import two_branch_fit
 
 LAM, KAPPA, YIELD, E0 = 0.30, 0.03, 100.0, 1.5
 
@@ -285,7 +292,9 @@ def test_fit_stands_where_no_construction_does() -> None:
     fit = two_branch_fit(np.array(LOADS), curve(np.array(LOADS)), 0.003)
     assert not isinstance(fit, str)
     nothing = casagrande(np.array(LOADS), 1.4 - np.array([0.0, 0.3, 0.5, 0.62, 0.70, 0.75, 0.78]))
-    found = preconsolidation_stress(fit, (nothing, nothing, nothing), np.array(LOADS), E0)
+    carried = carried_to_meeting(fit, (nothing, nothing, nothing), np.array(LOADS), E0)
+    assert carried == {}
+    found = preconsolidation_stress(fit, carried)
     assert found.value == pytest.approx(np.exp(fit.ln_break.value))
     assert found.relative_error == pytest.approx(fit.ln_break.standard_error)
 
