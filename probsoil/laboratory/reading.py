@@ -9,6 +9,7 @@ from probsoil.laboratory.ags_tables import read_ags
 from probsoil.laboratory.assembling import site_sheets
 from probsoil.laboratory.checks import check_tests
 from probsoil.laboratory.collection import Collection
+from probsoil.laboratory.consistency import check_related_columns
 from probsoil.laboratory.layout import LAYOUTS, layout_of
 from probsoil.laboratory.relations import check_relations
 from probsoil.laboratory.sheets import SiteSheets
@@ -52,6 +53,7 @@ def read_sheets(paths: SOME_PATHS, *, keep_good_rows: bool = False) -> SiteSheet
         table.finish()
     check_relations(collection)
     check_tests(collection)
+    check_related_columns(collection)
     faults = _all_faults(collection)
     if (faults and not keep_good_rows) or collection.fatal:
         raise SheetError(faults)
