@@ -20,6 +20,7 @@ USUAL_WEIGHT = 3.0
 """Number of tests [-] that it counts for."""
 _USUAL_M = 1.0  # phi' of 25 degrees, where no triaxial test tells; barely felt by an oedometer
 _UNKNOWN_M = 0.15
+_NONE = np.zeros(0)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -43,10 +44,15 @@ class SiteBackChecks:
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class _Layer:
-    """Logarithms of what the tests of one layer gave, one row per oedometer and one number per triaxial."""
+    """Logarithms of what the tests of one layer gave, one row per oedometer and one number per triaxial.
+
+    Not a number where a test did not give it, or gave it with a flag.
+    """
 
     name: str
+    oedometers: tuple[str, ...]
     compression: FloatArray
+    triaxials: tuple[str, ...]
     friction: FloatArray
     void_ratio: float | None
     relative: bool  # whether preconsolidation stresses are those over the stress in situ
@@ -60,7 +66,8 @@ def site_back_checks(
     Parameters
     ----------
     interpretation : Interpretation
-        The tests and what they gave; flagged numbers are left out of the parameters.
+        The tests and what they gave; flagged numbers are left out of the parameters, and so is the specimen
+        checked, where others of its layer are left to tell them; the source of the parameters says which.
     options : BackCheckOptions or None
         How to run them; None for the usual.
 
@@ -77,12 +84,14 @@ def site_back_checks(
         name: _layer(name, [one for one, at in zip(results, names, strict=True) if at == name], doubtful)
         for name in dict.fromkeys(names)
     }
-    everywhere = np.concatenate([np.zeros(0), *(layer.friction for layer in layers.values())])
     checks, of, remarks = [], [], []
     for number, (one, name) in enumerate(zip(results, names, strict=True)):
         layer = layers[name]
         try:
-            parameters = _parameters(layer, everywhere, _stress(layer, one, column))
+            elsewhere = np.concatenate(
+                [_NONE, *(other.friction for other in layers.values() if other is not layer)]
+            )
+            parameters = _parameters(layer, one.sheet.test, elsewhere, _stress(layer, one, column))
             done = back_check(
                 one.sheet, parameters, void_ratio=layer.void_ratio, options=options, number=number
             )
@@ -120,8 +129,10 @@ def _layer(
     void_ratios = [one.sheet.initial_void_ratio for one in oedometers]
     return _Layer(
         name=name,
+        oedometers=tuple(one.sheet.test for one in oedometers),
         compression=np.array(rows).reshape(-1, 3),
-        friction=friction[np.isfinite(friction)],
+        triaxials=tuple(one.sheet.test for one in triaxials),
+        friction=friction,
         void_ratio=float(np.mean(void_ratios)) if void_ratios else None,
         relative=relative,
     )
@@ -132,30 +143,58 @@ def _log(test: str, parameter: str, found: Estimate | None, doubtful: set[tuple[
     return float(np.log(found.value)) if usable and found is not None else float("nan")
 
 
-def _parameters(layer: _Layer, everywhere: FloatArray, stress: float) -> SpecimenParameters:
+def _parameters(layer: _Layer, test: str, elsewhere: FloatArray, stress: float) -> SpecimenParameters:
     """Parameters of another specimen of the layer: mean of the tests, their scatter judged with the usual."""
-    counts = np.isfinite(layer.compression).sum(axis=0)
-    if not counts.all():
+    if not np.isfinite(layer.compression).any(axis=0).all():
         raise ParameterError(
             f"no oedometer test of {layer.name or 'the same ground'} gives lambda, kappa and "
             "preconsolidation stress without doubt"
         )
-    friction = layer.friction if layer.friction.size else everywhere
-    columns = [layer.compression[:, 0], layer.compression[:, 1], friction, layer.compression[:, 2]]
+    compression, oedometers = _others(layer.compression, layer.oedometers, test, "oedometer")
+    friction, friction_of = _friction(layer, test, elsewhere)
+    columns = [compression[:, 0], compression[:, 1], friction, compression[:, 2]]
     known = [column[np.isfinite(column)] for column in columns]
     usual = USUAL_SCATTER.copy()
-    if not friction.size:
+    if not known[2].size:
         known[2], usual[2] = np.array([np.log(_USUAL_M)]), _UNKNOWN_M
     log_mean = np.array([column.mean() for column in known])
     log_sd = np.array([_scatter(column, one) for column, one in zip(known, usual, strict=True)])
     log_mean[3] += np.log(stress)
-    tests = f"{counts.max()} oedometer and {friction.size} triaxial tests"
     return SpecimenParameters(
         log_mean=log_mean,
         log_sd=log_sd,
-        correlation=_correlation(layer.compression),
-        source=f"{layer.name or 'all ground'}: {tests}",
+        correlation=_correlation(compression),
+        source=f"{layer.name or 'all ground'}: {oedometers}; {friction_of}",
     )
+
+
+def _friction(layer: _Layer, test: str, elsewhere: FloatArray) -> tuple[FloatArray, str]:
+    """Return M of the layer's other tests, and in words where it is from."""
+    if np.isfinite(layer.friction).any():
+        found, words = _others(layer.friction[:, None], layer.triaxials, test, "triaxial")
+        return found[:, 0], f"M of {words}"
+    number = int(np.isfinite(elsewhere).sum())
+    if number:
+        return elsewhere, f"M of {_counted(number, 'triaxial')} of other ground, for want of one here"
+    return elsewhere, f"M taken as {_USUAL_M:.1f}, no triaxial test tells it"
+
+
+def _others(values: FloatArray, tests: tuple[str, ...], test: str, kind: str) -> tuple[FloatArray, str]:
+    """Leave a test out where the others tell every column; return what is used, and whose it is in words."""
+    known = np.isfinite(values)
+    own = np.array([name == test for name in tests])
+    used = int(known.any(axis=1).sum())
+    if not known[own].any():
+        return values, _counted(used, kind)
+    others = values[~own]
+    if not known[~own].any(axis=0).all():
+        among = "the one checked itself" if used == 1 else "the one checked among them, as it alone tells all"
+        return values, f"{_counted(used, kind)}, {among}"
+    return others, f"{_counted(used - 1, kind)}, the one checked left out"
+
+
+def _counted(number: int, kind: str) -> str:
+    return f"{number} {kind} test{'' if number == 1 else 's'}"
 
 
 def _scatter(values: FloatArray, usual: float) -> float:

@@ -24,6 +24,7 @@ from probsoil.laboratory.sheets import (
 )
 from probsoil.laboratory.strength_ratio import StrengthRatio, strength_ratio
 from probsoil.laboratory.triaxial import FailureBy, TriaxialResult, interpreted_triaxial
+from probsoil.laboratory.usual_values import unusual_flagged
 from probsoil.laboratory.vane import VaneResult, interpreted_vane
 from probsoil.laboratory.yield_profile import YieldProfile, yield_profile
 
@@ -208,7 +209,7 @@ def interpreted_site(
         cones=cones,
         friction=_friction(layers),
         strength_ratios=ratios,
-        observations=flagged(_told_where(of_clay, column), grounds),
+        observations=flagged(unusual_flagged(_told_where(of_clay, column)), grounds),
         remarks=(*sheets.remarks, *_remarks(results, ratios), *aside),
     )
 

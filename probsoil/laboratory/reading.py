@@ -9,11 +9,12 @@ from probsoil.laboratory.ags_tables import read_ags
 from probsoil.laboratory.assembling import site_sheets
 from probsoil.laboratory.checks import check_tests
 from probsoil.laboratory.collection import Collection
+from probsoil.laboratory.consistency import check_related_columns
 from probsoil.laboratory.layout import LAYOUTS, layout_of
 from probsoil.laboratory.relations import check_relations
 from probsoil.laboratory.sheets import SiteSheets
 from probsoil.laboratory.table_files import read_rows
-from probsoil.laboratory.text_files import csv_rows
+from probsoil.laboratory.text_files import csv_rows, has_decimal_commas
 from probsoil.laboratory.workbooks import read_workbook
 
 TEXT_TABLES = (".csv", ".txt", ".tsv")
@@ -52,6 +53,7 @@ def read_sheets(paths: SOME_PATHS, *, keep_good_rows: bool = False) -> SiteSheet
         table.finish()
     check_relations(collection)
     check_tests(collection)
+    check_related_columns(collection)
     faults = _all_faults(collection)
     if (faults and not keep_good_rows) or collection.fatal:
         raise SheetError(faults)
@@ -106,7 +108,10 @@ def _read_file(collection: Collection, path: Path) -> None:
     elif layout is None:
         collection.unreadable(file, "the name of the file does not tell which table it is", _names_hint())
     else:
-        read_rows(collection, layout, file, csv_rows(collection, path, file))
+        commas = has_decimal_commas(path)
+        if commas:
+            collection.remark(f"{file}: commas in numbers are read as decimal points")
+        read_rows(collection, layout, file, csv_rows(collection, path, file), decimal_commas=commas)
 
 
 def _names_hint() -> str:

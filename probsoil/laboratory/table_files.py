@@ -13,7 +13,12 @@ COMMENT = "#"
 
 
 def read_rows(
-    collection: Collection, layout: TableLayout, file: str, rows: Iterable[tuple[int, Sequence[Cell]]]
+    collection: Collection,
+    layout: TableLayout,
+    file: str,
+    rows: Iterable[tuple[int, Sequence[Cell]]],
+    *,
+    decimal_commas: bool = False,
 ) -> None:
     """Read one table: the first row that is neither empty nor a comment holds the headings.
 
@@ -27,7 +32,10 @@ def read_rows(
         As the user named it.
     rows : iterable of tuple
         Place of each row, counted from 1, and its cells.
+    decimal_commas : bool
+        Whether a comma in a number is its decimal sign.
     """
+    pointed = {column.name for column in layout.columns if decimal_commas and not column.is_text}
     reader: RowReader | None = None
     headings: dict[str, Heading] = {}
     for row, cells in rows:
@@ -42,7 +50,13 @@ def read_rows(
             headings = source.headings
             continue
         try:
-            reader.take(row, {name: (_cell(cells, under), under) for name, under in headings.items()})
+            reader.take(
+                row,
+                {
+                    name: (_cell(cells, under, commas=name in pointed), under)
+                    for name, under in headings.items()
+                },
+            )
         except TooManyRowsError as full:
             collection.fault(full_table(file, full))
             return
@@ -77,9 +91,11 @@ def full_table(file: str, full: TooManyRowsError) -> Fault:
     )
 
 
-def _cell(cells: Sequence[Cell], heading: Heading) -> Cell:
+def _cell(cells: Sequence[Cell], heading: Heading, *, commas: bool) -> Cell:
     cell = cells[heading.position - 1] if heading.position <= len(cells) else None
-    return cell.strip() if isinstance(cell, str) else cell
+    if not isinstance(cell, str):
+        return cell
+    return cell.strip().replace(",", ".") if commas else cell.strip()
 
 
 def _is_idle(cells: Sequence[Cell]) -> bool:

@@ -56,6 +56,7 @@ def template_rows(layout: TableLayout) -> list[tuple[str | float, ...]]:
     rows: list[tuple[str | float, ...]] = [
         (f"# {layout.name}: {layout.meaning}.",),
         ("# Rows that begin with # are not read. The unit in a heading may be any of the same kind.",),
+        (f'# Rows that begin with "{EXAMPLE}" are examples; to use one, take that away with its #.',),
         *((f"# {column.heading}: {explanation(column)}",) for column in layout.columns),
         tuple(column.heading for column in layout.columns),
     ]

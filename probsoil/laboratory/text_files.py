@@ -5,6 +5,7 @@ is reported, because one of its makers read the other's letters wrongly.
 """
 
 import csv
+import re
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -14,6 +15,7 @@ from probsoil.laboratory.collection import Collection
 LONGEST_LINE = 1_000_000  # bytes; no sheet has one, and a file without line ends must not fill the memory
 _BOMS = (b"\xff\xfe", b"\xfe\xff")
 _DELIMITERS = ",;\t"
+_COMMA, _POINT = (re.compile(rf"[+-]?\d*{sign}\d+(?:[eE][+-]?\d+)?") for sign in (",", r"\."))
 
 
 def lines_of(collection: Collection, path: Path, file: str) -> Iterator[tuple[int, str]]:
@@ -80,11 +82,11 @@ def csv_rows(collection: Collection, path: Path, file: str) -> Iterator[tuple[in
     head: list[str] = []
     for _, line in lines:
         head.append(line)
-        if line.strip() and not line.lstrip(' "').startswith("#"):
+        if line.strip() and not _is_comment(line):
             break
     else:
         return
-    delimiter = max(_DELIMITERS, key=head[-1].count)
+    delimiter = _delimiter(head[-1])
     begins = len(head)
     reader = csv.reader(_and_then(head[-1], lines), delimiter=delimiter, skipinitialspace=True, strict=True)
     offset = len(head) - 1
@@ -106,6 +108,40 @@ def csv_rows(collection: Collection, path: Path, file: str) -> Iterator[tuple[in
         if cells is None:
             return
         yield begins, [cell.strip() for cell in cells]
+
+
+def has_decimal_commas(path: Path) -> bool:
+    """Return whether the numbers of a CSV file have decimal commas, as where semicolons part its cells.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+
+    Returns
+    -------
+    commas : bool
+        True where semicolons part the cells, some number has a comma, and none has a point.
+    """
+    ignored = Collection()  # what is wrong with the file is told when it is read
+    lines = (line for _, line in lines_of(ignored, path, "") if line.strip() and not _is_comment(line))
+    if _delimiter(next(lines, "")) != ";":
+        return False
+    commas = False
+    for line in lines:
+        cells = [cell.strip(' "') for cell in line.split(";")]
+        if any(_POINT.fullmatch(cell) for cell in cells):
+            return False
+        commas = commas or any(_COMMA.fullmatch(cell) for cell in cells)
+    return commas
+
+
+def _is_comment(line: str) -> bool:
+    return line.lstrip(' "').startswith("#")
+
+
+def _delimiter(headings: str) -> str:
+    return max(_DELIMITERS, key=headings.count)
 
 
 def _and_then(first: str, lines: Iterator[tuple[int, str]]) -> Iterator[str]:

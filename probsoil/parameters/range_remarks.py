@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from probsoil.parameters.plain_laws import plain_law
 from probsoil.scenario import ClayLayer, Scenario
@@ -17,7 +17,7 @@ _FRICTION = ("phi", "tan_phi")
 _SCATTER = {  # last part of the address: what its scatter is published under
     "unit_weight": ("unit_weight",),
     "void_ratio": ("void_ratio",),
-    **dict.fromkeys((*VIRGIN.values(), *RELOADING.values()), ("compression_index",)),
+    **dict.fromkeys(VIRGIN.values(), ("compression_index",)),  # of reloading no scatter is published
     **dict.fromkeys(("preconsolidation", "ocr", "pop"), ("preconsolidation",)),
     **dict.fromkeys(("M", "phi"), _FRICTION),
     "cv": ("cv",),
@@ -171,24 +171,9 @@ def _compared(clay: _Clay) -> Iterator[tuple[str, str, float, Envelope | None]]:
 
 
 def _friction(clay: _Clay) -> Iterator[tuple[str, str, float, Envelope | None]]:
-    published = _published("tan_phi")
     for key, what in (("phi", "a mean friction angle"), ("M", "a mean M")):
-        if key in clay.given and published is not None:
-            yield key, what, clay.mean(key), _friction_envelope(published, key)
-
-
-def _friction_envelope(published: Envelope, key: str) -> Envelope:
-    """Tangents of friction angles as angles or as slopes of the critical state line."""
-
-    def turned(tangent: float) -> float:
-        angle = math.atan(tangent)
-        return math.degrees(angle) if key == "phi" else 6.0 * math.sin(angle) / (3.0 - math.sin(angle))
-
-    lowest, highest = (
-        replace(row, low=turned(row.low), high=turned(row.high))
-        for row in (published.lowest, published.highest)
-    )
-    return Envelope(lowest=lowest, highest=highest)
+        if key in clay.given:
+            yield key, what, clay.mean(key), published_ranges().friction(key)
 
 
 def _flow(clay: _Clay) -> Iterator[tuple[str, str, float, Envelope | None]]:

@@ -1,9 +1,10 @@
 """Published ranges of scatter, scales of fluctuation and typical values, from a table in the package."""
 
 import csv
+import math
 import re
 from collections.abc import Iterable
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from functools import cache
 from importlib.resources import files
 from typing import TYPE_CHECKING
@@ -137,6 +138,28 @@ class PublishedRanges:
             lowest=min(rows, key=lambda row: row.low), highest=max(rows, key=lambda row: row.high)
         )
 
+    def friction(self, key: str) -> Envelope | None:
+        """Return what is published of tan phi' as friction angles or as slopes of the critical state line.
+
+        Parameters
+        ----------
+        key : str
+            ``phi`` for angles [degrees], ``M`` for slopes in compression [-].
+
+        Returns
+        -------
+        envelope : Envelope or None
+            None where nothing is.
+        """
+        published = self.envelope(("tan_phi",), ("value",))
+        if published is None:
+            return None
+        lowest, highest = (
+            replace(row, low=_turned(row.low, key), high=_turned(row.high, key))
+            for row in (published.lowest, published.highest)
+        )
+        return Envelope(lowest=lowest, highest=highest)
+
     def to_frame(self) -> "pd.DataFrame":
         """Return the table.
 
@@ -149,6 +172,11 @@ class PublishedRanges:
 
         names = [one.name for one in fields(PublishedRange)]
         return pd.DataFrame([[getattr(row, name) for name in names] for row in self.rows], columns=names)
+
+
+def _turned(tangent: float, key: str) -> float:
+    angle = math.atan(tangent)
+    return math.degrees(angle) if key == "phi" else 6.0 * math.sin(angle) / (3.0 - math.sin(angle))
 
 
 @cache

@@ -47,15 +47,21 @@ def test_every_test_is_checked_with_the_parameters_of_its_layer() -> None:
     assert [one.test for one in found.checks] == ["O0", "O1", "O2", "T0", "T1"]
     assert set(found.layers) == {"clay"}
     assert found.remarks == ()
-    assert {one.parameters.source for one in found.checks} == {"clay: 3 oedometer and 2 triaxial tests"}
+    assert [one.parameters.source for one in found.checks] == [
+        *3 * ["clay: 2 oedometer tests, the one checked left out; M of 2 triaxial tests"],
+        *2 * ["clay: 3 oedometer tests; M of 1 triaxial test, the one checked left out"],
+    ]
     assert np.mean([one.share_inside for one in found.checks]) > 0.8
 
 
-def test_pooled_parameters_by_hand() -> None:
+@pytest.mark.parametrize("place", [0, 1, 3])
+def test_pooled_parameters_by_hand_leave_out_the_test_checked(place: int) -> None:
     done = site()
-    parameters = site_back_checks(done, FEW).checks[0].parameters
-    rows = np.array([logs(done, name) for name in ("lam", "kappa", "preconsolidation")])
-    slopes = np.log([one.slope_at_failure.value for one in done.triaxials])
+    parameters = site_back_checks(done, FEW).checks[place].parameters
+    oedometers = [one for one in range(3) if one != place]
+    triaxials = [one for one in range(2) if one != place - 3]
+    rows = np.array([logs(done, name)[oedometers] for name in ("lam", "kappa", "preconsolidation")])
+    slopes = np.log([one.slope_at_failure.value for one in done.triaxials])[triaxials]
     expected = [*rows[:2].mean(axis=1), slopes.mean(), rows[2].mean()]
     np.testing.assert_allclose(parameters.log_mean, expected)
     for place, values in ((0, rows[0]), (1, rows[1]), (2, slopes), (3, rows[2])):
@@ -74,10 +80,10 @@ def test_preconsolidation_is_in_proportion_to_the_stress_in_situ_where_that_is_k
     done = site(ground=Choices(unit_weight=16.0))
     found = site_back_checks(done, FEW)
     medians = [one.parameters.median[3] for one in found.checks[:3]]
-    stresses = [one.in_situ_stress for one in done.oedometers]
-    np.testing.assert_allclose(np.array(medians) / stresses, medians[0] / stresses[0])
-    ratio = np.exp(np.mean(logs(done, "preconsolidation") - np.log(stresses)))
-    assert medians[0] / stresses[0] == pytest.approx(ratio)
+    stresses = np.array([one.in_situ_stress for one in done.oedometers])
+    ratios = logs(done, "preconsolidation") - np.log(stresses)
+    others = [np.exp(np.mean(np.delete(ratios, place))) for place in range(3)]
+    np.testing.assert_allclose(medians / stresses, others)
 
 
 def test_above_ground_the_stress_is_not_known_and_it_is_told() -> None:
@@ -97,7 +103,36 @@ def test_a_layer_without_triaxial_tests_takes_m_of_the_others_or_the_usual() -> 
     alone = interpreted_site(SiteSheets(oedometers=(other,)))
     parameters = site_back_checks(alone, FEW).checks[0].parameters
     assert parameters.median[2] == pytest.approx(1.0)
-    assert parameters.source == "peat: 1 oedometer and 0 triaxial tests"
+    assert parameters.source == (
+        "peat: 1 oedometer test, the one checked itself; M taken as 1.0, no triaxial test tells it"
+    )
+
+
+def test_source_names_the_ground_that_m_is_borrowed_from() -> None:
+    other = at(oedometer(void_ratios(KNOWN.median)), "O9", 9.0, "peat")
+    found = {one.test: one for one in site_back_checks(site(more=(other,)), FEW).checks}
+    assert found["O9"].parameters.source == (
+        "peat: 1 oedometer test, the one checked itself; "
+        "M of 2 triaxial tests of other ground, for want of one here"
+    )
+
+
+def test_a_test_that_alone_tells_something_stays_among_them_and_it_is_told() -> None:
+    done = site()
+    flagged = tuple(
+        replace(one, flag="doubtful")
+        if (one.test, one.parameter) in (("O1", "kappa"), ("O2", "kappa"))
+        else one
+        for one in done.observations
+    )
+    found = {one.test: one for one in site_back_checks(replace(done, observations=flagged), FEW).checks}
+    alone = found["O0"].parameters
+    assert alone.source.startswith(
+        "clay: 3 oedometer tests, the one checked among them, as it alone tells all;"
+    )
+    assert alone.log_mean[0] == pytest.approx(logs(done, "lam").mean())
+    assert found["O1"].parameters.source.startswith("clay: 2 oedometer tests, the one checked left out")
+    assert found["O1"].parameters.log_mean[1] == pytest.approx(logs(done, "kappa")[0])
 
 
 def test_a_layer_without_oedometer_tests_cannot_be_checked_and_it_is_told() -> None:
@@ -121,7 +156,7 @@ def test_doubtful_numbers_are_left_out() -> None:
         replace(one, flag="doubtful") if (one.test, one.parameter) == ("O1", "lambda") else one
         for one in done.observations
     )
-    parameters = site_back_checks(replace(done, observations=flagged), FEW).checks[0].parameters
+    parameters = site_back_checks(replace(done, observations=flagged), FEW).checks[3].parameters
     kept = logs(done, "lam")[[0, 2]]
     assert parameters.log_mean[0] == pytest.approx(kept.mean())
     assert parameters.log_mean[1] == pytest.approx(logs(done, "kappa").mean())

@@ -242,3 +242,11 @@ def test_numbers_at_one_depth_have_no_line_with_depth() -> None:
     rows = [replace(one, depth=3.0) for one in rows_of([20.0] * 8 + [60.0], "su")]
     assert [bool(one.flag) for one in flagged(rows)] == [False] * 8 + [True]
     assert not any(one.flag for one in flagged([replace(one, value=0.0) for one in rows]))
+
+
+def test_page_counts_increments_in_words() -> None:
+    sheet = drawn.site().oedometers[0]
+    lone = tuple(one if place == 4 else None for place, one in enumerate(sheet.time_readings))
+    for timed, words in ((lone, "1 increment in time<"), (sheet.time_readings, "increments in time<")):
+        done = interpreted_site(SiteSheets(oedometers=(replace(sheet, time_readings=timed),)))
+        assert words in render_interpretation(done)

@@ -16,7 +16,7 @@ from probsoil.cli import main
 from probsoil.errors import MissingExtraError, ParameterError, ResultsError, SheetError
 from probsoil.laboratory.layout import LAYOUTS
 from probsoil.laboratory.reading import read_sheets
-from probsoil.laboratory.templates import EXAMPLE, KINDS, WORKBOOK, write_templates
+from probsoil.laboratory.templates import EXAMPLE, KINDS, WORKBOOK, template_rows, write_templates
 
 
 def taken_as_data(folder: Path) -> Path:
@@ -35,6 +35,16 @@ def test_examples_are_a_readable_site(tmp_path: Path) -> None:
     assert site.remarks == ()
     assert site.oedometers[0].stress.tolist() == [25.0, 50.0, 100.0, 25.0]
     assert site.cones[0].cone_resistance.tolist() == [210.0, 214.0]
+
+
+def test_template_says_that_the_whole_prefix_is_taken_away() -> None:
+    for layout in LAYOUTS:
+        told = [str(row[0]) for row in template_rows(layout)]
+        assert (
+            '# Rows that begin with "# invented: " are examples; to use one, take that away with its #.'
+            in told
+        )
+        assert [row for row in told if row.startswith(EXAMPLE)]
 
 
 @pytest.mark.parametrize("excel", [False, True])

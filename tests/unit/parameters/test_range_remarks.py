@@ -29,6 +29,11 @@ def remarks_with(*edits: tuple[str, str]) -> tuple[str, ...]:
     return range_remarks(parse_scenario(text))
 
 
+@pytest.mark.parametrize("cov", [0.02, 0.9])
+def test_scatter_of_kappa_is_not_compared_with_that_of_the_compression_index(cov: float) -> None:
+    assert remarks_with((KAPPA, f'kappa = {{ dist = "lognormal", mean = 0.05, cov = {cov} }}')) == ()
+
+
 @pytest.mark.parametrize("row", published_ranges().rows, ids=lambda row: f"{row.quantity}, {row.source[:12]}")
 def test_every_row_is_sound(row: PublishedRange) -> None:
     assert row.kind in KINDS
@@ -93,8 +98,8 @@ OUTSIDE = {
         "soft clay.lambda: a cov of 0.75 lies above",
     ),
     "percentage too small to have been measured": (
-        (KAPPA, 'kappa = { dist = "lognormal", mean = 0.05, cov = 0.02 }'),
-        "soft clay.kappa: a cov of 0.02 is less than half of the least published scatter of single values, "
+        (LAMBDA, 'lambda = { dist = "lognormal", mean = 0.36, cov = 0.02 }'),
+        "soft clay.lambda: a cov of 0.02 is less than half of the least published scatter of single values, "
         "0.1 (clay, Duncan 2000 (recalled, not opened)); even there it would take more than 4 independent",
     ),
     "point-to-point scatter": (
