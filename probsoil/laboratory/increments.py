@@ -194,10 +194,8 @@ def _permeability(
         carried = float(np.log(10.0) * (void_ratio - at.mean()) / ck * CK_ERROR)
         value = float(np.exp(mean))
         error = float(np.sqrt(own**2 + between**2 + carried**2))
-        reason = (
-            f"k: only {len(known)} virgin {'increment' if len(known) == 1 else 'increments'}, so carried to the "
-            "initial void ratio by ck = 0.5 e0"
-        )
+        noun = "increment" if len(known) == 1 else "increments"
+        reason = f"k: only {len(known)} virgin {noun}, so carried to the initial void ratio by ck = 0.5 e0"
         return Estimate(value=value, standard_error=value * error), None, reason
     fit = line(at, logs, INCREMENT_SPREAD)
     slope = float(fit.coefficient[1])

@@ -240,8 +240,18 @@ def _disturbance(
 def _rows(result: OedometerResult) -> list[dict[str, object]]:
     estimates: list[tuple[str, str, Estimate | None, str]] = [
         ("lambda", "two branches, mean of the virgin branch", result.lam, "-"),
-        ("lambda", "two branches, just beyond yield", None if result.fit is None else result.fit.first_lam, "-"),
-        ("lambda", "two branches, at the last load", None if result.fit is None else result.fit.last_lam, "-"),
+        (
+            "lambda",
+            "two branches, just beyond yield",
+            None if result.fit is None else result.fit.first_lam,
+            "-",
+        ),
+        (
+            "lambda",
+            "two branches, at the last load",
+            None if result.fit is None else result.fit.last_lam,
+            "-",
+        ),
         ("kappa", "loop", result.kappa_loop, "-"),
         ("kappa", "rebound", result.kappa_rebound, "-"),
         ("kappa", "initial branch", result.kappa_initial, "-"),

@@ -10,14 +10,14 @@ from probsoil.laboratory.regression import PRIOR_READINGS, Estimate, whitener, w
 
 LEAST_INCREMENTS = 5
 FLATTENING = 0.5
-"""Standard deviation expected of the part of the virgin slope that dies out, over the slope [-]; a judgement."""
+"""Standard deviation expected of the part of the virgin slope that dies out, over it [-]; a judgement."""
 
-FLATTENS = 0.5
+FLATTENS = 0.3
 """Probability expected beforehand that a virgin branch flattens [-]; a judgement."""
 
 _WIDTHS = np.array([0.01, 0.05, 0.09, 0.14, 0.20, 0.28, 0.40])  # of the bend, in ln stress
 _STRAIGHT_VIRGIN = 1e-9  # a reach of nothing: no part of the slope dies out
-_REACHES = np.array([_STRAIGHT_VIRGIN, 0.5, 1.0, 2.5])  # over which a part of the slope dies out, in ln stress
+_REACHES = np.array([_STRAIGHT_VIRGIN, 0.5, 1.0, 2.5])  # for a part of the slope to die out, in ln stress
 _N_BREAK = 121
 _LEAST_GAIN = 8.0  # ratio of variances that a bend must explain
 _STRAIGHT = (
@@ -202,8 +202,9 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
     -----
     ``e = a - k x - s r - c d (1 - exp(-r/d))``, x the natural logarithm of stress and r its distance beyond
     the meeting of the branches b, rounded over a width w: ``w ln(1 + exp((x - b)/w))`` or, with longer
-    tails, ``((x - b) + sqrt((x - b)^2 + (2 w ln 2)^2))/2``. The last term lets the virgin branch flatten, or
-    steepen; c is expected to be zero give or take `FLATTENING` of the steepest slope read. For every b, w, d
+    tails, ``((x - b) + sqrt((x - b)^2 + (2 w ln 2)^2))/2``. The last term lets the virgin branch flatten:
+    c is zero with a probability of 1 - `FLATTENS`, else above it, expected within `FLATTENING` of the
+    steepest slope read. For every b, w, d
     and rounding of a grid the other four follow by generalised least squares; each grid point counts by its
     likelihood with the scatter integrated out, and the errors are those within and between grid points. So
     a break point, or a shape, that the readings leave open shows in all errors.
@@ -252,7 +253,7 @@ def two_branch_fit(stress: FloatArray, void_ratio: FloatArray, scatter: float) -
 
 
 def _flattening_fits(factors: FloatArray, target: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return coefficients, their covariance per variance and the squares left, the last coefficient not below 0."""
+    """Return coefficients, covariance per variance and squares left, the last coefficient not below 0."""
     turned = factors.transpose(0, 2, 1)
     normal = np.linalg.inv(turned @ factors)
     coefficient = (normal @ (turned @ target)[:, :, None])[:, :, 0]
@@ -263,7 +264,7 @@ def _flattening_fits(factors: FloatArray, target: FloatArray) -> tuple[FloatArra
     coefficient = coefficient - excess[:, None] * along
     normal = normal - np.where(held, along[:, :, None] * normal[:, None, :, 3], 0.0)
     left = ((target - (factors @ coefficient[:, :, None])[:, :, 0]) ** 2).sum(axis=1)
-    return coefficient, normal, left
+    return np.asarray(coefficient), np.asarray(normal), np.asarray(left)
 
 
 def _tried(low: float, high: float) -> Bends:

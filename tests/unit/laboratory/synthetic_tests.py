@@ -89,15 +89,16 @@ def degree(factor: np.ndarray) -> np.ndarray:
     return np.where(factor < 0.01, 2.0 * np.sqrt(factor / np.pi), series)
 
 
-def time_readings(rng: np.random.Generator) -> tuple[TimeReadings, float, float]:
+def time_readings(
+    rng: np.random.Generator, path: float = 9.0, dial: float = 0.002
+) -> tuple[TimeReadings, float, float]:
     """Return readings, drainage path [mm] and cv [m2/year]: Terzaghi, initial compression, creep, dial."""
-    path = 9.0
     cv = np.exp(rng.normal(np.log(0.8), 0.7))  # m2/year
     per_minute = cv * 1e6 / (365.25 * 1440.0) / path**2
     primary = rng.uniform(0.4, 1.6)
     initial = primary * rng.uniform(0.02, 0.10) * (TIMES > 0.0)
     creep = primary * rng.uniform(0.02, 0.08) * np.log10(1.0 + TIMES * per_minute / 1.1)
-    noise = rng.normal(0.0, 0.002, TIMES.size)
+    noise = rng.normal(0.0, dial, TIMES.size)
     read = initial + primary * degree(per_minute * TIMES) + creep + noise
     read = np.round(read / 0.002) * 0.002
     read[0] = 0.0

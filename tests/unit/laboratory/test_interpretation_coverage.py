@@ -63,10 +63,11 @@ def test_estimates_of_an_oedometer_test_are_not_biased(
 
 
 @pytest.mark.slow
-def test_intervals_of_cv_hold_the_truth() -> None:
+@pytest.mark.parametrize(("long", "dial"), [(9.0, 0.002), (9.0, 0.005)])
+def test_intervals_of_cv_hold_the_truth(long: float, dial: float) -> None:
     hits = []
     for repeat in range(REPEATS):
-        readings, path, cv = drawn.time_readings(rng(12, repeat))
+        readings, path, cv = drawn.time_readings(rng(12, repeat), long, dial)
         estimate = time_curve(readings, path).cv
         if estimate is not None:
             hits.append(held(estimate, cv))

@@ -42,7 +42,11 @@ def measured(law: str, loads: np.ndarray, stream: int, repeats: int) -> dict[str
 @pytest.mark.slow
 @pytest.mark.parametrize(
     ("law", "loads"),
-    [*((law, drawn.STRESSES) for law in LAWS[1:]), ("straight", drawn.SHORT), ("straight", drawn.SMALL_STEPS)],
+    [
+        *((law, drawn.STRESSES) for law in LAWS[1:]),
+        ("straight", drawn.SHORT),
+        ("straight", drawn.SMALL_STEPS),
+    ],
 )
 def test_intervals_hold_the_truth_whatever_the_law_of_the_curve(law: str, loads: np.ndarray) -> None:
     flattens = law in ("specific volume", "structured")
