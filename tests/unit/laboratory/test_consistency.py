@@ -37,6 +37,15 @@ def sheared(*rows: tuple[float, float, float]) -> str:
             "is the back pressure in it?",
         ),
         (
+            {
+                "triaxial_specimens": SITE["triaxial_specimens"].replace("CAUC", "CADC"),
+                "triaxial_readings": sheared((0.5, -240, 0), (4, -280, 0)),
+            },
+            "triaxial_readings.csv:2:3: deviator stress (kPa): ",
+            'no reading of "T1" leaves a mean effective stress above 0 kPa',
+            "mend the stresses",
+        ),
+        (
             {"oedometer_increments": SITE["oedometer_increments"].replace("void ratio,", "void ratio (%),")},
             "oedometer_increments.csv:2:4: void ratio (%): ",
             'the first increment of "O1" has a void ratio of 0.0208, but it was 2.1 before loading',
@@ -94,6 +103,13 @@ def test_contradiction_is_a_mistake(
             {"triaxial_readings": sheared((0, 15, 0), (0.5, 24, -4), (4, 28, -9))},
             'row 2: the pore pressure of "T1" falls in compression from its first reading, to -9 '
             "kPa: is its sign",
+        ),
+        (
+            {
+                "triaxial_specimens": ("CAUC", "CAUE"),
+                "triaxial_readings": sheared((0.1, 20, 1), (4, -9, 9)),
+            },
+            'triaxial_readings.csv, row 2: "T1" has a first deviator stress of 20 kPa',
         ),
         (
             {"triaxial_specimens": ("CAUC", "CIUC")},

@@ -68,8 +68,6 @@ def test_flag_is_added_to_what_is_there() -> None:
 
 def test_interpretation_flags_them() -> None:
     """A reversed sign of the pore pressure gives an M that no clay has."""
-    strain = np.linspace(0.0, 0.1, 11)
-    deviator = 40.0 * np.minimum(strain / 0.05, 1.0)
     sheet = TriaxialSheet(
         test="T1",
         place=Place(hole="B", depth=4.0),
@@ -78,10 +76,10 @@ def test_interpretation_flags_them() -> None:
         axial_stress=60.0,
         radial_stress=60.0,
         initial_void_ratio=1.9,
-        axial_strain=strain,
-        deviator=deviator,
-        pore_pressure_change=-0.9 * deviator,
-        volumetric_strain=np.full(11, np.nan),
+        axial_strain=np.array([0.1]),  # the state at failure alone: M is q/p' itself
+        deviator=np.array([40.0]),
+        pore_pressure_change=np.array([-36.0]),
+        volumetric_strain=np.array([np.nan]),
     )
     rows = interpreted_site(SiteSheets(triaxials=(sheet,))).observations
     (slope,) = (one for one in rows if one.parameter == "M")
