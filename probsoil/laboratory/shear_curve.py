@@ -1,4 +1,4 @@
-"""What neighbouring readings of a triaxial test say together: the stress ratio, and whether it has come to rest."""
+"""What neighbouring readings of a triaxial test say together: stress ratio, and whether it has come to rest."""
 
 from dataclasses import dataclass
 
@@ -97,7 +97,7 @@ def smooth_ratio(
 
 
 def _excess(design: FloatArray, coefficient: FloatArray, left: FloatArray) -> float:
-    """Return the mean excess of the greatest of the curve by the scatter found alone, expecting none beforehand."""
+    """Return the mean excess of the greatest of the curve by the scatter found alone."""
     n, n_coefficient = design.shape
     variance = float(left @ left) / (n - n_coefficient)
     root = np.linalg.cholesky(np.linalg.inv(design.T @ design)) * np.sqrt(variance)

@@ -25,8 +25,7 @@ STRENGTH_ERROR = 0.03
 """Relative standard error of a strength for area and membrane correction [-]; a judgement."""
 
 UNCONSOLIDATED_ERROR = 0.20
-"""The same of a UU test, whose effective stress nobody knows [-]; Phoon and Kulhawy 1999 give 8 to 38 % for strengths
-of the laboratory; recalled, not opened."""
+"""The same of a UU test [-]; within the 8 to 38 % of Phoon and Kulhawy 1999; recalled, not opened."""
 
 _LEAST_READINGS = 4
 _SMALL_STRESS = 2.0  # kPa: below it a stress ratio means nothing
@@ -306,7 +305,6 @@ def _not_at_rest(sheet: TriaxialSheet, path: FloatArray, readable: BoolArray) ->
     if undrained:
         moves = change > max(_PORE_CHANGE * path[known][-1], _TOLD)
         return ["pore pressure still changes at the last reading"] if moves else []
-    # the strain of the last quarter: a rate of volume over axial strain
     moves = change > _VOLUME_CHANGE * 0.25 * strain[-1]
     return ["volume still changes at the last reading"] if moves else []
 
