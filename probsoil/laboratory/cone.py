@@ -32,7 +32,7 @@ WEIGHT_ERROR = 0.03
 """Relative standard error of the total vertical stress [-]; a judgement."""
 
 ZERO_DRIFT = 20.0
-"""Standard error of the zero reading of a cone [kPa]; a judgement between the 15 and 35 kPa of good soundings."""
+"""Standard error of the zero reading of a cone [kPa]; a judgement within 15 to 35 of good soundings."""
 
 SLICE = 1.0
 """Thickness over which resistance is averaged where layers are not known [m]."""

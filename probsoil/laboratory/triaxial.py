@@ -10,7 +10,7 @@ from probsoil._typing import BoolArray, FloatArray
 from probsoil.laboratory.friction import carried_to_compression, friction_angle, greatest_slope
 from probsoil.laboratory.observations import Observation, observation
 from probsoil.laboratory.regression import Estimate
-from probsoil.laboratory.shear_curve import SmoothRatio, late_change, smooth_ratio
+from probsoil.laboratory.shear_curve import TAIL, SmoothRatio, late_change, smooth_ratio
 from probsoil.laboratory.sheets import TriaxialSheet
 
 if TYPE_CHECKING:
@@ -302,11 +302,9 @@ def _not_at_rest(sheet: TriaxialSheet, path: FloatArray, readable: BoolArray) ->
         return []
     strain = np.abs(sheet.axial_strain[known])
     change = abs(late_change(strain, reading[known]))
-    if undrained:
-        moves = change > max(_PORE_CHANGE * path[known][-1], _TOLD)
-        return ["pore pressure still changes at the last reading"] if moves else []
-    moves = change > _VOLUME_CHANGE * 0.25 * strain[-1]
-    return ["volume still changes at the last reading"] if moves else []
+    least = max(_PORE_CHANGE * path[known][-1], _TOLD) if undrained else _VOLUME_CHANGE * TAIL * strain[-1]
+    what = "pore pressure" if undrained else "volume"
+    return [f"{what} still changes at the last reading"] if change > least else []
 
 
 def _beyond(greatest: Failure | None, path: FloatArray, pushed: FloatArray) -> list[str]:
