@@ -355,8 +355,9 @@ def _failure(sheet: TriaxialSheet, path: FloatArray, place: int, curve: SmoothRa
     if curve is not None and place in curve.place:
         at = int(np.searchsorted(curve.place, place))
         excess = curve.excess
-        value = float(curve.ratio[at]) - excess
-        ratio = Estimate(value=value, standard_error=float(curve.standard_error[at]))
+        ratio = Estimate(
+            value=float(curve.ratio[at]) - excess, standard_error=float(curve.standard_error[at])
+        )
     return Failure(
         place=place,
         strain=float(sheet.axial_strain[place]),
