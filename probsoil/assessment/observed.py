@@ -13,6 +13,7 @@ from probsoil.ground.undrained_strength import (
     plastic_volumetric_ratio,
     undrained_shear_strength,
 )
+from probsoil.laboratory.observations import TOGETHER
 from probsoil.parameters.observations import Model, Observation
 from probsoil.scenario import ClayLayer, Scenario
 from probsoil.scenario.evidence import error_defaults
@@ -154,7 +155,9 @@ def _told_twice(
         if (result.hole, result.test) in same:
             return "the net cone resistance it was made from is used"
     strengths = {_layer_index(scenario, column, one) for one in beside if one.parameter == "su"}
-    if result.kind == "triaxial" and result.parameter in ("su_ratio", "Lambda") and place in strengths:
+    specimens = {one.test for one in beside if one.parameter == "su"}
+    again = place in strengths or bool(specimens.intersection(result.test.split(TOGETHER)))
+    if result.kind == "triaxial" and result.parameter in ("su_ratio", "Lambda") and again:
         return "the strengths of single specimens in this layer, which it was made from, are used"
     layer = scenario.layers[place]
     if result.kind == "oedometer" and result.parameter in ("cv", "k") and isinstance(layer, ClayLayer):

@@ -31,6 +31,9 @@ ASSUMED_AREA_RATIO, AREA_RATIO_ERROR = 0.8, 0.05
 WEIGHT_ERROR = 0.03
 """Relative standard error of the total vertical stress [-]; a judgement."""
 
+ZERO_DRIFT = 20.0
+"""Standard error of the zero reading of a cone [kPa]; a judgement within 15 to 35 of good soundings."""
+
 SLICE = 1.0
 """Thickness over which resistance is averaged where layers are not known [m]."""
 
@@ -52,7 +55,7 @@ class ConeAverage:
     independent : float, [-]
         What they count for, as neighbours resemble each other.
     net_resistance, standard_error : float, [kPa]
-        Mean and its error, that of the total stress and of the area ratio included.
+        Mean and its error, those of total stress, area ratio and zero reading included.
     scatter : float, [kPa]
         Standard deviation of a reading about the line with depth.
     clay : bool
@@ -202,7 +205,8 @@ def interpreted_cone(sheet: ConeSheet, column: GroundColumn | None) -> ConeResul
     pressure = np.where(measured, sheet.pore_pressure, 0.0)
     total = np.array([column.total_stress(float(depth)) for depth in sheet.depth])
     net = sheet.cone_resistance + (1.0 - ratio) * pressure - total
-    doubt = np.hypot(WEIGHT_ERROR * total, AREA_RATIO_ERROR * pressure if sheet.area_ratio is None else 0.0)
+    area = AREA_RATIO_ERROR * pressure if sheet.area_ratio is None else 0.0
+    doubt = np.hypot(np.hypot(WEIGHT_ERROR * total, area), ZERO_DRIFT)
     averages = []
     for layer, top, bottom in _slices(sheet.depth, column):
         inside = (sheet.depth >= top) & (sheet.depth < bottom) & np.isfinite(net)

@@ -1,4 +1,4 @@
-"""What neighbouring readings of a triaxial test say together: the stress ratio, and whether it has come to rest."""
+"""What neighbouring readings of a triaxial test say together: stress ratio, and whether it is at rest."""
 
 from dataclasses import dataclass
 
@@ -10,7 +10,9 @@ from probsoil.laboratory.regression import regression
 _NEAR = 0.7  # of the greatest ratio: from where on readings tell of failure
 _LEAST_NEAR = 5  # readings for a curve of three coefficients
 _MOST_NEAR = 60  # nearer ones repeat the errors of their neighbours
-_TAIL = 0.25  # of the strain reached
+TAIL = 0.25
+"""Share of the strain reached over which a late change is taken [-]."""
+
 _LEAST_TAIL = 3
 
 
@@ -97,7 +99,7 @@ def smooth_ratio(
 
 
 def _excess(design: FloatArray, coefficient: FloatArray, left: FloatArray) -> float:
-    """Return the mean excess of the greatest of the curve by the scatter found alone, expecting none beforehand."""
+    """Return the mean excess of the greatest of the curve by the scatter found alone."""
     n, n_coefficient = design.shape
     variance = float(left @ left) / (n - n_coefficient)
     root = np.linalg.cholesky(np.linalg.inv(design.T @ design)) * np.sqrt(variance)
@@ -123,8 +125,8 @@ def late_change(strain: FloatArray, reading: FloatArray) -> float:
     """
     if strain.size < _LEAST_TAIL:
         return 0.0
-    inside = strain >= (1.0 - _TAIL) * strain[-1]
+    inside = strain >= (1.0 - TAIL) * strain[-1]
     inside[-_LEAST_TAIL:] = True
     at = strain[inside] - strain[inside].mean()
     spread = float(at @ at)
-    return float(at @ reading[inside]) / spread * _TAIL * float(strain[-1]) if spread > 0.0 else 0.0
+    return float(at @ reading[inside]) / spread * TAIL * float(strain[-1]) if spread > 0.0 else 0.0

@@ -14,7 +14,7 @@ RATIO_SCATTER = 0.10
 """Standard deviation of ln(su/s'v) between specimens expected beforehand [-]; a judgement."""
 
 USUAL_EXPONENT = 0.8
-"""Lambda where tests do not tell it: how an error of OCR reaches the strength over stress [-]; a judgement."""
+"""Lambda where tests do not tell it: how an error of OCR reaches strength over stress [-]; a judgement."""
 
 KAPPA_MEANING = 0.45
 """Standard deviation of ln kappa/lambda for what kappa is meant [-]; a judgement.

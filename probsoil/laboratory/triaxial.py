@@ -10,7 +10,7 @@ from probsoil._typing import BoolArray, FloatArray
 from probsoil.laboratory.friction import carried_to_compression, friction_angle, greatest_slope
 from probsoil.laboratory.observations import Observation, observation
 from probsoil.laboratory.regression import Estimate
-from probsoil.laboratory.shear_curve import SmoothRatio, late_change, smooth_ratio
+from probsoil.laboratory.shear_curve import TAIL, SmoothRatio, late_change, smooth_ratio
 from probsoil.laboratory.sheets import TriaxialSheet
 
 if TYPE_CHECKING:
@@ -25,8 +25,7 @@ STRENGTH_ERROR = 0.03
 """Relative standard error of a strength for area and membrane correction [-]; a judgement."""
 
 UNCONSOLIDATED_ERROR = 0.20
-"""The same of a UU test, whose effective stress nobody knows [-]; Phoon and Kulhawy 1999 give 8 to 38 % for strengths
-of the laboratory; recalled, not opened."""
+"""The same of a UU test [-]; within the 8 to 38 % of Phoon and Kulhawy 1999; recalled, not opened."""
 
 _LEAST_READINGS = 4
 _SMALL_STRESS = 2.0  # kPa: below it a stress ratio means nothing
@@ -303,12 +302,9 @@ def _not_at_rest(sheet: TriaxialSheet, path: FloatArray, readable: BoolArray) ->
         return []
     strain = np.abs(sheet.axial_strain[known])
     change = abs(late_change(strain, reading[known]))
-    if undrained:
-        moves = change > max(_PORE_CHANGE * path[known][-1], _TOLD)
-        return ["pore pressure still changes at the last reading"] if moves else []
-    # the strain of the last quarter: a rate of volume over axial strain
-    moves = change > _VOLUME_CHANGE * 0.25 * strain[-1]
-    return ["volume still changes at the last reading"] if moves else []
+    least = max(_PORE_CHANGE * path[known][-1], _TOLD) if undrained else _VOLUME_CHANGE * TAIL * strain[-1]
+    what = "pore pressure" if undrained else "volume"
+    return [f"{what} still changes at the last reading"] if change > least else []
 
 
 def _beyond(greatest: Failure | None, path: FloatArray, pushed: FloatArray) -> list[str]:
@@ -359,8 +355,9 @@ def _failure(sheet: TriaxialSheet, path: FloatArray, place: int, curve: SmoothRa
     if curve is not None and place in curve.place:
         at = int(np.searchsorted(curve.place, place))
         excess = curve.excess
-        value = float(curve.ratio[at]) - excess
-        ratio = Estimate(value=value, standard_error=float(curve.standard_error[at]))
+        ratio = Estimate(
+            value=float(curve.ratio[at]) - excess, standard_error=float(curve.standard_error[at])
+        )
     return Failure(
         place=place,
         strain=float(sheet.axial_strain[place]),

@@ -10,7 +10,7 @@ from probsoil.laboratory.oedometer import OedometerResult
 from probsoil.laboratory.regression import pooled
 
 YIELD_SCATTER = 0.20
-"""Standard deviation of ln of the preconsolidation stress between specimens, expected beforehand [-]; judged."""
+"""Standard deviation of ln of the preconsolidation stress between specimens [-]; a judgement."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

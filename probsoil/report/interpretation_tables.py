@@ -174,11 +174,12 @@ def _ratio_rows(interpretation: Interpretation) -> list[dict[str, object]]:
         for name, found in (
             ("su/s'v normally consolidated", one.ratio),
             ("Lambda from tests", one.exponent),
-            ("Lambda from kappa/lambda", one.exponent_from_slopes),
+            ("Lambda from kappa/lambda, kappa over ln s'v", one.exponent_from_slopes),
         ):
             row |= {
                 f"{name} [-]": None if found is None else found.value,
                 f"{name}, error [-]": None if found is None else found.standard_error,
             }
+        row["correlation of errors of S and Lambda [-]"] = one.correlation
         rows.append(row)
     return rows

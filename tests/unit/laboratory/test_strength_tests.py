@@ -299,3 +299,9 @@ def test_cone_remarks_and_flags() -> None:
         pore_pressure=np.full(2, NAN),
     )
     assert "no layer with 5 readings" in interpreted_cone(few, column).remarks[0]
+
+
+def test_zero_reading_of_a_cone_is_part_of_its_error() -> None:
+    # 15 to 35 kPa of good soundings, in every layer of the sounding, whatever the number of readings
+    for one in interpreted_cone(cone(), assumed_column(16.0, 1.0)).averages:
+        assert one.standard_error >= 15.0
