@@ -53,13 +53,15 @@ def first_loading(law: str, made: Branches, rng: np.random.Generator, width: flo
         def straight(x: np.ndarray) -> np.ndarray:
             return -made.initial * x - steeper * virgin(bending(x - made.meeting))
 
-        def specific(x: np.ndarray) -> np.ndarray:
-            at_yield = 1.0 + made.void_ratio - made.initial * made.meeting  # slopes in e are those at yield
-            return (1.0 + made.void_ratio) * (np.exp(straight(x) / at_yield) - 1.0)
-
-        return specific if law == "specific volume" else straight
+        return specific_volume(straight, made) if law == "specific volume" else straight
 
     return curve(rounded), curve(lambda at: np.maximum(at, 0.0))
+
+
+def specific_volume(straight: Curve, made: Branches) -> Curve:
+    """Return the law whose logarithm of specific volume is straight; slopes in e are those at yield."""
+    at_yield = 1.0 + made.void_ratio - made.initial * made.meeting
+    return lambda x: (1.0 + made.void_ratio) * (np.exp(straight(x) / at_yield) - 1.0)
 
 
 def mean_slope(branches: Curve, start: float, end: float) -> float:

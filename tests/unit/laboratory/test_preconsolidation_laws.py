@@ -23,7 +23,7 @@ WIDEST_FLATTENING = {"lambda": 0.06, "preconsolidation stress": 0.15}
 
 
 def measured(law: str, loads: np.ndarray, stream: int, repeats: int) -> dict[str, np.ndarray]:
-    """Return error in standard errors, logarithm of the ratio to the truth, and relative error, of each test."""
+    """Return error in standard errors, ln of the ratio to the truth, and relative error, of each test."""
     rows: dict[str, list[tuple[float, float, float]]] = {name: [] for name in WIDEST}
     for repeat in range(repeats):
         rng = np.random.default_rng(np.random.SeedSequence(stream, spawn_key=(repeat,)))
