@@ -1,8 +1,8 @@
 """The demo site from its sheets to evidence, held to the truth its sheets were drawn from.
 
 Of 36 intervals of 90 % one expects 32.4 to hold the truth, give or take 1.8; 28 were asked for beforehand.
-Width was bounded beforehand too: mean relative standard error at most 6 % for the virgin slope, 15 % for that of
-unloading, 10 % for the preconsolidation stress.
+Width was bounded beforehand too: mean relative standard error at most 6 % for the virgin slope, 15 % for that
+of unloading, 10 % for the preconsolidation stress.
 """
 
 from pathlib import Path
