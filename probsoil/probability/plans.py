@@ -83,7 +83,7 @@ class StratifiedPlan:
     confidence: float = 0.95
     most_runs: int = 2000
     pilot: int = 8
-    far_runs: int = 400
+    far_runs: int = 300
 
     def __post_init__(self) -> None:
         _check(self.within, self.confidence)

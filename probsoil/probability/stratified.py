@@ -27,7 +27,8 @@ Basis: TypeAlias = Literal["strata near the limit", "all strata"]
 
 FAR_FROM_LIMIT = 20.0  # strata that begin beyond this many times the probability may be far
 FAR_FROM_HITS = 2.5  # and beyond this many times the reach of the last stratum with a hit
-LEAST_TOP_SHARE = 0.5  # of the runs in the top stratum that must exceed
+TOP_STRATA = 3
+LEAST_TOP_SHARE = 0.5  # of the points in them that must exceed, as far as the runs can tell
 LEAST_BATCH = 64
 _ORDER_CONFIDENCE = 0.999
 _COLUMNS = ("size", "weight", "runs", "exceeding", "low", "high", "far")
@@ -191,8 +192,8 @@ def stratified_exceedance(
     After the pilot, batches of a tenth of the runs so far go where they narrow the interval most, those
     of the far strata first until there are `far_runs` of them. Far strata begin beyond 20 times the
     probability and beyond 2.5 times the reach of the last hit. All strata count as near, and the interval
-    needs no condition, where fewer than half of the runs in the top stratum exceed or the shares do not
-    fall with the score within their limits.
+    needs no condition, where fewer than half of the points in the top three strata exceed or the shares do
+    not fall with the score, each as far as exact limits can tell.
     """
     plan = plan or StratifiedPlan()
     count = len(strata.size)
@@ -224,11 +225,11 @@ def _near(sample: _Sample) -> int:
 
 def _doubts(sample: _Sample) -> tuple[str, ...]:
     """Reasons not to trust the ranking."""
-    share = sample.hits / sample.n
+    hits, n = int(sample.hits[:TOP_STRATA].sum()), int(sample.n[:TOP_STRATA].sum())
     found = []
-    if share[0] < LEAST_TOP_SHARE:
+    if clopper_pearson(hits, n)[1] < LEAST_TOP_SHARE:
         found.append(
-            f"only {sample.hits[0]} of {sample.n[0]} runs with the highest scores exceed: the score does not"
+            f"only {hits} of {n} runs with the highest scores exceed: the score does not"
             " rank this limit, or the limit is rarer than the pool reaches"
         )
     # of all points with such scores: in the pool, a small stratum run to its end would have no width

@@ -68,9 +68,8 @@ def test_the_interval_covers_with_a_useless_score(probability):
     found = [estimate(performance, useless_score, probability, seed) for seed in range(REPEATS)]
     assert np.mean([one.interval[0] <= probability <= one.interval[1] for one in found]) > LEAST
     assert all(one.basis == "all strata" for one in found)
-    # four of eight runs may exceed by chance: once in two hundred at 0.1
     told = ["the score does not rank this limit" in " ".join(one.warnings) for one in found]
-    assert np.mean(told) > 0.95
+    assert np.mean(told) > 0.95  # seven of the first 24 runs may exceed by chance: once in a hundred at 0.1
 
 
 def test_the_guaranteed_limits_cover_with_a_hidden_mode():
@@ -84,7 +83,7 @@ def test_the_guaranteed_limits_cover_with_a_hidden_mode():
 def test_a_surprise_is_told_with_its_point():
     found = [estimate(with_a_hidden_mode, close_score, 0.001, seed) for seed in range(20)]
     told = [one for one in found if len(one.surprises)]
-    assert len(told) > 5  # 400 runs far from the limit meet a mode of 0.004 four times in five
+    assert len(told) > 5  # 300 runs far from the limit meet a mode of 0.004 seven times in ten
     for one in told:
         assert (one.surprises[:, 2] > -ndtri(HIDDEN)).all()
         assert any("a way of failing that the score does not see" in words for words in one.warnings)
@@ -104,7 +103,7 @@ def test_where_nothing_exceeds_only_a_limit_is_given():
 def test_the_bound_on_what_was_not_seen_is_told_where_it_is_the_greater():
     found = estimate(performance, close_score, 0.001, 3)
     assert found.basis == "strata near the limit"
-    assert found.unseen_bound == pytest.approx(3.0 / 400, rel=0.1)
+    assert found.unseen_bound == pytest.approx(3.0 / 300, rel=0.1)
     assert found.guaranteed[1] > found.interval[1] + found.unseen_bound
     assert found.guaranteed[0] == found.interval[0]
     assert any(words.startswith("the runs cannot exclude a way of failing") for words in found.warnings)
@@ -178,7 +177,7 @@ def test_a_limit_from_below_and_runs_without_a_number():
     [
         ({"within": 1.0}, "precision must lie between 0 and 1; got 1"),
         ({"confidence": 0.0}, "confidence must lie between 0 and 1; got 0"),
-        ({"pilot": 1}, "at least 2 pilot runs and 1 far run are needed; got 1 and 400"),
+        ({"pilot": 1}, "at least 2 pilot runs and 1 far run are needed; got 1 and 300"),
         ({"far_runs": 0}, "at least 2 pilot runs and 1 far run are needed; got 8 and 0"),
     ],
 )
