@@ -278,7 +278,8 @@ def _ocr(sheet: TriaxialSheet, yields: dict[str, YieldProfile], column: GroundCo
     profile = yields.get(ground_of(sheet.place.depth, sheet.place, column))
     if profile is None or not np.isfinite(sheet.axial_stress):
         return None
-    return max(profile.stress(sheet.place.depth) / sheet.axial_stress, 1.0)
+    stress = profile.stress(sheet.place.depth)
+    return max(stress / sheet.axial_stress, 1.0) if stress > 0.0 else None
 
 
 def _friction(layers: dict[str, _Tests]) -> tuple[PooledFriction, ...]:

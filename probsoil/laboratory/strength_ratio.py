@@ -112,6 +112,11 @@ def strength_ratio(
             words = "no preconsolidation stress known, so overconsolidation ratios are not either"
             remarks.append(f"{kind}: su/s'v: {words}")
             continue
+        of_kind = [
+            one for one in of_kind if preconsolidation(one.sheet.place.depth) > 0.0
+        ]  # none above ground
+        if not of_kind:
+            continue
         ocr = [preconsolidation(one.sheet.place.depth) / one.sheet.axial_stress for one in of_kind]
         fit, used = _fitted(np.log(ocr), np.log([_over_stress(one) for one in of_kind]), stress_error)
         tests = [(one, max(ratio, 1.0)) for one, ratio, on in zip(of_kind, ocr, used, strict=True) if on]

@@ -354,10 +354,8 @@ def _failure(sheet: TriaxialSheet, path: FloatArray, place: int, curve: SmoothRa
         ratio = Estimate(value=value, standard_error=value * relative)
     if curve is not None and place in curve.place:
         at = int(np.searchsorted(curve.place, place))
-        excess = curve.excess
-        ratio = Estimate(
-            value=float(curve.ratio[at]) - excess, standard_error=float(curve.standard_error[at])
-        )
+        value, error, excess = float(curve.ratio[at]), float(curve.standard_error[at]), curve.excess
+        ratio = Estimate(value=value - excess, standard_error=error)
     return Failure(
         place=place,
         strain=float(sheet.axial_strain[place]),

@@ -205,6 +205,17 @@ def test_results_that_tell_nothing_new_are_named(kind: str, result: str, more: s
     assert reason in one.reason
 
 
+def test_strengths_of_the_same_specimens_in_another_layer_count_once() -> None:
+    text = scenario_text("triaxial", 'test = "a + b"\nsu_ratio = 0.3')
+    start, end = text.index("[[layers]]"), text.index("[load]")
+    deeper = text[start:end].replace('name = "clay"', 'name = "below"')
+    for other, reasons in (("b", 1), ("c", 0)):
+        more = f'\n[[evidence]]\nkind = "triaxial"\nlayer = "below"\ndepth = 8.0\ntest = "{other}"\nsu = 20\n'
+        _, unused = observations_of(parse_scenario(text[:end] + deeper + text[end:] + more))
+        assert len(unused) == reasons
+        assert all("single specimens" in one.reason for one in unused)
+
+
 def test_record_and_conflict() -> None:
     near = parse_scenario(scenario_text("oedometer", "lambda = 0.4\nC_alpha_ratio = 0.05"))
     record = evidence_record(space_of(near), near)["evidence"]

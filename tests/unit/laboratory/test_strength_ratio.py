@@ -168,3 +168,10 @@ def test_preconsolidation_stress_of_a_layer_has_an_error() -> None:
     assert one is not None
     assert one.relative_error > 0.1
     assert yield_profile([], column) is None
+
+
+def test_test_above_ground_tells_no_ratio() -> None:
+    results = interpreted(shansep("a", 150.0), shansep("b", 200.0))
+    found = strength_ratio("clay", results, [], lambda depth: YIELD if depth > 16.0 else 0.0)
+    assert found.tests == ("b",)
+    assert strength_ratio("clay", results, [], lambda _: 0.0).tests == ()
