@@ -125,7 +125,8 @@ class Study:
         stations = self.settled_stations(z, response)
         beside = [self._of(one, z) for one in self.beside]
         parts = [*self._own(response, values, stations), *beside]
-        answers: list[Response | StationSettlement] = [response, *(one.response for one in beside)]
+        sections = [response, *(one.response for one in beside)]
+        answers: list[Response | StationSettlement] = [*sections]
         answers += [] if stations is None else [stations]
         converged = np.logical_and.reduce([one.converged for one in answers])
         closed = np.logical_or.reduce([one.voids_closed for one in answers])
@@ -138,8 +139,8 @@ class Study:
             "slip": slip_with_model_error(response, values),
             "bearing": bearing_with_model_error(response, values),
             "final": settlement[:, -1],
-            "floored": response.floored,
-            "kappa_clipped": response.kappa_clipped,
+            "floored": np.logical_or.reduce([one.floored for one in sections]),
+            "kappa_clipped": np.logical_or.reduce([one.kappa_clipped for one in sections]),
             "converged": converged,
             "voids_closed": closed,
         }

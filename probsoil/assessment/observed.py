@@ -154,6 +154,10 @@ def _told_twice(
         same = {(one.hole, one.test) for one in beside if one.parameter == "q_net"}
         if (result.hole, result.test) in same:
             return "the net cone resistance it was made from is used"
+        readings = {(one.hole, one.test, one.depth) for one in beside if one.parameter == "su"}
+        both = result.parameter == "preconsolidation_stress"
+        if both and (result.hole, result.test, result.depth) in readings:
+            return "the strength made from the same reading is used"
     strengths = {_layer_index(scenario, column, one) for one in beside if one.parameter == "su"}
     specimens = {one.test for one in beside if one.parameter == "su"}
     again = place in strengths or bool(specimens.intersection(result.test.split(TOGETHER)))

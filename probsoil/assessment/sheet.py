@@ -9,6 +9,7 @@ from probsoil._typing import FloatArray
 from probsoil.assessment import sheet_answers as answers
 from probsoil.assessment.bearing_answers import bearing_detail, bearing_rows
 from probsoil.assessment.distortion_formulas import distortion_at_horizon, distortion_rows
+from probsoil.assessment.evaluation import space_of
 from probsoil.assessment.evidence_record import tested_words
 from probsoil.assessment.observed import observations_of
 from probsoil.assessment.pore_pressure_formulas import seepage_rows
@@ -197,12 +198,17 @@ def sheet(
     ConvergenceError
         If the consolidation cannot be computed with these values.
     """
+    stations: list[dict[str, Any]] = []
+    pairs: list[dict[str, Any]] = []
     if load is not None:
         if station is not None:
             raise ParameterError("a sheet is that of a station or of a further load, not of both")
-        scenario = other_load(scenario, load).scenario
-    run = sheet_run(scenario, at, station)
-    stations, pairs = station_rows(scenario, at)
+        other = other_load(scenario, load)
+        run = sheet_run(other.scenario, at, values=other.values(space_of(scenario).at(at)))
+        scenario = other.scenario
+    else:
+        run = sheet_run(scenario, at, station)
+        stations, pairs = station_rows(scenario, at)
     site, state, response = run.site, run.state, run.state.response
     rows, points, values = sublayers(run), point_state(run), run.at
     return Sheet(

@@ -1,5 +1,6 @@
 """The one computation that a calculation sheet shows, with everything behind it."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import Any, Literal
 
@@ -165,7 +166,13 @@ class SheetRun:
         )
 
 
-def sheet_run(scenario: Scenario, at: Literal["mean", "median"], station: str | None = None) -> SheetRun:
+def sheet_run(
+    scenario: Scenario,
+    at: Literal["mean", "median"],
+    station: str | None = None,
+    *,
+    values: Mapping[str, float] | None = None,
+) -> SheetRun:
     """Compute a scenario once.
 
     Parameters
@@ -176,6 +183,9 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"], station: str | 
         Which value every uncertain parameter takes.
     station : str or None
         Name of a station; None for the section that slip and bearing stand for.
+    values : mapping of str to float or None
+        Value of every quantity by its address, [unit of each]; None for those of
+        the scenario's own parameters.
 
     Returns
     -------
@@ -189,7 +199,8 @@ def sheet_run(scenario: Scenario, at: Literal["mean", "median"], station: str | 
     ConvergenceError
         If the consolidation cannot be computed with these values.
     """
-    site, one, beside = _computed(scenario, fixed_values(space_of(scenario).at(at)), station)
+    given = space_of(scenario).at(at) if values is None else dict(values)
+    site, one, beside = _computed(scenario, fixed_values(given), station)
     site = replace(screened(built_once(site, one), one, within=0.0), record=site.times[1:])
     state = ground_state(site, one)
     if not state.response.converged[0]:

@@ -17,6 +17,7 @@ Model = Callable[[Sequence[FloatArray]], FloatArray]
 _SAMPLE = 2048  # points of a statistical linearisation
 _NODES = np.linspace(-8.0, 8.0, 3201)
 _LARGEST_VARIANCE = 1.0 - 1e-8  # of a score after a test; the rest of it is what the test tells
+_NEGLIGIBLE_CUT = 1e-4  # share cut off a law at the bounds that leaves score and value in a straight line
 _LEAST_ERROR = 1e-3  # of what was measured; sums over the score resolve no smaller one
 
 
@@ -93,7 +94,8 @@ class PointLaw:
     def is_plain(self) -> bool:
         """Whether score and value, or its logarithm, are in a straight line."""
         law = self.marginal
-        return law.truncation is None and isinstance(law.law, NormalLaw | LognormalLaw)
+        whole = law.truncation is None or law.truncation.kept > 1.0 - _NEGLIGIBLE_CUT
+        return whole and isinstance(law.law, NormalLaw | LognormalLaw)
 
     def at_point(self, score: FloatArray) -> FloatArray:
         """Values at a point.
@@ -226,7 +228,7 @@ def _plain_row(observation: Observation, point: PointLaw) -> Row:
     else:
         value, spread, unit = observation.value / observation.factor, law.sd / point.scale, "plain"
         centre = law.mean / point.scale
-        size = abs(centre)
+        size = max(abs(centre), abs(value))  # of the larger: a mean near zero makes no test exact
         own = float(np.hypot(observation.error * size, observation.standard_error / observation.factor))
         bias = observation.bias * size
     return Row(

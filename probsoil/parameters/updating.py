@@ -182,7 +182,7 @@ def _model(variability: PointVariability, rows: Sequence[Row], observations: Seq
     weights = np.array([row.weights for row in rows]).reshape(len(rows), count)
     noise = np.array([max(row.noise_sd, _LEAST_NOISE) ** 2 for row in rows])
     bias = np.array([row.bias_sd for row in rows])
-    kinds = [(one.kind, one.parameter) for one in observations]
+    kinds = [_transformation(one) for one in observations]
     same = np.array([[float(a == b) for b in kinds] for a in kinds]).reshape(len(rows), len(rows))
     split = variability.split
     shared = weights * split.shared_weight
@@ -197,6 +197,12 @@ def _model(variability: PointVariability, rows: Sequence[Row], observations: Seq
         residual=np.array([row.residual for row in rows]),
         weights=weights,
     )
+
+
+def _transformation(observation: Observation) -> tuple[str, str]:
+    """Return what shares one bias: strengths of cones carry the same factor as the resistance does."""
+    same = observation.kind == "cone" and observation.parameter == "q_net"
+    return observation.kind, "su" if same else observation.parameter
 
 
 def _grid(unknown: Sequence[UnknownVariability]) -> tuple[FloatArray, FloatArray]:

@@ -98,6 +98,16 @@ def _other_load_slips(scenario: Any) -> list[Slip]:
         for other, given in others.items()
         if given
     ]
+    if _given(scenario.evidence) and scenario.evidence and _few_stations(scenario):
+        found += [
+            Slip(
+                path=("limits", place, "load"),
+                message="with tests the ground below a further load must be told from that below [load]",
+                allowed="stations, such as one at the centre of either load",
+                hint="tests then count at each by the distance and horizontal_scale",
+            )
+            for place, _ in named
+        ]
     return found + [
         Slip(
             path=("limits", place, "station"),
@@ -109,6 +119,11 @@ def _other_load_slips(scenario: Any) -> list[Slip]:
         for place, limit in named
         if getattr(limit, "station", None) is not None
     ]
+
+
+def _few_stations(scenario: Any) -> bool:
+    """Whether there is at most one station, so that one average stands for the whole site."""
+    return scenario.station_line is None and len(scenario.stations) < 2
 
 
 def _pits(scenario: Any) -> list[Stage]:
