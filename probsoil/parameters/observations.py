@@ -228,7 +228,7 @@ def _plain_row(observation: Observation, point: PointLaw) -> Row:
     else:
         value, spread, unit = observation.value / observation.factor, law.sd / point.scale, "plain"
         centre = law.mean / point.scale
-        size = max(abs(centre), abs(value))  # of the larger: a mean near zero makes no test exact
+        size = abs(centre)
         own = float(np.hypot(observation.error * size, observation.standard_error / observation.factor))
         bias = observation.bias * size
     return Row(
