@@ -166,7 +166,7 @@ class Study:
         if self.site.hold_level_until is not None:
             arrays["fill_added"] = added_thickness(response, values)
             arrays["volume_added"] = added_volume(response, values)
-        if response.overdrawn is not None:
+        if self.site.works is not None:
             arrays["overdrawn"] = response.overdrawn
         return arrays
 

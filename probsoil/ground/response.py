@@ -5,7 +5,6 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from probsoil._typing import BoolArray, FloatArray, IntArray
-from probsoil.ground.amounts import Amount
 from probsoil.ground.applied_load import LoadedGround, applied_load
 from probsoil.ground.bearing import bearing_at_checks
 from probsoil.ground.clay_settlement import consolidate_clay, degrees_of_consolidation
@@ -72,13 +71,13 @@ class Response:
         Whether pore pressure in situ is no less than the weight of the ground somewhere.
     fill_added : ndarray, shape (n_sample, n_time), [m]
         Thickness of fill added on the centreline so that its level stays; no columns where none is.
-    circle : ndarray or None, shape (n_sample, n_check, 6), [m]
-        Where the critical circle lies, where the section of the fill is uncertain; otherwise None.
-    mean_width : float or ndarray, shape (n_sample,), [m]
+    circle : ndarray, shape (n_sample, n_check, 6), [m]
+        Where the critical circle lies, where the section of the fill is uncertain; otherwise empty.
+    mean_width : ndarray, shape (n_sample,), [m]
         Of the section of an embankment, area over height; 1 for any other load.
-    overdrawn : ndarray of bool or None, shape (n_sample,), [-]
-        Whether a stage was to take off more than is there, and took what was; None where nothing that is
-        built is uncertain.
+    overdrawn : ndarray of bool, shape (n_sample,), [-]
+        Whether a stage was to take off more than is there, and took what was; never where nothing that
+        is built is uncertain.
     """
 
     times: FloatArray
@@ -98,9 +97,9 @@ class Response:
     distortion: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
     uplifted: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
     fill_added: FloatArray = field(default_factory=lambda: np.zeros((0, 0)))
-    circle: FloatArray | None = None
-    overdrawn: BoolArray | None = None
-    mean_width: Amount = 1.0
+    circle: FloatArray = field(default_factory=lambda: np.zeros((0, 0, 6)))
+    overdrawn: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
+    mean_width: FloatArray = field(default_factory=lambda: np.ones(1))
 
 
 @dataclass(frozen=True, slots=True, eq=False, kw_only=True)
@@ -206,8 +205,8 @@ def ground_state(site: SiteModel, values: Values) -> GroundState:
         slip_times=site.slip_times,
         slip=slip,
         critical_circle=critical,
-        circle=circle,
-        mean_width=1.0 if site.embankment is None else site.embankment.mean_width,
+        circle=np.zeros((0, 0, 6)) if circle is None else circle,
+        mean_width=_width(site, n_sample),
         overdrawn=overdrawn(site, values, n_sample),
         bearing=bearing,
         fill_added=_fill_added(ground, result),
@@ -244,6 +243,12 @@ def _fill_added(ground: LoadedGround, result: ConsolidationResult) -> FloatArray
     if ground.load.added_fill is None:
         return np.zeros((result.converged.size, 0))
     return np.where(result.converged[:, None], ground.load.added_fill.thickness, np.nan)
+
+
+def _width(site: SiteModel, n_sample: int) -> FloatArray:
+    """Mean width of the section of every realisation, [m]."""
+    width = 1.0 if site.embankment is None else site.embankment.mean_width
+    return np.full(n_sample, width, dtype=np.float64)
 
 
 def screened(site: SiteModel, pilot: Values, *, within: float = COMPETING) -> SiteModel:

@@ -28,7 +28,9 @@ def critical_positions(site: SiteModel, response: Response) -> FloatArray:
         level. Not a number where the realisation did not converge.
     """
     chosen = response.critical_circle
-    position = np.empty((*chosen.shape, len(POSITION))) if response.circle is None else response.circle.copy()
+    position = (
+        np.empty((*chosen.shape, len(POSITION))) if not response.circle.size else response.circle.copy()
+    )
     for check, family in enumerate(site.families):
         table = np.stack([getattr(family.circles, name) for name in POSITION], axis=1)
         position[:, check] = table[np.maximum(chosen[:, check], 0)]

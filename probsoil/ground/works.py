@@ -2,6 +2,8 @@
 
 from dataclasses import replace
 
+import numpy as np
+
 from probsoil._typing import BoolArray
 from probsoil.ground.amounts import Reading, drawn_from, single
 from probsoil.ground.foundation import foundation_of
@@ -61,7 +63,7 @@ def built_once(site: SiteModel, values: Values) -> SiteModel:
     return replace(found, layouts=layouts)
 
 
-def overdrawn(site: SiteModel, values: Values, n_sample: int) -> BoolArray | None:
+def overdrawn(site: SiteModel, values: Values, n_sample: int) -> BoolArray:
     """Return in which realisations a stage was to take off more than is there, and took what was.
 
     Parameters
@@ -75,10 +77,12 @@ def overdrawn(site: SiteModel, values: Values, n_sample: int) -> BoolArray | Non
 
     Returns
     -------
-    overdrawn : ndarray of bool or None, shape (n_sample,), [-]
-        None where nothing of the works is uncertain.
+    overdrawn : ndarray of bool, shape (n_sample,), [-]
+        In none where nothing of the works is uncertain.
     """
-    return None if site.works is None else takes_too_much(site.works, drawn_from(values, n_sample), n_sample)
+    if site.works is None:
+        return np.zeros(n_sample, dtype=np.bool_)
+    return takes_too_much(site.works, drawn_from(values, n_sample), n_sample)
 
 
 def _built(site: SiteModel, read: Reading) -> SiteModel:

@@ -113,7 +113,7 @@ def evened(stress: FloatArray, void_ratio: FloatArray) -> tuple[FloatArray, Floa
         of readings closer together are the same error.
     """
     x = np.log(stress)
-    if stress.size < 3 or stress.size - 1 <= _CLOSE * abs(x[-1] - x[0]) / EVEN:
+    if stress.size < 3 or x[-1] == x[0] or stress.size - 1 <= _CLOSE * abs(x[-1] - x[0]) / EVEN:
         return stress, void_ratio
     n_part = max(int(np.ceil(abs(x[-1] - x[0]) / EVEN)), 1)
     part = np.minimum((np.abs(x - x[0]) / abs(x[-1] - x[0]) * n_part).astype(int), n_part - 1)

@@ -77,7 +77,7 @@ def smooth_ratio(
     without error of reading the curve gives the greatest within 0.5 %.
     """
     usable = np.flatnonzero(sound & (strain > 0.0))
-    if usable.size < _LEAST_NEAR:
+    if usable.size < _LEAST_NEAR or not ratio[usable].max() > 0.0:
         return None
     reached = np.flatnonzero(ratio[usable] >= _NEAR * ratio[usable].max())
     place = usable[reached[0] : reached[-1] + 1]

@@ -28,6 +28,7 @@ PINT_BASES = {
     "coefficient of consolidation": "m**2/julian_year",
     "discharge capacity": "m**3/julian_year",
     "angle": "degree",
+    "volume per metre": "m**2",
 }
 
 
