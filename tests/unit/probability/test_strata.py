@@ -186,7 +186,7 @@ def test_luck_in_one_of_two_like_strata_draws_no_runs():
     size, n = np.array([64, 40_000, 40_000, 40_000]), np.array([8, 100, 100, 100])
     more = wanted_runs(np.array([8, 0, 2, 0]), n, size, size, near=4, batch=300)
     assert more[1] == more[2]
-    assert abs(more[3] - more[2]) < 0.4 * more[2]  # beyond the last hit the share may be less
+    assert 0 < more[3] < more[2]  # beyond the last hit the share may be less, but is not nothing
 
 
 def test_counts_that_do_not_match_are_refused():
