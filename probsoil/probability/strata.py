@@ -310,7 +310,7 @@ def wanted_runs(
     -----
     Neyman's rule with the arm of the exact limits in place of the standard deviation, so that a stratum
     without hits keeps a share: runs in proportion to the square root of the arm squared times the runs
-    that gave it, less those already made.
+    that gave it, less those already made. Strata of rare cases share their arm by `falling_share`.
     """
     taken = (np.arange(len(size)) < near) & (n < most)
     arm = np.maximum(*_arms(hits, n, size, taken, 0.95))
@@ -326,32 +326,53 @@ def wanted_runs(
     return possible
 
 
+def falling_share(hits: IntArray, n: IntArray) -> FloatArray:
+    """Share of each stratum that exceeds if it nowhere rises with falling score.
+
+    Parameters
+    ----------
+    hits, n : ndarray of int, shape (n_stratum,), [-]
+        Runs that exceed, and runs, the highest scores first.
+
+    Returns
+    -------
+    share : ndarray, shape (n_stratum,), [-]
+        The nearest falling sequence, by least squares weighted with the runs: neighbours out of order are
+        pooled.
+    """
+    from scipy.optimize import isotonic_regression  # deferred: only strata need it
+
+    return np.asarray(isotonic_regression(hits / n, weights=n, increasing=False).x)
+
+
 def _arms(
     hits: IntArray, n: IntArray, size: IntArray, taken: BoolArray, confidence: float
 ) -> tuple[FloatArray, FloatArray]:
-    """Lower and upper arm of each stratum's part of the probability; groups share theirs by size."""
+    """Lower and upper arm of each stratum's part of the probability; strata of rare cases share theirs."""
     low, high = stratum_limits(hits, n, size, confidence)
-    weight, share = size / size.sum(), hits / n
+    weight, share, level = size / size.sum(), hits / n, falling_share(hits, n)
     below, above = weight * (share - low) * taken, weight * (high - share) * taken
-    for cases, up, down in ((hits, above, below), (n - hits, below, above)):
-        few = taken & (cases <= SPARSE * n)
+    for cases, rate, up, down in ((hits, level, above, below), (n - hits, 1.0 - level, below, above)):
+        few = taken & (rate <= SPARSE)
         if few.any():
-            lower, upper, part = _rare_arms(cases[few], weight[few] / n[few], weight[few], confidence)
+            unit = weight[few] / n[few]
+            lower, upper = _rare_arms(cases[few], unit, confidence)
+            # by the falling share, not the own: one hit by luck would draw runs, none by luck would keep
+            # them away, and the sum would come out low
+            part = np.sqrt(unit * weight[few] * rate[few] + unit.max() ** 2 * weight[few] / weight[few].sum())
+            part /= np.sqrt((part**2).sum())
             down[few], up[few] = lower * part, upper * part
     return below, above
 
 
-def _rare_arms(
-    cases: IntArray, unit: FloatArray, weight: FloatArray, confidence: float
-) -> tuple[float, float, FloatArray]:
-    """Arms of a weighted sum of rare cases, and how their squares are shared out among strata."""
+def _rare_arms(cases: IntArray, unit: FloatArray, confidence: float) -> tuple[float, float]:
+    """Arms of a weighted sum of rare cases."""
     most, tail = float(unit.max()), 0.5 * (1.0 - confidence)
     total, spread = float((unit * cases).sum()), float((unit**2 * cases).sum())
     low = float(gammaincinv(total**2 / spread, tail)) * spread / total if total else 0.0
     mean, variance = total + most, spread + most**2
     high = float(gammainccinv(mean**2 / variance, tail)) * variance / mean
-    part = unit**2 * cases + most**2 * weight / weight.sum()
-    return total - low, high - total, np.sqrt(part / part.sum())
+    return total - low, high - total
 
 
 def _none_seen(weight: FloatArray, n: IntArray, confidence: float) -> float:

@@ -12,6 +12,7 @@ from probsoil.errors import ParameterError, ShapeError
 from probsoil.probability import TrueRuns, clopper_pearson, pool_size, strata_by_score
 from probsoil.probability.strata import (
     combined_limits,
+    falling_share,
     stratum_limits,
     stratum_sizes,
     unseen_mass,
@@ -173,6 +174,19 @@ def test_further_runs_go_where_the_interval_is_wide():
     assert wanted_runs(hits, n, SIZE, n, near=4, batch=100).tolist() == [0, 0, 0, 0]
     few = wanted_runs(hits, n, SIZE, np.array([9, 9, 9, 9]), near=4, batch=100)
     assert (few <= 1).all()
+
+
+def test_falling_share_pools_neighbours_out_of_order():
+    share = falling_share(np.array([9, 1, 3, 0, 1]), np.array([10, 20, 20, 40, 10]))
+    assert share == pytest.approx([0.9, 0.1, 0.1, 0.02, 0.02])
+
+
+def test_luck_in_one_of_two_like_strata_draws_no_runs():
+    """Else the sum comes out low: what hit by luck is run until it is average, what did not is left."""
+    size, n = np.array([64, 40_000, 40_000, 40_000]), np.array([8, 100, 100, 100])
+    more = wanted_runs(np.array([8, 0, 2, 0]), n, size, size, near=4, batch=300)
+    assert more[1] == more[2]
+    assert 0 < more[3] < more[2]  # beyond the last hit the share may be less, but is not nothing
 
 
 def test_counts_that_do_not_match_are_refused():
